@@ -1,0 +1,1 @@
+"""Judgement on one plan: precedents, estimate, findings, advice."""

@@ -1,0 +1,1 @@
+"""The record as a whole: recurring failures, replay, coverage, calibration."""

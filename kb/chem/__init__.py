@@ -1,0 +1,1 @@
+"""Structures to facts: reading schemes, centres, screens and drawings. No record, no conditions."""

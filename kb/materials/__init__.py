@@ -1,0 +1,1 @@
+"""What is in the bottle: solvents and reagents, their names, and the classes of a set of conditions."""

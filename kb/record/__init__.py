@@ -1,0 +1,1 @@
+"""What a run, a plan, a finding and an assessment are: frozen values, checked when made."""

@@ -1,0 +1,122 @@
+"""The assessment of one plan: reading, findings, estimate, precedents, advice, as one value.
+
+Only values live here; they are made by `kb.assess` and shown by the front ends.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+from kb.chem.facts import Reading
+from kb.record.finding import Finding, Interval
+from kb.record.plan import Plan
+from kb.vocabulary import Basis, Fate, Verdict
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Estimate:
+    """What to expect.
+
+    Attributes:
+        fates: share per fate, 0..1, with 80 % intervals; empty = no honest number.
+        yield_pct: percent, or None.
+        level: coverage of the intervals.
+        effective_precedents: sum of kernel weights, in runs.
+        basis: what the figure rests on.
+        note: plain words: why it is wide, why there is none.
+    """
+
+    fates: tuple[tuple[Fate, Interval], ...] = ()
+    yield_pct: Interval | None = None
+    level: float = 0.8
+    effective_precedents: float = 0.0
+    basis: Basis = Basis.NONE
+    note: str = ""
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return the contract's JSON object."""
+        return {
+            "fates": {str(f): i.as_dict() for f, i in self.fates},
+            "yield_pct": self.yield_pct.as_dict() if self.yield_pct else None,
+            "level": self.level,
+            "effective_precedents": self.effective_precedents,
+            "basis": str(self.basis),
+            "note": self.note,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Precedent:
+    """A recorded run close to the plan.
+
+    Attributes:
+        run: its code.
+        similarity: 0..1.
+        parts: similarity per named part, 0..1.
+        differs: words for what differs ("bromide, not mesylate"), most telling first.
+        split: shares per fate.
+        yield_pct: percent; None = not recorded.
+        verdict: the chemist's word.
+    """
+
+    run: str
+    similarity: float
+    parts: tuple[tuple[str, float], ...] = ()
+    differs: tuple[str, ...] = ()
+    split: tuple[tuple[Fate, float], ...] = ()
+    yield_pct: float | None = None
+    verdict: Verdict | None = None
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return the contract's JSON object."""
+        return {
+            "run": self.run,
+            "similarity": self.similarity,
+            "parts": dict(self.parts),
+            "differs": list(self.differs),
+            "split": {str(f): s for f, s in self.split},
+            "yield_pct": self.yield_pct,
+            "verdict": str(self.verdict) if self.verdict else None,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Advice:
+    """One change and what it is likely to do.
+
+    Attributes:
+        change: plain words ("60 °C instead of 80 °C").
+        effect: on the share wanted, in points 0..1, with 80 % interval.
+        pairs: matched pairs behind it; 0 for a published trend.
+        basis: record or published.
+        why: plain words, with the source of a published trend.
+    """
+
+    change: str
+    effect: Interval
+    pairs: int
+    basis: Basis
+    why: str
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return the contract's JSON object."""
+        return {
+            "change": self.change,
+            "effect": self.effect.as_dict(),
+            "pairs": self.pairs,
+            "basis": str(self.basis),
+            "why": self.why,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Assessment:
+    """All of a check for one plan."""
+
+    plan: Plan
+    reading: Reading
+    findings: tuple[Finding, ...] = ()
+    estimate: Estimate
+    precedents: tuple[Precedent, ...] = ()
+    advice: tuple[Advice, ...] = ()

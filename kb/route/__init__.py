@@ -1,0 +1,1 @@
+"""A sequence of steps and the material it needs."""

@@ -1,0 +1,1 @@
+"""Finding runs by structure, transformation, words and conditions."""

@@ -1,0 +1,1 @@
+"""The terminal interface: shows what `kb.book` answers. No chemistry, no SQL."""
