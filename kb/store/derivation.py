@@ -1,0 +1,205 @@
+"""A run or a plan, read: the derived facts that similarity, evidence and search rest on.
+
+It owns the recipe: what is worked out, with what, under which name. A change of anything that could change a stored
+fact must change `RECIPE`; books then rebuild their facts instead of mixing two recipes. It judges nothing.
+"""
+
+from __future__ import annotations
+
+import dataclasses
+import json
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+from uuid import UUID
+
+from kb.chem.facts import Reading
+from kb.materials.profile import ConditionProfile
+from kb.record.conditions import Conditions
+from kb.record.derived import CENTRE_BITS, DerivedFacts
+from kb.record.run import Run
+from kb.vocabulary import Role
+
+if TYPE_CHECKING:
+    from kb.record.plan import Plan
+
+RECIPE = "facts/1"
+"""Name of what makes DerivedFacts; the RDKit version is appended where facts are stored."""
+
+MORGAN_RADIUS = 2
+"""Bonds around the centre that its environment fingerprint reaches."""
+
+_NO_RUN = UUID(int=0)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Account:
+    """Everything read from a scheme and its conditions, before any judgement.
+
+    Attributes:
+        reading: what the scheme does.
+        fragments: SMILES of the left-side fragments as entered, in component order.
+        products: SMILES of the right-side fragments as entered.
+        profile: what the conditions are.
+        facts: the flat values that are stored and compared.
+    """
+
+    reading: Reading
+    fragments: tuple[str, ...]
+    products: tuple[str, ...]
+    profile: ConditionProfile
+    facts: DerivedFacts
+
+
+def account_of_plan(plan: Plan) -> Account:
+    """Read a plan; a scheme that cannot be read gives `reading.ok` False and facts without a centre."""
+    return _account(plan.scheme, plan.conditions, _NO_RUN)
+
+
+def account_of_run(run: Run) -> Account:
+    """Read a run, by its scheme and conditions; the outcome is left out."""
+    return _account(run.scheme, run.conditions, run.run_id)
+
+
+def derive(run: Run) -> DerivedFacts:
+    """Return the facts to store beside a run."""
+    return account_of_run(run).facts
+
+
+def current_recipe() -> str:
+    """Return the recipe's name with the version of RDKit that carries it out."""
+    from rdkit import rdBase
+
+    return f"{RECIPE} rdkit/{rdBase.rdkitVersion}"
+
+
+def dissect(run: Run) -> list[tuple[str, int, str]]:
+    """Split a run into searchable structures.
+
+    Returns:
+        (role, position, SMILES) of every left-side fragment (substrate or reagent, by component), of every named
+        component with a structure, and of every product stated or seen. Unreadable text gives fewer rows, no error.
+    """
+    account = account_of_run(run)
+    centre = account.reading.centre
+    rows: list[tuple[str, int, str]] = []
+    for position, smiles in enumerate(account.fragments):
+        is_substrate = centre is not None and centre.component == position
+        if centre is None and position == 0:
+            is_substrate = True
+        rows.append((Role.SUBSTRATE if is_substrate else Role.REAGENT, position, smiles))
+    rows += [
+        (Role.REAGENT, position, component.smiles)
+        for position, component in enumerate(run.conditions.components, start=len(account.fragments))
+        if component.smiles
+    ]
+    seen = list(account.products) + [p.smiles for p in run.outcome.products if p.smiles]
+    rows += [(Role.PRODUCT, position, smiles) for position, smiles in enumerate(dict.fromkeys(seen))]
+    return rows
+
+
+def profile_to_json(profile: ConditionProfile) -> str:
+    """Write a profile as compact JSON, sets sorted, so that equal profiles give equal text."""
+    values: dict[str, Any] = {}
+    for field in dataclasses.fields(profile):
+        value = getattr(profile, field.name)
+        if value is None or value == field.default:
+            continue
+        values[field.name] = sorted(value) if isinstance(value, frozenset) else value
+    return json.dumps(values, separators=(",", ":"), sort_keys=True)
+
+
+def profile_from_json(text: str) -> ConditionProfile:
+    """Read back what `profile_to_json` wrote; unknown keys of a later program are ignored."""
+    known = {f.name for f in dataclasses.fields(ConditionProfile)}
+    values = {k: frozenset(v) if isinstance(v, list) else v for k, v in json.loads(text).items() if k in known}
+    return ConditionProfile(**values)
+
+
+def _account(scheme: str, conditions: Conditions, run_id: UUID) -> Account:
+    from kb.chem.reading import read_scheme
+    from kb.chem.scheme import parse_scheme
+    from kb.errors import ChemistryError
+    from kb.materials.classes import profile_of
+
+    reading = read_scheme(scheme)
+    fragments: tuple[str, ...] = ()
+    products: tuple[str, ...] = ()
+    if reading.ok:
+        try:
+            parsed = parse_scheme(scheme)
+        except ChemistryError:
+            parsed = None
+        if parsed is not None:
+            fragments = tuple(f.smiles_as_entered for f in parsed.left)
+            products = tuple(f.smiles_as_entered for f in parsed.products)
+    skip = reading.centre.component if reading.centre else 0
+    others = [s for i, s in enumerate(fragments) if i != skip]
+    profile = profile_of(conditions, others)
+    return Account(
+        reading=reading,
+        fragments=fragments,
+        products=products,
+        profile=profile,
+        facts=_facts(reading, fragments, profile, run_id),
+    )
+
+
+def _facts(reading: Reading, fragments: tuple[str, ...], profile: ConditionProfile, run_id: UUID) -> DerivedFacts:
+    centre = reading.centre
+    substrate: str | None = None
+    centre_atom: int | None = None
+    bits: bytes | None = None
+    position = centre.component if centre else 0
+    if position < len(fragments):
+        substrate, centre_atom, bits = _rooted(fragments[position], centre.atom if centre else None)
+    nucleophile = reading.nucleophile.nucleophile_class if reading.nucleophile else profile.nucleophile_class
+    protic: bool | None = None
+    if not profile.has_unknown_solvent or profile.solvent_classes:
+        protic = "protic" in profile.solvent_classes
+    return DerivedFacts(
+        run_id=run_id,
+        recipe=current_recipe(),
+        confidence=str(reading.confidence),
+        fate=str(reading.fate) if reading.fate else None,
+        carbon_class=str(centre.carbon_class) if centre else None,
+        leaving_group=str(centre.leaving_group) if centre and centre.leaving_group else None,
+        nucleophile_class=nucleophile,
+        flags=",".join(sorted(centre.flags)) if centre else "",
+        beta_hydrogens=centre.beta_hydrogens if centre else None,
+        is_stereocentre=centre.is_stereocentre if centre else False,
+        substrate=substrate,
+        centre_atom=centre_atom,
+        centre_bits=bits,
+        base_pkah=profile.base_pkah,
+        base_bulk=profile.base_bulk,
+        swain_scott_n=profile.swain_scott_n,
+        acidity=profile.acidity,
+        lewis_acid=profile.lewis_acid,
+        halophile=profile.halophile,
+        protic=protic,
+        permittivity=profile.permittivity,
+        et30_kcal_mol=profile.et30_kcal_mol,
+        winstein_y=profile.winstein_y,
+        temperature_c=profile.temperature_c,
+        time_h=profile.time_h,
+        profile_json=profile_to_json(profile),
+    )
+
+
+def _rooted(smiles: str, atom: int | None) -> tuple[str | None, int | None, bytes | None]:
+    """Return canonical SMILES without maps, the atom's place in it, and its environment bits."""
+    from rdkit import Chem, DataStructs
+    from rdkit.Chem import rdFingerprintGenerator
+
+    mol = Chem.MolFromSmiles(smiles)
+    if mol is None:
+        return None, None, None
+    for a in mol.GetAtoms():
+        a.SetAtomMapNum(0)
+    canonical = Chem.MolToSmiles(mol)
+    if atom is None or atom >= mol.GetNumAtoms():
+        return canonical, None, None
+    order = list(mol.GetPropsAsDict(includePrivate=True, includeComputed=True)["_smilesAtomOutputOrder"])
+    generator = rdFingerprintGenerator.GetMorganGenerator(radius=MORGAN_RADIUS, fpSize=CENTRE_BITS)
+    fingerprint = generator.GetFingerprint(mol, fromAtoms=[atom])
+    return canonical, order.index(atom), DataStructs.BitVectToBinaryText(fingerprint)
