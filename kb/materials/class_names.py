@@ -1,9 +1,9 @@
 """The one list of class words that reagents, oxidants and solvents are given, each with its meaning.
 
-It owns words and which wider word each narrower one brings along, never how a material earns one (`classes.py`,
-`structural.py`) nor what follows from it (`kb.assess`). A rule that asks for a word not listed here is a mistake, and
-a test of the rules says so. Words are snake_case; the three coarse solvent words keep the hyphen they have in the
-contract. A released word is never renamed, only added to.
+It owns words and which wider word each narrower one brings along, never how a material earns one
+(`classes.py`, `structural.py`) nor what follows from it (`kb.assess`). A rule that asks for a word not listed
+here is a mistake. Words are snake_case; the coarse solvent words keep the hyphen they have in the record's vocabulary.
+A released word is never renamed, only added to.
 
 A wider word is always added beside the narrower: benzylamine is `primary_amine` and therefore `amine`.
 """
@@ -116,8 +116,7 @@ REAGENT_CLASSES: MappingProxyType[str, str] = MappingProxyType(
         "arene_scavenger": "electron-rich arene that traps cations (anisole)",
         "silyl_enol_ether": "silyl enol ether or allylsilane",
         # hydride and reduction
-        "metal_hydride": "NaH, KH, LiH, CaH2, LiAlH4: saline or aluminium hydride",
-        "saline_hydride": "NaH, KH, LiH, CaH2: a base, no reductant",
+        "metal_hydride": "NaH, KH, LiH, CaH2: saline hydride, a base and no reductant",
         "borohydride": "borohydride",
         "aluminium_hydride": "LiAlH4, DIBAL, Red-Al",
         "borane": "borane or dialkylborane",
@@ -318,7 +317,6 @@ WIDER: MappingProxyType[str, tuple[str, ...]] = MappingProxyType(
         "organocuprate": ("organometallic",),
         "organozinc": ("organometallic",),
         "organoaluminium": ("organometallic",),
-        "saline_hydride": ("metal_hydride",),
         "stabilised_carbanion": ("enolate",),
         "silver_salt": ("silver", "silver_or_mercury"),
         "silver": ("silver_salt", "silver_or_mercury"),
@@ -344,9 +342,7 @@ WIDER: MappingProxyType[str, tuple[str, ...]] = MappingProxyType(
         "lithium_lewis_acid": ("lewis_acid",),
         "crown_ether": ("phase_transfer_catalyst",),
         "quaternary_ammonium": ("phase_transfer_catalyst",),
-        **{word: ("oxidant",) for word in sorted(OXIDANT_CLASSES - {"halogen", "n_haloimide", "amine_oxide"})},
-        "halogen": ("oxidant",),
-        "n_haloimide": ("oxidant",),
+        **dict.fromkeys(sorted(OXIDANT_CLASSES - {"amine_oxide", "aminoxyl"}), ("oxidant",)),
         "activated_halide": ("alkyl_halide",),
     }
 )
