@@ -1,0 +1,167 @@
+"""What to expect: shares per fate and yield, each with an 80 % interval, from weighted runs and a published prior.
+
+It owns the arithmetic of evidence; it knows no chemistry. Each run close to the plan speaks with a weight that falls
+with dissimilarity. The mean is the Dirichlet mean of prior pseudo-counts and weighted shares; the interval is the
+spread to expect of the *next run*, a Beta whose concentration follows from how far the weighted runs scatter, shrunk
+towards a prior scatter: two precedents that disagree give a wide interval, not a confident middle.
+
+Constants are judgements, to be checked by `audit calibration`: see each. Intervals are taken from fixed-seed samples
+(deterministic to about one percentage point) rather than from an inverse incomplete beta function of our own.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+import numpy as np
+from numpy.typing import NDArray
+
+from kb.assess.table import FATES, FactTable
+from kb.record.assessment import Estimate
+from kb.record.finding import Interval
+from kb.vocabulary import Basis, Fate
+
+LEVEL = 0.8
+SHARPNESS = 1.5
+"""Power of the similarity above the floor that becomes a weight."""
+LEAST_SIMILARITY = 0.3
+"""Runs below it have no say."""
+PRIOR_RUNS = 0.6
+"""Weight of the published prior, in whole runs."""
+PRIOR_SCATTER = 0.16
+"""Standard deviation of a share between like runs, before any have been seen (0..1)."""
+SCATTER_RUNS = 1.5
+"""How many runs that prior scatter is worth."""
+WEIGHT_THAT_COUNTS = 0.25
+"""Effective precedents below which the record alone gives no number."""
+_SAMPLES = 4000
+
+
+def weights_of(similarity: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Return evidence weights (n), 0..1: similarity above the floor, raised to SHARPNESS."""
+    scaled = np.clip((similarity - LEAST_SIMILARITY) / (1 - LEAST_SIMILARITY), 0, 1)
+    return np.asarray(scaled**SHARPNESS)
+
+
+def estimate(
+    similarity: NDArray[np.float64],
+    table: FactTable,
+    prior: Mapping[Fate, float] | None = None,
+    prior_scatter: float | None = None,
+    no_number: str = "",
+) -> Estimate:
+    """Estimate shares and yield for a plan.
+
+    Args:
+        similarity: of each run to the plan (n), 0..1.
+        table: the runs (n).
+        prior: published shares per fate, summing to 1; None = none.
+        prior_scatter: standard deviation of the prior's main share (0..1); None = PRIOR_SCATTER.
+        no_number: why published chemistry forbids a number ("" = it does not); a record may still speak.
+
+    Returns:
+        An Estimate; `fates` is empty where neither record nor prior says anything, and `note` says why.
+    """
+    weight = weights_of(similarity)
+    measured = ~np.isnan(table.shares).all(axis=1) if len(table) else np.zeros(0, dtype=bool)
+    w = weight * measured
+    effective = float(w.sum())
+    from_record = effective >= WEIGHT_THAT_COUNTS
+    fates: tuple[tuple[Fate, Interval], ...] = ()
+    note = ""
+    if from_record or prior:
+        fates, scatter = _shares(w, table.shares, prior or {}, prior_scatter or PRIOR_SCATTER)
+        note = _note(effective, scatter, from_record, no_number)
+    else:
+        note = no_number or "No run close enough and no published model for this centre: no number is honest here."
+    basis = {
+        (True, True): Basis.BOTH,
+        (True, False): Basis.RECORD,
+        (False, True): Basis.PUBLISHED,
+        (False, False): Basis.NONE,
+    }[(from_record, bool(prior))]
+    return Estimate(
+        fates=fates,
+        yield_pct=_yield(weight, table.yield_pct),
+        level=LEVEL,
+        effective_precedents=round(effective, 2),
+        basis=basis,
+        note=note,
+    )
+
+
+def beta_interval(mean: float, concentration: float) -> Interval:
+    """Return mean and 80 % bounds of a Beta distribution.
+
+    Args:
+        mean: 0..1, kept off the ends by 0.002.
+        concentration: a + b of the Beta, > 0.
+    """
+    inside = min(max(mean, 0.002), 0.998)
+    draws = np.random.default_rng(20).beta(inside * concentration, (1 - inside) * concentration, _SAMPLES)
+    low, high = np.quantile(draws, [(1 - LEVEL) / 2, (1 + LEVEL) / 2])
+    return Interval(mean=round(mean, 4), low=round(min(float(low), mean), 4), high=round(max(float(high), mean), 4))
+
+
+def loss_chance(lost: float, survived: float) -> Interval:
+    """Return the chance of loss from counts, Jeffreys prior (Beta(1/2, 1/2)), with 80 % interval."""
+    total = lost + survived + 1.0
+    return beta_interval((lost + 0.5) / total, total)
+
+
+def _shares(
+    w: NDArray[np.float64], shares: NDArray[np.float64], prior: Mapping[Fate, float], prior_scatter: float
+) -> tuple[tuple[tuple[Fate, Interval], ...], float]:
+    """Return intervals per fate, largest first, and the scatter of the largest (0..1)."""
+    effective = float(w.sum())
+    used = w > 0
+    x = np.nan_to_num(shares[used])
+    totals = x.sum(axis=1, keepdims=True)
+    x = np.divide(x, totals, out=x, where=totals > 0)
+    wx = w[used]
+    prior_mean = np.array([prior.get(f, 0.0) for f in FATES])
+    prior_weight = PRIOR_RUNS if prior else 0.0
+    mean = (wx @ x + prior_weight * prior_mean) / (effective + prior_weight)
+    rows: list[tuple[Fate, Interval]] = []
+    main_scatter = 0.0
+    for place in np.argsort(-mean, kind="stable"):
+        m = float(mean[place])
+        if m < 0.005:
+            continue
+        squares = float(wx @ (x[:, place] - m) ** 2)
+        if prior_weight:
+            squares += prior_weight * (float(prior_mean[place]) - m) ** 2
+        variance = (squares + SCATTER_RUNS * prior_scatter**2 * 4 * m * (1 - m)) / (effective + prior_weight + SCATTER_RUNS)
+        variance *= 1 + 1 / (effective + prior_weight + 1)
+        variance = min(max(variance, 1e-5), 0.95 * m * (1 - m) + 1e-6)
+        concentration = max(m * (1 - m) / variance - 1, 0.05)
+        rows.append((FATES[place], beta_interval(m, concentration)))
+        if not main_scatter:
+            main_scatter = float(np.sqrt(squares / (effective + prior_weight)))
+    return tuple(rows), main_scatter
+
+
+def _yield(weight: NDArray[np.float64], yield_pct: NDArray[np.float64]) -> Interval | None:
+    """Return the yield to expect [%] with 80 % interval, or None where no like run recorded one."""
+    used = (weight > 0) & ~np.isnan(yield_pct)
+    w = weight[used]
+    effective = float(w.sum())
+    if effective < WEIGHT_THAT_COUNTS:
+        return None
+    x = np.clip(yield_pct[used] / 100, 0, 1)
+    prior_mean, prior_weight = 0.6, 0.25  # a weak pull towards a middling yield; judgement
+    mean = float((w @ x + prior_weight * prior_mean) / (effective + prior_weight))
+    squares = float(w @ (x - mean) ** 2) + prior_weight * (prior_mean - mean) ** 2
+    variance = (squares + SCATTER_RUNS * 0.18**2) / (effective + prior_weight + SCATTER_RUNS)
+    variance = min(variance * (1 + 1 / (effective + 1)), 0.95 * mean * (1 - mean) + 1e-6)
+    interval = beta_interval(mean, max(mean * (1 - mean) / max(variance, 1e-6) - 1, 0.05))
+    return Interval(mean=round(100 * interval.mean, 1), low=round(100 * interval.low, 1), high=round(100 * interval.high, 1))
+
+
+def _note(effective: float, scatter: float, from_record: bool, no_number: str) -> str:
+    if not from_record:
+        return no_number or "No run close enough in this book; published relative rates alone, so the interval is wide."
+    said = f"Rests on {effective:.1f} effective runs of this book."
+    if scatter > 0.18:
+        said += f" They disagree by some {100 * scatter:.0f} points, so the interval is wide."
+    return f"{said} {no_number}".strip()

@@ -1,0 +1,203 @@
+"""The record as columns: every standing run's facts and outcome as NumPy arrays, ready for one vectorised kernel.
+
+It owns the coding of words to small integers and the reading of the store's columns; it compares nothing. Row order
+is the store's; -1 codes "not recorded" in word columns, NaN in number columns.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from kb.materials.profile import LEVELS
+from kb.record.derived import CENTRE_BITS, DerivedFacts
+from kb.vocabulary import CarbonClass, CentreFlag, Fate, LeavingGroup, Verdict
+
+FATES: tuple[Fate, ...] = tuple(Fate)
+WORDS: dict[str, tuple[str, ...]] = {
+    "carbon_class": tuple(map(str, CarbonClass)),
+    "leaving_group": tuple(map(str, LeavingGroup)),
+    "fate": tuple(map(str, Fate)),
+    "base_bulk": ("unhindered", "hindered"),
+    "acidity": LEVELS["acidity"],
+    "lewis_acid": LEVELS["lewis_acid"],
+    "halophile": ("none", "mercury", "silver"),
+    "verdict": tuple(map(str, Verdict)),
+}
+"""Coding of each word column; the code is the position."""
+
+NUMBERS: tuple[str, ...] = (
+    "base_pkah",
+    "swain_scott_n",
+    "permittivity",
+    "et30_kcal_mol",
+    "winstein_y",
+    "temperature_c",
+    "time_h",
+    "beta_hydrogens",
+)
+_FLAG_BIT = {str(flag): 1 << position for position, flag in enumerate(CentreFlag)}
+_WORDS_PER_CENTRE = CENTRE_BITS // 64
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class FactTable:
+    """Facts and outcomes of n runs.
+
+    Attributes:
+        codes: short codes (n).
+        words: int8 codes per word column (n each), see WORDS.
+        numbers: float64 per number column (n each), NaN = not recorded.
+        nucleophile: code into nucleophile_words (n) int16, -1 = none.
+        nucleophile_words: the classes met in this book, in order of first meeting.
+        flags: bit per CentreFlag (n) uint16.
+        protic: 1, 0 or -1 (n) int8.
+        centre_bits: rooted environment (n, CENTRE_BITS / 64) uint64, zeros = no centre.
+        shares: molar share per fate (n, 8) float64, all NaN = nothing measured.
+        yield_pct: (n) float64, NaN = not recorded.
+        date: proleptic ordinal (n) int32, 0 = not recorded.
+        substrate: canonical SMILES (n), "" = not read.
+    """
+
+    codes: tuple[str, ...]
+    words: dict[str, NDArray[np.int8]]
+    numbers: dict[str, NDArray[np.float64]]
+    nucleophile: NDArray[np.int16]
+    nucleophile_words: tuple[str, ...]
+    flags: NDArray[np.uint16]
+    protic: NDArray[np.int8]
+    centre_bits: NDArray[np.uint64]
+    shares: NDArray[np.float64]
+    yield_pct: NDArray[np.float64]
+    date: NDArray[np.int32]
+    substrate: tuple[str, ...]
+
+    def __len__(self) -> int:
+        return len(self.codes)
+
+    def rows(self, keep: NDArray[Any]) -> FactTable:
+        """Return the table cut down to the rows of a mask or an index array."""
+        where = np.flatnonzero(keep) if keep.dtype == bool else keep
+        return FactTable(
+            codes=tuple(self.codes[i] for i in where),
+            words={k: v[where] for k, v in self.words.items()},
+            numbers={k: v[where] for k, v in self.numbers.items()},
+            nucleophile=self.nucleophile[where],
+            nucleophile_words=self.nucleophile_words,
+            flags=self.flags[where],
+            protic=self.protic[where],
+            centre_bits=self.centre_bits[where],
+            shares=self.shares[where],
+            yield_pct=self.yield_pct[where],
+            date=self.date[where],
+            substrate=tuple(self.substrate[i] for i in where),
+        )
+
+    def word(self, column: str, row: int) -> str | None:
+        """Return the word behind a code, None = not recorded."""
+        code = int(self.words[column][row])
+        return WORDS[column][code] if code >= 0 else None
+
+    def number(self, column: str, row: int) -> float | None:
+        """Return the number, None = not recorded."""
+        value = float(self.numbers[column][row])
+        return None if np.isnan(value) else value
+
+    def nucleophile_word(self, row: int) -> str | None:
+        """Return the nucleophile class of a row, None = none."""
+        code = int(self.nucleophile[row])
+        return self.nucleophile_words[code] if code >= 0 else None
+
+    def split(self, row: int) -> tuple[tuple[Fate, float], ...]:
+        """Return the measured shares of a row, largest first, zeros left out."""
+        measured = [(f, float(s)) for f, s in zip(FATES, self.shares[row], strict=True) if s > 0]
+        return tuple(sorted(measured, key=lambda pair: -pair[1]))
+
+
+def flag_code(flags: str) -> int:
+    """Code comma-joined flag words as bits; unknown words are ignored."""
+    return sum(_FLAG_BIT.get(word, 0) for word in flags.split(",") if word)
+
+
+def flag_words(code: int) -> frozenset[str]:
+    """Return the flag words of a code."""
+    return frozenset(word for word, bit in _FLAG_BIT.items() if code & bit)
+
+
+def code_of(column: str, word: object) -> int:
+    """Return the code of a word in a column, -1 for None or a word of a later program."""
+    return WORDS[column].index(str(word)) if word is not None and str(word) in WORDS[column] else -1
+
+
+def centre_words(bits: bytes | None) -> NDArray[np.uint64]:
+    """Return the environment bits as words, zeros where there is no centre."""
+    if bits is None:
+        return np.zeros(_WORDS_PER_CENTRE, dtype=np.uint64)
+    return np.frombuffer(bits, dtype="<u8").astype(np.uint64)
+
+
+def build_table(columns: Mapping[str, Sequence[Any]]) -> FactTable:
+    """Code the store's columns.
+
+    Args:
+        columns: equal-length sequences: `code`, `verdict`, `yield_pct`, `date` (datetime.date or None), `shares`
+            (mapping of fate word to share, per run) and every field of DerivedFacts.
+
+    Returns:
+        The table, in the order given.
+    """
+    n = len(columns["code"])
+    nucleophile_words = tuple(dict.fromkeys(w for w in columns["nucleophile_class"] if w))
+    nucleophile_code: dict[object, int] = {w: i for i, w in enumerate(nucleophile_words)}
+    words = {
+        column: _coded(columns[column], {w: i for i, w in enumerate(vocabulary)})
+        for column, vocabulary in WORDS.items()
+    }
+    bits = np.zeros((n, _WORDS_PER_CENTRE), dtype=np.uint64)
+    with_centre = [i for i, b in enumerate(columns["centre_bits"]) if b]
+    if with_centre:
+        joined = b"".join(columns["centre_bits"][i] for i in with_centre)
+        bits[with_centre] = np.frombuffer(joined, dtype="<u8").reshape(-1, _WORDS_PER_CENTRE)
+    shares = np.full((n, len(FATES)), np.nan)
+    place = {str(f): i for i, f in enumerate(FATES)}
+    for row, split in enumerate(columns["shares"]):
+        if split:
+            shares[row] = 0.0
+            for fate, share in split.items():
+                shares[row, place[str(fate)]] = share
+    flag_of = {text: flag_code(text) for text in set(columns["flags"])}
+    protic_code = {None: -1, False: 0, True: 1, 0: 0, 1: 1}
+    return FactTable(
+        codes=tuple(columns["code"]),
+        words=words,
+        numbers={c: np.array([np.nan if v is None else v for v in columns[c]], dtype=np.float64) for c in NUMBERS},
+        nucleophile=np.fromiter(
+            (nucleophile_code.get(w, -1) for w in columns["nucleophile_class"]), dtype=np.int16, count=n
+        ),
+        nucleophile_words=nucleophile_words,
+        flags=np.fromiter((flag_of[t] for t in columns["flags"]), dtype=np.uint16, count=n),
+        protic=np.fromiter((protic_code[p] for p in columns["protic"]), dtype=np.int8, count=n),
+        centre_bits=bits,
+        shares=shares,
+        yield_pct=np.array([np.nan if v is None else v for v in columns["yield_pct"]], dtype=np.float64),
+        date=np.fromiter((d.toordinal() if d else 0 for d in columns["date"]), dtype=np.int32, count=n),
+        substrate=tuple(s or "" for s in columns["substrate"]),
+    )
+
+
+def one_row(facts: DerivedFacts) -> FactTable:
+    """Return a table of one row for a plan: facts, no outcome."""
+    fields = {name: [getattr(facts, name)] for name in DerivedFacts.__slots__ if name not in ("run_id", "recipe")}
+    return build_table(
+        fields | {"code": ["plan"], "verdict": [None], "yield_pct": [None], "date": [None], "shares": [{}]}
+    )
+
+
+def _coded(values: Sequence[Any], code: Mapping[str, int]) -> NDArray[np.int8]:
+    return np.fromiter(
+        (code.get(str(v), -1) if v is not None else -1 for v in values), dtype=np.int8, count=len(values)
+    )
