@@ -1,0 +1,82 @@
+"""The arithmetic of evidence, checked against scipy's distributions and against what honesty demands."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from scipy import stats
+from tables_by_hand import facts, table_of
+
+from kb.assess.estimate import beta_interval, estimate, loss_chance
+from kb.vocabulary import Basis, Fate
+
+
+def runs(*shares: float, yield_pct: float | None = None):  # type: ignore[no-untyped-def]
+    return table_of(*((facts(), {"substitution": s, "elimination": 1 - s}, yield_pct, "worked") for s in shares))
+
+
+def main(result) -> tuple[float, float, float]:  # type: ignore[no-untyped-def]
+    interval = dict(result.fates)[Fate.SUBSTITUTION]
+    return interval.mean, interval.low, interval.high
+
+
+@pytest.mark.parametrize(("mean", "concentration"), [(0.5, 2.0), (0.9, 10.0), (0.2, 40.0), (0.03, 5.0)])
+def test_intervals_agree_with_the_beta_quantiles_of_scipy(mean: float, concentration: float) -> None:
+    # reference: scipy.stats.beta.ppf; samples are good to about one point
+    got = beta_interval(mean, concentration)
+    low, high = stats.beta.ppf([0.1, 0.9], mean * concentration, (1 - mean) * concentration)
+    assert got.low == pytest.approx(low, abs=0.02)
+    assert got.high == pytest.approx(high, abs=0.02)
+
+
+def test_chance_of_loss_is_the_jeffreys_mean() -> None:
+    # Beta(lost + 1/2, survived + 1/2): Brown, Cai, DasGupta, Statistical Science 2001, 16, 101 (memory)
+    assert loss_chance(5, 2).mean == pytest.approx(5.5 / 8, abs=1e-4)
+
+
+def test_agreeing_runs_narrow_the_interval_and_disagreeing_ones_widen_it() -> None:
+    one = runs(0.8)
+    agreeing = runs(0.8, 0.82, 0.79, 0.81)
+    fighting = runs(0.85, 0.3, 0.85, 0.3)
+    width = [m[2] - m[1] for m in (main(estimate(np.ones(len(t)), t)) for t in (agreeing, one, fighting))]
+    assert width[0] < width[1] < width[2]
+
+
+def test_a_disagreement_is_said_in_words() -> None:
+    table = runs(0.85, 0.3)
+    assert "disagree" in estimate(np.ones(2), table).note
+
+
+def test_shares_sum_to_one() -> None:
+    table = runs(0.7, 0.9)
+    result = estimate(np.ones(2), table, {Fate.SUBSTITUTION: 0.5, Fate.ELIMINATION: 0.5})
+    assert sum(i.mean for _, i in result.fates) == pytest.approx(1, abs=1e-3)
+
+
+def test_far_runs_have_no_say_and_nothing_is_invented() -> None:
+    result = estimate(np.full(3, 0.2), runs(0.7, 0.9, 0.8), None, None, "Bridgehead: neither way is open.")
+    assert result.fates == ()
+    assert result.basis is Basis.NONE
+    assert result.note == "Bridgehead: neither way is open."
+
+
+def test_near_runs_outweigh_the_prior_and_far_ones_do_not() -> None:
+    prior = {Fate.SUBSTITUTION: 0.1, Fate.ELIMINATION: 0.9}
+    near = main(estimate(np.ones(4), runs(0.9, 0.9, 0.9, 0.9), prior))[0]
+    far = main(estimate(np.full(4, 0.45), runs(0.9, 0.9, 0.9, 0.9), prior))[0]
+    assert near > 0.75 > far
+
+
+def test_a_split_that_does_not_add_up_is_scaled() -> None:
+    table = table_of((facts(), {"substitution": 0.6, "elimination": 0.3}, None, "worked"))
+    assert main(estimate(np.ones(1), table))[0] == pytest.approx(2 / 3, abs=1e-3)
+
+
+def test_yield_lies_between_0_and_100_even_from_a_wet_product() -> None:
+    result = estimate(np.ones(3), runs(0.9, 0.9, 0.9, yield_pct=118.0))
+    assert result.yield_pct is not None
+    assert 0 <= result.yield_pct.low <= result.yield_pct.mean <= result.yield_pct.high <= 100
+
+
+def test_no_yield_recorded_gives_no_yield() -> None:
+    assert estimate(np.ones(2), runs(0.9, 0.8)).yield_pct is None

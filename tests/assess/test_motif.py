@@ -1,0 +1,49 @@
+"""The motif of a failure, generalised from what was found. Structures are ordinary textbook ones."""
+
+from __future__ import annotations
+
+from rdkit import Chem
+
+from kb.assess.motif import generalise, lost_atoms
+
+
+def mol(smiles: str) -> Chem.Mol:
+    return Chem.MolFromSmiles(smiles)
+
+
+ETHER = mol("CC(C)(C)OCCc1ccccc1")
+ALCOHOL = mol("OCCc1ccccc1")
+
+
+def test_the_lost_atoms_are_those_the_product_no_longer_has() -> None:
+    lost = lost_atoms(ETHER, ALCOHOL)
+    assert sorted(ETHER.GetAtomWithIdx(a).GetSymbol() for a in lost) == ["C", "C", "C", "C"]
+
+
+def test_nothing_is_lost_from_a_substrate_that_came_back() -> None:
+    assert lost_atoms(ETHER, ETHER) == frozenset()
+
+
+def test_the_motif_is_the_smallest_that_leaves_the_survivors_out() -> None:
+    motif = generalise(ETHER, lost_atoms(ETHER, ALCOHOL), [mol("COCCc1ccccc1"), mol("CC(C)OCCc1ccccc1")])
+    assert motif is not None
+    assert motif.radius == 0
+    query = Chem.MolFromSmarts(motif.smarts)
+    assert mol("CC(C)(C)OC1CCCCC1").HasSubstructMatch(query), "another tert-butyl ether is like it"
+    assert not mol("COC1CCCCC1").HasSubstructMatch(query)
+
+
+def test_a_survivor_next_door_makes_the_motif_grow() -> None:
+    aryl = mol("CC(C)(C)Oc1ccccc1C")
+    phenol = mol("Oc1ccccc1C")
+    narrow = generalise(aryl, lost_atoms(aryl, phenol), [])
+    wide = generalise(aryl, lost_atoms(aryl, phenol), [mol("CC(C)(C)OCCC")])
+    assert narrow is not None and wide is not None
+    assert wide.radius > narrow.radius
+    assert not mol("CC(C)(C)OCCC").HasSubstructMatch(Chem.MolFromSmarts(wide.smarts))
+
+
+def test_a_contradiction_is_marked_not_hidden() -> None:
+    motif = generalise(ETHER, lost_atoms(ETHER, ALCOHOL), [ETHER])
+    assert motif is not None
+    assert motif.is_contradicted
