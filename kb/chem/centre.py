@@ -1,0 +1,347 @@
+"""Where a bond can break: leaving groups in a fragment, the class of the carbon, and what stands beside it.
+
+It proposes every bond from carbon to something that chemistry knows to depart, good or poor, and ranks them; whether
+it does depart is for the match with the product (`matching`) or, when no product is stated, for the rank. Vinyl and
+aryl carbons are reported with their class so that a reader sees why nothing happens there.
+
+Carbon class counts carbon neighbours (IUPAC usage); bridgehead, vinyl and aryl win over the count. The bridgehead
+test is geometric bookkeeping: an sp3 carbon with three ring bonds whose rings share more than one bond (bridged, as in
+norbornane or adamantane), or that closes a cage of small rings (as in cubane); a fused junction (decalin) is none.
+Source of the ladder in `_RANK`: common practice, the order of textbook leaving-group tables.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from kb.chem.facts import Centre
+from kb.chem.molgraph import AROMATIC, Molgraph
+from kb.vocabulary import CarbonClass, CentreFlag, LeavingGroup
+
+HALOGENS = {9: LeavingGroup.FLUORIDE, 17: LeavingGroup.CHLORIDE, 35: LeavingGroup.BROMIDE, 53: LeavingGroup.IODIDE}
+
+_RANK = {
+    LeavingGroup.DIAZONIUM: 100,
+    LeavingGroup.TRIFLATE: 95,
+    LeavingGroup.IODIDE: 85,
+    LeavingGroup.TOSYLATE: 80,
+    LeavingGroup.MESYLATE: 80,
+    LeavingGroup.SULFONATE: 80,
+    LeavingGroup.BROMIDE: 75,
+    LeavingGroup.SULFATE: 72,
+    LeavingGroup.SULFONIUM: 60,
+    LeavingGroup.CHLORIDE: 55,
+    LeavingGroup.EPOXIDE: 50,
+    LeavingGroup.PHOSPHATE: 45,
+    LeavingGroup.AMMONIUM: 30,
+    LeavingGroup.CARBOXYLATE: 15,
+    LeavingGroup.HYDROXYL: 12,
+    LeavingGroup.NITRO: 8,
+    LeavingGroup.FLUORIDE: 8,
+    LeavingGroup.OTHER: 5,
+    LeavingGroup.ALKOXIDE: 4,
+}
+
+GOOD_RANK = 30
+"""From this rank on a group departs without being activated first."""
+
+
+@dataclass(frozen=True, slots=True)
+class LeavingSite:
+    """A bond from carbon to a group that can depart.
+
+    Attributes:
+        centre: carbon [canonical number].
+        leaving: departing atom bonded to it.
+        group: its word.
+        departs: the atoms that go; None when the group stays tied on by a ring (epoxide, cyclic sulfate).
+        carbon_class: class of the centre.
+        rank: how readily, higher first; from the ladder, mended for the carbon.
+    """
+
+    centre: int
+    leaving: int
+    group: LeavingGroup
+    departs: frozenset[int] | None
+    carbon_class: CarbonClass
+    rank: int
+
+    @property
+    def is_sp3(self) -> bool:
+        """Return whether displacement at this carbon is a question at all."""
+        return self.carbon_class not in (CarbonClass.VINYL, CarbonClass.ARYL)
+
+    @property
+    def leaves_unaided(self) -> bool:
+        """Return whether the group departs without activation."""
+        return _RANK[self.group] >= GOOD_RANK
+
+
+def find_leaving_sites(graph: Molgraph) -> tuple[LeavingSite, ...]:
+    """Return every leaving group of a fragment, best first; empty when there is none."""
+    known = graph.memo.get("leaving")
+    if known is None:
+        sites = []
+        for centre, element in enumerate(graph.elements):
+            if element != 6 or graph.charges[centre] > 0:
+                continue
+            carbon_class: CarbonClass | None = None
+            for leaving, code in graph.neighbours[centre].items():
+                if code != 1 or graph.elements[leaving] == 6:
+                    continue
+                group = find_leaving_group(graph, centre, leaving)
+                if group is None:
+                    continue
+                carbon_class = carbon_class or find_carbon_class(graph, centre)
+                if carbon_class is None:
+                    break
+                if carbon_class in (CarbonClass.VINYL, CarbonClass.ARYL) and _RANK[group] < 8:
+                    continue
+                departs = graph.side_of(leaving, centre)
+                sites.append(
+                    LeavingSite(
+                        centre,
+                        leaving,
+                        group,
+                        None if departs is None else frozenset(departs),
+                        carbon_class,
+                        _RANK[group] + _readiness(graph, centre, carbon_class),
+                    )
+                )
+        known = tuple(sorted(sites, key=lambda s: (-s.rank, s.centre, s.leaving)))
+        graph.memo["leaving"] = known
+    return known  # type: ignore[return-value]
+
+
+def find_leaving_group(graph: Molgraph, centre: int, leaving: int) -> LeavingGroup | None:
+    """Return the word for the group that leaves with atom `leaving`, or None when nothing departs there."""
+    element, charge = graph.elements[leaving], graph.charges[leaving]
+    bonds = graph.neighbours[leaving]
+    others = [n for n in bonds if n != centre]
+    if element in HALOGENS:
+        if charge > 0:
+            return LeavingGroup.OTHER
+        return HALOGENS[element] if not others else None
+    if element == 8:
+        return _oxygen_group(graph, leaving, others)
+    if element == 7:
+        if charge > 0:
+            if any(graph.elements[n] == 7 and bonds[n] in (2, 3) for n in others):
+                return LeavingGroup.DIAZONIUM if any(bonds[n] == 3 for n in others) else None
+            if sum(graph.elements[n] == 8 for n in others) == 2:
+                return LeavingGroup.NITRO
+            if any(bonds[n] == 3 for n in others) or any(graph.charges[n] < 0 for n in others):
+                return None
+            return LeavingGroup.AMMONIUM
+        return None if charge or graph.has_multiple_bond(leaving) else LeavingGroup.OTHER
+    if element == 16:
+        if charge > 0:
+            return LeavingGroup.SULFONIUM
+        return LeavingGroup.OTHER if charge == 0 else None
+    if element == 15 and charge > 0:
+        return LeavingGroup.OTHER
+    return LeavingGroup.OTHER if element in (34, 52) else None
+
+
+def _oxygen_group(graph: Molgraph, oxygen: int, others: list[int]) -> LeavingGroup | None:
+    """Return the word for a group that leaves through oxygen."""
+    if not others:
+        return LeavingGroup.HYDROXYL
+    if graph.charges[oxygen] > 0:
+        return LeavingGroup.ALKOXIDE
+    other = others[0]
+    element, bonds = graph.elements[other], graph.neighbours[other]
+    oxo = [n for n, code in bonds.items() if code == 2 and graph.elements[n] == 8]
+    if element == 16:
+        if len(oxo) < 2:
+            return LeavingGroup.OTHER
+        return _sulfonyl_group(graph, oxygen, other, oxo)
+    if element == 15:
+        return LeavingGroup.PHOSPHATE
+    if element == 6:
+        if oxo:
+            return LeavingGroup.CARBOXYLATE
+        if any(code == 2 and graph.elements[n] in (7, 16) for n, code in bonds.items()):
+            return LeavingGroup.OTHER
+        is_three_ring = any(n in graph.neighbours[oxygen] for n in bonds if n != oxygen)
+        return LeavingGroup.EPOXIDE if is_three_ring else LeavingGroup.ALKOXIDE
+    return LeavingGroup.ALKOXIDE if element in (5, 14) else LeavingGroup.OTHER
+
+
+def _sulfonyl_group(graph: Molgraph, oxygen: int, sulfur: int, oxo: list[int]) -> LeavingGroup:
+    """Return which sulfonate it is, by what else the sulfur carries."""
+    rest = [n for n in graph.neighbours[sulfur] if n != oxygen and n not in oxo]
+    if not rest:
+        return LeavingGroup.SULFONATE
+    carrier = rest[0]
+    if graph.elements[carrier] == 8:
+        return LeavingGroup.SULFATE
+    if graph.elements[carrier] != 6:
+        return LeavingGroup.SULFONATE
+    beyond = [n for n in graph.neighbours[carrier] if n != sulfur]
+    if not beyond:
+        return LeavingGroup.MESYLATE
+    if len(beyond) == 3 and all(graph.elements[n] == 9 for n in beyond):
+        return LeavingGroup.TRIFLATE
+    return LeavingGroup.TOSYLATE if _is_para_tolyl(graph, carrier) else LeavingGroup.SULFONATE
+
+
+def _is_para_tolyl(graph: Molgraph, ipso: int) -> bool:
+    """Return whether the aromatic carbon starts a 4-methylphenyl group with nothing else on it."""
+    if not graph.aromatic[ipso] or graph.elements[ipso] != 6:
+        return False
+    ring = {ipso}
+    edge = [ipso]
+    while edge:
+        here = edge.pop()
+        for n, code in graph.neighbours[here].items():
+            if code == AROMATIC and n not in ring:
+                ring.add(n)
+                edge.append(n)
+    if len(ring) != 6 or any(graph.elements[a] != 6 for a in ring):
+        return False
+    methyls = [
+        a
+        for a in ring
+        for n in graph.neighbours[a]
+        if n not in ring and a != ipso and graph.elements[n] == 6 and graph.hydrogens[n] == 3
+    ]
+    hydrogens = sum(graph.hydrogens[a] for a in ring)
+    if len(methyls) != 1 or hydrogens != 4:
+        return False
+    meta = [n for o in graph.neighbours[ipso] if o in ring for n in graph.neighbours[o] if n in ring and n != ipso]
+    return methyls[0] not in meta and methyls[0] not in graph.neighbours[ipso]
+
+
+def find_carbon_class(graph: Molgraph, centre: int) -> CarbonClass | None:
+    """Return the class of a carbon; None for carbonyl, nitrile and other carbons that no class describes."""
+    if graph.aromatic[centre]:
+        return CarbonClass.ARYL
+    if graph.has_multiple_bond(centre):
+        return CarbonClass.VINYL if graph.has_multiple_bond(centre, 6) else None
+    if not graph.is_sp3_carbon(centre):
+        return None
+    if is_bridgehead(graph, centre):
+        return CarbonClass.BRIDGEHEAD
+    carbons = sum(graph.elements[n] == 6 for n in graph.neighbours[centre])
+    return (CarbonClass.METHYL, CarbonClass.PRIMARY, CarbonClass.SECONDARY, CarbonClass.TERTIARY)[min(carbons, 3)]
+
+
+def is_bridgehead(graph: Molgraph, atom: int) -> bool:
+    """Return whether an sp3 atom sits at a bridgehead or cage corner, so that it cannot become flat."""
+    if not graph.in_ring[atom]:
+        return False
+    ring_bonds = [n for n in graph.neighbours[atom] if graph.in_ring[n]]
+    if len(ring_bonds) < 3:
+        return False
+    rings = [frozenset(r) for r in graph.mol.GetRingInfo().AtomRings() if atom in r and len(r) <= 8]
+    for i, first in enumerate(rings):
+        if any(len(first & second) > 2 for second in rings[i + 1 :]):
+            return True
+    small = [r for r in rings if len(r) <= 5]
+    return len(small) >= 3 and all(sum(n in r for r in small) >= 2 for n in ring_bonds[:3])
+
+
+def _readiness(graph: Molgraph, centre: int, carbon_class: CarbonClass) -> int:
+    """Return how much the carbon itself raises or lowers the rank of its leaving group."""
+    if carbon_class in (CarbonClass.VINYL, CarbonClass.ARYL):
+        return -200
+    if carbon_class is CarbonClass.BRIDGEHEAD:
+        return -60
+    step = {CarbonClass.METHYL: 6, CarbonClass.PRIMARY: 4, CarbonClass.SECONDARY: 1, CarbonClass.TERTIARY: 2}[
+        carbon_class
+    ]
+    for n in graph.neighbours[centre]:
+        if graph.aromatic[n] or (graph.elements[n] == 6 and graph.has_multiple_bond(n)):
+            step += 6
+            break
+    halogens = sum(graph.elements[n] in HALOGENS for n in graph.neighbours[centre])
+    return step - 25 * max(halogens - 1, 0)
+
+
+def find_flags(graph: Molgraph, centre: int, leaving: int | None) -> tuple[CentreFlag, ...]:
+    """Return what stands beside a centre, in vocabulary order."""
+    flags = set()
+    for n in graph.neighbours[centre]:
+        if n == leaving:
+            continue
+        if graph.aromatic[n]:
+            flags.add(CentreFlag.BENZYLIC)
+        elif graph.elements[n] in (7, 8, 16):
+            flags.add(CentreFlag.ALPHA_HETEROATOM)
+        elif graph.elements[n] == 6:
+            flags |= _carbon_neighbour_flags(graph, centre, n)
+    rings = [r for r in graph.mol.GetRingInfo().AtomRings() if centre in r and leaving not in r]
+    if rings:
+        flags.add(CentreFlag.RING)
+        if min(len(r) for r in rings) <= 4:
+            flags.add(CentreFlag.SMALL_RING)
+    return tuple(flag for flag in CentreFlag if flag in flags)
+
+
+def _carbon_neighbour_flags(graph: Molgraph, centre: int, n: int) -> set[CentreFlag]:
+    """Return the flags that one carbon neighbour gives the centre."""
+    bonds = graph.neighbours[n]
+    for other, code in bonds.items():
+        if code == 2:
+            if graph.elements[other] == 6:
+                return {CentreFlag.ALLYLIC}
+            return {CentreFlag.ALPHA_CARBONYL} if graph.elements[other] in (7, 8, 16) else set()
+        if code == 3:
+            return {CentreFlag.PROPARGYLIC if graph.elements[other] == 6 else CentreFlag.ALPHA_CARBONYL}
+    beyond = [o for o in bonds if o != centre and graph.elements[o] == 6]
+    flags = set()
+    if len(beyond) == 3:
+        flags.add(CentreFlag.NEOPENTYL)
+    if len(beyond) >= 2:
+        flags.add(CentreFlag.BETA_BRANCHED)
+    if any(graph.aromatic[o] for o in beyond):
+        flags.add(CentreFlag.HOMOBENZYLIC)
+    return flags
+
+
+def count_beta_hydrogens(graph: Molgraph, centre: int) -> int:
+    """Return the hydrogens on sp3 carbons beside the centre."""
+    return sum(graph.hydrogens[n] for n in graph.neighbours[centre] if graph.is_sp3_carbon(n))
+
+
+def has_drawn_configuration(graph: Molgraph, atom: int) -> bool:
+    """Return whether the atom was drawn with a configuration."""
+    return int(graph.mol.GetAtomWithIdx(atom).GetChiralTag()) in (1, 2)
+
+
+def describe_centre(
+    graph: Molgraph,
+    centre: int,
+    leaving: int | None,
+    *,
+    component: int,
+    entered: tuple[int, ...],
+    maps: tuple[int, ...],
+    group: LeavingGroup | None = None,
+) -> Centre:
+    """Return the facts about a centre in the numbering of the entry.
+
+    Args:
+        graph: the fragment.
+        centre: carbon [canonical number].
+        leaving: departing atom [canonical number]; None for an addition.
+        component: which left-side fragment it is.
+        entered: canonical number -> position as entered.
+        maps: canonical number -> map as entered, 0 = none.
+        group: the word for the leaving group when the caller knows it; None = looked up.
+    """
+    if leaving is not None and group is None:
+        group = find_leaving_group(graph, centre, leaving) or LeavingGroup.OTHER
+    return Centre(
+        component=component,
+        atom=entered[centre],
+        atom_map=maps[centre] or None,
+        carbon_class=find_carbon_class(graph, centre) or CarbonClass.VINYL,
+        leaving_group=group,
+        leaving_atom=None if leaving is None else entered[leaving],
+        leaving_atom_map=None if leaving is None else maps[leaving] or None,
+        flags=find_flags(graph, centre, leaving),
+        beta_hydrogens=count_beta_hydrogens(graph, centre),
+        is_stereocentre=has_drawn_configuration(graph, centre),
+    )

@@ -1,0 +1,262 @@
+"""Groups that acid, base or fluoride takes off, and the plain hydrolyses that are no loss of a protecting group.
+
+For each it says which bonds break and which side keeps the electrons; it does not say whether the conditions do
+it (that is `kb.assess`) nor draws the product (`fates_loss`). Hydrolysis of an ordinary ester or amide is listed too,
+named as what it is (`Fate.OTHER`): it must be recognised so as not to be taken for a displacement, and it often
+follows another step in the same flask.
+
+Names are the trade's; the classes of promoter (acid, base, fluoride, thiol...) follow common practice.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from kb.chem.molgraph import Molgraph
+from kb.vocabulary import Fate
+
+
+@dataclass(frozen=True, slots=True)
+class BondLoss:
+    """A bond that breaks: `kept` stays, `gone` and all behind it go; `gain` as in `skeleton.Cut`."""
+
+    kept: int
+    gone: int
+    departs: frozenset[int]
+    gain: int
+
+
+@dataclass(frozen=True, slots=True)
+class LabileGroup:
+    """A group that can come off.
+
+    Attributes:
+        name: `Boc`, `tert-butyl ester`, `THP`... in words for a note.
+        fate: group-loss, or other for a plain hydrolysis.
+        promoter: acid, base, fluoride, hydrogenolysis or any: what usually takes it off.
+        losses: the bonds that break.
+        carbon: the carbon from which the kept or lost heteroatom parts (for Boc the tert-butyl carbon).
+        leaving: the atom that parts from that carbon.
+    """
+
+    name: str
+    fate: Fate
+    promoter: str
+    losses: tuple[BondLoss, ...]
+    carbon: int
+    leaving: int
+
+
+def find_labile_groups(graph: Molgraph) -> tuple[LabileGroup, ...]:
+    """Return every group of a fragment that can come off by acid, base, fluoride or water."""
+    known = graph.memo.get("labile")
+    if known is None:
+        found: list[LabileGroup] = []
+        for atom, element in enumerate(graph.elements):
+            if element in (7, 8, 16) and graph.charges[atom] >= 0:
+                found.extend(_groups_on(graph, atom))
+            elif element == 6:
+                acetal = _acetal(graph, atom)
+                if acetal is not None:
+                    found.append(acetal)
+                ketal = _diol_acetal(graph, atom)
+                if ketal is not None:
+                    found.append(ketal)
+        known = tuple(found)
+        graph.memo["labile"] = known
+    return known  # type: ignore[return-value]
+
+
+def _loss(graph: Molgraph, kept: int, gone: int, gain: int) -> BondLoss | None:
+    """Return the loss of everything behind a bond; None when a ring holds it."""
+    departs = graph.side_of(gone, kept)
+    return None if departs is None else BondLoss(kept, gone, frozenset(departs), gain)
+
+
+def _groups_on(graph: Molgraph, atom: int) -> list[LabileGroup]:
+    """Return the groups that one N, O or S atom can lose."""
+    found = []
+    bonds = graph.neighbours[atom]
+    if graph.has_multiple_bond(atom) or len(bonds) < 2:
+        return []
+    for n, code in bonds.items():
+        if code not in (1, 4) or (graph.aromatic[atom] and graph.aromatic[n]):
+            continue
+        element = graph.elements[n]
+        if element == 14:
+            loss = _loss(graph, atom, n, 1)
+            if loss:
+                found.append(LabileGroup("silyl", Fate.GROUP_LOSS, "fluoride", (loss,), n, atom))
+        elif element == 5:
+            loss = _loss(graph, atom, n, 1)
+            if loss:
+                found.append(LabileGroup("boryl", Fate.OTHER, "any", (loss,), n, atom))
+        elif element == 6:
+            group = _carbon_group(graph, atom, n)
+            if group is not None:
+                found.append(group)
+        elif element == 16 and graph.elements[atom] == 7 and graph.has_multiple_bond(n, 8):
+            loss = _loss(graph, atom, n, 1)
+            if loss:
+                found.append(LabileGroup("sulfonyl", Fate.OTHER, "any", (loss,), n, atom))
+    return found
+
+
+def _carbon_group(graph: Molgraph, atom: int, carbon: int) -> LabileGroup | None:
+    """Return the group that is lost by breaking a bond from N, O or S to carbon, the heteroatom keeping the pair."""
+    loss = _loss(graph, atom, carbon, 1)
+    if loss is None:
+        return None
+    oxo = any(graph.elements[n] == 8 and code == 2 for n, code in graph.neighbours[carbon].items())
+    if oxo:
+        return _acyl_group(graph, atom, carbon, loss)
+    if not graph.is_sp3_carbon(carbon):
+        return None
+    name, promoter, fate = _alkyl_group(graph, atom, carbon)
+    return LabileGroup(name, fate, promoter, (loss,), carbon, atom)
+
+
+def _acyl_group(graph: Molgraph, atom: int, carbon: int, loss: BondLoss) -> LabileGroup:
+    """Return the acyl, carbamate or carbonate group on a heteroatom."""
+    where = {7: "N", 8: "O", 16: "S"}[graph.elements[atom]]
+    alkoxy = [
+        n
+        for n, code in graph.neighbours[carbon].items()
+        if n != atom and code == 1 and graph.elements[n] == 8 and len(graph.neighbours[n]) == 2
+    ]
+    if alkoxy and graph.side_of(carbon, alkoxy[0]) is not None:
+        oxygen = alkoxy[0]
+        root = next(n for n in graph.neighbours[oxygen] if n != carbon)
+        name, promoter = _carbamate_name(graph, root)
+        if name:
+            return LabileGroup(f"{where}-{name}", Fate.GROUP_LOSS, promoter, (loss,), root, oxygen)
+        return LabileGroup(f"{where}-alkoxycarbonyl", Fate.OTHER, "base", (loss,), carbon, atom)
+    beyond = [n for n in graph.neighbours[carbon] if n != atom and graph.elements[n] == 6]
+    if where != "N" and len(loss.departs) <= 3 and not graph.in_ring[carbon]:
+        return LabileGroup("acetyl" if beyond else "formyl", Fate.GROUP_LOSS, "base", (loss,), carbon, atom)
+    if beyond and sum(graph.elements[n] == 9 for n in graph.neighbours[beyond[0]]) == 3:
+        return LabileGroup("trifluoroacetyl", Fate.GROUP_LOSS, "base", (loss,), carbon, atom)
+    return LabileGroup("acyl", Fate.OTHER, "base", (loss,), carbon, atom)
+
+
+def _carbamate_name(graph: Molgraph, root: int) -> tuple[str, str]:
+    """Return (name, promoter) of the alkyl part of a carbamate or carbonate; empty for an ordinary one."""
+    if not graph.is_sp3_carbon(root):
+        return "", ""
+    carbons = [n for n in graph.neighbours[root] if graph.elements[n] == 6]
+    if len(carbons) == 3:
+        return ("Boc", "acid") if all(graph.hydrogens[n] == 3 for n in carbons) else ("tert-alkoxycarbonyl", "acid")
+    if len(carbons) == 1 and graph.aromatic[carbons[0]]:
+        return "Cbz", "hydrogenolysis"
+    if len(carbons) == 1 and graph.elements[carbons[0]] == 6:
+        ring = carbons[0]
+        if sum(graph.aromatic[n] for n in graph.neighbours[ring]) == 2:
+            return "Fmoc", "base"
+        if any(graph.elements[n] == 14 for n in graph.neighbours[ring]):
+            return "Teoc", "fluoride"
+        if graph.has_multiple_bond(ring, 6):
+            return "Alloc", "palladium"
+    return "", ""
+
+
+def _alkyl_group(graph: Molgraph, atom: int, carbon: int) -> tuple[str, str, Fate]:
+    """Return (name, promoter, fate) for an sp3 carbon on N, O or S."""
+    holder = _holder_word(graph, atom, carbon)
+    carbons = [n for n in graph.neighbours[carbon] if graph.elements[n] == 6]
+    aryls = [n for n in carbons if graph.aromatic[n]]
+    hetero = [n for n in graph.neighbours[carbon] if n != atom and graph.elements[n] in (7, 8, 16)]
+    if any(graph.elements[n] == 14 for n in graph.neighbours[carbon]):
+        return f"silylmethyl {holder}", "fluoride", Fate.OTHER
+    if hetero:
+        oxygen = next((n for n in hetero if graph.elements[n] == 8), None)
+        if oxygen is not None and len(graph.neighbours[oxygen]) == 2:
+            if graph.in_ring[carbon] and graph.in_ring[oxygen]:
+                return f"tetrahydropyranyl-type {holder}", "acid", Fate.GROUP_LOSS
+            return f"alkoxymethyl {holder}", "acid", Fate.GROUP_LOSS
+        return f"aminal {holder}", "acid", Fate.OTHER
+    if len(aryls) == 3:
+        return f"trityl {holder}", "acid", Fate.GROUP_LOSS
+    if len(aryls) == 2:
+        return f"benzhydryl {holder}", "acid", Fate.GROUP_LOSS
+    if len(carbons) == 3 and not aryls:
+        methyls = sum(graph.hydrogens[n] == 3 for n in carbons)
+        name = "tert-butyl" if methyls == 3 else "tert-alkyl"
+        return f"{name} {holder}", "acid", Fate.GROUP_LOSS
+    if len(carbons) == 3:
+        return f"cumyl-type {holder}", "acid", Fate.GROUP_LOSS
+    if aryls and len(carbons) == 1:
+        if _has_para_donor(graph, aryls[0]):
+            return f"methoxybenzyl {holder}", "acid", Fate.GROUP_LOSS
+        return f"benzyl {holder}", "hydrogenolysis", Fate.GROUP_LOSS
+    return f"alkyl {holder}", "any", Fate.OTHER
+
+
+def _holder_word(graph: Molgraph, atom: int, carbon: int) -> str:
+    """Return ester, ether, amine, amide or sulfide: what the heteroatom was part of."""
+    element = graph.elements[atom]
+    if element == 16:
+        return "sulfide"
+    rest = [n for n in graph.neighbours[atom] if n != carbon]
+    acylated = any(graph.has_multiple_bond(n, 8) for n in rest)
+    if element == 8:
+        return "ester" if acylated else "ether"
+    return "amide" if acylated else "amine"
+
+
+def _has_para_donor(graph: Molgraph, ipso: int) -> bool:
+    """Return whether an aromatic carbon has a singly bonded oxygen ortho or para to it."""
+    ortho = [n for n in graph.neighbours[ipso] if graph.aromatic[n]]
+    meta = {m for n in ortho for m in graph.neighbours[n] if graph.aromatic[m] and m != ipso}
+    para = {p for m in meta for p in graph.neighbours[m] if graph.aromatic[p] and p not in ortho}
+    return any(
+        graph.elements[x] == 8 and not graph.aromatic[x] for a in [*para, *ortho] for x in graph.neighbours[a]
+    )
+
+
+def _acetal(graph: Molgraph, carbon: int) -> LabileGroup | None:
+    """Return the loss that turns an acetal or ketal carbon into its carbonyl group."""
+    if not graph.is_sp3_carbon(carbon):
+        return None
+    oxygens = [n for n in graph.neighbours[carbon] if graph.elements[n] == 8 and len(graph.neighbours[n]) == 2]
+    if len(oxygens) != 2:
+        return None
+    stays, goes = oxygens
+    alkyl = next(n for n in graph.neighbours[stays] if n != carbon)
+    if not graph.is_sp3_carbon(alkyl):
+        return None
+    lost = {goes, alkyl}
+    stack = [goes, alkyl]
+    while stack:
+        here = stack.pop()
+        for n in graph.neighbours[here]:
+            if {here, n} in ({carbon, goes}, {stays, alkyl}) or n in lost:
+                continue
+            if n in (carbon, stays):
+                return None
+            lost.add(n)
+            stack.append(n)
+    losses = (
+        BondLoss(stays, alkyl, frozenset(lost), 1),
+        BondLoss(carbon, goes, frozenset(lost), -1),
+    )
+    return LabileGroup("acetal", Fate.GROUP_LOSS, "acid", losses, carbon, goes)
+
+
+def _diol_acetal(graph: Molgraph, carbon: int) -> LabileGroup | None:
+    """Return the loss of a small acetal carbon from a diol or amino alcohol (acetonide, benzylidene, methylene)."""
+    if not graph.is_sp3_carbon(carbon) or not graph.in_ring[carbon]:
+        return None
+    hetero = [n for n in graph.neighbours[carbon] if graph.elements[n] in (7, 8) and graph.in_ring[n]]
+    if len(hetero) != 2:
+        return None
+    lost = {carbon}
+    stack = [n for n in graph.neighbours[carbon] if n not in hetero]
+    while stack:
+        here = stack.pop()
+        if here in hetero:
+            return None
+        if here not in lost:
+            lost.add(here)
+            stack.extend(n for n in graph.neighbours[here] if n not in lost)
+    losses = tuple(BondLoss(h, carbon, frozenset(lost), 1) for h in hetero)
+    return LabileGroup("diol acetal", Fate.GROUP_LOSS, "acid", losses, carbon, hetero[0])
