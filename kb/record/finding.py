@@ -68,6 +68,8 @@ class Finding:
         do_instead: what others do, most useful first.
         source: where the rule comes from, with "(memory)" where it is.
         is_uncertain: the conditions left the rule open ("cannot tell: temperature not given").
+        side_products: every structure that could form, `side_product` first; no ranking is meant beyond that.
+        also: ids of other rules that fired on the same place and are told in this finding.
     """
 
     rule_id: str
@@ -82,6 +84,8 @@ class Finding:
     do_instead: tuple[str, ...] = ()
     source: str = ""
     is_uncertain: bool = False
+    side_products: tuple[str, ...] = ()
+    also: tuple[str, ...] = ()
 
     def as_dict(self) -> dict[str, Any]:
         """Return the contract's JSON object."""
@@ -98,4 +102,6 @@ class Finding:
             "do_instead": list(self.do_instead),
             "source": self.source,
             "is_uncertain": self.is_uncertain,
+            "side_products": list(self.side_products),
+            "also": list(self.also),
         }

@@ -1,0 +1,87 @@
+"""The fragments of a scheme as the liability search needs them: read, told apart, and numbered as entered.
+
+It owns which left-side fragments can carry a group worth keeping (the substrate and what it is joined
+with, not solvents and reagents), where second reactants are looked for, and the way back from searched
+atoms to atoms as entered. A fragment that cannot be read is passed over: the reading has said so.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from functools import lru_cache
+
+from rdkit import Chem, rdBase
+
+from kb.assess.liability_rule import Rule, compile_motif
+from kb.chem.facts import Reading
+from kb.materials.profile import ConditionProfile
+
+_ENTERED = "_entered"
+
+
+def read_fragments(fragments: Sequence[str], reading: Reading) -> tuple[tuple[int, Chem.Mol, bool], ...]:
+    """Return (component, molecule, is a reactant) for each fragment that can be read.
+
+    Only reactants are searched for motifs. A fragment that holds a centre or the nucleophile is one; of the
+    others, those that hold carbon and are no catalogued solvent or reagent.
+    """
+    certain = {c.component for c in reading.centres}
+    if reading.nucleophile is not None:
+        certain.add(reading.nucleophile.component)
+    read = [(i, mol) for i, smiles in enumerate(fragments) if (mol := _read(smiles)) is not None]
+    carbon = [(i, mol) for i, mol in read if any(a.GetAtomicNum() == 6 for a in mol.GetAtoms())]
+    reactants = certain | {i for i, mol in carbon if not _is_material(mol)}
+    if not reactants and carbon:
+        reactants = {max(carbon, key=lambda pair: pair[1].GetNumHeavyAtoms())[0]}
+    return tuple((i, mol, i in reactants) for i, mol in read)
+
+
+def find_partners(
+    rule: Rule,
+    component: int | None,
+    flask: Sequence[tuple[int, Chem.Mol, bool]],
+    others: Sequence[str],
+    profile: ConditionProfile,
+) -> tuple[Chem.Mol, ...]:
+    """Return molecules that fit a rule's second reactant, drawn ones first; empty where it needs none."""
+    if rule.partner is None:
+        return ()
+    pattern, _ = compile_motif(rule.partner)
+    drawn = [mol for i, mol, _ in flask if i != component]
+    named = [
+        mol for smiles in (*others, *sorted(profile.solvent_alkoxy)) if (mol := _read(smiles)) is not None
+    ]
+    if rule.partner_from == "itself":
+        drawn = [mol for i, mol, _ in flask if i == component]
+    return tuple(mol for mol in (*drawn, *named) if mol.HasSubstructMatch(pattern))
+
+
+def as_entered(
+    flask: Sequence[tuple[int, Chem.Mol, bool]], component: int | None, atoms: Sequence[int]
+) -> tuple[int, ...]:
+    """Return atom indices in the fragment as entered (written hydrogens count there)."""
+    mol = next((m for i, m, _ in flask if i == component), None)
+    if mol is None:
+        return ()
+    return tuple(mol.GetAtomWithIdx(a).GetIntProp(_ENTERED) for a in atoms)
+
+
+@lru_cache(maxsize=256)
+def _read(smiles: str) -> Chem.Mol | None:
+    """Return the fragment with written hydrogens folded in and every atom's entered index kept."""
+    params = Chem.SmilesParserParams()
+    params.removeHs = False  # type: ignore[assignment]
+    with rdBase.BlockLogs():
+        mol = Chem.MolFromSmiles(smiles, params)
+        if mol is None:
+            return None
+        for atom in mol.GetAtoms():
+            atom.SetIntProp(_ENTERED, atom.GetIdx())
+        if any(a.GetAtomicNum() == 1 for a in mol.GetAtoms()):
+            mol = Chem.RemoveHs(mol, sanitize=True)
+    return mol
+
+
+def _is_material(mol: Chem.Mol) -> bool:
+    """Return True for a catalogued solvent or reagent."""
+    return False
