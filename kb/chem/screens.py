@@ -33,6 +33,7 @@ from kb.chem.screens_keys import (
     COUNT_STEPS,
     DOUBLE,
     KEY_ANY_CYCLE,
+    KEY_UNRULY,
     MAX_NEIGHBOURS,
     OTHER,
     SINGLE,
@@ -61,6 +62,9 @@ SCREEN_RECIPE = (
 ANYTHING = (1 << AUGMENTED_BITS) - 1
 """The screen of a structure that no query may drop."""
 
+UNRULY_RINGS = 8
+UNRULY_ATOMS = 150
+"""Beyond either, a loose query may search one structure for seconds (judgement after trials)."""
 _MATRIX_ATOMS = 400
 """Above this an adjacency matrix costs more than a walk over the bonds."""
 _MEMO_LIMIT = 200_000
@@ -223,15 +227,16 @@ def _ring_mask(rings: RingFacts, types: list[AtomType]) -> int:
     for cycle in rings.cycles:
         found = known(cycle)
         mask |= _remember(cycle, _cycle_mask(*cycle)) if found is None else found
-    return mask | _ANY_CYCLE_MASK if rings.any_cycle else mask
+    if rings.any_cycle:
+        mask |= 1 << KEY_ANY_CYCLE
+    if rings.any_cycle or rings.rank > UNRULY_RINGS or len(types) > UNRULY_ATOMS:
+        mask |= 1 << KEY_UNRULY
+    return mask
 
 
 def _cycle_mask(size: int, make_up: tuple[AtomType, ...]) -> int:
     elements = tuple(sorted(z for z, _ in make_up))
     return _mask_of((key_cycle(size), key_cycle(size, elements), key_cycle(size, make_up)))
-
-
-_ANY_CYCLE_MASK = _mask_of((KEY_ANY_CYCLE,))
 
 
 def _bond_list(mol: Chem.Mol, n_atoms: int) -> list[tuple[int, int, int]]:

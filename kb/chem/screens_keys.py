@@ -20,8 +20,16 @@ SINGLE, DOUBLE, TRIPLE, AROMATIC, OTHER = 1, 2, 3, 4, 5
 
 MAX_NEIGHBOURS = 4
 """Largest sub-multiset: a saturated carbon is covered whole; more neighbours are covered by their parts."""
+MAX_CYCLE = 14
+"""Larger cycles have no bits: nobody asks for one, and fused systems have many."""
 COUNT_STEPS = (2, 3, 4, 5, 6, 8, 10, 12, 16, 20)
 BOND_COUNT_STEPS = (2, 3, 4, 6)
+
+KEY_ANY_CYCLE = 0
+"""Set by a structure whose cycles were not all enumerated; a query takes it for any cycle."""
+KEY_UNRULY = 1
+"""Set by a structure in which a loose query may search for long: many rings, or very large."""
+_RESERVED = 2
 
 AtomType: TypeAlias = tuple[int, bool]
 """Element number and aromaticity."""
@@ -32,7 +40,8 @@ TypedBond: TypeAlias = tuple[int, int, bool]
 @lru_cache(maxsize=65536)
 def key_bit(key: tuple[object, ...]) -> int:
     """Return the bit number of a key."""
-    return int.from_bytes(blake2b(repr(key).encode(), digest_size=8).digest(), "little") % AUGMENTED_BITS
+    digest = int.from_bytes(blake2b(repr(key).encode(), digest_size=8).digest(), "little")
+    return _RESERVED + digest % (AUGMENTED_BITS - _RESERVED)
 
 
 def key_types(centre: AtomType, neighbours: tuple[AtomType, ...]) -> int:
@@ -78,10 +87,6 @@ def key_cycle(size: int, make_up: tuple[object, ...] = ()) -> int:
         make_up: sorted atom types, or sorted element numbers, or () for any atoms.
     """
     return key_bit(("c", size, make_up))
-
-
-KEY_ANY_CYCLE = key_bit(("c", "any"))
-"""Set by a structure whose cycles were not all enumerated; a query takes it for any cycle."""
 
 
 def bond_kind(one: AtomType, order: int, other: AtomType) -> tuple[AtomType, int, AtomType]:

@@ -14,12 +14,10 @@ from itertools import combinations
 
 from rdkit import Chem
 
-from kb.chem.screens_keys import AtomType
+from kb.chem.screens_keys import MAX_CYCLE, AtomType
 
 MAX_SUMMED_RINGS = 6
 """Rings of one fused system whose sums are all enumerated (63 at most)."""
-MAX_CYCLE = 14
-"""Larger cycles have no bits: nobody asks for one, and fused systems have many."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -31,15 +29,17 @@ class RingFacts:
         bonds: (lower atom, higher atom) of every bond in a ring.
         cycles: (size, sorted atom types) of every cycle up to MAX_CYCLE atoms.
         any_cycle: the list of cycles may be short, so no query may rely on it.
+        rank: independent rings in all.
     """
 
     smallest: dict[int, int]
     bonds: frozenset[tuple[int, int]]
     cycles: frozenset[tuple[int, tuple[AtomType, ...]]]
     any_cycle: bool
+    rank: int
 
 
-NO_RINGS = RingFacts(smallest={}, bonds=frozenset(), cycles=frozenset(), any_cycle=False)
+NO_RINGS = RingFacts(smallest={}, bonds=frozenset(), cycles=frozenset(), any_cycle=False, rank=0)
 
 
 def find_rings(mol: Chem.Mol, types: list[AtomType]) -> RingFacts:
@@ -87,6 +87,7 @@ def find_rings(mol: Chem.Mol, types: list[AtomType]) -> RingFacts:
         bonds=frozenset(bonds),
         cycles=frozenset(cycles),
         any_cycle=any_cycle,
+        rank=rank,
     )
 
 

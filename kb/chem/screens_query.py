@@ -1,0 +1,316 @@
+"""What a query asks of the screens: the bits, and alternatives of bits, that every match must have set.
+
+It only reads `query_traits.py` and speaks in the keys of `screens_keys.py`. The answer is a tree of "all
+of" and "one of" over bit numbers, since a list such as `[Cl,Br,I]` is one bit or another, never none.
+Conservative by construction: an atom or bond that does not say what it is asks for nothing, a list asks for
+one of its members, a negation for nothing, a positive `$()` for what its own query asks. Alternatives are
+multiplied out up to MAX_CHOICES; where there are more, the least telling neighbour is left out, which asks
+for less.
+"""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass
+from itertools import combinations, product
+from typing import TypeAlias, TypeVar
+
+from rdkit import Chem
+
+from kb.chem.query_traits import BondTrait, Trait, bond_trait, traits_of, types_of
+from kb.chem.screens_keys import (
+    AROMATIC,
+    BOND_COUNT_STEPS,
+    COUNT_STEPS,
+    KEY_ANY_CYCLE,
+    MAX_CYCLE,
+    MAX_NEIGHBOURS,
+    AtomType,
+    TypedBond,
+    bond_kind,
+    key_attribute,
+    key_bonds,
+    key_count,
+    key_cycle,
+    key_ring_atom,
+    key_ring_bond,
+    key_types,
+)
+
+MAX_CHOICES = 48
+"""Combinations of alternatives tried around one atom."""
+MAX_MAKE_UPS = 32
+"""Different make-ups of one ring that are asked for; more, and its size alone is."""
+MAX_DEPTH = 6
+"""Depth of recursive queries that is followed; deeper parts ask for nothing."""
+
+
+@dataclass(frozen=True, slots=True)
+class AllOf:
+    """Every part must hold. No parts = nothing is asked."""
+
+    parts: tuple[Ask, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class OneOf:
+    """At least one part must hold."""
+
+    parts: tuple[Ask, ...]
+
+
+Ask: TypeAlias = int | AllOf | OneOf
+"""A bit number of the augmented screen, or a tree of them."""
+
+NOTHING = AllOf()
+
+_T = TypeVar("_T")
+
+
+def ask_of(mol: Chem.Mol, depth: int = 0) -> AllOf:
+    """Return what a query asks of the augmented screen.
+
+    Args:
+        mol: the query, rings perceived.
+        depth: of recursion so far.
+    """
+    traits = [traits_of(atom) for atom in mol.GetAtoms()]
+    rings = [tuple(ring) for ring in mol.GetRingInfo().AtomRings()]
+    in_ring = {atom for ring in rings for atom in ring}
+    bonds = _bonds(mol, rings)
+    asks: list[Ask] = []
+    for atom, alternatives in enumerate(traits):
+        around = [(bond, types_of(traits[other])) for bond, other in bonds[atom]]
+        asks.append(_one_of(_star(trait, around, atom in in_ring, depth) for trait in alternatives))
+    asks += _ring_bonds(bonds, traits)
+    asks += [_cycle(ring, traits) for ring in rings if len(ring) <= MAX_CYCLE]
+    asks += _counts(traits, bonds)
+    return AllOf(tuple(_flat(asks)))
+
+
+def bits_in(ask: Ask) -> Iterator[int]:
+    """Yield every bit number in a tree, repeats included."""
+    if isinstance(ask, int):
+        yield ask
+    else:
+        for part in ask.parts:
+            yield from bits_in(part)
+
+
+def holds(ask: Ask, mask: int) -> bool:
+    """Return whether a structure's screen satisfies what is asked.
+
+    Args:
+        ask: the tree.
+        mask: the structure's augmented bits as one integer.
+    """
+    if isinstance(ask, int):
+        return bool(mask >> ask & 1)
+    if isinstance(ask, AllOf):
+        return all(holds(part, mask) for part in ask.parts)
+    return any(holds(part, mask) for part in ask.parts)
+
+
+# ------------------------------------------------------------------------------------------ trees
+
+
+def _one_of(parts: Iterable[Ask]) -> Ask:
+    """Return the alternatives as one ask; one alternative that asks for nothing makes it nothing."""
+    distinct = list(dict.fromkeys(parts))
+    if not distinct or NOTHING in distinct:
+        return NOTHING
+    return distinct[0] if len(distinct) == 1 else OneOf(tuple(distinct))
+
+
+def _flat(asks: Iterable[Ask]) -> list[Ask]:
+    """Return the parts of a conjunction without nesting or repeats."""
+    flat: dict[Ask, None] = {}
+    for ask in asks:
+        for part in _flat(ask.parts) if isinstance(ask, AllOf) else (ask,):
+            flat[part] = None
+    return list(flat)
+
+
+# ------------------------------------------------------------------------------------------- stars
+
+_Around: TypeAlias = list[tuple[BondTrait, tuple[AtomType, ...]]]
+"""The bonds of an atom, each with the types that its other end admits."""
+
+
+def _star(trait: Trait, around: _Around, is_ring_atom: bool, depth: int) -> Ask:
+    """Return what one alternative of an atom asks, its neighbours included."""
+    asks: list[Ask] = [_inner(text, depth) for text in trait.inner]
+    choices = []
+    for centre in trait.types:
+        parts: list[Ask] = [_by_type(centre, around), _by_bond(centre, trait, around)]
+        if trait.smallest_ring is not None:
+            parts.append(key_ring_atom(centre, trait.smallest_ring))
+        elif is_ring_atom or trait.in_ring:
+            parts.append(key_ring_atom(centre, 0))
+        elif trait.in_ring is False:
+            parts.append(key_ring_atom(centre, -1))
+        choices.append(AllOf(tuple(_flat(parts))))
+    asks.append(_one_of(choices))
+    flat = _flat(asks)
+    return flat[0] if len(flat) == 1 else AllOf(tuple(flat))
+
+
+def _inner(text: str, depth: int) -> Ask:
+    if depth >= MAX_DEPTH:
+        return NOTHING
+    inner = Chem.MolFromSmarts(text)
+    if inner is None:
+        return NOTHING
+    inner.UpdatePropertyCache(strict=False)
+    Chem.FastFindRings(inner)
+    return ask_of(inner, depth + 1)
+
+
+def _by_type(centre: AtomType, around: _Around) -> Ask:
+    options = [list(types) for _, types in around if types]
+    return _one_of(
+        AllOf(tuple(dict.fromkeys(key_types(centre, part) for part in _parts(chosen))))
+        for chosen in _choices(options)
+    )
+
+
+def _by_bond(centre: AtomType, trait: Trait, around: _Around) -> Ask:
+    options = [found for bond, types in around if (found := _typed_bonds(centre, bond, types))]
+    asked = [
+        (what, value)
+        for what, value in (
+            ("H", trait.hydrogens),
+            ("X", trait.connections),
+            ("D", trait.degree),
+            ("q", trait.charge or None),
+        )
+        if value is not None
+    ]
+    return _one_of(
+        AllOf(
+            tuple(
+                dict.fromkeys(
+                    bit
+                    for part in _parts(chosen)
+                    for bit in (
+                        key_bonds(centre, part),
+                        *(key_attribute(what, value, centre, part) for what, value in asked),
+                    )
+                )
+            )
+        )
+        for chosen in _choices(options)
+    )
+
+
+def _typed_bonds(centre: AtomType, bond: BondTrait, types: tuple[AtomType, ...]) -> list[TypedBond]:
+    """Return every (order, neighbour) that a bond admits; [] = it does not say.
+
+    An aromatic bond joins aromatic atoms in every sanitised structure, so a plain query bond at an aliphatic
+    end is a single bond.
+    """
+    if bond.orders is None or not types:
+        return []
+    return [
+        (order, *neighbour)
+        for neighbour in types
+        for order in sorted(bond.orders)
+        if order != AROMATIC or (centre[1] and neighbour[1])
+    ]
+
+
+def _choices(options: list[list[_T]]) -> set[tuple[_T, ...]]:
+    """Return the sorted multisets that pick one option each, the widest left out until there are few."""
+    options = sorted(options, key=len)
+    while options and _size(options) > MAX_CHOICES:
+        options.pop()
+    return {tuple(sorted(chosen)) for chosen in product(*options)}  # type: ignore[type-var]
+
+
+def _size(options: list[list[_T]]) -> int:
+    size = 1
+    for option in options:
+        size *= len(option)
+    return size
+
+
+def _parts(chosen: tuple[_T, ...]) -> Iterator[tuple[_T, ...]]:
+    """Yield every sub-multiset that structures set bits for; the smaller ones guard against shared bits."""
+    for size in range(min(MAX_NEIGHBOURS, len(chosen)), -1, -1):
+        yield from set(combinations(chosen, size))
+
+
+# ------------------------------------------------------------------------------------ rings, counts
+
+_Bonds: TypeAlias = list[list[tuple[BondTrait, int]]]
+
+
+def _bonds(mol: Chem.Mol, rings: list[tuple[int, ...]]) -> _Bonds:
+    """Return (what the bond says, other end) for every atom; a bond of a query ring is in a ring."""
+    cyclic = {frozenset(pair) for ring in rings for pair in zip(ring, (*ring[1:], ring[0]), strict=True)}
+    bonds: _Bonds = [[] for _ in range(mol.GetNumAtoms())]
+    for bond in mol.GetBonds():
+        i, j = bond.GetBeginAtomIdx(), bond.GetEndAtomIdx()
+        said = bond_trait(bond)
+        if frozenset((i, j)) in cyclic:
+            said = BondTrait(orders=said.orders, in_ring=True)
+        bonds[i].append((said, j))
+        bonds[j].append((said, i))
+    return bonds
+
+
+def _ring_bonds(bonds: _Bonds, traits: list[tuple[Trait, ...]]) -> Iterator[Ask]:
+    for atom, around in enumerate(bonds):
+        for bond, other in around:
+            if other > atom and bond.in_ring is not None and bond.orders is not None:
+                ones, others = types_of(traits[atom]), types_of(traits[other])
+                if ones and others and len(ones) * len(others) <= MAX_CHOICES:
+                    yield _one_of(
+                        key_ring_bond(bond_kind(one, order, (element, aromatic)), bond.in_ring)
+                        for one in ones
+                        for order, element, aromatic in _typed_bonds(one, bond, others)
+                    )
+
+
+def _cycle(ring: tuple[int, ...], traits: list[tuple[Trait, ...]]) -> Ask:
+    """Return what a ring of the query asks: a cycle of its size and, where that is known, its make-up."""
+    asks: list[Ask] = [key_cycle(len(ring))]
+    options = [types_of(traits[atom]) for atom in ring]
+    if all(options):
+        by_type = _make_ups([list(types) for types in options])
+        by_element = _make_ups([sorted({element for element, _ in types}) for types in options])
+        for found in (by_type, by_element):
+            asks.append(_one_of(key_cycle(len(ring), make_up) for make_up in found))
+    return OneOf((KEY_ANY_CYCLE, AllOf(tuple(_flat(asks)))))
+
+
+def _make_ups(options: list[list[_T]]) -> set[tuple[_T, ...]]:
+    """Return the sorted multisets that pick one option for each atom; empty = too many."""
+    found: set[tuple[_T, ...]] = {()}
+    for option in options:
+        found = {tuple(sorted((*some, one))) for some in found for one in option}  # type: ignore[type-var]
+        if len(found) > MAX_MAKE_UPS:
+            return set()
+    return found
+
+
+def _counts(traits: list[tuple[Trait, ...]], bonds: _Bonds) -> Iterator[Ask]:
+    """Yield how many atoms of a type or element, and bonds of a kind, any match must have."""
+    types = [types_of(alternatives) for alternatives in traits]
+    certain = [found[0] if len(found) == 1 else None for found in types]
+    elements = [found[0][0] if found and len({z for z, _ in found}) == 1 else None for found in types]
+    for atom_type, number in Counter(t for t in certain if t is not None).items():
+        yield from (key_count(atom_type, step) for step in COUNT_STEPS if step <= number)
+    for element, number in Counter(z for z in elements if z is not None).items():
+        yield from (key_count(("Z", element), step) for step in COUNT_STEPS if step <= number)
+    kinds: Counter[tuple[AtomType, int, AtomType]] = Counter()
+    for atom, around in enumerate(bonds):
+        for bond, other in around:
+            one, end = certain[atom], certain[other]
+            if other > atom and one is not None and end is not None:
+                found = _typed_bonds(one, bond, (end,))
+                if len(found) == 1:
+                    kinds[bond_kind(one, found[0][0], end)] += 1
+    for kind, number in kinds.items():
+        yield from (key_count(kind, step) for step in BOND_COUNT_STEPS if step <= number)
