@@ -78,13 +78,13 @@ class StructureBlobs:
 
     Attributes:
         mol_binary: RDKit's binary of the molecule, atoms in the order of the SMILES it came from.
-        augmented_bits, pattern_bits, morgan_bits: packed, bit i is bit i % 8 of byte i // 8.
+        augmented, pattern, morgan: packed, bit i is bit i % 8 of byte i // 8.
     """
 
     mol_binary: bytes
-    augmented_bits: bytes
-    pattern_bits: bytes
-    morgan_bits: bytes
+    augmented: bytes
+    pattern: bytes
+    morgan: bytes
 
 
 def encode_structure(smiles: str) -> StructureBlobs:
@@ -106,9 +106,9 @@ def encode_mol(mol: Chem.Mol) -> StructureBlobs:
     """Return the screens of a sanitised molecule, its atoms kept in their order."""
     return StructureBlobs(
         mol_binary=mol.ToBinary(int(Chem.PropertyPickleOptions.NoProps)),
-        augmented_bits=augmented_mask(mol).to_bytes(AUGMENTED_BITS // 8, "little"),
-        pattern_bits=pack_pattern(mol),
-        morgan_bits=pack_morgan(mol),
+        augmented=augmented_mask(mol).to_bytes(AUGMENTED_BITS // 8, "little"),
+        pattern=pack_pattern(mol),
+        morgan=pack_morgan(mol),
     )
 
 
