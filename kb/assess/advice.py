@@ -1,7 +1,7 @@
 """The change most likely to help: matched pairs from the record.
 
-It owns the pairing. Two runs form a pair for a change when they share carbon class, leaving group and nucleophile class,
-one stands where the plan stands in the condition that changes and the other where the change would take it, and
+It owns the pairing. Two runs form a pair for a change when they share carbon class, leaving group and nucleophile
+class, one stands where the plan stands in the condition that changes and the other where the change would take it, and
 nothing else that is recorded differs much (kernel parts at least `ALIKE`). Each pair gives a difference in the share
 wanted; the effect is their mean with an 80 % interval that also carries a prior scatter, so that two lucky pairs do
 not look like a law. Published trends are added by the caller.

@@ -131,7 +131,9 @@ def _shares(
         squares = float(wx @ (x[:, place] - m) ** 2)
         if prior_weight:
             squares += prior_weight * (float(prior_mean[place]) - m) ** 2
-        variance = (squares + SCATTER_RUNS * prior_scatter**2 * 4 * m * (1 - m)) / (effective + prior_weight + SCATTER_RUNS)
+        variance = (squares + SCATTER_RUNS * prior_scatter**2 * 4 * m * (1 - m)) / (
+            effective + prior_weight + SCATTER_RUNS
+        )
         variance *= 1 + 1 / (effective + prior_weight + 1)
         variance = min(max(variance, 1e-5), 0.95 * m * (1 - m) + 1e-6)
         concentration = max(m * (1 - m) / variance - 1, 0.05)
@@ -155,7 +157,11 @@ def _yield(weight: NDArray[np.float64], yield_pct: NDArray[np.float64]) -> Inter
     variance = (squares + SCATTER_RUNS * 0.18**2) / (effective + prior_weight + SCATTER_RUNS)
     variance = min(variance * (1 + 1 / (effective + 1)), 0.95 * mean * (1 - mean) + 1e-6)
     interval = beta_interval(mean, max(mean * (1 - mean) / max(variance, 1e-6) - 1, 0.05))
-    return Interval(mean=round(100 * interval.mean, 1), low=round(100 * interval.low, 1), high=round(100 * interval.high, 1))
+    return Interval(
+        mean=round(100 * interval.mean, 1),
+        low=round(100 * interval.low, 1),
+        high=round(100 * interval.high, 1),
+    )
 
 
 def _note(effective: float, scatter: float, from_record: bool, no_number: str) -> str:

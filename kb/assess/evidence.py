@@ -8,12 +8,12 @@ that the conditions do it.
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable, Sequence
 from typing import Any
 
 from kb.assess.estimate import loss_chance
-from kb.record.failure_modes import modes_that_lose_a_group
 from kb.assess.record_view import RecordView
+from kb.record.failure_modes import modes_that_lose_a_group
 from kb.record.finding import Evidence
 from kb.record.run import Run
 from kb.vocabulary import Fate, Severity, Verdict
@@ -22,36 +22,38 @@ LOST_SHARE = 0.10
 """Share of products without the motif from which it counts as lost; judgement."""
 
 
-def motif_came_through(run: Run, query: Any, mols: Any) -> bool | None:
+FindMotif = Callable[[Any], Sequence[tuple[int, ...]]]
+"""From an RDKit molecule to the atom numbers of each instance of the motif."""
+
+
+def motif_came_through(run: Run, find: FindMotif, mols: Callable[[str], Any]) -> bool | None:
     """Say whether a motif survived a run.
 
     Args:
         run: as recorded.
-        query: RDKit query molecule of the motif.
-        mols: callable from SMILES to RDKit molecule or None.
+        find: finds the motif in a molecule.
+        mols: from SMILES to RDKit molecule or None.
 
     Returns:
         True = survived, False = lost, None = the record does not say.
     """
     left = [m for s in _left(run) if (m := mols(s)) is not None]
-    before = sum(_count(m, query) for m in left)
+    before = sum(len(find(m)) for m in left)
     if not before:
         return None
     for failure in run.outcome.failures:
-        if failure.mode in modes_that_lose_a_group() and failure.motif and _overlaps(failure.motif, query, left):
+        if failure.mode in modes_that_lose_a_group() and failure.motif and _overlaps(failure.motif, find, left):
             return False
     lacking, holding = 0.0, 0.0
     for smiles, share in _products(run):
         mol = mols(smiles)
         if mol is None:
             continue
-        if _count(mol, query) < before:
+        if len(find(mol)) < before:
             lacking += share
         else:
             holding += share
-    unseen_loss = sum(
-        p.share or 0.0 for p in run.outcome.products if p.fate is Fate.GROUP_LOSS and p.smiles is None
-    )
+    unseen_loss = sum(p.share or 0.0 for p in run.outcome.products if p.fate is Fate.GROUP_LOSS and p.smiles is None)
     if lacking >= LOST_SHARE:
         return False
     if holding > 0 and unseen_loss < LOST_SHARE and holding >= lacking:
@@ -59,12 +61,12 @@ def motif_came_through(run: Run, query: Any, mols: Any) -> bool | None:
     return None
 
 
-def count_evidence(view: RecordView, rows: Iterable[int], query: Any) -> tuple[list[int], list[int]]:
+def count_evidence(view: RecordView, rows: Iterable[int], find: FindMotif) -> tuple[list[int], list[int]]:
     """Split rows into (lost, survived) row numbers, in record order."""
     lost: list[int] = []
     survived: list[int] = []
     for row in rows:
-        outcome = motif_came_through(view.run(row), query, view.mol)
+        outcome = motif_came_through(view.run(row), find, view.mol)
         if outcome is False:
             lost.append(row)
         elif outcome is True:
@@ -119,20 +121,24 @@ def _products(run: Run) -> list[tuple[str, float]]:
     return [(s, share) for s in stated] if share else []
 
 
-def _count(mol: Any, query: Any) -> int:
-    return len(mol.GetSubstructMatches(query, uniquify=True, maxMatches=64))
-
-
-def _overlaps(smarts: str, query: Any, mols: list[Any]) -> bool:
-    """Return True when a failure's motif and the rule's share an atom somewhere."""
+def finder_of(smarts: str) -> FindMotif:
+    """Return a finder for one SMARTS; a SMARTS that cannot be read is found nowhere."""
     from rdkit import Chem
 
-    named = Chem.MolFromSmarts(smarts)
-    if named is None:
-        return False
+    query = Chem.MolFromSmarts(smarts)
+
+    def find(mol: Any) -> Sequence[tuple[int, ...]]:
+        return () if query is None else mol.GetSubstructMatches(query, uniquify=True, maxMatches=64)
+
+    return find
+
+
+def _overlaps(smarts: str, find: FindMotif, mols: list[Any]) -> bool:
+    """Return True when a failure's motif and the rule's share an atom somewhere."""
+    named = finder_of(smarts)
     for mol in mols:
-        hit = {a for match in mol.GetSubstructMatches(named, maxMatches=64) for a in match}
-        if any(hit & set(match) for match in mol.GetSubstructMatches(query, maxMatches=64)):
+        hit = {a for match in named(mol) for a in match}
+        if any(hit & set(match) for match in find(mol)):
             return True
     return False
 

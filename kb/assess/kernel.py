@@ -58,7 +58,8 @@ LEAVING_SCALE: dict[LeavingGroup, float] = {
     LeavingGroup.TRIFLATE: 8.0,
 }
 """log10 relative reactivity, fluoride = 0. Source: F 1, Cl 200, Br 10,000, I 30,000, OTs 60,000 as tabulated in
-Solomons, Organic Chemistry (teaching notes); mesylate beside tosylate and triflate some 10^3 above are common practice."""
+Solomons, Organic Chemistry (teaching notes); mesylate beside tosylate and triflate some 10^3 above are common
+practice."""
 
 _NUCLEOPHILE_FAMILY: dict[str, str] = {}
 for _family, _members in {
@@ -73,7 +74,9 @@ for _family, _members in {
     _NUCLEOPHILE_FAMILY.update(dict.fromkeys(_members.split(), _family))
 
 
-def similarity_parts(plan: FactTable, table: FactTable, rest: NDArray[np.float64] | None = None) -> dict[str, NDArray[np.float64]]:
+def similarity_parts(
+    plan: FactTable, table: FactTable, rest: NDArray[np.float64] | None = None
+) -> dict[str, NDArray[np.float64]]:
     """Compare one plan with every row of a table, part by part.
 
     Args:

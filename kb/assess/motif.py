@@ -42,9 +42,8 @@ def lost_atoms(substrate: Any, found: Any) -> frozenset[int]:
     Returns:
         Atom numbers of the substrate; empty where nothing was lost or the two share too little to say (under half).
     """
-    from rdkit.Chem import rdFMCS
-
     from rdkit import Chem
+    from rdkit.Chem import rdFMCS
 
     common = rdFMCS.FindMCS(
         [substrate, found],
@@ -66,9 +65,7 @@ def generalise(substrate: Any, lost: frozenset[int], survivors: Sequence[Any]) -
     if not lost:
         return None
     motif: Motif | None = None
-    around = set(lost) | {
-        n.GetIdx() for a in lost for n in substrate.GetAtomWithIdx(a).GetNeighbors()
-    }
+    around = set(lost) | {n.GetIdx() for a in lost for n in substrate.GetAtomWithIdx(a).GetNeighbors()}
     for radius in range(MAX_RADIUS + 1):
         if radius:
             around |= {n.GetIdx() for a in around for n in substrate.GetAtomWithIdx(a).GetNeighbors()}
@@ -94,7 +91,5 @@ def _smarts(mol: Any, atoms: set[int]) -> str:
         charge = {0: ""}.get(atom.GetFormalCharge(), f"{atom.GetFormalCharge():+d}")
         symbols.append(f"[{symbol}{hydrogens}{charge}]")
     return str(
-        Chem.MolFragmentToSmiles(
-            mol, sorted(atoms), atomSymbols=symbols, isomericSmiles=False, allBondsExplicit=True
-        )
+        Chem.MolFragmentToSmiles(mol, sorted(atoms), atomSymbols=symbols, isomericSmiles=False, allBondsExplicit=True)
     )

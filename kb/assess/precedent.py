@@ -68,7 +68,10 @@ def _differences(plan: FactTable, table: FactTable, row: int, parts: dict[str, N
     for part, column in (("centre", "carbon_class"), ("leaving group", "leaving_group")):
         mine, theirs = plan.word(column, 0), table.word(column, row)
         if mine != theirs:
-            say(part, _instead(theirs, mine, "no leaving group read" if column == "leaving_group" else "centre not read"))
+            say(
+                part,
+                _instead(theirs, mine, "no leaving group read" if column == "leaving_group" else "centre not read"),
+            )
     gained = sorted(flag_words(int(table.flags[row])) - flag_words(int(plan.flags[0])))
     missing = sorted(flag_words(int(plan.flags[0])) - flag_words(int(table.flags[row])))
     if gained:
@@ -95,11 +98,16 @@ def _differences(plan: FactTable, table: FactTable, row: int, parts: dict[str, N
     for column, label in (("acidity", "acid"), ("lewis_acid", "Lewis acid"), ("halophile", "halophile")):
         mine, theirs = plan.word(column, 0), table.word(column, row)
         if mine is not None and theirs is not None and mine != theirs:
-            say("promoter", f"no {label}" if theirs == "none" else f"{theirs} {label}".replace("silver halophile", "silver"))
+            say(
+                "promoter",
+                f"no {label}" if theirs == "none" else f"{theirs} {label}".replace("silver halophile", "silver"),
+            )
     return [text for _, text in sorted(words, key=lambda pair: pair[0])]
 
 
-def _base_words(plan: FactTable, table: FactTable, row: int, parts: dict[str, NDArray[np.float64]]) -> list[tuple[float, str]]:
+def _base_words(
+    plan: FactTable, table: FactTable, row: int, parts: dict[str, NDArray[np.float64]]
+) -> list[tuple[float, str]]:
     mine, theirs = plan.number("base_pkah", 0), table.number("base_pkah", row)
     alike = float(parts["base"][row])
     if mine is None and theirs is None:

@@ -7,16 +7,18 @@ one thread.
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Callable
+from collections.abc import Callable, Collection
 from functools import cached_property
 from typing import Any, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
-from kb.assess.table import FactTable
+from kb.assess.table import FactTable, build_table
 from kb.materials.profile import ConditionProfile
 from kb.record.run import Run
+from kb.store.failings import failings_by_run
+from kb.store.store import Store
 
 
 class RunSource(Protocol):
@@ -25,6 +27,36 @@ class RunSource(Protocol):
     def get(self, code: str) -> Run:
         """Return the run of a code."""
         ...
+
+
+def build_view(store: Store, motif_search: Callable[[str], Collection[str]] | None = None) -> RecordView:
+    """Read a store's columns into a view.
+
+    Args:
+        store: to read.
+        motif_search: SMARTS to the codes of runs that hold it on their left side; None = look one by one.
+
+    Raises:
+        IndexStale: facts were made by another recipe.
+    """
+    columns = store.derived_columns()
+    failings = failings_by_run(store)
+    codes = list(columns["code"])
+    search = None
+    if motif_search is not None:
+        row_of = {code: row for row, code in enumerate(codes)}
+        ask = motif_search
+
+        def search(smarts: str) -> NDArray[np.intp]:
+            return np.array(sorted(row_of[c] for c in ask(smarts) if c in row_of), dtype=np.intp)
+
+    return RecordView(
+        build_table(columns),
+        list(columns["profile_json"]),
+        [failings.get(int(key), ()) for key in columns["run_key"]],
+        store,
+        search,
+    )
 
 
 class RecordView:

@@ -14,8 +14,8 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from kb.assess.evidence import motif_came_through
 from kb.assess.estimate import loss_chance
+from kb.assess.evidence import finder_of, motif_came_through
 from kb.assess.forcing import is_at_least_as_forcing, is_no_more_forcing
 from kb.assess.motif import generalise, lost_atoms
 from kb.assess.record_view import RecordView
@@ -69,7 +69,10 @@ def _severity(chance: float, lost: int) -> Severity:
 
 
 def _at_the_centre(
-    view: RecordView, parts: dict[str, NDArray[np.float64]], profile: ConditionProfile, centre: tuple[int, int] | None
+    view: RecordView,
+    parts: dict[str, NDArray[np.float64]],
+    profile: ConditionProfile,
+    centre: tuple[int, int] | None,
 ) -> list[Finding]:
     if centre is None or not len(view.table):
         return []
@@ -91,9 +94,7 @@ def _at_the_centre(
         mildest = [r for r in lost if answers[r]] or lost
         others = [int(r) for r in np.flatnonzero(alike & ~view.failed_in(mode))]
         survived = [
-            r
-            for r in others
-            if any(compare(view.profile(r), view.profile(f)) for f in mildest) and _spoke(view, r)
+            r for r in others if any(compare(view.profile(r), view.profile(f)) for f in mildest) and _spoke(view, r)
         ]
         finding = _finding(view, mode, lost, survived, centre[0], (centre[1],), all(answers[r] is None for r in lost))
         if finding is not None:
@@ -109,15 +110,13 @@ def _spoke(view: RecordView, row: int) -> bool:
 def _elsewhere(
     view: RecordView, profile: ConditionProfile, fragments: Sequence[str], skip: Sequence[frozenset[int]]
 ) -> list[Finding]:
-    from rdkit import Chem
-
     findings: list[Finding] = []
     seen: set[tuple[str, frozenset[int]]] = set()
     for (mode, smarts), rows in _motifs(view).items():
-        query = Chem.MolFromSmarts(smarts)
+        find = finder_of(smarts)
         for component, smiles in enumerate(fragments):
             mol = view.mol(smiles)
-            match = mol.GetSubstructMatch(query) if mol is not None and query is not None else ()
+            match = next(iter(find(mol)), ()) if mol is not None else ()
             if not match or (mode, frozenset(match)) in seen:
                 continue
             if any(len(frozenset(match) & s) * 2 >= len(match) for s in skip):
@@ -131,7 +130,7 @@ def _elsewhere(
                 for r in view.rows_with_motif(smarts)
                 if int(r) not in rows
                 and any(is_at_least_as_forcing(view.profile(int(r)), view.profile(f)) for f in lost)
-                and motif_came_through(view.run(int(r)), query, view.mol)
+                and motif_came_through(view.run(int(r)), find, view.mol)
             ]
             unsure = all(answers[r] is None for r in lost)
             finding = _finding(view, mode, lost, survived, component, tuple(match), unsure)
@@ -142,7 +141,7 @@ def _elsewhere(
 
 
 def _motifs(view: RecordView) -> dict[tuple[str, str], list[int]]:
-    """Gather the motifs of recorded losses, stated or generalised, with the rows that failed by them; kept in the view."""
+    """Gather the motifs of recorded losses, stated or generalised, and the rows that failed by them; kept in the view."""
     key = "resemblance motifs"
     if key not in view.memory:
         gathered: dict[tuple[str, str], list[int]] = {}

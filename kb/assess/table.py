@@ -133,19 +133,12 @@ def code_of(column: str, word: object) -> int:
     return WORDS[column].index(str(word)) if word is not None and str(word) in WORDS[column] else -1
 
 
-def centre_words(bits: bytes | None) -> NDArray[np.uint64]:
-    """Return the environment bits as words, zeros where there is no centre."""
-    if bits is None:
-        return np.zeros(_WORDS_PER_CENTRE, dtype=np.uint64)
-    return np.frombuffer(bits, dtype="<u8").astype(np.uint64)
-
-
-def build_table(columns: Mapping[str, Sequence[Any]]) -> FactTable:
-    """Code the store's columns.
+def build_table(columns: Mapping[str, Any]) -> FactTable:
+    """Code the store's columns (`kb.store.facts.derived_columns` gives shapes and codings).
 
     Args:
-        columns: equal-length sequences: `code`, `verdict`, `yield_pct`, `date` (datetime.date or None), `shares`
-            (mapping of fate word to share, per run) and every field of DerivedFacts.
+        columns: equal-length arrays: `code`, `verdict`, `isolated_yield_pct`, `assay_yield_pct`, `date_ordinal`,
+            `shares` (n, 8) in vocabulary order, `centre_bits` (n, 4) uint64, and the fields of DerivedFacts.
 
     Returns:
         The table, in the order given.
@@ -157,44 +150,61 @@ def build_table(columns: Mapping[str, Sequence[Any]]) -> FactTable:
         column: _coded(columns[column], {w: i for i, w in enumerate(vocabulary)})
         for column, vocabulary in WORDS.items()
     }
-    bits = np.zeros((n, _WORDS_PER_CENTRE), dtype=np.uint64)
-    with_centre = [i for i, b in enumerate(columns["centre_bits"]) if b]
-    if with_centre:
-        joined = b"".join(columns["centre_bits"][i] for i in with_centre)
-        bits[with_centre] = np.frombuffer(joined, dtype="<u8").reshape(-1, _WORDS_PER_CENTRE)
-    shares = np.full((n, len(FATES)), np.nan)
-    place = {str(f): i for i, f in enumerate(FATES)}
-    for row, split in enumerate(columns["shares"]):
-        if split:
-            shares[row] = 0.0
-            for fate, share in split.items():
-                shares[row, place[str(fate)]] = share
-    flag_of = {text: flag_code(text) for text in set(columns["flags"])}
-    protic_code = {None: -1, False: 0, True: 1, 0: 0, 1: 1}
+    flag_of = {text: flag_code(text or "") for text in set(columns["flags"])}
+    isolated = np.asarray(columns["isolated_yield_pct"], dtype=np.float64)
     return FactTable(
         codes=tuple(columns["code"]),
         words=words,
-        numbers={c: np.array([np.nan if v is None else v for v in columns[c]], dtype=np.float64) for c in NUMBERS},
+        numbers={c: np.asarray(columns[c], dtype=np.float64) for c in NUMBERS},
         nucleophile=np.fromiter(
             (nucleophile_code.get(w, -1) for w in columns["nucleophile_class"]), dtype=np.int16, count=n
         ),
         nucleophile_words=nucleophile_words,
         flags=np.fromiter((flag_of[t] for t in columns["flags"]), dtype=np.uint16, count=n),
-        protic=np.fromiter((protic_code[p] for p in columns["protic"]), dtype=np.int8, count=n),
-        centre_bits=bits,
-        shares=shares,
-        yield_pct=np.array([np.nan if v is None else v for v in columns["yield_pct"]], dtype=np.float64),
-        date=np.fromiter((d.toordinal() if d else 0 for d in columns["date"]), dtype=np.int32, count=n),
+        protic=np.asarray(columns["protic"], dtype=np.int8),
+        centre_bits=np.asarray(columns["centre_bits"], dtype=np.uint64).reshape(n, _WORDS_PER_CENTRE),
+        shares=_zero_where_others_measured(np.asarray(columns["shares"], dtype=np.float64).reshape(n, len(FATES))),
+        yield_pct=np.where(np.isnan(isolated), np.asarray(columns["assay_yield_pct"], dtype=np.float64), isolated),
+        date=np.asarray(columns["date_ordinal"], dtype=np.int32),
         substrate=tuple(s or "" for s in columns["substrate"]),
     )
 
 
+def columns_of(rows: Sequence[DerivedFacts]) -> dict[str, Any]:
+    """Return facts in the store's columns, without outcomes: for plans, and for tests by hand."""
+    n = len(rows)
+    columns: dict[str, Any] = {
+        name: [getattr(row, name) for row in rows]
+        for name in DerivedFacts.__slots__
+        if name not in ("run_id", "recipe")
+    }
+    for name in (*NUMBERS, "centre_atom"):
+        columns[name] = np.array([np.nan if v is None else v for v in columns[name]], dtype=np.float64)
+    columns["protic"] = np.array([-1 if p is None else int(p) for p in columns["protic"]], dtype=np.int8)
+    packed = b"".join(bits or bytes(CENTRE_BITS // 8) for bits in columns["centre_bits"])
+    columns["centre_bits"] = np.frombuffer(packed, dtype="<u8").reshape(n, _WORDS_PER_CENTRE)
+    nothing = np.full(n, np.nan)
+    return columns | {
+        "code": [f"R-{i + 1}" for i in range(n)],
+        "verdict": [None] * n,
+        "isolated_yield_pct": nothing,
+        "assay_yield_pct": nothing,
+        "date_ordinal": np.zeros(n, dtype=np.int32),
+        "shares": np.full((n, len(FATES)), np.nan),
+    }
+
+
 def one_row(facts: DerivedFacts) -> FactTable:
     """Return a table of one row for a plan: facts, no outcome."""
-    fields = {name: [getattr(facts, name)] for name in DerivedFacts.__slots__ if name not in ("run_id", "recipe")}
-    return build_table(
-        fields | {"code": ["plan"], "verdict": [None], "yield_pct": [None], "date": [None], "shares": [{}]}
-    )
+    return build_table(columns_of([facts]))
+
+
+def _zero_where_others_measured(shares: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Return shares in which a fate nobody mentioned counts as none, where any fate of the run was measured."""
+    measured = ~np.isnan(shares).all(axis=1)
+    filled = shares.copy()
+    filled[measured] = np.nan_to_num(filled[measured])
+    return filled
 
 
 def _coded(values: Sequence[Any], code: Mapping[str, int]) -> NDArray[np.int8]:

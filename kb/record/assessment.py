@@ -11,7 +11,15 @@ from typing import Any
 from kb.chem.facts import Reading
 from kb.record.finding import Finding, Interval
 from kb.record.plan import Plan
+from kb.record.portable import run_to_dict
+from kb.record.run import Run
 from kb.vocabulary import Basis, Fate, Verdict
+
+
+def plan_as_dict(plan: Plan) -> dict[str, Any]:
+    """Return a plan in the portable form of a run, the outcome left out."""
+    form = run_to_dict(Run(scheme=plan.scheme, conditions=plan.conditions, project=plan.project))
+    return {key: form[key] for key in ("scheme", "project", "conditions")}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -120,3 +128,14 @@ class Assessment:
     estimate: Estimate
     precedents: tuple[Precedent, ...] = ()
     advice: tuple[Advice, ...] = ()
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return the contract's JSON object."""
+        return {
+            "plan": plan_as_dict(self.plan),
+            "reading": self.reading.as_dict(),
+            "findings": [f.as_dict() for f in self.findings],
+            "estimate": self.estimate.as_dict(),
+            "precedents": [p.as_dict() for p in self.precedents],
+            "advice": [a.as_dict() for a in self.advice],
+        }

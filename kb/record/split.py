@@ -37,7 +37,9 @@ class Signal:
             raise QuantityError(f"An integral of {self.value:g} cannot be.", "Give zero or more.", self.value)
         if not (math.isfinite(self.per_molecule) and self.per_molecule > 0):
             raise QuantityError(
-                f"{self.per_molecule:g} protons cannot be counted.", "Give a number above zero.", self.per_molecule
+                f"{self.per_molecule:g} protons cannot be counted.",
+                "Give a number above zero.",
+                self.per_molecule,
             )
 
     @property
@@ -89,7 +91,11 @@ def split_from_signals(
 
 
 def assay_yield(
-    product: Signal, standard: Signal, standard_mmol: float, scale_mmol: float, relative_error: float = RELATIVE_ERROR
+    product: Signal,
+    standard: Signal,
+    standard_mmol: float,
+    scale_mmol: float,
+    relative_error: float = RELATIVE_ERROR,
 ) -> Interval:
     """Return the assay yield [%] from a product signal beside a weighed internal standard.
 

@@ -9,6 +9,7 @@ from __future__ import annotations
 import dataclasses
 import json
 from dataclasses import dataclass
+from functools import cache
 from typing import TYPE_CHECKING, Any
 from uuid import UUID
 
@@ -23,7 +24,10 @@ if TYPE_CHECKING:
     from kb.record.plan import Plan
 
 RECIPE = "facts/1"
-"""Name of what makes DerivedFacts; the RDKit version is appended where facts are stored."""
+"""Name of what makes DerivedFacts; the screens' and RDKit's are appended where facts are stored."""
+
+SCREENS = "augmented-1-2048;pattern-2048;morgan-r2-2048"
+"""Name of how structures are encoded (`kb.chem.screens`); a test keeps the two in step."""
 
 MORGAN_RADIUS = 2
 """Bonds around the centre that its environment fingerprint reaches."""
@@ -65,11 +69,12 @@ def derive(run: Run) -> DerivedFacts:
     return account_of_run(run).facts
 
 
+@cache
 def current_recipe() -> str:
-    """Return the recipe's name with the version of RDKit that carries it out."""
-    from rdkit import rdBase
+    """Return the recipe's name with those of the screens and of the RDKit that carries it out; loads no RDKit."""
+    from importlib.metadata import version
 
-    return f"{RECIPE} rdkit/{rdBase.rdkitVersion}"
+    return f"{RECIPE} {SCREENS} rdkit/{version('rdkit')}"
 
 
 def dissect(run: Run) -> list[tuple[str, int, str]]:

@@ -5,12 +5,15 @@ from __future__ import annotations
 from typing import Any
 from uuid import uuid4
 
+import numpy as np
+
 from kb.assess.record_view import RecordView
-from kb.assess.table import FactTable, build_table
+from kb.assess.table import FATES, FactTable, build_table, columns_of
 from kb.materials.profile import ConditionProfile
 from kb.record.derived import DerivedFacts
 from kb.record.run import Run
 from kb.store.derivation import profile_to_json
+from kb.vocabulary import Fate
 
 
 def facts(**changes: Any) -> DerivedFacts:
@@ -44,15 +47,12 @@ def facts(**changes: Any) -> DerivedFacts:
 
 def table_of(*rows: tuple[DerivedFacts, dict[str, float], float | None, str | None]) -> FactTable:
     """Return a table of (facts, shares, yield, verdict) rows with codes R-1, R-2, ..."""
-    names = [n for n in DerivedFacts.__slots__ if n not in ("run_id", "recipe")]
-    columns: dict[str, list[Any]] = {n: [getattr(r[0], n) for r in rows] for n in names}
-    columns |= {
-        "code": [f"R-{i + 1}" for i in range(len(rows))],
-        "shares": [r[1] for r in rows],
-        "yield_pct": [r[2] for r in rows],
-        "verdict": [r[3] for r in rows],
-        "date": [None] * len(rows),
-    }
+    columns = columns_of([r[0] for r in rows])
+    for place, (_, shares, _, _) in enumerate(rows):
+        for fate, share in shares.items():
+            columns["shares"][place, FATES.index(Fate(fate))] = share
+    columns["isolated_yield_pct"] = np.array([np.nan if r[2] is None else r[2] for r in rows])
+    columns["verdict"] = [r[3] for r in rows]
     return build_table(columns)
 
 
@@ -68,7 +68,10 @@ class RunsByCode:
 
 
 def view_of(
-    table: FactTable, profiles: list[ConditionProfile], failures: list[tuple[tuple[str, str | None], ...]], runs: list[Run]
+    table: FactTable,
+    profiles: list[ConditionProfile],
+    failures: list[tuple[tuple[str, str | None], ...]],
+    runs: list[Run],
 ) -> RecordView:
     """Return a view over rows made by hand."""
     return RecordView(

@@ -6,15 +6,15 @@ import pytest
 from rdkit import Chem
 from tables_by_hand import facts, table_of, view_of
 
-from kb.assess.evidence import count_evidence, motif_came_through, weighed_severity, word_evidence
 from kb.assess.estimate import loss_chance
+from kb.assess.evidence import count_evidence, finder_of, motif_came_through, weighed_severity, word_evidence
 from kb.materials.profile import ConditionProfile
 from kb.record.finding import Evidence
 from kb.record.outcome import Failure, Outcome, ProductSeen
 from kb.record.run import Run
 from kb.vocabulary import Fate, Severity, Verdict
 
-TBU_ETHER = Chem.MolFromSmarts("[CX4][OX2]C([CH3])([CH3])[CH3]")
+TBU_ETHER = finder_of("[CX4][OX2]C([CH3])([CH3])[CH3]")
 SUBSTRATE = "CC(C)(C)OCCCNC(=O)OC(C)(C)C"
 KEPT, GONE = "CC(C)(C)OCCCN", "OCCCN"
 
@@ -49,7 +49,11 @@ def test_coming_through(record: Run, came_through: bool | None, why: str) -> Non
 
 def test_counts_run_codes_and_the_temperature_that_divides_them() -> None:
     rows = [(facts(temperature_c=t), {}, None, "worked") for t in (50.0, 55.0, 0.0)]
-    records = [run(products=(seen(GONE, 0.9),)), run(products=(seen(GONE, 0.5),)), run(products=(seen(KEPT, 0.9),))]
+    records = [
+        run(products=(seen(GONE, 0.9),)),
+        run(products=(seen(GONE, 0.5),)),
+        run(products=(seen(KEPT, 0.9),)),
+    ]
     view = view_of(table_of(*rows), [ConditionProfile()] * 3, [()] * 3, records)
     lost, survived = count_evidence(view, range(3), TBU_ETHER)
     evidence = word_evidence(view, lost, survived, 60.0)

@@ -20,7 +20,12 @@ STRONG_BASE = ConditionProfile(acidity="none", base_pkah=17.0, temperature_c=60.
         ({"acidity": "weak", "temperature_c": 60.0}, HOT_ACID, False, "a weaker acid"),
         ({"acidity": "strong", "temperature_c": None}, HOT_ACID, None, "temperature not recorded"),
         ({"acidity": "none", "base_pkah": 19.0, "temperature_c": 60.0}, STRONG_BASE, True, "a stronger base"),
-        ({"acidity": "none", "base_pkah": 10.3, "temperature_c": 90.0}, STRONG_BASE, False, "carbonate is weaker"),
+        (
+            {"acidity": "none", "base_pkah": 10.3, "temperature_c": 90.0},
+            STRONG_BASE,
+            False,
+            "carbonate is weaker",
+        ),
         ({"acidity": "none", "temperature_c": 90.0}, STRONG_BASE, False, "no base, and all is known"),
     ],
 )

@@ -33,10 +33,18 @@ def test_a_step_is_wholly_like_itself() -> None:
 @pytest.mark.parametrize(
     ("nearer", "farther", "why"),
     [
-        ({"leaving_group": "iodide"}, {"leaving_group": "fluoride"}, "bromide and iodide leave alike, fluoride hardly"),
+        (
+            {"leaving_group": "iodide"},
+            {"leaving_group": "fluoride"},
+            "bromide and iodide leave alike, fluoride hardly",
+        ),
         ({"carbon_class": "primary"}, {"carbon_class": "methyl"}, "one step on the ladder against two"),
         ({"temperature_c": 70.0}, {"temperature_c": 120.0}, "ten kelvin against sixty"),
-        ({"nucleophile_class": "amine"}, {"nucleophile_class": "thiolate"}, "nitrogen for nitrogen, not sulfur"),
+        (
+            {"nucleophile_class": "amine"},
+            {"nucleophile_class": "thiolate"},
+            "nitrogen for nitrogen, not sulfur",
+        ),
         ({"acidity": "weak"}, {"acidity": "strong"}, "weak acid against strong"),
         ({"base_pkah": 9.2}, {"base_pkah": 19.0}, "cyanide-like against tert-butoxide-like"),
         ({"protic": None}, {"protic": True}, "not recorded lies between alike and different"),

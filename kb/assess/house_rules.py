@@ -1,0 +1,125 @@
+"""House rules: liabilities that this group wrote down itself, in the same language as the shipped ones.
+
+It owns a rule's checks before it is accepted, its trial on the whole book, and its findings. Keeping rules is the
+store's business. A rule is a motif (SMARTS, optional) and a condition line (`kb.assess.predicate`), with the
+group's words.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Any
+
+from kb.assess.predicate import parse_predicate
+from kb.assess.record_view import RecordView
+from kb.errors import QueryError
+from kb.record.finding import Finding
+from kb.store.derivation import Account
+from kb.store.values import HouseRule
+from kb.vocabulary import FindingKind, Severity
+
+
+def check_rule(rule: HouseRule) -> None:
+    """Refuse a rule whose motif or condition line cannot be used.
+
+    Raises:
+        QueryError: what is wrong with which part.
+    """
+    parse_predicate(rule.when)
+    if rule.motif:
+        _query(rule.motif)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RuleTrial:
+    """A rule tried on the whole book.
+
+    Attributes:
+        hits: codes of failed runs that it warns of.
+        false_alarms: codes of runs that worked and that it warns of.
+        undecided: codes where the verdict or the conditions do not say.
+        failures_in_book: how many runs failed in all.
+    """
+
+    hits: tuple[str, ...]
+    false_alarms: tuple[str, ...]
+    undecided: tuple[str, ...]
+    failures_in_book: int
+
+
+def find_house_rules(rules: Sequence[HouseRule], account: Account, view: RecordView) -> tuple[Finding, ...]:
+    """Return the findings of the rules in force that fit a plan."""
+    findings = []
+    for rule in rules:
+        if rule.is_retired:
+            continue
+        answer = parse_predicate(rule.when).evaluate(account.profile)
+        if answer is False:
+            continue
+        where = _where(rule, account, view)
+        if where is None:
+            continue
+        component, atoms = where
+        unsure = " Cannot tell for sure: not everything is recorded." if answer is None else ""
+        severity = rule.severity
+        if answer is None and severity is Severity.SERIOUS:
+            severity = Severity.CAUTION
+        findings.append(
+            Finding(
+                rule_id=f"house:{rule.rule_id}",
+                kind=FindingKind.HOUSE_RULE,
+                severity=severity,
+                title=rule.title,
+                why=f"{rule.why or 'A rule of this group.'}{unsure}",
+                component=component,
+                atoms=atoms,
+                source=f"house rule by {rule.author}" + (f"; {rule.source}" if rule.source else ""),
+                is_uncertain=answer is None,
+            )
+        )
+    return tuple(findings)
+
+
+def try_rule(rule: HouseRule, view: RecordView) -> RuleTrial:
+    """Try a rule on every standing run of the book."""
+    predicate = parse_predicate(rule.when)
+    rows = range(len(view.table)) if not rule.motif else map(int, view.rows_with_motif(rule.motif))
+    hits, alarms, undecided = [], [], []
+    for row in rows:
+        answer = predicate.evaluate(view.profile(row))
+        if answer is False:
+            continue
+        code = view.table.codes[row]
+        verdict = view.table.word("verdict", row)
+        if answer is None or verdict is None:
+            undecided.append(code)
+        elif verdict == "failed" or (verdict == "partly" and view.failures[row]):
+            hits.append(code)
+        else:
+            alarms.append(code)
+    failures = sum(view.table.word("verdict", r) == "failed" for r in range(len(view.table)))
+    return RuleTrial(
+        hits=tuple(hits), false_alarms=tuple(alarms), undecided=tuple(undecided), failures_in_book=failures
+    )
+
+
+def _where(rule: HouseRule, account: Account, view: RecordView) -> tuple[int | None, tuple[int, ...]] | None:
+    if not rule.motif:
+        return None, ()
+    query = _query(rule.motif)
+    for component, smiles in enumerate(account.fragments):
+        mol = view.mol(smiles)
+        match = mol.GetSubstructMatch(query) if mol is not None else ()
+        if match:
+            return component, tuple(match)
+    return None
+
+
+def _query(smarts: str) -> Any:
+    from rdkit import Chem
+
+    query = Chem.MolFromSmarts(smarts)
+    if query is None:
+        raise QueryError(f"The motif {smarts!r} is no SMARTS.", "Check brackets and ring closures.", smarts)
+    return query

@@ -1,0 +1,226 @@
+"""The book: the one object that a front end opens.
+
+It owns wiring only: it hands the store its chemistry, keeps one view and one search index in step with the store, and
+passes questions down. One Book serves one thread at a time; threads that work side by side open their own.
+"""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Mapping, Sequence
+from pathlib import Path
+from types import TracebackType
+from typing import TYPE_CHECKING, Any
+
+from kb.progress import Progress, Silent
+from kb.record.assessment import Assessment, Estimate
+from kb.record.finding import Finding
+from kb.record.plan import Plan
+from kb.record.run import Run
+
+if TYPE_CHECKING:
+    from kb.assess.house_rules import RuleTrial
+    from kb.assess.record_view import RecordView
+    from kb.search.criteria import Criteria
+    from kb.search.finder import Finder, FindResult
+    from kb.store.store import Store
+    from kb.store.values import Check, HistoryEntry, HouseRule, MergeReport, Page
+
+
+def open_book(path_or_url: str | Path | None = None, create: bool = False, read_only: bool = False) -> Book:
+    """Open a record book, to be used as a context manager.
+
+    Args:
+        path_or_url: SQLite file or SQLAlchemy URL; None = the default place in the user's data directory.
+        create: make a new one; refuses to overwrite.
+        read_only: never write; several may read while one writes.
+
+    Raises:
+        StoreMissing: there is none and `create` is False.
+        StoreExists: there is one and `create` is True.
+        SchemaTooNew, SchemaBehind, StoreDamaged, StoreRefused: as their names say.
+    """
+    from kb import paths
+    from kb.book.chemistry import store_options
+    from kb.store.store import Store
+
+    address = str(path_or_url) if path_or_url is not None else str(paths.default_book())
+    if create:
+        return Book(Store.create(address, **store_options()))
+    return Book(Store.open(address, read_only=read_only, **store_options()))
+
+
+class Book:
+    """One record book; see `open_book`."""
+
+    def __init__(self, store: Store) -> None:
+        self.store = store
+        self._view: tuple[object, RecordView] | None = None
+        self._finder: Finder | None = None
+
+    def __enter__(self) -> Book:
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        self.close()
+
+    def close(self) -> None:
+        """Let go of the file or the server."""
+        self.store.close()
+
+    @property
+    def path(self) -> str:
+        """Return where the book is, for showing."""
+        return str(self.store.book.address)
+
+    @property
+    def is_read_only(self) -> bool:
+        """Return True when the book was opened for reading."""
+        return self.store.book.read_only
+
+    def count(self) -> int:
+        """Return how many runs stand."""
+        return self.store.count()
+
+    def check(self, plan: Plan, *, top: int = 5, at_date: dt.date | None = None) -> Assessment:
+        """Check a planned step.
+
+        Args:
+            plan: scheme and conditions.
+            top: how many precedents to list.
+            at_date: leave later and undated runs out; None = all runs.
+        """
+        from kb.assess.assessment import assess
+        from kb.store.derivation import account_of_plan
+
+        account = account_of_plan(plan)
+        view = self.view().until(at_date)
+        rest = self.finder().tanimoto_of_runs(account.facts.substrate, view.table.codes)
+        return assess(plan, view, self.store.house_rules.list(), rest, top, account)
+
+    def what_if(self, plan: Plan, temperatures_c: Sequence[float]) -> tuple[tuple[float, Estimate], ...]:
+        """Return the estimate at each of some temperatures [degC], all else as planned."""
+        import dataclasses
+
+        from kb.quantity import Temperature
+
+        answers = []
+        for t in temperatures_c:
+            temperature = Temperature(text=f"{t:g} °C", start_c=t, end_c=t)
+            changed = dataclasses.replace(plan.conditions, temperature=temperature)
+            assessment = self.check(dataclasses.replace(plan, conditions=changed), top=0)
+            answers.append((t, assessment.estimate))
+        return tuple(answers)
+
+    def find(self, criteria: Criteria, deadline_s: float | None = None) -> FindResult:
+        """Find runs; with a deadline [s] the answer may be partial and says so."""
+        return self.finder().find(criteria, deadline_s=deadline_s)
+
+    def add(self, run: Run, who: str) -> Run:
+        """Record a run and return it with its code; it is on disk when this returns."""
+        return self.store.add(run, who)
+
+    def get(self, code: str) -> Run:
+        """Return a run by code or UUID, withdrawn ones included.
+
+        Raises:
+            RecordNotFound: no run answers to it.
+        """
+        return self.store.get(code)
+
+    def amend(self, code: str, changes: Mapping[str, Any], *, who: str, why: str, revision: int | None = None) -> Run:
+        """Change fields of a run; old values stay in the history.
+
+        Args:
+            code: of the run.
+            changes: field of Run to new value.
+            who, why: kept in the history.
+            revision: the revision that the change was made on; None = whatever stands.
+
+        Raises:
+            RecordConflict: somebody changed it since that revision.
+        """
+        return self.store.amend(code, changes, who=who, why=why, expected_revision=revision)
+
+    def withdraw(self, code: str, *, who: str, why: str) -> Run:
+        """Withdraw a run; it stays readable but no longer speaks."""
+        return self.store.withdraw(code, who=who, why=why)
+
+    def history(self, code: str) -> tuple[HistoryEntry, ...]:
+        """Return what was done to a run, oldest first."""
+        return tuple(self.store.history(code))
+
+    def page(self, offset: int = 0, limit: int = 50, sort: str = "date", withdrawn: bool = False) -> Page:
+        """Return one page of runs, newest first."""
+        from kb.store.runs import RunFilter, Sort
+
+        return self.store.page(
+            RunFilter(with_withdrawn=withdrawn),
+            sort=Sort(sort),
+            descending=True,
+            page=offset // limit + 1,
+            size=limit,
+        )
+
+    def remarks(self, run: Run) -> tuple[Finding, ...]:
+        """Return what does not add up in a run, for telling whoever just recorded it."""
+        from kb.assess.data_findings import find_outcome_findings
+
+        return find_outcome_findings(run.outcome)
+
+    def rules(self) -> tuple[HouseRule, ...]:
+        """Return the house rules, retired ones included."""
+        return self.store.house_rules.list(with_retired=True)
+
+    def rule(self, rule_id: str) -> HouseRule:
+        """Return one house rule."""
+        return self.store.house_rules.get(rule_id)
+
+    def add_rule(self, rule: HouseRule) -> HouseRule:
+        """Adopt a house rule and return it with its id; refused where its motif or condition cannot be used."""
+        from kb.assess.house_rules import check_rule
+
+        check_rule(rule)
+        return self.store.house_rules.add(rule)
+
+    def retire_rule(self, rule_id: str, *, who: str, why: str) -> None:
+        """Retire a house rule; it is kept with the reason."""
+        self.store.house_rules.retire(rule_id, who=who, why=why)
+
+    def try_rule(self, rule: HouseRule) -> RuleTrial:
+        """Try a rule on every standing run."""
+        from kb.assess.house_rules import check_rule, try_rule
+
+        check_rule(rule)
+        return try_rule(rule, self.view())
+
+    def verify(self, progress: Progress | None = None) -> tuple[Check, ...]:
+        """Check the book from the file up to the derived facts."""
+        from kb.store.safekeeping import verify
+
+        return tuple(verify(self.store, progress or Silent()))
+
+    def merge(self, other: str | Path, *, who: str, progress: Progress | None = None) -> MergeReport:
+        """Take in another book; doing it twice, or the other way round, comes to the same."""
+        from kb.store.merging import merge
+
+        return merge(self.store, str(other), who=who, progress=progress or Silent())
+
+    def view(self) -> RecordView:
+        """Return the columns that judgement reads, rebuilt when the book has changed."""
+        version = self.store.data_version()
+        if self._view is None or self._view[0] != version:
+            from kb.assess.record_view import build_view
+
+            self._view = (version, build_view(self.store, self.finder()))
+        return self._view[1]
+
+    def finder(self) -> Finder:
+        """Return the search over this book, following its changes."""
+        if self._finder is None:
+            from kb.search.finder import Finder
+
+            self._finder = Finder(self.store)
+        return self._finder

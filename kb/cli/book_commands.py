@@ -1,0 +1,173 @@
+"""`new`, `verify`, `migrate`, `backup`, `restore`, `merge`, `import`, `export`, `tui`: the book as a whole."""
+
+from __future__ import annotations
+
+import json
+from pathlib import Path
+from typing import Annotated, Any, Optional
+
+import typer
+
+from kb.cli import exit_codes
+from kb.cli.render import wrapped
+from kb.cli.session import Session, current_session
+from kb.errors import SidepathError
+
+Word = Optional[str]  # noqa: UP045 - typer reads the annotations at run time
+
+
+def register(app: typer.Typer) -> None:
+    """Add the commands of this file."""
+    app.command("new")(new)
+    app.command("verify")(verify)
+    app.command("migrate")(migrate)
+    app.command("backup")(backup)
+    app.command("restore")(restore)
+    app.command("merge")(merge)
+    app.command("import")(import_file)
+    app.command("export")(export_file)
+    app.command("tui")(tui)
+
+
+def new() -> None:
+    """Create an empty record book where --book says (else in your data directory); never overwrites."""
+    from kb.book import create_book
+
+    session = current_session()
+    path = create_book(session.book)
+    session.answer({"book": path}, f"New record book at {path}")
+
+
+def verify() -> int:
+    """Check the book from the file up to the facts derived from its runs."""
+    session = current_session()
+    with session.opened(read_only=True) as book:
+        checks = book.verify(session.progress("Verifying"))
+    ok = all(c.ok for c in checks)
+    lines = [
+        line for c in checks for line in wrapped(c.detail, 24, first=f"  {'ok ' if c.ok else 'BAD'} {c.name:<19} ")
+    ]
+    data = {"ok": ok, "checks": [{"name": c.name, "ok": c.ok, "detail": c.detail} for c in checks]}
+    session.answer(data, "\n".join(["The book is sound." if ok else "The book has trouble:", *lines]))
+    return exit_codes.DONE if ok else exit_codes.BOOK_TROUBLE
+
+
+def migrate() -> None:
+    """Bring an older book up to this program, after a backup; rebuild what an older recipe derived."""
+    from kb.book import migrate_book
+
+    session = current_session()
+    said = migrate_book(session.book, session.progress("Rebuilding"))
+    session.answer({"done": said}, said)
+
+
+def backup(
+    target: Annotated[str, typer.Argument(help="File to write, or a folder for dated copies.")],
+) -> None:
+    """Copy the book while others may be writing; the copy is verified."""
+    session = current_session()
+    with session.opened(read_only=True) as book:
+        path = book.backup(Path(target))
+    session.answer({"backup": str(path)}, f"Backed up to {path}; the copy was verified.")
+
+
+def restore(
+    source: Annotated[str, typer.Argument(help="A backup.")],
+    target: Annotated[str, typer.Argument(help="The new file; never overwritten.")],
+) -> None:
+    """Make a book from a backup, in a new file, and verify it."""
+    from kb.book import restore_book
+
+    session = current_session()
+    path = restore_book(Path(source), Path(target))
+    session.answer({"book": str(path)}, f"Restored to {path} and verified. Move it where the group opens it.")
+
+
+def merge(other: Annotated[str, typer.Argument(help="The other book.")]) -> None:
+    """Take in another book; twice, or the other way round, comes to the same."""
+    session = current_session()
+    with session.opened() as book:
+        report = book.merge(other, who=session.initials, progress=session.progress("Merging"))
+    lines = [f"{report.added} runs added, {report.updated} brought up to date, {report.same} the same."]
+    for conflict in report.conflicts:
+        lines += wrapped(
+            f"{conflict.code}, {conflict.field}: "
+            + " or ".join(f"{c.value!r} ({c.who})" for c in conflict.claims)
+            + "; the first stands until somebody settles it.",
+            2,
+        )
+    session.answer(report.as_dict(), "\n".join(lines))
+
+
+def import_file(
+    file: Annotated[str, typer.Argument(help="CSV, XLSX, JSON Lines, RDfile, RXN or SDF.")],
+    dry_run: Annotated[bool, typer.Option("--dry-run", help="Say what would be stored; store nothing.")] = False,
+    rejects: Annotated[Word, typer.Option("--rejects", metavar="FILE", help="Rows that could not be read.")] = None,
+    mapping: Annotated[Word, typer.Option("--mapping", metavar="FILE.json", help="Headings to fields.")] = None,
+) -> int:
+    """Take runs in from a file; run again, nothing is doubled."""
+    session = current_session()
+    fields = json.loads(Path(mapping).read_text(encoding="utf-8")) if mapping else None
+    with session.opened() as book:
+        report = book.import_file(
+            Path(file),
+            who=session.initials,
+            dry_run=dry_run,
+            rejects=Path(rejects) if rejects else None,
+            mapping=fields,
+            progress=session.progress("Importing"),
+        )
+    lines = [
+        f"{report.read} rows read: {report.stored} {'would be stored' if dry_run else 'stored'}, "
+        f"{report.duplicate} already there, {report.rejected} rejected."
+    ]
+    for rejection in report.rejections[:10]:
+        lines += wrapped(f"row {rejection.row}, {rejection.column or 'whole row'}: {rejection.reason}", 2)
+    if report.rejected > 10:
+        lines.append(f"  and {report.rejected - 10} more")
+    if rejects and report.rejected:
+        lines.append(f"The rejected rows are in {rejects}: mend them there and import that file.")
+    session.answer(report.as_dict(), "\n".join(lines))
+    if report.stopped:
+        return exit_codes.INTERRUPTED
+    return exit_codes.REFUSED if report.rejected else exit_codes.DONE
+
+
+def export_file(
+    file: Annotated[str, typer.Argument(help="File to write; its ending tells the format.")],
+) -> None:
+    """Write every run of the book to a file."""
+    session = current_session()
+    with session.opened(read_only=True) as book:
+        count = book.export_file(Path(file), session.progress("Exporting"))
+    session.answer({"file": file, "runs": count}, f"{count} runs written to {file}")
+
+
+def tui(
+    serve: Annotated[bool, typer.Option("--serve", help="In a browser, on this machine only.")] = False,
+    port: Annotated[int, typer.Option(min=1, max=65535)] = 8317,
+) -> None:
+    """Open the terminal interface."""
+    session = current_session()
+    if serve:
+        from tui.serving import serve_on_loopback
+
+        serve_on_loopback(session.book, session.who, port)
+        return
+    open_terminal_interface(session)
+
+
+def open_terminal_interface(session: Session) -> None:
+    """Run the terminal interface until it is closed.
+
+    Raises:
+        SidepathError: there is no terminal to draw on.
+    """
+    import sys
+
+    if not (sys.stdin.isatty() and sys.stdout.isatty()):
+        raise SidepathError("There is no terminal to draw on.", "Run `sidepath tui` in a terminal.")
+    run_application: Any
+    from tui.application import run_application
+
+    run_application(session.book, session.who)

@@ -1,0 +1,154 @@
+"""An assessment as text: what to worry about, what to expect, what is closest, what to try; in that order."""
+
+from __future__ import annotations
+
+from kb.cli.render import bar, heading, percent, severity_word, split_words, wrapped
+from kb.plain import plain, shortened
+from kb.record.assessment import Advice, Assessment, Estimate, Precedent
+from kb.record.conditions import Conditions
+from kb.record.finding import Evidence, Finding
+from kb.vocabulary import Basis, FindingKind, Severity
+
+NO_PERMISSION = (
+    "An estimate is not permission. Hazards are for your local rules and the people "
+    "responsible for safety where you work to judge."
+)
+_BASIS = {
+    Basis.RECORD: "this book",
+    Basis.PUBLISHED: "published rates, no run of this book",
+    Basis.BOTH: "this book and published rates",
+    Basis.NONE: "nothing",
+}
+
+
+def render_assessment(assessment: Assessment, *, verbose: bool = False) -> str:
+    """Return the whole assessment as text of at most 80 columns.
+
+    Args:
+        assessment: to show.
+        verbose: also the parts of each similarity, sources of notes, and side products.
+    """
+    lines = _plan(assessment)
+    lines += ["", heading("Worry about")]
+    worries = assessment.findings if verbose else _few(assessment.findings)
+    for finding in worries:
+        lines += _finding(finding, verbose=verbose)
+    if not assessment.findings:
+        lines += wrapped("Nothing known: no liability, recorded failure or caution fits this plan.", 2)
+    left_out = len(assessment.findings) - len(worries)
+    if left_out:
+        lines += [f"  and {left_out} more of lesser weight: --verbose shows all"]
+    lines += ["", heading("Expect"), *_estimate(assessment.estimate)]
+    lines += ["", heading("Closest in the record"), *_precedents(assessment.precedents, verbose=verbose)]
+    if assessment.advice:
+        lines += ["", heading("Worth trying")]
+        for advice in assessment.advice:
+            lines += _advice(advice)
+    lines += ["", *wrapped(NO_PERMISSION)]
+    return "\n".join(lines)
+
+
+def conditions_line(conditions: Conditions) -> str:
+    """Return conditions in one line: components, solvents, temperature, time."""
+    words = [c.name + (f" ({c.equiv:g} equiv)" if c.equiv is not None else "") for c in conditions.components]
+    if conditions.solvents:
+        words.append("/".join(s.name for s in conditions.solvents))
+    if conditions.temperature:
+        words.append(conditions.temperature.text)
+    if conditions.time:
+        words.append(conditions.time.text)
+    return ", ".join(words) or "no conditions given"
+
+
+def _few(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:
+    """Keep every serious finding and every caution about hazards; of the rest the first ones."""
+    kept = [f for f in findings if f.severity is Severity.SERIOUS or f.kind is FindingKind.CAUTION]
+    room = max(8 - len(kept), 2)
+    others = [f for f in findings if f not in kept][:room]
+    return tuple(f for f in findings if f in kept or f in others)
+
+
+def _plan(assessment: Assessment) -> list[str]:
+    reading = assessment.reading
+    lines = [heading("Planned step"), *wrapped(shortened(plain(assessment.plan.scheme), 300), 2)]
+    lines += wrapped(conditions_line(assessment.plan.conditions), 2)
+    centre = reading.centre
+    if centre is None:
+        return lines + wrapped(f"Not read: {reading.reason}", 2)
+    words = [str(centre.carbon_class), *map(str, centre.flags)]
+    if centre.leaving_group:
+        words.append(f"leaving group {centre.leaving_group}")
+    if reading.nucleophile:
+        words.append(f"nucleophile {reading.nucleophile.nucleophile_class.replace('_', ' ')}")
+    fate = f"{reading.fate} at " if reading.fate else "centre: "
+    return lines + wrapped(f"{fate}{', '.join(words)}", 2)
+
+
+def _finding(finding: Finding, *, verbose: bool) -> list[str]:
+    lines = wrapped(finding.title, 10, first=f"  {severity_word(finding.severity)} ")
+    lines += wrapped(finding.why, 10)
+    if finding.evidence is not None:
+        lines += wrapped(evidence_words(finding.evidence, finding.kind), 10)
+    if finding.side_product and (verbose or finding.severity is Severity.SERIOUS):
+        lines += wrapped(f"Would give {finding.side_product}", 10)
+    if finding.do_instead:
+        shown = finding.do_instead if verbose else finding.do_instead[:2]
+        lines += wrapped("Instead: " + "; ".join(shown), 10)
+    if finding.source and (verbose or finding.severity is not Severity.NOTE):
+        lines += wrapped(f"Source: {finding.source}", 10)
+    return lines
+
+
+def evidence_words(evidence: Evidence, kind: FindingKind) -> str:
+    """Return evidence in one sentence with the runs named."""
+    if not evidence.lost and not evidence.survived:
+        return "No run of this book bears on it."
+    bad, good = ("failed", "came through") if kind is FindingKind.RESEMBLANCE else ("lost", "survived")
+    said = f"In this book: {bad} in {evidence.lost}, {good} in {evidence.survived}"
+    if evidence.chance is not None:
+        chance = evidence.chance
+        said += f"; chance {percent(chance.mean)} ({100 * chance.low:.0f} to {100 * chance.high:.0f})"
+    if evidence.note:
+        said += f"; {evidence.note}"
+    runs = ", ".join(evidence.runs[:8]) + (" …" if len(evidence.runs) > 8 else "")
+    return f"{said}. Runs: {runs}."
+
+
+def _estimate(estimate: Estimate) -> list[str]:
+    lines = []
+    for fate, interval in estimate.fates[:5]:
+        span = f"({100 * interval.low:.0f} to {100 * interval.high:.0f})"
+        lines.append(f"  {fate!s:<14} {percent(interval.mean):>5} {span:<12} {bar(interval.mean)}".rstrip())
+    if estimate.yield_pct is not None:
+        y = estimate.yield_pct
+        lines.append(f"  {'yield':<14} {y.mean:>3.0f} % ({y.low:.0f} to {y.high:.0f})")
+    if estimate.fates:
+        lines += wrapped(
+            f"Intervals hold {100 * estimate.level:.0f} %; basis: {_BASIS[estimate.basis]}. {estimate.note}",
+            2,
+        )
+    else:
+        lines += wrapped(estimate.note or "No number is honest here.", 2)
+    return lines
+
+
+def _precedents(precedents: tuple[Precedent, ...], *, verbose: bool) -> list[str]:
+    if not precedents:
+        return wrapped("No run close enough to say anything.", 2)
+    lines = []
+    for p in precedents:
+        outcome = split_words(p.split) or "no split recorded"
+        if p.yield_pct is not None:
+            outcome += f"; yield {p.yield_pct:.0f} %"
+        lines += wrapped(f"{p.similarity:.2f}  {p.verdict or 'no verdict'}: {outcome}", 12, first=f"  {p.run:<10}")
+        lines += wrapped("differs: " + ("; ".join(p.differs[:4]) if p.differs else "nothing that is recorded"), 18)
+        if verbose:
+            lines += wrapped("parts: " + ", ".join(f"{n} {v:.2f}" for n, v in p.parts), 18)
+    return lines
+
+
+def _advice(advice: Advice) -> list[str]:
+    effect = advice.effect
+    points = f"{100 * effect.mean:+.0f} points ({100 * effect.low:.0f} to {100 * effect.high:.0f})"
+    basis = f"{advice.pairs} pairs" if advice.basis is Basis.RECORD else "published trend"
+    return wrapped(f"{advice.change}: {points}, {basis}", 4, first="  - ") + wrapped(advice.why, 4)

@@ -1,0 +1,48 @@
+"""The command tree: which file holds which commands, and the global options."""
+
+from __future__ import annotations
+
+import sys
+from typing import Annotated, Optional
+
+import typer
+
+from kb.cli import book_commands, check_command, find_command, look_commands, record_commands, rule_commands
+from kb.cli.session import Session, set_session
+
+app = typer.Typer(
+    name="sidepath",
+    no_args_is_help=False,
+    rich_markup_mode=None,
+    pretty_exceptions_enable=False,
+    help="A group's shared record of substitution and elimination runs, checked before the next step is set up.",
+)
+
+
+@app.callback(invoke_without_command=True)
+def root(
+    ctx: typer.Context,
+    book: Annotated[
+        Optional[str],  # noqa: UP045 - read at run time
+        typer.Option("--book", envvar="SIDEPATH_BOOK", metavar="PATH-or-URL", help="The record book."),
+    ] = None,
+    who: Annotated[
+        Optional[str],  # noqa: UP045
+        typer.Option("--as", envvar="SIDEPATH_AS", metavar="INITIALS", help="Who is writing."),
+    ] = None,
+    as_json: Annotated[bool, typer.Option("--json", help="Answer in JSON on stdout.")] = False,
+    quiet: Annotated[bool, typer.Option("--quiet", "-q", help="Only results and errors.")] = False,
+    verbose: Annotated[bool, typer.Option("--verbose", "-v", help="More detail, with sources.")] = False,
+) -> None:
+    """Sidepath."""
+    session = Session(book=book, who=who, as_json=as_json, quiet=quiet, verbose=verbose)
+    set_session(session)
+    if ctx.invoked_subcommand is None:
+        if sys.stdin.isatty() and sys.stdout.isatty():
+            book_commands.open_terminal_interface(session)
+        else:
+            typer.echo(ctx.get_help())
+
+
+for _module in (book_commands, look_commands, check_command, record_commands, find_command, rule_commands):
+    _module.register(app)
