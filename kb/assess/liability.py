@@ -65,9 +65,7 @@ def get_rule(rule_id: str) -> Rule:
     for rule in load_rules():
         if rule.rule_id == rule_id:
             return rule
-    raise RecordNotFound(
-        f"No liability rule is called {rule_id}.", "See DEVELOPERS.md for the list.", rule_id
-    )
+    raise RecordNotFound(f"No liability rule is called {rule_id}.", "See DEVELOPERS.md for the list.", rule_id)
 
 
 def find_liabilities(
@@ -114,16 +112,16 @@ def find_liabilities(
     hits: list[_Hit] = []
     for rule, truth in open_rules:
         gaps = () if truth else rule.when.deciding_gaps(profile)
-        if rule.gives is not None and rule.gives is intended and rule.side != "bystander":
+        if rule.gives is not None and rule.gives is intended and rule.side in ("centre", "nucleophile"):
             continue
         severity = rule.severity if truth else min(rule.severity, Severity.CAUTION, key=lambda s: s.rank)
         if rule.side == "mixture":
             hits.append(_Hit(rule=rule, places=(), gaps=gaps, severity=severity))
             continue
         places = _places(rule, flask, reading, profile)
-        if rule.side == "bystander" and not ignore_intention:
+        if rule.side in ("bystander", "anywhere") and not ignore_intention:
             places = _not_meant(rule, places, target, reading)
-        elif rule.side != "bystander" and reading.confidence is Confidence.UNRESOLVED:
+        elif rule.side in ("centre", "nucleophile") and reading.confidence is Confidence.UNRESOLVED:
             severity = min(severity, Severity.CAUTION, key=lambda s: s.rank)
         for component in dict.fromkeys(p.component for p in places):
             here = tuple(p for p in places if p.component == component)
@@ -155,31 +153,31 @@ def _places(
     else:
         return tuple(places)
     return tuple(
-        p
-        for p in places
-        if any((p.component, p.match.by_map[m]) in at for m in rule.at if m in p.match.by_map)
+        p for p in places if any((p.component, way[m]) in at for way in p.match.ways for m in rule.at if m in way)
     )
 
 
-def _not_meant(
-    rule: Rule, places: tuple[Place, ...], target: Chem.Mol | None, reading: Reading
-) -> tuple[Place, ...]:
-    """Return the bystanders that should survive: not what the product lacks, nor the reacting centre."""
+def _not_meant(rule: Rule, places: tuple[Place, ...], target: Chem.Mol | None, reading: Reading) -> tuple[Place, ...]:
+    """Return the places to worry about: what should survive, and the centre where a rule speaks of it too.
+
+    A bystander is never the reacting centre itself. A rule for any place keeps the centre, unless what the
+    rule predicts is what is intended there. Loss of a group without a stated product is not known to be meant.
+    """
     from kb.assess.liability_intent import surviving
 
-    if not places:
-        return ()
-    kept = surviving(rule, places, target, reading)
-    is_known_loss = reading.fate is Fate.GROUP_LOSS
-    centres = () if is_known_loss else reading.centres
-    return tuple(
-        p
-        for p in kept
-        if not any(
-            c.component == p.component and c.atom in p.match.atoms and c.leaving_atom in p.match.atoms
-            for c in centres
-        )
-    )
+    is_wanted = rule.gives is not None and rule.gives is reading.fate
+    at_centre = [p for p in places if _holds_centre(p, reading)]
+    elsewhere = [p for p in places if p not in at_centre]
+    if rule.side == "bystander" and reading.fate is Fate.GROUP_LOSS:
+        elsewhere, at_centre = list(places), []
+    kept = surviving(rule, elsewhere, target, reading) if elsewhere else ()
+    return kept if rule.side == "bystander" or is_wanted else (*at_centre, *kept)
+
+
+def _holds_centre(place: Place, reading: Reading) -> bool:
+    """Return True where an instance holds a reacting centre and the atom that leaves it."""
+    atoms = place.match.atoms
+    return any(c.component == place.component and c.atom in atoms and c.leaving_atom in atoms for c in reading.centres)
 
 
 def _grouped(hits: Sequence[_Hit]) -> list[list[_Hit]]:

@@ -48,9 +48,7 @@ def find_partners(
         return ()
     pattern, _ = compile_motif(rule.partner)
     drawn = [mol for i, mol, _ in flask if i != component]
-    named = [
-        mol for smiles in (*others, *sorted(profile.solvent_alkoxy)) if (mol := _read(smiles)) is not None
-    ]
+    named = [mol for smiles in (*others, *sorted(profile.solvent_alkoxy)) if (mol := _read(smiles)) is not None]
     if rule.partner_from == "itself":
         drawn = [mol for i, mol, _ in flask if i == component]
     return tuple(mol for mol in (*drawn, *named) if mol.HasSubstructMatch(pattern))

@@ -53,9 +53,7 @@ def read_product(smiles: str | None) -> Chem.Mol | None:
     return mol
 
 
-def surviving(
-    rule: Rule, places: Sequence[Place], product: Chem.Mol | None, reading: Reading
-) -> tuple[Place, ...]:
+def surviving(rule: Rule, places: Sequence[Place], product: Chem.Mol | None, reading: Reading) -> tuple[Place, ...]:
     """Return the instances that the product should still have.
 
     Args:

@@ -13,7 +13,7 @@ from functools import lru_cache
 from rdkit import Chem, rdBase
 from rdkit.Chem import rdChemReactions
 
-from kb.assess.liability_rule import LEAVING, Match, Rule
+from kb.assess.liability_rule import Match, Rule
 
 RACEMISED = "racemised"
 """Stands for a transformation that only blurs the configuration of atom 1."""
@@ -22,9 +22,7 @@ MAX_OUTCOMES = 200
 """Most outcomes of one transformation that are looked at."""
 
 
-def side_products(
-    rule: Rule, match: Match, mol: Chem.Mol, partners: Sequence[Chem.Mol] = ()
-) -> tuple[str, ...]:
+def side_products(rule: Rule, match: Match, mol: Chem.Mol, partners: Sequence[Chem.Mol] = ()) -> tuple[str, ...]:
     """Return canonical SMILES of what one instance gives.
 
     Several regioisomers come the most substituted alkene first, then in SMILES order: no ranking is meant.
@@ -83,22 +81,22 @@ def clean(mol: Chem.Mol) -> Chem.Mol:
 @lru_cache(maxsize=512)
 def _compile(template: str) -> rdChemReactions.ChemicalReaction:
     with rdBase.BlockLogs():
-        reaction = rdChemReactions.ReactionFromSmarts(template.replace("<lg>", LEAVING))
+        reaction = rdChemReactions.ReactionFromSmarts(template)
         reaction.Initialize()
     return reaction
 
 
 def _belongs(part: Chem.Mol, match: Match) -> bool:
     """Return False where an outcome came from another instance of the motif than this one."""
+    came_from: dict[int, int] = {}
     for atom in part.GetAtoms():
         if not atom.HasProp("old_mapno") or not atom.HasProp("react_atom_idx"):
             continue
         number = atom.GetIntProp("old_mapno")
         from_substrate = not atom.HasProp("react_idx") or atom.GetIntProp("react_idx") == 0
-        is_core = number in (1, 3) and number in match.by_map and from_substrate
-        if is_core and atom.GetIntProp("react_atom_idx") != match.by_map[number]:
-            return False
-    return True
+        if number in (1, 3) and from_substrate:
+            came_from[number] = atom.GetIntProp("react_atom_idx")
+    return any(all(way.get(n, a) == a for n, a in came_from.items()) for way in match.ways)
 
 
 def _tidy(outcome: Sequence[Chem.Mol], reactants: Sequence[Chem.Mol]) -> tuple[str, int] | None:
@@ -124,9 +122,7 @@ def _tidy(outcome: Sequence[Chem.Mol], reactants: Sequence[Chem.Mol]) -> tuple[s
     rank = sum(
         a.GetTotalNumHs()
         for a in back.GetAtoms()
-        if a.GetAtomicNum() == 6
-        and not a.GetIsAromatic()
-        and a.GetHybridization() == Chem.HybridizationType.SP2
+        if a.GetAtomicNum() == 6 and not a.GetIsAromatic() and a.GetHybridization() == Chem.HybridizationType.SP2
     )
     return Chem.MolToSmiles(back), rank
 
@@ -138,7 +134,5 @@ def _has_changed(atom: Chem.Atom, reactants: Sequence[Chem.Mol]) -> bool:
     source = reactants[atom.GetIntProp("react_idx") if atom.HasProp("react_idx") else 0]
     before = source.GetAtomWithIdx(atom.GetIntProp("react_atom_idx"))
     old = sorted(n.GetIdx() for n in before.GetNeighbors())
-    new = sorted(
-        n.GetIntProp("react_atom_idx") if n.HasProp("react_atom_idx") else -1 for n in atom.GetNeighbors()
-    )
+    new = sorted(n.GetIntProp("react_atom_idx") if n.HasProp("react_atom_idx") else -1 for n in atom.GetNeighbors())
     return old != new or before.GetTotalDegree() != atom.GetTotalDegree()

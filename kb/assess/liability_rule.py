@@ -24,14 +24,12 @@ if TYPE_CHECKING:
 
     from kb.assess.liability_structure import Where
 
-SIDES = ("centre", "nucleophile", "bystander", "mixture")
-"""Where the motif must lie: at the reading's centre, at its nucleophile, anywhere, or nowhere (no motif)."""
+SIDES = ("centre", "nucleophile", "bystander", "anywhere", "mixture")
+"""Where the motif must lie: at the reading's centre, at its nucleophile, elsewhere than at the centre, anywhere
+at all, or nowhere (no motif)."""
 
 MAX_MATCHES = 400
 """Most matches that are looked at in one molecule."""
-
-LEAVING = "Cl,Br,I,$([OX2]S(=O)(=O)[#6])"
-"""What `<lg>` in a motif stands for: halide or sulfonate."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -41,14 +39,16 @@ class Match:
     Attributes:
         atoms: atom indices, in the order of the motif.
         by_map: map number to atom index.
-        core: atoms mapped 1 and 3, or all atoms where the motif has no maps.
+        core: atoms mapped 1 and 3, or all atoms where the motif has neither.
         motif: which of the rule's motifs.
+        ways: every way the maps fit on these same atoms, `by_map` first (either carbon of an epoxide).
     """
 
     atoms: tuple[int, ...]
     by_map: Mapping[int, int]
     core: frozenset[int]
     motif: int = 0
+    ways: tuple[Mapping[int, int], ...] = ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -115,16 +115,24 @@ class Rule:
         """
         from kb.assess.liability_structure import holds
 
-        found: dict[frozenset[int], Match] = {}
+        found: dict[frozenset[int], tuple[tuple[int, ...], int, list[dict[int, int]]]] = {}
+        cores: dict[frozenset[int], frozenset[int]] = {}
         for number, smarts in enumerate(self.motifs):
             pattern, maps = compile_motif(smarts)
             for atoms in mol.GetSubstructMatches(pattern, uniquify=not maps, maxMatches=MAX_MATCHES):
                 by_map = {m: atoms[i] for m, i in maps.items()}
-                core = frozenset(by_map[m] for m in (1, 3) if m in by_map) or frozenset(atoms)
-                if core in found or not all(holds(w, mol, by_map, profile) for w in self.where):
+                core, whole = _core(by_map, atoms), frozenset(atoms)
+                if not all(holds(w, mol, by_map, profile) for w in self.where):
                     continue
-                found[core] = Match(atoms=atoms, by_map=by_map, core=core, motif=number)
-        return tuple(found.values())
+                if whole in found:
+                    found[whole][2].append(by_map)
+                elif core not in cores:
+                    cores[core] = whole
+                    found[whole] = (atoms, number, [by_map])
+        return tuple(
+            Match(atoms=a, by_map=ways[0], core=_core(ways[0], a), motif=n, ways=tuple(ways))
+            for a, n, ways in found.values()
+        )
 
     def product_of(self, match: Match) -> str | None:
         """Return the transformation for an instance, None where the rule states none."""
@@ -137,6 +145,10 @@ class Rule:
         if not self.source_basis or self.source_basis in self.source:
             return self.source
         return f"{self.source} ({self.source_basis})" if self.source else self.source_basis
+
+
+def _core(by_map: Mapping[int, int], atoms: tuple[int, ...]) -> frozenset[int]:
+    return frozenset(by_map[m] for m in (1, 3) if m in by_map) or frozenset(atoms)
 
 
 @lru_cache(maxsize=2048)
@@ -152,10 +164,8 @@ def compile_motif(smarts: str) -> tuple[Chem.Mol, dict[int, int]]:
     from rdkit import Chem, rdBase
 
     with rdBase.BlockLogs():
-        pattern = Chem.MolFromSmarts(smarts.replace("<lg>", LEAVING))
+        pattern = Chem.MolFromSmarts(smarts)
     if pattern is None or pattern.GetNumAtoms() == 0:
-        raise QueryError(
-            f"The motif '{smarts[:60]}' is no SMARTS.", "Check brackets and ring closures.", smarts
-        )
+        raise QueryError(f"The motif '{smarts[:60]}' is no SMARTS.", "Check brackets and ring closures.", smarts)
     maps = {a.GetAtomMapNum(): a.GetIdx() for a in pattern.GetAtoms() if a.GetAtomMapNum()}
     return pattern, maps

@@ -37,6 +37,9 @@ _KNOWN = {
     "source_basis",
     "note",
 }
+_LEAVING = "Cl,Br,I,$([OX2]S(=O)(=O)[#6])"
+"""What `<lg>` in a table stands for: halide or sulfonate."""
+
 _NEEDED = ("id", "title", "when", "severity", "mechanism")
 
 
@@ -85,9 +88,7 @@ def build_rule(entry: Mapping[str, Any], *, place: str) -> Rule:
         raise refuse(f"{missing[0]} is missing.", "Fill it in.")
     motifs, side = _texts(entry.get("motif")), str(entry.get("side", "bystander"))
     if side not in SIDES or (side == "mixture") is bool(motifs):
-        raise refuse(
-            f"side {side} does not fit its motif.", "A mixture has no motif, every other side has one."
-        )
+        raise refuse(f"side {side} does not fit its motif.", "A mixture has no motif, every other side has one.")
     products = _texts(entry.get("product"))
     if len(products) > 1 and len(products) != len(motifs):
         raise refuse("products and motifs do not pair up.", "Give one product for all, or one for each.")
@@ -105,7 +106,7 @@ def build_rule(entry: Mapping[str, Any], *, place: str) -> Rule:
             group=str(entry.get("group", "")),
             where=where,
             at=tuple(int(n) for n in entry.get("at", (1,))),
-            partner=entry.get("partner"),
+            partner="".join(_texts(entry.get("partner"))) or None,
             partner_from=str(entry.get("partner_from", "scheme")),
             gives=Fate(entry["gives"]) if entry.get("gives") else None,
             do_instead=_texts(entry.get("do_instead")),
@@ -130,4 +131,5 @@ def _where(lines: tuple[str, ...]) -> tuple[Any, ...]:
 def _texts(value: object) -> tuple[str, ...]:
     if not value:
         return ()
-    return (value,) if isinstance(value, str) else tuple(str(v) for v in value)  # type: ignore[attr-defined]
+    texts = (value,) if isinstance(value, str) else tuple(str(v) for v in value)  # type: ignore[attr-defined]
+    return tuple(text.replace("<lg>", _LEAVING) for text in texts)
