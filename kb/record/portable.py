@@ -13,32 +13,22 @@ zero. In lists of components, solvents, products and failures the keys that are 
 from __future__ import annotations
 
 import datetime as dt
-import math
-import re
-from collections.abc import Callable, Mapping
+from collections.abc import Mapping
 from enum import StrEnum
-from typing import Any, TypeVar
+from typing import Any
 from uuid import UUID
 
 from kb.errors import InvalidRecord
 from kb.quantity import Duration, Temperature
 from kb.record.component import Component, SolventPart
 from kb.record.conditions import Conditions
+from kb.record.json_fields import JsonFields
 from kb.record.outcome import Failure, Outcome, ProductSeen
 from kb.record.run import Attachment, Run
 from kb.vocabulary import Cause, Fate, Method, Role, Verdict
 
 FORM = 1
 """Number of the form, written under the key `sidepath_run`."""
-
-UNKEEPABLE = re.compile("[\x00\ud800-\udfff]")
-"""Characters that no UTF-8 file (surrogates) or no PostgreSQL text (NUL) can hold."""
-
-LARGEST_INTEGER = 2**53
-"""Integers beyond this do not survive JSON readers that hold numbers as doubles (RFC 8259, section 6)."""
-
-Word = TypeVar("Word", bound=StrEnum)
-Part = TypeVar("Part")
 
 
 def run_to_dict(run: Run) -> dict[str, Any]:
@@ -94,7 +84,7 @@ def run_from_dict(data: Mapping[str, Any]) -> Run:
         InvalidRecord: a key is unknown, a value has the wrong kind or an impossible value, or the form number
             is later than this program's. The sentence names the place ("conditions.components[2].equiv").
     """
-    reader = _Reader(data, "run")
+    reader = JsonFields(data, "run")
     form = reader.integer("sidepath_run", FORM)
     if form != FORM:
         raise InvalidRecord(
@@ -129,8 +119,9 @@ def _word_out(word: StrEnum | None) -> str | None:
 def _sparse(value: Any) -> dict[str, Any]:
     """Return the recorded fields of one flat frozen value."""
     fields = {name: getattr(value, name) for name in value.__dataclass_fields__}
+    recorded = {name: v for name, v in fields.items() if v is not None and v is not False and v != ()}
     return {
-        name: str(v) if isinstance(v, StrEnum) else v for name, v in fields.items() if v is not None and v is not False
+        n: str(v) if isinstance(v, StrEnum) else list(v) if isinstance(v, tuple) else v for n, v in recorded.items()
     }
 
 
@@ -141,121 +132,7 @@ def _moment(text: str) -> dt.datetime:
     return moment.astimezone(dt.UTC)
 
 
-class _Reader:
-    """One JSON object being read: says where a bad value stands, and knows which keys nobody asked for."""
-
-    def __init__(self, data: object, place: str) -> None:
-        if not isinstance(data, Mapping):
-            raise InvalidRecord(f"{place} is {_shown(data)}, not an object.", "Write it as {...}.", data)
-        self.data = data
-        self.place = place
-        self.asked: set[str] = set()
-
-    def _take(self, key: str) -> Any:
-        self.asked.add(key)
-        return self.data.get(key)
-
-    def refuse(self, key: str, value: object, wanted: str) -> InvalidRecord:
-        return InvalidRecord(f"{self.place}.{key} is {_shown(value)}.", f"Give {wanted}.", value)
-
-    def text(self, key: str) -> str | None:
-        value = self._take(key)
-        if value is None:
-            return None
-        if not isinstance(value, str):
-            raise self.refuse(key, value, "text in quotes")
-        if UNKEEPABLE.search(value):
-            raise self.refuse(key, value, "text without NUL characters and unpaired surrogates, which no file keeps")
-        return value
-
-    def needed(self, key: str) -> str:
-        value = self.text(key)
-        if value is None:
-            raise self.refuse(key, None, "a value; it cannot be left out")
-        return value
-
-    def number(self, key: str) -> float | None:
-        value = self._take(key)
-        if value is None:
-            return None
-        if isinstance(value, bool) or not isinstance(value, int | float) or abs(value) > 1e300 or math.isnan(value):
-            raise self.refuse(key, value, "a number, or null where nothing was recorded")
-        return float(value)
-
-    def integer(self, key: str, default: int) -> int:
-        value = self.whole(key)
-        return default if value is None else value
-
-    def whole(self, key: str) -> int | None:
-        value = self._take(key)
-        if value is None:
-            return None
-        if isinstance(value, bool) or not isinstance(value, int) or not 0 <= value <= LARGEST_INTEGER:
-            raise self.refuse(key, value, "a whole number, zero or more")
-        return value
-
-    def claim(self, key: str) -> bool:
-        value = self._take(key)
-        if not isinstance(value, bool | None):
-            raise self.refuse(key, value, "true or false")
-        return bool(value)
-
-    def word(self, key: str, words: type[Word]) -> Word | None:
-        value = self.text(key)
-        if value is None:
-            return None
-        if value not in set(words):
-            raise self.refuse(key, value, f"one of {', '.join(words)}")
-        return words(value)
-
-    def needed_word(self, key: str, words: type[Word]) -> Word:
-        value = self.word(key, words)
-        if value is None:
-            raise self.refuse(key, None, f"one of {', '.join(words)}")
-        return value
-
-    def parsed(self, key: str, parse: Callable[[str], Part], wanted: str) -> Part | None:
-        value = self.text(key)
-        if value is None:
-            return None
-        try:
-            return parse(value)
-        except (ValueError, OverflowError) as error:
-            raise self.refuse(key, value, wanted) from error
-
-    def inner(self, key: str) -> _Reader:
-        value = self._take(key)
-        return _Reader({} if value is None else value, f"{self.place}.{key}")
-
-    def maybe(self, key: str, read: Callable[[_Reader], Part]) -> Part | None:
-        value = self._take(key)
-        return None if value is None else read(_Reader(value, f"{self.place}.{key}"))
-
-    def parts(self, key: str, read: Callable[[_Reader], Part]) -> tuple[Part, ...]:
-        value = self._take(key)
-        if value is None:
-            return ()
-        if not isinstance(value, list | tuple):
-            raise self.refuse(key, value, "a list in square brackets")
-        return tuple(read(_Reader(item, f"{self.place}.{key}[{n}]")) for n, item in enumerate(value))
-
-    def finish(self) -> None:
-        """Refuse keys that nobody asked for: dropping them would lose what somebody wrote."""
-        for key in self.data:
-            if key not in self.asked:
-                raise InvalidRecord(
-                    f"{self.place} has a key {_shown(key)} that this program does not know.",
-                    f"Known keys: {', '.join(sorted(self.asked))}.",
-                    key,
-                )
-
-
-def _shown(value: object) -> str:
-    text = ascii(value)
-    return text if len(text) <= 60 else text[:57] + "..."
-
-
-def _conditions_in(reader: _Reader) -> Conditions:
+def _conditions_in(reader: JsonFields) -> Conditions:
     conditions = Conditions(
         components=reader.parts("components", _component_in),
         solvents=reader.parts("solvents", _solvent_in),
@@ -271,7 +148,7 @@ def _conditions_in(reader: _Reader) -> Conditions:
     return conditions
 
 
-def _component_in(reader: _Reader) -> Component:
+def _component_in(reader: JsonFields) -> Component:
     component = Component(
         role=reader.needed_word("role", Role),
         name=reader.needed("name"),
@@ -287,30 +164,31 @@ def _component_in(reader: _Reader) -> Component:
     return component
 
 
-def _solvent_in(reader: _Reader) -> SolventPart:
+def _solvent_in(reader: JsonFields) -> SolventPart:
     solvent = SolventPart(name=reader.needed("name"), smiles=reader.text("smiles"), parts=reader.number("parts"))
     reader.finish()
     return solvent
 
 
-def _temperature_in(reader: _Reader) -> Temperature:
+def _temperature_in(reader: JsonFields) -> Temperature:
     temperature = Temperature(
         text=reader.needed("text"),
         start_c=reader.number("start_c"),
         end_c=reader.number("end_c"),
+        between_c=reader.numbers("between_c"),
         is_reflux=reader.claim("is_reflux"),
     )
     reader.finish()
     return temperature
 
 
-def _duration_in(reader: _Reader) -> Duration:
+def _duration_in(reader: JsonFields) -> Duration:
     duration = Duration(text=reader.needed("text"), h=reader.number("h"))
     reader.finish()
     return duration
 
 
-def _outcome_in(reader: _Reader) -> Outcome:
+def _outcome_in(reader: JsonFields) -> Outcome:
     outcome = Outcome(
         products=reader.parts("products", _product_in),
         isolated_yield_pct=reader.number("isolated_yield_pct"),
@@ -324,7 +202,7 @@ def _outcome_in(reader: _Reader) -> Outcome:
     return outcome
 
 
-def _product_in(reader: _Reader) -> ProductSeen:
+def _product_in(reader: JsonFields) -> ProductSeen:
     product = ProductSeen(
         fate=reader.needed_word("fate", Fate),
         smiles=reader.text("smiles"),
@@ -338,13 +216,13 @@ def _product_in(reader: _Reader) -> ProductSeen:
     return product
 
 
-def _failure_in(reader: _Reader) -> Failure:
+def _failure_in(reader: JsonFields) -> Failure:
     failure = Failure(mode=reader.needed("mode"), motif=reader.text("motif"), cause=reader.word("cause", Cause))
     reader.finish()
     return failure
 
 
-def _attachment_in(reader: _Reader) -> Attachment:
+def _attachment_in(reader: JsonFields) -> Attachment:
     size = reader.whole("size_bytes")
     if size is None:
         raise reader.refuse("size_bytes", None, "the size in bytes")

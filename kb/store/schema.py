@@ -1,0 +1,277 @@
+"""The shape of a book over time: making one, opening one of the right shape, bringing an old one up to date.
+
+A new book is made from `rows.py` at once, in a file beside the target that is then linked into place: it is
+there whole or not at all, and never over something else. Older books are brought up to date by the revisions
+in `migrations/`, run as a library; a test proves that both ways give the same tables. Alembic is loaded only
+then, since it is slow to start.
+
+Migrating copies a SQLite book first, runs with `foreign_keys=OFF` (with it on, rebuilding a parent table
+would delete its children without a word), checks every foreign key afterwards, and leaves the book as it was
+if anything fails.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import os
+import sqlite3
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+from uuid import uuid4
+
+import sqlalchemy as sa
+
+from kb.errors import SchemaBehind, SchemaTooNew, StoreDamaged, StoreExists, StoreMissing, StoreRefused
+from kb.store import engine as engines
+from kb.store import words
+from kb.store.engine import Address, translated
+from kb.store.history import TIP
+from kb.store.mapping import table
+from kb.store.rows import SCHEMA_HEAD, SCHEMA_REVISIONS, MetaRow, Row
+from kb.store.session import BOOK_ID, CHANGES, CREATED_AT, utc_now
+
+if TYPE_CHECKING:
+    from alembic.config import Config
+
+
+def create(address: Address) -> None:
+    """Make an empty book.
+
+    Raises:
+        StoreExists: something is there already.
+        StoreMissing: the folder is not there.
+        StoreRefused: no permission, disk full, or a network file system.
+    """
+    if address.path is None:
+        _create_on_server(address)
+        return
+    path = address.path
+    refuse_taken(path)
+    if not path.absolute().parent.is_dir():
+        raise StoreMissing(f"There is no folder {path.absolute().parent}.", "Make it first.", str(path))
+    engines.refuse_network_file_system(path)
+    draft = path.with_name(f".{path.name}.{uuid4().hex[:8]}.new")
+    try:
+        with translated(address):
+            draft.touch(exist_ok=False)
+            engine = engines.make_engine(Address(text=str(draft), path=draft), read_only=False, wait_s=5.0)
+            with engine.connect().execution_options(writes=True) as connection, connection.begin():
+                _lay_out(connection)
+            engine.dispose()
+            engines.set_write_ahead(engine, address)
+            engine.dispose()
+        put_in_place(draft, path)
+    finally:
+        for leftover in (draft, draft.with_name(draft.name + "-wal"), draft.with_name(draft.name + "-shm")):
+            leftover.unlink(missing_ok=True)
+
+
+def refuse_taken(path: Path) -> None:
+    """Raise StoreExists where something has that name."""
+    if path.exists() or path.is_symlink():
+        raise StoreExists(
+            f"{path} is there already.", "Choose another name; nothing was overwritten.", str(path)
+        )
+
+
+def put_in_place(draft: Path, path: Path) -> None:
+    """Give a finished file its name, at once, never over another; and make sure that the folder remembers it.
+
+    Raises:
+        StoreExists: somebody was quicker.
+    """
+    with translated(path):
+        try:
+            os.link(draft, path)
+        except FileExistsError as error:
+            raise StoreExists(f"{path} is there already.", "Nothing was overwritten.", str(path)) from error
+        except OSError:  # a file system without hard links
+            refuse_taken(path)
+            draft.rename(path)
+        flush_folder(path.absolute().parent)
+
+
+def flush_folder(folder: Path) -> None:
+    """Write a folder's entries to the disk, where the system can do that."""
+    with contextlib.suppress(OSError):
+        handle = os.open(folder, os.O_RDONLY)
+        try:
+            os.fsync(handle)
+        finally:
+            os.close(handle)
+
+
+def _create_on_server(address: Address) -> None:
+    engine = engines.make_engine(address, read_only=False, wait_s=5.0)
+    with engines.writing(engine, address) as connection:
+        if sa.inspect(connection).has_table("alembic_version"):
+            raise StoreExists(f"{address} holds a book already.", "Choose another database.", str(address))
+        _lay_out(connection)
+    engine.dispose()
+
+
+def _lay_out(connection: sa.Connection) -> None:
+    Row.metadata.create_all(connection)
+    words.create(connection)
+    facts = {BOOK_ID: uuid4().hex, CREATED_AT: utc_now().isoformat(), CHANGES: "0", TIP: ""}
+    connection.execute(sa.insert(table(MetaRow)), [{"name": n, "value": v} for n, v in facts.items()])
+    connection.exec_driver_sql(
+        "CREATE TABLE alembic_version (version_num VARCHAR(32) NOT NULL, "
+        "CONSTRAINT alembic_version_pkc PRIMARY KEY (version_num))"
+    )
+    connection.execute(sa.text("INSERT INTO alembic_version VALUES (:head)"), {"head": SCHEMA_HEAD})
+
+
+def open_engine(
+    address: Address, *, read_only: bool, wait_s: float, on_wait: engines.Waiting | None = None
+) -> sa.Engine:
+    """Return the engine of a book that has the shape of this program.
+
+    Raises:
+        StoreMissing, StoreDamaged, StoreRefused: nothing there; no book; no permission.
+        SchemaTooNew, SchemaBehind: made by a later program; to be migrated.
+    """
+    engine = _raw_engine(address, read_only=read_only, wait_s=wait_s, on_wait=on_wait)
+    try:
+        if not read_only:
+            engines.set_write_ahead(engine, address)
+        refuse_other_shape(address, _current(engine, address))
+    except BaseException:
+        engine.dispose()
+        raise
+    return engine
+
+
+def refuse_other_shape(address: Address, revision: str) -> None:
+    """Raise where a book has not the shape that this program knows."""
+    if revision not in SCHEMA_REVISIONS:
+        raise SchemaTooNew(
+            f"{address} was made by a later version of the program (revision {revision[:32]!r}).",
+            "Update the program; the book was left as it is.",
+            revision,
+        )
+    if revision != SCHEMA_HEAD:
+        raise SchemaBehind(
+            f"{address} has the older form {revision}; this program needs {SCHEMA_HEAD}.",
+            "Run `sidepath migrate`; it makes a copy first.",
+            revision,
+        )
+
+
+def current(address: Address) -> str:
+    """Return the revision of a book, whatever it is."""
+    engine = _raw_engine(address, read_only=True, wait_s=5.0)
+    try:
+        return _current(engine, address)
+    finally:
+        engine.dispose()
+
+
+def _raw_engine(
+    address: Address, *, read_only: bool, wait_s: float, on_wait: engines.Waiting | None = None
+) -> sa.Engine:
+    if address.path is not None:
+        with translated(address):
+            _refuse_no_book(address.path)
+    return engines.make_engine(address, read_only=read_only, wait_s=wait_s, on_wait=on_wait)
+
+
+def _refuse_no_book(path: Path) -> None:
+    """Raise with a plain reason where a path holds no SQLite file, before SQLite is asked."""
+    if not path.exists():
+        raise StoreMissing(
+            f"There is no book {path}.", "Check the path, or make one: `sidepath new`.", str(path)
+        )
+    if path.is_dir():
+        raise StoreDamaged(f"{path} is a folder, not a book.", "Name the file.", str(path))
+    with path.open("rb") as file:
+        head = file.read(16)
+    if head != b"SQLite format 3\x00":
+        what = "is empty" if not head else "is no record book"
+        raise StoreDamaged(
+            f"{path} {what}.", "Check the path, or restore a backup: `sidepath restore`.", str(path)
+        )
+
+
+def _current(engine: sa.Engine, address: Address) -> str:
+    try:
+        with engines.reading(engine, address) as connection:
+            versions = connection.execute(sa.text("SELECT version_num FROM alembic_version")).scalars().all()
+    except StoreDamaged as error:
+        raise StoreDamaged(error.message, error.hint, error.value) from error
+    if len(versions) != 1 or not isinstance(versions[0], str):
+        raise StoreDamaged(f"{address} does not say which form it has.", "Restore a backup.", str(address))
+    return versions[0]
+
+
+def upgrade(address: Address, *, backup: bool = True) -> tuple[str, Path | None]:
+    """Bring a book up to date; return the revision it had and where its copy is (None = no copy).
+
+    Args:
+        address: where the book is.
+        backup: copy a SQLite book first, beside it.
+
+    Raises:
+        SchemaTooNew: made by a later program.
+        StoreDamaged: a foreign key points nowhere afterwards; the book was left as it was.
+        StoreBusy: somebody has it open for writing.
+    """
+    before = current(address)
+    if before == SCHEMA_HEAD:
+        return before, None
+    if before not in SCHEMA_REVISIONS:
+        refuse_other_shape(address, before)
+    copied = _copy_aside(address.path, before) if backup and address.path is not None else None
+    engine = _raw_engine(address, read_only=False, wait_s=5.0)
+    try:
+        run_revisions(engine, address)
+    finally:
+        engine.dispose()
+    return before, copied
+
+
+def run_revisions(engine: sa.Engine, address: Address, target: str = "head") -> None:
+    """Run the revisions up to `target` on an engine, all of them in one transaction."""
+    from alembic import command
+
+    config = alembic_config()
+    with translated(address), engine.connect() as connection:
+        is_sqlite = connection.dialect.name == "sqlite"
+        if is_sqlite:
+            raw = connection.connection.dbapi_connection
+            assert isinstance(raw, sqlite3.Connection)
+            raw.execute("PRAGMA foreign_keys=OFF")  # before the transaction begins, or it is ignored
+        with connection.execution_options(writes=True).begin():
+            config.attributes["connection"] = connection
+            command.upgrade(config, target)
+            broken: Any = connection.exec_driver_sql("PRAGMA foreign_key_check").all() if is_sqlite else []
+            if broken:
+                raise StoreDamaged(
+                    f"{address}: migrating would leave {len(broken)} rows that point nowhere.",
+                    "It was left as it was. Run `sidepath verify`.",
+                    str(address),
+                )
+        if is_sqlite:
+            connection.invalidate()  # the next one has its foreign keys on again
+
+
+def alembic_config() -> Config:
+    """Return the settings under which the revisions run as a library."""
+    from alembic.config import Config
+
+    from kb.paths import shipped
+
+    config = Config()
+    config.set_main_option("script_location", str(shipped("migrations")).replace("%", "%%"))
+    return config
+
+
+def _copy_aside(path: Path, revision: str) -> Path:
+    from kb.store.safekeeping import copy_book
+
+    stamp = utc_now().strftime("%Y%m%dT%H%M%SZ")
+    target = path.with_name(f"{path.stem}.before-migration-{revision}-{stamp}{path.suffix}")
+    if target.exists():
+        raise StoreRefused(f"{target} is there already.", "Try again in a second.", str(target))
+    copy_book(path, target)
+    return target

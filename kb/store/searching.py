@@ -1,0 +1,178 @@
+"""What a search reads in bulk: the columns of runs, where structures stand, structure blobs, words.
+
+Plain tuples, as few conversions as can be: a search that starts reads a hundred thousand runs before its
+first answer. It only reads, everything of one `RunBatch` in one transaction. Values that a search does not
+ask about stay in the book.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from typing import Any
+from uuid import UUID
+
+import sqlalchemy as sa
+
+from kb.errors import IndexStale, StoreError
+from kb.store import history, runs
+from kb.store.rows import RecipeRow
+from kb.store.session import CHANGES, OpenBook
+from kb.store.words import COLUMNS
+
+_KEYS_AT_ONCE = 10_000
+_WORD_COLUMNS = " ".join(name for name in COLUMNS if name != "scheme")
+
+_RUN_COLUMNS = """SELECT run.run_key, run.code, run.code_number, run.run_date, run.verdict, run.project,
+    run.by_initials, run.temperature_start_c, run.temperature_end_c, facts.temperature_c, facts.carbon_class,
+    facts.leaving_group, facts.fate, facts.nucleophile_class, facts.substrate, facts.centre_atom,
+    run.withdrawn_why IS NULL
+    FROM run LEFT JOIN facts ON facts.run_key = run.run_key"""
+_COMPONENTS = "SELECT t.run_key, t.role, t.name, t.smiles FROM component t"
+_SOLVENTS = "SELECT t.run_key, t.name, t.smiles FROM solvent t"
+_FAILURES = "SELECT t.run_key, t.mode FROM failure t"
+_PLACES = "SELECT t.run_key, t.role, t.position, t.structure_id FROM run_structure t"
+_STRUCTURES = """SELECT structure_id, recipe_id, mol_binary, augmented, pattern, morgan FROM structure
+    WHERE structure_id > :after ORDER BY structure_id LIMIT :batch"""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RunBatch:
+    """Rows as the tables hold them, each list ascending by run_key.
+
+    Attributes:
+        version: the book's counter of changes at that moment; tip: its last history entry.
+        runs: (run_key, code, code_number, run_date as ISO text or None, verdict, project, by_initials,
+            temperature_start_c, temperature_end_c, temperature_c of the facts, carbon_class, leaving_group,
+            fate, nucleophile_class, substrate, centre_atom, stands).
+        components: (run_key, role, name, smiles). solvents: (run_key, name, smiles). failures: (run_key,
+        mode). places: (run_key, role, position, structure_id).
+    """
+
+    version: int
+    tip: int
+    runs: Sequence[Any]
+    components: Sequence[Any]
+    solvents: Sequence[Any]
+    failures: Sequence[Any]
+    places: Sequence[Any]
+
+
+def read_runs(book: OpenBook, since_tip: int | None = None) -> RunBatch:
+    """Return the columns of all runs, withdrawn ones included, or of those changed since a history entry.
+
+    Args:
+        since_tip: `seq` of the last entry that is known; None = read all.
+    """
+    with book.reading() as connection:
+        changed: list[int] | None = None
+        if since_tip is not None:
+            ids: list[UUID] = list(history.changed_since(connection, since_tip))
+            changed = sorted(runs.keys_of(connection, ids).values())
+        return RunBatch(
+            version=int(history.read_meta(connection, CHANGES) or 0),
+            tip=history.read_tip(connection)[0],
+            runs=_fetch(connection, _RUN_COLUMNS, "run", changed),
+            components=_fetch(connection, _COMPONENTS, "t", changed),
+            solvents=_fetch(connection, _SOLVENTS, "t", changed),
+            failures=_fetch(connection, _FAILURES, "t", changed),
+            places=_fetch(connection, _PLACES, "t", changed),
+        )
+
+
+def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 8192) -> Iterator[list[list[Any]]]:
+    """Yield structures with an id beyond `after`, ascending, in batches, all as of one moment.
+
+    Args:
+        recipe: what must have encoded them; "" = whatever did.
+
+    Yields:
+        five columns: structure_id, mol_binary, augmented, pattern, morgan; structures without blobs are
+        left out.
+
+    Raises:
+        IndexStale: a structure was encoded by another recipe.
+    """
+    with book.reading() as connection:
+        good = None
+        if recipe:
+            named = sa.select(RecipeRow.recipe_id).where(RecipeRow.name == recipe)
+            good = connection.execute(named).scalar()
+        while True:
+            rows = connection.execute(sa.text(_STRUCTURES), {"after": after, "batch": batch}).all()
+            if not rows:
+                return
+            after = rows[-1][0]
+            usable = [row for row in rows if row[2] is not None]
+            if recipe and any(row[1] != good for row in usable):
+                raise IndexStale(
+                    "Structures in the book were encoded by another recipe.", "Rebuild them: `sidepath migrate`."
+                )
+            if usable:
+                ids, _, *blobs = zip(*usable, strict=True)
+                yield [list(ids), *(list(column) for column in blobs)]
+
+
+def smiles_of(book: OpenBook, structure_ids: Sequence[int]) -> dict[int, str]:
+    """Return the SMILES of some structures; atom numbers of a match count in it."""
+    found: dict[int, str] = {}
+    with book.reading() as connection:
+        for start in range(0, len(structure_ids), _KEYS_AT_ONCE):
+            statement = sa.text("SELECT structure_id, smiles FROM structure WHERE structure_id IN :ids").bindparams(
+                sa.bindparam("ids", expanding=True)
+            )
+            chunk = [int(i) for i in structure_ids[start : start + _KEYS_AT_ONCE]]
+            found.update((row[0], row[1]) for row in connection.execute(statement, {"ids": chunk}))
+    return found
+
+
+def word_keys(book: OpenBook, wanted: Sequence[Sequence[str]]) -> list[int]:
+    """Return the run_key of every run that holds the words, in no order; schemes are not words.
+
+    Args:
+        wanted: for each word its alternatives, one of which must begin a word of the run; an alternative of
+            several words must occur together.
+
+    Raises:
+        StoreError: the engine has no word index.
+    """
+    with book.reading() as connection:
+        if connection.dialect.name != "sqlite":
+            raise StoreError(
+                f"Words cannot be searched on {connection.dialect.name} yet.", "Use a SQLite book."
+            )
+        query = " AND ".join(
+            "(" + " OR ".join('"' + one.replace('"', " ").replace("\x00", " ") + '"*' for one in some) + ")"
+            for some in wanted
+        )
+        found = connection.exec_driver_sql(
+            "SELECT rowid FROM run_words WHERE run_words MATCH ?", (f"{{{_WORD_COLUMNS}}} : ({query})",)
+        )
+        return [row[0] for row in found]
+
+
+def vocabulary(book: OpenBook) -> list[str]:
+    """Return every word of the word index, as it was folded (small letters, no accents); [] where there is none."""
+    with book.reading() as connection:
+        if connection.dialect.name != "sqlite":
+            return []
+        try:
+            connection.exec_driver_sql(
+                "CREATE VIRTUAL TABLE IF NOT EXISTS temp.run_terms USING fts5vocab('main', 'run_words', 'row')"
+            )
+            return [row[0] for row in connection.exec_driver_sql("SELECT term FROM temp.run_terms")]
+        except sa.exc.DatabaseError as error:
+            raise StoreError("The word index cannot be read.", "Run `sidepath verify`.") from error
+
+
+def _fetch(connection: sa.Connection, statement: str, table: str, keys: list[int] | None) -> list[Any]:
+    order = f" ORDER BY {table}.run_key"
+    if keys is None:
+        return list(connection.execute(sa.text(statement + order)).all())
+    rows: list[Any] = []
+    narrowed = sa.text(f"{statement} WHERE {table}.run_key IN :keys{order}").bindparams(
+        sa.bindparam("keys", expanding=True)
+    )
+    for start in range(0, len(keys), _KEYS_AT_ONCE):
+        rows += connection.execute(narrowed, {"keys": keys[start : start + _KEYS_AT_ONCE]}).all()
+    return rows
