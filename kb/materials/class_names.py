@@ -231,6 +231,7 @@ REAGENT_CLASSES: MappingProxyType[str, str] = MappingProxyType(
         "nickel": "nickel catalyst",
         "inert_salt": "salt that takes no part (NaCl as a by-product, Na2SO4, LiClO4 as electrolyte)",
         "scavenger": "cation or acid scavenger",
+        "inert_organic": "organic compound with no group that takes part",
     }
 )
 """Word to meaning. Oxidant words are those that may stand in `ConditionProfile.oxidants` too."""
