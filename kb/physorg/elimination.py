@@ -11,9 +11,9 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from kb.physorg.constants import R_J_MOL_K, get_constant
+from kb.physorg.constants import R_J_MOL_K, find_constant, get_constant
 from kb.physorg.energetics import kelvin
-from kb.physorg.medium import aprotic_gain, base_terms, bulk_of, heat, nucleophile_n, y_of
+from kb.physorg.medium import aprotic_gain, base_terms, bulk_of, concentration_term, heat, nucleophile_n, y_of
 from kb.physorg.rates import SULFONATES
 from kb.physorg.step import Alkene, Centre, Neighbour, StepFacts
 from kb.physorg.terms import Term, find_term, term
@@ -95,7 +95,7 @@ def e2_sites(step: StepFacts) -> list[SiteRate]:
 def soft_sites(step: StepFacts) -> list[SiteRate]:
     """Return elimination by a soft or weakly basic anion (follows n, not pKaH), one entry per carbon."""
     word, n = step.medium.nucleophile, nucleophile_n(step.medium)
-    if word is None or n is None or step.medium.is_protic is None:
+    if word is None or n is None or step.medium.is_protic is None or _is_strong_base(word):
         return []
     reference = get_constant("n", "alkoxide").value
     common = [
@@ -108,6 +108,9 @@ def soft_sites(step: StepFacts) -> list[SiteRate]:
     ]
     gain = aprotic_gain(word, False, step.medium)
     common.append(gain if gain else term("e2_soft", "protic", "protic solvent"))
+    amount = concentration_term(step.medium.nucleophile_molar)
+    if amount:
+        common.append(amount)
     return [
         SiteRate(
             neighbour=neighbour,
@@ -159,6 +162,12 @@ def clash_kj_mol(pair: tuple[str, str]) -> float:
     return get_constant("clash", f"{first} {second}").value
 
 
+def _is_strong_base(word: str) -> bool:
+    """Return whether an E2 by proton affinity is the whole story (alkoxides, hydroxide, amides)."""
+    row = find_constant("pkah", word)
+    return row is not None and row.value >= get_constant("pkah", "hydroxide").value
+
+
 def _is_opposed(alkene: Alkene, neighbour: Neighbour) -> bool:
     strain = [sum(clash_kj_mol(p) for p in a.cis_pairs) for a in neighbour.alkenes]
     mine = sum(clash_kj_mol(p) for p in alkene.cis_pairs)
@@ -186,8 +195,11 @@ def _alpha_terms(centre: Centre) -> list[Term]:
     for word, key in (("benzylic", "aryl"), ("allylic", "vinyl")):
         if word in centre.activations:
             terms.append(term("e2_alpha", key, f"the alkene is conjugated with {key} on the centre"))
-    if centre.oxocarbenium or "alpha-halogen" in centre.activations:
+    if centre.oxocarbenium:
         terms.append(term("e2_alpha", "hetero", "heteroatom on the centre"))
+    halogens = centre.activations.count("alpha-halogen")
+    if halogens:
+        terms.append(term("e2_alpha", "halogen", f"{halogens} further halogen(s) on the centre", halogens))
     return terms
 
 

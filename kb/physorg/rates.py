@@ -168,23 +168,20 @@ def centre_terms(centre: Centre) -> list[Term]:
     """Return what class, branching, activation and ring do to SN2, ethyl = 0."""
     key = str(centre.carbon_class)
     terms = [term("sn2_class", key, f"{key} centre")]
+    # Halogens and heteroatoms hinder an attack from the back as carbons do.
+    groups = {n.label: min(len(n.substituents), 3) for n in centre.neighbours}
     if centre.carbon_class is CarbonClass.PRIMARY:
-        carbons = min(max((n.carbons for n in centre.neighbours), default=0), 3)
-        if carbons:
-            terms.append(term("sn2_branch", f"primary {carbons}", f"{carbons} group(s) on the next carbon"))
-    elif centre.carbon_class is CarbonClass.SECONDARY and centre.ring_size is None:
-        for neighbour in centre.neighbours:
-            if neighbour.carbons:
-                what = f"secondary {min(neighbour.carbons, 3)}"
-                terms.append(term("sn2_branch", what, f"{neighbour.carbons} group(s) on {neighbour.label}"))
+        most = max(groups.values(), default=0)
+        if most:
+            terms.append(term("sn2_branch", f"primary {most}", f"{most} group(s) on the next carbon"))
+    elif centre.carbon_class is CarbonClass.SECONDARY:
+        least = 1 if centre.ring_size is None else 2  # a ring counts its own bonds in its own row
+        for label, count in groups.items():
+            if count >= least:
+                terms.append(term("sn2_branch", f"secondary {count}", f"{count} group(s) on {label}"))
     if centre.ring_size is not None and centre.carbon_class is CarbonClass.SECONDARY:
         size = min(max(centre.ring_size, 3), 8)
         terms.append(term("sn2_ring", str(size), f"in a {centre.ring_size}-membered ring"))
-        terms += [
-            term("sn2_branch", f"secondary {min(n.carbons, 3)}", f"branched at {n.label}")
-            for n in centre.neighbours
-            if n.carbons > 1
-        ]
     for word in dict.fromkeys(centre.activations):
         count = centre.activations.count(word)
         each = count if word in ("alpha-halogen", "beta-heteroatom", "beta-halogen") else 1
