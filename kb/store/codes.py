@@ -10,7 +10,7 @@ the hyphen and the R are free.
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable
+from collections.abc import Mapping
 from uuid import UUID
 
 LETTERS = "bcdfghjkmnpqrstvwxz"
@@ -40,19 +40,24 @@ def parse_code(text: str) -> tuple[int, str] | None:
     return int(found[1]), found[2].lower()
 
 
-def marks(run_ids: Iterable[UUID]) -> dict[UUID, str]:
-    """Return the marks that keep runs of one number apart: "" for one alone, else letters of the UUID.
+def marks_of(claimed: Mapping[UUID, str]) -> dict[UUID, str]:
+    """Return the marks that keep runs of one number apart.
 
-    A function of the set only: order and history do not matter. Letters are added until all differ.
+    A function of the set only: order and history do not matter. A run keeps the mark that it claims; one alone needs
+    none; otherwise two letters of its UUID, and more for all of them until all differ.
+
+    Args:
+        claimed: run to the mark that its first history entry bears ("" = none).
     """
-    ids = sorted(set(run_ids))
-    if len(ids) < 2:
-        return dict.fromkeys(ids, "")
-    spelled = {run_id: _letters(run_id) for run_id in ids}
+    if len(claimed) < 2:
+        return dict(claimed)
+    spelled = {run_id: _letters(run_id) for run_id in claimed}
+    found = {run_id: mark or spelled[run_id][:2] for run_id, mark in claimed.items()}
     length = 2
-    while len({s[:length] for s in spelled.values()}) < len(ids):
+    while len(set(found.values())) < len(found):
+        found = {run_id: letters[:length] for run_id, letters in spelled.items()}
         length += 1
-    return {run_id: s[:length] for run_id, s in spelled.items()}
+    return found
 
 
 def _letters(run_id: UUID) -> str:

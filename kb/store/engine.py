@@ -80,30 +80,22 @@ def parse_address(address: str | Path) -> Address:
     """
     text = str(address)
     if not text.strip() or "\x00" in text:
-        raise StoreError(
-            "No book is named.", "Give a path, or a URL such as postgresql+psycopg://host/name.", text
-        )
+        raise StoreError("No book is named.", "Give a path, or a URL such as postgresql+psycopg://host/name.", text)
     if "://" not in text:
         return Address(text=text, path=Path(text).expanduser())
     try:
         url = sa.make_url(text)
         backend = url.get_backend_name()
     except (sa.exc.ArgumentError, ValueError) as error:
-        raise StoreError(
-            f"{text} is no address of a book.", "Give a path or a SQLAlchemy URL.", text
-        ) from error
+        raise StoreError(f"{text} is no address of a book.", "Give a path or a SQLAlchemy URL.", text) from error
     if backend != "sqlite":
         return Address(text=text, url=url)
     if not url.database or url.database == ":memory:":
-        raise StoreError(
-            "A book in memory would be lost, and each thread would see another.", "Give a file.", text
-        )
+        raise StoreError("A book in memory would be lost, and each thread would see another.", "Give a file.", text)
     return Address(text=text, path=Path(url.database))
 
 
-def make_engine(
-    address: Address, *, read_only: bool, wait_s: float, on_wait: Waiting | None = None
-) -> sa.Engine:
+def make_engine(address: Address, *, read_only: bool, wait_s: float, on_wait: Waiting | None = None) -> sa.Engine:
     """Return an engine for a book that is there; nothing is opened yet."""
     if address.path is None:
         assert address.url is not None
@@ -118,9 +110,7 @@ def make_engine(
         uri = f"{path.absolute().as_uri()}?{mode}"
         return sqlite3.connect(uri, uri=True, check_same_thread=False, timeout=min(wait_s, 5.0))
 
-    pool = (
-        {"poolclass": sa.pool.NullPool} if is_sealed else {"poolclass": sa.pool.QueuePool, "max_overflow": 20}
-    )
+    pool = {"poolclass": sa.pool.NullPool} if is_sealed else {"poolclass": sa.pool.QueuePool, "max_overflow": 20}
     engine = sa.create_engine("sqlite://", creator=connect, **pool)
     sa.event.listen(engine, "connect", _prepare)
     sa.event.listen(engine, "begin", lambda connection: _begin(connection, wait_s, on_wait))
@@ -180,9 +170,7 @@ def writing(engine: sa.Engine, address: Address) -> Iterator[sa.Connection]:
 def begin_write(connection: sa.Connection) -> None:
     """Take the one-writer lock where the engine's BEGIN does not (PostgreSQL: an advisory lock)."""
     if connection.dialect.name == "postgresql":
-        connection.execute(
-            sa.text("SELECT pg_advisory_xact_lock(hashtext(current_database() || ':sidepath'))")
-        )
+        connection.execute(sa.text("SELECT pg_advisory_xact_lock(hashtext(current_database() || ':sidepath'))"))
 
 
 def set_write_ahead(engine: sa.Engine, address: Address) -> None:
@@ -263,23 +251,15 @@ def _first_line(error: BaseException) -> str:
 def _in_our_words(error: BaseException, book: str) -> StoreError:
     name, said = _error_name(error), _first_line(error)
     if name.startswith(("SQLITE_BUSY", "SQLITE_LOCKED")):
-        return StoreBusy(
-            f"{book} is being written by somebody else for too long.", "Try again in a minute.", said
-        )
-    if (
-        name.startswith(("SQLITE_CORRUPT", "SQLITE_NOTADB"))
-        or "decode to UTF-8" in said
-        or "malformed" in said
-    ):
+        return StoreBusy(f"{book} is being written by somebody else for too long.", "Try again in a minute.", said)
+    if name.startswith(("SQLITE_CORRUPT", "SQLITE_NOTADB")) or "decode to UTF-8" in said or "malformed" in said:
         return StoreDamaged(
             f"{book} is damaged or is no record book ({said}).",
             "Run `sidepath verify`, and `sidepath restore` from the last backup if it fails.",
             said,
         )
     if name == "SQLITE_FULL":
-        return StoreRefused(
-            f"The disk that holds {book} is full.", "Make room; nothing was half-written.", said
-        )
+        return StoreRefused(f"The disk that holds {book} is full.", "Make room; nothing was half-written.", said)
     if name.startswith("SQLITE_IOERR"):
         return StoreRefused(
             f"The system could not read or write {book} ({said}; disk full, quota or a failing disk).",
@@ -287,9 +267,7 @@ def _in_our_words(error: BaseException, book: str) -> StoreError:
             said,
         )
     if name.startswith("SQLITE_READONLY"):
-        return StoreRefused(
-            f"{book} cannot be written.", "Ask for write permission on the file and its folder.", said
-        )
+        return StoreRefused(f"{book} cannot be written.", "Ask for write permission on the file and its folder.", said)
     if name.startswith(("SQLITE_CANTOPEN", "SQLITE_PERM", "SQLITE_AUTH")):
         return StoreRefused(
             f"{book} cannot be opened.",
@@ -297,9 +275,7 @@ def _in_our_words(error: BaseException, book: str) -> StoreError:
             said,
         )
     if "no such table" in said or "no such column" in said:
-        return StoreDamaged(
-            f"{book} is no record book, or a part of it is missing ({said}).", "Check the path.", said
-        )
+        return StoreDamaged(f"{book} is no record book, or a part of it is missing ({said}).", "Check the path.", said)
     return StoreError(f"{book}: {said}.", "Run `sidepath verify`.", said)
 
 
@@ -307,4 +283,4 @@ def _system_refused(error: OSError, book: str) -> StoreError:
     what = error.strerror or _first_line(error)
     if isinstance(error, FileNotFoundError):
         return StoreMissing(f"There is no {error.filename or book}.", "Check the path.", what)
-    return StoreRefused(f"{error.filename or book}: {what}.", "Check permissions and room on the disk.", what)
+    return StoreRefused(f"{book}: {what}.", "Check permissions and room on the disk.", what)

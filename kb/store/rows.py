@@ -14,7 +14,8 @@ Invariants
     facts, structure, run_structure   derived: made by a recipe, thrown away when it changes.
     run_key, structure_id, seq        local to one book; `run_id` (UUID) is the identity everywhere.
 
-`temperature_between_c` is a JSON list of numbers. Units are in the column names; moments are UTC; controlled words are stored as the words of `kb.vocabulary`.
+Units are in the column names; moments are UTC; controlled words are stored as the words of `kb.vocabulary`;
+`temperature_between_c` is a JSON list of numbers.
 
 Schema revisions (migrations/versions)
     0001    the baseline.

@@ -13,7 +13,6 @@ if anything fails.
 from __future__ import annotations
 
 import contextlib
-import os
 import sqlite3
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -22,8 +21,8 @@ from uuid import uuid4
 import sqlalchemy as sa
 
 from kb.errors import SchemaBehind, SchemaTooNew, StoreDamaged, StoreExists, StoreMissing, StoreRefused
+from kb.store import copying, words
 from kb.store import engine as engines
-from kb.store import words
 from kb.store.engine import Address, translated
 from kb.store.history import TIP
 from kb.store.mapping import table
@@ -46,9 +45,7 @@ def create(address: Address) -> None:
         _create_on_server(address)
         return
     path = address.path
-    refuse_taken(path)
-    if not path.absolute().parent.is_dir():
-        raise StoreMissing(f"There is no folder {path.absolute().parent}.", "Make it first.", str(path))
+    copying.refuse_taken(path)
     engines.refuse_network_file_system(path)
     draft = path.with_name(f".{path.name}.{uuid4().hex[:8]}.new")
     try:
@@ -60,45 +57,11 @@ def create(address: Address) -> None:
             engine.dispose()
             engines.set_write_ahead(engine, address)
             engine.dispose()
-        put_in_place(draft, path)
+        copying.put_in_place(draft, path)
     finally:
         for leftover in (draft, draft.with_name(draft.name + "-wal"), draft.with_name(draft.name + "-shm")):
-            leftover.unlink(missing_ok=True)
-
-
-def refuse_taken(path: Path) -> None:
-    """Raise StoreExists where something has that name."""
-    if path.exists() or path.is_symlink():
-        raise StoreExists(
-            f"{path} is there already.", "Choose another name; nothing was overwritten.", str(path)
-        )
-
-
-def put_in_place(draft: Path, path: Path) -> None:
-    """Give a finished file its name, at once, never over another; and make sure that the folder remembers it.
-
-    Raises:
-        StoreExists: somebody was quicker.
-    """
-    with translated(path):
-        try:
-            os.link(draft, path)
-        except FileExistsError as error:
-            raise StoreExists(f"{path} is there already.", "Nothing was overwritten.", str(path)) from error
-        except OSError:  # a file system without hard links
-            refuse_taken(path)
-            draft.rename(path)
-        flush_folder(path.absolute().parent)
-
-
-def flush_folder(folder: Path) -> None:
-    """Write a folder's entries to the disk, where the system can do that."""
-    with contextlib.suppress(OSError):
-        handle = os.open(folder, os.O_RDONLY)
-        try:
-            os.fsync(handle)
-        finally:
-            os.close(handle)
+            with contextlib.suppress(OSError):
+                leftover.unlink(missing_ok=True)
 
 
 def _create_on_server(address: Address) -> None:
@@ -179,18 +142,14 @@ def _raw_engine(
 def _refuse_no_book(path: Path) -> None:
     """Raise with a plain reason where a path holds no SQLite file, before SQLite is asked."""
     if not path.exists():
-        raise StoreMissing(
-            f"There is no book {path}.", "Check the path, or make one: `sidepath new`.", str(path)
-        )
+        raise StoreMissing(f"There is no book {path}.", "Check the path, or make one: `sidepath new`.", str(path))
     if path.is_dir():
         raise StoreDamaged(f"{path} is a folder, not a book.", "Name the file.", str(path))
     with path.open("rb") as file:
         head = file.read(16)
     if head != b"SQLite format 3\x00":
         what = "is empty" if not head else "is no record book"
-        raise StoreDamaged(
-            f"{path} {what}.", "Check the path, or restore a backup: `sidepath restore`.", str(path)
-        )
+        raise StoreDamaged(f"{path} {what}.", "Check the path, or restore a backup: `sidepath restore`.", str(path))
 
 
 def _current(engine: sa.Engine, address: Address) -> str:
@@ -267,11 +226,9 @@ def alembic_config() -> Config:
 
 
 def _copy_aside(path: Path, revision: str) -> Path:
-    from kb.store.safekeeping import copy_book
-
     stamp = utc_now().strftime("%Y%m%dT%H%M%SZ")
     target = path.with_name(f"{path.stem}.before-migration-{revision}-{stamp}{path.suffix}")
     if target.exists():
         raise StoreRefused(f"{target} is there already.", "Try again in a second.", str(target))
-    copy_book(path, target)
+    copying.copy_book(path, target)
     return target

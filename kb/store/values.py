@@ -136,10 +136,21 @@ class AddReport:
 class Encoded(Protocol):
     """What the search index keeps of a structure; made by the encoder that a store is opened with."""
 
-    mol_binary: bytes | None
-    augmented: bytes | None
-    pattern: bytes | None
-    morgan: bytes | None
+    @property
+    def mol_binary(self) -> bytes | None:
+        """Return the molecule in the toolkit's binary form."""
+
+    @property
+    def augmented(self) -> bytes | None:
+        """Return the packed augmented-atom screen."""
+
+    @property
+    def pattern(self) -> bytes | None:
+        """Return the packed pattern screen."""
+
+    @property
+    def morgan(self) -> bytes | None:
+        """Return the packed Morgan fingerprint."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -245,7 +256,7 @@ class MergeReport:
         added: runs that were not here before.
         same: runs that had nothing new.
         updated: runs that were here and got new history.
-        conflicts: fields for a person to settle, of all runs that the merge touched.
+        conflicts: fields for a person to settle, of all runs that both books hold now.
         renamed: (old code, new code) of runs whose code was in use on both sides.
         house_rules, acknowledgements, attachments: how many of each came along.
         stopped: the user stopped it; run it again to go on.

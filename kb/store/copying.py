@@ -1,0 +1,125 @@
+"""One file made into another, whole or not at all: copying a book, giving it its name, making the disk remember.
+
+It uses SQLite's online backup interface, never a copy of the file: a file copied while somebody writes, or without its
+log, is torn. A copy is written beside its target, checked, flushed, and only then given its name: a half-written
+copy is never mistaken for a good one. Nothing is ever written over.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import os
+import sqlite3
+from collections.abc import Iterator
+from contextlib import closing, contextmanager
+from functools import partial
+from pathlib import Path
+from uuid import uuid4
+
+from kb.errors import Cancelled, StoreDamaged, StoreExists
+from kb.progress import Progress, Silent
+from kb.store.engine import translated
+
+PAGES_PER_STEP = 2000
+"""Pages copied between two reports; 8 MB with SQLite's usual page of 4096 bytes."""
+
+
+def copy_book(source: Path, target: Path, progress: Progress | None = None) -> None:
+    """Copy a book of any revision to a file that is not there yet, verified, in one piece.
+
+    Raises:
+        StoreExists, StoreMissing, StoreDamaged, StoreRefused: as for `backup`.
+    """
+    refuse_taken(target)
+    progress = progress or Silent()
+    with _draft_beside(target) as draft, translated(source):
+        with closing(connect(source, "ro")) as read, closing(connect(draft, "rwc")) as write:
+            read.execute("BEGIN")  # one moment for the whole copy, or writers would make it start over and over
+            read.execute("SELECT count(*) FROM sqlite_master").fetchone()
+            read.backup(write, pages=PAGES_PER_STEP, progress=partial(_report, progress))
+            # one plain file, without a log of its own: it is switched back when it is opened as a book
+            write.execute("PRAGMA journal_mode=DELETE")
+            trouble = quick_trouble(write)
+        if trouble:
+            raise StoreDamaged(
+                f"The copy of {source} does not verify ({trouble}), so it was not kept.",
+                "Run `sidepath verify`; the book itself may be damaged.",
+                str(source),
+            )
+        _flush(draft)
+        put_in_place(draft, target)
+
+
+def _report(progress: Progress, _status: int, remaining: int, total: int) -> None:
+    if progress.cancelled():
+        raise Cancelled("The copy was stopped.", "Nothing was kept of it.")
+    progress.advance(total - remaining, total, "pages copied")
+
+
+def quick_trouble(connection: sqlite3.Connection) -> str:
+    """Return the first thing that is wrong with a file as SQLite sees it; "" = nothing."""
+    for statement in ("PRAGMA integrity_check(1)", "PRAGMA foreign_key_check"):
+        for row in connection.execute(statement):
+            if row[0] != "ok":
+                return " ".join(str(part) for part in row)
+    return ""
+
+
+def refuse_taken(path: Path) -> None:
+    """Raise StoreExists where something has that name."""
+    if path.exists() or path.is_symlink():
+        raise StoreExists(f"{path} is there already.", "Choose another name; nothing was overwritten.", str(path))
+
+
+def put_in_place(draft: Path, path: Path) -> None:
+    """Give a finished file its name, at once, never over another; and make sure that the folder remembers it.
+
+    Raises:
+        StoreExists: somebody was quicker.
+    """
+    with translated(path):
+        try:
+            os.link(draft, path)
+        except FileExistsError as error:
+            raise StoreExists(f"{path} is there already.", "Nothing was overwritten.", str(path)) from error
+        except OSError:  # a file system without hard links
+            refuse_taken(path)
+            draft.rename(path)
+        flush_folder(path.absolute().parent)
+
+
+def flush_folder(folder: Path) -> None:
+    """Write a folder's entries to the disk, where the system can do that."""
+    with contextlib.suppress(OSError):
+        handle = os.open(folder, os.O_RDONLY)
+        try:
+            os.fsync(handle)
+        finally:
+            os.close(handle)
+
+
+@contextmanager
+def _draft_beside(target: Path) -> Iterator[Path]:
+    draft = target.with_name(f".{target.name}.{uuid4().hex[:8]}.copy")
+    try:
+        yield draft
+    finally:
+        for part in ("", "-wal", "-shm", "-journal"):
+            with contextlib.suppress(OSError):
+                draft.with_name(draft.name + part).unlink(missing_ok=True)
+
+
+def connect(path: Path, mode: str) -> sqlite3.Connection:
+    """Return a bare connection: `mode` is ro, rw or rwc, as in SQLite's URIs."""
+    uri = f"{path.absolute().as_uri()}?mode={mode}"
+    connection = sqlite3.connect(uri, uri=True, isolation_level=None, timeout=5.0)
+    connection.execute("PRAGMA synchronous=FULL")
+    return connection
+
+
+def _flush(path: Path) -> None:
+    handle = os.open(path, os.O_RDONLY)
+    try:
+        os.fsync(handle)
+    finally:
+        os.close(handle)

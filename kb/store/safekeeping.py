@@ -1,0 +1,119 @@
+"""Copies of a book: backup while others write, rotation, restoring; all verified before they count.
+
+It never writes over anything, except where a restore was told to, and then the old book is kept beside it. A server
+keeps its own backups (pg_dump); for a book there this file refuses and says so. `verify` is in `checking.py`.
+"""
+
+from __future__ import annotations
+
+import re
+import sqlite3
+from contextlib import closing
+from pathlib import Path
+from uuid import uuid4
+
+from kb.errors import StoreBusy, StoreRefused
+from kb.progress import Progress
+from kb.store import copying, schema
+from kb.store.checking import verify
+from kb.store.engine import Address, parse_address, translated
+from kb.store.session import utc_now
+from kb.store.store import Store
+
+__all__ = ["KEPT", "backup", "backups_in", "restore", "verify"]
+
+KEPT = 10
+"""Backups kept in a folder unless the settings say otherwise."""
+
+
+def backup(store: Store, target: str | Path, *, keep: int = KEPT, progress: Progress | None = None) -> Path:
+    """Copy a book while others use it; return where the copy is.
+
+    Args:
+        store: the book.
+        target: a file that is not there yet, or a folder: then the copy is named after the book and the moment, and
+            only the latest `keep` copies of that book in the folder are kept.
+        keep: copies kept in a folder; at least 1.
+
+    Raises:
+        StoreExists: the file is there already. StoreMissing: its folder is not.
+        StoreDamaged: the copy does not verify; it is thrown away and older copies are kept.
+        StoreRefused: no permission, disk full, or a server's book.
+    """
+    path = _file_of(store.book.address)
+    wanted = Path(target).expanduser()
+    if not wanted.is_dir():
+        copying.copy_book(path, wanted, progress)
+        return wanted
+    stamp = utc_now().strftime("%Y%m%dT%H%M%S%fZ")
+    copy = wanted / f"{path.stem}-{stamp}{path.suffix}"
+    copying.copy_book(path, copy, progress)
+    with translated(wanted):
+        for old in backups_in(wanted, path)[max(keep, 1) :]:
+            old.unlink()
+    return copy
+
+
+def backups_in(folder: Path, book: Path) -> list[Path]:
+    """Return the copies of a book that `backup` made in a folder, the latest first."""
+    named = re.compile(re.escape(book.stem) + r"-\d{8}T\d{12}Z" + re.escape(book.suffix))
+    return sorted((p for p in folder.iterdir() if named.fullmatch(p.name)), reverse=True)
+
+
+def restore(source: str | Path, target: str | Path, *, replace: bool = False) -> Path | None:
+    """Make a book from a backup, verified first; return where the old book of that name went (None = there was none).
+
+    Args:
+        source: a backup, or any book.
+        target: where the book shall be.
+        replace: a book of that name is moved aside instead of refused. Nobody may have it open.
+
+    Raises:
+        StoreExists: the target is there and `replace` is False.
+        StoreMissing, StoreDamaged, SchemaTooNew: the backup is not there, broken, or of a later program; the target
+            is untouched then.
+        StoreBusy: somebody has the old book open for writing.
+    """
+    source_path, target_path = Path(source).expanduser(), Path(target).expanduser()
+    where = parse_address(source_path)
+    revision = schema.current(where)
+    if revision not in schema.SCHEMA_REVISIONS:
+        schema.refuse_other_shape(where, revision)
+    if not replace:
+        copying.copy_book(source_path, target_path)
+        return None
+    draft = target_path.with_name(f".{target_path.name}.{uuid4().hex[:8]}.restored")
+    copying.copy_book(source_path, draft)
+    try:
+        aside = _move_aside(target_path) if target_path.exists() else None
+        copying.put_in_place(draft, target_path)
+    finally:
+        draft.unlink(missing_ok=True)
+    return aside
+
+
+def _move_aside(path: Path) -> Path:
+    """Rename a book, its log folded in first, so that nothing of it stays under the old name."""
+    aside = path.with_name(f"{path.stem}.replaced-{utc_now().strftime('%Y%m%dT%H%M%SZ')}{path.suffix}")
+    copying.refuse_taken(aside)
+    with translated(path):
+        try:
+            with closing(copying.connect(path, "rw")) as old:
+                old.execute("PRAGMA journal_mode=DELETE")  # folds the log in; refused while anybody else has it open
+        except sqlite3.OperationalError as error:
+            if (error.sqlite_errorname or "").startswith(("SQLITE_BUSY", "SQLITE_LOCKED")):
+                raise StoreBusy(f"{path} is in use.", "Close it everywhere, then restore again.", str(path)) from error
+        except sqlite3.DatabaseError:
+            pass  # too damaged to be opened: moved as it is
+        path.rename(aside)
+        for part in ("-wal", "-shm"):
+            log = path.with_name(path.name + part)
+            if log.exists():
+                log.rename(aside.with_name(aside.name + part))
+    return aside
+
+
+def _file_of(address: Address) -> Path:
+    if address.path is None:
+        raise StoreRefused(f"{address} is on a server.", "Use the server's own backup (pg_dump).", str(address))
+    return address.path
