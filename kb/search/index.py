@@ -227,12 +227,7 @@ class StructureIndex:
             at_least: lowest similarity, 0..1; rows that share nothing are never reported.
             only: rows to consider (n,); None = all.
         """
-        with self._lock:
-            wanted = bits_of(pack_morgan(mol))
-            n = len(self)
-            shared = counts_of(count_planes([self._morgan.plane(int(bit)) for bit in wanted]), n)
-            union = self._bit_counts[:n] + np.uint16(len(wanted)) - shared
-        scores = np.divide(shared, union, out=np.zeros(n, np.float32), where=union > 0, dtype=np.float32)
+        scores = self.scores(mol)
         if only is not None:
             scores[: len(only)][~only] = 0
             scores[len(only) :] = 0
@@ -240,6 +235,15 @@ class StructureIndex:
         rows = np.flatnonzero((scores >= floor) & (scores > 0))
         rows = rows[np.argsort(-scores[rows], kind="stable")][:limit]
         return Similar(rows, scores[rows])
+
+    def scores(self, mol: Chem.Mol) -> NDArray[np.float32]:
+        """Return the Tanimoto similarity of every row to a molecule (n,) float32, 0..1."""
+        with self._lock:
+            wanted = bits_of(pack_morgan(mol))
+            n = len(self)
+            shared = counts_of(count_planes([self._morgan.plane(int(bit)) for bit in wanted]), n)
+            union = self._bit_counts[:n] + np.uint16(len(wanted)) - shared
+        return np.divide(shared, union, out=np.zeros(n, np.float32), where=union > 0, dtype=np.float32)
 
     def exact(self, mol: Chem.Mol, *, with_stereo: bool = True) -> NDArray[np.int64]:
         """Return the rows that are this structure, ascending.

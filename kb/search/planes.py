@@ -163,8 +163,8 @@ def words_of(mask: NDArray[np.bool_]) -> NDArray[np.uint64]:
     blocks = -(-len(mask) // BLOCK_ROWS)
     padded = np.zeros(blocks * BLOCK_ROWS, np.uint8)
     padded[: len(mask)] = mask
-    by_word = padded.reshape(blocks, 64, BLOCK_WORDS).transpose(0, 2, 1).reshape(-1, 64)
-    return np.packbits(by_word, axis=1, bitorder="little").view("<u8").reshape(-1)
+    by_word = np.ascontiguousarray(padded.reshape(blocks, 64, BLOCK_WORDS).transpose(0, 2, 1))
+    return np.packbits(by_word.reshape(-1), bitorder="little").view("<u8")
 
 
 def count_planes(planes: list[NDArray[np.uint64]]) -> list[NDArray[np.uint64]]:

@@ -1,0 +1,223 @@
+"""The one object that answers what is asked of a record: structures, transformations, words and conditions together.
+
+It keeps the record in memory (`live.py`) and follows the book before each answer. Cheap conditions are
+tried first, so that structures are compared only where everything else fits. A deadline, or a user who
+stops, gives an honest partial answer (`complete` False): every run that is listed fits, others may too. For
+that reason a `none_of` whose inside was not decided lists nothing rather than too much.
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from kb.progress import Progress
+from kb.search.columns import role_code
+from kb.search.conditions import narrow_by_conditions
+from kb.search.criteria import Criteria, Order
+from kb.search.live import LiveRecord
+from kb.search.result import FindItem, FindResult
+from kb.vocabulary import Role
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    from kb.search.matching import Deadline
+    from kb.search.structures import Part
+    from kb.store.store import Store
+
+
+class Finder:
+    """Search over one open book; threads may share it, each answer waits for the one before.
+
+    Args:
+        store: the book.
+        threads: for graph matches; None = all cores.
+    """
+
+    def __init__(self, store: Store, threads: int | None = None) -> None:
+        self.store = store
+        self.live = LiveRecord(store, threads)
+
+    def find(
+        self, criteria: Criteria, deadline_s: float | None = None, progress: Progress | None = None
+    ) -> FindResult:
+        """Return one page of the runs that fit.
+
+        Args:
+            criteria: what is asked.
+            deadline_s: when to stop with what was found [s]; None = never.
+            progress: told how far it is, asked whether to stop.
+
+        Raises:
+            QueryError: a part that cannot be searched; the sentence says which and why.
+            IndexStale: the book's structures were encoded by another recipe.
+        """
+        began = time.perf_counter()
+        with self.live.lock:
+            self.live.follow()
+            answer = _Answer(self.live, deadline_s, progress)
+            rows = answer.ordered(answer.runs(criteria, self.live.columns.alive.copy()), criteria)
+            first = (criteria.page - 1) * criteria.limit
+            items = tuple(answer.item(row) for row in rows[first : first + criteria.limit].tolist())
+        return FindResult(
+            total=len(rows),
+            page=criteria.page,
+            items=items,
+            elapsed_ms=(time.perf_counter() - began) * 1000,
+            complete=answer.complete,
+            notes=tuple(dict.fromkeys(answer.notes)),
+        )
+
+    def runs_with_motif(self, smarts: str, role: Role | None = None) -> frozenset[str]:
+        """Return the codes of the standing runs in which a structure of the left side holds a motif.
+
+        Args:
+            smarts: the motif.
+            role: only structures of that role; None = substrate and reagents, products left out.
+
+        Raises:
+            QueryError: the motif cannot be searched.
+        """
+        roles = [role] if role is not None else [Role.SUBSTRATE, Role.REAGENT]
+        either = tuple(Criteria(substructure=smarts, role=one) for one in roles)
+        with self.live.lock:
+            self.live.follow()
+            answer = _Answer(self.live, None, None)
+            mask = answer.runs(Criteria(any_of=either), self.live.columns.alive.copy())
+            return frozenset(self.live.columns.codes[row] for row in np.flatnonzero(mask).tolist())
+
+    def tanimoto_of_runs(self, smiles: str | None, codes: Sequence[str]) -> NDArray[np.float64] | None:
+        """Return the similarity of each run's substrate to a structure, in the order of the codes.
+
+        Args:
+            smiles: the structure; None = there is none to compare.
+            codes: of standing runs.
+
+        Returns:
+            (n,) 0..1, NaN where a run has no substrate that could be encoded; None where `smiles` cannot be
+            read.
+        """
+        from rdkit import Chem
+
+        mol = Chem.MolFromSmiles(smiles) if smiles else None
+        if mol is None:
+            return None
+        with self.live.lock:
+            self.live.follow()
+            index = self.live.index()
+            scores = index.scores(mol)
+            columns = self.live.columns
+            rows = self.live.place_rows
+            chosen = (rows >= 0) & (columns.place_role == role_code(Role.SUBSTRATE))
+            by_row = np.full(len(columns), np.nan)
+            by_row[columns.place_row[chosen]] = scores[rows[chosen]]
+            row_of = {columns.codes[row]: row for row in np.flatnonzero(columns.alive).tolist()}
+        found = [row_of.get(code, -1) for code in codes]
+        return np.array([by_row[row] if row >= 0 else np.nan for row in found], np.float64)
+
+
+class _Answer:
+    """One question being answered."""
+
+    def __init__(self, live: LiveRecord, deadline_s: float | None, progress: Progress | None) -> None:
+        self.live = live
+        self.complete = True
+        self.notes: list[str] = []
+        self._parts: list[Part] = []
+        self._deadline_s = deadline_s
+        self._progress = progress
+        self._began = time.monotonic()
+        self._deadline: Deadline | None = None
+
+    def runs(self, criteria: Criteria, mask: NDArray[np.bool_]) -> NDArray[np.bool_]:
+        """Return the rows of `mask` that satisfy the criteria, nested ones included."""
+        parts = self._structure_parts(criteria)
+        mask = narrow_by_conditions(criteria, mask, self.live, self.notes)
+        nested = sorted(criteria.all_of, key=lambda inner: inner.asks_for_structure)
+        for inner in nested:
+            mask = self.runs(inner, mask)
+        for part in parts:
+            mask = part.narrow(mask, self.deadline)
+            self.complete &= part.complete
+        if criteria.any_of:
+            either = np.zeros_like(mask)
+            for inner in criteria.any_of:
+                either |= self.runs(inner, mask)
+            mask = either
+        for inner in criteria.none_of:
+            shown = len(self._parts)
+            was_complete, self.complete = self.complete, True
+            without = mask & ~self.runs(inner, mask)
+            mask = without if self.complete else np.zeros_like(mask)
+            self.complete &= was_complete
+            del self._parts[shown:]  # what a run does not hold cannot be drawn
+        return mask
+
+    @property
+    def deadline(self) -> Deadline:
+        """Return when to stop, counted from the question."""
+        if self._deadline is None:
+            from kb.search.matching import Deadline
+
+            left_s = None
+            if self._deadline_s is not None:
+                left_s = self._deadline_s - (time.monotonic() - self._began)
+            self._deadline = Deadline(left_s, self._progress)
+        return self._deadline
+
+    def ordered(self, mask: NDArray[np.bool_], criteria: Criteria) -> NDArray[np.intp]:
+        """Return the rows in the order asked for; ties by newest, then by code."""
+        rows = np.flatnonzero(mask)
+        columns = self.live.columns
+        newest = (-columns.code_number[rows], -columns.date[rows])
+        order = criteria.order
+        if order is Order.CODE:
+            keys: tuple[NDArray[np.int64] | NDArray[np.float32], ...] = (columns.code_number[rows],)
+        elif order is Order.OLDEST:
+            undated = columns.date[rows] == 0
+            keys = (columns.code_number[rows], columns.date[rows], undated)
+        else:
+            scores = self._scores() if order is Order.BEST else None
+            keys = newest if scores is None else (*newest, -scores[rows])
+        return rows[np.lexsort(keys)]
+
+    def item(self, row: int) -> FindItem:
+        """Return one run of the answer, with where it matched."""
+        matched = next((found for part in self._parts if (found := part.where(row)) is not None), None)
+        scores = self._scores()
+        return FindItem(
+            run=self.live.columns.codes[row],
+            score=round(float(scores[row]), 4) if scores is not None else None,
+            matched=matched,
+        )
+
+    def _scores(self) -> NDArray[np.float32] | None:
+        """Return the similarity of every run; None where none was asked for."""
+        from kb.search.structures import SimilarPart
+
+        similar = [part.scores() for part in self._parts if isinstance(part, SimilarPart)]
+        if not similar:
+            return None
+        best: NDArray[np.float32] = np.maximum.reduce(similar)
+        return best
+
+    def _structure_parts(self, criteria: Criteria) -> list[Part]:
+        own = (
+            criteria.substructure,
+            criteria.similar,
+            criteria.exact,
+            criteria.at_centre,
+            criteria.transformation,
+        )
+        if all(part is None for part in own):
+            return []
+        from kb.search.structures import parts_of
+
+        parts = parts_of(criteria, self.live, self.live.index(self._progress))
+        self._parts += parts
+        return parts
+
