@@ -14,6 +14,7 @@ import re
 from kb.errors import NameUnknown
 from kb.materials.labels import plain_name
 from kb.materials.names import ParsedMaterial, find_material, parse_material, unknown_name
+from kb.materials.structural import canonical_smiles
 from kb.quantity import format_number, parse_amount, parse_equiv, parse_loading_mol_pct, parse_number
 from kb.record.component import Component, SolventPart
 from kb.vocabulary import Role
@@ -103,23 +104,6 @@ def _meaning(name: str, kind: str | None) -> tuple[ParsedMaterial | None, str | 
     if smiles is None:
         raise unknown_name(name, match, kind)
     return None, smiles
-
-
-def canonical_smiles(text: str) -> str | None:
-    """Return the canonical SMILES of a text that is a structure, atom maps dropped; None for any other text."""
-    bare = text.strip()
-    if not bare or len(bare) > 4000 or re.search(r"\s", bare):
-        return None
-    from rdkit import Chem
-    from rdkit.rdBase import BlockLogs
-
-    with BlockLogs():
-        mol = Chem.MolFromSmiles(bare)
-        if mol is None or not mol.GetNumAtoms():
-            return None
-        for atom in mol.GetAtoms():
-            atom.SetAtomMapNum(0)
-        return str(Chem.MolToSmiles(mol))
 
 
 def _split(text: str, sign: str, kind: str | None, figure: re.Pattern[str]) -> tuple[str, str | None]:
