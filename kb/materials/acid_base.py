@@ -10,8 +10,11 @@ the work-up beside the rest, so the rules are these (common practice):
 5. An inorganic base alone (hydroxide, carbonate, phosphate) beside a strong acid, no amine about: nobody mixes
    these on purpose, so they are two stages and both facts stand.
 
-Acidity: strong below pKa 2.2, with neat formic acid; weak up to pKa 7 and for ammonium salts. Phenols, thiols and
-imides are no acids in this sense, since no acid-labile group notices them.
+Acidity: strong below pKa 2.2, with neat formic acid; weak up to pKa 7 and for ammonium salts and bisulfates, whose
+solutions are work-up washes. Phenols, thiols and
+imides are no acids in this sense, since no acid-labile group notices them. Thionyl chloride and phosphorus halides
+without a base count as strong, because the hydroxyl that they meet gives HX; acid chlorides where an alcohol or water
+is there.
 """
 
 from __future__ import annotations
@@ -69,14 +72,14 @@ class Balance:
 def settle(flask: Flask) -> Balance:
     """Return what is left when the acids and bases in the flask have met."""
     acids = [i for i in flask.ingredients if i.facts.acidity != "none"]
-    bases = [i for i in flask.ingredients if (i.facts.pkah or -20) > 0 and not _is_own_acid(i)]
+    bases = [i for i in flask.ingredients if i.facts.bulk and (i.facts.pkah or 0.0) > 0 and not _is_own_acid(i)]
     left = [acid for acid in acids if not _is_taken(acid, bases, flask)]
     spent = tuple(acid for acid in acids if acid not in left)
-    acid = max(left, key=_strength, default=None)
-    acidity = _level(acid) if acid else "none"
-    if acidity != "strong" and not bases and flask.has(*_ACID_FORMERS) and flask.has("alcohol", "water"):
-        former = flask.having(*_ACID_FORMERS)[0]
-        return Balance(acidity="strong", acid=former, spent=spent)
+    acid = max(left, key=lambda a: _strength(a, flask), default=None)
+    acidity = _level(acid, flask) if acid else "none"
+    formers = flask.having(*_ACID_FORMERS) if flask.has("alcohol", "water") else flask.having(*_ACID_FORMERS[:2])
+    if acidity != "strong" and not bases and formers:
+        return Balance(acidity="strong", acid=formers[0], spent=spent)
     base = max(bases, key=lambda b: b.facts.pkah or 0.0, default=None)
     if base is not None and acid is not None and acidity == "strong" and not _stands_beside(base, acid, flask):
         base = None
@@ -85,13 +88,14 @@ def settle(flask: Flask) -> Balance:
     return Balance(acidity=acidity, acid=acid, base=base, spent=spent)
 
 
-def _strength(acid: Ingredient) -> tuple[bool, float]:
-    return _level(acid) == "strong", -(acid.facts.pka if acid.facts.pka is not None else 5.0)
+def _strength(acid: Ingredient, flask: Flask) -> tuple[bool, float]:
+    return _level(acid, flask) == "strong", -(acid.facts.pka if acid.facts.pka is not None else 5.0)
 
 
-def _level(acid: Ingredient) -> str:
+def _level(acid: Ingredient, flask: Flask) -> str:
     """Return its level; neat formic acid cleaves what trifluoroacetic acid cleaves, so it counts as strong."""
-    if acid.is_medium and acid.facts.smiles == "O=CO":
+    is_neat = acid.is_medium or (acid.is_named and not flask.medium.parts and len(flask.ingredients) == 1)
+    if is_neat and acid.facts.smiles == "O=CO":
         return "strong"
     return acid.facts.acidity
 

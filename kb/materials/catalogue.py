@@ -14,7 +14,7 @@ from __future__ import annotations
 
 import csv
 from collections.abc import Iterator
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import lru_cache
 from pathlib import Path
 from types import MappingProxyType
@@ -179,8 +179,14 @@ def _ions(reagents: tuple[Reagent, ...]) -> dict[str, Reagent]:
             if len(active) == 1 and len(parts) > 1:
                 (ion,) = active
                 if "-]" in ion or "+]" in ion:
-                    ions.setdefault(ion, reagent)
+                    ions.setdefault(ion, replace(reagent, name=_without_cation(reagent.name)))
     return ions
+
+
+def _without_cation(name: str) -> str:
+    """Return "azide" for "sodium azide": an ion of a scheme may have come with another cation."""
+    first, _, rest = name.partition(" ")
+    return rest if rest and first in {"lithium", "sodium", "potassium", "cesium", "magnesium"} else name
 
 
 def _rows(name: str) -> Iterator[dict[str, str]]:

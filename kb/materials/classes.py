@@ -16,7 +16,7 @@ from collections.abc import Sequence
 
 from kb.materials.acid_base import Balance, settle
 from kb.materials.class_names import OXIDANT_CLASSES, REAGENT_CLASSES, SOLVENT_CLASSES, add_wider
-from kb.materials.flask import Flask, Ingredient, fill
+from kb.materials.flask import Flask, fill
 from kb.materials.in_situ import made_in_situ
 from kb.materials.nucleophile import Nucleophile, find_nucleophile
 from kb.materials.profile import LEVELS, ConditionProfile
@@ -30,6 +30,17 @@ STRONG_BASE_FROM = 12.0  # pKaH from which a base keeps a solvent or Lewis acid 
 _PEROXIDES = ("hydrogen_peroxide", "hydroperoxide", "dialkyl_peroxide", "peracid")
 _CATALYSTS = ("metal_catalyst", "copper", "hydrogenation_catalyst")
 _PASSIVE_MEDIUM = {"alcohol", "water"}
+_ACID_WORDS = {
+    "bronsted_acid",
+    "mineral_acid",
+    "sulfonic_acid",
+    "perfluoro_acid",
+    "hydrogen_halide",
+    "hydrogen_chloride",
+    "hydrogen_bromide",
+    "hydrogen_iodide",
+    "hbr_or_tmsi",
+}
 
 
 def profile_of(conditions: Conditions, scheme_fragments: Sequence[str] = ()) -> ConditionProfile:
@@ -44,11 +55,17 @@ def profile_of(conditions: Conditions, scheme_fragments: Sequence[str] = ()) -> 
         The profile; a fact is None where it cannot be told.
     """
     flask = fill(conditions, scheme_fragments)
+    high_c, low_c = _temperatures(conditions, flask)
     if not flask.is_recorded:
-        return ConditionProfile(**_time_facts(conditions), **_temperature_facts(conditions, flask))
+        return ConditionProfile(
+            temperature_c=high_c,
+            temperature_low_c=low_c,
+            time_h=_hours(conditions),
+            prolonged=_is_prolonged(conditions),
+        )
     balance = settle(flask)
     made = made_in_situ(flask, balance)
-    words = _reagent_words(flask) | made
+    words = _reagent_words(flask, balance) | made
     nucleophile = find_nucleophile(flask, balance, made)
     base = balance.base
     acidity = _acidity(flask, balance)
@@ -91,17 +108,23 @@ def profile_of(conditions: Conditions, scheme_fragments: Sequence[str] = ()) -> 
         acid_name=balance.acid.name if balance.acid and balance.acidity != "none" else None,
         nucleophile_class=nucleophile.word if nucleophile else None,
         swain_scott_n=nucleophile.ingredient.facts.swain_scott_n if nucleophile else None,
-        **_temperature_facts(conditions, flask),
-        **_time_facts(conditions),
+        temperature_c=high_c,
+        temperature_low_c=low_c,
+        time_h=_hours(conditions),
+        prolonged=_is_prolonged(conditions),
     )
 
 
-def _reagent_words(flask: Flask) -> frozenset[str]:
-    """Return the classes of everything but the solvents, acids, bases and amines among the solvents kept."""
+def _reagent_words(flask: Flask, balance: Balance) -> frozenset[str]:
+    """Return the classes of everything but the solvents; acids, bases and amines among the solvents are kept.
+
+    A neutralised acid is no acid any more, so its acid words are left out.
+    """
     words: set[str] = set()
     for ingredient in flask.ingredients:
         own = ingredient.facts.classes
-        words |= own if not ingredient.is_medium else own - _PASSIVE_MEDIUM
+        own = own - _PASSIVE_MEDIUM if ingredient.is_medium else own
+        words |= own - _ACID_WORDS if ingredient in balance.spent else own
     return frozenset(words)
 
 
@@ -140,7 +163,7 @@ def _hydrogenolysis(words: frozenset[str], atmosphere: str | None, flask: Flask)
 
 
 def _dissolving_metal(words: frozenset[str], flask: Flask) -> bool | None:
-    """Return True for an alkali metal in ammonia or an amine; None for one in an alcohol, which may only make alkoxide."""
+    """Return True for an alkali metal in ammonia or an amine; None elsewhere, since it may only make alkoxide."""
     if "alkali_metal" not in words:
         return None if flask.has_unknown_reagent else False
     return True if "ammonia" in words or {"ammonia", "amine"} & flask.medium.classes else None
@@ -155,11 +178,11 @@ def _ionising(
     nucleophile: Nucleophile | None,
 ) -> bool | None:
     """Return whether a leaving group is helped off: strong acid, Lewis acid, silver, or a protic ionising solvent
-    with only a weak nucleophile and no strong base."""
+    with only a weak nucleophile, no strong base and no hydride."""
     if acidity == "strong" or halophile in ("silver", "mercury"):
         return True
     has_strong_base = balance.base is not None and (balance.base.facts.pkah or 0.0) >= STRONG_BASE_FROM
-    if has_strong_base:
+    if has_strong_base or any(i.facts.hydride != "none" for i in flask.ingredients):
         return False
     if lewis in ("mild", "strong"):
         return True
@@ -178,24 +201,23 @@ def _alkoxy(flask: Flask) -> frozenset[str]:
     return frozenset(from_reagents | from_solvents)
 
 
-def _temperature_facts(conditions: Conditions, flask: Flask) -> dict[str, float | None]:
-    """Return the highest and lowest temperature, reflux taken at the lowest boiling point of the solvents."""
+def _temperatures(conditions: Conditions, flask: Flask) -> tuple[float | None, float | None]:
+    """Return the highest and lowest temperature [degC], reflux taken at the lowest boiling point of the solvents."""
     temperature = conditions.temperature
     if temperature is None:
-        return {"temperature_c": None, "temperature_low_c": None}
+        return None, None
     known = list(temperature.known_c)
     if temperature.is_reflux:
         if flask.medium.bp_c is None:
-            return {"temperature_c": None, "temperature_low_c": min(known, default=None)}
+            return None, min(known, default=None)
         known.append(flask.medium.bp_c)
-    return {"temperature_c": max(known, default=None), "temperature_low_c": min(known, default=None)}
+    return max(known, default=None), min(known, default=None)
 
 
-def _time_facts(conditions: Conditions) -> dict[str, object]:
-    hours = conditions.time.h if conditions.time is not None else None
-    return {"time_h": hours, "prolonged": hours > PROLONGED_ABOVE_H if hours is not None else None}
+def _hours(conditions: Conditions) -> float | None:
+    return conditions.time.h if conditions.time is not None else None
 
 
-def ingredients_of(conditions: Conditions, scheme_fragments: Sequence[str] = ()) -> tuple[Ingredient, ...]:
-    """Return what acts in the flask, for sentences and for looking up what a class came from."""
-    return fill(conditions, scheme_fragments).ingredients
+def _is_prolonged(conditions: Conditions) -> bool | None:
+    hours = _hours(conditions)
+    return hours > PROLONGED_ABOVE_H if hours is not None else None

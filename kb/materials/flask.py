@@ -213,7 +213,11 @@ def _add_fragment(got: _Gathering, fragment: str, component: Component | None) -
 
 
 def _add_medium(got: _Gathering, medium: Medium) -> None:
-    """Mark or add what the solvents themselves do: acids, bases and nucleophiles among them."""
+    """Mark or add what the solvents themselves do: acids, bases and nucleophiles among them.
+
+    Of a scheme, only a single solvent is sure to be the medium: beside dichloromethane, TFA or triethylamine is a
+    reagent.
+    """
     catalogue = load_catalogue()
     for solvent in medium.solvents:
         facts = catalogue.reagent_by_smiles.get(solvent.smiles)
@@ -222,5 +226,5 @@ def _add_medium(got: _Gathering, medium: Medium) -> None:
         place = next((n for n, i in enumerate(got.ingredients) if i.facts.smiles == solvent.smiles), None)
         if place is None:
             got.ingredients.append(Ingredient(facts=facts, is_medium=True))
-        elif not medium.is_from_scheme:
+        elif not medium.is_from_scheme or len(medium.parts) == 1:
             got.ingredients[place] = replace(got.ingredients[place], is_medium=True)

@@ -3,8 +3,8 @@
 It owns the averaging. Permittivity and E_T(30) of a mixture are taken as the mean by volume, equal shares where
 none are recorded: a rough figure (preferential solvation is not in it), good enough to place a run among others.
 Y of aqueous alcohol, acetone and dioxane comes from the published table, between its points by straight lines;
-no other mixture gets a Y. Where the solvents are only known from a scheme and there are several, no figure is
-given, because a scheme lists work-up solvents too.
+no other mixture gets a Y, nor one whose shares are not recorded. Where several solvents are only known from a
+scheme, no figure is given, because a scheme lists work-up solvents too.
 """
 
 from __future__ import annotations
@@ -31,11 +31,13 @@ class Medium:
         parts: (solvent, share by volume), shares adding to 1; empty = none known.
         has_unknown: a solvent is not in the catalogue, or none is recorded.
         is_from_scheme: read off a scheme, work-up solvents perhaps among them.
+        has_shares: the shares are recorded; else they are taken as equal.
     """
 
     parts: tuple[tuple[Solvent, float], ...] = ()
     has_unknown: bool = True
     is_from_scheme: bool = False
+    has_shares: bool = False
 
     @property
     def solvents(self) -> tuple[Solvent, ...]:
@@ -71,10 +73,12 @@ class Medium:
     @property
     def winstein_y(self) -> float | None:
         """Return Y of a single solvent or of a tabulated aqueous mixture; None where not known."""
-        if self.has_unknown or (self.is_from_scheme and len(self.parts) > 1):
+        if self.has_unknown:
             return None
         if len(self.parts) == 1:
             return self.solvents[0].winstein_y
+        if not self.has_shares:
+            return None
         return _aqueous_y(self.parts, load_catalogue())
 
     @property
@@ -113,7 +117,8 @@ def medium_of(named: Iterable[SolventPart], implied: Iterable[Solvent], in_schem
         parts += found
         has_unknown |= not found
     if parts or has_unknown:
-        return Medium(parts=_shares(parts), has_unknown=has_unknown)
+        has_shares = bool(parts) and all(amount is not None for _, amount in parts)
+        return Medium(parts=_shares(parts), has_unknown=has_unknown, has_shares=has_shares)
     for solvents, is_from_scheme in ((tuple(implied), False), (tuple(in_scheme), True)):
         if solvents:
             distinct = tuple(dict.fromkeys(solvents))

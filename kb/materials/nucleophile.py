@@ -69,6 +69,10 @@ NUCLEOPHILE_ORDER: tuple[str, ...] = (
     "azole",
     "imide",
     "sulfonamide",
+    "carbonate_base",
+    "phosphate_base",
+    "amidine_base",
+    "guanidine_base",
     "active_methylene",
     "nitroalkane",
     "phenol",
@@ -100,13 +104,14 @@ class Nucleophile:
 
 
 def find_nucleophile(flask: Flask, balance: Balance, made: frozenset[str]) -> Nucleophile | None:
-    """Return what is meant as the nucleophile; None where nothing in the flask is one.
+    """Return what is meant as the nucleophile; None where nothing in the flask is one. A spent acid is none.
 
     Args:
         flask, balance: the contents and what is left of acid and base.
         made: classes made in situ.
     """
-    candidates = [n for i in flask.ingredients if (n := _as_nucleophile(i, balance, made)) is not None]
+    present = [i for i in flask.ingredients if i not in balance.spent]
+    candidates = [n for i in present if (n := _as_nucleophile(i, balance, made)) is not None]
     return max(candidates, key=lambda n: _rank(n, balance), default=None)
 
 

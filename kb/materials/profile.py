@@ -24,8 +24,8 @@ class ConditionProfile:
     """The facts of one set of conditions.
 
     Attributes:
-        reagent_classes: classes of everything in the flask but the substrate and the solvents, e.g. `alkoxide`,
-            `azide`, `primary_amine`, `carbonate_base`, `boron_trihalide` (full list: `REAGENT_CLASSES` in `classes.py`).
+        reagent_classes: classes of everything in the flask but the substrate and the solvents, `alkoxide`,
+            `azide`, `primary_amine`, `carbonate_base`, `boron_trihalide` (all of them: `class_names.py`).
         solvent_classes: e.g. `alcohol`, `water`, `amide`, `sulfoxide`, `chlorinated`, `ether`, `thf`, `nonpolar`,
             plus the coarse `protic`, `polar-aprotic`, `nonpolar`.
         has_unknown_reagent: a component could not be classified, so absence of a class proves nothing.

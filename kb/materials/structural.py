@@ -42,6 +42,7 @@ class _Pattern:
 _AMINE = "!$(N-C=[O,S,N]);!$(N-S(=O)=O);!$(N-P=O);!$(N-C#N);!$(N-[#7,#8]);!$(N-[Si,B,F,Cl,Br,I])"
 _ALKYL_AMINE = f"[NX3;+0;{_AMINE};!$(N-a);!$(N-C=C)"
 
+_FREE_N = "[NX3;!$(N-C=O);!$(N-[#7,#8])]"
 _TWO_ACCEPTORS = "$(C(C=O)C=O),$(C(C#N)C=O),$(C(C#N)C#N),$(C(S(=O)=O)C=O),$(C(P(=O)[#8])C=O)"
 
 PATTERNS: tuple[_Pattern, ...] = (
@@ -95,7 +96,7 @@ PATTERNS: tuple[_Pattern, ...] = (
     _Pattern("aromatic_amine", f"[NX3;+0;{_AMINE};$(N-c)]", 4.5, nucleophile="weak"),
     _Pattern("aromatic_amine_base", "[nX2;+0;r6]", 4.5, nucleophile="weak"),
     _Pattern("aromatic_amine_base", "[nX2;+0;r5;$(n:c:[n;H0;X3]),$(n:c:[nH])]", 6.5, nucleophile="weak"),
-    _Pattern("amidine_base", "[NX2;+0;!$(N-[#7,#8]);$(N=[CX3;$(C[#6]),$([CH1])][NX3;!$(N-C=O);!$(N-[#7,#8])])]", 12, "hindered", "weak"),
+    _Pattern("amidine_base", f"[NX2;+0;!$(N-[#7,#8]);$(N=[CX3;$(C[#6]),$([CH1])]{_FREE_N})]", 12, "hindered", "weak"),
     _Pattern("guanidine_base", "[NX2;+0;$(N=C([NX3;!$(N-C=O)])[NX3;!$(N-C=O)])]", 13.5, "hindered", "weak"),
     _Pattern("phosphazene_base", "N=P([NX3])([NX3])[NX3]", 16, "hindered"),
     _Pattern("hydrazine", "[NX3;+0;!$(N-C=O);!$(N-S(=O)=O);!$(N-[N+])]-[NX3;H2,H1;+0]", 8, nucleophile="good"),
@@ -174,6 +175,22 @@ PATTERNS: tuple[_Pattern, ...] = (
     _Pattern("azodicarboxylate", "C(=O)N=NC(=O)"),
     _Pattern("activated_ester", "C(=O)ON(C=O)C=O"),
     _Pattern("activated_ester", "C(=O)[n;r5]"),
+    # metals that the table does not name in this form
+    _Pattern("aluminium_halide", "[Al]-[Cl,Br,I]", lewis="strong"),
+    _Pattern("boron_trihalide", "[BX3]([F,Cl,Br,I])([F,Cl,Br,I])[F,Cl,Br,I]", lewis="strong"),
+    _Pattern("titanium_halide", "[Ti]", lewis="strong"),
+    _Pattern("tin_halide", "[Sn]-[Cl,Br,I]", lewis="strong"),
+    _Pattern("zinc_halide", "[Zn]-[Cl,Br,I]", lewis="strong"),
+    _Pattern("iron_halide", "[Fe]-[Cl,Br]", lewis="strong"),
+    _Pattern("silver_salt", "[Ag]"),
+    _Pattern("mercury_salt", "[Hg]", lewis="mild"),
+    _Pattern("copper", "[Cu]"),
+    _Pattern("palladium", "[Pd]"),
+    _Pattern("nickel", "[Ni]"),
+    _Pattern("metal_catalyst", "[Pt,Rh,Ir,Co,Ru]"),
+    _Pattern("chromium", "[Cr]=O"),
+    _Pattern("permanganate", "[Mn](=O)(=O)=O"),
+    _Pattern("osmium", "[Os]"),
     # oxidants
     _Pattern("n_haloimide", "[Cl,Br,I][NX3](C=O)"),
     _Pattern("electrophilic_fluorine", "F[N+,N;X3,X4]"),
