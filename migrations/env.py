@@ -6,6 +6,8 @@ checked afterwards. There is no `alembic.ini`; the `alembic` command alone has n
 
 from __future__ import annotations
 
+from typing import Any
+
 import sqlalchemy as sa
 from alembic import context
 
@@ -33,14 +35,21 @@ def run(connection: sa.Connection) -> None:
         context.run_migrations()
 
 
-handed_over = context.config.attributes.get("connection")
-if isinstance(handed_over, sa.Engine):
+def run_on(handed_over: Any) -> None:
+    """Run on a connection, or on one of an engine (the schema tests); its owner's transaction is left to its owner."""
+    if isinstance(handed_over, sa.Connection):
+        run(handed_over)
+        return
+    if not hasattr(handed_over, "connect"):
+        raise StoreError("No book was handed to the migrations.", "Run `sidepath migrate --book PATH` instead.")
     with handed_over.connect() as opened:
+        if opened.in_transaction():
+            run(opened)
+            return
         if opened.dialect.name == "sqlite":
             opened.exec_driver_sql("PRAGMA foreign_keys=OFF")
         run(opened)
         opened.commit()
-elif isinstance(handed_over, sa.Connection):
-    run(handed_over)
-else:
-    raise StoreError("No book was handed to the migrations.", "Run `sidepath migrate --book PATH` instead.")
+
+
+run_on(context.config.attributes.get("connection"))

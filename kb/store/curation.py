@@ -25,7 +25,7 @@ from kb.store import amending, lineage
 from kb.store.codes import LETTERS
 from kb.store.mapping import Values, table
 from kb.store.rows import AcknowledgementRow, AttachmentBlobRow, DraftRow, HouseRuleRow
-from kb.store.session import OpenBook, need
+from kb.store.session import OpenBook, keepable, need
 from kb.store.values import Acknowledgement, Draft, HouseRule
 from kb.vocabulary import Severity
 
@@ -54,7 +54,7 @@ class HouseRules:
         need(rule.title, "The rule has no title", "one line")
         need(rule.why, "The rule has no reason", "plain words")
         need(rule.author, "Say who writes the rule", "initials (--as)")
-        _keepable(*(value for value in asdict(rule).values() if isinstance(value, str)))
+        keepable(*(value for value in asdict(rule).values() if isinstance(value, str)))
         rule = replace(rule, rule_id=rule_id_of(rule), created_at=self._book.clock())
         with self._book.writing() as connection:
             if connection.execute(sa.select(RULE.c.rule_id).where(RULE.c.rule_id == rule.rule_id)).scalar():
@@ -83,16 +83,14 @@ class HouseRules:
         with self._book.reading() as connection:
             row = connection.execute(sa.select(RULE).where(RULE.c.rule_id == rule_id)).mappings().first()
         if row is None:
-            raise RecordNotFound(
-                f"No house rule is called {rule_id[:60]!r}.", "See `sidepath rule list`.", rule_id
-            )
+            raise RecordNotFound(f"No house rule is called {rule_id[:60]!r}.", "See `sidepath rule list`.", rule_id)
         return rule_of(row)
 
     def retire(self, rule_id: str, who: str, why: str) -> HouseRule:
         """Take a rule out of force, with the reason; one that is retired already stays as it was."""
         need(who, "Say who retires the rule", "initials (--as)")
         need(why, "Say why the rule is retired", "a reason (--why)")
-        _keepable(who, why)
+        keepable(who, why)
         if self.get(rule_id).is_retired:
             return self.get(rule_id)
         with self._book.writing() as connection:
@@ -114,7 +112,7 @@ class Acknowledgements:
         """Keep an acknowledgement; `about` is a run's UUID or the text of a plan."""
         need(who, "Say who acknowledges it", "initials (--as)")
         need(why, "Say why it is acceptable", "a reason")
-        _keepable(finding_id, about, who, why)
+        keepable(finding_id, about, who, why)
         made = Acknowledgement(
             finding_id=finding_id,
             about=about,
@@ -144,7 +142,7 @@ class Drafts:
 
     def save(self, draft_id: str, content: Mapping[str, Any]) -> Draft:
         """Keep a draft, in place of the one of that id."""
-        _keepable(draft_id)
+        keepable(draft_id)
         try:
             text = json.dumps(dict(content))  # ASCII, so that even a broken paste comes back as it was
         except (TypeError, ValueError) as error:
@@ -159,9 +157,7 @@ class Drafts:
     def list(self) -> tuple[Draft, ...]:
         """Return all drafts, the latest first."""
         with self._book.reading() as connection:
-            rows = connection.execute(
-                sa.select(DRAFT).order_by(DRAFT.c.updated_at.desc(), DRAFT.c.draft_id)
-            ).all()
+            rows = connection.execute(sa.select(DRAFT).order_by(DRAFT.c.updated_at.desc(), DRAFT.c.draft_id)).all()
         return tuple(_draft_of(row) for row in rows)
 
     def find(self, draft_id: str) -> Draft | None:
@@ -275,11 +271,3 @@ def _draft_of(row: Any) -> Draft:
     except ValueError as error:
         raise StoreDamaged("A draft was damaged in the book.", "Discard it.", row.draft_id) from error
     return Draft(draft_id=row.draft_id, updated_at=row.updated_at, content=content)
-
-
-def _keepable(*texts: str) -> None:
-    for text in texts:
-        if UNKEEPABLE.search(text):
-            raise InvalidRecord(
-                f"{ascii(text)[:60]} holds characters that no book keeps.", "Leave out NUL characters."
-            )

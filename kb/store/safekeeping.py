@@ -12,7 +12,7 @@ from contextlib import closing
 from pathlib import Path
 from uuid import uuid4
 
-from kb.errors import StoreBusy, StoreRefused
+from kb.errors import StoreBusy, StoreMissing, StoreRefused
 from kb.progress import Progress
 from kb.store import copying, schema
 from kb.store.checking import verify
@@ -20,7 +20,7 @@ from kb.store.engine import Address, parse_address, translated
 from kb.store.session import utc_now
 from kb.store.store import Store
 
-__all__ = ["KEPT", "backup", "backups_in", "restore", "verify"]
+__all__ = ["KEPT", "backup", "backups_in", "replace_book", "restore", "verify"]
 
 KEPT = 10
 """Backups kept in a folder unless the settings say otherwise."""
@@ -60,32 +60,42 @@ def backups_in(folder: Path, book: Path) -> list[Path]:
     return sorted((p for p in folder.iterdir() if named.fullmatch(p.name)), reverse=True)
 
 
-def restore(source: str | Path, target: str | Path, *, replace: bool = False) -> Path | None:
-    """Make a book from a backup, verified first; return where the old book of that name went (None = there was none).
+def restore(source: str | Path, target: str | Path) -> Path:
+    """Make a book from a backup, verified first; return where it is.
 
     Args:
         source: a backup, or any book.
-        target: where the book shall be.
-        replace: a book of that name is moved aside instead of refused. Nobody may have it open.
+        target: a file that is not there yet.
 
     Raises:
-        StoreExists: the target is there and `replace` is False.
-        StoreMissing, StoreDamaged, SchemaTooNew: the backup is not there, broken, or of a later program; the target
-            is untouched then.
-        StoreBusy: somebody has the old book open for writing.
+        StoreExists: the target is there; `replace_book` moves it aside.
+        StoreMissing, StoreDamaged, SchemaTooNew: the backup is not there, broken, or of a later program.
     """
     source_path, target_path = Path(source).expanduser(), Path(target).expanduser()
     where = parse_address(source_path)
     revision = schema.current(where)
     if revision not in schema.SCHEMA_REVISIONS:
         schema.refuse_other_shape(where, revision)
-    if not replace:
-        copying.copy_book(source_path, target_path)
-        return None
+    copying.copy_book(source_path, target_path)
+    return target_path
+
+
+def replace_book(source: str | Path, target: str | Path) -> Path:
+    """Put a backup in the place of a book; return where the old book went, whole, beside the new one.
+
+    The backup is copied and verified before the old book is touched.
+
+    Raises:
+        StoreBusy: somebody has the old book open.
+        StoreMissing, StoreDamaged, SchemaTooNew: as for `restore`; the old book is untouched then.
+    """
+    target_path = Path(target).expanduser()
+    if not target_path.is_file():
+        raise StoreMissing(f"There is no book {target_path}.", "Restore to it without replacing.", str(target_path))
     draft = target_path.with_name(f".{target_path.name}.{uuid4().hex[:8]}.restored")
-    copying.copy_book(source_path, draft)
+    restore(source, draft)
     try:
-        aside = _move_aside(target_path) if target_path.exists() else None
+        aside = _move_aside(target_path)
         copying.put_in_place(draft, target_path)
     finally:
         draft.unlink(missing_ok=True)

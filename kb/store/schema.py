@@ -14,13 +14,14 @@ from __future__ import annotations
 
 import contextlib
 import sqlite3
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 from uuid import uuid4
 
 import sqlalchemy as sa
 
-from kb.errors import SchemaBehind, SchemaTooNew, StoreDamaged, StoreExists, StoreMissing, StoreRefused
+from kb.errors import SchemaBehind, SchemaTooNew, StoreDamaged, StoreError, StoreExists, StoreMissing, StoreRefused
 from kb.store import copying, words
 from kb.store import engine as engines
 from kb.store.engine import Address, translated
@@ -96,9 +97,9 @@ def open_engine(
     """
     engine = _raw_engine(address, read_only=read_only, wait_s=wait_s, on_wait=on_wait)
     try:
+        refuse_other_shape(address, _current(engine, address))
         if not read_only:
             engines.set_write_ahead(engine, address)
-        refuse_other_shape(address, _current(engine, address))
     except BaseException:
         engine.dispose()
         raise
@@ -153,18 +154,24 @@ def _refuse_no_book(path: Path) -> None:
 
 
 def _current(engine: sa.Engine, address: Address) -> str:
-    try:
-        with engines.reading(engine, address) as connection:
-            versions = connection.execute(sa.text("SELECT version_num FROM alembic_version")).scalars().all()
-    except StoreDamaged as error:
-        raise StoreDamaged(error.message, error.hint, error.value) from error
+    with engines.reading(engine, address) as connection:
+        versions = connection.execute(sa.text("SELECT version_num FROM alembic_version")).scalars().all()
     if len(versions) != 1 or not isinstance(versions[0], str):
         raise StoreDamaged(f"{address} does not say which form it has.", "Restore a backup.", str(address))
     return versions[0]
 
 
-def upgrade(address: Address, *, backup: bool = True) -> tuple[str, Path | None]:
-    """Bring a book up to date; return the revision it had and where its copy is (None = no copy).
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Upgraded:
+    """What migrating did: the form before, the form after, and the copy of the old book (None = none was made)."""
+
+    before: str
+    after: str
+    copy: Path | None
+
+
+def upgrade(address: Address, *, backup: bool = True) -> Upgraded | None:
+    """Bring a book up to date; return what was done, None where it is up to date already.
 
     Args:
         address: where the book is.
@@ -172,12 +179,12 @@ def upgrade(address: Address, *, backup: bool = True) -> tuple[str, Path | None]
 
     Raises:
         SchemaTooNew: made by a later program.
-        StoreDamaged: a foreign key points nowhere afterwards; the book was left as it was.
-        StoreBusy: somebody has it open for writing.
+        StoreDamaged: a foreign key would point nowhere, or a revision failed; the book was left as it was.
+        StoreBusy: somebody is writing to it.
     """
     before = current(address)
     if before == SCHEMA_HEAD:
-        return before, None
+        return None
     if before not in SCHEMA_REVISIONS:
         refuse_other_shape(address, before)
     copied = _copy_aside(address.path, before) if backup and address.path is not None else None
@@ -186,12 +193,13 @@ def upgrade(address: Address, *, backup: bool = True) -> tuple[str, Path | None]
         run_revisions(engine, address)
     finally:
         engine.dispose()
-    return before, copied
+    return Upgraded(before=before, after=SCHEMA_HEAD, copy=copied)
 
 
 def run_revisions(engine: sa.Engine, address: Address, target: str = "head") -> None:
     """Run the revisions up to `target` on an engine, all of them in one transaction."""
     from alembic import command
+    from alembic.util import CommandError
 
     config = alembic_config()
     with translated(address), engine.connect() as connection:
@@ -202,7 +210,10 @@ def run_revisions(engine: sa.Engine, address: Address, target: str = "head") -> 
             raw.execute("PRAGMA foreign_keys=OFF")  # before the transaction begins, or it is ignored
         with connection.execution_options(writes=True).begin():
             config.attributes["connection"] = connection
-            command.upgrade(config, target)
+            try:
+                command.upgrade(config, target)
+            except CommandError as error:
+                raise StoreError(f"{address} cannot be migrated: {error}.", "Install the program again.") from error
             broken: Any = connection.exec_driver_sql("PRAGMA foreign_key_check").all() if is_sqlite else []
             if broken:
                 raise StoreDamaged(

@@ -15,6 +15,7 @@ from uuid import UUID
 import sqlalchemy as sa
 
 from kb.errors import InvalidRecord, StoreRefused
+from kb.record.json_fields import UNKEEPABLE
 from kb.store import engine as engines
 from kb.store import history, recording
 from kb.store.deriving import Deriving, Encodings
@@ -83,6 +84,14 @@ def book_id_of(connection: sa.Connection) -> UUID:
 
 
 def need(text: str, what: str, how: str) -> None:
-    """Raise InvalidRecord where a person, a reason or a name is missing."""
-    if not text or not text.strip():
+    """Raise InvalidRecord where a person, a reason or a name is missing or holds what no book keeps."""
+    if not isinstance(text, str) or not text.strip():
         raise InvalidRecord(f"{what}.", f"Give {how}.", text)
+    keepable(text)
+
+
+def keepable(*texts: str) -> None:
+    """Raise InvalidRecord where a text holds NUL or unpaired surrogates, which no book keeps."""
+    for text in texts:
+        if UNKEEPABLE.search(text):
+            raise InvalidRecord(f"{ascii(text)[:60]} holds characters that no book keeps.", "Leave them out.", text)

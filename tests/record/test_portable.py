@@ -6,11 +6,11 @@ import json
 
 import pytest
 from hypothesis import given
-from tests.factories import a_run, runs
 
 from kb.errors import InvalidRecord
 from kb.record.portable import run_from_dict, run_to_dict
 from kb.record.run import Run
+from tests.factories import a_run, runs
 
 
 @given(runs())

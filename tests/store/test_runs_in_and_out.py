@@ -10,7 +10,6 @@ from uuid import uuid4
 import pytest
 from hypothesis import given
 from hypothesis import settings as hypothesis_settings
-from tests.factories import CHEMISTRY, START, a_book, a_run, runs
 
 from kb.errors import InvalidRecord, RecordConflict, RecordNotFound, StoreRefused
 from kb.record.outcome import Failure, Outcome
@@ -18,6 +17,7 @@ from kb.record.run import Run
 from kb.store.runs import Material, RunFilter, Sort
 from kb.store.store import Store
 from kb.vocabulary import Verdict
+from tests.factories import CHEMISTRY, START, a_book, a_run, runs
 
 
 def test_a_run_comes_back_equal_with_code_and_moment(tmp_path: Path) -> None:

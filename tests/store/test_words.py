@@ -1,0 +1,117 @@
+"""Words find runs by note, materials, failures and labels; the index never lags behind the record."""
+
+from __future__ import annotations
+
+import sqlite3
+from contextlib import closing
+from pathlib import Path
+
+import pytest
+from hypothesis import given
+from hypothesis import settings as hypothesis_settings
+from hypothesis import strategies as st
+
+from kb.errors import QueryError
+from kb.record.outcome import Failure, Outcome
+from kb.store.checking import verify
+from kb.store.store import Store
+from tests.factories import a_book, a_run
+
+
+@pytest.fixture
+def store(tmp_path: Path) -> Store:
+    """Give a book of three runs."""
+    book = a_book(tmp_path)
+    book.add(a_run(note="bad emulsion at work-up, emulsion again with brine"), "MK")
+    book.add(a_run(note="clean", outcome=Outcome(failures=(Failure(mode="group-loss"),))), "MK")
+    book.add(a_run(note="Überschuß: emulsions"), "MK")
+    return book
+
+
+def codes(store: Store, words: str, **options: object) -> list[str]:
+    return [hit.code for hit in store.words(words, **options)]  # type: ignore[arg-type]
+
+
+@pytest.mark.parametrize(
+    ("words", "found"),
+    [
+        ("emulsion", {"R-0001", "R-0003"}),
+        ("EMULS", {"R-0001", "R-0003"}),
+        ("emulsion brine", {"R-0001"}),
+        ('"emulsion again"', {"R-0001"}),
+        ('"again emulsion"', set()),
+        ("uberschuss", set()),
+        ("uberschuß", {"R-0003"}),
+        ("group-loss", {"R-0002"}),
+        ("K2CO3 dmf", {"R-0001", "R-0002", "R-0003"}),
+        ("MK-2-117", {"R-0001", "R-0002", "R-0003"}),
+        ("azides clean", {"R-0002"}),
+        ("sausage", set()),
+        ("note:emulsion", set()),
+    ],
+)
+def test_words_find_runs(store: Store, words: str, found: set[str]) -> None:
+    assert set(codes(store, words)) == found
+
+
+def test_the_best_match_comes_first(store: Store) -> None:
+    hits = store.words("emulsion")
+    assert [hit.code for hit in hits] == ["R-0001", "R-0003"]
+    assert hits[0].score > hits[1].score
+    assert codes(store, "emulsion", limit=1) == ["R-0001"]
+
+
+@pytest.mark.parametrize("words", ["", "  ", '"', "***", "()", "-- ;"])
+def test_no_word_is_refused(store: Store, words: str) -> None:
+    with pytest.raises(QueryError):
+        store.words(words)
+
+
+@given(words=st.text(max_size=40))
+@hypothesis_settings(max_examples=150)
+def test_no_text_is_an_operator_or_an_error(words: str, tmp_path_factory: pytest.TempPathFactory) -> None:
+    folder = tmp_path_factory.getbasetemp() / "operators"
+    if not (folder / "book.sidepath").exists():
+        folder.mkdir()
+        with a_book(folder) as book:
+            book.add(a_run(), "MK")
+    with Store.open(folder / "book.sidepath") as book:
+        try:
+            assert len(book.words(words)) <= 1
+        except QueryError:
+            assert not any(c.isalnum() for c in words)
+
+
+@pytest.mark.parametrize(
+    "words",
+    [
+        "emulsion OR zebra",
+        "NEAR(clean dmf)",
+        "clean AND NOT zebra",
+        "rowid:1",
+        "^dmf*zebra",
+        "{note} : clean",
+        "a'b\"c",
+    ],
+)
+def test_operators_are_plain_words(store: Store, words: str) -> None:
+    assert codes(store, words) == []
+
+
+def test_the_index_follows_amendments_and_withdrawals(store: Store) -> None:
+    store.amend("1", {"note": "no trouble"}, "MK", "wrong run")
+    assert codes(store, "emulsion") == ["R-0003"]
+    assert codes(store, "trouble") == ["R-0001"]
+    store.withdraw("3", "twice", "MK")
+    assert codes(store, "emulsion") == []
+    assert codes(store, "emulsion", include_withdrawn=True) == ["R-0003"]
+    assert [c for c in verify(store) if not c.ok] == []
+
+
+def test_an_index_that_lags_is_noticed_and_mended(store: Store, tmp_path: Path) -> None:
+    with closing(sqlite3.connect(tmp_path / "book.sidepath")) as raw, raw:
+        raw.execute("UPDATE run SET note = 'silently changed' WHERE code = 'R-0002'")
+    assert {c.name for c in verify(store) if not c.ok} == {"record", "words"}
+    with closing(sqlite3.connect(tmp_path / "book.sidepath")) as raw, raw:
+        raw.execute("UPDATE run SET note = 'clean' WHERE code = 'R-0002'")
+    assert [c for c in verify(store) if not c.ok] == []
