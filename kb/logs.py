@@ -12,6 +12,7 @@ import logging
 import sys
 from collections.abc import Iterator
 from contextlib import contextmanager
+from functools import cache
 from logging.handlers import RotatingFileHandler
 from pathlib import Path
 
@@ -20,6 +21,7 @@ OURS = ("kb", "tui", "rdkit")
 LARGEST_FILE_BYTES = 1_000_000
 
 
+@cache
 def tame_rdkit() -> None:
     """Make RDKit speak through the logger `rdkit`, and that logger through ours; loads RDKit's smallest module."""
     from rdkit import rdBase

@@ -16,7 +16,7 @@ from kb.assess.data_findings import find_data_findings
 from kb.assess.estimate import estimate
 from kb.assess.evidence import count_evidence, weighed_severity, word_evidence
 from kb.assess.house_rules import HouseRule, find_house_rules
-from kb.assess.liability import find_liabilities, get_rule
+from kb.assess.liability import all_rules, find_liabilities, get_rule
 from kb.assess.precedent import compare, rank_precedents, word_precedents
 from kb.assess.published import published_estimate
 from kb.assess.record_view import RecordView
@@ -26,7 +26,7 @@ from kb.record.assessment import Advice, Assessment, Estimate
 from kb.record.finding import Finding
 from kb.record.plan import Plan
 from kb.store.derivation import Account, account_of_plan
-from kb.vocabulary import Fate, FindingKind
+from kb.vocabulary import Fate, FindingKind, Severity
 
 
 def assess(
@@ -52,7 +52,7 @@ def assess(
     """
     account = account or account_of_plan(plan)
     row = one_row(account.facts)
-    parts, similarity = compare(row, view.table, rest)
+    parts, similarity = compare(row, view.table, rest, risk_differences(account, view))
     if account.reading.centre is None:
         similarity = np.zeros(len(view.table))
     findings = _findings(account, plan, view, parts, house_rules)
@@ -64,6 +64,26 @@ def assess(
         precedents=word_precedents(row, view.table, rank_precedents(similarity, top), parts, similarity),
         advice=_advice(account, row, view, parts),
     )
+
+
+def risk_differences(account: Account, view: RecordView) -> NDArray[np.float64]:
+    """Count, for each run, the groups endangered by the plan's conditions that stand in only one of the two (n).
+
+    Only serious liabilities of bystanders count: a run that lost a group which the plan does not have says little about
+    the plan, and a run without the group that the plan puts at risk says less still.
+    """
+    differences = np.zeros(len(view.table))
+    mols = [mol for smiles in account.fragments if (mol := view.mol(smiles)) is not None]
+    for rule in all_rules():
+        if rule.side != "bystander" or rule.severity is not Severity.SERIOUS:
+            continue
+        if rule.applies(account.profile) is not True:
+            continue
+        holds = np.zeros(len(view.table), dtype=bool)
+        for smarts in rule.motifs:
+            holds[view.rows_with_motif(smarts)] = True
+        differences += holds != any(rule.find_motif(mol) for mol in mols)
+    return differences
 
 
 def _estimate(account: Account, view: RecordView, similarity: NDArray[np.float64]) -> Estimate:
@@ -103,6 +123,7 @@ def _findings(
         account.fragments,
         (centre.component, centre.atom) if centre else None,
         covered,
+        account.products,
     )
     cautions = find_cautions(
         reading=account.reading,

@@ -19,19 +19,22 @@ from kb.assess.table import WORDS, FactTable, flag_words
 from kb.vocabulary import CentreFlag, LeavingGroup
 
 PARTS: tuple[tuple[str, float], ...] = (
-    ("centre", 0.26),
-    ("leaving group", 0.14),
-    ("nucleophile", 0.16),
-    ("base", 0.12),
-    ("solvent", 0.09),
-    ("temperature", 0.09),
-    ("promoter", 0.10),
+    ("centre", 0.22),
+    ("leaving group", 0.12),
+    ("nucleophile", 0.13),
+    ("base", 0.10),
+    ("solvent", 0.08),
+    ("temperature", 0.08),
+    ("promoter", 0.08),
+    ("groups at risk", 0.15),
     ("rest of molecule", 0.04),
 )
 """Parts and their weights (sum 1)."""
 
 UNRECORDED = 0.6
 FLOOR = 0.01
+RISK_STEP = 0.1
+"""Likeness left for each endangered group that only one of the two molecules holds."""
 
 _CLASS_STEP = (1.0, 0.45, 0.15, 0.05)
 _FLAG_WEIGHT = {
@@ -75,14 +78,19 @@ for _family, _members in {
 
 
 def similarity_parts(
-    plan: FactTable, table: FactTable, rest: NDArray[np.float64] | None = None
+    plan: FactTable,
+    table: FactTable,
+    rest: NDArray[np.float64] | None = None,
+    risk_differences: NDArray[np.float64] | None = None,
 ) -> dict[str, NDArray[np.float64]]:
     """Compare one plan with every row of a table, part by part.
 
     Args:
         plan: a table of one row.
         table: n rows.
-        rest: whole-molecule Tanimoto (n), 0..1; None = not computed, counts as not recorded.
+        risk_differences: how many groups that the plan's conditions endanger stand in only one of the two (n); None =
+            not looked for.
+        rest: whole-molecule Tanimoto (n), 0..1; None or NaN = not computed, counts as not recorded.
 
     Returns:
         Part name to (n) float64 in [FLOOR, 1].
@@ -95,7 +103,8 @@ def similarity_parts(
         "solvent": _solvent(plan, table),
         "temperature": _gauss(plan, table, "temperature_c", 28.0),
         "promoter": _promoter(plan, table),
-        "rest of molecule": np.full(len(table), UNRECORDED) if rest is None else 0.35 + 0.65 * rest,
+        "groups at risk": np.ones(len(table)) if risk_differences is None else RISK_STEP**risk_differences,
+        "rest of molecule": _rest(rest, len(table)),
     }
     return {name: np.clip(values, FLOOR, 1.0) for name, values in parts.items()}
 
@@ -126,6 +135,12 @@ def nucleophile_similarity(one: str | None, other: str | None) -> float:
         return 0.3
     family = _NUCLEOPHILE_FAMILY.get(one)
     return 0.55 if family is not None and family == _NUCLEOPHILE_FAMILY.get(other) else 0.18
+
+
+def _rest(rest: NDArray[np.float64] | None, n: int) -> NDArray[np.float64]:
+    if rest is None:
+        return np.full(n, UNRECORDED)
+    return np.asarray(np.where(np.isnan(rest), UNRECORDED, 0.35 + 0.65 * rest))
 
 
 def _centre(plan: FactTable, table: FactTable) -> NDArray[np.float64]:

@@ -25,10 +25,13 @@ def rank_precedents(similarity: NDArray[np.float64], top: int) -> NDArray[np.int
 
 
 def compare(
-    plan: FactTable, table: FactTable, rest: NDArray[np.float64] | None = None
+    plan: FactTable,
+    table: FactTable,
+    rest: NDArray[np.float64] | None = None,
+    risk_differences: NDArray[np.float64] | None = None,
 ) -> tuple[dict[str, NDArray[np.float64]], NDArray[np.float64]]:
     """Return the parts and the combined similarity (n) of every run to the plan."""
-    parts = similarity_parts(plan, table, rest)
+    parts = similarity_parts(plan, table, rest, risk_differences)
     return parts, combine(parts)
 
 
@@ -102,6 +105,10 @@ def _differences(plan: FactTable, table: FactTable, row: int, parts: dict[str, N
                 "promoter",
                 f"no {label}" if theirs == "none" else f"{theirs} {label}".replace("silver halophile", "silver"),
             )
+    if parts["groups at risk"][row] < 1:
+        say("groups at risk", "not the same groups at risk")
+    if table.substrate[row] != plan.substrate[0]:
+        words.append((2.0, "another molecule"))
     return [text for _, text in sorted(words, key=lambda pair: pair[0])]
 
 

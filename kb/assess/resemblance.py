@@ -39,6 +39,7 @@ def find_resemblances(
     fragments: Sequence[str],
     centre: tuple[int, int] | None,
     skip_motifs: Sequence[frozenset[int]] = (),
+    products: Sequence[str] = (),
 ) -> tuple[Finding, ...]:
     """Report the recorded failures that the plan resembles, most likely first.
 
@@ -49,12 +50,13 @@ def find_resemblances(
         fragments: SMILES of its left-side fragments as entered.
         centre: (component, atom) of its centre; None = not read.
         skip_motifs: atom sets already reported by a liability with evidence, in the substrate; not said twice.
+        products: SMILES of what is wanted; a motif that they lack is meant to be lost.
 
     Returns:
         Findings, sorted by severity and chance; empty where the record holds nothing alike.
     """
     found = _at_the_centre(view, parts, profile, centre)
-    found += _elsewhere(view, profile, fragments, skip_motifs)
+    found += _elsewhere(view, profile, fragments, skip_motifs, products)
     return tuple(sorted(found, key=lambda f: (-f.severity.rank, -_mean(f))))
 
 
@@ -108,7 +110,11 @@ def _spoke(view: RecordView, row: int) -> bool:
 
 
 def _elsewhere(
-    view: RecordView, profile: ConditionProfile, fragments: Sequence[str], skip: Sequence[frozenset[int]]
+    view: RecordView,
+    profile: ConditionProfile,
+    fragments: Sequence[str],
+    skip: Sequence[frozenset[int]],
+    products: Sequence[str],
 ) -> list[Finding]:
     findings: list[Finding] = []
     seen: set[tuple[str, frozenset[int]]] = set()
@@ -116,7 +122,11 @@ def _elsewhere(
         find = finder_of(smarts)
         for component, smiles in enumerate(fragments):
             mol = view.mol(smiles)
-            match = next(iter(find(mol)), ()) if mol is not None else ()
+            matches = find(mol) if mol is not None else ()
+            match = next(iter(matches), ())
+            wanted = [m for p in products if (m := view.mol(p)) is not None]
+            if wanted and sum(len(find(m)) for m in wanted) < len(matches):
+                continue
             if not match or (mode, frozenset(match)) in seen:
                 continue
             if any(len(frozenset(match) & s) * 2 >= len(match) for s in skip):

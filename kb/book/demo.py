@@ -9,6 +9,7 @@ from pathlib import Path
 from types import ModuleType
 
 from kb import paths
+from kb.logs import tame_rdkit
 from kb.progress import Progress
 from kb.record.plan import Plan
 
@@ -29,6 +30,7 @@ def build_demo(book: str | None, progress: Progress) -> tuple[Path, bool]:
     if target.exists():
         return target, False
     target.parent.mkdir(parents=True, exist_ok=True)
+    tame_rdkit()
     half_built = target.with_name(target.name + ".building")
     half_built.unlink(missing_ok=True)
     try:

@@ -12,6 +12,7 @@ from pathlib import Path
 from types import TracebackType
 from typing import TYPE_CHECKING, Any
 
+from kb.logs import tame_rdkit
 from kb.progress import Progress, Silent
 from kb.record.assessment import Assessment, Estimate
 from kb.record.finding import Finding
@@ -21,6 +22,7 @@ from kb.record.run import Run
 if TYPE_CHECKING:
     from kb.assess.house_rules import RuleTrial
     from kb.assess.record_view import RecordView
+    from kb.exchange.loading import LoadReport
     from kb.search.criteria import Criteria
     from kb.search.finder import Finder, FindResult
     from kb.store.store import Store
@@ -92,6 +94,7 @@ class Book:
             top: how many precedents to list.
             at_date: leave later and undated runs out; None = all runs.
         """
+        tame_rdkit()
         from kb.assess.assessment import assess
         from kb.store.derivation import account_of_plan
 
@@ -116,10 +119,12 @@ class Book:
 
     def find(self, criteria: Criteria, deadline_s: float | None = None) -> FindResult:
         """Find runs; with a deadline [s] the answer may be partial and says so."""
+        tame_rdkit()
         return self.finder().find(criteria, deadline_s=deadline_s)
 
     def add(self, run: Run, who: str) -> Run:
         """Record a run and return it with its code; it is on disk when this returns."""
+        tame_rdkit()
         return self.store.add(run, who)
 
     def get(self, code: str) -> Run:
@@ -142,10 +147,12 @@ class Book:
         Raises:
             RecordConflict: somebody changed it since that revision.
         """
+        tame_rdkit()
         return self.store.amend(code, changes, who=who, why=why, expected_revision=revision)
 
     def withdraw(self, code: str, *, who: str, why: str) -> Run:
         """Withdraw a run; it stays readable but no longer speaks."""
+        tame_rdkit()
         return self.store.withdraw(code, who=who, why=why)
 
     def history(self, code: str) -> tuple[HistoryEntry, ...]:
@@ -191,6 +198,7 @@ class Book:
 
     def try_rule(self, rule: HouseRule) -> RuleTrial:
         """Try a rule on every standing run."""
+        tame_rdkit()
         from kb.assess.house_rules import check_rule, try_rule
 
         check_rule(rule)
@@ -198,23 +206,77 @@ class Book:
 
     def verify(self, progress: Progress | None = None) -> tuple[Check, ...]:
         """Check the book from the file up to the derived facts."""
-        from kb.store.safekeeping import verify
+        tame_rdkit()
+        from kb.store.checking import verify
 
         return tuple(verify(self.store, progress or Silent()))
 
     def merge(self, other: str | Path, *, who: str, progress: Progress | None = None) -> MergeReport:
         """Take in another book; doing it twice, or the other way round, comes to the same."""
+        tame_rdkit()
         from kb.store.merging import merge
 
         return merge(self.store, str(other), who=who, progress=progress or Silent())
 
+    def import_file(
+        self,
+        path: Path,
+        *,
+        who: str,
+        dry_run: bool = False,
+        rejects: Path | None = None,
+        mapping: Mapping[str, Any] | None = None,
+        progress: Progress | None = None,
+    ) -> LoadReport:
+        """Take runs in from a file; run again, nothing is doubled. See `kb.exchange.loading.load_file`."""
+        tame_rdkit()
+        from kb.exchange.loading import load_file
+
+        return load_file(
+            path, self.store, who=who, progress=progress, dry_run=dry_run, rejects=rejects, mapping=mapping
+        )
+
+    def export_file(self, path: Path, progress: Progress | None = None) -> int:
+        """Write every standing and withdrawn run to a file, by its ending; return how many."""
+        from kb.exchange.exporting import export_file
+        from kb.store.runs import RunFilter
+
+        every = RunFilter(with_withdrawn=True)
+        return export_file(self.store.iter_runs(every), path, progress, total=self.store.count(every))
+
+    def backup(self, target: Path) -> Path:
+        """Copy the book while others may be writing, verify the copy, and return where it is."""
+        from kb.store.safekeeping import backup
+
+        return backup(self.store, target)
+
+    def history_as_dicts(self, code: str) -> list[dict[str, Any]]:
+        """Return the history as plain values, oldest first."""
+        return [entry.as_dict() for entry in self.history(code)]
+
+    def one_line(self, code: str) -> tuple[str, str, str]:
+        """Return (date, verdict, what happened) of a run in short words, for lists."""
+        run = self.get(code)
+        best = max(run.outcome.split.items(), key=lambda pair: pair[1], default=None)
+        outcome = f"{best[0]} {100 * best[1]:.0f} %" if best else "no split"
+        names = [c.name for c in run.conditions.components] + [s.name for s in run.conditions.solvents]
+        when = run.date.isoformat() if run.date else ""
+        return when, str(run.verdict or ""), f"{outcome}; {', '.join(names)}"
+
+    def changes_from_words(self, code: str, words: Sequence[str]) -> dict[str, Any]:
+        """Turn "FIELD=VALUE" texts into changes for `amend`; see `kb.book.amend_words`."""
+        from kb.book.amend_words import changes_from_words
+
+        return changes_from_words(self.get(code), words)
+
     def view(self) -> RecordView:
         """Return the columns that judgement reads, rebuilt when the book has changed."""
+        tame_rdkit()
         version = self.store.data_version()
         if self._view is None or self._view[0] != version:
             from kb.assess.record_view import build_view
 
-            self._view = (version, build_view(self.store, self.finder()))
+            self._view = (version, build_view(self.store, self.finder().runs_with_motif))
         return self._view[1]
 
     def finder(self) -> Finder:

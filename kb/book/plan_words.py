@@ -40,7 +40,7 @@ def conditions_from_words(words: Mapping[str, Any]) -> Conditions:
         QuantityError, NameUnknown: a value or a name that cannot be read.
     """
     from kb.materials.resolving import resolve_component, resolve_solvent
-    from kb.quantity import parse_concentration, parse_duration, parse_scale_mmol, parse_temperature
+    from kb.quantity import parse_amount_mmol, parse_concentration, parse_duration, parse_temperature
 
     unknown = sorted(set(words) - _FIELDS)
     if unknown:
@@ -55,7 +55,7 @@ def conditions_from_words(words: Mapping[str, Any]) -> Conditions:
         temperature=parse_temperature(temperature) if temperature else None,
         time=parse_duration(time) if time else None,
         conc_molar=parse_concentration(concentration) if concentration else None,
-        scale_mmol=parse_scale_mmol(scale) if scale else None,
+        scale_mmol=parse_amount_mmol(scale) if scale else None,
         atmosphere=words.get("atmosphere") or None,
         vessel=words.get("vessel") or None,
         workup=words.get("workup") or None,

@@ -13,12 +13,14 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from kb.errors import ChemistryError, ImportFileError, InvalidRecord, QuantityError, StructureError
+from kb.logs import tame_rdkit
 from kb.record.failure_modes import parse_failure_mode
 from kb.record.outcome import Failure, Outcome, ProductSeen
-from kb.vocabulary import Cause, Fate, Method
+from kb.vocabulary import Cause, Fate, Method, Severity
 
 if TYPE_CHECKING:
     from kb.chem.facts import Reading
+    from kb.store.values import HouseRule
 
 _FILE_ENDINGS = (".rxn", ".mol", ".sdf", ".rd", ".rdf")
 LONGEST_CELL = 1_000_000
@@ -46,6 +48,7 @@ def read_scheme(text: str, *, ignore_maps: bool = False) -> Reading:
     """Say what a scheme does; needs no book. Bad text gives `ok` False with the reason, never an exception."""
     from kb.chem.reading import read_scheme as read
 
+    tame_rdkit()
     return read(text, ignore_maps=ignore_maps)
 
 
@@ -55,6 +58,7 @@ def scheme_from_argument(text: str) -> str:
     Raises:
         StructureError: a file that cannot be read, or text that is neither structure nor name.
     """
+    tame_rdkit()
     word = text.strip()
     if word.lower().endswith(_FILE_ENDINGS):
         from kb.chem.schemefile import read_scheme_file
@@ -159,6 +163,17 @@ def parse_fate(text: str) -> Fate:
         raise InvalidRecord(f"{text!r} is no fate.", hint, text) from None
 
 
+def house_rule(
+    title: str, motif: str | None, when: str, severity: Severity, why: str, source: str, author: str
+) -> HouseRule:
+    """Build a house rule from words; its motif and condition are checked when it is tried or adopted."""
+    from kb.store.values import HouseRule
+
+    return HouseRule(
+        title=title, motif=motif or "", when=when, severity=severity, why=why, source=source, author=author
+    )
+
+
 def _split_products(split: str | None, method: Method | None) -> list[ProductSeen]:
     from kb.quantity import parse_percent
 
@@ -205,4 +220,4 @@ def _by_name(word: str) -> str | None:
     from kb.materials.names import find_material
 
     match = find_material(word)
-    return match.exact.smiles if match.exact is not None else None
+    return match.exact.smiles or None if match.exact is not None else None

@@ -39,7 +39,7 @@ def find(
     page: Annotated[int, typer.Option(min=1)] = 1,
 ) -> None:
     """Find runs; every option given must hold."""
-    from kb.book import criteria_from_words, find_result_as_dict
+    from kb.book import criteria_from_words
 
     session = current_session()
     criteria = criteria_from_words(
@@ -66,8 +66,10 @@ def find(
         result = book.find(criteria)
         lines = {} if session.as_json else {item.run: book.one_line(item.run) for item in result.items}
     if session.as_json:
-        session.print_json(find_result_as_dict(result))
+        session.print_json(result.as_dict())
         return
+    for remark in result.notes:
+        session.say(remark)
     if not result.items:
         typer.echo("No run fits." if result.total == 0 else f"No run on this page; {result.total} fit.")
         return

@@ -1,0 +1,48 @@
+"""Making, mending and moving books as whole files: what a front end asks before a book is open."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from kb.progress import Progress
+
+
+def create_book(book: str | None) -> str:
+    """Make an empty book and return where it is; folders of the default place are made, others must be there.
+
+    Raises:
+        StoreExists: something is there already.
+        StoreMissing, StoreRefused: no such folder, or no permission.
+    """
+    from kb import paths
+    from kb.book.facade import open_book
+
+    if book is None:
+        paths.default_book().parent.mkdir(parents=True, exist_ok=True)
+    with open_book(book, create=True) as new:
+        return new.path
+
+
+def migrate_book(book: str | None, progress: Progress) -> str:
+    """Bring a book up to this program, after a backup, and rebuild what another recipe derived; say what was done."""
+    from kb import paths
+    from kb.book.facade import open_book
+    from kb.store.engine import parse_address
+    from kb.store.schema import SCHEMA_HEAD, upgrade
+
+    address = book if book is not None else str(paths.default_book())
+    before, copy = upgrade(parse_address(address))
+    said = "The schema was up to date."
+    if before != SCHEMA_HEAD:
+        said = f"The schema went from {before} to {SCHEMA_HEAD}." + (f" The book as it was: {copy}." if copy else "")
+    with open_book(address) as opened:
+        rebuilt = opened.store.rebuild(progress)
+    return f"{said} {rebuilt} runs were read again." if rebuilt else f"{said} Derived facts were up to date."
+
+
+def restore_book(source: Path, target: Path) -> Path:
+    """Make a new, verified book from a backup and return where it is; never overwrites."""
+    from kb.store.safekeeping import restore
+
+    restore(source, target)
+    return target
