@@ -27,6 +27,7 @@ from kb.vocabulary import Confidence, Fate, FindingKind, Severity
 if TYPE_CHECKING:
     from rdkit import Chem
 
+    from kb.assess.liability_fragments import Fragment
     from kb.assess.liability_intent import Place
 
 MAX_PRODUCTS = 4
@@ -134,17 +135,15 @@ def find_liabilities(
     return tuple(sorted(made, key=lambda f: (-f.severity.rank, f.is_uncertain, f.component or 0)))
 
 
-def _places(
-    rule: Rule, flask: Sequence[tuple[int, Chem.Mol, bool]], reading: Reading, profile: ConditionProfile
-) -> tuple[Place, ...]:
+def _places(rule: Rule, flask: Sequence[Fragment], reading: Reading, profile: ConditionProfile) -> tuple[Place, ...]:
     """Return the instances of a rule's motif that lie where the rule says."""
     from kb.assess.liability_intent import Place
 
     places = [
-        Place(component=component, mol=mol, match=match)
-        for component, mol, is_reactant in flask
-        if is_reactant
-        for match in rule.matches(mol, profile)
+        Place(component=fragment.component, mol=fragment.mol, match=match)
+        for fragment in flask
+        if (fragment.may_attack if rule.side == "nucleophile" else fragment.is_reactant)
+        for match in rule.matches(fragment.mol, profile)
     ]
     if rule.side == "centre" and reading.centres:
         at = {(c.component, c.atom) for c in reading.centres}
@@ -183,7 +182,7 @@ def _holds_centre(place: Place, reading: Reading) -> bool:
 def _grouped(hits: Sequence[_Hit]) -> list[list[_Hit]]:
     """Return hits told together: same group, same fragment, overlapping core atoms; most severe first."""
     groups: list[list[_Hit]] = []
-    for hit in sorted(hits, key=lambda h: (-h.severity.rank, bool(h.gaps))):
+    for hit in sorted(hits, key=lambda h: (-h.severity.rank, bool(h.gaps), -h.rule.severity.rank)):
         for group in groups:
             head = group[0]
             same = bool(hit.rule.group) and head.rule.group == hit.rule.group
@@ -197,7 +196,7 @@ def _grouped(hits: Sequence[_Hit]) -> list[list[_Hit]]:
 
 def _finding(
     group: Sequence[_Hit],
-    flask: Sequence[tuple[int, Chem.Mol, bool]],
+    flask: Sequence[Fragment],
     others: Sequence[str],
     profile: ConditionProfile,
     target: Chem.Mol | None,

@@ -8,22 +8,40 @@ atoms to atoms as entered. A fragment that cannot be read is passed over: the re
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from functools import lru_cache
 
 from rdkit import Chem, rdBase
 
 from kb.assess.liability_rule import Rule, compile_motif
 from kb.chem.facts import Reading
+from kb.materials.catalogue import load_catalogue
 from kb.materials.profile import ConditionProfile
 
 _ENTERED = "_entered"
 
 
-def read_fragments(fragments: Sequence[str], reading: Reading) -> tuple[tuple[int, Chem.Mol, bool], ...]:
-    """Return (component, molecule, is a reactant) for each fragment that can be read.
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Fragment:
+    """One left-side fragment.
 
-    Only reactants are searched for motifs. A fragment that holds a centre or the nucleophile is one; of the
-    others, those that hold carbon and are no catalogued solvent or reagent.
+    Attributes:
+        component: its position as entered.
+        mol: written hydrogens folded in.
+        is_reactant: it holds a centre or the nucleophile, or holds carbon and is no catalogued material.
+        may_attack: it could be the nucleophile: holds carbon or nitrogen and is no catalogued solvent.
+    """
+
+    component: int
+    mol: Chem.Mol
+    is_reactant: bool
+    may_attack: bool
+
+
+def read_fragments(fragments: Sequence[str], reading: Reading) -> tuple[Fragment, ...]:
+    """Return each fragment that can be read, with what part it can play.
+
+    Groups worth keeping are looked for in reactants only, since an ester that is the solvent is no loss.
     """
     certain = {c.component for c in reading.centres}
     if reading.nucleophile is not None:
@@ -33,13 +51,21 @@ def read_fragments(fragments: Sequence[str], reading: Reading) -> tuple[tuple[in
     reactants = certain | {i for i, mol in carbon if not _is_material(mol)}
     if not reactants and carbon:
         reactants = {max(carbon, key=lambda pair: pair[1].GetNumHeavyAtoms())[0]}
-    return tuple((i, mol, i in reactants) for i, mol in read)
+    return tuple(
+        Fragment(
+            component=i,
+            mol=mol,
+            is_reactant=i in reactants,
+            may_attack=i in reactants or not _is_solvent(mol),
+        )
+        for i, mol in read
+    )
 
 
 def find_partners(
     rule: Rule,
     component: int | None,
-    flask: Sequence[tuple[int, Chem.Mol, bool]],
+    flask: Sequence[Fragment],
     others: Sequence[str],
     profile: ConditionProfile,
 ) -> tuple[Chem.Mol, ...]:
@@ -47,18 +73,16 @@ def find_partners(
     if rule.partner is None:
         return ()
     pattern, _ = compile_motif(rule.partner)
-    drawn = [mol for i, mol, _ in flask if i != component]
+    drawn = [f.mol for f in flask if f.component != component]
     named = [mol for smiles in (*others, *sorted(profile.solvent_alkoxy)) if (mol := _read(smiles)) is not None]
     if rule.partner_from == "itself":
-        drawn = [mol for i, mol, _ in flask if i == component]
+        drawn = [f.mol for f in flask if f.component == component]
     return tuple(mol for mol in (*drawn, *named) if mol.HasSubstructMatch(pattern))
 
 
-def as_entered(
-    flask: Sequence[tuple[int, Chem.Mol, bool]], component: int | None, atoms: Sequence[int]
-) -> tuple[int, ...]:
+def as_entered(flask: Sequence[Fragment], component: int | None, atoms: Sequence[int]) -> tuple[int, ...]:
     """Return atom indices in the fragment as entered (written hydrogens count there)."""
-    mol = next((m for i, m, _ in flask if i == component), None)
+    mol = next((f.mol for f in flask if f.component == component), None)
     if mol is None:
         return ()
     return tuple(mol.GetAtomWithIdx(a).GetIntProp(_ENTERED) for a in atoms)
@@ -82,4 +106,16 @@ def _read(smiles: str) -> Chem.Mol | None:
 
 def _is_material(mol: Chem.Mol) -> bool:
     """Return True for a catalogued solvent or reagent."""
-    return False
+    smiles, catalogue = _plain_smiles(mol), load_catalogue()
+    return smiles in catalogue.solvent_by_smiles or smiles in catalogue.reagent_by_smiles or smiles in catalogue.ions
+
+
+def _is_solvent(mol: Chem.Mol) -> bool:
+    return _plain_smiles(mol) in load_catalogue().solvent_by_smiles
+
+
+def _plain_smiles(mol: Chem.Mol) -> str:
+    plain = Chem.Mol(mol)
+    for atom in plain.GetAtoms():
+        atom.SetAtomMapNum(0)
+    return Chem.MolToSmiles(plain)

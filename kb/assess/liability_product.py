@@ -14,6 +14,7 @@ from rdkit import Chem, rdBase
 from rdkit.Chem import rdChemReactions
 
 from kb.assess.liability_rule import Match, Rule
+from kb.assess.liability_structure import LARGEST_BREDT_SUM, bridging_sum
 
 RACEMISED = "racemised"
 """Stands for a transformation that only blurs the configuration of atom 1."""
@@ -55,7 +56,7 @@ def side_products(rule: Rule, match: Match, mol: Chem.Mol, partners: Sequence[Ch
         reactants.append(clean(other))
     with rdBase.BlockLogs():
         outcomes = reaction.RunReactants(tuple(reactants), maxProducts=MAX_OUTCOMES)
-    found: dict[str, int] = {}
+    found: dict[str, int] = {}  # SMILES to rank
     for outcome in outcomes:
         if all(_belongs(part, match) for part in outcome):
             smiles = _tidy(outcome, reactants)
@@ -117,7 +118,7 @@ def _tidy(outcome: Sequence[Chem.Mol], reactants: Sequence[Chem.Mol]) -> tuple[s
         Chem.AssignStereochemistry(whole, cleanIt=True, force=True)
         smiles = Chem.MolToSmiles(whole)
     back = Chem.MolFromSmiles(smiles)
-    if back is None:
+    if back is None or _breaks_bredt(back):
         return None
     rank = sum(
         a.GetTotalNumHs()
@@ -125,6 +126,13 @@ def _tidy(outcome: Sequence[Chem.Mol], reactants: Sequence[Chem.Mol]) -> tuple[s
         if a.GetAtomicNum() == 6 and not a.GetIsAromatic() and a.GetHybridization() == Chem.HybridizationType.SP2
     )
     return Chem.MolToSmiles(back), rank
+
+
+def _breaks_bredt(mol: Chem.Mol) -> bool:
+    """Return True where a double bond would sit at a bridgehead."""
+    doubles = (b for b in mol.GetBonds() if b.GetBondType() == Chem.BondType.DOUBLE and b.IsInRing())
+    ends = {i for b in doubles for i in (b.GetBeginAtomIdx(), b.GetEndAtomIdx())}
+    return any((bridging_sum(mol, i) or LARGEST_BREDT_SUM + 1) <= LARGEST_BREDT_SUM for i in ends)
 
 
 def _has_changed(atom: Chem.Atom, reactants: Sequence[Chem.Mol]) -> bool:

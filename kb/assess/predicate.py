@@ -131,9 +131,7 @@ def _compile_test(test: Comparison) -> _Truth:
 
         def member(profile: ConditionProfile) -> bool | None:
             present = getattr(profile, field)
-            if not wanted.isdisjoint(present) or any(
-                "-" in w and w.replace("-", "_") in wanted for w in present
-            ):
+            if not wanted.isdisjoint(present) or any("-" in w and w.replace("-", "_") in wanted for w in present):
                 return is_asked
             return None if getattr(profile, open_flag) else not is_asked
 
@@ -242,8 +240,11 @@ def _open_ways(node: Node, profile: ConditionProfile) -> list[tuple[frozenset[st
 
 
 def _speaks(node: Node, profile: ConditionProfile) -> bool:
-    """Return True where a node that holds does so by something that is there."""
-    return any(t.is_positive and _test_value(t, profile) for t in _walk(node))
+    """Return True where a node that holds does so by something that is there, the solvent not counted.
+
+    A solvent alone speaks for too little: every run in DMF would ask for its temperature.
+    """
+    return any(t.is_positive and t.name != "solvent" and _test_value(t, profile) for t in _walk(node))
 
 
 def _reasons(node: Node, profile: ConditionProfile) -> Iterator[str]:

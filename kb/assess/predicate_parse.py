@@ -131,9 +131,7 @@ def _read(node: ast.expr, *, is_negated: bool, line: str) -> Node:
     if isinstance(node, ast.Name):
         name = _fact(node.id)
         if name not in BOOLEANS:
-            raise QueryError(
-                f"{node.id} cannot stand alone in {_short(line)}.", f"Compare it: {_example(name)}", line
-            )
+            raise QueryError(f"{node.id} cannot stand alone in {_short(line)}.", f"Compare it: {_example(name)}", line)
         return Comparison(name=name, operator="is not" if is_negated else "is")
     if isinstance(node, ast.Compare):
         return _read_compare(node, is_negated=is_negated, line=line)
@@ -150,9 +148,7 @@ def _read_compare(node: ast.Compare, *, is_negated: bool, line: str) -> Node:
     for left, op, right in zip(sides, node.ops, sides[1:], strict=False):
         operator = _OPERATORS.get(type(op))
         if operator is None:
-            raise QueryError(
-                f"{_short(line)} uses an operator that rules do not know.", "Use == or in.", line
-            )
+            raise QueryError(f"{_short(line)} uses an operator that rules do not know.", "Use == or in.", line)
         if not _is_fact(left):
             left, right = right, left
             operator = _FLIPPED.get(operator, "")
@@ -183,23 +179,15 @@ def _build(name: str, operator: str, value: ast.expr, *, line: str) -> Compariso
         return Comparison(name=name, operator=operator, number=number)
     if name in BOOLEANS:
         truth = _text(value)
-        if (
-            operator not in ("==", "!=")
-            or truth is None
-            or truth.lower() not in ("true", "false", "yes", "no")
-        ):
-            raise QueryError(
-                f"{name} is yes or no in {_short(line)}.", f"Write: {name}, or: not {name}", line
-            )
+        if operator not in ("==", "!=") or truth is None or truth.lower() not in ("true", "false", "yes", "no"):
+            raise QueryError(f"{name} is yes or no in {_short(line)}.", f"Write: {name}, or: not {name}", line)
         is_asked = (truth.lower() in ("true", "yes")) is (operator == "==")
         return Comparison(name=name, operator="is" if is_asked else "is not")
     words = _words(value, line)
     known = words_of(name)
     for word in words:
         if word not in known:
-            raise QueryError(
-                f"{_short(word)} is no word for {name} in {_short(line)}.", _word_hint(word, known), word
-            )
+            raise QueryError(f"{_short(word)} is no word for {name} in {_short(line)}.", _word_hint(word, known), word)
     if name in SETS:
         if operator not in ("in", "not in", "==", "!="):
             raise QueryError(f"{name} has no order in {_short(line)}.", f"Write: {name} in (...)", line)

@@ -105,9 +105,7 @@ def nearest(word: str, known: Iterable[str]) -> str | None:
     """Return the known word that looks most like `word`, None where none does."""
     from rapidfuzz import fuzz, process  # kept out of start-up: only a mistake needs it
 
-    hit = process.extractOne(
-        word.replace("-", "_").lower(), sorted(known), scorer=fuzz.WRatio, score_cutoff=60
-    )
+    hit = process.extractOne(word.replace("-", "_").lower(), sorted(known), scorer=fuzz.WRatio, score_cutoff=60)
     return hit[0] if hit else None
 
 
@@ -150,15 +148,11 @@ def phrase(name: str, operator: str, words: tuple[str, ...], number: float | Non
         return f"{listed} is present" if operator == "in" else f"{listed} is absent"
     if name in _LEVEL_NAMES:
         return _level_phrase(name, operator, words)
-    said = {"base_bulk": "the base", "halophile": "the halophile", "nucleophile_class": "the nucleophile"}[
-        name
-    ]
+    said = {"base_bulk": "the base", "halophile": "the halophile", "nucleophile_class": "the nucleophile"}[name]
     return f"{said} is {listed}" if operator in ("==", "in") else f"{said} is not {listed}"
 
 
-def reason(
-    name: str, operator: str, words: tuple[str, ...], number: float | None, profile: ConditionProfile
-) -> str:
+def reason(name: str, operator: str, words: tuple[str, ...], number: float | None, profile: ConditionProfile) -> str:
     """Return why a comparison holds on this profile, in plain words; a limit is marked as judged."""
     if name in NUMBERS:
         said, unit = NUMBERS[name]
@@ -193,9 +187,7 @@ def _level_phrase(name: str, operator: str, words: tuple[str, ...]) -> str:
     if operator in ("==", "in", "!=", "not in"):
         verb = "is" if operator in ("==", "in") else "is not"
         return f"the {said} {verb} {_listed(words)}"
-    how = {">=": f"{word} or more", ">": f"above {word}", "<=": f"{word} or less", "<": f"below {word}"}[
-        operator
-    ]
+    how = {">=": f"{word} or more", ">": f"above {word}", "<=": f"{word} or less", "<": f"below {word}"}[operator]
     return f"the {said} is {how}"
 
 
