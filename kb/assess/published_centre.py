@@ -147,7 +147,8 @@ def _shifts(mol: Chem.Mol, centre: int, leaving: int | None) -> tuple[Shift, ...
             if moved is None or label == start or any(s.cation.label == label for s in found):
                 continue
             after = describe_centre(moved, here, None, None, with_shifts=False)
-            found.append(Shift(migrant=migrant, cation=after))
+            if after.carbon_class in _CLASSES:  # a bridgehead cation cannot flatten
+                found.append(Shift(migrant=migrant, cation=after))
     return tuple(found)
 
 

@@ -55,6 +55,9 @@ ACTIVATORS = frozenset(
 )  # fmt: skip
 _NEVER_BASES = frozenset({"water", "alcohol", "chloride", "bromide", "iodide", "aromatic_amine"})
 _CONSUMED = frozenset({"metal_hydride"})
+_AQUEOUS = frozenset({"mineral_acid", "hydrogen_fluoride", "hydrogen_chloride", "hydrogen_bromide", "hydrogen_iodide"})
+_ACID_MOLAR = 9.0
+"""Halide in a concentrated hydrogen halide [mol/L]: about 8.9 M HBr, 12 M HCl (common practice)."""
 _MARGIN = 2.0
 
 
@@ -78,6 +81,8 @@ def medium_of(
     if base is not None and (base in _CONSUMED or base == word) and word is not None:
         # What the base made of the nucleophile is then the strongest base left.
         base, pkah = (None, None) if base in _CONSUMED else (base, pkah)
+    if word == "alkoxide" and base == "tertiary_alkoxide" and nucleophile is None:
+        word = base  # no alcohol was drawn that the base would turn into another alkoxide
     n = profile.swain_scott_n if word is not None and word == profile.nucleophile_class else None
     return Medium(
         nucleophile=word,
@@ -85,6 +90,7 @@ def medium_of(
         base=base,
         base_pkah=pkah,
         base_bulk=_bulk(profile, base, base_smiles),
+        nucleophile_molar=_ACID_MOLAR if _is_hydrogen_halide(profile, word) else None,
         solvent_kinds=_kinds(profile),
         solvent_y=profile.winstein_y,
         temperature_c=profile.temperature_c,
@@ -172,8 +178,14 @@ def _bulk(profile: ConditionProfile, base: str | None, base_smiles: str | None) 
     return None
 
 
+def _is_hydrogen_halide(profile: ConditionProfile, word: str | None) -> bool:
+    return profile.acidity == "strong" and any(OF_ACIDS.get(c) == word for c in profile.reagent_classes & _AQUEOUS)
+
+
 def _kinds(profile: ConditionProfile) -> frozenset[str]:
     kinds = set(profile.solvent_classes)
+    if not kinds and profile.acidity == "strong" and profile.reagent_classes & _AQUEOUS:
+        return frozenset({"protic", "water"})  # a mineral acid alone is its own aqueous medium
     if "protic" in kinds:
         kinds.discard("weakly-polar")
     return frozenset(kinds)

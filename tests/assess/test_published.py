@@ -10,7 +10,12 @@ from kb.chem.facts import Reading
 from kb.chem.reading import read_scheme
 from kb.materials.profile import ConditionProfile
 from kb.physorg.step import StepFacts
-from kb.vocabulary import Confidence, Fate
+from kb.quantity import Temperature
+from kb.record.component import Component, SolventPart
+from kb.record.conditions import Conditions
+from kb.record.plan import Plan
+from kb.store.derivation import account_of_plan
+from kb.vocabulary import Confidence, Fate, Role
 
 ALCOHOL = {"solvent_classes": frozenset({"protic", "alcohol"}), "has_unknown_solvent": False, "winstein_y": -2.03}
 DIPOLAR = {"solvent_classes": frozenset({"polar-aprotic", "amide"}), "has_unknown_solvent": False}
@@ -107,7 +112,7 @@ def test_what_is_not_known_stays_so() -> None:
         ("CC(C)(C)OC(=O)NCc1ccccc1>>NCc1ccccc1", "another kind"),
         ("C=CC>>CC(C)Br", "no published rates"),
         ("not a scheme", "no published rates"),
-        ("C=CBr", "vinyl"),
+        ("C=CBr", "another kind"),
         ("Brc1ccccc1", "aryl"),
     ],
 )
@@ -154,3 +159,41 @@ def test_step_facts_hand_over_the_ring_and_the_temperature() -> None:
     assert isinstance(facts, StepFacts)
     assert facts.centre.ring_size == 6
     assert facts.medium.temperature_c == 40.0
+
+
+def a_plan(scheme: str, temperature_c: float | None = None, solvents: tuple[str, ...] = (), **roles: str) -> Plan:
+    components = tuple(Component(role=Role(role), name=name) for role, name in roles.items())
+    given = None if temperature_c is None else Temperature(text="", start_c=temperature_c, end_c=temperature_c)
+    return Plan(
+        scheme=scheme,
+        conditions=Conditions(
+            components=components, solvents=tuple(SolventPart(name=s) for s in solvents), temperature=given
+        ),
+    )
+
+
+def leading(plan: Plan) -> Fate | None:
+    account = account_of_plan(plan)
+    found = published_estimate(account.reading, account.facts.substrate or "", account.profile)
+    return found.fates[0][0] if found.fates else None
+
+
+@pytest.mark.parametrize(
+    ("plan", "fate", "why"),
+    [
+        (a_plan("CCBr", 55.0, ("EtOH",), base="NaOEt"), Fate.SUBSTITUTION, "SE01"),
+        (a_plan("CC(C)Br", 25.0, ("EtOH",), base="NaOEt"), Fate.ELIMINATION, "SE07"),
+        (a_plan("CC(C)(C)Br", 25.0, ("EtOH",), base="NaOEt"), Fate.ELIMINATION, "SE10"),
+        (a_plan("CC(C)(C)Br", 25.0, ("EtOH",)), Fate.SUBSTITUTION, "SE16"),
+        (a_plan("CCCCCCCCBr", 40.0, ("tBuOH",), base="KOtBu"), Fate.ELIMINATION, "SE28"),
+        (a_plan("CCCCCCCCOS(=O)(=O)c1ccc(C)cc1", 40.0, ("tBuOH",), base="KOtBu"), Fate.SUBSTITUTION, "SE29"),
+        (a_plan("CCC(C)Cl", 120.0, ("DMSO",), reagent="NaCN"), Fate.SUBSTITUTION, "SE35"),
+        (a_plan("CC(C)(C)C(C)O>>CC(C)=C(C)C", 80.0, acid="H3PO4"), Fate.REARRANGED, "RE02"),
+        (a_plan("CC(C)C(C)O.Br>>CCC(C)(C)Br", 60.0, acid="HBr"), Fate.REARRANGED, "common practice"),
+        (a_plan("CC(C)CO.Br>>CC(C)CBr", 90.0, acid="HBr"), Fate.SUBSTITUTION, "its negative control"),
+        (a_plan("BrC12CC3CC(CC(C3)C1)C2", 80.0, ("DMF",), reagent="NaN3"), None, "RR20, bridgehead"),
+    ],
+    ids=lambda v: v if isinstance(v, str) else "",
+)
+def test_from_names_as_a_chemist_writes_them(plan: Plan, fate: Fate | None, why: str) -> None:
+    assert leading(plan) is fate, why

@@ -9,10 +9,10 @@ import pytest
 from kb.assess.published_centre import describe_centre
 from kb.physorg.competition import Competition, compete
 from kb.physorg.rates import cation_terms, centre_terms
-from kb.physorg.step import StepFacts
+from kb.physorg.step import Centre, Medium, StepFacts
 from kb.physorg.stereo import StereoOutcome, expect_stereo
 from kb.physorg.terms import total
-from kb.vocabulary import Fate
+from kb.vocabulary import CarbonClass, Fate, LeavingGroup
 from tests.assess.published_rows import a_step, answer, is_test_row, rows
 
 ACID = {"acid": "strong"}
@@ -134,6 +134,22 @@ def test_bridgehead_halides_get_a_reason_and_no_number(smiles: str, group: str, 
     assert "1939" in result.no_number
 
 
+@pytest.mark.parametrize("kind", [CarbonClass.VINYL, CarbonClass.ARYL, CarbonClass.BRIDGEHEAD])
+def test_closed_carbons_get_a_reason_and_no_number(kind: CarbonClass) -> None:
+    medium = Medium(nucleophile="azide", solvent_kinds=frozenset({"polar-aprotic"}), temperature_c=60.0)
+    step = StepFacts(centre=Centre(carbon_class=kind), leaving_group=LeavingGroup.BROMIDE, medium=medium)
+    result = compete(step)
+    assert not result.fates
+    assert str(kind) in result.no_number
+
+
+@pytest.mark.parametrize("group", [LeavingGroup.NITRO, LeavingGroup.OTHER])
+def test_a_leaving_group_outside_the_tables_gets_no_number(group: LeavingGroup) -> None:
+    medium = Medium(nucleophile="azide", solvent_kinds=frozenset({"polar-aprotic"}), temperature_c=60.0)
+    step = StepFacts(centre=Centre(carbon_class=CarbonClass.PRIMARY), leaving_group=group, medium=medium)
+    assert not compete(step).fates
+
+
 def test_an_alcohol_without_acid_gets_a_reason_and_no_number() -> None:
     result = compete(a_step("CC(C)O", "OH2+", "NaN3", "DMSO", 80.0, acid="none"))
     assert not result.fates
@@ -222,3 +238,20 @@ def test_describe_centre_reads_a_cyclohexyl_centre() -> None:
     assert centre.ring_size == 6
     assert {n.label.split(" ")[0]: n.anti_hydrogens for n in centre.neighbours} == {"CH": 0.0, "CH2": 1.0}
     assert centre.is_stereocentre
+
+
+def test_rates_are_the_sums_that_are_shown() -> None:
+    result = answer("SE07")
+    plain = [c for c in result.channels if c.kind != "ionisation"]
+    assert plain
+    for channel in plain:
+        assert channel.log10_rate == pytest.approx(total(channel.terms), abs=0.05)
+
+
+def test_a_shift_never_ends_on_a_bridgehead() -> None:
+    from rdkit import Chem
+
+    # 2-Norbornyl: a hydride from C1 would leave a bridgehead cation, which cannot flatten (Bredt; common practice).
+    centre = describe_centre(Chem.MolFromSmiles("BrC1CC2CCC1C2"), 1, 0)
+    assert all(s.cation.carbon_class is not CarbonClass.BRIDGEHEAD for s in centre.shifts)
+    assert compete(a_step("BrC1CC2CCC1C2", "Br", "solvent", "aq EtOH", 60.0)).fates
