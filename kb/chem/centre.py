@@ -1,13 +1,14 @@
 """Where a bond can break: leaving groups in a fragment, the class of the carbon, and what stands beside it.
 
-It proposes every bond from carbon to something that chemistry knows to depart, good or poor, and ranks them; whether
-it does depart is for the match with the product (`matching`) or, when no product is stated, for the rank. Vinyl and
-aryl carbons are reported with their class so that a reader sees why nothing happens there.
+It proposes every bond from carbon to something that chemistry knows to depart, good or poor, and ranks them;
+whether it does depart is for the match with the product (`matching`) or, when no product is stated, for the
+rank. Vinyl and aryl carbons are reported with their class so that a reader sees why nothing happens there.
 
-Carbon class counts carbon neighbours (IUPAC usage); bridgehead, vinyl and aryl win over the count. The bridgehead
-test is geometric bookkeeping: an sp3 carbon with three ring bonds whose rings share more than one bond (bridged, as in
-norbornane or adamantane), or that closes a cage of small rings (as in cubane); a fused junction (decalin) is none.
-Source of the ladder in `_RANK`: common practice, the order of textbook leaving-group tables.
+Carbon class counts carbon neighbours (IUPAC usage); bridgehead, vinyl and aryl win over the count. The
+bridgehead test is geometric bookkeeping: an sp3 carbon with three ring bonds whose rings share more than one
+bond (bridged, as in norbornane or adamantane), or that closes a cage of small rings (as in cubane); a fused
+junction (decalin) is none. Source of the ladder in `_RANK`: common practice, the order of textbook leaving-
+group tables.
 """
 
 from __future__ import annotations

@@ -1,9 +1,9 @@
 """Groups that acid, base or fluoride takes off, and the plain hydrolyses that are no loss of a protecting group.
 
-For each it says which bonds break and which side keeps the electrons; it does not say whether the conditions do
-it (that is `kb.assess`) nor draws the product (`fates_loss`). Hydrolysis of an ordinary ester or amide is listed too,
-named as what it is (`Fate.OTHER`): it must be recognised so as not to be taken for a displacement, and it often
-follows another step in the same flask.
+For each it says which bonds break and which side keeps the electrons; it does not say whether the conditions
+do it (that is `kb.assess`) nor draws the product (`fates_loss`). Hydrolysis of an ordinary ester or amide is
+listed too, named as what it is (`Fate.OTHER`): it must be recognised so as not to be taken for a
+displacement, and it often follows another step in the same flask.
 
 Names are the trade's; the classes of promoter (acid, base, fluoride, thiol...) follow common practice.
 """
@@ -13,6 +13,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from kb.chem.molgraph import Molgraph
+from kb.chem.promoters import Promoters
 from kb.vocabulary import Fate
 
 
@@ -33,7 +34,7 @@ class LabileGroup:
     Attributes:
         name: `Boc`, `tert-butyl ester`, `THP`... in words for a note.
         fate: group-loss, or other for a plain hydrolysis.
-        promoter: acid, base, fluoride, hydrogenolysis or any: what usually takes it off.
+        promoter: acid, base, silyl (acid or fluoride), fluoride, hydrogenolysis...: what usually takes it off.
         losses: the bonds that break.
         carbon: the carbon from which the kept or lost heteroatom parts (for Boc the tert-butyl carbon).
         leaving: the atom that parts from that carbon.
@@ -47,14 +48,36 @@ class LabileGroup:
     leaving: int
 
 
+def comes_off(group: LabileGroup, promoters: Promoters) -> bool:
+    """Return whether what is in the flask fits the loss of a group as acid or base brings it about.
+
+    Schemes often leave reagents out, so acid is assumed where nothing speaks against it. Hydrogenolysis, palladium
+    and fluoride on carbon-silicon are chosen, selective steps: they are no loss in this sense unless an acid is there.
+
+    Source: common practice of protecting groups.
+    """
+    if group.fate is not Fate.GROUP_LOSS:
+        return False
+    if group.promoter == "acid":
+        return promoters.is_acidic or not promoters.strong_base
+    if group.promoter == "base":
+        return not promoters.hydrogenation
+    if group.promoter == "silyl":
+        return promoters.is_acidic or promoters.fluoride or promoters.strong_base
+    return (promoters.strong_acid or promoters.lewis_acid) and not promoters.hydrogenation
+
+
 def find_labile_groups(graph: Molgraph) -> tuple[LabileGroup, ...]:
     """Return every group of a fragment that can come off by acid, base, fluoride or water."""
     known = graph.memo.get("labile")
     if known is None:
         found: list[LabileGroup] = []
         for atom, element in enumerate(graph.elements):
-            if element in (7, 8, 16) and graph.charges[atom] >= 0:
+            if element in (7, 8, 16):
                 found.extend(_groups_on(graph, atom))
+                phthaloyl = _phthaloyl(graph, atom) if element == 7 else None
+                if phthaloyl is not None:
+                    found.append(phthaloyl)
             elif element == 6:
                 acetal = _acetal(graph, atom)
                 if acetal is not None:
@@ -77,7 +100,7 @@ def _groups_on(graph: Molgraph, atom: int) -> list[LabileGroup]:
     """Return the groups that one N, O or S atom can lose."""
     found = []
     bonds = graph.neighbours[atom]
-    if graph.has_multiple_bond(atom) or len(bonds) < 2:
+    if graph.has_multiple_bond(atom):
         return []
     for n, code in bonds.items():
         if code not in (1, 4) or (graph.aromatic[atom] and graph.aromatic[n]):
@@ -86,7 +109,7 @@ def _groups_on(graph: Molgraph, atom: int) -> list[LabileGroup]:
         if element == 14:
             loss = _loss(graph, atom, n, 1)
             if loss:
-                found.append(LabileGroup("silyl", Fate.GROUP_LOSS, "fluoride", (loss,), n, atom))
+                found.append(LabileGroup("silyl", Fate.GROUP_LOSS, "silyl", (loss,), n, atom))
         elif element == 5:
             loss = _loss(graph, atom, n, 1)
             if loss:
@@ -112,8 +135,20 @@ def _carbon_group(graph: Molgraph, atom: int, carbon: int) -> LabileGroup | None
         return _acyl_group(graph, atom, carbon, loss)
     if not graph.is_sp3_carbon(carbon):
         return None
+    if graph.elements[atom] == 8 and _is_on_carbamate(graph, atom):
+        return None
     name, promoter, fate = _alkyl_group(graph, atom, carbon)
     return LabileGroup(name, fate, promoter, (loss,), carbon, atom)
+
+
+def _is_on_carbamate(graph: Molgraph, oxygen: int) -> bool:
+    """Return whether an oxygen is the alkoxy one of a carbamate or carbonate, which goes with its carbon dioxide."""
+    return any(
+        graph.has_multiple_bond(n, 8)
+        and any(m != oxygen and code == 1 and graph.elements[m] in (7, 8) for m, code in graph.neighbours[n].items())
+        for n in graph.neighbours[oxygen]
+        if graph.elements[n] == 6
+    )
 
 
 def _acyl_group(graph: Molgraph, atom: int, carbon: int, loss: BondLoss) -> LabileGroup:
@@ -260,3 +295,22 @@ def _diol_acetal(graph: Molgraph, carbon: int) -> LabileGroup | None:
             stack.extend(n for n in graph.neighbours[here] if n not in lost)
     losses = tuple(BondLoss(h, carbon, frozenset(lost), 1) for h in hetero)
     return LabileGroup("diol acetal", Fate.GROUP_LOSS, "acid", losses, carbon, hetero[0])
+
+
+def _phthaloyl(graph: Molgraph, nitrogen: int) -> LabileGroup | None:
+    """Return the loss of both acyl bonds of a cyclic imide, which frees the amine (phthalimide)."""
+    acyls = [n for n in graph.neighbours[nitrogen] if graph.in_ring[n] and graph.has_multiple_bond(n, 8)]
+    if len(acyls) != 2 or graph.aromatic[nitrogen]:
+        return None
+    lost = set(acyls)
+    stack = list(acyls)
+    while stack:
+        here = stack.pop()
+        for n in graph.neighbours[here]:
+            if n != nitrogen and n not in lost:
+                lost.add(n)
+                stack.append(n)
+    if any(n in lost and n not in acyls for n in graph.neighbours[nitrogen]):
+        return None
+    losses = tuple(BondLoss(nitrogen, n, frozenset(lost), 1) for n in acyls)
+    return LabileGroup("phthaloyl", Fate.OTHER, "hydrazine", losses, acyls[0], nitrogen)

@@ -1,36 +1,41 @@
 """Which of the things that could form is the stated product?
 
-It balances atoms (`skeleton`) for every combination of a leaving group, a nucleophile and what may follow in the same
-flask, simplest first, and stops at the first level of complexity that gives the product. It draws no
-structures and applies no conditions except where two readings balance equally well (an ester from acid and alcohol).
+It balances atoms (`balance`, `skeleton`) for every combination of an opening, a nucleophile and what may come
+off besides, simplest first, and stops at the first level that gives the product plainly. It draws no
+structures. Conditions decide only where two readings balance equally well (an ester from an acid and an
+alcohol).
+
+Levels: one change; one change after a shift or transposition; two changes (ring closures, two equivalents, a
+second step in the same flask); oxidation states. Within all that balance the least cost wins, then the rank.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
-from functools import cached_property
-from itertools import combinations
+from dataclasses import dataclass, replace
 
-from kb.chem.centre import LeavingSite, find_leaving_sites
-from kb.chem.labile import LabileGroup, find_labile_groups
+from kb.chem.balance import Losses, Removal, Workbench
+from kb.chem.labile import LabileGroup, comes_off
 from kb.chem.molgraph import Molgraph
-from kb.chem.nucleophile import NucleophileSite, find_nucleophile_sites
-from kb.chem.skeleton import Cut, Edit, Pool, Tally, Target, skeleton_summary
-from kb.chem.transfer import TransferSite, find_transfer_sites
+from kb.chem.nucleophile import NucleophileSite
+from kb.chem.openings import (
+    Opening,
+    fills,
+    find_additions,
+    find_displacements,
+    find_shifts,
+    find_transfers,
+    find_transpositions,
+    landing_cost,
+)
+from kb.chem.skeleton import Edit, Target, skeleton_summary
 from kb.vocabulary import Fate
 
-MAX_TRIES = 4000
-"""Most candidate edits whose skeleton is looked at for one product."""
+PLAIN_COST = 2
+"""A reading up to this cost ends the search; a dearer one is kept only if no later level does better."""
 
-
-@dataclass(frozen=True, slots=True)
-class Removal:
-    """What a step takes from the balance: cuts, and the elements and P that go."""
-
-    cuts: tuple[Cut, ...]
-    elements: int
-    protons: int
+Place = tuple[int, int, int | None]
+"""(part, atom, leaving atom or None), numbers within the part."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -39,438 +44,299 @@ class Match:
 
     Attributes:
         fate: its word.
-        edit: the bond changes.
-        centre: (part, atom in part, leaving atom in part or None) of the principal centre; None for `other`.
-        further: more centres, likewise.
+        edit: the bond changes; None when the reading did not come from a balance.
+        centres: principal centre first; empty for `other`.
         nucleophile: (part, atom in part, class word), or None.
         note: plain words for how.
-        rank: to choose among equally simple ones, higher first.
-        followed_by: names of groups lost besides.
+        rank: to choose among equally plain ones, higher first.
+        cost: assumptions needed.
+        lost: groups that came off besides.
+        landing: (part, atom) where the nucleophile of the leading step lands; None for losses and eliminations.
     """
 
     fate: Fate
-    edit: Edit
-    centre: tuple[int, int, int | None] | None
-    further: tuple[tuple[int, int, int | None], ...] = ()
+    edit: Edit | None
+    centres: tuple[Place, ...] = ()
     nucleophile: tuple[int, int, str] | None = None
     note: str = ""
     rank: int = 0
-    followed_by: tuple[str, ...] = ()
-
-
-class Workbench:
-    """The left side of a scheme, taken apart: what can leave, attack, come off, in pool numbering."""
-
-    def __init__(self, graphs: Sequence[Molgraph]) -> None:
-        self.pool = Pool(graphs)
-        self.count = len(graphs)
-        self.tries = 0
-        self._removals: dict[object, Removal] = {}
-
-    @property
-    def graphs(self) -> list[Molgraph]:
-        """Return the fragments, second portions included."""
-        return self.pool.graphs
-
-    def second(self, part: int) -> int:
-        """Return the part number of a second portion of a fragment."""
-        return self.pool.second_portion(part)
-
-    def atom(self, part: int, atom: int) -> int:
-        """Return the pool number of an atom of a part."""
-        return self.pool.starts[part] + atom
-
-    def removal(self, part: int, kept: int, gone: int, departs: frozenset[int] | None, gain: int) -> Removal:
-        """Return the balance of one broken bond; a bond held by a ring costs nothing."""
-        key = (part, kept, gone, gain)
-        known = self._removals.get(key)
-        if known is None:
-            start = self.pool.starts[part]
-            moved = frozenset(a + start for a in departs or ())
-            tally = self.pool.tally_of(moved)
-            worth = gain if departs else 0
-            if departs is None and gain == -2:
-                worth = -2
-            known = Removal(
-                (Cut(kept + start, gone + start, moved, worth),), tally.elements, tally.protons - worth
-            )
-            self._removals[key] = known
-        return known
-
-    def of_site(self, part: int, site: LeavingSite) -> Removal:
-        """Return the balance of a leaving group's departure."""
-        return self.removal(part, site.centre, site.leaving, site.departs, -1)
-
-    def of_nucleophile(self, part: int, site: NucleophileSite) -> Removal:
-        """Return the balance of what a nucleophile drops first."""
-        if site.gone is None:
-            return _NOTHING
-        return self.removal(part, site.atom if site.holder is None else site.holder, site.gone, site.departs, 1)
-
-    def of_group(self, part: int, group: LabileGroup) -> Removal:
-        """Return the balance of a labile group's loss."""
-        key = (part, group)
-        known = self._removals.get(key)
-        if known is None:
-            start = self.pool.starts[part]
-            cuts, gone = [], frozenset[int]()
-            for loss in group.losses:
-                moved = frozenset(a + start for a in loss.departs)
-                cuts.append(Cut(loss.kept + start, loss.gone + start, moved, loss.gain))
-                gone |= moved
-            tally = self.pool.tally_of(gone)
-            known = Removal(tuple(cuts), tally.elements, tally.protons - sum(c.gain for c in cuts))
-            self._removals[key] = known
-        return known
-
-    @cached_property
-    def sites(self) -> list[tuple[int, LeavingSite]]:
-        """Return every leaving group at sp3 carbon with its part."""
-        return [(p, s) for p in range(self.count) for s in find_leaving_sites(self.graphs[p]) if s.is_sp3]
-
-    @cached_property
-    def transfers(self) -> list[tuple[int, TransferSite]]:
-        """Return every electrophilic atom that is no sp3 carbon, with its part."""
-        return [(p, s) for p in range(self.count) for s in find_transfer_sites(self.graphs[p])]
-
-    def losses(self, part: int) -> dict[tuple[int, int], list[tuple[LabileGroup, ...]]]:
-        """Return combinations of up to three labile groups of a part, keyed by what they take from the balance."""
-        graph = self.graphs[part]
-        known = graph.memo.get("loss table")
-        if known is None:
-            table: dict[tuple[int, int], list[tuple[LabileGroup, ...]]] = {(0, 0): [()]}
-            groups = find_labile_groups(graph)[:24]
-            for size in (1, 2, 3):
-                if size == 3 and len(groups) > 8:
-                    break
-                for chosen in combinations(groups, size):
-                    gone: set[int] = set()
-                    clash = False
-                    for group in chosen:
-                        mine = {a for loss in group.losses for a in loss.departs}
-                        if gone & mine or any(loss.kept in gone for loss in group.losses):
-                            clash = True
-                            break
-                        gone |= mine
-                    if clash or any(loss.kept in gone for g in chosen for loss in g.losses):
-                        continue
-                    removals = [self.of_group(part, g) for g in chosen]
-                    key = (sum(r.elements for r in removals), sum(r.protons for r in removals))
-                    table.setdefault(key, []).append(chosen)
-            graph.memo["loss table"] = table
-            known = table
-        return known  # type: ignore[return-value]
-
-
-_NOTHING = Removal((), 0, 0)
+    cost: int = 0
+    lost: tuple[LabileGroup, ...] = ()
+    landing: tuple[int, int] | None = None
 
 
 def find_matches(bench: Workbench, product: Molgraph) -> list[Match]:
-    """Return the readings that give a product, of the simplest kind that gives any; best first, empty when none does."""
+    """Return the readings that give a product, plainest first; empty when none does.
+
+    Args:
+        bench: the left side.
+        product: one stated product.
+    """
     target = skeleton_summary(product).target
-    for level in (_single_steps, _double_steps):
-        found = list(level(bench, target))
-        if found:
-            return sorted(found, key=lambda m: (len(m.followed_by), -m.rank))
-    return []
+    displacements = find_displacements(bench)
+    additions, transfers = find_additions(bench), find_transfers(bench)
+    openings = displacements + additions + transfers
+    found = list(find_losses(bench, target))
+    found += _single(bench, target, openings)
+    if not _is_settled(found):
+        moved = find_transpositions(bench, displacements) + find_shifts(bench, displacements)
+        found += _single(bench, target, moved)
+    if not _is_settled(found):
+        found += _double(bench, target, openings)
+    found = [_weighed(bench, product, match) for match in found]
+    return sorted(found, key=lambda m: (m.cost, -m.rank))
 
 
-def _fits(bench: Workbench, target: Target, edit: Edit) -> bool:
-    bench.tries += 1
-    return bench.tries <= MAX_TRIES and bench.pool.makes(edit, target)
+def _is_settled(found: Sequence[Match]) -> bool:
+    return any(match.cost <= PLAIN_COST for match in found)
 
 
-def _sum(*removals: Removal) -> tuple[int, int]:
-    return sum(r.elements for r in removals), sum(r.protons for r in removals)
+def _weighed(bench: Workbench, product: Molgraph, match: Match) -> Match:
+    """Return the match, made dearer when the product's bond orders speak against it."""
+    if match.edit is None:
+        return match
+    if match.fate is Fate.ELIMINATION:
+        part, atom, _ = match.centres[0]
+        (where,) = bench.pool.places(match.edit, product, [bench.atom(part, atom)])
+        holds = any(product.aromatic[p] or _unsaturation(product, p) > 1 for p in where)
+    elif match.landing and (match.fate is Fate.ADDITION or "addition to" in match.note):
+        part, atom = match.landing
+        graph = bench.graphs[part]
+        ends = [atom, *(n for n, code in graph.neighbours[atom].items() if code in (2, 3))][:2]
+        places = bench.pool.places(match.edit, product, [bench.atom(part, a) for a in ends])
+        holds = all(
+            any(_unsaturation(product, p) < _unsaturation(graph, a) for p in where)
+            for a, where in zip(ends, places, strict=True)
+        )
+    else:
+        return match
+    return match if holds else replace(match, cost=match.cost + 2)
 
 
-def _excess(bench: Workbench, parts: Sequence[int], target: Target, *removals: Removal) -> tuple[int, int]:
-    """Return the elements and P that still must go for the parts to give the target."""
-    elements = sum(bench.pool.tallies[p].elements for p in parts) - target.tally.elements
-    protons = sum(bench.pool.tallies[p].protons for p in parts) - target.tally.protons
-    gone = _sum(*removals)
-    return elements - gone[0], protons - gone[1]
+def _unsaturation(graph: Molgraph, atom: int) -> int:
+    """Return the highest bond order of an atom; aromatic counts as 2."""
+    return max((2 if code == 4 else code for code in graph.neighbours[atom].values()), default=1)
 
 
-def _loss_options(
-    bench: Workbench, parts: Sequence[int], excess: tuple[int, int]
-) -> Iterator[tuple[tuple[int, LabileGroup], ...]]:
-    """Yield sets of labile groups over the parts whose loss removes the excess exactly; first the empty set."""
-    if len(parts) == 1:
-        for chosen in bench.losses(parts[0]).get(excess, ()):
-            yield tuple((parts[0], g) for g in chosen)
-        return
-    if excess == (0, 0):
-        yield ()
-        return
-    first, rest = parts[0], parts[1:]
-    for key, options in bench.losses(first).items():
-        remaining = (excess[0] - key[0], excess[1] - key[1])
-        for tail in _loss_options(bench, rest, remaining):
-            for chosen in options:
-                yield tuple((first, g) for g in chosen) + tail
-
-
-def _edit(
-    bench: Workbench,
-    parts: Sequence[int],
-    removals: Sequence[Removal],
-    joins: Sequence[tuple[int, int]],
-    losses: Sequence[tuple[int, LabileGroup]],
-) -> Edit | None:
-    """Return the edit, or None when one step removes an atom that another needs."""
-    cuts = [c for r in removals for c in r.cuts]
-    for part, group in losses:
-        cuts.extend(bench.of_group(part, group).cuts)
-    gone: set[int] = set()
-    for cut in cuts:
-        gone |= cut.departs
-    if any(c.kept in gone for c in cuts) or any(a in gone or b in gone for a, b in joins):
-        return None
-    return Edit(tuple(parts), tuple(cuts), tuple(joins))
-
-
-def _single_steps(bench: Workbench, target: Target) -> Iterator[Match]:
-    yield from _losses(bench, target)
-    yield from _eliminations(bench, target)
-    yield from _displacements(bench, target)
-    yield from _additions(bench, target)
-    yield from _transfers(bench, target)
-
-
-def _losses(bench: Workbench, target: Target) -> Iterator[Match]:
+def find_losses(bench: Workbench, target: Target) -> Iterator[Match]:
     """Yield losses of one to three labile groups from one fragment."""
     for part in range(bench.count):
-        for losses in _loss_options(bench, (part,), _excess(bench, (part,), target)):
-            if not losses:
+        for losses in bench.losses_for((part,), bench.excess((part,), target)):
+            edit = bench.edit((part,), (), (), losses) if losses else None
+            if edit is None or not bench.gives(edit, target):
                 continue
-            edit = _edit(bench, (part,), (), (), losses)
-            if edit and _fits(bench, target, edit):
-                groups = [g for _, g in losses]
-                principal = next((g for g in groups if g.fate is Fate.GROUP_LOSS), groups[0])
-                yield Match(
-                    fate=principal.fate,
-                    edit=edit,
-                    centre=(part, principal.carbon, principal.leaving) if principal.fate is Fate.GROUP_LOSS else None,
-                    further=tuple(
-                        (part, g.carbon, g.leaving) for g in groups if g is not principal and g.fate is Fate.GROUP_LOSS
-                    ),
-                    note="loss of " + " and ".join(g.name for g in groups)
-                    if principal.fate is Fate.GROUP_LOSS
-                    else "hydrolysis of " + " and ".join(g.name for g in groups),
-                    rank=10,
-                    followed_by=tuple(g.name for g in groups[1:]),
-                )
+            lost = [g for _, g in losses if comes_off(g, bench.promoters)]
+            groups = (*lost, *(g for _, g in losses if g not in lost))
+            yield Match(
+                fate=Fate.GROUP_LOSS if lost else Fate.OTHER,
+                edit=edit,
+                centres=tuple((part, g.carbon, g.leaving) for g in lost),
+                note=("loss of " if lost else "hydrolysis or cleavage of ") + " and ".join(g.name for g in groups),
+                rank=100,
+                cost=len(groups) - 1,
+                lost=groups,
+            )
 
 
-def _eliminations(bench: Workbench, target: Target) -> Iterator[Match]:
-    for part, site in bench.sites:
-        removal = bench.of_site(part, site)
-        for losses in _loss_options(bench, (part,), _excess(bench, (part,), target, removal)):
-            edit = _edit(bench, (part,), (removal,), (), losses)
-            if edit and _fits(bench, target, edit):
-                yield Match(
-                    fate=Fate.ELIMINATION,
-                    edit=edit,
-                    centre=(part, site.centre, site.leaving),
-                    note=f"loss of {site.group}",
-                    rank=site.rank,
-                    followed_by=tuple(g.name for _, g in losses),
-                )
+def _single(bench: Workbench, target: Target, openings: Sequence[Opening]) -> list[Match]:
+    """Return matches of one opening, filled or left empty."""
+    found: list[Match] = []
+    for opening in openings:
+        if opening.site is not None and opening.fate is not Fate.TRANSPOSED and not opening.gain:
+            found.extend(_emptied(bench, target, opening))
+        if opening.fate is Fate.OTHER and opening.site is not None:
+            continue
+        for other in bench.attackers:
+            found.extend(_filled(bench, target, opening, other))
+    return found
 
 
-def _displacements(bench: Workbench, target: Target) -> Iterator[Match]:
-    """Yield displacement of one leaving group by one nucleophile, between molecules or within one."""
-    for part, site in bench.sites:
-        removal = bench.of_site(part, site)
-        partners = list(range(bench.count))
-        for other in partners:
-            within = other == part
-            parts = (part,) if within else (part, other)
-            excess_here = _excess(bench, parts, target, removal)
-            for nucleophile in find_nucleophile_sites(bench.graphs[other]):
-                dropped = bench.of_nucleophile(other, nucleophile)
-                excess = (excess_here[0] - dropped.elements, excess_here[1] - dropped.protons)
-                if within and _is_idle(site, nucleophile, bench.graphs[part]):
-                    continue
-                for losses in _loss_options(bench, parts, excess):
-                    join = (bench.atom(part, site.centre), bench.atom(other, nucleophile.atom))
-                    edit = _edit(bench, parts, (removal, dropped), (join,), losses)
-                    if edit and _fits(bench, target, edit):
-                        yield Match(
-                            fate=Fate.SUBSTITUTION,
-                            edit=edit,
-                            centre=(part, site.centre, site.leaving),
-                            nucleophile=(other, nucleophile.atom, nucleophile.word),
-                            note=f"displacement of {site.group} by {nucleophile.word.replace('_', ' ')}"
-                            + (" within the molecule" if within else ""),
-                            rank=site.rank + nucleophile.rank,
-                            followed_by=tuple(g.name for _, g in losses),
-                        )
+def _emptied(bench: Workbench, target: Target, opening: Opening) -> Iterator[Match]:
+    """Yield eliminations: the opening left empty, a proton lost beside it."""
+    parts = (opening.part,)
+    for losses in bench.losses_for(parts, bench.excess(parts, target, *opening.removals)):
+        edit = bench.edit(parts, opening.removals, opening.joins, losses)
+        if edit and bench.gives(edit, target) and opening.centre is not None:
+            rearranged = opening.fate is Fate.REARRANGED
+            yield Match(
+                fate=Fate.REARRANGED if rearranged else Fate.ELIMINATION,
+                edit=edit,
+                centres=((opening.part, *opening.centre),),
+                note=f"{opening.note}, then of a proton" if rearranged else f"loss of {opening.group} to an alkene",
+                rank=opening.rank,
+                cost=opening.cost + len(losses),
+                lost=tuple(g for _, g in losses),
+            )
 
 
-def _is_idle(site: LeavingSite, nucleophile: NucleophileSite, graph: Molgraph) -> bool:
-    """Return whether an internal attack is no reaction: by the leaving group, or on an atom already bonded."""
-    atom = nucleophile.atom
-    return (
-        atom in (site.centre, site.leaving)
-        or atom in graph.neighbours[site.centre]
-        or (site.departs is not None and atom in site.departs)
+def _filled(bench: Workbench, target: Target, opening: Opening, other: int) -> Iterator[Match]:
+    """Yield the opening filled by each nucleophilic atom of one part."""
+    within = other == opening.part
+    parts = (opening.part,) if within else (opening.part, other)
+    here = bench.excess(parts, target, *opening.removals)
+    graph = bench.graphs[opening.part]
+    for nucleophile in bench.nucleophiles(other):
+        if within and not fills(nucleophile, opening, graph):
+            continue
+        dropped = bench.of_nucleophile(other, nucleophile)
+        excess = (here[0] - dropped.elements, here[1] - dropped.protons + opening.gain)
+        for losses in bench.losses_for(parts, excess):
+            joins = (*opening.joins, (bench.atom(opening.part, opening.atom), bench.atom(other, nucleophile.atom)))
+            edit = bench.edit(parts, (*opening.removals, dropped), joins, losses)
+            if edit and bench.gives(edit, target):
+                yield _match(bench, opening, other, nucleophile, edit, losses, within=within)
+
+
+def _match(
+    bench: Workbench,
+    opening: Opening,
+    other: int,
+    nucleophile: NucleophileSite,
+    edit: Edit,
+    losses: Losses,
+    *,
+    within: bool,
+) -> Match:
+    """Return the match of one filled opening."""
+    word = nucleophile.word.replace("_", " ")
+    note = opening.note if opening.fate is Fate.OTHER else f"{opening.note} by {word}"
+    unstated = 1 if not bench.is_stated(other) else 0
+    if losses:
+        note += ", besides loss of " + " and ".join(g.name for _, g in losses)
+    return Match(
+        fate=opening.fate,
+        edit=edit,
+        centres=((opening.part, *opening.centre),) if opening.centre else (),
+        nucleophile=(other, nucleophile.atom, nucleophile.word),
+        note=note + (" within the molecule" if within and opening.fate is not Fate.OTHER else ""),
+        rank=opening.rank + nucleophile.rank,
+        cost=opening.cost
+        + len(losses)
+        + unstated
+        + landing_cost(bench.graphs[opening.part], opening, nucleophile.word, bench.promoters),
+        lost=tuple(g for _, g in losses),
+        landing=(opening.part, opening.atom),
     )
 
 
-def _additions(bench: Workbench, target: Target) -> Iterator[Match]:
-    """Yield additions of one nucleophile (and a proton) to a carbon-carbon multiple bond."""
-    for part in range(bench.count):
-        graph = bench.graphs[part]
-        carbons = alkene_carbons(graph)
-        if not carbons:
+def _double(bench: Workbench, target: Target, openings: Sequence[Opening]) -> list[Match]:
+    """Return matches of two openings filled: by one partner or two, in one molecule or in two portions of it."""
+    found: list[Match] = []
+    firsts = [o for o in openings if o.cost <= 1 and o.fate is not Fate.OTHER]
+    seconds = [o for o in openings if o.cost <= 1 and not (o.fate is Fate.OTHER and o.site is not None)]
+    for index, first in enumerate(firsts):
+        found.extend(_twice(bench, target, first))
+        for second in seconds:
+            if second in firsts[: index + 1] or second.gain:
+                continue
+            if first.part == second.part and first.centre == second.centre:
+                continue
+            found.extend(_pair(bench, target, first, second))
+        if bench.gave_up:
+            break
+    return found
+
+
+def _twice(bench: Workbench, target: Target, opening: Opening) -> Iterator[Match]:
+    """Yield two portions of the electrophile on one partner."""
+    if opening.site is None:
+        return
+    again = bench.pool.second_portion(opening.part)
+    removals = (opening.removals[0], bench.of_site(again, opening.site))
+    for other in range(bench.count):
+        if other == opening.part:
             continue
-        for other in range(bench.count):
-            within = other == part
-            parts = (part,) if within else (part, other)
-            for nucleophile in find_nucleophile_sites(bench.graphs[other]):
-                dropped = bench.of_nucleophile(other, nucleophile)
-                for losses in _loss_options(bench, parts, _excess(bench, parts, target, dropped)):
-                    for carbon in carbons:
-                        if within and (nucleophile.atom == carbon or nucleophile.atom in graph.neighbours[carbon]):
-                            continue
-                        join = (bench.atom(part, carbon), bench.atom(other, nucleophile.atom))
-                        edit = _edit(bench, parts, (dropped,), (join,), losses)
-                        if edit and _fits(bench, target, edit):
-                            yield Match(
-                                fate=Fate.ADDITION,
-                                edit=edit,
-                                centre=(part, carbon, None),
-                                nucleophile=(other, nucleophile.atom, nucleophile.word),
-                                note=f"addition of {nucleophile.word.replace('_', ' ')}",
-                                rank=nucleophile.rank,
-                                followed_by=tuple(g.name for _, g in losses),
-                            )
+        parts = (opening.part, again, other)
+        excess = bench.excess(parts, target, *removals)
+        yield from _pairs_of_atoms(bench, target, opening, opening, parts, (other, other), removals, excess, again)
 
 
-def alkene_carbons(graph: Molgraph) -> list[int]:
-    """Return the carbons of non-aromatic carbon-carbon double and triple bonds."""
-    return [
-        a
-        for a, z in enumerate(graph.elements)
-        if z == 6 and not graph.aromatic[a] and graph.has_multiple_bond(a, 6)
-    ]
+def _pair(bench: Workbench, target: Target, first: Opening, second: Opening) -> Iterator[Match]:
+    """Yield two openings filled from within, by a shared partner, by two portions of it, or one each."""
+    removals = (*first.removals, *second.removals)
+    own = (first.part,) if first.part == second.part else (first.part, second.part)
+    base = bench.excess(own, target, *removals)
+    for other in bench.attackers:
+        parts = own if other in own else (*own, other)
+        excess = base if other in own else bench.excess(parts, target, *removals)
+        fillers = {(other, other)}
+        for inner in own:
+            fillers |= {(other, inner), (inner, other)}
+        for pair in sorted(fillers):
+            yield from _pairs_of_atoms(bench, target, first, second, parts, pair, removals, excess, None)
+        if other not in own and bench.is_stated(other) and len(own) == 1:
+            copy = bench.pool.second_portion(other)
+            both = (*parts, copy)
+            excess = bench.excess(both, target, *removals)
+            yield from _pairs_of_atoms(bench, target, first, second, both, (other, copy), removals, excess, None)
 
 
-def _transfers(bench: Workbench, target: Target) -> Iterator[Match]:
-    """Yield acyl, sulfonyl, silyl and aryl transfers and carbonyl additions: fate `other`."""
-    for part, site in bench.transfers:
-        removal = (
-            _NOTHING if site.gone is None else bench.removal(part, site.atom, site.gone, site.departs, site.gain)
-        )
-        for other in range(bench.count):
-            within = other == part
-            parts = (part,) if within else (part, other)
-            for gain in (0, 2) if "carbonyl" in site.name else (0,):
-                here = _excess(bench, parts, target, removal)
-                for nucleophile in find_nucleophile_sites(bench.graphs[other]):
-                    dropped = bench.of_nucleophile(other, nucleophile)
-                    excess = (here[0] - dropped.elements, here[1] - dropped.protons + gain)
-                    if within and (
-                        nucleophile.atom == site.atom or nucleophile.atom in bench.graphs[part].neighbours[site.atom]
-                    ):
-                        continue
-                    for losses in _loss_options(bench, parts, excess):
-                        join = (bench.atom(part, site.atom), bench.atom(other, nucleophile.atom))
-                        edit = _edit(bench, parts, (removal, dropped), (join,), losses)
-                        if edit and _fits(bench, target, edit):
-                            yield Match(
-                                fate=Fate.OTHER,
-                                edit=edit,
-                                centre=None,
-                                nucleophile=(other, nucleophile.atom, nucleophile.word),
-                                note=site.name,
-                                rank=20 + nucleophile.rank,
-                                followed_by=tuple(g.name for _, g in losses),
-                            )
-
-
-def _double_steps(bench: Workbench, target: Target) -> Iterator[Match]:
-    """Yield two displacements: ring closure by two leaving groups, two equivalents of one partner, or one after another."""
-    good = [(p, s) for p, s in bench.sites if s.leaves_unaided or s.rank > 0]
-    for index, (part, site) in enumerate(good):
-        removal = bench.of_site(part, site)
-        for other in range(bench.count):
-            if other == part:
-                continue
-            nucleophiles = [n for n in find_nucleophile_sites(bench.graphs[other]) if n.rank >= 10 and n.gone is None]
-            if not nucleophiles:
-                continue
-            yield from _two_sites_one_partner(bench, target, good[index + 1 :], part, site, other, nucleophiles)
-            yield from _two_portions(bench, target, part, site, removal, other, nucleophiles)
-
-
-def _two_sites_one_partner(
+def _pairs_of_atoms(
     bench: Workbench,
     target: Target,
-    later: list[tuple[int, LeavingSite]],
-    part: int,
-    site: LeavingSite,
-    other: int,
-    nucleophiles: list[NucleophileSite],
+    first: Opening,
+    second: Opening,
+    parts: tuple[int, ...],
+    fillers: tuple[int, int],
+    removals: tuple[Removal, ...],
+    excess: tuple[int, int],
+    again: int | None,
 ) -> Iterator[Match]:
-    removal = bench.of_site(part, site)
-    for part2, site2 in later:
-        if part2 != part or site2.centre == site.centre:
-            continue
-        removal2 = bench.of_site(part, site2)
-        for parts in ((part, other), (part, other, -1)):
-            if parts[-1] == -1:
-                parts = (part, other, bench.second(other))
-            for losses in _loss_options(bench, parts, _excess(bench, parts, target, removal, removal2)):
-                for first in nucleophiles:
-                    for second in nucleophiles:
-                        joins = (
-                            (bench.atom(part, site.centre), bench.atom(parts[1], first.atom)),
-                            (bench.atom(part, site2.centre), bench.atom(parts[-1], second.atom)),
-                        )
-                        edit = _edit(bench, parts, (removal, removal2), joins, losses)
-                        if edit and _fits(bench, target, edit):
-                            yield Match(
-                                fate=Fate.SUBSTITUTION,
-                                edit=edit,
-                                centre=(part, site.centre, site.leaving),
-                                further=((part, site2.centre, site2.leaving),),
-                                nucleophile=(other, first.atom, first.word),
-                                note=f"double displacement of {site.group} by {first.word.replace('_', ' ')}",
-                                rank=site.rank + first.rank,
-                                followed_by=tuple(g.name for _, g in losses),
-                            )
-
-
-def _two_portions(
-    bench: Workbench,
-    target: Target,
-    part: int,
-    site: LeavingSite,
-    removal: Removal,
-    other: int,
-    nucleophiles: list[NucleophileSite],
-) -> Iterator[Match]:
-    again = bench.second(part)
-    parts = (part, again, other)
-    removal2 = bench.removal(again, site.centre, site.leaving, site.departs, -1)
-    for losses in _loss_options(bench, parts, _excess(bench, parts, target, removal, removal2)):
-        for index, first in enumerate(nucleophiles):
-            for second in nucleophiles[index:]:
+    """Yield every choice of the two attacking atoms, once the balance allows any."""
+    options = list(bench.losses_for(parts, excess, most=1))
+    if not options:
+        return
+    second_part = second.part if again is None else again
+    one = [n for n in bench.nucleophiles(fillers[0]) if n.gone is None and n.rank >= 6]
+    two = [n for n in bench.nucleophiles(fillers[1]) if n.gone is None and n.rank >= 6]
+    for losses in options:
+        for a in one:
+            if fillers[0] == first.part and not fills(a, first, bench.graphs[first.part]):
+                continue
+            for b in two:
+                if fillers[1] == second_part and not fills(b, second, bench.graphs[second_part]):
+                    continue
                 joins = (
-                    (bench.atom(part, site.centre), bench.atom(other, first.atom)),
-                    (bench.atom(again, site.centre), bench.atom(other, second.atom)),
+                    (bench.atom(first.part, first.atom), bench.atom(fillers[0], a.atom)),
+                    (bench.atom(second_part, second.atom), bench.atom(fillers[1], b.atom)),
                 )
-                edit = _edit(bench, parts, (removal, removal2), joins, losses)
-                if edit and _fits(bench, target, edit):
-                    yield Match(
-                        fate=Fate.SUBSTITUTION,
-                        edit=edit,
-                        centre=(part, site.centre, site.leaving),
-                        nucleophile=(other, first.atom, first.word),
-                        note=f"two displacements of {site.group} by {first.word.replace('_', ' ')}",
-                        rank=site.rank + first.rank,
-                        followed_by=tuple(g.name for _, g in losses),
-                    )
+                edit = bench.edit(parts, removals, joins, losses)
+                if edit and bench.gives(edit, target):
+                    yield _double_match(bench, first, second, fillers, (a, b), edit, losses, second_part)
+
+
+def _double_match(
+    bench: Workbench,
+    first: Opening,
+    second: Opening,
+    fillers: tuple[int, int],
+    pair: tuple[NucleophileSite, NucleophileSite],
+    edit: Edit,
+    losses: Losses,
+    second_part: int,
+) -> Match:
+    """Return the match of two filled openings; the displacement names it, whichever came first."""
+    steps = [(first, first.part, fillers[0], pair[0]), (second, second_part, fillers[1], pair[1])]
+    order = (Fate.SUBSTITUTION, Fate.ADDITION, Fate.OTHER)
+    steps.sort(key=lambda s: (order.index(s[0].fate), s[0].cost, -s[0].rank))
+    lead, lead_part, other, nucleophile = steps[0]
+    graph = bench.graphs
+    by_ylide = any(
+        o.fate is Fate.OTHER and (f, n.atom) == (lead_part, lead.atom) for o, _, f, n in steps if lead.site is not None
+    )
+    return Match(
+        fate=Fate.OTHER if by_ylide else lead.fate,
+        edit=edit,
+        centres=() if by_ylide else tuple((o.part, *o.centre) for o, _, _, _ in steps if o.centre is not None),
+        nucleophile=(other, nucleophile.atom, nucleophile.word),
+        note=f"{lead.note} by {nucleophile.word.replace('_', ' ')}, and {steps[1][0].note}",
+        rank=lead.rank + nucleophile.rank,
+        cost=1
+        + len(losses)
+        + sum(
+            o.cost + landing_cost(graph[o.part], o, n.word, bench.promoters) + (not bench.is_stated(f))
+            for o, _, f, n in steps
+        ),
+        lost=tuple(g for _, g in losses),
+    )
+

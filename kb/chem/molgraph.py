@@ -1,8 +1,9 @@
 """A molecule as plain lists: what the reading rules look at, atom by atom.
 
-RDKit answers each small question with a call across the language border; the reading rules ask some thousands of
-them for one scheme. So every fragment is taken apart once (and kept, since reagents come back in every run) into plain
-lists, and the rules are written on those. It holds no chemistry beyond ring and aromaticity facts.
+RDKit answers each small question with a call across the language border; the reading rules ask some thousands
+of them for one scheme. So every fragment is taken apart once (and kept, since reagents come back in every
+run) into plain lists, and the rules are written on those. It holds no chemistry beyond ring and aromaticity
+facts.
 
 Atoms are numbered by the canonical SMILES of the fragment, not by the entry: whatever a rule picks first is
 then the same for every way of writing the same molecule. `scheme.Fragment.entered` leads back to the entry.
@@ -100,9 +101,9 @@ class Molgraph:
         return seen
 
 
-@lru_cache(maxsize=4096)
+@lru_cache(maxsize=1024)
 def molgraph_of(smiles: str) -> Molgraph:
-    """Return the graph of a canonical SMILES; kept for the most recent 4096.
+    """Return the graph of a canonical SMILES; kept for the most recent 1024.
 
     Raises:
         StructureError: when RDKit cannot read its own canonical text back.

@@ -1,9 +1,10 @@
 """A scheme: its sides, its fragments, and the way back from canonical numbering to what was typed.
 
-It decides nothing about what reacts. A scheme is reaction SMILES (`reactants>agents>products`, products may be empty) or
-structures alone, which are then all reactants. Fragments are what stands between dots; a salt written with a dot is two
-fragments, each of which may react. Fragments on the left are counted reactants first, then agents: this is the
-`component` of every fact. Atom numbers are 0-based positions in the fragment as entered, explicit hydrogens counted.
+It decides nothing about what reacts. A scheme is reaction SMILES (`reactants>agents>products`, products may
+be empty) or structures alone, which are then all reactants. Fragments are what stands between dots; a salt
+written with a dot is two fragments, each of which may react. Fragments on the left are counted reactants
+first, then agents: this is the `component` of every fact. Atom numbers are 0-based positions in the fragment
+as entered, explicit hydrogens counted.
 """
 
 from __future__ import annotations

@@ -1,8 +1,9 @@
 """Bookkeeping of atoms: does a set of bond changes turn these fragments into that product?
 
-It compares *skeletons*: which atom is bonded to which, with elements only, no bond orders, no hydrogens, no charges. So
-a salt, a tautomer, a resonance drawing or a protonation state never hides a match. What bond orders would have told
-is kept in one number per structure, its *proton-free hydrogen count* P = hydrogens - charge:
+It compares *skeletons*: which atom is bonded to which, with elements only, no bond orders, no hydrogens, no
+charges. So a salt, a tautomer, a resonance drawing or a protonation state never hides a match. What bond
+orders would have told is kept in one number per structure, its *proton-free hydrogen count* P = hydrogens -
+charge:
 
 - adding or taking a proton leaves P as it was; joining a cation and an anion adds their P;
 - a cut in which the kept part gives up the pair of electrons (a leaving group goes) costs the kept part 1;
@@ -12,9 +13,10 @@ is kept in one number per structure, its *proton-free hydrogen count* P = hydrog
 So elements, P and the skeleton together are the whole balance of a polar reaction, and a stated product that
 needed a redox step cannot be taken for a displacement.
 
-Matching is in three sieves: elements and P (integers), a sum over atoms of hashed environments of radius 2 (mended only
-near the changed bonds), then refinement of the whole skeleton. The last is the Weisfeiler-Lehman refinement,
-which in principle cannot tell some regular graphs apart; no pair of plausible products of one scheme is of that kind.
+Matching is in three sieves: elements and P (integers), a sum over atoms of hashed environments of radius 2
+(mended only near the changed bonds), then refinement of the whole skeleton. The last is the Weisfeiler-Lehman
+refinement, which in principle cannot tell some regular graphs apart; no pair of plausible products of one
+scheme is of that kind.
 """
 
 from __future__ import annotations
@@ -110,9 +112,10 @@ class Pool:
         self._second: list[int] = []
         self._portions: dict[int, int] = {}
         for graph in graphs:
-            self._add(graph)
+            self.add(graph)
 
-    def _add(self, graph: Molgraph) -> int:
+    def add(self, graph: Molgraph) -> int:
+        """Add a fragment; return its part number."""
         part, start = len(self.graphs), len(self.elements)
         self.graphs.append(graph)
         self.starts.append(start)
@@ -130,7 +133,7 @@ class Pool:
     def second_portion(self, part: int) -> int:
         """Return the part number of another molecule of the same fragment, added when first asked for."""
         if part not in self._portions:
-            self._portions[part] = self._add(self.graphs[part])
+            self._portions[part] = self.add(self.graphs[part])
         return self._portions[part]
 
     def tally_of(self, atoms: Iterable[int]) -> Tally:
@@ -147,6 +150,20 @@ class Pool:
         gone = {a for cut in edit.cuts for a in cut.departs}
         if self._near(edit, changed, gone) != target.near:
             return False
+        return _digest(self._colours(edit, changed, gone)) == target.whole
+
+    def places(self, edit: Edit, product: Molgraph, atoms: Iterable[int]) -> list[list[int]]:
+        """Return, for each pool atom, the product atoms it may have become once an edit was found to give it.
+
+        Skeletons with like branches offer several places for one atom.
+        """
+        gone = {a for cut in edit.cuts for a in cut.departs}
+        colours = self._colours(edit, self._overlay(edit), gone)
+        there = skeleton_summary(product).colours
+        return [[p for p, c in enumerate(there) if c == colours.get(a)] for a in atoms]
+
+    def _colours(self, edit: Edit, changed: dict[int, tuple[int, ...]], gone: set[int]) -> dict[int, int]:
+        """Return the refined colours of the atoms that are kept."""
         kept = [
             a
             for part in edit.parts
@@ -155,7 +172,7 @@ class Pool:
         ]
         lookup = self.neighbours
         adjacency = {a: changed[a] if a in changed else lookup[a] for a in kept}
-        return refine({a: self.elements[a] for a in kept}, adjacency) == target.whole
+        return refine({a: self.elements[a] for a in kept}, adjacency)
 
     def _overlay(self, edit: Edit) -> dict[int, tuple[int, ...]]:
         """Return the neighbours of every atom whose bonds change."""
@@ -202,6 +219,7 @@ class Summary:
     protons: tuple[int, ...]
     first: tuple[int, ...]
     second: tuple[int, ...]
+    colours: tuple[int, ...]
     target: Target
 
 
@@ -213,19 +231,20 @@ def skeleton_summary(graph: Molgraph) -> Summary:
         protons = tuple(h - q for h, q in zip(graph.hydrogens, graph.charges, strict=True))
         first = tuple(hash((z, sum([_CODES[elements[n]] for n in neighbours[a]]))) for a, z in enumerate(elements))
         second = tuple(hash((f, sum([first[n] for n in neighbours[a]]))) for a, f in enumerate(first))
+        colours = refine(dict(enumerate(elements)), {a: tuple(ns) for a, ns in enumerate(neighbours)})
         target = Target(
             tally=Tally(sum([_CODES[z] for z in elements]), sum(protons)),
             near=sum(second),
-            whole=refine(dict(enumerate(elements)), {a: tuple(ns) for a, ns in enumerate(neighbours)}),
+            whole=_digest(colours),
             size=len(elements),
         )
-        known = Summary(protons, first, second, target)
+        known = Summary(protons, first, second, tuple(colours.values()), target)
         graph.memo["skeleton"] = known
     return known  # type: ignore[return-value]
 
 
-def refine(elements: dict[int, int], adjacency: dict[int, tuple[int, ...]]) -> int:
-    """Return a hash of a skeleton that does not depend on the numbering."""
+def refine(elements: dict[int, int], adjacency: dict[int, tuple[int, ...]]) -> dict[int, int]:
+    """Return a colour per atom that depends on the skeleton around it and not on the numbering."""
     colours = {a: _CODES[z] for a, z in elements.items()}
     distinct = len(set(colours.values()))
     for turn in range(_ROUNDS):
@@ -234,4 +253,8 @@ def refine(elements: dict[int, int], adjacency: dict[int, tuple[int, ...]]) -> i
         if now == distinct and turn > 5:
             break
         distinct = now
-    return hash((len(elements), sum(colours.values())))
+    return colours
+
+
+def _digest(colours: dict[int, int]) -> int:
+    return hash((len(colours), sum(colours.values())))

@@ -10,11 +10,11 @@ Identity policy. Two entries are the same thing when their `identity_key` is equ
 3. functional groups with several drawings (nitro, N-oxide, sulfoxide, azide, diazo) get one drawing;
 4. atom maps are dropped, stereo marks that mean nothing are cleared, and real ones kept.
 
-So stereo, isotopes, charges and *every* component count: a hydrochloride is not its free base, one enantiomer is not the
-other nor the racemate. Tautomers count as different: chemists draw the one they mean, and no
-cheap canonical tautomer is trustworthy. `flat_key` is the looser one: the organic parts only, neutral, no stereo, no
-isotopes; it brings a salt and its base, both enantiomers and the flat drawing together.
-Source of the steps: the RDKit MolStandardize toolkit; which of them are used is a decision of this project.
+So stereo, isotopes, charges and *every* component count: a hydrochloride is not its free base, one enantiomer
+is not the other nor the racemate. Tautomers count as different: chemists draw the one they mean, and no cheap
+canonical tautomer is trustworthy. `flat_key` is the looser one: the organic parts only, neutral, no stereo,
+no isotopes; it brings a salt and its base, both enantiomers and the flat drawing together. Source of the
+steps: the RDKit MolStandardize toolkit; which of them are used is a decision of this project.
 """
 
 from __future__ import annotations
@@ -118,8 +118,8 @@ def parse_molecule(text: str, *, keep_hydrogens: bool = False) -> Chem.Mol:
             make_visible(stripped),
         )
     params = Chem.SmilesParserParams()
-    params.removeHs = not keep_hydrogens
-    params.sanitize = True
+    params.removeHs = not keep_hydrogens  # type: ignore[assignment]
+    params.sanitize = True  # type: ignore[assignment]
     with rdBase.BlockLogs():
         try:
             mol = Chem.MolFromSmiles(stripped if rest.strip() else smiles, params)
@@ -268,12 +268,12 @@ def _salts_as_ions(mol: Chem.Mol) -> Chem.Mol:
     if not bonds:
         return Chem.Mol(mol)
     work = Chem.RWMol(mol)
-    for metal, other in bonds:
-        work.RemoveBond(metal, other)
-        for index, step in ((metal, 1), (other, -1)):
-            atom = work.GetAtomWithIdx(index)
-            atom.SetFormalCharge(atom.GetFormalCharge() + step)
-            atom.SetNoImplicit(True)
+    for first, second in bonds:
+        work.RemoveBond(first, second)
+        for index, step in ((first, 1), (second, -1)):
+            end = work.GetAtomWithIdx(index)
+            end.SetFormalCharge(end.GetFormalCharge() + step)
+            end.SetNoImplicit(True)
     return work.GetMol()
 
 

@@ -1,7 +1,8 @@
-"""What reacts without an sp3 carbon being displaced: acyl, sulfonyl, silyl, phosphoryl and aryl transfer, carbonyl groups.
+"""What reacts without an sp3 carbon being displaced: transfer of acyl, sulfonyl, silyl or aryl, carbonyl groups.
 
-These readings exist so that the record can say `other` with the right name, rather than leave an amide coupling or a
-mesylation to be mistaken for a displacement. It lists bonds only; it judges nothing and draws nothing.
+These readings exist so that the record can say `other` with the right name, rather than leave an amide
+coupling or a mesylation to be mistaken for a displacement. It lists bonds only; it judges nothing and draws
+nothing.
 """
 
 from __future__ import annotations
@@ -21,6 +22,7 @@ class TransferSite:
         gone: atom that leaves; None for an addition to a multiple bond.
         departs: all that leaves with it; None when a ring holds it.
         gain: as in `skeleton.Cut`.
+        cost: 0 for the usual leaving groups, more for those that seldom leave here.
     """
 
     atom: int
@@ -28,6 +30,7 @@ class TransferSite:
     gone: int | None
     departs: frozenset[int] | None
     gain: int
+    cost: int = 0
 
 
 def find_transfer_sites(graph: Molgraph) -> tuple[TransferSite, ...]:
@@ -45,9 +48,19 @@ def find_transfer_sites(graph: Molgraph) -> tuple[TransferSite, ...]:
     return known  # type: ignore[return-value]
 
 
-def _site(graph: Molgraph, atom: int, gone: int, name: str, gain: int = -1) -> TransferSite:
+def _site(graph: Molgraph, atom: int, gone: int, name: str, gain: int = -1, cost: int = 0) -> TransferSite:
     departs = graph.side_of(gone, atom)
-    return TransferSite(atom, name, gone, None if departs is None else frozenset(departs), gain)
+    return TransferSite(atom, name, gone, None if departs is None else frozenset(departs), gain, cost)
+
+
+def _aryl_cost(graph: Molgraph, gone: int) -> int:
+    """Return how unusual it is that this atom leaves an aromatic carbon: a phenol keeps its oxygen."""
+    element = graph.elements[gone]
+    if element in (9, 17, 35, 53, 5) or graph.charges[gone] > 0:
+        return 0
+    if element in (8, 16) and len(graph.neighbours[gone]) > 1:
+        return 0 if any(graph.elements[n] == 16 for n in graph.neighbours[gone]) or element == 16 else 1
+    return 3
 
 
 def _carbon(graph: Molgraph, atom: int) -> list[TransferSite]:
@@ -57,7 +70,7 @@ def _carbon(graph: Molgraph, atom: int) -> list[TransferSite]:
     if graph.aromatic[atom]:
         for n in bonds:
             if graph.elements[n] in (9, 17, 35, 53, 8, 16, 7, 5) and not graph.aromatic[n]:
-                found.append(_site(graph, atom, n, "substitution at an aromatic carbon"))
+                found.append(_site(graph, atom, n, "substitution at an aromatic carbon", cost=_aryl_cost(graph, n)))
         return found
     oxo = [n for n, code in bonds.items() if code == 2 and graph.elements[n] in (7, 8, 16)]
     if oxo:

@@ -1,0 +1,213 @@
+"""The left side of a scheme laid out for trying: what each piece costs when it leaves, comes off or is let go.
+
+It owns the arithmetic between the chemistry rules (leaving groups, nucleophiles, labile groups) and the
+bookkeeping of `skeleton`: every step is a `Removal` of elements and P from the sum of the fragments, so
+whether a combination can give a product at all is two integer comparisons, done before any graph is looked
+at.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from itertools import combinations
+
+from kb.chem.centre import LeavingSite
+from kb.chem.labile import LabileGroup, find_labile_groups
+from kb.chem.molgraph import Molgraph, molgraph_of
+from kb.chem.nucleophile import NucleophileSite, find_nucleophile_sites
+from kb.chem.promoters import Promoters, find_promoters
+from kb.chem.skeleton import Cut, Edit, Pool, Target
+
+MAX_TRIES = 6000
+"""Most candidate edits that are compared with one product; past it the reading says that it stopped."""
+
+MAX_LABILE = 24
+"""Most labile groups of one fragment that are combined; a peptide with more is read by its first ones."""
+
+
+@dataclass(frozen=True, slots=True)
+class Removal:
+    """What a step takes from the balance: the cuts, and the elements and P that go."""
+
+    cuts: tuple[Cut, ...] = ()
+    elements: int = 0
+    protons: int = 0
+
+
+NOTHING = Removal()
+
+Losses = tuple[tuple[int, LabileGroup], ...]
+"""Labile groups that come off besides, each with its part."""
+
+
+class Workbench:
+    """The fragments of the left side under pool numbering, with a portion of water at hand.
+
+    Water is always there (solvent, work-up, air); its part number is `water`, past the stated fragments, so that no
+    fact ever names it as a component.
+    """
+
+    def __init__(self, graphs: Sequence[Molgraph]) -> None:
+        self.pool = Pool(graphs)
+        self.count = len(graphs)
+        self.promoters: Promoters = find_promoters(graphs)
+        self.water = self.pool.add(molgraph_of("O"))
+        self.tries = 0
+        self._removals: dict[object, Removal] = {}
+        self._loss_tables: dict[tuple[int, ...], dict[tuple[int, int], list[Losses]]] = {}
+
+    @property
+    def graphs(self) -> list[Molgraph]:
+        """Return the fragments, water and second portions included."""
+        return self.pool.graphs
+
+    @property
+    def attackers(self) -> list[int]:
+        """Return the parts that may bring a nucleophile."""
+        return [*range(self.count), self.water]
+
+    @property
+    def gave_up(self) -> bool:
+        """Return whether the limit on tries was reached."""
+        return self.tries > MAX_TRIES
+
+    def is_stated(self, part: int) -> bool:
+        """Return whether the part was written in the scheme."""
+        return part < self.count
+
+    def atom(self, part: int, atom: int) -> int:
+        """Return the pool number of an atom of a part."""
+        return self.pool.starts[part] + atom
+
+    def nucleophiles(self, part: int) -> tuple[NucleophileSite, ...]:
+        """Return the nucleophilic atoms of a part."""
+        return find_nucleophile_sites(self.graphs[part])
+
+    def removal(self, part: int, kept: int, gone: int, departs: frozenset[int] | None, gain: int) -> Removal:
+        """Return the balance of one broken bond.
+
+        Args:
+            part: the fragment.
+            kept: atom that stays [number in the part].
+            gone: atom that goes.
+            departs: all that goes; None when a ring holds it, so that nothing leaves the molecule.
+            gain: what the kept atom's side gains in P when the rest does leave.
+        """
+        key = (part, kept, gone, gain)
+        known = self._removals.get(key)
+        if known is None:
+            start = self.pool.starts[part]
+            moved = frozenset(a + start for a in departs or ())
+            tally = self.pool.tally_of(moved)
+            worth = gain if departs else 0
+            known = Removal(
+                (Cut(kept + start, gone + start, moved, worth),), tally.elements, tally.protons - worth
+            )
+            self._removals[key] = known
+        return known
+
+    def of_site(self, part: int, site: LeavingSite) -> Removal:
+        """Return the balance of a leaving group's departure."""
+        return self.removal(part, site.centre, site.leaving, site.departs, -1)
+
+    def of_nucleophile(self, part: int, site: NucleophileSite) -> Removal:
+        """Return the balance of what a nucleophile drops first."""
+        if site.gone is None:
+            return NOTHING
+        holder = site.atom if site.holder is None else site.holder
+        return self.removal(part, holder, site.gone, site.departs, site.gain)
+
+    def of_group(self, part: int, group: LabileGroup) -> Removal:
+        """Return the balance of a labile group's loss."""
+        key = (part, group)
+        known = self._removals.get(key)
+        if known is None:
+            start = self.pool.starts[part]
+            cuts, gone = [], frozenset[int]()
+            for loss in group.losses:
+                moved = frozenset(a + start for a in loss.departs)
+                cuts.append(Cut(loss.kept + start, loss.gone + start, moved, loss.gain))
+                gone |= moved
+            tally = self.pool.tally_of(gone)
+            known = Removal(tuple(cuts), tally.elements, tally.protons - sum(c.gain for c in cuts))
+            self._removals[key] = known
+        return known
+
+    def excess(self, parts: Sequence[int], target: Target, *removals: Removal) -> tuple[int, int]:
+        """Return the elements and P that must still go for the parts, less the removals, to give the target."""
+        pool = self.pool
+        elements = -target.tally.elements
+        protons = -target.tally.protons
+        for part in parts:
+            elements += pool.tallies[part].elements
+            protons += pool.tallies[part].protons
+        for removal in removals:
+            elements -= removal.elements
+            protons -= removal.protons
+        return elements, protons
+
+    def losses_for(self, parts: Sequence[int], excess: tuple[int, int], *, most: int = 3) -> Iterator[Losses]:
+        """Yield the sets of labile groups over the parts whose loss takes away the excess exactly, smallest first."""
+        if most == 0:
+            if excess == (0, 0):
+                yield ()
+            return
+        key = tuple(sorted(set(parts)))
+        table = self._loss_tables.get(key)
+        if table is None:
+            table = self._loss_table(key)
+            self._loss_tables[key] = table
+        for losses in table.get(excess, ()):
+            if len(losses) <= most:
+                yield losses
+
+    def _loss_table(self, parts: tuple[int, ...]) -> dict[tuple[int, int], list[Losses]]:
+        """Return combinations of labile groups of the parts, keyed by what they take from the balance."""
+        groups = [(p, g) for p in parts for g in find_labile_groups(self.graphs[p])[:MAX_LABILE]]
+        table: dict[tuple[int, int], list[Losses]] = {(0, 0): [()]}
+        largest = 3 if len(groups) <= 8 else (2 if len(groups) <= 30 else 1)
+        for size in range(1, largest + 1):
+            for chosen in combinations(groups, size):
+                if size > 1 and _clash(chosen):
+                    continue
+                removals = [self.of_group(p, g) for p, g in chosen]
+                key = (sum(r.elements for r in removals), sum(r.protons for r in removals))
+                table.setdefault(key, []).append(chosen)
+        return table
+
+    def edit(
+        self,
+        parts: Sequence[int],
+        removals: Sequence[Removal],
+        joins: Sequence[tuple[int, int]],
+        losses: Losses = (),
+    ) -> Edit | None:
+        """Return the edit, or None when one step removes an atom that another one needs."""
+        cuts = [c for r in removals for c in r.cuts]
+        for part, group in losses:
+            cuts.extend(self.of_group(part, group).cuts)
+        gone: set[int] = set()
+        for cut in cuts:
+            gone |= cut.departs
+        if any(c.kept in gone for c in cuts) or any(a in gone or b in gone or a == b for a, b in joins):
+            return None
+        return Edit(tuple(parts), tuple(cuts), tuple(joins))
+
+    def gives(self, edit: Edit | None, target: Target) -> bool:
+        """Return whether an edit gives the target; always False once the limit on tries is reached."""
+        if edit is None:
+            return False
+        self.tries += 1
+        return self.tries <= MAX_TRIES and self.pool.makes(edit, target)
+
+
+def _clash(chosen: Sequence[tuple[int, LabileGroup]]) -> bool:
+    """Return whether two of the groups overlap."""
+    gone: set[tuple[int, int]] = set()
+    for part, group in chosen:
+        mine = {(part, a) for loss in group.losses for a in loss.departs}
+        if gone & mine:
+            return True
+        gone |= mine
+    return any((part, loss.kept) in gone for part, group in chosen for loss in group.losses)

@@ -1,0 +1,253 @@
+"""Where a nucleophile may land, and at what price: displacement, transposition, shift, addition, transfer.
+
+An opening is a set of bond changes that leaves one atom short of a pair of electrons. Filled by a nucleophile
+it is a substitution, an addition or a transfer; left empty it is an elimination. Nothing is judged by rate
+here; `cost` says only how much must be assumed (0 = a group that departs by itself), so that the plainest
+reading wins.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from kb.chem.balance import Removal, Workbench
+from kb.chem.cations import alkene_carbons, is_conjugate_end, is_stabilised_cation, iter_shifts
+from kb.chem.centre import LeavingSite, find_leaving_sites
+from kb.chem.molgraph import Molgraph
+from kb.chem.nucleophile import NucleophileSite
+from kb.chem.promoters import Promoters
+from kb.chem.skeleton import Cut
+from kb.chem.transfer import find_transfer_sites
+from kb.vocabulary import CarbonClass, Fate, LeavingGroup
+
+
+@dataclass(frozen=True, slots=True)
+class Opening:
+    """Bond changes that let a nucleophile in.
+
+    Attributes:
+        part: the fragment.
+        atom: where the nucleophile lands [number in the part].
+        removals: what leaves.
+        joins: bonds that form besides [pool numbers]; a migrating group.
+        fate: the word when a nucleophile lands.
+        centre: (atom, leaving atom or None) that names the centre; None when no carbon is displaced.
+        group: the leaving group, for a note.
+        site: the leaving site; None for additions and transfers.
+        note: words for how.
+        rank: readiness, higher first.
+        cost: assumptions needed.
+        gain: hydride equivalents taken up besides (reductive amination: 2).
+    """
+
+    part: int
+    atom: int
+    removals: tuple[Removal, ...]
+    joins: tuple[tuple[int, int], ...]
+    fate: Fate
+    centre: tuple[int, int | None] | None
+    group: LeavingGroup | None
+    site: LeavingSite | None
+    note: str
+    rank: int
+    cost: int
+    gain: int = 0
+
+
+def find_displacements(bench: Workbench) -> list[Opening]:
+    """Return an opening for every leaving group at sp3 carbon, and for elimination at vinyl carbon."""
+    found = []
+    for part in range(bench.count):
+        graph = bench.graphs[part]
+        for site in find_leaving_sites(graph):
+            if site.carbon_class is CarbonClass.ARYL:
+                continue
+            found.append(
+                Opening(
+                    part=part,
+                    atom=site.centre,
+                    removals=(bench.of_site(part, site),),
+                    joins=(),
+                    fate=Fate.SUBSTITUTION if site.is_sp3 else Fate.OTHER,
+                    centre=(site.centre, site.leaving),
+                    group=site.group,
+                    site=site,
+                    note=f"displacement of {site.group}" if site.is_sp3 else "substitution at a vinylic carbon",
+                    rank=site.rank,
+                    cost=departure_cost(graph, site, bench.promoters),
+                )
+            )
+    return found
+
+
+def departure_cost(graph: Molgraph, site: LeavingSite, promoters: Promoters) -> int:
+    """Return how much must be assumed for a group to depart: 0 by itself or made to, 1 needs a push, 2 rarely does."""
+    group = site.group
+    if site.leaves_unaided:
+        return 0
+    if group is LeavingGroup.HYDROXYL:
+        return 0 if promoters.makes_hydroxyl_leave else 1
+    if group is LeavingGroup.CARBOXYLATE:
+        eased = site.carbon_class in (CarbonClass.TERTIARY, CarbonClass.METHYL) or is_stabilised_cation(
+            graph, site.centre, site.leaving
+        )
+        return 0 if eased and (promoters.is_acidic or promoters.metal_catalyst or site.departs is None) else 1
+    if group in (LeavingGroup.FLUORIDE, LeavingGroup.NITRO, LeavingGroup.ALKOXIDE):
+        return 1
+    return 2
+
+
+def find_transpositions(bench: Workbench, displacements: list[Opening]) -> list[Opening]:
+    """Return openings at the far end of an allylic or propargylic system."""
+    found = []
+    for opening in displacements:
+        if opening.fate is not Fate.SUBSTITUTION or opening.cost > 1 or opening.site is None:
+            continue
+        graph = bench.graphs[opening.part]
+        centre, leaving = opening.site.centre, opening.site.leaving
+        for near, code in graph.neighbours[centre].items():
+            if code != 1 or near == leaving or graph.elements[near] != 6 or graph.aromatic[near]:
+                continue
+            for far, order in graph.neighbours[near].items():
+                if order in (2, 3) and graph.elements[far] == 6 and not graph.aromatic[far]:
+                    found.append(
+                        Opening(
+                            part=opening.part,
+                            atom=far,
+                            removals=opening.removals,
+                            joins=(),
+                            fate=Fate.TRANSPOSED,
+                            centre=opening.centre,
+                            group=opening.group,
+                            site=opening.site,
+                            note=f"displacement of {opening.group} with allylic transposition",
+                            rank=opening.rank - 10,
+                            cost=opening.cost,
+                        )
+                    )
+    return found
+
+
+def find_shifts(bench: Workbench, displacements: list[Opening]) -> list[Opening]:
+    """Return openings left by a 1,2-shift of hydrogen or carbon towards a leaving group's carbon."""
+    found = []
+    for opening in displacements:
+        if opening.fate is not Fate.SUBSTITUTION or opening.cost > 1 or opening.site is None:
+            continue
+        graph, site = bench.graphs[opening.part], opening.site
+        if site.carbon_class is CarbonClass.BRIDGEHEAD or site.departs is None:
+            continue
+        for origin, mover in iter_shifts(graph, site.centre, site.leaving):
+            removals = opening.removals
+            joins: tuple[tuple[int, int], ...] = ()
+            if mover is not None:
+                kept, gone = bench.atom(opening.part, origin), bench.atom(opening.part, mover)
+                removals = (*removals, Removal((Cut(kept, gone, frozenset(), 0),)))
+                joins = ((bench.atom(opening.part, site.centre), gone),)
+            found.append(
+                Opening(
+                    part=opening.part,
+                    atom=origin,
+                    removals=removals,
+                    joins=joins,
+                    fate=Fate.REARRANGED,
+                    centre=opening.centre,
+                    group=opening.group,
+                    site=site,
+                    note=f"loss of {opening.group} with a 1,2-{'hydride' if mover is None else 'carbon'} shift",
+                    rank=opening.rank - 20,
+                    cost=opening.cost,
+                )
+            )
+    return found
+
+
+def find_additions(bench: Workbench) -> list[Opening]:
+    """Return openings at both ends of every carbon-carbon multiple bond that is not aromatic."""
+    found = []
+    for part in range(bench.count):
+        graph = bench.graphs[part]
+        for carbon in alkene_carbons(graph):
+            found.append(
+                Opening(
+                    part=part,
+                    atom=carbon,
+                    removals=(),
+                    joins=(),
+                    fate=Fate.ADDITION,
+                    centre=(carbon, None),
+                    group=None,
+                    site=None,
+                    note="addition to a multiple bond",
+                    rank=10 + (20 if is_conjugate_end(graph, carbon) else 0),
+                    cost=0,
+                )
+            )
+    return found
+
+
+def find_transfers(bench: Workbench) -> list[Opening]:
+    """Return openings at acyl, sulfonyl, silyl, phosphoryl, aryl and carbonyl atoms: fate `other`."""
+    found = []
+    for part in range(bench.count):
+        graph = bench.graphs[part]
+        for site in find_transfer_sites(graph):
+            removals: tuple[Removal, ...] = ()
+            if site.gone is not None:
+                removals = (bench.removal(part, site.atom, site.gone, site.departs, site.gain),)
+            for gain in (0, 2) if site.gain == -2 else (0,):
+                found.append(
+                    Opening(
+                        part=part,
+                        atom=site.atom,
+                        removals=removals,
+                        joins=(),
+                        fate=Fate.OTHER,
+                        centre=None,
+                        group=None,
+                        site=None,
+                        note=site.name if not gain else "reductive amination",
+                        rank=40,
+                        cost=site.cost,
+                        gain=gain,
+                    )
+                )
+    return found
+
+
+def landing_cost(graph: Molgraph, opening: Opening, word: str, promoters: Promoters) -> int:
+    """Return what must be assumed for this nucleophile at this opening, beyond the departure itself.
+
+    An ester from an acid and an alcohol, an alcohol from an ester and water, are acyl transfers unless something says
+    otherwise: taking them for displacements at the alkyl carbon costs 2.
+
+    Args:
+        graph: fragment of the opening.
+        opening: where the nucleophile lands.
+        word: class word of the nucleophile.
+        promoters: what else is in the flask.
+    """
+    if opening.fate is Fate.OTHER or opening.group is None:
+        return 0
+    oxygen = ("carboxylate", "alcohol", "alkoxide", "water", "hydroxide", "phosphate_base", "sulfonate")
+    if opening.group is LeavingGroup.HYDROXYL and word in oxygen:
+        if word in ("alcohol", "alkoxide") and promoters.makes_hydroxyl_leave:
+            return 1
+        return 0 if promoters.mitsunobu and word == "carboxylate" else 2
+    if opening.group in (LeavingGroup.CARBOXYLATE, LeavingGroup.ALKOXIDE) and word in oxygen:
+        return 2
+    return 0
+
+
+def fills(nucleophile: NucleophileSite, opening: Opening, graph: Molgraph) -> bool:
+    """Return whether an attack from within the same molecule would change anything.
+
+    Not by an atom that leaves, nor by one already bonded to the place.
+    """
+    atom = nucleophile.atom
+    if atom == opening.atom or atom in graph.neighbours[opening.atom]:
+        return False
+    site = opening.site
+    if site is None:
+        return True
+    return atom not in (site.centre, site.leaving) and not (site.departs and atom in site.departs)
