@@ -120,7 +120,7 @@ def format_temperature(temperature: Temperature) -> str:
     known = temperature.known_c
     if not known or temperature.is_reflux:
         return temperature.text
-    numbers = [format_number(v) for v in known]
+    numbers = [format_number(round(v, 6)) for v in known]
     if len(known) > 1 and len(set(known)) == 1 and not temperature.between_c:
         numbers = numbers[:1]
     figure = " to ".join(numbers) + " °C"
