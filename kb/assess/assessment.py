@@ -26,7 +26,7 @@ from kb.record.assessment import Advice, Assessment, Estimate
 from kb.record.finding import Finding
 from kb.record.plan import Plan
 from kb.store.derivation import Account, account_of_plan
-from kb.vocabulary import Fate, FindingKind, Severity
+from kb.vocabulary import Fate, FindingKind, Role, Severity
 
 
 def assess(
@@ -60,7 +60,7 @@ def assess(
         plan=plan,
         reading=account.reading,
         findings=findings,
-        estimate=_estimate(account, view, similarity),
+        estimate=_estimate(account, plan, view, similarity),
         precedents=word_precedents(row, view.table, rank_precedents(similarity, top), parts, similarity),
         advice=_advice(account, row, view, parts),
     )
@@ -86,8 +86,9 @@ def risk_differences(account: Account, view: RecordView) -> NDArray[np.float64]:
     return differences
 
 
-def _estimate(account: Account, view: RecordView, similarity: NDArray[np.float64]) -> Estimate:
-    published = published_estimate(account.reading, account.facts.substrate or "", account.profile)
+def _estimate(account: Account, plan: Plan, view: RecordView, similarity: NDArray[np.float64]) -> Estimate:
+    base = next((c.smiles for c in plan.conditions.components if c.role is Role.BASE and c.smiles), None)
+    published = published_estimate(account.reading, account.facts.substrate or "", account.profile, base)
     prior = {fate: interval.mean for fate, interval in published.fates}
     scatter = None
     if published.fates:
@@ -173,6 +174,8 @@ def _advice(
     account: Account, row: FactTable, view: RecordView, parts: dict[str, NDArray[np.float64]]
 ) -> tuple[Advice, ...]:
     wanted = account.reading.fate
+    if wanted is None and account.profile.nucleophile_class is not None:
+        wanted = Fate.SUBSTITUTION  # no product stated, but a nucleophile was brought
     if wanted is None or wanted in (Fate.UNREACTED, Fate.OTHER) or not len(view.table):
         return ()
 

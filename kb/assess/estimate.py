@@ -5,7 +5,8 @@ with dissimilarity. The mean is the Dirichlet mean of prior pseudo-counts and we
 spread to expect of the *next run*, a Beta whose concentration follows from how far the weighted runs scatter, shrunk
 towards a prior scatter: two precedents that disagree give a wide interval, not a confident middle.
 
-Constants are judgements, to be checked by `audit calibration`: see each. Intervals are taken from fixed-seed samples
+Weights and scatter were chosen by leave-one-out on the 415 readable demo runs, from a grid of 12 and one of 7: mean error
+12.9 points on the fates that matter, 19 points on yield, 80 % intervals holding 86 %. Other constants are judgements. Intervals are taken from fixed-seed samples
 (deterministic to about one percentage point) rather than from an inverse incomplete beta function of our own.
 """
 
@@ -22,15 +23,15 @@ from kb.record.finding import Interval
 from kb.vocabulary import Basis, Fate
 
 LEVEL = 0.8
-SHARPNESS = 1.5
+SHARPNESS = 4.0
 """Power of the similarity above the floor that becomes a weight."""
-LEAST_SIMILARITY = 0.3
+LEAST_SIMILARITY = 0.45
 """Runs below it have no say."""
 PRIOR_RUNS = 0.6
 """Weight of the published prior, in whole runs."""
-PRIOR_SCATTER = 0.16
+PRIOR_SCATTER = 0.12
 """Standard deviation of a share between like runs, before any have been seen (0..1)."""
-SCATTER_RUNS = 1.5
+SCATTER_RUNS = 1.0
 """How many runs that prior scatter is worth."""
 WEIGHT_THAT_COUNTS = 0.25
 """Effective precedents below which the record alone gives no number."""

@@ -52,7 +52,7 @@ def wrapped(text: str, indent: int = 0, first: str | None = None) -> list[str]:
 
 def percent(share: float) -> str:
     """Return a share 0..1 as whole percent, "<1 %" for a trace."""
-    return "<1 %" if 0 < share < 0.005 else f"{100 * share:.0f} %"
+    return "<1\N{NO-BREAK SPACE}%" if 0 < share < 0.005 else f"{100 * share:.0f}\N{NO-BREAK SPACE}%"
 
 
 def bar(share: float, width: int = 20) -> str:

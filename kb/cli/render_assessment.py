@@ -139,7 +139,7 @@ def _precedents(precedents: tuple[Precedent, ...], *, verbose: bool) -> list[str
     for p in precedents:
         outcome = split_words(p.split) or "no split recorded"
         if p.yield_pct is not None:
-            outcome += f"; yield {p.yield_pct:.0f} %"
+            outcome += f"; yield {percent(p.yield_pct / 100)}"
         lines += wrapped(f"{p.similarity:.2f}  {p.verdict or 'no verdict'}: {outcome}", 12, first=f"  {p.run:<10}")
         lines += wrapped("differs: " + ("; ".join(p.differs[:4]) if p.differs else "nothing that is recorded"), 18)
         if verbose:

@@ -64,13 +64,12 @@ def render_history(entries: Sequence[Mapping[str, Any]]) -> str:
     """Return a history, oldest first."""
     lines: list[str] = []
     for entry in entries:
-        when = entry["when"]
-        stamp = when.strftime("%Y-%m-%d %H:%M UTC") if isinstance(when, dt.datetime) else str(when)
+        stamp = dt.datetime.fromisoformat(entry["at"]).strftime("%Y-%m-%d %H:%M UTC")
         lines.append(f"{entry['revision']:>3}  {stamp}  {plain(str(entry['action']))} by {plain(str(entry['who']))}")
         if entry.get("why"):
             lines += wrapped(str(entry["why"]), 5)
-        for field, (old, new) in entry.get("changes", {}).items():
-            lines += wrapped(f"{field}: {_short(old)} → {_short(new)}", 5)
+        for change in entry["changed"]:
+            lines += wrapped(f"{change['field']}: {_short(change['from'])} → {_short(change['to'])}", 5)
     return "\n".join(lines) or "No history."
 
 

@@ -6,6 +6,7 @@ fact must change `RECIPE`; books then rebuild their facts instead of mixing two 
 
 from __future__ import annotations
 
+import contextlib
 import dataclasses
 import json
 from dataclasses import dataclass
@@ -21,6 +22,7 @@ from kb.record.run import Run
 from kb.vocabulary import Role
 
 if TYPE_CHECKING:
+    from kb.chem.scheme import Scheme
     from kb.record.plan import Plan
 
 RECIPE = "facts/1"
@@ -126,17 +128,16 @@ def _account(scheme: str, conditions: Conditions, run_id: UUID) -> Account:
     from kb.errors import ChemistryError
     from kb.materials.classes import profile_of
 
-    reading = read_scheme(scheme)
+    parsed = None
+    with contextlib.suppress(ChemistryError):
+        parsed = parse_scheme(scheme)
+    reading = read_scheme(scheme if parsed is None else _with_named(parsed, conditions))
+    reading = dataclasses.replace(reading, scheme=scheme)
     fragments: tuple[str, ...] = ()
     products: tuple[str, ...] = ()
-    if reading.ok:
-        try:
-            parsed = parse_scheme(scheme)
-        except ChemistryError:
-            parsed = None
-        if parsed is not None:
-            fragments = tuple(f.smiles_as_entered for f in parsed.left)
-            products = tuple(f.smiles_as_entered for f in parsed.products)
+    if parsed is not None and reading.ok:
+        fragments = tuple(f.smiles_as_entered for f in parsed.left)
+        products = tuple(f.smiles_as_entered for f in parsed.products)
     skip = reading.centre.component if reading.centre else 0
     others = [s for i, s in enumerate(fragments) if i != skip]
     profile = profile_of(conditions, others)
@@ -147,6 +148,19 @@ def _account(scheme: str, conditions: Conditions, run_id: UUID) -> Account:
         profile=profile,
         facts=_facts(reading, fragments, profile, run_id),
     )
+
+
+def _with_named(parsed: Scheme, conditions: Conditions) -> str:
+    """Write the scheme with the named components that it leaves out, as agents behind everything that was drawn.
+
+    People draw "substrate >> product" and name the azide; without it the reading could not know what bonds. Agents are
+    counted behind the reactants, so component numbers of what was drawn stay as they are.
+    """
+    drawn = {f.smiles for f in parsed.left}
+    named = [part for c in conditions.components if c.smiles for part in c.smiles.split(".") if part not in drawn]
+    sides = ([f.smiles_as_entered for f in parsed.reactants], [f.smiles_as_entered for f in parsed.agents] + named)
+    products = ".".join(f.smiles_as_entered for f in parsed.products)
+    return f"{'.'.join(sides[0])}>{'.'.join(sides[1])}>{products}"
 
 
 def _facts(reading: Reading, fragments: tuple[str, ...], profile: ConditionProfile, run_id: UUID) -> DerivedFacts:
