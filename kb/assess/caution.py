@@ -12,6 +12,7 @@ from collections.abc import Sequence
 from kb.assess.caution_checks import Worked, work_out
 from kb.assess.caution_mixture import Ingredient, Mixture, build_mixture
 from kb.assess.caution_table import CautionRule, load_cautions
+from kb.assess.predicate_words import NO_SOLVENT
 from kb.chem.facts import Reading
 from kb.materials.profile import ConditionProfile
 from kb.record.conditions import Conditions
@@ -101,6 +102,7 @@ def _conditions_hold(rule: CautionRule, mixture: Mixture) -> tuple[str | None, t
         if truth:
             return "; ".join(rule.when.reasons(profile)), ()
         gaps = rule.when.deciding_gaps(profile) if truth is None else ()
+        gaps = tuple(gap for gap in gaps if gap != NO_SOLVENT)
     words = (mixture.conditions.workup or "").lower()
     in_workup = next((w for w in rule.workup if w in words), None)
     if in_workup and (rule.workup_when is None or rule.workup_when.evaluate(profile)):

@@ -17,6 +17,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from kb.assess.liability_rule import Rule
+from kb.assess.predicate_words import NO_SOLVENT
 from kb.assess.rulefile import load_rules
 from kb.chem.facts import Reading
 from kb.errors import RecordNotFound
@@ -97,11 +98,10 @@ def find_liabilities(
         Findings; atom indices refer to the fragment as entered.
     """
     open_rules = [
-        (rule, truth)
+        (rule, gaps)
         for rule in (load_rules() if rules is None else rules)
-        if (truth := rule.applies(profile)) is not False
+        if (gaps := _gaps(rule, profile)) is not None
     ]
-    open_rules = [(r, t) for r, t in open_rules if t or r.when.deciding_gaps(profile)]
     if not open_rules:
         return ()
     from kb.assess.liability_fragments import read_fragments
@@ -111,11 +111,10 @@ def find_liabilities(
     target = None if ignore_intention else read_product(product or stated_product(reading))
     intended = reading.fate if not ignore_intention else None
     hits: list[_Hit] = []
-    for rule, truth in open_rules:
-        gaps = () if truth else rule.when.deciding_gaps(profile)
+    for rule, gaps in open_rules:
         if rule.gives is not None and rule.gives is intended and rule.side in ("centre", "nucleophile"):
             continue
-        severity = rule.severity if truth else min(rule.severity, Severity.CAUTION, key=lambda s: s.rank)
+        severity = min(rule.severity, Severity.CAUTION, key=lambda s: s.rank) if gaps else rule.severity
         if rule.side == "mixture":
             hits.append(_Hit(rule=rule, places=(), gaps=gaps, severity=severity))
             continue
@@ -133,6 +132,20 @@ def find_liabilities(
         if finding is not None:
             made.append(finding)
     return tuple(sorted(made, key=lambda f: (-f.severity.rank, f.is_uncertain, f.component or 0)))
+
+
+def _gaps(rule: Rule, profile: ConditionProfile) -> tuple[str, ...] | None:
+    """Return what single missing thing would decide a rule, () where it applies, None where it does not matter.
+
+    A solvent that is not given makes no rule about a mixture matter: there would be one for every solvent.
+    """
+    truth = rule.applies(profile)
+    if truth is not None:
+        return () if truth else None
+    gaps = rule.when.deciding_gaps(profile)
+    if rule.side == "mixture":
+        gaps = tuple(gap for gap in gaps if gap != NO_SOLVENT)
+    return gaps or None
 
 
 def _places(rule: Rule, flask: Sequence[Fragment], reading: Reading, profile: ConditionProfile) -> tuple[Place, ...]:

@@ -79,6 +79,10 @@ _FROM_SOLVENT = ("permittivity", "et30_kcal_mol", "winstein_y", "bp_c", "mp_c", 
 _ALSO_FROM_SOLVENT = ("ionising", "water", "alcohol", "nucleophile", "acidity")
 
 
+NO_SOLVENT = "solvent not given or not recognised"
+"""What is missing where a rule asks for the solvent."""
+
+
 def field_of(name: str) -> str | None:
     """Return the profile field behind a fact, None where there is no such fact."""
     if name in SETS:
@@ -116,13 +120,13 @@ def missing_words(name: str, profile: ConditionProfile) -> str:
     if name in ("time_h", "prolonged"):
         return "time not given"
     if name in _FROM_SOLVENT:
-        return "solvent not given or not recognised"
+        return NO_SOLVENT
     if name == "peroxide":
         return "it is not recorded whether peroxide is kept out"
     if profile.has_unknown_reagent:
         return "a reagent could not be classified"
     if name in _ALSO_FROM_SOLVENT and profile.has_unknown_solvent:
-        return "solvent not given or not recognised"
+        return NO_SOLVENT
     return "the reagents are not recorded"
 
 
