@@ -138,7 +138,7 @@ def _wrong_flags(connection: sa.Connection) -> str:
         sa.text("SELECT DISTINCT run_id FROM history WHERE received_at IS NOT NULL OR parents LIKE '%,%'")
     ).scalars()
     ids = {row.run_id for row in flagged} | {UUID(str(value)) for value in merged}
-    codes = dict(connection.execute(sa.select(RunRow.run_id, RunRow.code)).tuples().all()) if ids else {}
+    codes = {row.run_id: row.code for row in connection.execute(sa.select(RunRow.run_id, RunRow.code))} if ids else {}
     disputed = {i for i, entries in history.entries_of(connection, ids).items() if lineage.disputes(entries)}
     wrong = disputed ^ {row.run_id for row in flagged}
     return codes[min(wrong)] if wrong else ""
