@@ -136,7 +136,7 @@ ROWS = [
     ("HZ28", "reagent=cyanide; acidity=weak", (), {}, "hazard-cyanide-acid", SERIOUS),
     ("HZ29", "reagent=hydrazine", (), {}, "hazard-hydrazine", CAUTION),
     ("HZ29", "reagent=hydrazine+permanganate", (), {}, "hazard-hydrazine-oxidant", SERIOUS),
-    ("HZ30", "", ("CI",), {}, "hazard-methyl-iodide", CAUTION),
+    ("HZ30", "", ("CI",), {}, "hazard-volatile-alkylator", CAUTION),
     ("HZ31", "", ("COS(=O)(=O)OC",), {}, "hazard-dialkyl-sulfate", SERIOUS),
     ("HZ32", "", ("[O-]Cl(=O)(=O)=O", "CC[N+](CC)(CC)CC"), {}, "hazard-perchlorate-organic-cation", SERIOUS),
     ("HZ32", "", ("[O-]Cl(=O)(=O)=O", "[Li+]"), {}, "hazard-perchlorate", CAUTION),
@@ -251,7 +251,7 @@ def test_no_gas_where_nothing_is_lost() -> None:
         ("solvent=sulfoxide; temperature_c=60; reagent=azide", (), "hazard-dmso-reactive"),
         ("solvent=amide; reagent=carbonate_base; base_pkah=10.3", (), "hazard-dmf-reactive"),
         ("fluoride=yes; acidity=none", (), "hazard-fluoride-acid"),
-        ("", ("CCCCCCI",), "hazard-methyl-iodide"),
+        ("", ("CCCCCCI",), "hazard-volatile-alkylator"),
         ("", ("OCCOCCCl",), "hazard-mustard"),
         ("", ("CC(=O)N(C)CCCl",), "hazard-mustard"),
         ("base_pkah=15.7", ("O=[N+]([O-])c1ccccc1",), "hazard-nitroalkane-base"),
@@ -279,7 +279,7 @@ def test_one_group_is_told_once_the_most_severe() -> None:
 
 def test_a_component_known_by_structure_alone_counts() -> None:
     iodide = Component(role=Role.REAGENT, name="MeI", smiles="CI")
-    assert "hazard-methyl-iodide" in by_id(cautions("", components=(iodide,)))
+    assert "hazard-volatile-alkylator" in by_id(cautions("", components=(iodide,)))
 
 
 def test_every_caution_has_consequence_source_and_defers_to_people() -> None:
