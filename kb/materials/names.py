@@ -197,7 +197,7 @@ def _brings_water(entry: Material, label: Label, solvent: Solvent | None) -> boo
     """Return True where water is said, or customary: "2 M NaOH", "37% HCl", "conc. HCl" (not conc. H2SO4)."""
     if label.is_aqueous or (solvent is not None and "water" in solvent.classes):
         return True
-    if solvent is not None or isinstance(entry, Solvent) or entry.name == "sulfuric acid" and label.is_concentrated:
+    if solvent is not None or isinstance(entry, Solvent) or (entry.name == "sulfuric acid" and label.is_concentrated):
         return False
     has_strength = label.percent is not None or label.conc_molar is not None or label.normality is not None
     return (has_strength or label.is_concentrated) and bool(entry.classes & _AQUEOUS_WITH_STRENGTH)
