@@ -71,9 +71,7 @@ def derived_columns(connection: sa.Connection, recipe: str) -> dict[str, np.ndar
 
     stale = len(stale_keys(connection, recipe))
     if stale:
-        raise IndexStale(
-            f"{stale} runs were read by another recipe.", "Rebuild them: `sidepath migrate`.", recipe
-        )
+        raise IndexStale(f"{stale} runs were read by another recipe.", "Rebuild them: `sidepath migrate`.", recipe)
     of_run = (RunRow.run_key, RunRow.run_id, RunRow.code, RunRow.run_date, RunRow.verdict, RunRow.isolated_yield_pct, RunRow.assay_yield_pct)  # fmt: skip  # noqa: E501
     of_facts = [FACTS.c[name] for name in (*FLOATS, *WORDS, "centre_bits", "is_stereocentre", "protic")]
     statement = (
@@ -85,9 +83,7 @@ def derived_columns(connection: sa.Connection, recipe: str) -> dict[str, np.ndar
     result = connection.execute(statement)
     names = list(result.keys())
     fetched: list[Any] = [tuple(row) for row in result]
-    columns = (
-        dict(zip(names, zip(*fetched, strict=True), strict=True)) if fetched else dict.fromkeys(names, ())
-    )
+    columns = dict(zip(names, zip(*fetched, strict=True), strict=True)) if fetched else dict.fromkeys(names, ())
     found: dict[str, np.ndarray] = {"run_key": np.array(columns["run_key"], dtype=np.int64)}
     for name in ("run_id", "code", "verdict", *WORDS):
         found[name] = np.empty(len(fetched), dtype=object)
@@ -115,9 +111,7 @@ def _shares(connection: sa.Connection, run_keys: np.ndarray) -> np.ndarray:
         .where(ProductSeenRow.share.is_not(None))
         .group_by(ProductSeenRow.run_key, ProductSeenRow.fate)
     )
-    measured = [
-        (key, place[fate], share) for key, fate, share in connection.execute(statement) if fate in place
-    ]
+    measured = [(key, place[fate], share) for key, fate, share in connection.execute(statement) if fate in place]
     if measured:
         keys, columns, values = (np.array(part) for part in zip(*measured, strict=True))
         rows = np.searchsorted(run_keys, keys)
@@ -151,8 +145,7 @@ def stale_structures(connection: sa.Connection, recipe: str) -> list[int]:
 def rederive(connection: sa.Connection, run_keys: list[int], deriving: Deriving) -> None:
     """Make facts and places of some runs anew, inside the caller's write transaction."""
     prepared = [
-        (key, deriving.prepare(run))
-        for key, run in zip(run_keys, runs.load(connection, run_keys), strict=True)
+        (key, deriving.prepare(run)) for key, run in zip(run_keys, runs.load(connection, run_keys), strict=True)
     ]
     recording.forget_derived(connection, run_keys)
     recording.write_derived(connection, prepared, Encodings(deriving=deriving))
@@ -162,9 +155,7 @@ def reencode(connection: sa.Connection, structure_ids: list[int], deriving: Deri
     """Encode some structures anew, inside the caller's write transaction."""
     recipe = recording.recipe_id(connection, deriving.recipe)
     smiles = connection.execute(
-        sa.select(StructureRow.structure_id, StructureRow.smiles).where(
-            StructureRow.structure_id.in_(structure_ids)
-        )
+        sa.select(StructureRow.structure_id, StructureRow.smiles).where(StructureRow.structure_id.in_(structure_ids))
     ).all()
     encodings = Encodings(deriving=deriving)
     values = [recording.structure_values(row.smiles, row.structure_id, recipe, encodings) for row in smiles]
@@ -178,10 +169,7 @@ def iter_structures(connection: sa.Connection, after: int, batch: int) -> Iterat
     last = after
     while True:
         rows = connection.execute(
-            sa.select(STRUCTURE)
-            .where(STRUCTURE.c.structure_id > last)
-            .order_by(STRUCTURE.c.structure_id)
-            .limit(batch)
+            sa.select(STRUCTURE).where(STRUCTURE.c.structure_id > last).order_by(STRUCTURE.c.structure_id).limit(batch)
         ).all()
         if rows:
             yield [
@@ -210,9 +198,7 @@ def places(connection: sa.Connection, run_keys: list[int] | None) -> dict[str, n
 
     statement = sa.select(PLACE).order_by(PLACE.c.run_key, PLACE.c.role, PLACE.c.position)
     if run_keys is None:
-        statement = statement.join(RunRow, RunRow.run_key == PLACE.c.run_key).where(
-            RunRow.withdrawn_why.is_(None)
-        )
+        statement = statement.join(RunRow, RunRow.run_key == PLACE.c.run_key).where(RunRow.withdrawn_why.is_(None))
     else:
         statement = statement.where(PLACE.c.run_key.in_(run_keys))
     rows = connection.execute(statement).all()
@@ -250,4 +236,15 @@ def rebuild(connection_of: Any, deriving: Deriving, progress: Progress, batch: i
                 reencode(connection, ids, deriving)
         if not ids:
             break
+    with connection_of() as connection:
+        forget_orphans(connection)
     return done
+
+
+def forget_orphans(connection: sa.Connection) -> None:
+    """Take out structures that stand in no run; the last one stays, so that no id is ever given twice."""
+    used = sa.select(RunStructureRow.structure_id)
+    last = sa.select(sa.func.max(StructureRow.structure_id)).scalar_subquery()
+    connection.execute(
+        sa.delete(STRUCTURE).where(STRUCTURE.c.structure_id.not_in(used), STRUCTURE.c.structure_id < last)
+    )

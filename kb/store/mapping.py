@@ -173,7 +173,7 @@ def run_from_rows(row: sa.RowMapping, children: Sequence[Sequence[sa.RowMapping]
         )
     except (InvalidRecord, ValueError, TypeError) as error:
         raise StoreDamaged(
-            f"Run {row['code']!s:.40} was damaged in the book: {error!s:.200}",
+            f"Run {row['code']!s:.40} was damaged in the book ({str(error).rstrip('.')[:200]}).",
             "Run `sidepath verify`; `sidepath history` still shows what was recorded.",
             str(row["run_id"]),
         ) from error
