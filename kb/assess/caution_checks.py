@@ -227,7 +227,7 @@ def _low_boiling(mixture: Mixture) -> Iterator[Worked]:
         rule_id="hazard-low-boiling-solvent",
         severity=Severity.NOTE,
         title=f"A solvent that boils at {bp_c:g} °C",
-        why="It is lost on warming, and its vapour gathers low; the vapour of an ether or hydrocarbon lights from afar.",
+        why="It is lost on warming and its vapour gathers low; that of an ether or hydrocarbon lights from afar.",
         do=("cool the condenser well", "check the level on long runs", "no flame or hot plate near one that burns"),
         source="Prudent Practices in the Laboratory, National Research Council (memory)",
     )

@@ -104,10 +104,12 @@ def find_liabilities(
     ]
     if not open_rules:
         return ()
-    from kb.assess.liability_fragments import read_fragments
+    from kb.assess.liability_fragments import read_fragments, read_named
     from kb.assess.liability_intent import read_product, stated_product
 
     flask = read_fragments(fragments, reading)
+    if reading.nucleophile is None:
+        flask = (*flask, *read_named(profile))
     target = None if ignore_intention else read_product(product or stated_product(reading))
     intended = reading.fate if not ignore_intention else None
     hits: list[_Hit] = []

@@ -26,13 +26,13 @@ class Fragment:
     """One left-side fragment.
 
     Attributes:
-        component: its position as entered.
+        component: its position as entered; None = named, not drawn.
         mol: written hydrogens folded in.
         is_reactant: it holds a centre or the nucleophile, or holds carbon and is no catalogued material.
         may_attack: it could be the nucleophile: holds carbon or nitrogen and is no catalogued solvent.
     """
 
-    component: int
+    component: int | None
     mol: Chem.Mol
     is_reactant: bool
     may_attack: bool
@@ -62,6 +62,14 @@ def read_fragments(fragments: Sequence[str], reading: Reading) -> tuple[Fragment
     )
 
 
+def read_named(profile: ConditionProfile) -> tuple[Fragment, ...]:
+    """Return the nucleophile where it was named and not drawn; empty where none is known or it has no structure."""
+    name = profile.nucleophile_name
+    smiles = next((r.smiles for r in load_catalogue().reagents if name and r.name == name), None)
+    mol = _read(smiles) if smiles else None
+    return () if mol is None else (Fragment(component=None, mol=mol, is_reactant=False, may_attack=True),)
+
+
 def find_partners(
     rule: Rule,
     component: int | None,
@@ -83,7 +91,7 @@ def find_partners(
 def as_entered(flask: Sequence[Fragment], component: int | None, atoms: Sequence[int]) -> tuple[int, ...]:
     """Return atom indices in the fragment as entered (written hydrogens count there)."""
     mol = next((f.mol for f in flask if f.component == component), None)
-    if mol is None:
+    if mol is None or component is None:
         return ()
     return tuple(mol.GetAtomWithIdx(a).GetIntProp(_ENTERED) for a in atoms)
 

@@ -25,7 +25,7 @@ ENVIRONMENT_BONDS = 4
 class Place:
     """An instance of a motif in one fragment."""
 
-    component: int
+    component: int | None
     mol: Chem.Mol
     match: Match
 

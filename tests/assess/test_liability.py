@@ -220,6 +220,16 @@ def test_a_second_reactant_must_be_there_where_the_rule_wants_one() -> None:
     assert finding.side_product == "CCCCN(CCCC)Cc1ccccc1"
 
 
+def test_a_nucleophile_that_is_named_but_not_drawn_counts() -> None:
+    ammonia = a_profile("reagent=ammonia; nucleophile=good; base_pkah=9.2; nucleophile_name=ammonia")
+    reading = a_reading("CCCCBr>>CCCCN", fate=Fate.SUBSTITUTION, centres=(a_centre(3, 4),))
+    (finding,) = found("CCCCBr>>CCCCN", ammonia, reading)
+    assert finding.rule_id == "primary-amine-overalkylation"
+    assert finding.component is None
+    assert finding.atoms == ()
+    assert finding.side_product == "CCCCNCCCC"
+
+
 def test_elimination_draws_no_alkene_at_a_bridgehead() -> None:
     base = a_profile("reagent=alkoxide; base_pkah=15.9; base_bulk=unhindered")
     assert found("BrC1CC2CCC1C2", base)[0].side_products == ("C1=CC2CCC1C2",)
