@@ -34,7 +34,7 @@ from typing import Any
 import sqlalchemy as sa
 from sqlalchemy.pool import ConnectionPoolEntry
 
-from kb.errors import StoreBusy, StoreDamaged, StoreError, StoreMissing, StoreRefused
+from kb.errors import SidepathError, StoreBusy, StoreDamaged, StoreError, StoreMissing, StoreRefused
 
 log = logging.getLogger(__name__)
 
@@ -48,6 +48,9 @@ NETWORK_FILE_SYSTEMS = frozenset(
     }
 )
 """Types, as the Linux mount table writes them, of file systems that several machines may mount."""
+
+LOCK_WAIT_MS = 5000
+"""How long SQLite itself waits for short locks: recovering a log after a crash, folding it in [ms]."""
 
 Waiting = Callable[[float], None]
 """Told now and then, while a writer waits, for how long it has waited [s]."""
@@ -99,7 +102,14 @@ def make_engine(address: Address, *, read_only: bool, wait_s: float, on_wait: Wa
     """Return an engine for a book that is there; nothing is opened yet."""
     if address.path is None:
         assert address.url is not None
-        return sa.create_engine(address.url, pool_pre_ping=True)
+        try:
+            return sa.create_engine(address.url, pool_pre_ping=True)
+        except (sa.exc.NoSuchModuleError, ImportError) as error:
+            raise StoreError(
+                f"{address} cannot be reached: {_first_line(error)}.",
+                "Check the first word of the URL; PostgreSQL wants `pip install sidepath[postgres]`.",
+                address.text,
+            ) from error
     path = address.path
     is_sealed = read_only and not os.access(path.absolute().parent, os.W_OK)
 
@@ -108,7 +118,7 @@ def make_engine(address: Address, *, read_only: bool, wait_s: float, on_wait: Wa
         if is_sealed and not path.with_name(path.name + "-wal").exists():
             mode += "&immutable=1"  # nobody can lay a log beside it for us to read, and none is there
         uri = f"{path.absolute().as_uri()}?{mode}"
-        return sqlite3.connect(uri, uri=True, check_same_thread=False, timeout=min(wait_s, 5.0))
+        return sqlite3.connect(uri, uri=True, check_same_thread=False, timeout=LOCK_WAIT_MS / 1000)
 
     pool = {"poolclass": sa.pool.NullPool} if is_sealed else {"poolclass": sa.pool.QueuePool, "max_overflow": 20}
     engine = sa.create_engine("sqlite://", creator=connect, **pool)
@@ -132,6 +142,7 @@ def _begin(connection: sa.Connection, wait_s: float, on_wait: Waiting | None) ->
     began = time.monotonic()
     told = 1.0
     while True:
+        raw.execute("PRAGMA busy_timeout=20")
         try:
             raw.execute("BEGIN IMMEDIATE")
         except sqlite3.OperationalError as error:
@@ -146,6 +157,8 @@ def _begin(connection: sa.Connection, wait_s: float, on_wait: Waiting | None) ->
             time.sleep(random.uniform(0.001, 0.02))
         else:
             return
+        finally:
+            raw.execute(f"PRAGMA busy_timeout={LOCK_WAIT_MS}")
 
 
 @contextmanager
@@ -238,6 +251,12 @@ def translated(address: Address | Path) -> Iterator[None]:
         ) from error
     except OSError as error:
         raise _system_refused(error, str(address)) from error
+    except SidepathError:
+        raise
+    except (ValueError, TypeError, OverflowError) as error:  # a column holds what it was never given
+        raise StoreDamaged(
+            f"{address} holds a value that cannot be read ({_first_line(error)}).", "Run `sidepath verify`."
+        ) from error
 
 
 def _error_name(error: BaseException) -> str:
