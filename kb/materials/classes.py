@@ -74,7 +74,7 @@ def profile_of(conditions: Conditions, scheme_fragments: Sequence[str] = ()) -> 
     medium = flask.medium
     return ConditionProfile(
         reagent_classes=words,
-        solvent_classes=medium.classes,
+        solvent_classes=flask.solvent_classes,
         has_unknown_reagent=flask.has_unknown_reagent,
         has_unknown_solvent=medium.has_unknown,
         base_pkah=base.facts.pkah if base else None,
@@ -86,7 +86,7 @@ def profile_of(conditions: Conditions, scheme_fragments: Sequence[str] = ()) -> 
         halophile=halophile,
         water=_any(flask.has_water, flask.has_unknown_reagent or medium.has_unknown),
         alcohol=_any(
-            bool({"alcohol", "fluorinated_alcohol"} & medium.classes) or flask.has("alcohol"),
+            bool({"alcohol", "fluorinated_alcohol"} & flask.solvent_classes) or flask.has("alcohol"),
             flask.has_unknown_reagent or medium.has_unknown,
         ),
         peroxide=_any(bool(words & set(_PEROXIDES)), flask.has_unknown_reagent),
@@ -197,7 +197,8 @@ def _ionising(
 def _alkoxy(flask: Flask) -> frozenset[str]:
     """Return the alcohols whose alkoxides are or could be there: of alkoxides, and of alcohol solvents."""
     from_reagents = {i.facts.alkoxy for i in flask.ingredients if i.facts.alkoxy and i.has("alkoxide")}
-    from_solvents = {s.smiles for s in flask.medium.solvents if {"alcohol", "fluorinated_alcohol"} & s.classes}
+    solvents = (*flask.medium.solvents, *flask.beside)
+    from_solvents = {s.smiles for s in solvents if {"alcohol", "fluorinated_alcohol"} & s.classes}
     return frozenset(from_reagents | from_solvents)
 
 

@@ -60,6 +60,7 @@ class Flask:
     Attributes:
         ingredients: what acts, recorded ones first.
         medium: the solvents.
+        beside: solvents that came with a reagent ("1 M TBAF in THF") or as an additive, beside the recorded medium.
         has_unknown_reagent: something could not be classified.
         is_recorded: anything at all is recorded.
         has_water: water by label, solvent or reagent.
@@ -67,9 +68,16 @@ class Flask:
 
     ingredients: tuple[Ingredient, ...] = ()
     medium: Medium = field(default_factory=Medium)
+    beside: tuple[Solvent, ...] = ()
     has_unknown_reagent: bool = False
     is_recorded: bool = False
     has_water: bool = False
+
+    @property
+    def solvent_classes(self) -> frozenset[str]:
+        """Return the classes of the medium, and the finer ones of the solvents beside it."""
+        finer = {w for s in self.beside for w in s.classes} - _COARSE
+        return self.medium.classes | finer
 
     def having(self, *words: str) -> tuple[Ingredient, ...]:
         """Return the ingredients of any of the classes."""
@@ -78,6 +86,9 @@ class Flask:
     def has(self, *words: str) -> bool:
         """Return True where any ingredient is of any of the classes."""
         return bool(self.having(*words))
+
+
+_COARSE = {"protic", "polar-aprotic", "weakly-polar", "nonpolar"}
 
 
 @dataclass(slots=True)
@@ -114,9 +125,12 @@ def fill(conditions: Conditions, scheme_fragments: Sequence[str] = ()) -> Flask:
     return Flask(
         ingredients=tuple(got.ingredients),
         medium=medium,
+        beside=tuple(s for s in dict.fromkeys(got.implied) if s not in medium.solvents),
         has_unknown_reagent=got.has_unknown,
         is_recorded=bool(named or medium_names or got.ingredients or got.in_scheme or got.has_unknown),
-        has_water=got.has_water or "water" in medium.classes or any(i.has("water") for i in got.ingredients),
+        has_water=got.has_water
+        or any("water" in s.classes for s in (*medium.solvents, *got.implied))
+        or any(i.has("water") for i in got.ingredients),
     )
 
 

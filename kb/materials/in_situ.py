@@ -41,9 +41,9 @@ def made_in_situ(flask: Flask, balance: Balance) -> frozenset[str]:
     if flask.has("iodide") and flask.has("silyl_chloride"):
         words.add("silyl_iodide")
     words |= _hydrogen_halides(flask, balance)
-    if "sulfoxide" in flask.medium.classes or any(i.facts.smiles == "CS(C)=O" for i in flask.ingredients):
-        if flask.has("acid_chloride_former", "anhydride", "sulfonic_anhydride", "carbodiimide"):
-            words.add("activated_dmso")
+    has_dmso = "sulfoxide" in flask.solvent_classes
+    if has_dmso and flask.has("acid_chloride_former", "anhydride", "sulfonic_anhydride", "carbodiimide"):
+        words.add("activated_dmso")
     words |= set(_anions(flask, balance))
     return add_wider(words)
 

@@ -11,6 +11,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from itertools import pairwise
 
 from kb.materials.catalogue import Catalogue, Solvent, load_catalogue
 from kb.materials.labels import read_label
@@ -106,8 +107,8 @@ def medium_of(named: Iterable[SolventPart], implied: Iterable[Solvent], in_schem
 
     Args:
         named: recorded solvents.
-        implied: solvents of reagent solutions ("4 M HCl in dioxane"); beside a named solvent they only add classes
-            when the same, so they are left out of the shares.
+        implied: solvents of reagent solutions ("4 M HCl in dioxane"); beside a named solvent they are no part of
+            the medium, since how much of them there is was not recorded.
         in_scheme: solvents among the fragments of a scheme.
     """
     parts: list[tuple[Solvent, float | None]] = []
@@ -176,7 +177,7 @@ def _aqueous_y(parts: tuple[tuple[Solvent, float], ...], catalogue: Catalogue) -
         return None
     points = [(100.0, y) for y in (ends[name],) if y is not None] + points
     points += [(0.0, y) for y in (ends["water"],) if y is not None]
-    for (high, y_high), (low, y_low) in zip(points, points[1:], strict=False):
+    for (high, y_high), (low, y_low) in pairwise(points):
         if low <= shares[name] <= high:
             return round(y_low + (y_high - y_low) * (shares[name] - low) / (high - low), 2)
     return None

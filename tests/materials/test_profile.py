@@ -161,7 +161,7 @@ def test_ionising_conditions(words: dict[str, str], is_ionising: bool) -> None:
         ({"with_": "imidazole", "base": "NaH"}, {"azolide"}),
         ({"with_": "diethyl malonate", "base": "NaOEt"}, {"stabilised_carbanion", "enolate"}),
         ({"with_": "benzyl alcohol", "base": "NaH"}, {"alkoxide"}),
-        ({"with_": "oxalyl chloride", "add": "DMSO"}, {"activated_dmso", "oxidant"}),
+        ({"with_": "oxalyl chloride", "add": "DMSO", "solvent": "DCM"}, {"activated_dmso", "oxidant"}),
         ({"acid": "HBr"}, {"hydrogen_halide", "hydrogen_bromide", "hbr_or_tmsi"}),
         ({"base": "KOtBu"}, {"alkoxide", "tertiary_alkoxide"}),
         ({"with_": "benzylamine"}, {"primary_amine", "amine"}),
@@ -200,6 +200,8 @@ def test_imidazole_is_not_deprotonated_by_carbonate() -> None:
         ({"with_": "NaN3", "solvent": "DMF", "time": "overnight"}, "prolonged", True),
         ({"with_": "NaN3", "solvent": "DMF", "time": "12 h"}, "prolonged", False),
         ({"base": "aq. NaOH", "solvent": "THF"}, "water", True),
+        ({"acid": "HCl in MeOH", "solvent": "DCM"}, "alcohol", True),
+        ({"acid": "HCl in MeOH", "solvent": "DCM"}, "permittivity", 8.9),
         ({"acid": "4 M HCl in dioxane"}, "water", False),
         ({"acid": "4 M HCl in dioxane"}, "bp_c", 101.2),
         ({"acid": "conc. HCl", "solvent": "MeOH"}, "water", True),
@@ -303,7 +305,7 @@ def test_any_fragments_give_a_profile(fragments: list[str]) -> None:
     assert found.reagent_classes <= REAGENT_CLASSES.keys()
 
 
-_NAMES = "TFA HCl Et3N K2CO3 NaN3 NaH KOtBu PPh3 DIAD Pd/C NaBH4 AgNO3 AcOH TBAF".split()
+_NAMES = ["TFA", "HCl", "Et3N", "K2CO3", "NaN3", "NaH", "KOtBu", "PPh3", "DIAD", "Pd/C", "NaBH4", "AgNO3", "AcOH"]
 
 
 @given(
