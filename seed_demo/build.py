@@ -19,7 +19,8 @@ from pathlib import Path
 
 from kb.exchange.headings import ColumnMapping
 from kb.exchange.loading import LoadReport, Sink, load
-from kb.exchange.sources import Read, open_source
+from kb.exchange.source import Read
+from kb.exchange.sources import open_source
 from kb.progress import Progress, Silent
 
 HERE = Path(__file__).parent

@@ -69,8 +69,8 @@ def is_recorded(text: str | None) -> bool:
     return text is not None and text.strip().casefold() not in NOT_RECORDED
 
 
-def read_split(text: str, *, per: float = 100.0) -> list[tuple[Fate, float]]:
-    """Return (fate, share 0..1) in order.
+def read_split(text: str, *, per: float = 100.0) -> list[tuple[Fate, float | None]]:
+    """Return (fate, share 0..1) in order; None for `elimination ?`, seen but not measured.
 
     Args:
         text: `substitution 88; elimination 10` or `substitution=88,elimination=10`.
@@ -80,11 +80,11 @@ def read_split(text: str, *, per: float = 100.0) -> list[tuple[Fate, float]]:
         InvalidRecord: a fate that is none, or one named twice.
         QuantityError: a share that is none.
     """
-    shares: dict[Fate, float] = {}
-    for item in re.split(r"[;\n]|,(?!\d)|(?<=[%\d])\s*/\s*", text):
+    shares: dict[Fate, float | None] = {}
+    for item in re.split(r"[;\n]|,(?!\d)|\s+/\s+|(?<=[%\d])/", text):
         if not item.strip():
             continue
-        found = re.fullmatch(r"\s*(.+?)\s*(?:[:=]|\s)\s*(-?\d[\d.,]*\s*%?)\s*", item) or re.fullmatch(
+        found = re.fullmatch(r"\s*(.+?)\s*(?:[:=]|\s)\s*(-?\d[\d.,]*\s*%?|\?)\s*", item) or re.fullmatch(
             r"\s*(\d[\d.,]*\s*%?)\s*(.+?)\s*", item
         )
         if not found:
@@ -95,7 +95,7 @@ def read_split(text: str, *, per: float = 100.0) -> list[tuple[Fate, float]]:
         fate = read_fate(word)
         if fate in shares:
             raise InvalidRecord(f"{fate} stands twice in the split.", "Add the two up.", text)
-        shares[fate] = read_share(number, per=per)
+        shares[fate] = read_share(number, per=per) if number != "?" else None
     return list(shares.items())
 
 

@@ -26,6 +26,9 @@ FUZZY_MARGIN = 4.0
 LIST_FIELDS = frozenset({"reagents", "bases", "acids", "additives", "solvent", "failed", "note", "products"})
 """Fields that several columns may feed ("reagent 1", "reagent 2"); any other field takes its best column only."""
 
+MAX_FIELDS_SHOWN = 500
+"""Most data fields of a structure file that a report lists."""
+
 AMOUNT_FIELD = "equiv"
 """A column that gives the amount of the material in the nearest material column to its left."""
 
@@ -75,6 +78,7 @@ _NAMES: dict[str, str] = {
     "cause": "cause, cause known, certainty",
     "verdict": "verdict, outcome, result, success, worked",
     "note": "note, notes, comment, comments, remark, remarks, observation, observations",
+    "withdrawn": "withdrawn, withdrawn why",
     "sidepath row": "sidepath row",
     "sidepath reason": "sidepath reason",
 }
@@ -159,7 +163,7 @@ def match_headings(headings: Sequence[str], saved: Mapping[str, Any] | None = No
 
     Args:
         headings: first row of the table, in order.
-        saved: what `ColumnMapping.as_dict` gave earlier; its headings win over the matching.
+        saved: what `ColumnMapping.as_dict` gave earlier, or simply heading to field; it wins over the matching.
 
     Raises:
         ImportFileError: the saved mapping names a field that does not exist, or no column tells the reaction.
@@ -197,9 +201,11 @@ def recognised(headings: Sequence[str]) -> int:
 def _saved_columns(saved: Mapping[str, Any] | None) -> dict[str, tuple[str | None, str | None]]:
     if saved is None:
         return {}
-    columns = saved.get("columns")
+    columns = saved.get("columns", saved) if isinstance(saved, Mapping) else None
     if not isinstance(columns, Mapping):
-        raise ImportFileError("The saved mapping has no columns.", "Make it anew from the file's headings.")
+        raise ImportFileError(
+            "The saved mapping has no columns.", 'Write it like {"columns": {"T [K]": "temperature"}}.'
+        )
     chosen: dict[str, tuple[str | None, str | None]] = {}
     for heading, use in columns.items():
         field = use.get("field") if isinstance(use, Mapping) else use

@@ -22,7 +22,8 @@ from uuid import UUID
 from kb.exchange.headings import ColumnMapping
 from kb.exchange.rejects import RejectsFile
 from kb.exchange.rows import Rejection
-from kb.exchange.sources import Read, Source, open_source
+from kb.exchange.source import Read, Source
+from kb.exchange.sources import open_source
 from kb.progress import Progress, Silent
 from kb.record.run import Run
 

@@ -10,10 +10,11 @@ import dataclasses
 from collections import Counter
 from collections.abc import Sequence
 from functools import lru_cache
+from typing import Any
 
-from kb.errors import InvalidRecord, NameUnknown, QuantityError
+from kb.errors import ChemistryError, InvalidRecord, NameUnknown, QuantityError
 from kb.exchange.cells import ProductText, shown
-from kb.exchange.material_cells import MaterialText, read_materials, read_solvents
+from kb.exchange.material_cells import read_materials, read_solvents
 from kb.record.component import Component, SolventPart
 from kb.record.outcome import ProductSeen
 from kb.vocabulary import Fate, Method, Role
@@ -28,34 +29,23 @@ def materials_in(text: str, role: Role, unknown_names: Counter[str] | None = Non
     Raises:
         QuantityError, InvalidRecord: as `read_materials`, or a structure in braces that is none.
     """
-    return tuple(_component(item, role, unknown_names) for item in read_materials(text))
+    components, unknown = _materials_of(text, role)
+    _count(unknown_names, unknown)
+    return components
 
 
 def solvents_in(text: str, unknown_names: Counter[str] | None = None) -> tuple[SolventPart, ...]:
     """Return the solvents of one cell, structures looked up by name.
 
-    The cell is first tried as one label ("80% EtOH", "aq. acetone"), then as a list or a mixture.
+    The cell is first tried as one label ("80% EtOH", "aq. acetone"), then as a list or a mixture; "10% MeOH in DCM" is
+    a mixture here, though it would be a solution on a bottle.
 
     Raises:
         QuantityError, InvalidRecord: as `read_solvents`, or a structure in braces that is none.
     """
-    whole = _as_label(text)
-    if whole is not None:
-        return whole
-    found: list[SolventPart] = []
-    for name, smiles, parts in read_solvents(text):
-        if smiles is not None:
-            found.append(SolventPart(name=name, smiles=checked_structure(smiles), parts=parts))
-            continue
-        label = _as_label(name)
-        if label is None:
-            _count(unknown_names, name)
-            found.append(SolventPart(name=name, parts=parts))
-        elif len(label) == 1:
-            found.append(dataclasses.replace(label[0], parts=parts if parts is not None else label[0].parts))
-        else:
-            found += label
-    return tuple(found)
+    solvents, unknown = _solvents_of(text)
+    _count(unknown_names, unknown)
+    return solvents
 
 
 def checked_structure(smiles: str) -> str:
@@ -85,32 +75,43 @@ def checked_motif(smarts: str) -> str:
 
 
 def products_seen(
-    split: Sequence[tuple[Fate, float]],
+    split: Sequence[tuple[Fate, float | None]],
     products: Sequence[ProductText],
     method: Method | None,
     scheme: str = "",
 ) -> tuple[ProductSeen, ...]:
     """Join a split by fate with products by structure: the structures come first, each fate's rest follows.
 
-    A product without a fate gets the one that reading substrate and product together gives, else `other`.
+    A product without a fate gets the one that reading substrate and product together gives, else `other`. The only
+    product of its fate, given without a share, takes the share that the split gives to that fate.
     """
     seen: list[ProductSeen] = []
     by_structure: dict[Fate, float] = {}
+    shares = dict(split)
+    products = [p if p.fate else dataclasses.replace(p, fate=_fate_of(scheme, p.smiles)) for p in products]
+    of_fate = Counter(p.fate for p in products)
     for product in products:
-        fate = product.fate or _fate_of(scheme, product.smiles)
-        if product.share is not None:
-            by_structure[fate] = by_structure.get(fate, 0.0) + product.share
+        fate = product.fate or Fate.OTHER
+        share = product.share
+        if share is None and of_fate[fate] == 1:
+            share = shares.get(fate)
+        if share is not None:
+            by_structure[fate] = by_structure.get(fate, 0.0) + share
         seen.append(
             ProductSeen(
                 fate=fate,
                 smiles=checked_structure(product.smiles),
-                share=product.share,
-                method=method if product.share is not None else None,
+                share=share,
+                method=method if share is not None else None,
             )
         )
-    for fate, share in split:
-        rest = round(share - by_structure.get(fate, 0.0), 9)
-        if fate not in by_structure or rest > 0.005:
+    for fate, total in split:
+        if total is None:
+            if not of_fate[fate]:
+                seen.append(ProductSeen(fate=fate))
+            continue
+        rest = round(total - by_structure.get(fate, 0.0), 9)
+        if fate not in by_structure or rest > 0:
             seen.append(ProductSeen(fate=fate, share=max(rest, 0.0), method=method))
     return tuple(seen)
 
@@ -123,19 +124,61 @@ def check_scheme(text: str) -> None:
     """
     from kb.chem.scheme import parse_scheme
 
+    sides = text.split(">")
+    if len(sides) == 3 and sides[0] and all(_is_structure(f) for side in sides for f in side.split(".") if side):
+        return
     parse_scheme(text)
 
 
-def _component(item: MaterialText, role: Role, unknown_names: Counter[str] | None) -> Component:
-    if item.smiles is not None:
-        return Component(role=role, name=item.name, smiles=checked_structure(item.smiles), **item.amounts)
-    meaning = _meaning(item.name)
-    if meaning is None:
-        _count(unknown_names, item.name)
-        return Component(role=role, name=item.name, **item.amounts)
-    smiles, conc_molar = meaning
-    amounts = {"conc_molar": conc_molar, **item.amounts} if conc_molar is not None else item.amounts
-    return Component(role=role, name=item.name, smiles=smiles, **amounts)
+@lru_cache(maxsize=4096)
+def _is_structure(fragment: str) -> bool:
+    """Return whether the text is a structure by itself; far quicker than reading the whole scheme."""
+    from kb.chem.structure import parse_molecule
+
+    try:
+        parse_molecule(fragment)
+    except ChemistryError:
+        return False
+    return True
+
+
+@lru_cache(maxsize=4096)
+def _materials_of(text: str, role: Role) -> tuple[tuple[Component, ...], tuple[str, ...]]:
+    """Return the components of a cell and those of their names that are not known."""
+    found: list[Component] = []
+    unknown: list[str] = []
+    for item in read_materials(text):
+        amounts: dict[str, Any] = dict(item.amounts)
+        smiles = checked_structure(item.smiles) if item.smiles is not None else None
+        meaning = (smiles, None) if smiles else _meaning(item.name)
+        if meaning is None:
+            unknown.append(item.name)
+        known_smiles, conc_molar = meaning or (None, None)
+        fields = {"conc_molar": conc_molar, **amounts}
+        found.append(Component(role=role, name=item.name, smiles=known_smiles, **fields))
+    return tuple(found), tuple(unknown)
+
+
+@lru_cache(maxsize=4096)
+def _solvents_of(text: str) -> tuple[tuple[SolventPart, ...], tuple[str, ...]]:
+    """Return the solvents of a cell and those of their names that are not known."""
+    whole = _as_label(text) if " in " not in text else None
+    if whole is not None:
+        return whole, ()
+    found: list[SolventPart] = []
+    unknown: list[str] = []
+    for name, smiles, parts in read_solvents(text):
+        label = _as_label(name) if smiles is None else None
+        if smiles is not None:
+            found.append(SolventPart(name=name, smiles=checked_structure(smiles), parts=parts))
+        elif label is None:
+            unknown.append(name)
+            found.append(SolventPart(name=name, parts=parts))
+        elif len(label) == 1:
+            found.append(dataclasses.replace(label[0], parts=parts if parts is not None else label[0].parts))
+        else:
+            found += label
+    return tuple(found), tuple(unknown)
 
 
 @lru_cache(maxsize=4096)
@@ -161,12 +204,13 @@ def _as_label(text: str) -> tuple[SolventPart, ...] | None:
         return None
 
 
-def _count(unknown_names: Counter[str] | None, name: str) -> None:
-    """Count an unknown name."""
-    if unknown_names is not None:
-        unknown_names[
-            name if name in unknown_names or len(unknown_names) < MOST_UNKNOWN_NAMES else "(other names)"
-        ] += 1
+def _count(unknown_names: Counter[str] | None, names: Sequence[str]) -> None:
+    """Count unknown names."""
+    if unknown_names is None:
+        return
+    for name in names:
+        is_countable = name in unknown_names or len(unknown_names) < MOST_UNKNOWN_NAMES
+        unknown_names[name if is_countable else "(other names)"] += 1
 
 
 def _fate_of(scheme: str, product: str) -> Fate:

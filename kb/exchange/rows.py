@@ -12,12 +12,12 @@ the same run: that is what finds duplicates and lets an interrupted import be ru
 
 from __future__ import annotations
 
-import dataclasses
 import json
 import re
 from collections import Counter
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
+from functools import lru_cache
 from typing import Any
 from uuid import UUID, uuid5
 
@@ -162,17 +162,16 @@ class _Row:
             "scheme": scheme,
             "conditions": conditions,
             "outcome": outcome,
-            "verdict": self._one("verdict", lambda text, _: cells.read_verdict(text)),
+            "verdict": self._one("verdict"),
             "by": self._text("by"),
-            "date": self._one("date", lambda text, _: cells.read_date(text, self.date_order)),
+            "date": self._one("date"),
             "reference": self._text("reference"),
             "project": self._text("project"),
             "series": self._text("series"),
+            "withdrawn_why": self._text("withdrawn"),
         }
         given["note"] = "\n".join([*(text for _, text, _ in self.found.get("note", ())), *self.remarks])
-        run_id = self._one("uuid", lambda text, _: _uuid(text))
-        run = Run(**given, run_id=run_id) if run_id else Run(**given)
-        return run if run_id else dataclasses.replace(run, run_id=content_id(self._as_written()))
+        return Run(**given, run_id=self._one("uuid") or content_id(self._as_written()))
 
     def _as_written(self) -> dict[str, list[list[str | None]]]:
         return {
@@ -204,20 +203,20 @@ class _Row:
         return Conditions(
             components=tuple(components),
             solvents=tuple(solvents),
-            temperature=self._one("temperature", lambda text, unit: parse_temperature(_in_unit(text, unit))),
-            time=self._one("time", lambda text, unit: parse_duration(_in_unit(text, unit))),
-            conc_molar=self._one("concentration", lambda text, unit: parse_concentration(_in_unit(text, unit))),
-            scale_mmol=self._one("scale", lambda text, unit: parse_scale_mmol(_in_unit(text, unit))),
+            temperature=self._one("temperature"),
+            time=self._one("time"),
+            conc_molar=self._one("concentration"),
+            scale_mmol=self._one("scale"),
             atmosphere=self._text("atmosphere"),
             vessel=self._text("vessel"),
             workup=self._text("workup"),
         )
 
     def _outcome(self, scheme: str) -> Outcome:
-        method = self._one("method", lambda text, _: cells.read_method(text))
-        split = list(self._one("split", lambda text, unit: cells.read_split(text, per=_per(unit))) or ())
+        method = self._one("method")
+        split = list(self._one("split") or ())
         for fate in Fate:
-            share = self._one(f"share {fate}", lambda text, unit: cells.read_share(text, per=_per(unit)), words=True)
+            share = self._one(f"share {fate}")
             if share is not None:
                 if fate in dict(split):
                     raise _refused(f"share {fate}", f"{fate} is in the split already.", "Give it once.")
@@ -227,17 +226,16 @@ class _Row:
             products += self._at(heading, lambda t, u=unit: cells.read_products(t, per=_per(u)), text)
         return Outcome(
             products=self._at("products", lambda _: products_seen(split, products, method, scheme), ""),
-            isolated_yield_pct=self._percent("isolated yield", 200),
-            assay_yield_pct=self._percent("assay yield", 200),
-            conversion_pct=self._percent("conversion", 100),
-            ee_pct=self._percent("ee", 100),
+            isolated_yield_pct=self._one("isolated yield"),
+            assay_yield_pct=self._one("assay yield"),
+            conversion_pct=self._one("conversion"),
+            ee_pct=self._one("ee"),
             dr=self._text("dr"),
             failures=self._failures(),
         )
 
     def _failures(self) -> tuple[Failure, ...]:
-        motif = self._one("motif", lambda text, _: checked_motif(text))
-        cause = self._one("cause", lambda text, _: cells.read_cause(text))
+        motif, cause = self._one("motif"), self._one("cause")
         modes: list[str] = []
         for heading, text, _ in self.found.get("failed", ()):
             for word in re.split(r"[;,\n]", text):
@@ -249,14 +247,6 @@ class _Row:
             Failure(mode=m, motif=motif if not n else None, cause=cause) for n, m in enumerate(dict.fromkeys(modes))
         )
 
-    def _percent(self, name: str, maximum: float) -> float | None:
-        def read(text: str, unit: str | None) -> float:
-            if unit == "fraction":
-                return round(cells.read_share(text, per=1) * 100, 10)
-            return parse_percent(text, maximum, name)
-
-        return self._one(name, read, words=True)
-
     def _cell(self, name: str) -> tuple[str, str, str | None] | None:
         cells_found = self.found.get(name)
         return cells_found[0] if cells_found else None
@@ -265,16 +255,19 @@ class _Row:
         cell = self._cell(name)
         return cell[1].strip() if cell else None
 
-    def _one(self, name: str, read: Any, words: bool = False) -> Any:
-        """Read the field's cell; with `words`, words that stand for a number go to the note instead."""
+    def _one(self, name: str) -> Any:
+        """Read the field's cell; words that stand for a number go to the note instead."""
         cell = self._cell(name)
         if cell is None:
             return None
         heading, text, unit = cell
-        if words and _WORDS_FOR_NUMBERS.fullmatch(text.strip()):
-            self.remarks.append(f"[{heading}: {text.strip()}]")
+        bare = text.strip()
+        if name in _NUMBERS and _WORDS_FOR_NUMBERS.fullmatch(bare):
+            self.remarks.append(f"[{heading}: {bare}]")
             return None
-        return self._at(heading, lambda t: read(t, unit), text.strip())
+        if name == "date":
+            return self._at(heading, lambda t: cells.read_date(t, self.date_order), bare)
+        return self._at(heading, lambda t: _parsed(name, t, unit), bare)
 
     def _at(self, heading: str, read: Any, text: str) -> Any:
         try:
@@ -283,6 +276,21 @@ class _Row:
             raise
         except SidepathError as error:
             raise RowRefused(error.message, error.hint, (heading or None, str(error))) from error
+
+
+@lru_cache(maxsize=16_384)
+def _parsed(name: str, text: str, unit: str | None) -> Any:
+    """Return the value of one cell; the same few texts fill a column, so they are read once."""
+    return _READERS[name](text, unit)
+
+
+def _percentage(name: str, maximum: float) -> Callable[[str, str | None], float]:
+    def read(text: str, unit: str | None) -> float:
+        if unit == "fraction":
+            return round(cells.read_share(text, per=1) * 100, 10)
+        return parse_percent(text, maximum, name)
+
+    return read
 
 
 def _refused(column: str | None, reason: str, hint: str) -> RowRefused:
@@ -313,3 +321,25 @@ def _with_amount(material: str, text: str, unit: str | None) -> str:
     if ";" in material or "\n" in material:
         raise _refused(AMOUNT_FIELD, "One amount for several materials.", "Write each amount behind its material.")
     return f"{material.strip()} {amount}"
+
+
+_NUMBERS = frozenset({"isolated yield", "assay yield", "conversion", "ee", *(f"share {fate}" for fate in Fate)})
+
+_READERS: dict[str, Callable[[str, str | None], Any]] = {
+    "verdict": lambda text, _: cells.read_verdict(text),
+    "uuid": lambda text, _: _uuid(text),
+    "temperature": lambda text, unit: parse_temperature(_in_unit(text, unit)),
+    "time": lambda text, unit: parse_duration(_in_unit(text, unit)),
+    "concentration": lambda text, unit: parse_concentration(_in_unit(text, unit)),
+    "scale": lambda text, unit: parse_scale_mmol(_in_unit(text, unit)),
+    "method": lambda text, _: cells.read_method(text),
+    "split": lambda text, unit: tuple(cells.read_split(text, per=_per(unit))),
+    "isolated yield": _percentage("isolated yield", 200),
+    "assay yield": _percentage("assay yield", 200),
+    "conversion": _percentage("conversion", 100),
+    "ee": _percentage("ee", 100),
+    "motif": lambda text, _: checked_motif(text),
+    "cause": lambda text, _: cells.read_cause(text),
+    **{f"share {fate}": lambda text, unit: cells.read_share(text, per=_per(unit)) for fate in Fate},
+}
+"""How the cell of each field that takes one value is read: text and the heading's unit to the value."""

@@ -8,15 +8,15 @@ stored.
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass
+from collections.abc import Iterator, Mapping
 from pathlib import Path
-from typing import Any, Protocol
+from typing import Any
 
 from kb.errors import ImportFileError, SidepathError
 from kb.exchange.headings import ColumnMapping, match_headings
 from kb.exchange.jsonlines import JsonLines
 from kb.exchange.rows import Rejection, RowReader, RowRefused
+from kb.exchange.source import Read, Source
 from kb.exchange.tables_in import CsvTable, TableRow, XlsxTable
 from kb.record.run import Run
 
@@ -25,48 +25,6 @@ FORMATS = {
     ".jsonl": "jsonl", ".ndjson": "jsonl", ".rdf": "rdf", ".rd": "rdf", ".rxn": "rxn", ".sdf": "sdf", ".sd": "sdf",
     ".smi": "smi", ".rsmi": "smi", ".smiles": "smi",
 }  # fmt: skip
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Read:
-    """One row, read: a run or a rejection, and what a rejects file needs to give it back.
-
-    Attributes:
-        raw: cells of a table row, or the text of the record.
-    """
-
-    row: int
-    run: Run | None = None
-    rejection: Rejection | None = None
-    raw: Sequence[str] | str = ""
-
-
-class Source(Protocol):
-    """A file being read."""
-
-    @property
-    def format_name(self) -> str:
-        """Return the format, for the rejects file."""
-        ...
-
-    @property
-    def mapping(self) -> ColumnMapping | None:
-        """Return what the columns are taken for; None for formats without columns."""
-        ...
-
-    @property
-    def unknown_names(self) -> Counter[str]:
-        """Return the names met so far that the catalogue does not hold."""
-        ...
-
-    def __iter__(self) -> Iterator[Read]:
-        """Yield every row once."""
-        ...
-
-    @property
-    def done_share(self) -> float:
-        """Return the part of the file that was read, 0..1."""
-        ...
 
 
 def format_of(path: Path) -> str:

@@ -13,6 +13,7 @@ import datetime as dt
 import itertools
 import re
 import zipfile
+import zlib
 from collections.abc import Iterator, Sequence
 from contextlib import closing
 from dataclasses import dataclass
@@ -40,6 +41,7 @@ MAX_MEMBERS = 5_000
 """Bounds on a workbook: unpacked size, its table of texts (the only part held in memory), unpacked over packed size
 (for parts above 10 MB), and the number of parts. Judgements: a workbook of a million ordinary rows stays below."""
 
+_BROKEN_ZIP = (zipfile.BadZipFile, zlib.error, NotImplementedError, RuntimeError, EOFError, ValueError)
 _ERRORS = frozenset({"#N/A", "#VALUE!", "#REF!", "#DIV/0!", "#NUM!", "#NAME?", "#NULL!", "#####"})
 
 
@@ -220,7 +222,7 @@ class XlsxTable:
                     values.pop()
                 if values:
                     yield TableRow(number=number, values=tuple(values))
-        except (ValueError, KeyError, TypeError, zipfile.BadZipFile, OSError, SyntaxError, EOFError) as error:
+        except (*_BROKEN_ZIP, KeyError, TypeError, OSError, SyntaxError) as error:
             raise ImportFileError(
                 f"{self.path.name} breaks off in sheet {name[:40]!r}.",
                 "Open it in a spreadsheet program and save it again.",
@@ -255,7 +257,7 @@ def check_workbook(path: Path) -> None:
                         start = part.read(65_536).replace(b"\0", b"")
                     if re.search(rb"<!\s*(?:DOCTYPE|ENTITY)", start, re.I):
                         raise ImportFileError(f"{path.name} declares XML entities, which no workbook needs.", again)
-    except (zipfile.BadZipFile, NotImplementedError, RuntimeError, EOFError, ValueError) as error:
+    except _BROKEN_ZIP as error:
         raise ImportFileError(f"{path.name} is no workbook, or a damaged one.", again, path.name) from error
     except OSError as error:
         raise unreadable(path, error) from error

@@ -111,8 +111,8 @@ def test_products_noted_by_structure_have_the_fate_that_was_noted(runs: dict[str
         for product in run.outcome.products:
             if product.fate is Fate.ELIMINATION and product.smiles:
                 checked += 1
-                left = run.scheme.split(">")[0]
-                assert read_scheme(f"{left}>>{product.smiles}").fate is Fate.ELIMINATION, (run.reference, product.smiles)
+                stated = f"{run.scheme.split('>')[0]}>>{product.smiles}"
+                assert read_scheme(stated).fate is Fate.ELIMINATION, (run.reference, stated)
     assert checked >= 30
 
 
