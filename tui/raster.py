@@ -26,10 +26,11 @@ from kb.chem.layout import (
 from tui.dots import stroke_dots
 
 SCALE_MAX = 13.0
-SCALE_MIN = 6.0
+SCALE_MIN = 5.0
 """Dots per bond length: above the first nothing is gained, below the second double bonds run together."""
 
 GAP_DOTS = 2.0
+GAP_DOTS_SMALL = 1.6
 MIN_BOND_DOTS = 2
 
 _BITS = ((0x01, 0x08), (0x02, 0x10), (0x04, 0x20), (0x40, 0x80))
@@ -106,9 +107,7 @@ class Grid:
         return "\n".join("".join(c.char if c else " " for c in row).rstrip() for row in self.rows)
 
 
-def build_picture(
-    drawing: Drawing, scale: float, phase: Point = (0.0, 0.0), numbers: bool = False
-) -> Picture:
+def build_picture(drawing: Drawing, scale: float, phase: Point = (0.0, 0.0), numbers: bool = False) -> Picture:
     """Raster a drawing at one scale.
 
     Args:
@@ -126,7 +125,8 @@ def build_picture(
             x, y = column * 2 + 0.5, row * 4 + 1.5
         points.append((x, y))
     taken = _write_labels(drawing, picture, numbers)
-    _draw_bonds(drawing, picture, build_strokes(drawing, points, GAP_DOTS), taken)
+    gap = GAP_DOTS if scale >= 7 else GAP_DOTS_SMALL
+    _draw_bonds(drawing, picture, build_strokes(drawing, points, gap), taken)
     for label in picture.labels:
         for place, char, ink in label.cells:
             picture.cells[place] = Cell(char=char, ink=ink)
@@ -145,6 +145,8 @@ def fit(drawing: Drawing, width: int, height: int, numbers: bool = False, cap: f
         for phase in _PHASES:
             picture = build_picture(drawing, scale, phase, numbers)
             columns, rows = picture.size
+            if columns > width + 1 or rows > height + 1:
+                break  # a shift by less than a cell cannot make it fit
             if columns > width or rows > height:
                 continue
             if not picture.clashes:
@@ -264,9 +266,7 @@ def _spell(
     return PlacedLabel(atom=index, cells=tuple(cells))
 
 
-def _draw_bonds(
-    drawing: Drawing, picture: Picture, strokes: tuple[Stroke, ...], taken: dict[Place, int]
-) -> None:
+def _draw_bonds(drawing: Drawing, picture: Picture, strokes: tuple[Stroke, ...], taken: dict[Place, int]) -> None:
     masks: dict[Place, int] = {}
     inks: dict[Place, str] = {}
     dots_of: list[set[Place]] = [set() for _ in drawing.bonds]

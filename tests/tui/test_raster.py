@@ -1,4 +1,4 @@
-"""Braille raster: every bond and label of 60 structures is there, none overlap, small panels say what they cut."""
+"""Braille raster: bonds and labels of 60 structures are there, none overlap, panels say what they cut."""
 
 from __future__ import annotations
 

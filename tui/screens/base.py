@@ -1,0 +1,198 @@
+"""What every place shares: the bar with the places, questions to the book, trouble in place, copying.
+
+It asks in worker threads and takes answers back on the event loop, one question of a kind at a time, newest
+first served; a screen never calls the book directly. Errors of the family are shown as their sentence;
+anything else is logged and shown as a fault of the program, and the screen stays usable.
+"""
+
+from __future__ import annotations
+
+import logging
+from collections.abc import Callable
+from functools import partial
+from typing import TYPE_CHECKING, Any, ClassVar, TypeVar
+
+from textual import on
+from textual.app import ComposeResult
+from textual.binding import Binding, BindingType
+from textual.message import Message
+from textual.screen import Screen
+from textual.widgets import Footer, Static
+from textual.worker import Worker, WorkerState
+
+from kb.errors import SidepathError
+from tui.jobs import LatestOnly
+from tui.ports import BookPort
+from tui.present import safe
+from tui.widgets.place_bar import PlaceBar
+
+if TYPE_CHECKING:
+    from tui.application import SidepathApp
+
+log = logging.getLogger(__name__)
+
+Value = TypeVar("Value")
+ScreenResult = TypeVar("ScreenResult")
+
+FAULT = "Something went wrong inside the program; the log has the details. What you typed is safe."
+
+
+class Answered(Message):
+    """A worker is done: `take` is to be called on the event loop with what it found."""
+
+    def __init__(self, kind: str, ticket: int, take: Callable[[], None]) -> None:
+        super().__init__()
+        self.kind = kind
+        self.ticket = ticket
+        self.take = take
+
+
+class AskingScreen(Screen[ScreenResult]):
+    """A screen that puts questions to the book."""
+
+    HELP: ClassVar[str] = ""
+    app: SidepathApp
+
+    BINDINGS: ClassVar[list[BindingType]] = [
+        Binding("f1", "help", "Help", key_display="F1", id="help", tooltip="What this screen is for, and its keys"),
+        Binding("f8", "copy", "Copy", key_display="F8", id="copy", tooltip="Copy as SMILES, Markdown or JSON"),
+    ]
+
+    def __init__(self, **options: Any) -> None:
+        super().__init__(**options)
+        self._boxes: dict[str, LatestOnly[tuple[Callable[[], Any], Callable[[Any], None], Any]]] = {}
+
+    @property
+    def book(self) -> BookPort | None:
+        """Return the open book, None while it is being opened."""
+        return self.app.book
+
+    def on_mount(self) -> None:
+        """Hear of the book when it is open."""
+        self.watch(self.app, "book", self._book_changed)
+
+    def _book_changed(self, book: BookPort | None) -> None:
+        if book is not None:
+            self.book_arrived(book)
+
+    def book_arrived(self, book: BookPort) -> None:
+        """Take the open book; called again when another one is opened."""
+
+    def ask(
+        self,
+        kind: str,
+        work: Callable[[], Value],
+        done: Callable[[Value], None],
+        failed: Callable[[SidepathError], None] | None = None,
+    ) -> None:
+        """Run `work` in a thread and hand its value to `done`, unless a newer question came meanwhile."""
+        box = self._boxes.setdefault(kind, LatestOnly())
+        if started := box.ask((work, done, failed or self.show_trouble)):
+            self._start_job(kind, *started)
+
+    def forget(self, kind: str) -> None:
+        """Drop whatever answer of a kind is still on its way."""
+        if kind in self._boxes:
+            self._boxes[kind].forget()
+
+    @property
+    def is_asking(self) -> bool:
+        """Return True while any question is open."""
+        return any(box.is_busy for box in self._boxes.values())
+
+    def _start_job(
+        self, kind: str, ticket: int, question: tuple[Callable[[], Any], Callable[[Any], None], Any]
+    ) -> None:
+        self.run_worker(
+            partial(self._work, kind, ticket, question), name=kind, group=kind, thread=True, exit_on_error=False
+        )
+        self._show_busy()
+
+    def _work(self, kind: str, ticket: int, question: tuple[Callable[[], Any], Callable[[Any], None], Any]) -> None:
+        """In the thread: answer, or say why not. Anything unforeseen is left to the worker's own state."""
+        work, done, failed = question
+        try:
+            value = work()
+        except SidepathError as error:
+            self.post_message(Answered(kind, ticket, partial(failed, error)))
+        else:
+            self.post_message(Answered(kind, ticket, partial(done, value)))
+
+    @on(Answered)
+    def _job_answered(self, event: Answered) -> None:
+        event.stop()
+        box = self._boxes[event.kind]
+        is_current = box.is_current(event.ticket)
+        self._next_job(event.kind)
+        if is_current:
+            event.take()
+
+    def _next_job(self, kind: str) -> None:
+        if waiting := self._boxes[kind].finish():
+            self._start_job(kind, *waiting)
+        self._show_busy()
+
+    @on(Worker.StateChanged)
+    def _worker_changed(self, event: Worker.StateChanged) -> None:
+        if event.state is WorkerState.ERROR and event.worker.group in self._boxes:
+            log.error("worker %s failed", event.worker.name, exc_info=event.worker.error)
+            self._next_job(event.worker.group)
+            self.show_trouble(SidepathError(FAULT))
+        elif event.state is WorkerState.CANCELLED and event.worker.group in self._boxes:
+            self._next_job(event.worker.group)
+
+    def _show_busy(self) -> None:
+        for bar in self.query(PlaceBar):
+            bar.is_busy = self.is_asking
+
+    def show_trouble(self, error: SidepathError | None) -> None:
+        """Show what went wrong at the foot of the screen; None takes it away."""
+        for line in self.query("#place-trouble").results(Static):
+            line.set_class(error is not None, "-shown")
+            if error is not None:
+                line.update(f"✗ {safe(error)}")
+
+    def copy_texts(self) -> dict[str, str]:
+        """Return what can be copied, by kind ("SMILES", "Markdown", "JSON")."""
+        return {}
+
+    def action_help(self) -> None:
+        """Show the help of this screen."""
+        from tui.screens.help import HelpScreen
+
+        self.app.push_screen(HelpScreen(self))
+
+    def action_copy(self) -> None:
+        """Offer the kinds of text that can be copied."""
+        from tui.screens.copying import CopyScreen
+
+        texts = self.copy_texts()
+        if not texts:
+            self.app.notify("There is nothing here to copy yet.", markup=False)
+            return
+        self.app.push_screen(CopyScreen(texts))
+
+    def action_copy_as(self, kind: str) -> None:
+        """Copy one kind at once."""
+        texts = self.copy_texts()
+        if kind not in texts:
+            self.app.notify(f"There is no {kind} to copy here.", markup=False)
+            return
+        self.app.copy_text(kind, texts[kind])
+
+
+class PlaceScreen(AskingScreen[None]):
+    """One of the places of the navigation."""
+
+    PLACE: ClassVar[str] = ""
+
+    def compose(self) -> ComposeResult:
+        """Lay out the bar, the place itself, the trouble line and the keys."""
+        yield PlaceBar(self.PLACE, id="place-bar")
+        yield from self.compose_place()
+        yield Static("", id="place-trouble", classes="trouble", markup=False)
+        yield Footer(show_command_palette=False)
+
+    def compose_place(self) -> ComposeResult:
+        """Lay out the place."""
+        yield from ()

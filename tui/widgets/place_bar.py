@@ -1,0 +1,57 @@
+"""The top line: the places with their keys, which book is open, who writes, and whether work is going on."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from textual.app import ComposeResult
+from textual.containers import Horizontal
+from textual.content import Content
+from textual.reactive import reactive
+from textual.widgets import Static
+
+PLACES: tuple[tuple[str, str, str], ...] = (
+    ("planning", "F2", "Planning"),
+    ("runs", "F3", "Runs"),
+    ("finding", "F4", "Finding"),
+)
+"""Name, key and title of each place in the order of the bar."""
+
+
+class PlaceBar(Horizontal):
+    """Where one is, and where one can go."""
+
+    is_busy: reactive[bool] = reactive(False)
+
+    def __init__(self, place: str, **options: Any) -> None:
+        super().__init__(**options)
+        self._place = place
+
+    def compose(self) -> ComposeResult:
+        """Lay out the places and the state of the book."""
+        yield Static(self._tabs(), id="place-tabs")
+        yield Static("", id="place-status", markup=False)
+
+    def on_mount(self) -> None:
+        """Follow the book's state."""
+        self.watch(self.app, "book_words", self._show_status)
+
+    def watch_is_busy(self) -> None:
+        """Say that work is going on once it takes long enough to be noticed."""
+        if self.is_busy:
+            self.set_timer(0.3, self._show_status)
+        else:
+            self._show_status()
+
+    def _show_status(self) -> None:
+        words = getattr(self.app, "book_words", "")
+        self.query_one("#place-status", Static).update(("working…  " if self.is_busy else "") + words)
+
+    def _tabs(self) -> Content:
+        parts: list[Content] = []
+        for name, key, title in PLACES:
+            here = name == self._place
+            text = f"▸{key} {title} " if here else f" {key} {title} "
+            style = "bold $accent" if here else "$foreground"
+            parts.append(Content.styled(text, style).stylize(f"@click=app.place('{name}')"))
+        return Content("").join(parts)
