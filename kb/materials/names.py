@@ -55,11 +55,6 @@ class NameMatch:
     offers: tuple[Offer, ...] = ()
     near: Material | None = None
 
-    @property
-    def entry(self) -> Material | None:
-        """Return `exact`."""
-        return self.exact
-
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class ParsedMaterial:
