@@ -22,6 +22,9 @@ from kb.chem.skeleton import Cut, Edit, Pool, Target
 MAX_TRIES = 6000
 """Most candidate edits that are compared with one product; past it the reading says that it stopped."""
 
+MAX_PAIRS = 20_000
+"""Most combinations of two openings and a partner that are weighed for a twofold change."""
+
 MAX_LABILE = 24
 """Most labile groups of one fragment that are combined; a peptide with more is read by its first ones."""
 
@@ -54,6 +57,7 @@ class Workbench:
         self.promoters: Promoters = find_promoters(graphs)
         self.water = self.pool.add(molgraph_of("O"))
         self.tries = 0
+        self.pairs = 0
         self._removals: dict[object, Removal] = {}
         self._loss_tables: dict[tuple[int, ...], dict[tuple[int, int], list[Losses]]] = {}
 
@@ -69,8 +73,8 @@ class Workbench:
 
     @property
     def gave_up(self) -> bool:
-        """Return whether the limit on tries was reached."""
-        return self.tries > MAX_TRIES
+        """Return whether a limit was reached."""
+        return self.tries > MAX_TRIES or self.pairs > MAX_PAIRS
 
     def is_stated(self, part: int) -> bool:
         """Return whether the part was written in the scheme."""
@@ -109,7 +113,7 @@ class Workbench:
 
     def of_site(self, part: int, site: LeavingSite) -> Removal:
         """Return the balance of a leaving group's departure."""
-        return self.removal(part, site.centre, site.leaving, site.departs, -1)
+        return self.removal(part, site.centre, site.leaving, site.departs, site.gain)
 
     def of_nucleophile(self, part: int, site: NucleophileSite) -> Removal:
         """Return the balance of what a nucleophile drops first."""

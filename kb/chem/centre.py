@@ -58,6 +58,7 @@ class LeavingSite:
         departs: the atoms that go; None when the group stays tied on by a ring (epoxide, cyclic sulfate).
         carbon_class: class of the centre.
         rank: how readily, higher first; from the ladder, mended for the carbon.
+        gain: what the centre's side gains in P (`skeleton.Cut`): -1, or 0 for a diazo carbon, which takes up a proton.
     """
 
     centre: int
@@ -66,6 +67,7 @@ class LeavingSite:
     departs: frozenset[int] | None
     carbon_class: CarbonClass
     rank: int
+    gain: int = -1
 
     @property
     def is_sp3(self) -> bool:
@@ -88,9 +90,10 @@ def find_leaving_sites(graph: Molgraph) -> tuple[LeavingSite, ...]:
                 continue
             carbon_class: CarbonClass | None = None
             for leaving, code in graph.neighbours[centre].items():
-                if code != 1 or graph.elements[leaving] == 6:
+                is_diazo = code == 2 and is_diazo_carbon(graph, centre)
+                if (code != 1 and not is_diazo) or graph.elements[leaving] == 6:
                     continue
-                group = find_leaving_group(graph, centre, leaving)
+                group = LeavingGroup.DIAZONIUM if is_diazo else find_leaving_group(graph, centre, leaving)
                 if group is None:
                     continue
                 carbon_class = carbon_class or find_carbon_class(graph, centre)
@@ -107,6 +110,7 @@ def find_leaving_sites(graph: Molgraph) -> tuple[LeavingSite, ...]:
                         None if departs is None else frozenset(departs),
                         carbon_class,
                         _RANK[group] + _readiness(graph, centre, carbon_class),
+                        0 if is_diazo else -1,
                     )
                 )
         known = tuple(sorted(sites, key=lambda s: (-s.rank, s.centre, s.leaving)))
@@ -133,7 +137,8 @@ def find_leaving_group(graph: Molgraph, centre: int, leaving: int) -> LeavingGro
                 return LeavingGroup.NITRO
             if any(bonds[n] == 3 for n in others) or any(graph.charges[n] < 0 for n in others):
                 return None
-            return LeavingGroup.AMMONIUM
+            # A protonated amine gives up its proton long before it leaves.
+            return LeavingGroup.OTHER if graph.hydrogens[leaving] else LeavingGroup.AMMONIUM
         return None if charge or graph.has_multiple_bond(leaving) else LeavingGroup.OTHER
     if element == 16:
         if charge > 0:
@@ -218,14 +223,23 @@ def find_carbon_class(graph: Molgraph, centre: int) -> CarbonClass | None:
     """Return the class of a carbon; None for carbonyl, nitrile and other carbons that no class describes."""
     if graph.aromatic[centre]:
         return CarbonClass.ARYL
-    if graph.has_multiple_bond(centre):
+    is_diazo = is_diazo_carbon(graph, centre)
+    if graph.has_multiple_bond(centre) and not is_diazo:
         return CarbonClass.VINYL if graph.has_multiple_bond(centre, 6) else None
-    if not graph.is_sp3_carbon(centre):
+    if not is_diazo and not graph.is_sp3_carbon(centre):
         return None
     if is_bridgehead(graph, centre):
         return CarbonClass.BRIDGEHEAD
     carbons = sum(graph.elements[n] == 6 for n in graph.neighbours[centre])
     return (CarbonClass.METHYL, CarbonClass.PRIMARY, CarbonClass.SECONDARY, CarbonClass.TERTIARY)[min(carbons, 3)]
+
+
+def is_diazo_carbon(graph: Molgraph, atom: int) -> bool:
+    """Return whether an atom is the carbon of a diazo group, which an acid turns into an alkyl diazonium."""
+    return any(
+        code == 2 and graph.elements[n] == 7 and graph.charges[n] > 0 and graph.has_multiple_bond(n, 7)
+        for n, code in graph.neighbours[atom].items()
+    )
 
 
 def is_bridgehead(graph: Molgraph, atom: int) -> bool:
@@ -263,8 +277,8 @@ def _readiness(graph: Molgraph, centre: int, carbon_class: CarbonClass) -> int:
 def find_flags(graph: Molgraph, centre: int, leaving: int | None) -> tuple[CentreFlag, ...]:
     """Return what stands beside a centre, in vocabulary order."""
     flags = set()
-    for n in graph.neighbours[centre]:
-        if n == leaving:
+    for n, code in graph.neighbours[centre].items():
+        if n == leaving or code != 1:
             continue
         if graph.aromatic[n]:
             flags.add(CentreFlag.BENZYLIC)
@@ -333,7 +347,8 @@ def describe_centre(
         group: the word for the leaving group when the caller knows it; None = looked up.
     """
     if leaving is not None and group is None:
-        group = find_leaving_group(graph, centre, leaving) or LeavingGroup.OTHER
+        known = LeavingGroup.DIAZONIUM if is_diazo_carbon(graph, centre) else None
+        group = known or find_leaving_group(graph, centre, leaving) or LeavingGroup.OTHER
     return Centre(
         component=component,
         atom=entered[centre],

@@ -8,6 +8,7 @@ less clear is no reading: the caller says `unresolved` and gives the reason from
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 from rdkit import Chem
@@ -22,6 +23,9 @@ TIME_LIMIT_S = 1
 
 LARGEST = 70
 """Heavy atoms of the largest molecule for which a common substructure is sought."""
+
+LARGEST_BY_BRANCH = 150
+"""Heavy atoms of the largest product whose branches are compared one by one."""
 
 _LEAST_SHARED = 0.6
 
@@ -43,11 +47,12 @@ class Comparison:
 
 def compare(graphs: list[Molgraph], product: Molgraph) -> Comparison:
     """Return which leaving group was replaced, going by substrate and product alone."""
+    branches = list(_iter_branches(product)) if len(product) <= LARGEST_BY_BRANCH else []
     exact = [
         (part, site)
         for part, graph in enumerate(graphs)
         for site in find_leaving_sites(graph)
-        if site.is_sp3 and site.leaves_unaided and site.departs and _is_replaced(graph, site, product)
+        if site.is_sp3 and site.leaves_unaided and site.departs and _is_replaced(graph, site, product, branches)
     ]
     if exact:
         best = max(exact, key=lambda e: (len(graphs[e[0]]), e[1].rank))
@@ -55,32 +60,38 @@ def compare(graphs: list[Molgraph], product: Molgraph) -> Comparison:
     return _by_common_part(graphs, product)
 
 
-def _is_replaced(graph: Molgraph, site: LeavingSite, product: Molgraph) -> bool:
-    """Return whether the product is the substrate with another group, on one bond, in place of the leaving group."""
+def _iter_branches(product: Molgraph) -> Iterator[tuple[int, frozenset[int]]]:
+    """Yield (sp3 carbon, atoms of one branch on it) for every branch that hangs on one bond."""
+    for carbon in range(len(product)):
+        if product.is_sp3_carbon(carbon):
+            for first in product.neighbours[carbon]:
+                side = product.side_of(first, carbon)
+                if side is not None:
+                    yield carbon, frozenset(side)
+
+
+def _is_replaced(
+    graph: Molgraph, site: LeavingSite, product: Molgraph, branches: list[tuple[int, frozenset[int]]]
+) -> bool:
+    """Return whether the product is the substrate with another branch in place of the leaving group."""
     kept = [a for a in range(len(graph)) if a not in (site.departs or ())]
     if len(kept) < 3 or len(kept) >= len(product):
         return False
     wanted = sum(element_code(graph.elements[a]) for a in kept)
     hydrogens = sum(graph.hydrogens[a] for a in kept)
     mine: int | None = None
-    for carbon in range(len(product)):
-        if product.elements[carbon] != 6 or product.hydrogens[carbon] != graph.hydrogens[site.centre]:
+    for carbon, side in branches:
+        if product.hydrogens[carbon] != graph.hydrogens[site.centre] or len(product) - len(side) != len(kept):
             continue
-        if not product.is_sp3_carbon(carbon):
+        rest = [a for a in range(len(product)) if a not in side]
+        if sum(element_code(product.elements[a]) for a in rest) != wanted:
             continue
-        for first in product.neighbours[carbon]:
-            side = product.side_of(first, carbon)
-            if side is None or len(product) - len(side) != len(kept):
-                continue
-            rest = [a for a in range(len(product)) if a not in side]
-            if sum(element_code(product.elements[a]) for a in rest) != wanted:
-                continue
-            if sum(product.hydrogens[a] for a in rest) != hydrogens:
-                continue
-            if mine is None:
-                mine = _signature(graph, kept, site.centre)
-            if _signature(product, rest, carbon) == mine:
-                return True
+        if sum(product.hydrogens[a] for a in rest) != hydrogens:
+            continue
+        if mine is None:
+            mine = _signature(graph, kept, site.centre)
+        if _signature(product, rest, carbon) == mine:
+            return True
     return False
 
 

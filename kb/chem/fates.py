@@ -13,7 +13,12 @@ from itertools import chain, islice
 from kb.chem.centre import LeavingSite, find_leaving_sites
 from kb.chem.facts import PossibleFate
 from kb.chem.fates_addition import iter_additions, iter_halogenations, multiple_bonds
-from kb.chem.fates_displacement import Attacker, iter_displacements
+from kb.chem.fates_displacement import (
+    Attacker,
+    iter_displacements,
+    iter_double_displacements,
+    iter_sulfonylations,
+)
 from kb.chem.fates_elimination import can_eliminate, iter_eliminations
 from kb.chem.fates_loss import iter_losses
 from kb.chem.fates_shifts import iter_shifted, iter_transposed
@@ -96,6 +101,10 @@ def list_fates(
         sites = [site, *_other_ends(graph, site)]
         for end in sites:
             sources.append(islice(iter_displacements(graph, end, attackers), 6))
+        for attacker in attackers[:1] if site.departs else ():
+            sources.append(islice(iter_double_displacements(graph, site, attacker), 2))
+        if promoters.sulfonylating:
+            sources.append(islice(iter_sulfonylations(graph, site, others), 2))
         for end in sites:
             if can_eliminate(end):
                 sources.append(islice(iter_eliminations(graph, end), 8))

@@ -10,12 +10,15 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
-from kb.chem.centre import LeavingSite, has_drawn_configuration
+from rdkit import Chem
+
+from kb.chem.centre import LeavingSite, find_leaving_sites, has_drawn_configuration
 from kb.chem.facts import PossibleFate
 from kb.chem.molgraph import Molgraph
 from kb.chem.nucleophile import NucleophileSite, find_nucleophile_sites
 from kb.chem.sketch import Configuration, Sketch
-from kb.vocabulary import CarbonClass, Fate
+from kb.chem.transfer import find_transfer_sites
+from kb.vocabulary import CarbonClass, Fate, LeavingGroup
 
 _CLOSED = (CarbonClass.BRIDGEHEAD, CarbonClass.VINYL, CarbonClass.ARYL)
 _RING_SIZES = (3, 5, 6, 7)
@@ -51,6 +54,8 @@ def iter_displacements(
         size = ring_size(graph, site, inner)
         if inner.rank < _LEAST_INNER_RANK or inner.gone is not None or size not in _RING_SIZES:
             continue
+        if inner.word == "acetylide" or not site.leaves_unaided:
+            continue
         drawn = _draw_closure(graph, site, inner)
         if drawn is not None:
             yield PossibleFate(
@@ -58,6 +63,44 @@ def iter_displacements(
                 product=drawn,
                 note=f"ring of {size} closed by {inner.word.replace('_', ' ')}",
             )
+
+
+def iter_double_displacements(graph: Molgraph, site: LeavingSite, attacker: Attacker) -> Iterator[PossibleFate]:
+    """Yield the rings that one nucleophilic atom with two hydrogens closes on a second leaving group."""
+    if attacker.graph.hydrogens[attacker.site.atom] < 2 or attacker.site.gone is not None:
+        return
+    for second in find_leaving_sites(graph):
+        if second.centre == site.centre or not second.leaves_unaided or not second.departs:
+            continue
+        path = Chem.GetShortestPath(graph.mol, site.centre, second.centre)
+        if second.carbon_class in _CLOSED or len(path) + 1 not in _RING_SIZES or site.leaving in path:
+            continue
+        sketch = Sketch([graph, attacker.graph])
+        for end in (site, second):
+            depart(sketch, end)
+            arrive(sketch, end.centre, attacker, 1)
+        sketch.clear_configuration((site.centre, second.centre))
+        drawn = sketch.finish(site.centre)
+        if drawn is not None:
+            note = f"ring of {len(path) + 1} closed by two displacements by {attacker.word}"
+            yield PossibleFate(fate=Fate.SUBSTITUTION, product=drawn, note=note)
+
+
+def iter_sulfonylations(graph: Molgraph, site: LeavingSite, others: Sequence[Molgraph]) -> Iterator[PossibleFate]:
+    """Yield the sulfonate that an alcohol makes with a sulfonyl chloride or anhydride before anything is displaced."""
+    if site.group is not LeavingGroup.HYDROXYL:
+        return
+    for other in others:
+        for transfer in find_transfer_sites(other):
+            if transfer.name != "sulfonylation" or transfer.gone is None or other.elements[transfer.gone] == 7:
+                continue
+            sketch = Sketch([graph, other])
+            sketch.cut(sketch.atom(1, transfer.atom), sketch.atom(1, transfer.gone))
+            sketch.join(sketch.atom(1, transfer.atom), site.leaving)
+            drawn = sketch.finish(site.centre)
+            if drawn is not None:
+                yield PossibleFate(fate=Fate.OTHER, product=drawn, note="O-sulfonylation; no bond to carbon breaks")
+                break
 
 
 def usual_configuration(graph: Molgraph, site: LeavingSite) -> Configuration:
@@ -81,6 +124,8 @@ def depart(sketch: Sketch, site: LeavingSite) -> int:
     swaps = sketch.place_of(site.centre, site.leaving)
     sketch.cut(site.centre, site.leaving)
     sketch.cap(site.leaving)
+    if site.gain == 0:
+        sketch.change_hydrogens(site.centre, 1)
     return swaps
 
 

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 from kb.chem.cations import cation_score, is_conjugate_end
 from kb.chem.centre import GOOD_RANK, LeavingSite, find_leaving_sites
 from kb.chem.fates_addition import multiple_bonds
+from kb.chem.fates_elimination import beta_carbons
 from kb.chem.labile import comes_off, find_labile_groups
 from kb.chem.molgraph import Molgraph
 from kb.chem.nucleophile import find_nucleophile_sites
@@ -63,16 +64,20 @@ def _among(graphs: Sequence[Molgraph], parts: Sequence[int], promoters: Promoter
         return labile
     if site is not None:
         return site
-    added = _alkene(graphs, parts)
-    if added is not None and (promoters.is_acidic or len(graphs) > 1 or labile is None):
-        return added
-    return labile or _poor_site(graphs, parts)
+    return (
+        _alkene(graphs, parts, needs_reason=not _can_add(graphs, promoters))
+        or labile
+        or _poor_site(graphs, parts)
+        or _alkene(graphs, parts, needs_reason=False)
+    )
 
 
-def _standing(site: LeavingSite, promoters: Promoters) -> int:
+def _standing(graph: Molgraph, site: LeavingSite, promoters: Promoters) -> int:
     """Return the rank of a leaving group under what is in the flask."""
     if site.group is LeavingGroup.HYDROXYL and promoters.makes_hydroxyl_leave and site.is_sp3:
         return site.rank + _ACTIVATED_RANK - 12
+    if site.group is LeavingGroup.AMMONIUM and promoters.strong_base and beta_carbons(graph, site.centre, site.leaving):
+        return site.rank + 10
     return site.rank
 
 
@@ -81,7 +86,7 @@ def _best_site(graphs: Sequence[Molgraph], parts: Sequence[int], promoters: Prom
     best: tuple[int, int, LeavingSite] | None = None
     for part in parts:
         for site in find_leaving_sites(graphs[part]):
-            standing = _standing(site, promoters)
+            standing = _standing(graphs[part], site, promoters)
             leaves = site.leaves_unaided or standing >= GOOD_RANK
             if site.is_sp3 and leaves and standing >= GOOD_RANK - 20 and (best is None or standing > best[0]):
                 best = (standing, part, site)
@@ -129,11 +134,29 @@ def _labile(graphs: Sequence[Molgraph], parts: Sequence[int], promoters: Promote
     return None
 
 
-def _alkene(graphs: Sequence[Molgraph], parts: Sequence[int]) -> Guess | None:
-    """Return the end of a multiple bond where a nucleophile would land."""
+def _can_add(graphs: Sequence[Molgraph], promoters: Promoters) -> bool:
+    """Return whether something present adds to a plain alkene: an acid, a halogen, a thiol."""
+    return (
+        promoters.strong_acid
+        or promoters.lewis_acid
+        or any(len(g) == 2 and set(g.elements) <= {17, 35, 53} for g in graphs)
+        or any(s.word == "thiolate" and g.hydrogens[s.atom] for g in graphs for s in find_nucleophile_sites(g))
+    )
+
+
+def _alkene(graphs: Sequence[Molgraph], parts: Sequence[int], *, needs_reason: bool) -> Guess | None:
+    """Return the end of a multiple bond where a nucleophile would land.
+
+    Args:
+        graphs: left-side fragments.
+        parts: those to look at.
+        needs_reason: take only bonds conjugated with an acceptor, which need no acid.
+    """
     for part in parts:
         graph = graphs[part]
         for a, b in multiple_bonds(graph):
+            if needs_reason and not (is_conjugate_end(graph, a) or is_conjugate_end(graph, b)):
+                continue
             if is_conjugate_end(graph, a) != is_conjugate_end(graph, b):
                 end = a if is_conjugate_end(graph, a) else b
             else:

@@ -10,8 +10,9 @@ Names are the trade's; the classes of promoter (acid, base, fluoride, thiol...) 
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
+from kb.chem.centre import is_diazo_carbon
 from kb.chem.molgraph import Molgraph
 from kb.chem.promoters import Promoters
 from kb.vocabulary import Fate
@@ -36,16 +37,17 @@ class LabileGroup:
         fate: group-loss, or other for a plain hydrolysis.
         promoter: acid, base, silyl (acid or fluoride), fluoride, hydrogenolysis...: what usually takes it off.
         losses: the bonds that break.
-        carbon: the carbon from which the kept or lost heteroatom parts (for Boc the tert-butyl carbon).
-        leaving: the atom that parts from that carbon.
+        carbon: the carbon that parts from its heteroatom (for Boc the tert-butyl carbon); where no bond to carbon
+            breaks, or one to a carbonyl carbon, the sp3 carbon that carries the freed heteroatom; None = there is none.
+        leaving: the atom that parts from that carbon; None when the carbon keeps its heteroatom.
     """
 
     name: str
     fate: Fate
     promoter: str
     losses: tuple[BondLoss, ...]
-    carbon: int
-    leaving: int
+    carbon: int | None
+    leaving: int | None
 
 
 def comes_off(group: LabileGroup, promoters: Promoters) -> bool:
@@ -82,12 +84,20 @@ def find_labile_groups(graph: Molgraph) -> tuple[LabileGroup, ...]:
                 acetal = _acetal(graph, atom)
                 if acetal is not None:
                     found.append(acetal)
+                if is_diazo_carbon(graph, atom):
+                    found.extend(_silyl_on_diazo(graph, atom))
                 ketal = _diol_acetal(graph, atom)
                 if ketal is not None:
                     found.append(ketal)
         known = tuple(found)
         graph.memo["labile"] = known
     return known  # type: ignore[return-value]
+
+
+def _silyl_on_diazo(graph: Molgraph, carbon: int) -> list[LabileGroup]:
+    """Return the silyl group of a silyldiazomethane, which methanol takes off."""
+    losses = [_loss(graph, carbon, n, 1) for n in graph.neighbours[carbon] if graph.elements[n] == 14]
+    return [LabileGroup("C-silyl", Fate.OTHER, "any", (loss,), carbon, None) for loss in losses if loss]
 
 
 def _loss(graph: Molgraph, kept: int, gone: int, gain: int) -> BondLoss | None:
@@ -102,6 +112,8 @@ def _groups_on(graph: Molgraph, atom: int) -> list[LabileGroup]:
     bonds = graph.neighbours[atom]
     if graph.has_multiple_bond(atom):
         return []
+    if len(bonds) == 1:
+        return _last_bond(graph, atom)
     for n, code in bonds.items():
         if code not in (1, 4) or (graph.aromatic[atom] and graph.aromatic[n]):
             continue
@@ -109,7 +121,7 @@ def _groups_on(graph: Molgraph, atom: int) -> list[LabileGroup]:
         if element == 14:
             loss = _loss(graph, atom, n, 1)
             if loss:
-                found.append(LabileGroup("silyl", Fate.GROUP_LOSS, "silyl", (loss,), n, atom))
+                found.append(LabileGroup("silyl", Fate.GROUP_LOSS, "silyl", (loss,), _carrier(graph, atom, n), None))
         elif element == 5:
             loss = _loss(graph, atom, n, 1)
             if loss:
@@ -118,11 +130,32 @@ def _groups_on(graph: Molgraph, atom: int) -> list[LabileGroup]:
             group = _carbon_group(graph, atom, n)
             if group is not None:
                 found.append(group)
-        elif element == 16 and graph.elements[atom] == 7 and graph.has_multiple_bond(n, 8):
+        elif element == 16 and graph.has_multiple_bond(n, 8) and _is_sulfo(graph, atom, n):
             loss = _loss(graph, atom, n, 1)
             if loss:
                 found.append(LabileGroup("sulfonyl", Fate.OTHER, "any", (loss,), n, atom))
     return found
+
+
+def _last_bond(graph: Molgraph, atom: int) -> list[LabileGroup]:
+    """Return the loss of all that a heteroatom carries, for when it has attacked first (acetate, benzylamine)."""
+    (carrier,) = graph.neighbours[atom]
+    group = _carbon_group(graph, atom, carrier) if graph.elements[carrier] == 6 else None
+    return [] if group is None else [replace(group, fate=Fate.OTHER)]
+
+
+def _is_sulfo(graph: Molgraph, atom: int, sulfur: int) -> bool:
+    """Return whether N or O can be freed from a sulfonyl sulfur: a sulfonamide, or the half ester of sulfuric acid."""
+    if graph.elements[atom] == 7:
+        return True
+    return graph.elements[atom] == 8 and any(
+        n != atom and graph.elements[n] in (7, 8) and code == 1 for n, code in graph.neighbours[sulfur].items()
+    )
+
+
+def _carrier(graph: Molgraph, heteroatom: int, lost: int) -> int | None:
+    """Return the sp3 carbon that carries a heteroatom freed from `lost`; None when there is none."""
+    return next((n for n in graph.neighbours[heteroatom] if n != lost and graph.is_sp3_carbon(n)), None)
 
 
 def _carbon_group(graph: Molgraph, atom: int, carbon: int) -> LabileGroup | None:
@@ -168,9 +201,10 @@ def _acyl_group(graph: Molgraph, atom: int, carbon: int, loss: BondLoss) -> Labi
         return LabileGroup(f"{where}-alkoxycarbonyl", Fate.OTHER, "base", (loss,), carbon, atom)
     beyond = [n for n in graph.neighbours[carbon] if n != atom and graph.elements[n] == 6]
     if where != "N" and len(loss.departs) <= 3 and not graph.in_ring[carbon]:
-        return LabileGroup("acetyl" if beyond else "formyl", Fate.GROUP_LOSS, "base", (loss,), carbon, atom)
+        name = "acetyl" if beyond else "formyl"
+        return LabileGroup(name, Fate.GROUP_LOSS, "base", (loss,), _carrier(graph, atom, carbon), None)
     if beyond and sum(graph.elements[n] == 9 for n in graph.neighbours[beyond[0]]) == 3:
-        return LabileGroup("trifluoroacetyl", Fate.GROUP_LOSS, "base", (loss,), carbon, atom)
+        return LabileGroup("trifluoroacetyl", Fate.GROUP_LOSS, "base", (loss,), _carrier(graph, atom, carbon), None)
     return LabileGroup("acyl", Fate.OTHER, "base", (loss,), carbon, atom)
 
 

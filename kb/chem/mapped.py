@@ -150,7 +150,8 @@ def _loss(atlas: _Atlas, promoters: Promoters) -> Evidence | None:
     if not lost:
         return None
     note = "loss of " + " and ".join(g.name for _, g in lost) + ", from the atom maps"
-    return Evidence(Fate.GROUP_LOSS, tuple((p, g.carbon, g.leaving) for p, g in lost), None, note)
+    centres = tuple((p, g.carbon, g.leaving) for p, g in lost if g.carbon is not None)
+    return Evidence(Fate.GROUP_LOSS, centres, None, note)
 
 
 def _addition(atlas: _Atlas) -> Evidence | None:

@@ -36,7 +36,7 @@ class Molgraph:
         mol: the RDKit molecule with the same numbering.
         elements: atomic numbers.
         neighbours: per atom, {neighbour: bond code}.
-        hydrogens: attached hydrogens, implicit ones included.
+        hydrogens: attached hydrogens, implicit and isotopic ones included.
         charges: formal charges.
         aromatic: whether the atom is aromatic.
         in_ring: whether the atom is in a ring.
@@ -66,7 +66,19 @@ class Molgraph:
             code = _BOND_CODES.get(bond.GetBondType(), 0)
             self.neighbours[begin][end] = code
             self.neighbours[end][begin] = code
+        self._fold_isotopic_hydrogens()
         self.memo: dict[str, object] = {}
+
+    def _fold_isotopic_hydrogens(self) -> None:
+        """Count a deuterium or tritium drawn as an atom among the hydrogens of its neighbour; it keeps its number."""
+        for atom, element in enumerate(self.elements):
+            if element != 1 or len(self.neighbours[atom]) != 1:
+                continue
+            (holder,) = self.neighbours[atom]
+            if self.elements[holder] != 1:
+                del self.neighbours[holder][atom]
+                self.neighbours[atom].clear()
+                self.hydrogens[holder] += 1
 
     def __len__(self) -> int:
         return len(self.elements)

@@ -51,7 +51,7 @@ def _nitrogen(graph: Molgraph, atom: int) -> list[NucleophileSite]:
     bonds, charge, hydrogens = graph.neighbours[atom], graph.charges[atom], graph.hydrogens[atom]
     if charge > 0 and not hydrogens:
         return []
-    metal = _partner(graph, atom, tuple(METALS | {14}))
+    metal = _partner(graph, atom, METALS | {14})
     if metal is not None:
         rest = [n for n in bonds if n != metal]
         is_azide = any(graph.elements[n] == 7 for n in rest)
@@ -66,7 +66,9 @@ def _nitrogen(graph: Molgraph, atom: int) -> list[NucleophileSite]:
     if middle and not graph.aromatic[middle[0]]:
         return _azide(graph, atom, middle[0]) if charge < 0 or len(bonds) == 1 else []
     if any(code == 3 for code in bonds.values()):
-        return [NucleophileSite(atom, "nitrile", 8)]
+        carbon = next(iter(bonds))
+        is_ion = graph.charges[carbon] < 0 or graph.hydrogens[carbon] or _partner(graph, carbon, METALS) is not None
+        return [NucleophileSite(atom, "cyanide", 22) if is_ion else NucleophileSite(atom, "nitrile", 8)]
     if charge == 0 and any(code == 2 and graph.elements[n] == 8 for n, code in bonds.items()):
         return [NucleophileSite(atom, "nitrite", 40)] if any(graph.charges[n] < 0 for n in bonds) else []
     if graph.aromatic[atom]:
@@ -124,7 +126,7 @@ def _oxygen(graph: Molgraph, atom: int) -> list[NucleophileSite]:
     bonds, charge = graph.neighbours[atom], graph.charges[atom]
     if charge > 0:
         return []
-    holder = _partner(graph, atom, tuple(METALS | {14}))
+    holder = _partner(graph, atom, METALS | {14})
     if holder is not None:
         return [released(graph, atom, holder, "alkoxide", 40)]
     if len(bonds) > 1:
@@ -158,6 +160,10 @@ def _oxygen_on_carbon(graph: Molgraph, atom: int, carrier: int, code: int) -> Nu
     charge = graph.charges[atom]
     if graph.aromatic[carrier]:
         return NucleophileSite(atom, "phenoxide", 66 if code == 1 else 45)
+    if len(graph.neighbours[carrier]) == 3 and all(
+        graph.elements[n] == 8 and len(graph.neighbours[n]) == 1 for n in graph.neighbours[carrier]
+    ):
+        return NucleophileSite(atom, "carbonate_base", 8)
     if graph.has_multiple_bond(carrier, 8):
         if code == 2:
             partner = any(
@@ -188,7 +194,7 @@ def _sulfur(graph: Molgraph, atom: int) -> list[NucleophileSite]:
         return [NucleophileSite(atom, word, 60)] if is_open else []
     if len(bonds) > 2 or (len(bonds) == 2 and graph.aromatic[atom]):
         return []
-    holder = _partner(graph, atom, tuple(METALS | {14}))
+    holder = _partner(graph, atom, METALS | {14})
     if holder is not None:
         return [released(graph, atom, holder, "thiolate", 78)]
     if not bonds:

@@ -95,16 +95,16 @@ def _acidic_carbon(graph: Molgraph, atom: int) -> tuple[str, int]:
     if acceptors >= 2:
         return "active_methylene", 57
     if acceptors:
-        return "enolate", 26 if any(is_acceptor(graph, n) and not _is_acid(graph, n) for n in bonds) else 12
+        return "enolate", 26 if any(is_acceptor(graph, n) and not _is_acid_or_halide(graph, n) for n in bonds) else 12
     if any(graph.aromatic[n] or (graph.elements[n] == 6 and graph.has_multiple_bond(n)) for n in bonds):
         return "carbanion", 6
     return "carbanion", 1
 
 
-def _is_acid(graph: Molgraph, carbon: int) -> bool:
-    """Return whether a carbonyl carbon is that of an acid or its salt."""
+def _is_acid_or_halide(graph: Molgraph, carbon: int) -> bool:
+    """Return whether an acceptor is that of an acid, its salt or its halide, whose own reactions come first."""
     return any(
-        graph.elements[n] == 8 and code == 1 and len(graph.neighbours[n]) == 1
+        (graph.elements[n] == 8 and code == 1 and len(graph.neighbours[n]) == 1) or graph.elements[n] in (17, 35, 53)
         for n, code in graph.neighbours[carbon].items()
     )
 

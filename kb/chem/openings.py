@@ -8,13 +8,13 @@ reading wins.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from kb.chem.balance import Removal, Workbench
-from kb.chem.cations import alkene_carbons, is_conjugate_end, is_stabilised_cation, iter_shifts
+from kb.chem.cations import alkene_carbons, cation_score, is_conjugate_end, is_stabilised_cation, iter_shifts
 from kb.chem.centre import LeavingSite, find_leaving_sites
 from kb.chem.molgraph import Molgraph
-from kb.chem.nucleophile import NucleophileSite
+from kb.chem.nucleophile import NucleophileSite, is_acceptor
 from kb.chem.promoters import Promoters
 from kb.chem.skeleton import Cut
 from kb.chem.transfer import find_transfer_sites
@@ -62,6 +62,9 @@ def find_displacements(bench: Workbench) -> list[Opening]:
         for site in find_leaving_sites(graph):
             if site.carbon_class is CarbonClass.ARYL:
                 continue
+            if site.gain == 0 and any(is_acceptor(graph, n) for n in graph.neighbours[site.centre]):
+                found.append(_carbene(bench, part, site))
+                continue
             found.append(
                 Opening(
                     part=part,
@@ -72,12 +75,69 @@ def find_displacements(bench: Workbench) -> list[Opening]:
                     centre=(site.centre, site.leaving),
                     group=site.group,
                     site=site,
-                    note=f"displacement of {site.group}" if site.is_sp3 else "substitution at a vinylic carbon",
-                    rank=site.rank,
+                    note=f"displacement of {group_word(site.group)}"
+                    if site.is_sp3
+                    else "substitution at a vinylic carbon",
+                    rank=site.rank + _ease(graph, site),
                     cost=departure_cost(graph, site, bench.promoters),
                 )
             )
+            released = _released_from_ring(bench, part, site)
+            if released is not None:
+                found.append(replace(found[-1], removals=(released,)))
     return found
+
+
+def _carbene(bench: Workbench, part: int, site: LeavingSite) -> Opening:
+    """Return the opening of a diazo carbon beside an acceptor: a carbene, for acids seldom protonate it."""
+    return Opening(
+        part=part,
+        atom=site.centre,
+        removals=(bench.of_site(part, site),),
+        joins=(),
+        fate=Fate.OTHER,
+        centre=None,
+        group=None,
+        site=None,
+        note="insertion of a carbene",
+        rank=site.rank,
+        cost=0,
+    )
+
+
+def group_word(group: LeavingGroup | None) -> str:
+    """Return a leaving group's word for a sentence."""
+    return "another group" if group is None or group is LeavingGroup.OTHER else str(group)
+
+
+def _ease(graph: Molgraph, site: LeavingSite) -> int:
+    """Return how much the better cation speaks for one of two groups that both need help to leave."""
+    return 0 if site.leaves_unaided else 6 * cation_score(graph, site.centre, site.leaving)
+
+
+def _released_from_ring(bench: Workbench, part: int, site: LeavingSite) -> Removal | None:
+    """Return the departure of a ring leaving group that the work-up frees at its other end too.
+
+    Cyclic sulfates, sulfites, sulfamidates and carbonates: the opened ring loses SO3, SO2 or CO2 and leaves O-H or N-H.
+    """
+    graph = bench.graphs[part]
+    if site.departs is not None:
+        return None
+    for hub in graph.neighbours[site.leaving]:
+        if hub == site.centre or not (graph.elements[hub] == 16 or graph.has_multiple_bond(hub, 8)):
+            continue
+        for held, code in graph.neighbours[hub].items():
+            if held == site.leaving or code != 1 or graph.elements[held] not in (7, 8) or not graph.in_ring[held]:
+                continue
+            gone = {site.leaving, hub, *(n for n, order in graph.neighbours[hub].items() if order == 2)}
+            moved = frozenset(bench.atom(part, a) for a in gone)
+            tally = bench.pool.tally_of(moved)
+            cuts = (
+                Cut(bench.atom(part, site.centre), bench.atom(part, site.leaving), moved, -1),
+                Cut(bench.atom(part, held), bench.atom(part, hub), moved, 1),
+            )
+            return Removal(cuts, tally.elements, tally.protons)
+    return None
 
 
 def departure_cost(graph: Molgraph, site: LeavingSite, promoters: Promoters) -> int:
@@ -154,11 +214,47 @@ def find_shifts(bench: Workbench, displacements: list[Opening]) -> list[Opening]
                     centre=opening.centre,
                     group=opening.group,
                     site=site,
-                    note=f"loss of {opening.group} with a 1,2-{'hydride' if mover is None else 'carbon'} shift",
+                    note=f"loss of {opening.group} with a {_shift_word(mover)}, capture",
                     rank=opening.rank - 20,
                     cost=opening.cost,
                 )
             )
+    return found
+
+
+def _shift_word(mover: int | None) -> str:
+    return "1,2-hydride shift" if mover is None else "1,2-carbon shift"
+
+
+def find_addition_shifts(bench: Workbench) -> list[Opening]:
+    """Return openings left by protonation of a multiple bond and a 1,2-shift towards the cation."""
+    found = []
+    for part in range(bench.count):
+        graph = bench.graphs[part]
+        for cation in alkene_carbons(graph):
+            ends = [n for n, code in graph.neighbours[cation].items() if code == 2 and graph.elements[n] == 6]
+            for origin, mover in iter_shifts(graph, cation, None) if ends else ():
+                removals: tuple[Removal, ...] = ()
+                joins: tuple[tuple[int, int], ...] = ()
+                if mover is not None:
+                    kept, gone = bench.atom(part, origin), bench.atom(part, mover)
+                    removals = (Removal((Cut(kept, gone, frozenset(), 0),)),)
+                    joins = ((bench.atom(part, cation), gone),)
+                found.append(
+                    Opening(
+                        part=part,
+                        atom=origin,
+                        removals=removals,
+                        joins=joins,
+                        fate=Fate.REARRANGED,
+                        centre=(origin, None),
+                        group=None,
+                        site=None,
+                        note=f"protonation of the alkene, {_shift_word(mover)}, capture",
+                        rank=0,
+                        cost=0,
+                    )
+                )
     return found
 
 
@@ -178,7 +274,7 @@ def find_additions(bench: Workbench) -> list[Opening]:
                     centre=(carbon, None),
                     group=None,
                     site=None,
-                    note="addition to a multiple bond",
+                    note="addition to a multiple bond, capture",
                     rank=10 + (20 if is_conjugate_end(graph, carbon) else 0),
                     cost=0,
                 )
@@ -227,6 +323,8 @@ def landing_cost(graph: Molgraph, opening: Opening, word: str, promoters: Promot
         word: class word of the nucleophile.
         promoters: what else is in the flask.
     """
+    if opening.fate is Fate.OTHER and promoters.mitsunobu and word in ("alcohol", "alkoxide"):
+        return 1
     if opening.fate is Fate.OTHER or opening.group is None:
         return 0
     oxygen = ("carboxylate", "alcohol", "alkoxide", "water", "hydroxide", "phosphate_base", "sulfonate")

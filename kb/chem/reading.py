@@ -22,7 +22,8 @@ from kb.chem.fates_displacement import Attacker, describe_configuration
 from kb.chem.inference import guess_centre
 from kb.chem.interchange import find_interchange
 from kb.chem.mapped import read_maps
-from kb.chem.matching import Match, find_matches
+from kb.chem.match import Match
+from kb.chem.matching import find_matches
 from kb.chem.molgraph import Molgraph
 from kb.chem.nucleophile import find_nucleophile_sites
 from kb.chem.promoters import Promoters
@@ -93,10 +94,10 @@ class _Reader:
                 rival = _find_rival(self.graphs, matches)
                 if rival and evidence is None:
                     return self._unresolved(rival)
-                return self._matched(matches[0], product)
+                return self._matched(matches[0], product, by_maps=evidence is not None)
         if evidence is not None:
             match = Match(evidence.fate, None, evidence.centres, evidence.nucleophile, evidence.note)
-            return self._matched(match, products[0])
+            return self._matched(match, products[0], by_maps=True)
         return self._compared(products)
 
     def _products(self) -> list[Fragment]:
@@ -141,7 +142,8 @@ class _Reader:
         guess = guess_centre(self.graphs, len(self.scheme.reactants), self.promoters)
         possible: tuple[PossibleFate, ...] = ()
         if guess.part is not None and len(self.graphs) <= 60:
-            place = None if guess.centre is None else (guess.part, guess.centre, guess.leaving)
+            site = guess.site
+            place = None if site is None else (guess.part, site.centre, site.leaving)
             possible = self._fates(guess.part, place, None)
         return Reading(
             scheme=self.scheme.text,
@@ -151,9 +153,9 @@ class _Reader:
             reason=reason,
         )
 
-    def _matched(self, match: Match, product: Fragment) -> Reading:
+    def _matched(self, match: Match, product: Fragment, *, by_maps: bool = False) -> Reading:
         """Return the reading of a match, its side products listed after the stated one."""
-        places = self._entered_first(match.centres)
+        places = match.centres if by_maps else self._entered_first(match.centres)
         nucleophile = self._nucleophile(match)
         note = match.note
         configuration = self._configuration(match, product)
@@ -162,7 +164,8 @@ class _Reader:
         stated = PossibleFate(fate=match.fate, product=product.smiles, note=note)
         part = places[0][0] if places else self._likely_substrate()
         leading = match.nucleophile[:2] if match.nucleophile and self.bench.is_stated(match.nucleophile[0]) else None
-        others = self._fates(part, places[0] if places else None, leading) if part is not None else ()
+        place = places[0] if places and match.fate is not Fate.GROUP_LOSS else None
+        others = self._fates(part, place, leading) if part is not None else ()
         return Reading(
             scheme=self.scheme.text,
             ok=True,
@@ -259,7 +262,7 @@ class _Reader:
                 scheme=self.scheme.text, ok=True, confidence=Confidence.UNRESOLVED, reason=guess.reason
             )
         (place,) = self._entered_first([(guess.part, guess.centre, guess.leaving)])
-        possible = self._fates(guess.part, place, None)
+        possible = self._fates(guess.part, place if guess.site else None, None)
         reason = guess.reason
         if len(self.graphs[guess.part]) > LARGEST:
             reason += f" It has more than {LARGEST} heavy atoms, so its products were not drawn."
@@ -268,7 +271,8 @@ class _Reader:
             scheme=self.scheme.text,
             ok=True,
             confidence=Confidence.INFERRED,
-            fate=next(iter(fates)) if len(fates) == 1 else None,
+            # Beside a lone substrate nobody knows what attacks it, so one kind of product proves nothing.
+            fate=next(iter(fates)) if len(fates) == 1 and len(self.graphs) > 1 else None,
             centres=(self._centre(*place),),
             possible=possible,
             reason=reason,

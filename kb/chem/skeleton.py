@@ -34,7 +34,8 @@ def element_code(element: int) -> int:
     return hash((element, 7919, 104729)) & 0xFFFFFFFFFFFF
 
 
-_CODES = [element_code(z) for z in range(120)]
+_CODES = [0 if z == 1 else element_code(z) for z in range(120)]
+"""Hydrogen atoms (isotopic ones, hydride) are no part of a skeleton; P counts them."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -168,7 +169,7 @@ class Pool:
             a
             for part in edit.parts
             for a in range(self.starts[part], self.starts[part] + len(self.graphs[part]))
-            if a not in gone
+            if a not in gone and self.elements[a] != 1
         ]
         lookup = self.neighbours
         adjacency = {a: changed[a] if a in changed else lookup[a] for a in kept}
@@ -230,15 +231,19 @@ def skeleton_summary(graph: Molgraph) -> Summary:
         elements, neighbours = graph.elements, graph.neighbours
         protons = tuple(h - q for h, q in zip(graph.hydrogens, graph.charges, strict=True))
         first = tuple(hash((z, sum([_CODES[elements[n]] for n in neighbours[a]]))) for a, z in enumerate(elements))
-        second = tuple(hash((f, sum([first[n] for n in neighbours[a]]))) for a, f in enumerate(first))
-        colours = refine(dict(enumerate(elements)), {a: tuple(ns) for a, ns in enumerate(neighbours)})
+        second = tuple(
+            0 if elements[a] == 1 else hash((f, sum([first[n] for n in neighbours[a]]))) for a, f in enumerate(first)
+        )
+        heavy = [a for a, z in enumerate(elements) if z != 1]
+        colours = refine({a: elements[a] for a in heavy}, {a: tuple(neighbours[a]) for a in heavy})
         target = Target(
             tally=Tally(sum([_CODES[z] for z in elements]), sum(protons)),
             near=sum(second),
             whole=_digest(colours),
-            size=len(elements),
+            size=len(heavy),
         )
-        known = Summary(protons, first, second, tuple(colours.values()), target)
+        everywhere = tuple(colours.get(a, 0) for a in range(len(elements)))
+        known = Summary(protons, first, second, everywhere, target)
         graph.memo["skeleton"] = known
     return known  # type: ignore[return-value]
 

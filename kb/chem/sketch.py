@@ -66,7 +66,12 @@ class Sketch:
     def change_hydrogens(self, atom: int, by: int) -> None:
         """Add or take hydrogens."""
         here = self.mol.GetAtomWithIdx(atom)
-        here.SetNumExplicitHs(max(here.GetNumExplicitHs() + by, 0))
+        if by < 0 and here.GetNumExplicitHs() == 0:
+            heavy_hydrogen = next((n.GetIdx() for n in here.GetNeighbors() if n.GetAtomicNum() == 1), None)
+            if heavy_hydrogen is not None:
+                self.mol.RemoveBond(atom, heavy_hydrogen)
+            return
+        here.SetNumExplicitHs(here.GetNumExplicitHs() + by)
 
     def cap(self, atom: int) -> None:
         """Close an open place left by a cut: an anion is what departs, so it takes up its proton."""
@@ -92,7 +97,7 @@ class Sketch:
             pass
         elif here.GetFormalCharge() < 0:
             here.SetFormalCharge(here.GetFormalCharge() + 1)
-        elif here.GetNumExplicitHs():
+        elif here.GetNumExplicitHs() or any(n.GetAtomicNum() == 1 for n in here.GetNeighbors()):
             self.change_hydrogens(nucleophile, -1)
             self._shed_proton(here)
         elif not self._relay_proton(nucleophile):

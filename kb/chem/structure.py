@@ -79,7 +79,7 @@ def check_text(text: str) -> str:
     """Return the text without outer blanks, or refuse it.
 
     Raises:
-        StructureError: when it is empty, too long, or carries control characters.
+        StructureError: when it is empty, too long, or carries control characters or others than ASCII.
     """
     if len(text) > MAX_TEXT_LENGTH:
         raise StructureError(
@@ -96,6 +96,13 @@ def check_text(text: str) -> str:
     stripped = text.strip()
     if not stripped:
         raise StructureError("There is no structure: the text is empty.", "Type or paste a SMILES.", text)
+    strange = next((c for c in stripped if not c.isascii()), None)
+    if strange is not None:
+        raise StructureError(
+            f"The text holds the character U+{ord(strange):04X}, which no SMILES uses.",
+            "Use plain letters, digits and signs; a minus is a hyphen.",
+            make_visible(stripped),
+        )
     return stripped
 
 
@@ -110,8 +117,9 @@ def parse_molecule(text: str, *, keep_hydrogens: bool = False) -> Chem.Mol:
         StructureError: when it is no SMILES, or breaks a rule of valence or aromaticity; the sentence names the atom.
     """
     stripped = check_text(text)
-    smiles, _, rest = stripped.partition(" ")
-    if rest.strip() and not rest.strip().startswith("|"):
+    smiles, *others = stripped.split(None, 1)
+    rest = others[0] if others else ""
+    if rest and not rest.startswith("|"):
         raise StructureError(
             f"'{make_visible(stripped)}' holds a blank, so it is no single SMILES.",
             "Give the structure alone, without a name behind it.",
@@ -122,7 +130,7 @@ def parse_molecule(text: str, *, keep_hydrogens: bool = False) -> Chem.Mol:
     params.sanitize = True  # type: ignore[assignment]
     with rdBase.BlockLogs():
         try:
-            mol = Chem.MolFromSmiles(stripped if rest.strip() else smiles, params)
+            mol = Chem.MolFromSmiles(f"{smiles} {rest}" if rest else smiles, params)
         except (ValueError, RuntimeError) as problem:
             raise StructureError(
                 f"'{make_visible(smiles)}' cannot be read as SMILES.", "Check the text.", make_visible(smiles)
@@ -142,9 +150,10 @@ def _explain(smiles: str) -> StructureError:
     except (ValueError, RuntimeError):
         raw = None
     if raw is None:
-        return StructureError(
-            f"'{shown}' is not valid SMILES.", "Check brackets, ring closures and element symbols.", shown
-        )
+        hint = "Check brackets, ring closures and element symbols."
+        if re.search(r"\[R\d*\]|^R\d*[^a-z]", smiles):
+            hint = "Write an R-group as an attachment point, *."
+        return StructureError(f"'{shown}' is not valid SMILES.", hint, shown)
     problems = Chem.DetectChemistryProblems(raw)
     if problems:
         what = problems[0].Message().rstrip(".").replace("#", "number ")

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from kb.chem.centre import is_diazo_carbon
 from kb.chem.molgraph import Molgraph
 
 
@@ -72,6 +73,8 @@ def _carbon(graph: Molgraph, atom: int) -> list[TransferSite]:
             if graph.elements[n] in (9, 17, 35, 53, 8, 16, 7, 5) and not graph.aromatic[n]:
                 found.append(_site(graph, atom, n, "substitution at an aromatic carbon", cost=_aryl_cost(graph, n)))
         return found
+    if is_diazo_carbon(graph, atom):
+        return []
     oxo = [n for n, code in bonds.items() if code == 2 and graph.elements[n] in (7, 8, 16)]
     if oxo:
         for n, code in bonds.items():
