@@ -67,7 +67,7 @@ def parse_query(text: str, *, ignore_stereo: bool = False) -> StructureQuery:
         raise QueryError("The query holds no atoms.", "Draw or type at least one.", text)
     mol = Chem.MergeQueryHs(mol)
     mol.UpdatePropertyCache(strict=False)
-    Chem.FastFindRings(mol)
+    Chem.GetSymmSSSR(mol)
     _check_size(text, mol)
     return StructureQuery(
         text=text,
@@ -81,7 +81,7 @@ def parse_query(text: str, *, ignore_stereo: bool = False) -> StructureQuery:
 def query_of_fragment(mol: Chem.Mol, text: str) -> StructureQuery:
     """Wrap a query that the program itself made, say a part of a transformation; it is checked alike."""
     mol.UpdatePropertyCache(strict=False)
-    Chem.FastFindRings(mol)
+    Chem.GetSymmSSSR(mol)
     _check_size(text, mol)
     root = next((a.GetIdx() for a in mol.GetAtoms() if a.GetAtomMapNum() == ROOT_MAP), None)
     return StructureQuery(text=text, mol=mol, root=root, is_loose=count_loose(mol) >= LOOSE_ATOMS)

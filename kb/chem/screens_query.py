@@ -26,6 +26,8 @@ from kb.chem.screens_keys import (
     KEY_ANY_CYCLE,
     MAX_CYCLE,
     MAX_NEIGHBOURS,
+    MAX_PAIR_BONDS,
+    NOT_IN_RING,
     AtomType,
     TypedBond,
     bond_kind,
@@ -33,13 +35,19 @@ from kb.chem.screens_keys import (
     key_bonds,
     key_count,
     key_cycle,
+    key_link,
+    key_pair,
+    key_reach,
     key_ring_atom,
     key_ring_bond,
     key_types,
 )
+from kb.chem.screens_rings import small_cycles
 
 MAX_CHOICES = 48
 """Combinations of alternatives tried around one atom."""
+MAX_CONNECTIONS = 15
+"""Connections of a neighbour that structures keep apart; more are not asked for."""
 MAX_MAKE_UPS = 32
 """Different make-ups of one ring that are asked for; more, and its size alone is."""
 MAX_DEPTH = 6
@@ -81,10 +89,14 @@ def ask_of(mol: Chem.Mol, depth: int = 0) -> AllOf:
     bonds = _bonds(mol, rings)
     asks: list[Ask] = []
     for atom, alternatives in enumerate(traits):
-        around = [(bond, types_of(traits[other])) for bond, other in bonds[atom]]
+        around = [(bond, traits[other]) for bond, other in bonds[atom]]
         asks.append(_one_of(_star(trait, around, atom in in_ring, depth) for trait in alternatives))
-    asks += _ring_bonds(bonds, traits)
-    asks += [_cycle(ring, traits) for ring in rings if len(ring) <= MAX_CYCLE]
+    for atom, joined in enumerate(bonds):
+        for bond, other in joined:
+            if other > atom:
+                asks += _bonded(atom, other, bond, traits, bonds)
+    cycles = small_cycles(mol, tuple(rings))
+    asks += [_cycle(ring, traits) for ring in (rings if cycles is None else cycles) if len(ring) <= MAX_CYCLE]
     asks += _counts(traits, bonds)
     return AllOf(tuple(_flat(asks)))
 
@@ -123,6 +135,12 @@ def _one_of(parts: Iterable[Ask]) -> Ask:
     return distinct[0] if len(distinct) == 1 else OneOf(tuple(distinct))
 
 
+def _all_of(parts: Iterable[Ask]) -> Ask:
+    """Return a conjunction, as its one part where it has but one."""
+    flat = _flat(parts)
+    return flat[0] if len(flat) == 1 else AllOf(tuple(flat))
+
+
 def _flat(asks: Iterable[Ask]) -> list[Ask]:
     """Return the parts of a conjunction without nesting or repeats."""
     flat: dict[Ask, None] = {}
@@ -134,8 +152,8 @@ def _flat(asks: Iterable[Ask]) -> list[Ask]:
 
 # ------------------------------------------------------------------------------------------- stars
 
-_Around: TypeAlias = list[tuple[BondTrait, tuple[AtomType, ...]]]
-"""The bonds of an atom, each with the types that its other end admits."""
+_Around: TypeAlias = list[tuple[BondTrait, tuple[Trait, ...]]]
+"""The bonds of an atom, each with the alternatives of its other end."""
 
 
 def _star(trait: Trait, around: _Around, is_ring_atom: bool, depth: int) -> Ask:
@@ -143,17 +161,16 @@ def _star(trait: Trait, around: _Around, is_ring_atom: bool, depth: int) -> Ask:
     asks: list[Ask] = [_inner(text, depth) for text in trait.inner]
     choices = []
     for centre in trait.types:
-        parts: list[Ask] = [_by_type(centre, around), _by_bond(centre, trait, around)]
+        parts = [_by_type(centre, around), _by_bond(centre, trait, around), _by_reach(centre, around)]
         if trait.smallest_ring is not None:
-            parts.append(key_ring_atom(centre, trait.smallest_ring))
+            parts.append(_all_of(key_ring_atom(centre, trait.smallest_ring)))
         elif is_ring_atom or trait.in_ring:
-            parts.append(key_ring_atom(centre, 0))
+            parts.append(_all_of(key_ring_atom(centre, 0)))
         elif trait.in_ring is False:
-            parts.append(key_ring_atom(centre, -1))
-        choices.append(AllOf(tuple(_flat(parts))))
+            parts.append(_all_of(key_ring_atom(centre, NOT_IN_RING)))
+        choices.append(_all_of(parts))
     asks.append(_one_of(choices))
-    flat = _flat(asks)
-    return flat[0] if len(flat) == 1 else AllOf(tuple(flat))
+    return _all_of(asks)
 
 
 def _inner(text: str, depth: int) -> Ask:
@@ -163,45 +180,56 @@ def _inner(text: str, depth: int) -> Ask:
     if inner is None:
         return NOTHING
     inner.UpdatePropertyCache(strict=False)
-    Chem.FastFindRings(inner)
+    Chem.GetSymmSSSR(inner)
     return ask_of(inner, depth + 1)
 
 
 def _by_type(centre: AtomType, around: _Around) -> Ask:
-    options = [list(types) for _, types in around if types]
+    options = [list(types) for _, other in around if (types := types_of(other))]
     return _one_of(
-        AllOf(tuple(dict.fromkeys(key_types(centre, part) for part in _parts(chosen))))
-        for chosen in _choices(options)
+        _all_of(bit for part in _parts(chosen) for bit in key_types(centre, part)) for chosen in _choices(options)
     )
 
 
 def _by_bond(centre: AtomType, trait: Trait, around: _Around) -> Ask:
-    options = [found for bond, types in around if (found := _typed_bonds(centre, bond, types))]
-    asked = [
-        (what, value)
-        for what, value in (
-            ("H", trait.hydrogens),
-            ("X", trait.connections),
-            ("D", trait.degree),
-            ("q", trait.charge or None),
-        )
-        if value is not None
-    ]
+    options = [found for bond, other in around if (found := _typed_bonds(centre, bond, types_of(other)))]
+    asked = [(what, value) for what, value in _attributes(trait) if what != "q" or value]
     return _one_of(
-        AllOf(
-            tuple(
-                dict.fromkeys(
-                    bit
-                    for part in _parts(chosen)
-                    for bit in (
-                        key_bonds(centre, part),
-                        *(key_attribute(what, value, centre, part) for what, value in asked),
-                    )
-                )
-            )
+        _all_of(
+            bit
+            for part in _parts(chosen)
+            for bits in (key_bonds(centre, part), *(key_attribute(what, value, centre, part) for what, value in asked))
+            for bit in bits
         )
         for chosen in _choices(options)
     )
+
+
+def _by_reach(centre: AtomType, around: _Around) -> Ask:
+    """Return what the connections of the neighbours ask; two of them at least must be known."""
+    options = []
+    for bond, other in around:
+        known = [t.connections for t in other]
+        if all(number is not None and number <= MAX_CONNECTIONS for number in known):
+            found = [
+                (*typed, trait.connections)
+                for trait in other
+                for typed in _typed_bonds(centre, bond, trait.types)
+                if trait.connections is not None
+            ]
+            if found:
+                options.append(found)
+    if len(options) < 2:
+        return NOTHING
+    return _one_of(
+        _all_of(bit for part in _parts(chosen) if len(part) > 1 for bit in key_reach(centre, part))
+        for chosen in _choices(options)
+    )
+
+
+def _attributes(trait: Trait) -> list[tuple[str, int]]:
+    named = (("H", trait.hydrogens), ("X", trait.connections), ("D", trait.degree), ("q", trait.charge))
+    return [(what, value) for what, value in named if value is not None]
 
 
 def _typed_bonds(centre: AtomType, bond: BondTrait, types: tuple[AtomType, ...]) -> list[TypedBond]:
@@ -235,9 +263,9 @@ def _size(options: list[list[_T]]) -> int:
     return size
 
 
-def _parts(chosen: tuple[_T, ...]) -> Iterator[tuple[_T, ...]]:
+def _parts(chosen: tuple[_T, ...], most: int = MAX_NEIGHBOURS) -> Iterator[tuple[_T, ...]]:
     """Yield every sub-multiset that structures set bits for; the smaller ones guard against shared bits."""
-    for size in range(min(MAX_NEIGHBOURS, len(chosen)), -1, -1):
+    for size in range(min(most, len(chosen)), -1, -1):
         yield from set(combinations(chosen, size))
 
 
@@ -260,29 +288,87 @@ def _bonds(mol: Chem.Mol, rings: list[tuple[int, ...]]) -> _Bonds:
     return bonds
 
 
-def _ring_bonds(bonds: _Bonds, traits: list[tuple[Trait, ...]]) -> Iterator[Ask]:
-    for atom, around in enumerate(bonds):
-        for bond, other in around:
-            if other > atom and bond.in_ring is not None and bond.orders is not None:
-                ones, others = types_of(traits[atom]), types_of(traits[other])
-                if ones and others and len(ones) * len(others) <= MAX_CHOICES:
-                    yield _one_of(
-                        key_ring_bond(bond_kind(one, order, (element, aromatic)), bond.in_ring)
-                        for one in ones
-                        for order, element, aromatic in _typed_bonds(one, bond, others)
-                    )
+def _bonded(
+    atom: int, other: int, bond: BondTrait, traits: list[tuple[Trait, ...]], bonds: _Bonds
+) -> Iterator[Ask]:
+    """Yield what a bond asks: its ring membership, what is known of both ends, and their other neighbours."""
+    if bond.orders is None:
+        return
+    ends = [(one, two) for one in traits[atom] for two in traits[other]]
+    if not all(one.types and two.types for one, two in ends) or len(ends) > MAX_CHOICES:
+        return
+    joined = [
+        (one, end, order, (element, aromatic), two)
+        for one, two in ends
+        for end in one.types
+        for order, element, aromatic in _typed_bonds(end, bond, two.types)
+    ]
+    if bond.in_ring is not None:
+        yield _one_of(
+            _all_of(key_ring_bond(bond_kind(end, order, far), bool(bond.in_ring)))
+            for _, end, order, far, _ in joined
+        )
+    links = [
+        _all_of(
+            bit
+            for what, value in _attributes(one)
+            for further, number in _attributes(two)
+            if what in _LINKED and further in _LINKED
+            for bit in key_link((end, what, value), order, (far, further, number))
+        )
+        for one, end, order, far, two in joined
+    ]
+    yield _one_of(links)
+    kinds = dict.fromkeys((end, order, far) for _, end, order, far, _ in joined)
+    yield _one_of(
+        _pair(end, order, far, _others(end, bonds[atom], other, traits), _others(far, bonds[other], atom, traits))
+        for end, order, far in kinds
+    )
+
+
+_LINKED = ("H", "X")
+
+
+def _others(
+    centre: AtomType, around: list[tuple[BondTrait, int]], but: int, traits: list[tuple[Trait, ...]]
+) -> list[list[TypedBond]]:
+    """Return the options of every bond of an atom but one."""
+    return [
+        found
+        for bond, far in around
+        if far != but and (found := _typed_bonds(centre, bond, types_of(traits[far])))
+    ]
+
+
+def _pair(
+    one: AtomType, order: int, other: AtomType, ones: list[list[TypedBond]], others: list[list[TypedBond]]
+) -> Ask:
+    near, far = _choices(ones), _choices(others)
+    if len(near) * len(far) > MAX_CHOICES:
+        return NOTHING
+    return _one_of(
+        _all_of(
+            bit
+            for part in _parts(chosen, MAX_PAIR_BONDS)
+            for rest in _parts(further, MAX_PAIR_BONDS)
+            if part and rest
+            for bit in key_pair((one, part), order, (other, rest))
+        )
+        for chosen in near
+        for further in far
+    )
 
 
 def _cycle(ring: tuple[int, ...], traits: list[tuple[Trait, ...]]) -> Ask:
     """Return what a ring of the query asks: a cycle of its size and, where that is known, its make-up."""
-    asks: list[Ask] = [key_cycle(len(ring))]
+    asks: list[Ask] = [_all_of(key_cycle(len(ring)))]
     options = [types_of(traits[atom]) for atom in ring]
     if all(options):
         by_type = _make_ups([list(types) for types in options])
         by_element = _make_ups([sorted({element for element, _ in types}) for types in options])
         for found in (by_type, by_element):
-            asks.append(_one_of(key_cycle(len(ring), make_up) for make_up in found))
-    return OneOf((KEY_ANY_CYCLE, AllOf(tuple(_flat(asks)))))
+            asks.append(_one_of(_all_of(key_cycle(len(ring), make_up)) for make_up in found))
+    return OneOf((KEY_ANY_CYCLE, _all_of(asks)))
 
 
 def _make_ups(options: list[list[_T]]) -> set[tuple[_T, ...]]:
@@ -296,14 +382,15 @@ def _make_ups(options: list[list[_T]]) -> set[tuple[_T, ...]]:
 
 
 def _counts(traits: list[tuple[Trait, ...]], bonds: _Bonds) -> Iterator[Ask]:
-    """Yield how many atoms of a type or element, and bonds of a kind, any match must have."""
+    """Yield how many atoms, of a type or element or any, and bonds of a kind, any match must have."""
     types = [types_of(alternatives) for alternatives in traits]
     certain = [found[0] if len(found) == 1 else None for found in types]
     elements = [found[0][0] if found and len({z for z, _ in found}) == 1 else None for found in types]
-    for atom_type, number in Counter(t for t in certain if t is not None).items():
-        yield from (key_count(atom_type, step) for step in COUNT_STEPS if step <= number)
-    for element, number in Counter(z for z in elements if z is not None).items():
-        yield from (key_count(("Z", element), step) for step in COUNT_STEPS if step <= number)
+    things: list[tuple[tuple[object, ...], int]] = [((), len(traits))]
+    things += Counter(t for t in certain if t is not None).items()
+    things += [(("Z", z), number) for z, number in Counter(z for z in elements if z is not None).items()]
+    for thing, number in things:
+        yield from (bit for step in COUNT_STEPS if step <= number for bit in key_count(thing, step))
     kinds: Counter[tuple[AtomType, int, AtomType]] = Counter()
     for atom, around in enumerate(bonds):
         for bond, other in around:
@@ -313,4 +400,4 @@ def _counts(traits: list[tuple[Trait, ...]], bonds: _Bonds) -> Iterator[Ask]:
                 if len(found) == 1:
                     kinds[bond_kind(one, found[0][0], end)] += 1
     for kind, number in kinds.items():
-        yield from (key_count(kind, step) for step in BOND_COUNT_STEPS if step <= number)
+        yield from (bit for step in BOND_COUNT_STEPS if step <= number for bit in key_count(kind, step))

@@ -1,104 +1,98 @@
-"""Which cycles a molecule has, and which atoms and bonds are in rings, for the screens.
+"""Which cycles a molecule has, for the screens.
 
 A query ring must be found in every structure that holds such a cycle, whether or not it is one of the
 smallest rings: cyclohexane matches norbornane, whose smallest rings are two five-membered ones. Every cycle
-is a sum (symmetric difference of bonds) of rings of a basis, so all sums within each fused system are taken;
-sums that are no simple cycle only add a bit too many. Where that is too much work, or RDKit's rings are no
-full basis, the molecule is said to have any cycle.
+is a sum (symmetric difference of bonds) of rings of a basis, so sums within each fused system are taken;
+sums that are no simple cycle only add a bit too many. Cycles beyond MAX_CYCLE atoms have no bits and are
+left out. Where the sums are too many, or RDKit's rings are no full basis (bonds to metals are not counted
+as ring bonds), the molecule is said to have any cycle.
+
+The usual case is quick: rings that share one bond at most, in no circle of rings, add up to cycles of
+size a + b - 2 and more, which is beyond MAX_CYCLE unless the rings are small.
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from itertools import combinations
+from typing import TypeAlias
 
 from rdkit import Chem
 
-from kb.chem.screens_keys import MAX_CYCLE, AtomType
+from kb.chem.screens_keys import MAX_CYCLE
 
 MAX_SUMMED_RINGS = 6
 """Rings of one fused system whose sums are all enumerated (63 at most)."""
+_MANY_RINGS = 12
+"""Beyond this the quick test of all pairs is not worth making."""
+
+Cycle: TypeAlias = tuple[int, ...]
+"""The atoms of a cycle, in no order."""
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class RingFacts:
-    """What the screens need to know of the rings.
-
-    Attributes:
-        smallest: atom to the size of its smallest ring; atoms outside rings are missing.
-        bonds: (lower atom, higher atom) of every bond in a ring.
-        cycles: (size, sorted atom types) of every cycle up to MAX_CYCLE atoms.
-        any_cycle: the list of cycles may be short, so no query may rely on it.
-        rank: independent rings in all.
-    """
-
-    smallest: dict[int, int]
-    bonds: frozenset[tuple[int, int]]
-    cycles: frozenset[tuple[int, tuple[AtomType, ...]]]
-    any_cycle: bool
-    rank: int
-
-
-NO_RINGS = RingFacts(smallest={}, bonds=frozenset(), cycles=frozenset(), any_cycle=False, rank=0)
-
-
-def find_rings(mol: Chem.Mol, types: list[AtomType]) -> RingFacts:
-    """Return the ring facts of a molecule whose rings RDKit has perceived.
+def small_cycles(mol: Chem.Mol, atom_rings: tuple[Cycle, ...]) -> list[Cycle] | None:
+    """Return every cycle of MAX_CYCLE atoms or fewer (perhaps a few sums that are none); None = it may have any.
 
     Args:
-        mol: the molecule.
-        types: its atom types, by atom number.
+        mol: the molecule, rings perceived.
+        atom_rings: its rings by atoms.
     """
-    info = mol.GetRingInfo()
-    atom_rings = info.AtomRings()
-    if not atom_rings:
-        return NO_RINGS
-    bond_rings = info.BondRings()
-    smallest: dict[int, int] = {}
-    bonds = set()
-    for ring in atom_rings:
-        size = len(ring)
-        before = ring[-1]
-        for atom in ring:
-            if size < smallest.get(atom, 1 << 30):
-                smallest[atom] = size
-            bonds.add((atom, before) if atom < before else (before, atom))
-            before = atom
+    if len(atom_rings) < mol.GetNumBonds() - mol.GetNumAtoms() + len(Chem.GetMolFrags(mol)):
+        return None
+    rings = [ring for ring in atom_rings if len(ring) <= MAX_CYCLE]
+    if len(atom_rings) == 1:
+        return rings
+    if len(atom_rings) <= _MANY_RINGS:
+        fused = _simple_fusions(atom_rings)
+        if fused is not None:
+            return rings + fused
+    return _all_sums(mol)
+
+
+def _simple_fusions(atom_rings: tuple[Cycle, ...]) -> list[Cycle] | None:
+    """Return the small cycles round two rings where rings share one bond at most, in no circle; None otherwise."""
+    sets = [set(ring) for ring in atom_rings]
+    group = list(range(len(sets)))
+    found: list[Cycle] = []
+    fused = False
+    for a, b in combinations(range(len(sets)), 2):
+        one, other = sets[a], sets[b]
+        if one.isdisjoint(other):
+            continue
+        shared = len(one & other)
+        if shared == 1:
+            continue
+        if shared > 2 or group[a] == group[b]:
+            return None
+        fused = True
+        old, new = group[b], group[a]
+        group = [new if g == old else g for g in group]
+        if len(one) + len(other) - 2 <= MAX_CYCLE:
+            found.append(tuple(one | other))
+    if fused and sum(sorted(map(len, sets))[:3]) - 4 <= MAX_CYCLE and len(sets) > 2:
+        return None
+    return found
+
+
+def _all_sums(mol: Chem.Mol) -> list[Cycle] | None:
+    bond_rings = mol.GetRingInfo().BondRings()
     systems = _fused_systems(bond_rings)
-    cycles = set()
     rank = 0
-    any_cycle = False
+    found: set[Cycle] = set()
     for system in systems:
-        if len(system) == 1:
-            rank += 1
-            ring = atom_rings[system[0]]
-            if len(ring) <= MAX_CYCLE:
-                cycles.add((len(ring), tuple(sorted([types[a] for a in ring]))))
-            continue
-        rank += _rank([bond_rings[r] for r in system])
         if len(system) > MAX_SUMMED_RINGS:
-            any_cycle = True
-            continue
-        cycles |= _sums(mol, [bond_rings[r] for r in system], types)
+            return None
+        rank += _rank(system)
+        found |= _sums(mol, system)
     if rank != mol.GetNumBonds() - mol.GetNumAtoms() + len(Chem.GetMolFrags(mol)):
-        any_cycle = True
-    return RingFacts(
-        smallest=smallest,
-        bonds=frozenset(bonds),
-        cycles=frozenset(cycles),
-        any_cycle=any_cycle,
-        rank=rank,
-    )
+        return None
+    return list(found)
 
 
-def _fused_systems(bond_rings: tuple[tuple[int, ...], ...]) -> list[list[int]]:
-    """Group ring numbers by shared bonds; a spiro atom shares no bond, so no cycle runs through both."""
-    if len(bond_rings) == 1:
-        return [[0]]
-    systems: list[tuple[set[int], list[int]]] = []
-    for number, ring in enumerate(bond_rings):
-        bonds = set(ring)
-        members = [number]
+def _fused_systems(bond_rings: tuple[tuple[int, ...], ...]) -> list[list[frozenset[int]]]:
+    """Group rings by shared bonds; a spiro atom shares no bond, so no cycle runs through both."""
+    systems: list[tuple[frozenset[int], list[frozenset[int]]]] = []
+    for ring in map(frozenset, bond_rings):
+        bonds, members = ring, [ring]
         apart = []
         for other_bonds, other_members in systems:
             if bonds.isdisjoint(other_bonds):
@@ -110,7 +104,7 @@ def _fused_systems(bond_rings: tuple[tuple[int, ...], ...]) -> list[list[int]]:
     return [members for _, members in systems]
 
 
-def _rank(rings: list[tuple[int, ...]]) -> int:
+def _rank(rings: list[frozenset[int]]) -> int:
     """Return how many rings are independent, over sums of bonds."""
     basis: dict[int, int] = {}
     for ring in rings:
@@ -124,22 +118,16 @@ def _rank(rings: list[tuple[int, ...]]) -> int:
     return len(basis)
 
 
-def _sums(
-    mol: Chem.Mol, rings: list[tuple[int, ...]], types: list[AtomType]
-) -> set[tuple[int, tuple[AtomType, ...]]]:
-    """Return size and atom types of every sum of the rings."""
-    ends = {}
-    for number in {b for ring in rings for b in ring}:
-        bond = mol.GetBondWithIdx(number)
-        ends[number] = (bond.GetBeginAtomIdx(), bond.GetEndAtomIdx())
-    sets = [frozenset(ring) for ring in rings]
+def _sums(mol: Chem.Mol, rings: list[frozenset[int]]) -> set[Cycle]:
+    """Return the atoms of every small sum of the rings."""
     found = set()
-    for size in range(1, len(sets) + 1):
-        for chosen in combinations(sets, size):
+    for size in range(1, len(rings) + 1):
+        for chosen in combinations(rings, size):
             bonds: frozenset[int] = frozenset()
             for ring in chosen:
                 bonds ^= ring
             if 3 <= len(bonds) <= MAX_CYCLE:
-                atoms = {a for b in bonds for a in ends[b]}
-                found.add((len(bonds), tuple(sorted([types[a] for a in atoms]))))
+                ends = [mol.GetBondWithIdx(b) for b in bonds]
+                atoms = {b.GetBeginAtomIdx() for b in ends} | {b.GetEndAtomIdx() for b in ends}
+                found.add(tuple(sorted(atoms)))
     return found

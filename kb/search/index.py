@@ -4,8 +4,8 @@ It knows structures by the book's `structure_id` and nothing of runs. Screens dr
 decides on the rest; a screen never decides alone, except that it says no. It refuses blobs of another
 recipe (`IndexStale`): `SCREEN_RECIPE` is what they must have been made by.
 
-Memory beside the stored molecules: three sets of bit planes (`AUGMENTED_BITS`, `PATTERN_BITS`,
-`MORGAN_BITS`), an id of 8 bytes and a bit count of 2 for each structure; DEVELOPERS.md has the figure.
+Memory beside the stored molecules: two sets of bit planes (`AUGMENTED_BITS`, `MORGAN_BITS`), an id of 8 bytes and a
+bit count of 2 for each structure, 778 bytes in all.
 """
 
 from __future__ import annotations
@@ -18,7 +18,7 @@ from typing import TYPE_CHECKING, Protocol
 import numpy as np
 from rdkit import Chem
 
-from kb.chem.fingerprint import MORGAN_BITS, PATTERN_BITS, bits_of, pack_morgan, pack_pattern
+from kb.chem.fingerprint import MORGAN_BITS, bits_of, pack_morgan
 from kb.chem.query import StructureQuery
 from kb.chem.screens import SCREEN_RECIPE, encode_mol
 from kb.chem.screens_keys import AUGMENTED_BITS, KEY_UNRULY
@@ -40,8 +40,6 @@ class Blobs(Protocol):
     def mol_binary(self) -> bytes | None: ...
     @property
     def augmented(self) -> bytes | None: ...
-    @property
-    def pattern(self) -> bytes | None: ...
     @property
     def morgan(self) -> bytes | None: ...
 
@@ -67,7 +65,6 @@ class StructureIndex:
     def __init__(self, *, reserve: int = 0, threads: int | None = None) -> None:
         self.molecules = MoleculeStore(threads)
         self._augmented = BitPlanes(AUGMENTED_BITS, reserve)
-        self._pattern = BitPlanes(PATTERN_BITS, reserve)
         self._morgan = BitPlanes(MORGAN_BITS, reserve)
         self._ids = np.zeros(max(reserve, 1), np.int64)
         self._bit_counts = np.zeros(max(reserve, 1), np.uint16)
@@ -88,7 +85,7 @@ class StructureIndex:
     @property
     def nbytes(self) -> int:
         """Return the bytes that the index holds beyond the stored molecules."""
-        return self._augmented.nbytes + self._pattern.nbytes + self._morgan.nbytes + len(self) * 10
+        return self._augmented.nbytes + self._morgan.nbytes + len(self) * 10
 
     # Filling
 
@@ -97,7 +94,6 @@ class StructureIndex:
         ids: Sequence[int],
         binaries: Sequence[bytes],
         augmented: Sequence[bytes],
-        pattern: Sequence[bytes],
         morgan: Sequence[bytes],
     ) -> None:
         """Add structures by their blobs, in order.
@@ -108,8 +104,8 @@ class StructureIndex:
         n = len(ids)
         if not n:
             return
-        packed = [b"".join(part) for part in (augmented, pattern, morgan)]
-        widths = (AUGMENTED_BITS, PATTERN_BITS, MORGAN_BITS)
+        packed = [b"".join(part) for part in (augmented, morgan)]
+        widths = (AUGMENTED_BITS, MORGAN_BITS)
         if any(len(p) != n * width // 8 for p, width in zip(packed, widths, strict=True)):
             raise IndexStale(
                 "Structures in the book were encoded by another recipe.", "Rebuild them: `sidepath migrate`."
@@ -118,10 +114,9 @@ class StructureIndex:
             start = len(self)
             self._make_room(start + n)
             self._ids[start : start + n] = ids
-            self._bit_counts[start : start + n] = popcounts(packed[2], MORGAN_BITS // 8)
+            self._bit_counts[start : start + n] = popcounts(packed[1], MORGAN_BITS // 8)
             self.molecules.append(binaries)
-            self._pattern.append(packed[1])
-            self._morgan.append(packed[2])
+            self._morgan.append(packed[1])
             self._augmented.append(packed[0])
             added = self._ids[start : start + n]
             self._is_ascending &= int(added[0]) > self._last_id and bool((np.diff(added) > 0).all())
@@ -135,7 +130,7 @@ class StructureIndex:
         usable = []
         missing = 0
         for one in structures:
-            if None in (one.mol_binary, one.augmented, one.pattern, one.morgan):
+            if None in (one.mol_binary, one.augmented, one.morgan):
                 missing += 1
             else:
                 usable.append(one)
@@ -143,7 +138,6 @@ class StructureIndex:
             [s.structure_id for s in usable],
             [s.mol_binary or b"" for s in usable],
             [s.augmented or b"" for s in usable],
-            [s.pattern or b"" for s in usable],
             [s.morgan or b"" for s in usable],
         )
         return missing
@@ -155,7 +149,6 @@ class StructureIndex:
             ids,
             [b.mol_binary for b in blobs],
             [b.augmented for b in blobs],
-            [b.pattern for b in blobs],
             [b.morgan for b in blobs],
         )
 
@@ -184,9 +177,6 @@ class StructureIndex:
             if only is not None:
                 words &= words_of(np.pad(only, (0, len(self) - len(only))))
             self._narrow(words, ask_of(query.mol))
-            if words.any():
-                for bit in bits_of(pack_pattern(query.mol)):
-                    words &= self._pattern.plane(int(bit))
             rows = rows_of(words, len(self))
             if not query.is_loose:
                 return rows, np.zeros(len(rows), bool)
@@ -253,13 +243,14 @@ class StructureIndex:
             with_stereo: False = stereo marks do not count, on either side.
         """
         smiles = _identity(mol, with_stereo)
+        blobs = encode_mol(mol)
         with self._lock:
             words = np.full(self._morgan.n_words, ~np.uint64(0))
-            for planes, packed in ((self._morgan, pack_morgan(mol)), (self._pattern, pack_pattern(mol))):
+            for planes, packed in ((self._morgan, blobs.morgan), (self._augmented, blobs.augmented)):
                 for bit in bits_of(packed):
                     words &= planes.plane(int(bit))
             rows = rows_of(words, len(self))
-            rows = rows[self._bit_counts[rows] == len(bits_of(pack_morgan(mol)))]
+            rows = rows[self._bit_counts[rows] == len(bits_of(blobs.morgan))]
         same = [row for row in rows.tolist() if _identity(self.molecules.get(row), with_stereo) == smiles]
         return np.array(same, np.int64)
 

@@ -248,5 +248,5 @@ def _rest_of(substrate: Chem.Mol, centre: int, lost: set[int]) -> StructureQuery
             query.ReplaceBond(added.GetIdx(), Chem.BondFromSmarts("~"))
     mol = query.GetMol()
     mol.UpdatePropertyCache(strict=False)
-    Chem.FastFindRings(mol)
+    Chem.GetSymmSSSR(mol)
     return StructureQuery(text="", mol=mol, root=place[centre], is_loose=True)

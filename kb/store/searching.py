@@ -32,7 +32,7 @@ _COMPONENTS = "SELECT t.run_key, t.role, t.name, t.smiles FROM component t"
 _SOLVENTS = "SELECT t.run_key, t.name, t.smiles FROM solvent t"
 _FAILURES = "SELECT t.run_key, t.mode FROM failure t"
 _PLACES = "SELECT t.run_key, t.role, t.position, t.structure_id FROM run_structure t"
-_STRUCTURES = """SELECT structure_id, recipe_id, mol_binary, augmented, pattern, morgan FROM structure
+_STRUCTURES = """SELECT structure_id, recipe_id, mol_binary, augmented, morgan FROM structure
     WHERE structure_id > :after ORDER BY structure_id LIMIT :batch"""
 
 
@@ -87,7 +87,7 @@ def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 8192) -
         recipe: what must have encoded them; "" = whatever did.
 
     Yields:
-        five columns: structure_id, mol_binary, augmented, pattern, morgan; structures without blobs are
+        four columns: structure_id, mol_binary, augmented, morgan; structures without blobs are
         left out.
 
     Raises:
