@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from kb.chem.centre import find_carbon_class
+from kb.chem.carbon import find_carbon_class
 from kb.chem.molgraph import Molgraph
 from kb.chem.nucleophile import is_acceptor
 from kb.vocabulary import CarbonClass

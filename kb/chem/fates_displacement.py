@@ -12,7 +12,8 @@ from dataclasses import dataclass
 
 from rdkit import Chem
 
-from kb.chem.centre import LeavingSite, find_leaving_sites, has_drawn_configuration
+from kb.chem.carbon import has_drawn_configuration
+from kb.chem.centre import LeavingSite, find_leaving_sites
 from kb.chem.facts import PossibleFate
 from kb.chem.molgraph import Molgraph
 from kb.chem.nucleophile import NucleophileSite, find_nucleophile_sites

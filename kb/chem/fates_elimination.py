@@ -9,7 +9,8 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from kb.chem.centre import LeavingSite, is_bridgehead
+from kb.chem.carbon import is_bridgehead
+from kb.chem.centre import LeavingSite
 from kb.chem.facts import PossibleFate
 from kb.chem.fates_displacement import depart
 from kb.chem.molgraph import Molgraph

@@ -8,8 +8,9 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 
+from kb.chem.carbon import is_bridgehead
 from kb.chem.cations import iter_shifts
-from kb.chem.centre import LeavingSite, is_bridgehead
+from kb.chem.centre import LeavingSite
 from kb.chem.facts import PossibleFate
 from kb.chem.fates_displacement import Attacker, arrive, depart
 from kb.chem.molgraph import Molgraph

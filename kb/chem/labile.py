@@ -12,7 +12,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from kb.chem.centre import is_diazo_carbon
+from kb.chem.carbon import is_diazo_carbon
 from kb.chem.molgraph import Molgraph
 from kb.chem.promoters import Promoters
 from kb.vocabulary import Fate

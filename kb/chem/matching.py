@@ -14,6 +14,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import replace
 
+from kb.chem.assumptions import landing_cost
 from kb.chem.balance import Losses, Workbench
 from kb.chem.labile import comes_off
 from kb.chem.match import Match
@@ -31,7 +32,6 @@ from kb.chem.openings import (
     find_transfers,
     find_transpositions,
     group_word,
-    landing_cost,
 )
 from kb.chem.skeleton import Edit, Target, skeleton_summary
 from kb.vocabulary import Fate
@@ -200,7 +200,7 @@ def _match(
         cost=opening.cost
         + len(losses)
         + unstated
-        + landing_cost(bench.graphs[opening.part], opening, nucleophile.word, bench.promoters),
+        + landing_cost(opening.fate, opening.group, nucleophile.word, bench.promoters),
         lost=tuple(g for _, g in losses),
         landing=(opening.part, opening.atom),
     )

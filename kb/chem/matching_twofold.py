@@ -8,10 +8,11 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 
+from kb.chem.assumptions import landing_cost
 from kb.chem.balance import Losses, Removal, Workbench
 from kb.chem.match import Match
 from kb.chem.nucleophile import NucleophileSite
-from kb.chem.openings import Opening, fills, landing_cost
+from kb.chem.openings import Opening, fills
 from kb.chem.skeleton import Edit, Target
 from kb.vocabulary import Fate
 
@@ -123,7 +124,6 @@ def _double_match(
     order = (Fate.SUBSTITUTION, Fate.ADDITION, Fate.OTHER)
     steps.sort(key=lambda s: (order.index(s[0].fate), s[0].cost, -s[0].rank))
     lead, lead_part, other, nucleophile = steps[0]
-    graph = bench.graphs
     by_ylide = any(
         o.fate is Fate.OTHER and (f, n.atom) == (lead_part, lead.atom) for o, _, f, n in steps if lead.site is not None
     )
@@ -137,7 +137,7 @@ def _double_match(
         cost=1
         + len(losses)
         + sum(
-            o.cost + landing_cost(graph[o.part], o, n.word, bench.promoters) + (not bench.is_stated(f))
+            o.cost + landing_cost(o.fate, o.group, n.word, bench.promoters) + (not bench.is_stated(f))
             for o, _, f, n in steps
         ),
         lost=tuple(g for _, g in losses),

@@ -10,12 +10,12 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
+from kb.chem.assumptions import departure_cost
 from kb.chem.balance import Removal, Workbench
-from kb.chem.cations import alkene_carbons, cation_score, is_conjugate_end, is_stabilised_cation, iter_shifts
+from kb.chem.cations import alkene_carbons, cation_score, is_conjugate_end, iter_shifts
 from kb.chem.centre import LeavingSite, find_leaving_sites
 from kb.chem.molgraph import Molgraph
 from kb.chem.nucleophile import NucleophileSite, is_acceptor
-from kb.chem.promoters import Promoters
 from kb.chem.skeleton import Cut
 from kb.chem.transfer import find_transfer_sites
 from kb.vocabulary import CarbonClass, Fate, LeavingGroup
@@ -138,23 +138,6 @@ def _released_from_ring(bench: Workbench, part: int, site: LeavingSite) -> Remov
             )
             return Removal(cuts, tally.elements, tally.protons)
     return None
-
-
-def departure_cost(graph: Molgraph, site: LeavingSite, promoters: Promoters) -> int:
-    """Return how much must be assumed for a group to depart: 0 by itself or made to, 1 needs a push, 2 rarely does."""
-    group = site.group
-    if site.leaves_unaided:
-        return 0
-    if group is LeavingGroup.HYDROXYL:
-        return 0 if promoters.makes_hydroxyl_leave else 1
-    if group is LeavingGroup.CARBOXYLATE:
-        eased = site.carbon_class in (CarbonClass.TERTIARY, CarbonClass.METHYL) or is_stabilised_cation(
-            graph, site.centre, site.leaving
-        )
-        return 0 if eased and (promoters.is_acidic or promoters.metal_catalyst or site.departs is None) else 1
-    if group in (LeavingGroup.FLUORIDE, LeavingGroup.NITRO, LeavingGroup.ALKOXIDE):
-        return 1
-    return 2
 
 
 def find_transpositions(bench: Workbench, displacements: list[Opening]) -> list[Opening]:
@@ -309,32 +292,6 @@ def find_transfers(bench: Workbench) -> list[Opening]:
                     )
                 )
     return found
-
-
-def landing_cost(graph: Molgraph, opening: Opening, word: str, promoters: Promoters) -> int:
-    """Return what must be assumed for this nucleophile at this opening, beyond the departure itself.
-
-    An ester from an acid and an alcohol, an alcohol from an ester and water, are acyl transfers unless something says
-    otherwise: taking them for displacements at the alkyl carbon costs 2.
-
-    Args:
-        graph: fragment of the opening.
-        opening: where the nucleophile lands.
-        word: class word of the nucleophile.
-        promoters: what else is in the flask.
-    """
-    if opening.fate is Fate.OTHER and promoters.mitsunobu and word in ("alcohol", "alkoxide"):
-        return 1
-    if opening.fate is Fate.OTHER or opening.group is None:
-        return 0
-    oxygen = ("carboxylate", "alcohol", "alkoxide", "water", "hydroxide", "phosphate_base", "sulfonate")
-    if opening.group is LeavingGroup.HYDROXYL and word in oxygen:
-        if word in ("alcohol", "alkoxide") and promoters.makes_hydroxyl_leave:
-            return 1
-        return 0 if promoters.mitsunobu and word == "carboxylate" else 2
-    if opening.group in (LeavingGroup.CARBOXYLATE, LeavingGroup.ALKOXIDE) and word in oxygen:
-        return 2
-    return 0
 
 
 def fills(nucleophile: NucleophileSite, opening: Opening, graph: Molgraph) -> bool:

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from kb.chem.centre import is_diazo_carbon
+from kb.chem.carbon import is_diazo_carbon
 from kb.chem.molgraph import Molgraph
 
 
