@@ -14,6 +14,7 @@ from collections.abc import Iterable, Mapping, Sequence
 from pathlib import Path
 from typing import Any
 
+from kb.errors import ImportFileError
 from kb.exchange.row_out import FIELDS_OUT, row_of
 from kb.exchange.safe_cells import guarded
 from kb.record.run import Run
@@ -42,9 +43,9 @@ EXAMPLE: Mapping[str, str] = {
     "method": "nmr",
     "isolated yield / %": "79",
     "verdict": "worked",
-    "note": "this row shows how to write a run; delete it",
+    "note": "small molecule first; the product wanted on the right, whatever came of it",
 }
-"""The example row of a template; `#` in front of it keeps it out of an import."""
+"""The example of a template, in a remark (CSV) or on a sheet of its own (XLSX)."""
 
 
 def write_csv(runs: Iterable[Run], path: Path, delimiter: str = ",") -> int:
@@ -65,7 +66,22 @@ def write_xlsx(runs: Iterable[Run], path: Path) -> int:
 
 
 def write_template(path: Path) -> None:
-    """Write an empty table with its headings and one example row that an import passes over."""
+    """Write an empty table with its headings and an example that an import passes over.
+
+    Raises:
+        ImportFileError: the ending is neither .csv nor .xlsx, or the file cannot be written.
+    """
+    if path.suffix.casefold() not in (".csv", ".xlsx"):
+        raise ImportFileError(f"{path.name} is no name for a template.", "Use .csv or .xlsx.", path.suffix)
+    try:
+        _write_template(path)
+    except OSError as error:
+        raise ImportFileError(
+            f"{path} cannot be written: {error.strerror}.", "Name another place.", str(path)
+        ) from error
+
+
+def _write_template(path: Path) -> None:
     headings = [name for name in FIELDS_OUT if name not in ("code", "uuid", "withdrawn")]
     if path.suffix.casefold() == ".xlsx":
         book, _ = _new_book("runs", headings)

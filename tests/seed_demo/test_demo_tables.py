@@ -152,6 +152,19 @@ def test_planted_members_are_there_with_their_mode_and_in_date_order(runs: dict[
         assert not set(cluster["tolerated"]) & set(cluster["members"])
 
 
+def test_a_preventable_member_has_an_earlier_one_that_was_no_hotter(runs: dict[str, Run]) -> None:
+    def heat_c(run: Run) -> float:
+        temperature = run.conditions.temperature
+        assert temperature is not None
+        return 80.0 if temperature.high_c is None else temperature.high_c
+
+    for cluster in PLANTED["cluster"]:
+        for ref in cluster["preventable"]:
+            late = runs[ref]
+            earlier = [runs[r] for r in cluster["members"] if runs[r].date < late.date]  # type: ignore[operator]
+            assert any(heat_c(run) <= heat_c(late) + 5 for run in earlier), (cluster["id"], ref)
+
+
 def test_planted_motifs_are_in_what_was_hit(runs: dict[str, Run]) -> None:
     for cluster in PLANTED["cluster"]:
         motif = Chem.MolFromSmarts(cluster["motif"])
