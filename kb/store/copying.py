@@ -16,7 +16,7 @@ from functools import partial
 from pathlib import Path
 from uuid import uuid4
 
-from kb.errors import Cancelled, StoreDamaged, StoreExists
+from kb.errors import Cancelled, StoreDamaged, StoreExists, StoreMissing
 from kb.progress import Progress, Silent
 from kb.store.engine import translated
 
@@ -31,23 +31,33 @@ def copy_book(source: Path, target: Path, progress: Progress | None = None) -> N
         StoreExists, StoreMissing, StoreDamaged, StoreRefused: as for `backup`.
     """
     refuse_taken(target)
-    progress = progress or Silent()
-    with _draft_beside(target) as draft, translated(source):
-        with closing(connect(source, "ro")) as read, closing(connect(draft, "rwc")) as write:
-            read.execute("BEGIN")  # one moment for the whole copy, or writers would make it start over and over
-            read.execute("SELECT count(*) FROM sqlite_master").fetchone()
-            read.backup(write, pages=PAGES_PER_STEP, progress=partial(_report, progress))
-            # one plain file, without a log of its own: it is switched back when it is opened as a book
-            write.execute("PRAGMA journal_mode=DELETE")
-            trouble = quick_trouble(write)
-        if trouble:
-            raise StoreDamaged(
-                f"The copy of {source} does not verify ({trouble}), so it was not kept.",
-                "Run `sidepath verify`; the book itself may be damaged.",
-                str(source),
-            )
-        _flush(draft)
-        put_in_place(draft, target)
+    with translated(source), closing(connect(source, "ro")) as read:
+        read.execute("BEGIN")  # one moment for the whole copy, or writers would make it start over and over
+        read.execute("SELECT count(*) FROM sqlite_master").fetchone()
+        with _draft_beside(target) as draft, translated(target):
+            with closing(connect(draft, "rwc")) as write:
+                _pour(read, write, source, progress or Silent())
+                trouble = quick_trouble(write)
+            if trouble:
+                raise StoreDamaged(
+                    f"The copy of {source} does not verify ({trouble}), so it was not kept.",
+                    "Run `sidepath verify`; the book itself may be damaged.",
+                    str(source),
+                )
+            _flush(draft)
+            put_in_place(draft, target)
+
+
+def _pour(read: sqlite3.Connection, write: sqlite3.Connection, source: Path, progress: Progress) -> None:
+    """Copy page by page into one plain file without a log of its own; it gets one when it is opened as a book."""
+    try:
+        read.backup(write, pages=PAGES_PER_STEP, progress=partial(_report, progress))
+    except sqlite3.DatabaseError as error:
+        if (error.sqlite_errorname or "").startswith(("SQLITE_CORRUPT", "SQLITE_NOTADB")):
+            with translated(source):  # it is the source that is damaged, not the target
+                raise
+        raise
+    write.execute("PRAGMA journal_mode=DELETE")
 
 
 def _report(progress: Progress, _status: int, remaining: int, total: int) -> None:
@@ -66,9 +76,11 @@ def quick_trouble(connection: sqlite3.Connection) -> str:
 
 
 def refuse_taken(path: Path) -> None:
-    """Raise StoreExists where something has that name."""
+    """Raise StoreExists where something has that name, StoreMissing where its folder is not there."""
     if path.exists() or path.is_symlink():
         raise StoreExists(f"{path} is there already.", "Choose another name; nothing was overwritten.", str(path))
+    if not path.absolute().parent.is_dir():
+        raise StoreMissing(f"There is no folder {path.absolute().parent}.", "Make it first.", str(path))
 
 
 def put_in_place(draft: Path, path: Path) -> None:

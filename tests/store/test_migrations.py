@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import gzip
 import re
-import shutil
 import sqlite3
 from collections.abc import Iterator
 from contextlib import closing
@@ -28,6 +27,7 @@ from kb.store.rows import SCHEMA_REVISIONS
 from kb.store.runs import RunFilter
 from kb.store.store import Store
 from tests.factories import CHEMISTRY, a_book, a_run
+from tests.store.later_program import LATER, write_later_revisions
 
 MIGRATIONS = kb.paths.shipped("migrations")
 BOOKS = Path(__file__).parent.parent / "data" / "schema"
@@ -95,33 +95,10 @@ def test_a_new_book_and_a_migrated_one_have_the_same_tables(tmp_path: Path) -> N
     assert shape_of(tmp_path / "new.sidepath") == shape_of(migrated)
 
 
-# A later revision that rebuilds the parent of many children, as SQLite must for a new constraint
-
-LATER = """
-from __future__ import annotations
-import sqlalchemy as sa
-from alembic import op
-revision = "0002"
-down_revision = "0001"
-branch_labels = None
-depends_on = None
-
-
-def upgrade() -> None:
-    op.execute("DROP TABLE run_words")
-    op.execute("DROP VIEW run_text")
-    with op.batch_alter_table("run", recreate="always") as batch:
-        batch.add_column(sa.Column("colour", sa.Text(), nullable=True))
-    {extra}
-"""
-
-
 @pytest.fixture
 def later_program(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     """Let the program be one revision further; return where its revisions are."""
-    copied = tmp_path / "migrations"
-    shutil.copytree(MIGRATIONS, copied, ignore=shutil.ignore_patterns("__pycache__"))
-    (copied / "versions" / "0002_later.py").write_text(LATER.format(extra="pass"))
+    copied = write_later_revisions(tmp_path)
     monkeypatch.setattr(kb.paths, "shipped", lambda name: copied)
     monkeypatch.setattr(schema, "SCHEMA_REVISIONS", ("0001", "0002"))
     monkeypatch.setattr(schema, "SCHEMA_HEAD", "0002")

@@ -1,0 +1,170 @@
+"""Many processes on one book, and processes killed at any moment: nothing acknowledged is lost, nothing is half there.
+
+The default sizes keep the suite quick; `pytest -m soak tests/store/test_many_at_once.py` runs those of the project's
+own measure (16 processes by 200 runs with 8 readers; 300 kills across record, import, merge, backup and migrate).
+"""
+
+from __future__ import annotations
+
+import os
+import random
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+from uuid import UUID
+
+import pytest
+
+from kb.store import schema
+from kb.store.checking import verify
+from kb.store.copying import copy_book
+from kb.store.safekeeping import backups_in
+from kb.store.store import Store
+from tests.factories import CHEMISTRY, a_book
+from tests.store.workers import numbered_run
+
+ROOT = Path(__file__).resolve().parents[2]
+BULK_RUNS, OTHER = 1200, 200
+
+
+def start(*arguments: object, program: str = "tests.store.workers") -> subprocess.Popen[str]:
+    return subprocess.Popen(
+        [sys.executable, "-m", program, *map(str, arguments)],
+        cwd=ROOT,
+        env={**os.environ, "PYTHONPATH": str(ROOT), "PYTHONDONTWRITEBYTECODE": "1"},
+        stdout=subprocess.PIPE,
+        stderr=subprocess.PIPE,
+        text=True,
+    )
+
+
+def assert_sound(book: Path) -> None:
+    with Store.open(book, **CHEMISTRY) as store:
+        assert [c for c in verify(store) if not c.ok] == []
+
+
+def write_and_read(folder: Path, writers: int, runs: int, readers: int) -> None:
+    book = folder / "book.sidepath"
+    a_book(folder, **CHEMISTRY).close()
+    processes = [start("record", book, f"W{w}", runs) for w in range(writers)]
+    processes += [start("read", book, 3) for _ in range(readers)]
+    said = [process.communicate(timeout=1500) for process in processes]
+    for process, (out, err) in zip(processes, said, strict=True):
+        assert process.returncode == 0, err
+        assert "half a run" not in out and "know more" not in out
+        assert err == ""
+    with Store.open(book, **CHEMISTRY) as store:
+        expected = {numbered_run(f"W{w}", n).run_id for w in range(writers) for n in range(runs)}
+        assert {run.run_id for run in store.iter_runs()} == expected
+        assert len({run.code for run in store.iter_runs()}) == writers * runs
+        assert len(store.derived_columns()["code"]) == writers * runs
+    assert_sound(book)
+
+
+def test_four_processes_write_while_two_read(tmp_path: Path) -> None:
+    write_and_read(tmp_path, writers=4, runs=25, readers=2)
+
+
+@pytest.mark.soak
+def test_sixteen_processes_write_200_runs_each_while_eight_read(tmp_path: Path) -> None:
+    write_and_read(tmp_path, writers=16, runs=200, readers=8)
+
+
+class Killer:
+    """Starts deeds on one book, kills them at random moments, and checks after each that nothing is lost."""
+
+    def __init__(self, folder: Path, seed: int) -> None:
+        self.folder = folder
+        self.book = folder / "book.sidepath"
+        self.random = random.Random(seed)
+        self.kept: set[UUID] = set()
+        self.landed = 0
+        (folder / "backups").mkdir()
+        a_book(folder, **CHEMISTRY).close()
+        with a_book(folder, "other.sidepath", **CHEMISTRY) as other:
+            other.add_many([numbered_run("other", n) for n in range(OTHER)], "TB")
+        self.rounds = 0
+
+    def kill_once(self, deed: str) -> None:
+        """Start a deed, kill it at a random moment, and check the book."""
+        self.rounds += 1
+        if deed == "migrate":
+            self.kill_a_migration()
+            return
+        arguments: dict[str, tuple[object, ...]] = {
+            "record": (self.book, f"K{self.rounds}", 500),
+            "take_in": (self.book, "bulk", BULK_RUNS),
+            "merge_in": (self.book, self.folder / "other.sidepath"),
+            "back_up": (self.book, self.folder / "backups"),
+        }
+        out = self._killed(deed, *arguments[deed])
+        self.kept |= {UUID(line.split()[1]) for line in out.splitlines() if line.startswith("kept ")}
+        self.check()
+
+    def _killed(self, deed: str, *arguments: object, program: str = "tests.store.workers") -> str:
+        """Return what a process had said when it was killed; half of a last line is dropped."""
+        process = start(deed, *arguments, program=program)
+        time.sleep(self.random.uniform(0.35, 1.3))
+        if process.poll() is None:
+            self.landed += 1
+            process.send_signal(signal.SIGKILL)
+        out, err = process.communicate(timeout=60)
+        assert "Traceback" not in err, err
+        return out[: out.rfind("\n") + 1]
+
+    def check(self) -> None:
+        """Everything acknowledged is there, whole; backups open."""
+        with Store.open(self.book, **CHEMISTRY) as store:
+            there = {run.run_id for run in store.iter_runs()}
+            assert self.kept <= there
+            assert len(store.derived_columns()["code"]) == len(there)
+        assert_sound(self.book)
+        for copy in backups_in(self.folder / "backups", self.book):
+            with Store.open(copy, read_only=True) as saved:
+                assert all(c.ok for c in verify(saved))
+
+    def kill_a_migration(self) -> None:
+        """Kill the making of a book out of nothing by the revisions, as a migration of a real book would run."""
+        book = self.folder / f"old{self.rounds}.sidepath"
+        copy_book(self.book, book)
+        before = len(list(self._runs(book)))
+        self._killed("migrate", book, program="tests.store.later_program")
+        with pytest.MonkeyPatch.context() as later:
+            later.setattr(schema, "SCHEMA_REVISIONS", ("0001", "0002"))
+            revision = schema.current(schema.Address(text=str(book), path=book))
+            later.setattr(schema, "SCHEMA_HEAD", revision)
+            assert len(list(self._runs(book))) == before
+
+    def _runs(self, book: Path) -> list[object]:
+        with Store.open(book, read_only=True) as store:
+            return list(store.iter_runs())
+
+    def finish(self) -> None:
+        """Let every interrupted job run to its end: the same content as if nothing had happened."""
+        for deed, arguments in (("take_in", ("bulk", BULK_RUNS)), ("merge_in", (self.folder / "other.sidepath",))):
+            process = start(deed, self.book, *arguments)
+            _, err = process.communicate(timeout=300)
+            assert process.returncode == 0, err
+        with Store.open(self.book, **CHEMISTRY) as store:
+            there = {run.run_id for run in store.iter_runs()}
+        assert {numbered_run("bulk", n).run_id for n in range(BULK_RUNS)} <= there
+        assert {numbered_run("other", n).run_id for n in range(OTHER)} <= there
+        assert_sound(self.book)
+
+
+def test_killed_ten_times_nothing_acknowledged_is_lost(tmp_path: Path) -> None:
+    killer = Killer(tmp_path, seed=11)
+    for deed in ("record", "take_in", "merge_in", "back_up", "migrate") * 2:
+        killer.kill_once(deed)
+    assert killer.landed >= 5
+    killer.finish()
+
+
+@pytest.mark.soak
+def test_killed_300_times_nothing_acknowledged_is_lost(tmp_path: Path) -> None:
+    killer = Killer(tmp_path, seed=12)
+    for deed in ("record", "take_in", "merge_in", "back_up", "migrate") * 60:
+        killer.kill_once(deed)
+    killer.finish()
