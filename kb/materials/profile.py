@@ -51,6 +51,8 @@ class ConditionProfile:
         nucleophile_name, base_name, acid_name: catalogue names of what gave the facts, for sentences.
         nucleophile_class: class of the reagent meant as nucleophile, e.g. `azide`.
         swain_scott_n: Swain-Scott n of that nucleophile, where published.
+        reagents: what is in the flask but the substrate and the solvents, for likeness: canonical SMILES of each ion
+            or molecule, lone metal cations left out; the name where there is no structure.
     """
 
     reagent_classes: frozenset[str] = frozenset()
@@ -89,3 +91,4 @@ class ConditionProfile:
     acid_name: str | None = None
     nucleophile_class: str | None = None
     swain_scott_n: float | None = None
+    reagents: frozenset[str] = frozenset()

@@ -9,8 +9,9 @@ from __future__ import annotations
 import contextlib
 import dataclasses
 import json
+import re
 from dataclasses import dataclass
-from functools import cache
+from functools import cache, lru_cache
 from typing import TYPE_CHECKING, Any
 from uuid import UUID
 
@@ -25,7 +26,7 @@ if TYPE_CHECKING:
     from kb.chem.scheme import Scheme
     from kb.record.plan import Plan
 
-RECIPE = "facts/1"
+RECIPE = "facts/2"
 """Name of what makes DerivedFacts; the screens' and RDKit's are appended where facts are stored."""
 
 SCREENS = "augmented-1-2048;pattern-2048;morgan-r2-2048"
@@ -35,6 +36,7 @@ MORGAN_RADIUS = 2
 """Bonds around the centre that its environment fingerprint reaches."""
 
 _NO_RUN = UUID(int=0)
+_LONE_CATION = re.compile(r"\[[A-Z][a-z]?\+\d?\]")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -140,7 +142,7 @@ def _account(scheme: str, conditions: Conditions, run_id: UUID) -> Account:
         products = tuple(f.smiles_as_entered for f in parsed.products)
     skip = reading.centre.component if reading.centre else 0
     others = [s for i, s in enumerate(fragments) if i != skip]
-    profile = profile_of(conditions, others)
+    profile = dataclasses.replace(profile_of(conditions, others), reagents=_reagent_keys(conditions, others))
     return Account(
         reading=reading,
         fragments=fragments,
@@ -161,6 +163,27 @@ def _with_named(parsed: Scheme, conditions: Conditions) -> str:
     sides = ([f.smiles_as_entered for f in parsed.reactants], [f.smiles_as_entered for f in parsed.agents] + named)
     products = ".".join(f.smiles_as_entered for f in parsed.products)
     return f"{'.'.join(sides[0])}>{'.'.join(sides[1])}>{products}"
+
+
+def _reagent_keys(conditions: Conditions, drawn: list[str]) -> frozenset[str]:
+    """Return what stands in the flask beside substrate and solvents; see `ConditionProfile.reagents`."""
+    keys = {key for smiles in drawn for key in _parts_of(smiles)}
+    for component in conditions.components:
+        keys |= _parts_of(component.smiles) if component.smiles else {component.name.strip().lower()}
+    return frozenset(keys)
+
+
+@lru_cache(maxsize=4096)
+def _parts_of(smiles: str) -> frozenset[str]:
+    """Return the canonical SMILES of each part of a salt without maps; lone metal cations left out."""
+    from rdkit import Chem
+
+    mol = Chem.MolFromSmiles(smiles)
+    if mol is None:
+        return frozenset({smiles})
+    for atom in mol.GetAtoms():
+        atom.SetAtomMapNum(0)
+    return frozenset(p for p in Chem.MolToSmiles(mol).split(".") if not _LONE_CATION.fullmatch(p))
 
 
 def _facts(reading: Reading, fragments: tuple[str, ...], profile: ConditionProfile, run_id: UUID) -> DerivedFacts:
