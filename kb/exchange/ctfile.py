@@ -1,7 +1,7 @@
-"""Connection-table files: RXN, RDfile and SDF framing in both directions, V2000 and V3000 in, V2000 out.
+"""Connection-table files: RDfile, SDF and RXN framing in both directions; molecules are written as V2000.
 
-It owns the frames (where a record, a molecule and a datum start and end), not the molecules (`kb.chem.structure`) and
-not what the data mean (`headings`, `rows`). It refuses a record longer than LONGEST_RECORD and reads on behind it. Text
+It owns the frames of records and data, not what stands in an RXN block or molfile (`kb.chem.schemefile`) and not what
+the data mean (`headings`, `rows`). It refuses a record longer than LONGEST_RECORD and reads on behind it. Text
 of data is carried to the letter: a line of it that starts with `$`, `>` or a backslash gets a backslash in front, which
 reading takes off.
 
@@ -15,16 +15,11 @@ from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 
-from kb.errors import ChemistryError, StructureError
 from kb.exchange.text_in import LineTooLong, TextLines
 
 LONGEST_RECORD = 4_000_000
 """Longest record of an RDfile or SDF [characters]."""
 
-MAX_MOLECULES = 400
-"""Most molecules of one RXN block."""
-
-_V3000_HEAD = ("", "", "", "  0  0  0     0  0            999 V3000")
 _RDF_START = re.compile(r"\$(?:RFMT|MFMT)\b")
 _SDF_DATUM = re.compile(r">.*?<([^<>]{1,200})>")
 
@@ -64,24 +59,6 @@ class CtFile:
     def done_share(self) -> float:
         """Return the part of the file that was read, 0..1."""
         return self._lines.done_bytes / max(self._lines.size_bytes, 1)
-
-
-def scheme_of_block(block: str) -> str:
-    """Return reaction SMILES of an RXN block, or SMILES of a molfile; atom maps are kept.
-
-    Raises:
-        StructureError: the block is broken, or one of its molecules is no possible structure; the sentence says which.
-    """
-    start = block.lstrip("\r\n")
-    if not start.startswith("$RXN"):
-        return _smiles(block, "The molecule")
-    sides = _v3000_molecules(block) if start.startswith("$RXN V3000") else _v2000_molecules(block)
-    words = []
-    for name, blocks in zip(("Reactant", "Product", "Agent"), sides, strict=True):
-        words.append(".".join(_smiles(b, f"{name} {n}") for n, b in enumerate(blocks, start=1)))
-    if not words[0]:
-        raise StructureError("The RXN block has no reactants.", "Draw the substrate left of the arrow.", None)
-    return f"{words[0]}>{words[2]}>{words[1]}"
 
 
 def rxn_block(scheme: str, name: str = "") -> str:
@@ -214,61 +191,6 @@ def _sdf_parts(text: str) -> tuple[str, dict[str, str]]:
     return block + end + "\n", data
 
 
-def _v2000_molecules(block: str) -> tuple[list[str], list[str], list[str]]:
-    lines = block.lstrip("\r\n").split("\n")
-    if len(lines) < 5:
-        raise StructureError("The RXN block breaks off before its counts.", "Export it again.", None)
-    counts = [int(n) for n in re.findall(r"\d+", " ".join(re.findall(r".{1,3}", lines[4][:9])))]
-    if len(counts) < 2 or sum(counts) > MAX_MOLECULES:
-        raise StructureError("The counts line of the RXN block cannot be used.", "Export it again.", lines[4][:40])
-    molecules = re.split(r"^\$MOL[ \t]*\n", "\n".join(lines[5:]), flags=re.M)[1:]
-    agents = counts[2] if len(counts) > 2 else 0
-    if len(molecules) != counts[0] + counts[1] + agents:
-        raise StructureError(
-            f"The RXN block announces {counts[0] + counts[1] + agents} molecules and holds {len(molecules)}.",
-            "Export it again.",
-            len(molecules),
-        )
-    first, second = counts[0], counts[0] + counts[1]
-    return molecules[:first], molecules[first:second], molecules[second:]
-
-
-def _v3000_molecules(block: str) -> tuple[list[str], list[str], list[str]]:
-    sides: dict[str, list[str]] = {"REACTANT": [], "PRODUCT": [], "AGENT": []}
-    side: str | None = None
-    table: list[str] | None = None
-    for line in block.split("\n"):
-        words = line.split()
-        if words[:2] == ["M", "V30"] and len(words) >= 4 and words[2] in ("BEGIN", "END"):
-            if words[3] in sides:
-                side = words[3] if words[2] == "BEGIN" else None
-                continue
-            if words[3] == "CTAB":
-                if words[2] == "BEGIN":
-                    table = [line]
-                elif table is not None and side is not None:
-                    sides[side].append("\n".join([*_V3000_HEAD, *table, line, "M  END", ""]))
-                    table = None
-                continue
-        if table is not None:
-            table.append(line)
-    if sum(map(len, sides.values())) > MAX_MOLECULES:
-        raise StructureError(f"The RXN block holds more than {MAX_MOLECULES} molecules.", "Give one reaction.", None)
-    return sides["REACTANT"], sides["PRODUCT"], sides["AGENT"]
-
-
-def _smiles(block: str, what: str) -> str:
-    from rdkit import Chem
-
-    from kb.chem.structure import parse_molblock
-
-    try:
-        mol = parse_molblock(block)
-    except ChemistryError as error:
-        raise StructureError(f"{what}: {error.message}", error.hint, error.value) from error
-    return str(Chem.MolToSmiles(mol))
-
-
 def _one_line(text: str) -> str:
     return " ".join(text.split())[:80]
 
@@ -292,6 +214,5 @@ __all__: Sequence[str] = [
     "mol_block",
     "rdf_record",
     "rxn_block",
-    "scheme_of_block",
     "sdf_record",
 ]

@@ -14,7 +14,7 @@ from pathlib import Path
 from typing import Any
 
 from kb.errors import ChemistryError, ImportFileError, SidepathError
-from kb.exchange.ctfile import CtFile, Record, scheme_of_block
+from kb.exchange.ctfile import CtFile, Record
 from kb.exchange.headings import MAX_FIELDS_SHOWN, ColumnMapping, ColumnUse, match_headings
 from kb.exchange.rows import Rejection, RowReader, RowRefused
 from kb.exchange.source import Read
@@ -67,6 +67,8 @@ class StructureSource:
         written = next((text.strip() for name, text in record.data.items() if _short(name) == "scheme"), "")
         if self.format_name == "smi":
             return record.block
+        from kb.chem.schemefile import scheme_of_block
+
         drawn = scheme_of_block(record.block)
         if self.format_name == "sdf":
             return written or drawn

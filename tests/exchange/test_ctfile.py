@@ -12,8 +12,9 @@ from rdkit import Chem
 from rdkit.Chem import AllChem, rdChemReactions
 
 from kb.chem.scheme import parse_scheme
+from kb.chem.schemefile import scheme_of_block
 from kb.errors import StructureError
-from kb.exchange.ctfile import rxn_block, scheme_of_block
+from kb.exchange.ctfile import rxn_block
 from kb.exchange.exporting import export_file
 from kb.exchange.loading import load_file
 from kb.exchange.sources import open_source
