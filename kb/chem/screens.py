@@ -29,12 +29,13 @@ from kb.chem.fingerprint import MORGAN_RECIPE, pack_morgan
 from kb.chem.screens_keys import (
     AROMATIC,
     AUGMENTED_BITS,
-    AUGMENTED_REVISION,
+    AUGMENTED_RECIPE,
     DOUBLE,
     KEY_ANY_CYCLE,
     KEY_UNRULY,
     NOT_IN_RING,
     OTHER,
+    REVISION_MASK,
     SINGLE,
     TRIPLE,
 )
@@ -48,13 +49,13 @@ from kb.chem.screens_masks import (
     Memo,
     current_memo,
 )
-from kb.chem.screens_rings import small_cycles
+from kb.chem.screens_rings import HiddenRings, small_cycles
 from kb.errors import StructureError
 
-SCREEN_RECIPE = f"augmented-{AUGMENTED_REVISION}-{AUGMENTED_BITS};{MORGAN_RECIPE};rdkit-{rdBase.rdkitVersion}"
+SCREEN_RECIPE = f"{AUGMENTED_RECIPE} {MORGAN_RECIPE} rdkit/{rdBase.rdkitVersion}"
 """What made the blobs: kinds, parameters, versions. Stored with them, compared before they are searched."""
 
-ANYTHING = (1 << AUGMENTED_BITS) - 1
+ANYTHING = ((1 << AUGMENTED_BITS) - 1) & ~0xFF00 | REVISION_MASK
 """The screen of a structure that no query may drop."""
 
 UNRULY_RINGS = 8
@@ -145,7 +146,7 @@ def augmented_mask(mol: Chem.Mol) -> int:
     memo = current_memo()
     known = memo.masks.get
     core_of = memo.core_of.get
-    mask = 0
+    mask = REVISION_MASK
     cores: list[int] = []
     connections: list[int] = []
     for kind, count, charge, size, spokes in zip(types, hydrogens, charges, smallest, around, strict=True):
@@ -176,8 +177,10 @@ def augmented_mask(mol: Chem.Mol) -> int:
             found = known(far)
             mask |= memo.reach(far) if found is None else found
     mask |= _counts(memo, types, kinds)
-    if atom_rings:
+    try:
         mask |= _cycles(memo, mol, atom_rings, types)
+    except HiddenRings:
+        return ANYTHING
     if len(atom_rings) > UNRULY_RINGS or n_atoms > UNRULY_ATOMS:
         mask |= 1 << KEY_UNRULY
     return mask

@@ -13,7 +13,9 @@ from typing import TypeAlias
 
 AUGMENTED_BITS = 4096
 AUGMENTED_REVISION = 1
-"""Raised whenever a structure sets other bits than before."""
+"""Raised (1 to 255) whenever a structure sets other bits than before; each screen carries it in its second byte."""
+AUGMENTED_RECIPE = f"augmented-{AUGMENTED_REVISION}-{AUGMENTED_BITS}"
+"""Name and parameters of these screens; RDKit, which perceives what they are made from, is named beside it."""
 
 SINGLE, DOUBLE, TRIPLE, AROMATIC, OTHER = 1, 2, 3, 4, 5
 """Bond codes in keys; OTHER is anything that a plain query bond cannot mean."""
@@ -31,7 +33,9 @@ KEY_ANY_CYCLE = 0
 """Set by a structure whose cycles were not all enumerated; a query takes it for any cycle."""
 KEY_UNRULY = 1
 """Set by a structure in which a loose query may search for long: many rings, or very large."""
-_RESERVED = 2
+REVISION_MASK = AUGMENTED_REVISION << 8
+"""Set by every structure, so that a screen of another revision is known by itself."""
+_RESERVED = 16
 NOT_IN_RING = -1
 """Smallest ring of an atom that is in none."""
 

@@ -42,7 +42,7 @@ from kb.chem.screens_keys import (
     key_ring_bond,
     key_types,
 )
-from kb.chem.screens_rings import small_cycles
+from kb.chem.screens_rings import HiddenRings, small_cycles
 
 MAX_CHOICES = 48
 """Combinations of alternatives tried around one atom."""
@@ -95,7 +95,10 @@ def ask_of(mol: Chem.Mol, depth: int = 0) -> AllOf:
         for bond, other in joined:
             if other > atom:
                 asks += _bonded(atom, other, bond, traits, bonds)
-    cycles = small_cycles(mol, tuple(rings))
+    try:
+        cycles = small_cycles(mol, tuple(rings))
+    except HiddenRings:
+        cycles = None
     asks += [_cycle(ring, traits) for ring in (rings if cycles is None else cycles) if len(ring) <= MAX_CYCLE]
     asks += _counts(traits, bonds)
     return AllOf(tuple(_flat(asks)))

@@ -4,8 +4,9 @@ A query ring must be found in every structure that holds such a cycle, whether o
 smallest rings: cyclohexane matches norbornane, whose smallest rings are two five-membered ones. Every cycle
 is a sum (symmetric difference of bonds) of rings of a basis, so sums within each fused system are taken;
 sums that are no simple cycle only add a bit too many. Cycles beyond MAX_CYCLE atoms have no bits and are
-left out. Where the sums are too many, or RDKit's rings are no full basis (bonds to metals are not counted
-as ring bonds), the molecule is said to have any cycle.
+left out. Where the sums are too many the molecule is said to have any cycle. Where RDKit's rings are no
+full basis (it leaves bonds to metals out of its rings, a query does not) nothing may be said of its rings:
+`HiddenRings`.
 
 The usual case is quick: rings that share one bond at most, in no circle of rings, add up to cycles of
 size a + b - 2 and more, which is beyond MAX_CYCLE unless the rings are small.
@@ -29,15 +30,24 @@ Cycle: TypeAlias = tuple[int, ...]
 """The atoms of a cycle, in no order."""
 
 
+class HiddenRings(Exception):
+    """The molecule has cycles that RDKit's rings do not account for."""
+
+
 def small_cycles(mol: Chem.Mol, atom_rings: tuple[Cycle, ...]) -> list[Cycle] | None:
     """Return every cycle of MAX_CYCLE atoms or fewer (perhaps a few sums that are none); None = it may have any.
 
     Args:
         mol: the molecule, rings perceived.
         atom_rings: its rings by atoms.
+
+    Raises:
+        HiddenRings: the rings do not account for every cycle.
     """
-    if len(atom_rings) < mol.GetNumBonds() - mol.GetNumAtoms() + len(Chem.GetMolFrags(mol)):
-        return None
+    if len(atom_rings) < _rings_expected(mol):
+        raise HiddenRings
+    if not atom_rings:
+        return []
     rings = [ring for ring in atom_rings if len(ring) <= MAX_CYCLE]
     if len(atom_rings) == 1:
         return rings
@@ -76,16 +86,16 @@ def _simple_fusions(atom_rings: tuple[Cycle, ...]) -> list[Cycle] | None:
 def _all_sums(mol: Chem.Mol) -> list[Cycle] | None:
     bond_rings = mol.GetRingInfo().BondRings()
     systems = _fused_systems(bond_rings)
-    rank = 0
-    found: set[Cycle] = set()
-    for system in systems:
-        if len(system) > MAX_SUMMED_RINGS:
-            return None
-        rank += _rank(system)
-        found |= _sums(mol, system)
-    if rank != mol.GetNumBonds() - mol.GetNumAtoms() + len(Chem.GetMolFrags(mol)):
+    if sum(map(_rank, systems)) != _rings_expected(mol):
+        raise HiddenRings
+    if any(len(system) > MAX_SUMMED_RINGS for system in systems):
         return None
-    return list(found)
+    return list(set().union(*(_sums(mol, system) for system in systems)))
+
+
+def _rings_expected(mol: Chem.Mol) -> int:
+    """Return how many independent rings the bonds make."""
+    return mol.GetNumBonds() - mol.GetNumAtoms() + len(Chem.GetMolFrags(mol))
 
 
 def _fused_systems(bond_rings: tuple[tuple[int, ...], ...]) -> list[list[frozenset[int]]]:

@@ -21,7 +21,7 @@ from rdkit import Chem
 from kb.chem.fingerprint import MORGAN_BITS, bits_of, pack_morgan
 from kb.chem.query import StructureQuery
 from kb.chem.screens import SCREEN_RECIPE, encode_mol
-from kb.chem.screens_keys import AUGMENTED_BITS, KEY_UNRULY
+from kb.chem.screens_keys import AUGMENTED_BITS, AUGMENTED_REVISION, KEY_UNRULY
 from kb.chem.screens_query import AllOf, Ask, ask_of
 from kb.errors import IndexStale
 from kb.search.matching import Deadline, Matched, MoleculeStore
@@ -99,14 +99,15 @@ class StructureIndex:
         """Add structures by their blobs, in order.
 
         Raises:
-            IndexStale: a blob has not the width of this recipe.
+            IndexStale: a blob has not the width or the revision of this recipe.
         """
         n = len(ids)
         if not n:
             return
         packed = [b"".join(part) for part in (augmented, morgan)]
         widths = (AUGMENTED_BITS, MORGAN_BITS)
-        if any(len(p) != n * width // 8 for p, width in zip(packed, widths, strict=True)):
+        has_width = all(len(p) == n * width // 8 for p, width in zip(packed, widths, strict=True))
+        if not has_width or (_revisions(packed[0]) != AUGMENTED_REVISION).any():
             raise IndexStale(
                 "Structures in the book were encoded by another recipe.", "Rebuild them: `sidepath migrate`."
             )
@@ -284,6 +285,8 @@ class StructureIndex:
 
     def _sampled(self) -> NDArray[np.int64]:
         if self._rarity is None:
+            if not len(self):
+                return np.zeros(AUGMENTED_BITS, np.int64)  # planes of an empty index have no words to count
             sample = np.stack([self._augmented.plane(bit)[:_SAMPLE_WORDS] for bit in range(AUGMENTED_BITS)])
             self._rarity = popcounts(sample.tobytes(), sample.shape[1] * 8).astype(np.int64)
         return self._rarity
@@ -295,6 +298,11 @@ class StructureIndex:
             self._bit_counts = np.concatenate(
                 (self._bit_counts, np.zeros(room - len(self._bit_counts), np.uint16))
             )
+
+
+def _revisions(augmented: bytes) -> NDArray[np.uint8]:
+    """Return the revision that each screen carries."""
+    return np.frombuffer(augmented, np.uint8)[1 :: AUGMENTED_BITS // 8]
 
 
 def _identity(mol: Chem.Mol, with_stereo: bool) -> str:
