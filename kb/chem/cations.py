@@ -26,19 +26,28 @@ def is_stabilised_cation(graph: Molgraph, carbon: int, leaving: int | None) -> b
     return False
 
 
-def iter_shifts(graph: Molgraph, centre: int, leaving: int | None) -> Iterator[tuple[int, int | None]]:
+def iter_shifts(
+    graph: Molgraph, centre: int, leaving: int | None, *, expected_only: bool = False
+) -> Iterator[tuple[int, int | None]]:
     """Yield (carbon that ends up short, migrating atom) for 1,2-shifts to the centre; None as mover = hydrogen.
 
     Every sp3 neighbour offers its hydrogen, and its carbon substituents when the shift makes a better cation;
-    whether it does is `cation_score`.
+    whether it does is `cation_score`. A primary cation never forms: there something moves only as the group goes.
+
+    Args:
+        graph: the fragment.
+        centre: where the charge would be.
+        leaving: atom that leaves it; None = none.
+        expected_only: for a primary centre, only shifts that are the rule: neopentyl, and growth of a small ring.
+            Isobutyl, where 2-methyl-1-propanol and HBr give no shifted bromide, is left out then.
     """
     here = cation_score(graph, centre, leaving)
     is_primary = find_carbon_class(graph, centre) in (CarbonClass.PRIMARY, CarbonClass.METHYL)
     for origin, code in graph.neighbours[centre].items():
         if code != 1 or origin == leaving or not graph.is_sp3_carbon(origin):
             continue
-        if is_primary and sum(graph.elements[n] == 6 for n in graph.neighbours[origin]) < 3:
-            # A primary cation never forms; only from a branched neighbour does something move as the group goes.
+        branches = sum(graph.elements[n] == 6 for n in graph.neighbours[origin])
+        if is_primary and branches < (4 if expected_only and not _in_small_ring(graph, origin) else 3):
             continue
         if graph.hydrogens[origin] and cation_score(graph, origin, None) > here:
             yield origin, None
@@ -49,6 +58,10 @@ def iter_shifts(graph: Molgraph, centre: int, leaving: int | None) -> Iterator[t
                 continue
             if cation_score(graph, origin, mover) > here and mover not in graph.neighbours[centre]:
                 yield origin, mover
+
+
+def _in_small_ring(graph: Molgraph, atom: int) -> bool:
+    return any(atom in ring and len(ring) <= 4 for ring in graph.mol.GetRingInfo().AtomRings())
 
 
 def is_bridge_bound(graph: Molgraph, atom: int) -> bool:

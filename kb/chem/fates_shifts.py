@@ -24,7 +24,7 @@ def iter_shifted(graph: Molgraph, site: LeavingSite, attackers: Sequence[Attacke
         return
     if site.departs is None:
         return
-    for origin, mover in iter_shifts(graph, site.centre, site.leaving):
+    for origin, mover in iter_shifts(graph, site.centre, site.leaving, expected_only=True):
         what = _shift_word(graph, site.centre, mover)
         for attacker in attackers:
             sketch = _shifted(graph, site, origin, mover, [attacker.graph])

@@ -239,7 +239,7 @@ def _halide(graph: Molgraph, atom: int) -> list[NucleophileSite]:
         return []
     (carrier,) = bonds
     if graph.elements[carrier] == 6:
-        halogens = sum(graph.elements[n] in HALIDES for n in graph.neighbours[carrier])
+        halogens = sum(graph.elements[n] in (17, 35, 53) for n in graph.neighbours[carrier])
         is_source = halogens >= 3 or (graph.has_multiple_bond(carrier) and not graph.aromatic[carrier])
         if not is_source or (len(graph) > 9 and halogens < 3):
             return []

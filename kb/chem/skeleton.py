@@ -13,10 +13,10 @@ charge:
 So elements, P and the skeleton together are the whole balance of a polar reaction, and a stated product that
 needed a redox step cannot be taken for a displacement.
 
-Matching is in three sieves: elements and P (integers), a sum over atoms of hashed environments of radius 2
-(mended only near the changed bonds), then refinement of the whole skeleton. The last is the Weisfeiler-Lehman
-refinement, which in principle cannot tell some regular graphs apart; no pair of plausible products of one
-scheme is of that kind.
+Matching is in three sieves: elements and P (integers), a sum over atoms of hashed environments of radius 2 (mended
+only near the changed bonds), then Weisfeiler-Lehman refinement of the whole skeleton. By itself that takes norbornane
+for dicyclopropylmethane, so it starts from how many atoms stand two and three bonds away, which tells such pairs apart;
+only ways of closing rings of eight and more atoms could still be confused.
 """
 
 from __future__ import annotations
@@ -250,7 +250,7 @@ def skeleton_summary(graph: Molgraph) -> Summary:
 
 def refine(elements: dict[int, int], adjacency: dict[int, tuple[int, ...]]) -> dict[int, int]:
     """Return a colour per atom that depends on the skeleton around it and not on the numbering."""
-    colours = {a: _CODES[z] for a, z in elements.items()}
+    colours = {a: hash((_CODES[z], *_shells(a, adjacency))) for a, z in elements.items()}
     distinct = len(set(colours.values()))
     for turn in range(_ROUNDS):
         colours = {a: hash((c, sum([colours[n] for n in adjacency[a]]))) for a, c in colours.items()}
@@ -259,6 +259,17 @@ def refine(elements: dict[int, int], adjacency: dict[int, tuple[int, ...]]) -> d
             break
         distinct = now
     return colours
+
+
+def _shells(atom: int, adjacency: dict[int, tuple[int, ...]]) -> tuple[int, int]:
+    """Return how many atoms stand two and three bonds away: it tells rings of up to seven atoms from chains."""
+    first = adjacency[atom]
+    second = {b for a in first for b in adjacency[a]}
+    second.difference_update(first)
+    second.discard(atom)
+    third = {c for b in second for c in adjacency[b]}
+    third.difference_update(second, first)
+    return len(second), len(third)
 
 
 def _digest(colours: dict[int, int]) -> int:

@@ -32,7 +32,6 @@ from kb.errors import StructureError
 MAX_TEXT_LENGTH = 60_000
 """Longest text that is read at all; far past any real structure, and short enough to stay quick."""
 
-_CONTROL = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\u2028\u2029\u202a-\u202e\u2066-\u2069]")
 _ALKALI = frozenset((3, 4, 11, 12, 19, 20, 37, 38, 55, 56))
 
 
@@ -69,9 +68,10 @@ def make_visible(text: str, limit: int = 80) -> str:
     >>> make_visible("CC" + chr(27) + "[2J")
     'CC\\\\x1b[2J'
     """
-    shown = _CONTROL.sub(lambda m: f"\\x{ord(m.group()):02x}", text.replace("\n", " ").replace("\r", " "))
-    if len(shown) > limit:
-        return f"{shown[:limit]}... ({len(shown)} characters)"
+    one_line = text[: limit + 1].replace("\n", " ").replace("\r", " ").replace("\t", " ")
+    shown = "".join(c if c.isprintable() else c.encode("unicode_escape").decode() for c in one_line)
+    if len(text) > limit:
+        return f"{shown[:limit]}... ({len(text)} characters)"
     return shown
 
 
@@ -87,7 +87,7 @@ def check_text(text: str) -> str:
             "Give one structure or one scheme at a time.",
             text[:80],
         )
-    if _CONTROL.search(text):
+    if any(not c.isprintable() and c not in "\t\n\r" for c in text):
         raise StructureError(
             f"The text '{make_visible(text)}' carries control characters.",
             "Paste it again as plain text.",
