@@ -11,14 +11,14 @@ for less.
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
+from collections.abc import Iterator
 from itertools import combinations, product
 from typing import TypeAlias, TypeVar
 
 from rdkit import Chem
 
 from kb.chem.query_traits import BondTrait, Trait, bond_trait, traits_of, types_of
+from kb.chem.screens_ask import NOTHING, AllOf, Ask, OneOf, all_of, flatten, one_of
 from kb.chem.screens_keys import (
     AROMATIC,
     BOND_COUNT_STEPS,
@@ -54,25 +54,6 @@ MAX_DEPTH = 6
 """Depth of recursive queries that is followed; deeper parts ask for nothing."""
 
 
-@dataclass(frozen=True, slots=True)
-class AllOf:
-    """Every part must hold. No parts = nothing is asked."""
-
-    parts: tuple[Ask, ...] = ()
-
-
-@dataclass(frozen=True, slots=True)
-class OneOf:
-    """At least one part must hold."""
-
-    parts: tuple[Ask, ...]
-
-
-Ask: TypeAlias = int | AllOf | OneOf
-"""A bit number of the augmented screen, or a tree of them."""
-
-NOTHING = AllOf()
-
 _T = TypeVar("_T")
 
 
@@ -90,7 +71,7 @@ def ask_of(mol: Chem.Mol, depth: int = 0) -> AllOf:
     asks: list[Ask] = []
     for atom, alternatives in enumerate(traits):
         around = [(bond, traits[other]) for bond, other in bonds[atom]]
-        asks.append(_one_of(_star(trait, around, atom in in_ring, depth) for trait in alternatives))
+        asks.append(one_of(_star(trait, around, atom in in_ring, depth) for trait in alternatives))
     for atom, joined in enumerate(bonds):
         for bond, other in joined:
             if other > atom:
@@ -101,56 +82,7 @@ def ask_of(mol: Chem.Mol, depth: int = 0) -> AllOf:
         cycles = None
     asks += [_cycle(ring, traits) for ring in (rings if cycles is None else cycles) if len(ring) <= MAX_CYCLE]
     asks += _counts(traits, bonds)
-    return AllOf(tuple(_flat(asks)))
-
-
-def bits_in(ask: Ask) -> Iterator[int]:
-    """Yield every bit number in a tree, repeats included."""
-    if isinstance(ask, int):
-        yield ask
-    else:
-        for part in ask.parts:
-            yield from bits_in(part)
-
-
-def holds(ask: Ask, mask: int) -> bool:
-    """Return whether a structure's screen satisfies what is asked.
-
-    Args:
-        ask: the tree.
-        mask: the structure's augmented bits as one integer.
-    """
-    if isinstance(ask, int):
-        return bool(mask >> ask & 1)
-    if isinstance(ask, AllOf):
-        return all(holds(part, mask) for part in ask.parts)
-    return any(holds(part, mask) for part in ask.parts)
-
-
-# ------------------------------------------------------------------------------------------ trees
-
-
-def _one_of(parts: Iterable[Ask]) -> Ask:
-    """Return the alternatives as one ask; one alternative that asks for nothing makes it nothing."""
-    distinct = list(dict.fromkeys(parts))
-    if not distinct or NOTHING in distinct:
-        return NOTHING
-    return distinct[0] if len(distinct) == 1 else OneOf(tuple(distinct))
-
-
-def _all_of(parts: Iterable[Ask]) -> Ask:
-    """Return a conjunction, as its one part where it has but one."""
-    flat = _flat(parts)
-    return flat[0] if len(flat) == 1 else AllOf(tuple(flat))
-
-
-def _flat(asks: Iterable[Ask]) -> list[Ask]:
-    """Return the parts of a conjunction without nesting or repeats."""
-    flat: dict[Ask, None] = {}
-    for ask in asks:
-        for part in _flat(ask.parts) if isinstance(ask, AllOf) else (ask,):
-            flat[part] = None
-    return list(flat)
+    return AllOf(tuple(flatten(asks)))
 
 
 # ------------------------------------------------------------------------------------------- stars
@@ -166,14 +98,14 @@ def _star(trait: Trait, around: _Around, is_ring_atom: bool, depth: int) -> Ask:
     for centre in trait.types:
         parts = [_by_type(centre, around), _by_bond(centre, trait, around), _by_reach(centre, around)]
         if trait.smallest_ring is not None:
-            parts.append(_all_of(key_ring_atom(centre, trait.smallest_ring)))
+            parts.append(all_of(key_ring_atom(centre, trait.smallest_ring)))
         elif is_ring_atom or trait.in_ring:
-            parts.append(_all_of(key_ring_atom(centre, 0)))
+            parts.append(all_of(key_ring_atom(centre, 0)))
         elif trait.in_ring is False:
-            parts.append(_all_of(key_ring_atom(centre, NOT_IN_RING)))
-        choices.append(_all_of(parts))
-    asks.append(_one_of(choices))
-    return _all_of(asks)
+            parts.append(all_of(key_ring_atom(centre, NOT_IN_RING)))
+        choices.append(all_of(parts))
+    asks.append(one_of(choices))
+    return all_of(asks)
 
 
 def _inner(text: str, depth: int) -> Ask:
@@ -189,16 +121,16 @@ def _inner(text: str, depth: int) -> Ask:
 
 def _by_type(centre: AtomType, around: _Around) -> Ask:
     options = [list(types) for _, other in around if (types := types_of(other))]
-    return _one_of(
-        _all_of(bit for part in _parts(chosen) for bit in key_types(centre, part)) for chosen in _choices(options)
+    return one_of(
+        all_of(bit for part in _parts(chosen) for bit in key_types(centre, part)) for chosen in _choices(options)
     )
 
 
 def _by_bond(centre: AtomType, trait: Trait, around: _Around) -> Ask:
     options = [found for bond, other in around if (found := _typed_bonds(centre, bond, types_of(other)))]
     asked = [(what, value) for what, value in _attributes(trait) if what != "q" or value]
-    return _one_of(
-        _all_of(
+    return one_of(
+        all_of(
             bit
             for part in _parts(chosen)
             for bits in (key_bonds(centre, part), *(key_attribute(what, value, centre, part) for what, value in asked))
@@ -224,8 +156,8 @@ def _by_reach(centre: AtomType, around: _Around) -> Ask:
                 options.append(found)
     if len(options) < 2:
         return NOTHING
-    return _one_of(
-        _all_of(bit for part in _parts(chosen) if len(part) > 1 for bit in key_reach(centre, part))
+    return one_of(
+        all_of(bit for part in _parts(chosen) if len(part) > 1 for bit in key_reach(centre, part))
         for chosen in _choices(options)
     )
 
@@ -307,12 +239,12 @@ def _bonded(
         for order, element, aromatic in _typed_bonds(end, bond, two.types)
     ]
     if bond.in_ring is not None:
-        yield _one_of(
-            _all_of(key_ring_bond(bond_kind(end, order, far), bool(bond.in_ring)))
+        yield one_of(
+            all_of(key_ring_bond(bond_kind(end, order, far), bool(bond.in_ring)))
             for _, end, order, far, _ in joined
         )
     links = [
-        _all_of(
+        all_of(
             bit
             for what, value in _attributes(one)
             for further, number in _attributes(two)
@@ -321,9 +253,9 @@ def _bonded(
         )
         for one, end, order, far, two in joined
     ]
-    yield _one_of(links)
+    yield one_of(links)
     kinds = dict.fromkeys((end, order, far) for _, end, order, far, _ in joined)
-    yield _one_of(
+    yield one_of(
         _pair(end, order, far, _others(end, bonds[atom], other, traits), _others(far, bonds[other], atom, traits))
         for end, order, far in kinds
     )
@@ -349,8 +281,8 @@ def _pair(
     near, far = _choices(ones), _choices(others)
     if len(near) * len(far) > MAX_CHOICES:
         return NOTHING
-    return _one_of(
-        _all_of(
+    return one_of(
+        all_of(
             bit
             for part in _parts(chosen, MAX_PAIR_BONDS)
             for rest in _parts(further, MAX_PAIR_BONDS)
@@ -364,14 +296,14 @@ def _pair(
 
 def _cycle(ring: tuple[int, ...], traits: list[tuple[Trait, ...]]) -> Ask:
     """Return what a ring of the query asks: a cycle of its size and, where that is known, its make-up."""
-    asks: list[Ask] = [_all_of(key_cycle(len(ring)))]
+    asks: list[Ask] = [all_of(key_cycle(len(ring)))]
     options = [types_of(traits[atom]) for atom in ring]
     if all(options):
         by_type = _make_ups([list(types) for types in options])
         by_element = _make_ups([sorted({element for element, _ in types}) for types in options])
         for found in (by_type, by_element):
-            asks.append(_one_of(_all_of(key_cycle(len(ring), make_up)) for make_up in found))
-    return OneOf((KEY_ANY_CYCLE, _all_of(asks)))
+            asks.append(one_of(all_of(key_cycle(len(ring), make_up)) for make_up in found))
+    return OneOf((KEY_ANY_CYCLE, all_of(asks)))
 
 
 def _make_ups(options: list[list[_T]]) -> set[tuple[_T, ...]]:

@@ -26,7 +26,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from kb.search.matching import Deadline
-    from kb.search.structures import Part
+    from kb.search.part import Part
     from kb.store.store import Store
 
 
@@ -215,7 +215,7 @@ class _Answer:
         )
         if all(part is None for part in own):
             return []
-        from kb.search.structures import parts_of
+        from kb.search.asking import parts_of
 
         parts = parts_of(criteria, self.live, self.live.index(self._progress))
         self._parts += parts

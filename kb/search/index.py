@@ -21,8 +21,9 @@ from rdkit import Chem
 from kb.chem.fingerprint import MORGAN_BITS, bits_of, pack_morgan
 from kb.chem.query import StructureQuery
 from kb.chem.screens import SCREEN_RECIPE, encode_mol
+from kb.chem.screens_ask import AllOf, Ask
 from kb.chem.screens_keys import AUGMENTED_BITS, AUGMENTED_REVISION, KEY_UNRULY
-from kb.chem.screens_query import AllOf, Ask, ask_of
+from kb.chem.screens_query import ask_of
 from kb.errors import IndexStale
 from kb.search.matching import Deadline, Matched, MoleculeStore
 from kb.search.planes import BitPlanes, count_planes, counts_of, popcounts, rows_of, words_of

@@ -111,13 +111,9 @@ def product_holds(transformation: Transformation, substrate: Chem.Mol, centre: i
     if not fitting:
         return not transformation.right
     lost = _lost_in(transformation, substrate, centre)
-    rest = _rest_of(substrate, centre, lost)
-    parameters = Chem.SubstructMatchParameters()
-    parameters.maxMatches = MOST_PLACES  # type: ignore[assignment]
-    parameters.uniquify = False  # type: ignore[assignment]
-    root = rest.root
-    assert root is not None
-    places = {match[root] for match in product.GetSubstructMatches(rest.mol, parameters)}
+    places = _places(_rest_of(substrate, centre, lost, keep_orders=True), product)
+    if not places:
+        places = _places(_rest_of(substrate, centre, lost, keep_orders=False), product)
     return any(
         find_match(right, product, root_atom=place) is not None for place in places for right in fitting
     )
@@ -214,6 +210,14 @@ def _lost_in(transformation: Transformation, substrate: Chem.Mol, centre: int) -
     return {a.GetIdx() for a in around if a.GetAtomicNum() in LEAVING_ELEMENTS and not a.IsInRing()}
 
 
+_BOND_SMARTS = {
+    Chem.BondType.SINGLE: "-",
+    Chem.BondType.DOUBLE: "=",
+    Chem.BondType.TRIPLE: "#",
+    Chem.BondType.AROMATIC: ":",
+}
+
+
 def _within(mol: Chem.Mol, centre: int) -> list[int]:
     """Return the atoms that are REACH bonds or fewer from the centre."""
     reached = [centre]
@@ -225,10 +229,22 @@ def _within(mol: Chem.Mol, centre: int) -> list[int]:
     return reached
 
 
-def _rest_of(substrate: Chem.Mol, centre: int, lost: set[int]) -> StructureQuery:
-    """Return the part of the substrate that stays with the centre, as a query that only asks for elements.
+def _places(rest: StructureQuery, product: Chem.Mol) -> set[int]:
+    """Return where in a product the centre can lie when the rest of the substrate is laid over it."""
+    parameters = Chem.SubstructMatchParameters()
+    parameters.maxMatches = MOST_PLACES  # type: ignore[assignment]
+    parameters.uniquify = False  # type: ignore[assignment]
+    root = rest.root or 0
+    return {match[root] for match in product.GetSubstructMatches(rest.mol, parameters)}
 
-    Bonds may have changed order and atoms charge or aromaticity, so neither is asked for.
+
+def _rest_of(substrate: Chem.Mol, centre: int, lost: set[int], *, keep_orders: bool) -> StructureQuery:
+    """Return the part of the substrate that stays with the centre, as a query for its elements.
+
+    Args:
+        substrate, centre: the stored substrate and its centre.
+        lost: atoms that leave the centre.
+        keep_orders: ask for the order of bonds that do not touch the centre; False after a shift or a transposition.
     """
     editable = Chem.RWMol(substrate)
     for atom in lost:
@@ -245,7 +261,8 @@ def _rest_of(substrate: Chem.Mol, centre: int, lost: set[int]) -> StructureQuery
         if i in place and j in place:
             query.AddBond(place[i], place[j], Chem.BondType.SINGLE)
             added = query.GetBondBetweenAtoms(place[i], place[j])
-            query.ReplaceBond(added.GetIdx(), Chem.BondFromSmarts("~"))
+            order = _BOND_SMARTS.get(bond.GetBondType(), "~") if keep_orders and centre not in (i, j) else "~"
+            query.ReplaceBond(added.GetIdx(), Chem.BondFromSmarts(order))
     mol = query.GetMol()
     mol.UpdatePropertyCache(strict=False)
     Chem.GetSymmSSSR(mol)

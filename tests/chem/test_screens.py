@@ -12,8 +12,9 @@ from rdkit import Chem
 
 from kb.chem.query import StructureQuery, parse_query
 from kb.chem.screens import AUGMENTED_BITS, SCREEN_RECIPE, augmented_mask, encode_mol, encode_structure
+from kb.chem.screens_ask import bits_in, holds
 from kb.chem.screens_keys import KEY_ANY_CYCLE, KEY_UNRULY
-from kb.chem.screens_query import ask_of, bits_in, holds
+from kb.chem.screens_query import ask_of
 from kb.errors import StructureError
 from tests.search.queries import ALL
 from tests.search.structures import molecules, smiles
