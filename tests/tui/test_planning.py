@@ -11,7 +11,7 @@ import pytest
 
 from kb.errors import StoreBusy
 from kb.record.finding import Finding
-from tests.tui.driving import driven, on_screen, settled, typed
+from tests.tui.driving import driven, on_screen, pressed, settled, typed
 from tests.tui.fake_book import AZIDE_SCHEME, MESYLATE, FakeBook
 from tui.screens.entry import EntryScreen
 from tui.screens.finding_detail import FindingScreen
@@ -118,7 +118,7 @@ async def test_a_slow_check_never_holds_the_typing_and_its_stale_answer_is_dropp
         app.screen.query_one("#field-solvent").value = "EtOH"
         await pilot.pause(0.1)
         app.screen.query_one("#field-solvent").focus()
-        await pilot.press("end", "backspace", "backspace", "backspace", "backspace", *"DMF")
+        await pressed(pilot, "end", "backspace", "backspace", "backspace", "backspace", *"DMF")
         assert app.screen.query_one("#field-solvent").value == "DMF"
         await pilot.pause(0.1)
         assert book.checked == []
@@ -133,22 +133,19 @@ async def test_enter_on_a_finding_tells_all_and_opens_the_runs_behind() -> None:
     async with driven() as (app, pilot):
         await planned(pilot, "EtOH")
         app.screen.query_one(FindingsList).focus()
-        await pilot.press("home")
-        await settled(pilot)
+        await pressed(pilot, "home")
         view = app.screen.query_one("#plan-drawing", SchemeView)
         assert "motif" in [str(kind) for kind in view.mark_kinds]
-        await pilot.press("enter")
-        await settled(pilot)
+        await pressed(pilot, "enter")
         assert isinstance(app.screen, FindingScreen)
         text = on_screen(app)
         for words in ("faster than azide", "lost in 2, survived in 1", "polar aprotic", "invented for the tests"):
             assert words in text
         app.screen.query_one("#finding-runs").focus()
-        await pilot.press("enter")
-        await settled(pilot)
+        await pressed(pilot, "enter")
         assert isinstance(app.screen, RunScreen)
         assert "R-0001" in on_screen(app)
-        await pilot.press("escape", "escape")
+        await pressed(pilot, "escape", "escape")
         assert isinstance(app.screen, PlanningScreen)
 
 
@@ -156,10 +153,9 @@ async def test_the_runs_behind_the_estimate_are_two_keys_away() -> None:
     async with driven() as (app, pilot):
         await planned(pilot)
         app.screen.query_one(EstimateBars).focus()
-        await pilot.press("enter")
+        await pressed(pilot, "enter")
         assert isinstance(app.focused, PrecedentTable)
-        await pilot.press("enter")
-        await settled(pilot)
+        await pressed(pilot, "enter")
         assert isinstance(app.screen, RunScreen)
 
 
@@ -167,33 +163,29 @@ async def test_the_estimate_without_precedents_says_so() -> None:
     async with driven(FakeBook(runs=0)) as (app, pilot):
         await planned(pilot)
         app.screen.query_one(EstimateBars).focus()
-        await pilot.press("enter")
+        await pressed(pilot, "enter")
         assert any("no own runs" in n.message for n in app._notifications)
 
 
 async def test_the_shelf_turns_to_advice_and_to_the_temperature_plot() -> None:
     async with driven() as (app, pilot):
         await planned(pilot)
-        await pilot.press("f6")
-        await settled(pilot)
+        await pressed(pilot, "f6")
         assert isinstance(app.focused, AdviceList)
         assert "60 °C instead of 80 °C" in on_screen(app)
-        await pilot.press("enter")
-        await settled(pilot)
+        await pressed(pilot, "enter")
         assert "Matched pairs" in on_screen(app)
-        await pilot.press("escape", "f6")
-        await settled(pilot)
+        await pressed(pilot, "escape", "f6")
         assert app.screen.query_one(Shelf).is_temperature_in_view
         assert "bath temperature" in on_screen(app)
-        await pilot.press("f6")
+        await pressed(pilot, "f6")
         assert app.screen.query_one(Shelf).index == 0
 
 
 async def test_a_plan_without_a_temperature_says_what_the_plot_needs() -> None:
     async with driven() as (app, pilot):
         await typed(pilot, "#field-scheme", MESYLATE)
-        await pilot.press("f6", "f6")
-        await settled(pilot)
+        await pressed(pilot, "f6", "f6")
         assert "Give a temperature in numbers" in on_screen(app)
 
 
@@ -202,8 +194,7 @@ async def test_trouble_with_the_temperatures_is_told() -> None:
     async with driven(book) as (app, pilot):
         await planned(pilot)
         book.broken["what_if"] = StoreBusy("The book is busy.", "Try again.")
-        await pilot.press("f6", "f6")
-        await settled(pilot)
+        await pressed(pilot, "f6", "f6")
         assert "The book is busy." in on_screen(app)
 
 
@@ -217,11 +208,10 @@ async def test_a_wide_screen_shows_the_whole_shelf() -> None:
 
 async def test_the_run_key_opens_the_entry_form_with_the_plan() -> None:
     async with driven() as (app, pilot):
-        await pilot.press("f9")
+        await pressed(pilot, "f9")
         assert isinstance(app.screen, PlanningScreen)
         await planned(pilot)
-        await pilot.press("f9")
-        await settled(pilot)
+        await pressed(pilot, "f9")
         assert isinstance(app.screen, EntryScreen)
         assert app.screen.form.step.state["solvent"] == "DMF"
 
@@ -232,7 +222,7 @@ async def test_a_read_only_book_is_shown_and_cannot_be_written() -> None:
         await planned(pilot)
         assert "read only" in on_screen(app)
         assert app.screen.check_action("run_it", ()) is None
-        await pilot.press("f9")
+        await pressed(pilot, "f9")
         assert isinstance(app.screen, PlanningScreen)
         assert book.drafts == {}
 
@@ -241,23 +231,19 @@ async def test_edits_are_undone_and_done_again() -> None:
     async with driven() as (_, pilot):
         screen = await planned(pilot)
         await typed(pilot, "#field-solvent", "EtOH")
-        await pilot.press("ctrl+z")
-        await settled(pilot)
+        await pressed(pilot, "ctrl+z")
         assert screen.form.state["solvent"] == "DMF"
-        await pilot.press("ctrl+y")
-        await settled(pilot)
+        await pressed(pilot, "ctrl+y")
         assert screen.form.state["solvent"] == "EtOH"
-        await pilot.press("ctrl+n")
-        await settled(pilot)
+        await pressed(pilot, "ctrl+n")
         assert not any(screen.form.state.values())
-        await pilot.press("ctrl+z")
-        await settled(pilot)
+        await pressed(pilot, "ctrl+z")
         assert screen.form.state["scheme"] == MESYLATE
 
 
 async def test_undo_without_edits_says_so() -> None:
     async with driven() as (app, pilot):
-        await pilot.press("ctrl+z")
+        await pressed(pilot, "ctrl+z")
         assert any("Nothing to undo" in n.message for n in app._notifications)
 
 
@@ -266,8 +252,7 @@ async def test_atom_numbers_come_and_go() -> None:
         await planned(pilot)
         view = app.screen.query_one("#plan-drawing", SchemeView)
         assert "S:3" not in on_screen(app)
-        await pilot.press("f7")
-        await settled(pilot)
+        await pressed(pilot, "f7")
         assert view.numbers
         assert "S:3" in on_screen(app)
 
@@ -294,10 +279,9 @@ async def test_names_are_completed_from_the_catalogue_and_enter_takes_them() -> 
     async with driven() as (app, pilot):
         line = app.screen.query_one("#field-solvent")
         line.focus()
-        await pilot.press(*"dm")
-        await settled(pilot)
+        await pressed(pilot, *"dm")
         assert line._suggestion == "dmF"
-        await pilot.press("enter")
+        await pressed(pilot, "enter")
         assert line.value == "dmF"
         assert app.focused is not line
 
@@ -306,8 +290,7 @@ async def test_the_last_entry_of_a_line_is_completed() -> None:
     async with driven() as (app, pilot):
         line = app.screen.query_one("#field-reagent")
         line.focus()
-        await pilot.press(*"NaI=0.1; Na", "N")
-        await settled(pilot)
+        await pressed(pilot, *"NaI=0.1; Na", "N")
         assert line._suggestion == "NaI=0.1; NaN3"
 
 
@@ -319,24 +302,22 @@ async def test_a_name_that_only_resembles_is_offered_and_taken_by_the_arrow(monk
     async with driven(book) as (app, pilot):
         line = app.screen.query_one("#field-reagent")
         line.focus()
-        await pilot.press(*"sodium az")
-        await settled(pilot)
+        await pressed(pilot, *"sodium az")
         assert "→ takes NaN3; or NaI" in on_screen(app)
-        await pilot.press("enter")
+        await pressed(pilot, "enter")
         assert line.value == "sodium az"
         line.focus()
-        await pilot.press("end", "z")
-        await settled(pilot)
-        await pilot.press("right")
+        await pressed(pilot, "end", "z")
+        await pressed(pilot, "right")
         assert line.value == "NaN3"
 
 
 async def test_arrow_keys_walk_through_the_lines() -> None:
     async with driven() as (app, pilot):
         app.screen.query_one("#field-reagent").focus()
-        await pilot.press("down")
+        await pressed(pilot, "down")
         assert app.focused.id == "field-base"
-        await pilot.press("up", "up")
+        await pressed(pilot, "up", "up")
         assert app.focused.id == "field-scheme"
 
 
@@ -354,8 +335,7 @@ async def test_the_highlight_stays_on_a_finding_that_is_still_there() -> None:
         await planned(pilot, "EtOH")
         findings = app.screen.query_one(FindingsList)
         findings.focus()
-        await pilot.press("end")
-        await settled(pilot)
+        await pressed(pilot, "end")
         held = findings.highlighted_finding
         assert isinstance(held, Finding)
         await typed(pilot, "#field-solvent", "DMF")

@@ -13,6 +13,7 @@ from textual.screen import ModalScreen
 from textual.widgets import Button, Input, Static
 
 from tui.present import safe
+from tui.widgets.lines import SafeInput
 
 
 class WordsScreen(ModalScreen[None]):
@@ -37,6 +38,8 @@ class WordsScreen(ModalScreen[None]):
 class LineScreen(ModalScreen[str | None]):
     """One line to type, such as a reason; empty is refused, Escape gives None."""
 
+    AUTO_FOCUS = "#line-input"
+
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("escape", "cancel", "Cancel", id="line.cancel", tooltip="Leave without doing it"),
     ]
@@ -53,7 +56,7 @@ class LineScreen(ModalScreen[str | None]):
         with VerticalScroll(classes="dialog"):
             yield Static(Text(safe(self._title), style="bold"))
             yield Static(Text(safe(self._words, keep_lines=True)))
-            yield Input(self._value, compact=True, id="line-input")
+            yield SafeInput(self._value, id="line-input")
             yield Static("Write something first.", classes="trouble", id="line-trouble", markup=False)
             with Horizontal(classes="buttons"):
                 yield Button(self._go, id="line-go", classes="-primary")
@@ -76,6 +79,8 @@ class LineScreen(ModalScreen[str | None]):
 
 class SureScreen(ModalScreen[bool]):
     """A yes or no; Escape means no."""
+
+    AUTO_FOCUS = "#sure-no"
 
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("escape,n", "answer(False)", "No", id="sure.no", tooltip="No"),

@@ -107,11 +107,17 @@ F10 takes it up again.
         self.refresh_bindings()
 
     def _fill(self) -> None:
+        """Write the state into the form."""
         self.form.fill(self._state)
-        self.run_worker(self._show_products(), group="rows", exclusive=True)
+        self._lay_out_products(is_restored=True)
 
-    async def _show_products(self) -> None:
-        await self.form.show_products(rows_in(self._state), self._state, self._drawings, self.app.in_words)
+    def _lay_out_products(self, is_restored: bool = False) -> None:
+        self.run_worker(self._show_products(is_restored), group="rows", exclusive=True)
+
+    async def _show_products(self, is_restored: bool) -> None:
+        if not is_restored:
+            self._state = self.form.collect(self._state)
+        await self.form.show_products(self._state, self._drawings, self.app.in_words, is_restored)
 
     @on(EntryForm.Changed)
     def _edited(self) -> None:
@@ -144,7 +150,7 @@ F10 takes it up again.
         self._drawings = {**self._drawings, **drawings}
         if reading.ok:
             self._state = with_rows(self.form.collect(self._state), rows)
-        self.run_worker(self._show_products(), group="rows", exclusive=True)
+        self._lay_out_products()
 
     def _show_bad(self, error: SidepathError) -> None:
         words = self.query_one("#reading", Static)
@@ -246,7 +252,7 @@ F10 takes it up again.
         self._state = with_rows(self.form.collect(self._state), (*rows_in(self._state), row))
         self._drawings[text] = drawing
         self._was_edited = True
-        self.run_worker(self._show_products(), group="rows", exclusive=True)
+        self._lay_out_products()
         self._later("keep", KEEP_S, self._keep)
 
     def copy_texts(self) -> dict[str, str]:

@@ -29,6 +29,7 @@ from tui.screens.base import PlaceScreen
 from tui.screens.run_detail import RunScreen
 from tui.styles import HERE
 from tui.widgets.cards import HitCard, HitGrid
+from tui.widgets.lines import SafeInput
 from tui.widgets.panel import Panel
 
 LINES: tuple[tuple[str, str, str], ...] = (
@@ -98,7 +99,7 @@ and b turn the pages.
                             title, example = words[name]
                             classes = "form-word second" if position else "form-word"
                             yield Static(title, classes=classes, markup=False)
-                            yield Input(placeholder=example, compact=True, id=f"find-{name}", classes="line")
+                            yield SafeInput(placeholder=example, id=f"find-{name}", classes="line")
                 for name, title, options in CHOICES:
                     pairs = [(words_of(option), option) for option in options]
                     yield Select(pairs, prompt=title, compact=True, id=f"find-{name}", classes="find-choice")

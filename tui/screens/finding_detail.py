@@ -30,6 +30,8 @@ from tui.widgets.structure import SchemeView
 class FindingScreen(ModalScreen[None]):
     """One finding; Enter on a run opens it."""
 
+    AUTO_FOCUS = "#finding-runs, #finding-body"
+
     CSS_PATH = HERE / "runs.tcss"
     HELP = "One finding in full. Enter on a run opens it; Escape goes back."
     BINDINGS: ClassVar[list[BindingType]] = [

@@ -20,6 +20,7 @@ from tui.ports import BookPort
 from tui.present import safe
 from tui.screens.base import AskingScreen
 from tui.styles import HERE
+from tui.widgets.lines import SafeInput
 
 WELCOME = (
     "Sidepath keeps a group's own runs, failed ones included, and tells before the next step is set up what the "
@@ -57,12 +58,10 @@ the book that is open, if one is.
                 yield Static("invented runs, to look round in", classes="quiet", markup=False)
             with Horizontal(classes="first-row"):
                 yield Button("Make a new book", id="first-new")
-                yield Input(placeholder="where to keep it", compact=True, id="first-new-path", classes="line")
+                yield SafeInput(placeholder="where to keep it", id="first-new-path", classes="line")
             with Horizontal(classes="first-row"):
                 yield Button("Open a book", id="first-open")
-                yield Input(
-                    placeholder="file, or URL of a database", compact=True, id="first-open-path", classes="line"
-                )
+                yield SafeInput(placeholder="file, or URL of a database", id="first-open-path", classes="line")
             yield ProgressBar(id="first-progress", show_eta=False)
             yield Static("", id="place-trouble", classes="trouble", markup=False)
         yield Footer(show_command_palette=False)

@@ -20,6 +20,7 @@ from tui.run_actions import RunActions
 from tui.screens.base import PlaceScreen
 from tui.screens.run_detail import RunFound, RunScreen, load_run
 from tui.styles import HERE
+from tui.widgets.lines import SafeInput
 from tui.widgets.panel import Panel
 from tui.widgets.run_view import RunView
 from tui.widgets.tables import CodeTable, RunTable
@@ -60,7 +61,7 @@ deleted.
         """Lay out the list and the run."""
         with Horizontal(id="runs"):
             with Panel("Runs", id="runs-panel"):
-                yield Input(placeholder="words in notes, codes, projects…", compact=True, id="runs-filter")
+                yield SafeInput(placeholder="words in notes, codes, projects…", id="runs-filter")
                 yield RunTable(id="runs-table")
                 yield Static("", id="runs-state", classes="quiet", markup=False)
             with Panel("Run", id="runs-run"):

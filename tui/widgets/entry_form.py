@@ -18,8 +18,9 @@ from textual.widgets import Button, Input, Select, Static, TextArea
 from kb.chem.layout import SchemeDrawing
 from kb.errors import SidepathError
 from kb.vocabulary import Cause, Method, Verdict
-from tui.entry_state import FIGURES, INTEGRALS, SHARES, ProductRow, failures_in, read_split
+from tui.entry_state import FIGURES, INTEGRALS, SHARES, failures_in, read_split, rows_in
 from tui.present import words_of
+from tui.widgets.lines import NoteArea, SafeInput
 from tui.widgets.panel import Panel
 from tui.widgets.product_rows import ProductRows
 from tui.widgets.step_form import RUN_ROWS, StepForm
@@ -59,7 +60,7 @@ class EntryForm(VerticalScroll, can_focus=False):
                 yield from self._line_row(("motif", "Motif lost", "SMARTS of what was hit"))
                 yield from self._choice_row("cause", "Cause")
             with Panel("Words"):
-                yield TextArea(id="field-note", compact=True)
+                yield NoteArea(id="field-note", compact=True)
                 yield from self._line_row(("reference", "Notebook", ""), ("date", "Date", "2026-03-01"))
                 yield from self._line_row(("by", "By", self._who))
         with Vertical(id="entry-right"):
@@ -81,7 +82,7 @@ class EntryForm(VerticalScroll, can_focus=False):
             for position, (name, word, example) in enumerate(lines):
                 classes = "form-word second wide-word" if position else "form-word wide-word"
                 yield Static(word, classes=classes, markup=False)
-                yield Input(placeholder=example, compact=True, id=f"field-{name}", classes="line")
+                yield SafeInput(placeholder=example, id=f"field-{name}", classes="line")
 
     def _choice_row(self, name: str, word: str) -> ComposeResult:
         with Horizontal(classes="form-row"):
@@ -148,15 +149,19 @@ class EntryForm(VerticalScroll, can_focus=False):
         return found
 
     async def show_products(
-        self,
-        rows: Sequence[ProductRow],
-        state: Mapping[str, str],
-        drawings: Mapping[str, SchemeDrawing],
-        in_words: bool,
+        self, state: Mapping[str, str], drawings: Mapping[str, SchemeDrawing], in_words: bool, is_restored: bool
     ) -> None:
-        """Show the rows of the products with their figures and drawings."""
-        await self.products.set_rows(rows, in_words)
-        self.products.fill(state)
+        """Show the products of a state.
+
+        Lines are written into only when they are new or a state is restored: a figure that is being typed
+            while the scheme is read again is never overwritten.
+        """
+        rows = rows_in(state)
+        is_new = rows != self.products.rows
+        if is_new:
+            await self.products.set_rows(rows, in_words)
+        if is_new or is_restored:
+            self.products.fill(state)
         self.products.draw(drawings)
         self.show_split(state)
 

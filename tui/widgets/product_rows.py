@@ -15,6 +15,7 @@ from textual.widgets import Input, Static
 from kb.chem.layout import SchemeDrawing
 from tui.entry_state import INTEGRALS, ProductRow, RowShare, SplitRead
 from tui.present import FATE_WORDS, bar_cells, interval_words, percent, safe
+from tui.widgets.lines import SafeInput
 from tui.widgets.structure import SchemeView
 
 BAR = 12
@@ -40,9 +41,9 @@ class ProductEntry(Horizontal):
             yield Static(Content(safe(self.row.note or self.row.smiles, 200)), classes="product-note quiet")
             with Horizontal(classes="form-row"):
                 yield Static("Integral", classes="form-word product-word", markup=False)
-                yield Input(placeholder="seen", compact=True, id=f"p{self.number}-value", classes="line")
+                yield SafeInput(placeholder="seen", id=f"p{self.number}-value", classes="line")
                 yield Static("protons", classes="form-word second product-protons", markup=False)
-                yield Input(placeholder="1", compact=True, id=f"p{self.number}-protons", classes="line product-protons")
+                yield SafeInput(placeholder="1", id=f"p{self.number}-protons", classes="line product-protons")
             yield Static("", classes="product-share", markup=False)
 
     def show_share(self, read: RowShare) -> None:
@@ -74,10 +75,13 @@ class ProductRows(Vertical):
         yield Vertical(id="product-list")
         yield Static("", id="product-total", markup=False)
 
+    @property
+    def rows(self) -> tuple[ProductRow, ...]:
+        """Return the rows that are shown."""
+        return self._rows
+
     async def set_rows(self, rows: Sequence[ProductRow], in_words: bool) -> None:
         """Show these rows, in this order, empty."""
-        if tuple(rows) == self._rows:
-            return
         self._rows = tuple(rows)
         listing = self.query_one("#product-list", Vertical)
         await listing.remove_children()
@@ -99,11 +103,12 @@ class ProductRows(Vertical):
 
     @property
     def figures(self) -> dict[str, str]:
-        """Return what is written in the lines."""
+        """Return what is written in the lines; nothing of rows that are just being laid out."""
         found = {}
         for entry in self.query(ProductEntry):
             for part in ("value", "protons"):
-                found[f"p{entry.number}.{part}"] = self.query_one(f"#p{entry.number}-{part}", Input).value
+                for line in entry.query(f"#p{entry.number}-{part}").results(Input):
+                    found[f"p{entry.number}.{part}"] = line.value
         return found
 
     def show_split(self, read: SplitRead, how: str) -> None:

@@ -24,6 +24,7 @@ from kb.errors import SidepathError
 from tui.condition_text import FIELD_EXAMPLES, FIELD_WORDS, ConditionTexts
 from tui.ports import BookPort
 from tui.present import safe
+from tui.widgets.lines import SafeInput
 
 KINDS = {
     "reagent": "reagent",
@@ -79,7 +80,7 @@ class CatalogueSuggester(Suggester):
         return None
 
 
-class LineInput(Input):
+class LineInput(SafeInput):
     """One line of a form: Enter and the arrow keys walk through the lines."""
 
     BINDINGS: ClassVar[list[BindingType]] = [
@@ -91,7 +92,6 @@ class LineInput(Input):
         super().__init__(
             placeholder=placeholder,
             suggester=suggester,
-            compact=True,
             select_on_focus=False,
             id=f"field-{field}",
             classes="line",
