@@ -21,13 +21,14 @@ from kb.vocabulary import CentreFlag, LeavingGroup
 PARTS: tuple[tuple[str, float], ...] = (
     ("centre", 0.22),
     ("leaving group", 0.12),
-    ("nucleophile", 0.13),
-    ("base", 0.10),
+    ("nucleophile", 0.12),
+    ("base", 0.09),
     ("solvent", 0.08),
     ("temperature", 0.08),
     ("promoter", 0.08),
-    ("groups at risk", 0.15),
-    ("rest of molecule", 0.04),
+    ("groups at risk", 0.14),
+    ("reagents", 0.04),
+    ("rest of molecule", 0.03),
 )
 """Parts and their weights (sum 1)."""
 
@@ -104,6 +105,7 @@ def similarity_parts(
         "temperature": _gauss(plan, table, "temperature_c", 28.0),
         "promoter": _promoter(plan, table),
         "groups at risk": np.ones(len(table)) if risk_differences is None else RISK_STEP**risk_differences,
+        "reagents": _reagents(plan, table),
         "rest of molecule": _rest(rest, len(table)),
     }
     return {name: np.clip(values, FLOOR, 1.0) for name, values in parts.items()}
@@ -135,6 +137,11 @@ def nucleophile_similarity(one: str | None, other: str | None) -> float:
         return 0.3
     family = _NUCLEOPHILE_FAMILY.get(one)
     return 0.55 if family is not None and family == _NUCLEOPHILE_FAMILY.get(other) else 0.18
+
+
+def _reagents(plan: FactTable, table: FactTable) -> NDArray[np.float64]:
+    mine = plan.flasks.sets[int(plan.flask[0])]
+    return table.flasks.likeness_to(mine)[table.flask] if len(table) else np.zeros(0)
 
 
 def _rest(rest: NDArray[np.float64] | None, n: int) -> NDArray[np.float64]:

@@ -6,13 +6,15 @@ is the store's; -1 codes "not recorded" in word columns, NaN in number columns.
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+import json
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
+from kb.assess.flask import Flasks
 from kb.materials.profile import LEVELS
 from kb.record.derived import CENTRE_BITS, DerivedFacts
 from kb.vocabulary import CarbonClass, CentreFlag, Fate, LeavingGroup, Verdict
@@ -39,6 +41,18 @@ NUMBERS: tuple[str, ...] = (
     "temperature_c",
     "time_h",
     "beta_hydrogens",
+    "centre_atom",
+)
+_COLUMNS = (
+    "nucleophile",
+    "flags",
+    "protic",
+    "centre_bits",
+    "shares",
+    "yield_pct",
+    "date",
+    "profile",
+    "flask",
 )
 _FLAG_BIT = {str(flag): 1 << position for position, flag in enumerate(CentreFlag)}
 _WORDS_PER_CENTRE = CENTRE_BITS // 64
@@ -61,6 +75,10 @@ class FactTable:
         yield_pct: (n) float64, NaN = not recorded.
         date: proleptic ordinal (n) int32, 0 = not recorded.
         substrate: canonical SMILES (n), "" = not read.
+        profile: code into profiles (n) int32.
+        profiles: JSON of each condition profile met in this book, each once.
+        flask: code into flasks (n) int32.
+        flasks: the sets of reagents met in this book, for comparing them.
     """
 
     codes: tuple[str, ...]
@@ -75,6 +93,10 @@ class FactTable:
     yield_pct: NDArray[np.float64]
     date: NDArray[np.int32]
     substrate: tuple[str, ...]
+    profile: NDArray[np.int32]
+    profiles: tuple[str, ...]
+    flask: NDArray[np.int32]
+    flasks: Flasks
 
     def __len__(self) -> int:
         return len(self.codes)
@@ -82,19 +104,23 @@ class FactTable:
     def rows(self, keep: NDArray[Any]) -> FactTable:
         """Return the table cut down to the rows of a mask or an index array."""
         where = np.flatnonzero(keep) if keep.dtype == bool else keep
-        return FactTable(
-            codes=tuple(self.codes[i] for i in where),
-            words={k: v[where] for k, v in self.words.items()},
-            numbers={k: v[where] for k, v in self.numbers.items()},
-            nucleophile=self.nucleophile[where],
-            nucleophile_words=self.nucleophile_words,
-            flags=self.flags[where],
-            protic=self.protic[where],
-            centre_bits=self.centre_bits[where],
-            shares=self.shares[where],
-            yield_pct=self.yield_pct[where],
-            date=self.date[where],
-            substrate=tuple(self.substrate[i] for i in where),
+        return self._cut(lambda column: column[where], lambda texts: tuple(texts[i] for i in where))
+
+    def first(self, count: int) -> FactTable:
+        """Return the first rows, without copying an array."""
+        return self._cut(lambda column: column[:count], lambda texts: texts[:count])
+
+    def _cut(
+        self, arrays: Callable[[NDArray[Any]], NDArray[Any]], texts: Callable[[tuple[str, ...]], tuple[str, ...]]
+    ) -> FactTable:
+        columns: dict[str, Any] = {name: arrays(getattr(self, name)) for name in _COLUMNS}
+        return replace(
+            self,
+            codes=texts(self.codes),
+            words={k: arrays(v) for k, v in self.words.items()},
+            numbers={k: arrays(v) for k, v in self.numbers.items()},
+            substrate=texts(self.substrate),
+            **columns,
         )
 
     def word(self, column: str, row: int) -> str | None:
@@ -152,6 +178,7 @@ def build_table(columns: Mapping[str, Any]) -> FactTable:
     }
     flag_of = {text: flag_code(text or "") for text in set(columns["flags"])}
     isolated = np.asarray(columns["isolated_yield_pct"], dtype=np.float64)
+    profile, profiles, flask, flasks = _coded_profiles(columns["profile_json"])
     return FactTable(
         codes=tuple(columns["code"]),
         words=words,
@@ -167,7 +194,31 @@ def build_table(columns: Mapping[str, Any]) -> FactTable:
         yield_pct=np.where(np.isnan(isolated), np.asarray(columns["assay_yield_pct"], dtype=np.float64), isolated),
         date=np.asarray(columns["date_ordinal"], dtype=np.int32),
         substrate=tuple(s or "" for s in columns["substrate"]),
+        profile=profile,
+        profiles=profiles,
+        flask=flask,
+        flasks=flasks,
     )
+
+
+def with_profiles(table: FactTable, profiles_json: Sequence[str]) -> FactTable:
+    """Return the table with other condition profiles (n)."""
+    profile, profiles, flask, flasks = _coded_profiles(profiles_json)
+    return replace(table, profile=profile, profiles=profiles, flask=flask, flasks=flasks)
+
+
+def _coded_profiles(
+    texts: Sequence[str],
+) -> tuple[NDArray[np.int32], tuple[str, ...], NDArray[np.int32], Flasks]:
+    """Code profiles, and their sets of reagents, by order of first meeting."""
+    profiles = tuple(dict.fromkeys(texts))
+    code = {text: place for place, text in enumerate(profiles)}
+    profile = np.fromiter((code[text] for text in texts), dtype=np.int32, count=len(texts))
+    reagents = [frozenset(json.loads(text).get("reagents", ())) for text in profiles]
+    sets = tuple(dict.fromkeys(reagents))
+    set_code = {one: place for place, one in enumerate(sets)}
+    of_profile = np.array([set_code[one] for one in reagents], dtype=np.int32)
+    return profile, profiles, of_profile[profile], Flasks(sets)
 
 
 def columns_of(rows: Sequence[DerivedFacts]) -> dict[str, Any]:
@@ -178,7 +229,7 @@ def columns_of(rows: Sequence[DerivedFacts]) -> dict[str, Any]:
         for name in DerivedFacts.__slots__
         if name not in ("run_id", "recipe")
     }
-    for name in (*NUMBERS, "centre_atom"):
+    for name in NUMBERS:
         columns[name] = np.array([np.nan if v is None else v for v in columns[name]], dtype=np.float64)
     columns["protic"] = np.array([-1 if p is None else int(p) for p in columns["protic"]], dtype=np.int8)
     packed = b"".join(bits or bytes(CENTRE_BITS // 8) for bits in columns["centre_bits"])

@@ -2,8 +2,8 @@
 
 It owns the order in time and the cut, and judges nothing. A run sees the runs of earlier *days*: what was set up the
 same day had no outcome yet. Undated runs neither see nor are seen, since nobody can say what they knew. All views share
-one set of caches (profiles, runs, molecules, motif hits), which hold no outcome of a later run: a profile, a molecule and
-a motif hit follow from the row itself.
+one set of caches (profiles, runs, molecules, motif hits), which hold no outcome of a later run: a profile, a molecule
+and a motif hit follow from the row itself.
 """
 
 from __future__ import annotations
@@ -16,7 +16,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kb.assess.record_view import RecordView
-from kb.assess.table import FactTable
 from kb.materials.profile import ConditionProfile
 from kb.record.run import Run
 from kb.store.values import HouseRule
@@ -82,10 +81,6 @@ class DatedRecord:
         """Return the conditions of the run at a place."""
         return self.view.profile(int(self.rows[place]))
 
-    def profile_json(self, count: int) -> list[str]:
-        """Return the profiles of the first `count` runs as stored text."""
-        return self._texts[:count]
-
     def places_with_motif(self, smarts: str) -> NDArray[np.intp]:
         """Return the places of all dated runs that hold a motif, ascending."""
         if smarts not in self._motif_rows:
@@ -109,12 +104,6 @@ class DatedRecord:
         return first
 
     @cached_property
-    def _texts(self) -> list[str]:
-        from kb.store.derivation import profile_to_json
-
-        return [profile_to_json(self.profile(place)) for place in range(len(self))]
-
-    @cached_property
     def _place_of(self) -> NDArray[np.intp]:
         places = np.full(len(self.view.table), -1, dtype=np.intp)
         places[self.rows] = np.arange(len(self.rows))
@@ -126,11 +115,12 @@ class _EarlierView(RecordView):
 
     def __init__(self, dated: DatedRecord, count: int) -> None:
         super().__init__(
-            first_rows(dated.table, count),
-            dated.profile_json(count),
+            dated.table.first(count),
+            None,
             dated.failures[:count],
             dated.view,  # type: ignore[arg-type]  # run() below never asks it by code
             lambda smarts: _below(dated.places_with_motif(smarts), count),
+            dated.view,
         )
         self._dated = dated
         self._count = count
@@ -155,24 +145,6 @@ class _EarlierView(RecordView):
         if not 0 <= row < self._count:
             raise IndexError(f"Row {row} lies beyond the {self._count} earlier runs.")
         return int(row)
-
-
-def first_rows(table: FactTable, count: int) -> FactTable:
-    """Return the first rows of a table without copying its arrays."""
-    return FactTable(
-        codes=table.codes[:count],
-        words={name: column[:count] for name, column in table.words.items()},
-        numbers={name: column[:count] for name, column in table.numbers.items()},
-        nucleophile=table.nucleophile[:count],
-        nucleophile_words=table.nucleophile_words,
-        flags=table.flags[:count],
-        protic=table.protic[:count],
-        centre_bits=table.centre_bits[:count],
-        shares=table.shares[:count],
-        yield_pct=table.yield_pct[:count],
-        date=table.date[:count],
-        substrate=table.substrate[:count],
-    )
 
 
 def _below(places: NDArray[np.intp], count: int) -> NDArray[np.intp]:
