@@ -1,0 +1,426 @@
+"""Recurring failures: what keeps going wrong, where, when, at what cost, and whether the record could have told.
+
+It owns the clusters: failures of one mode at one generalised place (`places.py`), acid and strong base told apart where
+both recur. For each it says how often and when, in which projects, what it cost in material and days as far as recorded,
+which members had an earlier member under conditions no harsher, and which house rules cover it; and it proposes a
+rule (`condition_line.py`) with its trial on the whole book. It ranks clusters by cost of material and count, and never
+people: initials are not read.
+"""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections import Counter, defaultdict
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from kb.assess.forcing import is_at_least_as_forcing, is_no_more_forcing
+from kb.assess.house_rules import RuleTrial, try_rule
+from kb.assess.predicate import parse_predicate
+from kb.assess.record_view import RecordView
+from kb.audit.condition_line import Line, ProfileTable, propose_line
+from kb.audit.failing import failed_rows, judged_rows, meaning_of
+from kb.audit.places import Aspect, Place
+from kb.audit.siting import Sited, site_failures
+from kb.errors import Cancelled
+from kb.progress import Progress, Silent
+from kb.record.failure_modes import modes_that_lose_a_group
+from kb.store.values import HouseRule
+from kb.vocabulary import Severity
+
+RECURS = 2
+"""Runs from which a failure recurs."""
+STRONG_BASE_PKAH = 12.0
+"""From here a base is strong enough to be told apart from an acid; judgement."""
+_NOTHING_HAPPENED = frozenset({"no-reaction", "stalled"})
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Circumstance:
+    """What a run's cost is reckoned from; None = not recorded."""
+
+    project: str | None = None
+    scale_mmol: float | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Proposal:
+    """A house rule that would have warned, and what it does on the whole book."""
+
+    rule: HouseRule
+    trial: RuleTrial
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return plain JSON values."""
+        return {
+            "title": self.rule.title,
+            "motif": self.rule.motif,
+            "when": self.rule.when,
+            "severity": str(self.rule.severity),
+            "why": self.rule.why,
+            "hits": list(self.trial.hits),
+            "false_alarms": list(self.trial.false_alarms),
+            "undecided": len(self.trial.undecided),
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Cluster:
+    """One recurring failure.
+
+    Attributes:
+        name: stable within a book ("group-loss/tertiary-alkyl-ether/acid").
+        mode, meaning: word of the list, and what it means.
+        place: words. smarts: of what the members share in the substrate; "" = nothing in the substrate.
+        conditions: plain words for what the members share in the flask.
+        runs: codes in date order, undated last.
+        first, last: days; None = none is dated.
+        quarters: ("2025-Q2", count), in order.
+        projects: (word, count), most first; runs without a project are left out.
+        lost_mmol: substrate that did not become what was wanted [mmol], over the runs that record a scale.
+        lost_mmol_runs: how many those are.
+        days: reaction time spent [d], over `days_runs` runs that record it.
+        repeats: (run, earlier run) where an earlier member stood in the book under conditions no harsher.
+        came_through: codes of runs at the same place that worked, whatever their conditions.
+        covered_by: (house rule in force, members it warns of), best first.
+        proposal: None where no line of conditions tells the failures apart, or a house rule covers them all.
+        example: (substrate SMILES, atoms of the shared place in it), for drawing; of the latest member.
+        foreseeable: False for losses by hand, bottle and funnel.
+    """
+
+    name: str
+    mode: str
+    meaning: str
+    place: str
+    smarts: str
+    conditions: str
+    runs: tuple[str, ...]
+    first: dt.date | None
+    last: dt.date | None
+    quarters: tuple[tuple[str, int], ...]
+    projects: tuple[tuple[str, int], ...]
+    lost_mmol: float
+    lost_mmol_runs: int
+    days: float
+    days_runs: int
+    repeats: tuple[tuple[str, str], ...]
+    came_through: tuple[str, ...]
+    covered_by: tuple[tuple[str, int], ...]
+    proposal: Proposal | None
+    example: tuple[str, tuple[int, ...]]
+    foreseeable: bool
+
+    @property
+    def title(self) -> str:
+        """Return the cluster in one line."""
+        return f"{self.mode.replace('-', ' ').capitalize()}: {self.place}" + (f", {self.conditions}" if self.conditions else "")
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return plain JSON values."""
+        return {
+            "name": self.name,
+            "title": self.title,
+            "mode": self.mode,
+            "meaning": self.meaning,
+            "place": self.place,
+            "smarts": self.smarts,
+            "conditions": self.conditions,
+            "count": len(self.runs),
+            "runs": list(self.runs),
+            "first": self.first.isoformat() if self.first else None,
+            "last": self.last.isoformat() if self.last else None,
+            "quarters": [list(pair) for pair in self.quarters],
+            "projects": [list(pair) for pair in self.projects],
+            "lost_mmol": self.lost_mmol,
+            "lost_mmol_runs": self.lost_mmol_runs,
+            "days": self.days,
+            "days_runs": self.days_runs,
+            "repeats": [{"run": run, "earlier": earlier} for run, earlier in self.repeats],
+            "came_through": len(self.came_through),
+            "covered_by": [{"rule": rule, "runs": n} for rule, n in self.covered_by],
+            "proposal": self.proposal.as_dict() if self.proposal else None,
+            "example": {"smiles": self.example[0], "atoms": list(self.example[1])},
+            "foreseeable": self.foreseeable,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Recurrence:
+    """All recurring failures of a book, costliest first.
+
+    Attributes:
+        clusters: see `Cluster`.
+        runs, failures: in the book, and since the date asked for.
+        in_clusters: failures (since the date) that stand in a cluster.
+        unplaced: failures whose place the record does not show.
+        since: only failures from this day were counted; None = all.
+    """
+
+    clusters: tuple[Cluster, ...]
+    runs: int
+    failures: int
+    in_clusters: int
+    unplaced: int
+    since: dt.date | None = None
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return the JSON object of `audit recurring`."""
+        return {
+            "runs": self.runs,
+            "failures": self.failures,
+            "in_clusters": self.in_clusters,
+            "unplaced": self.unplaced,
+            "since": self.since.isoformat() if self.since else None,
+            "clusters": [c.as_dict() for c in self.clusters],
+        }
+
+
+def find_recurring(
+    view: RecordView,
+    circumstances: Mapping[str, Circumstance] | None = None,
+    house_rules: Sequence[HouseRule] = (),
+    since: dt.date | None = None,
+    progress: Progress | None = None,
+) -> Recurrence:
+    """Find the recurring failures of a book.
+
+    Args:
+        view: the whole book.
+        circumstances: project and scale by code; missing ones count as not recorded.
+        house_rules: retired ones are passed over.
+        since: count failures from this day on; earlier ones still serve as the earlier record.
+
+    Raises:
+        Cancelled: the user stopped it.
+    """
+    progress = progress or Silent()
+    failed = failed_rows(view)
+    counted = failed & (view.table.date >= since.toordinal()) if since else failed
+    rows = [row for row, pairs in enumerate(view.failures) if pairs]
+    sited = site_failures(view, rows)
+    finder = _Finder(view, circumstances or {}, [r for r in house_rules if not r.is_retired], counted)
+    groups = [group for group in _grouped(view, sited) if sum(counted[r] or not since for r in group.rows) >= RECURS]
+    clusters = []
+    for number, group in enumerate(groups):
+        if progress.cancelled():
+            raise Cancelled("The audit was stopped.", "Nothing was changed.")
+        clusters.append(finder.cluster(group, since))
+        progress.advance(number + 1, len(groups), "recurring failures")
+    clusters.sort(key=lambda c: (-c.lost_mmol, -len(c.runs), c.name))
+    clustered = {code for c in clusters for code in c.runs}
+    return Recurrence(
+        clusters=tuple(clusters),
+        runs=len(view.table),
+        failures=int(counted.sum()),
+        in_clusters=len(clustered),
+        unplaced=sum(one.place is None for one in sited),
+        since=since,
+    )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Group:
+    mode: str
+    place: Place
+    driver: str
+    rows: tuple[int, ...]
+
+
+def _grouped(view: RecordView, sited: Sequence[Sited]) -> list[_Group]:
+    """Gather failures by mode and place; acid and strong base apart where both recur."""
+    gathered: dict[tuple[str, tuple[str, ...]], list[Sited]] = defaultdict(list)
+    for one in sited:
+        if one.place is not None:
+            gathered[(one.mode, one.place.key)].append(one)
+    groups = []
+    for (mode, _), members in gathered.items():
+        drivers: dict[str, list[int]] = defaultdict(list)
+        for one in members:
+            drivers[_driver(view, one.row)].append(one.row)
+        opposed = [d for d in ("acid", "base") if len(drivers.get(d, ())) >= RECURS]
+        if len(opposed) == 2:
+            larger = max(opposed, key=lambda d: len(drivers[d]))
+            drivers[larger] += drivers.pop("", [])
+            parts = {d: drivers[d] for d in opposed}
+        else:
+            parts = {"": [one.row for one in members]}
+        place = members[0].place
+        groups += [
+            _Group(mode=mode, place=place, driver=driver, rows=tuple(sorted(set(rows))))
+            for driver, rows in parts.items()
+            if place is not None and len(set(rows)) >= RECURS
+        ]
+    return groups
+
+
+def _driver(view: RecordView, row: int) -> str:
+    profile = view.profile(row)
+    if profile.acidity == "strong" or profile.lewis_acid == "strong":
+        return "acid"
+    return "base" if profile.base_pkah is not None and profile.base_pkah >= STRONG_BASE_PKAH else ""
+
+
+class _Finder:
+    """Turns gathered failures into clusters, with what they share on a book."""
+
+    def __init__(
+        self,
+        view: RecordView,
+        circumstances: Mapping[str, Circumstance],
+        rules: Sequence[HouseRule],
+        counted: NDArray[np.bool_],
+    ) -> None:
+        self.view = view
+        self.table = view.table
+        self.circumstances = circumstances
+        self.rules = rules
+        self.counted = counted
+        self.profiles = ProfileTable(view)
+        self.fine = judged_rows(view) & ~failed_rows(view)
+        self._warned: dict[str, set[str]] = {}
+        self._order: dict[tuple[int, int, bool], bool | None] = {}
+
+    def cluster(self, group: _Group, since: dt.date | None) -> Cluster:
+        """Describe one group of failures."""
+        table, place = self.table, group.place
+        every = sorted(group.rows, key=lambda r: (table.date[r] <= 0, table.date[r], r))
+        shown = [r for r in every if self.counted[r]] if since else every
+        dated = [dt.date.fromordinal(int(table.date[r])) for r in shown if table.date[r] > 0]
+        here = self._at(place)
+        successes = here[self.fine[here]]
+        line = self._line(group, np.array(every, dtype=np.intp), successes)
+        covered = self._covered(shown)
+        lost, lost_runs = self._lost(shown)
+        times = [t for r in shown if (t := table.number("time_h", r)) is not None]
+        projects = Counter(p for r in shown if (p := self._circumstance(r).project))
+        whole = bool(covered) and covered[0][1] == len(shown)
+        return Cluster(
+            name="/".join(part.replace(" ", "-") for part in (group.mode, *place.key[1:], group.driver) if part),
+            mode=group.mode,
+            meaning=meaning_of(group.mode),
+            place=place.words,
+            smarts=place.smarts,
+            conditions=_conditions(line),
+            runs=tuple(table.codes[r] for r in shown),
+            first=dated[0] if dated else None,
+            last=dated[-1] if dated else None,
+            quarters=tuple(sorted(Counter(f"{d.year}-Q{(d.month + 2) // 3}" for d in dated).items())),
+            projects=tuple(sorted(projects.items(), key=lambda pair: (-pair[1], pair[0]))),
+            lost_mmol=round(lost, 2),
+            lost_mmol_runs=lost_runs,
+            days=round(sum(times) / 24, 2),
+            days_runs=len(times),
+            repeats=tuple(self._repeats(group, every, set(shown))),
+            came_through=tuple(table.codes[r] for r in successes),
+            covered_by=covered,
+            proposal=None if whole or line is None else self._proposal(group, line, every),
+            example=self._example(shown[-1], place),
+            foreseeable=place.aspect is not Aspect.HAND,
+        )
+
+    def _at(self, place: Place) -> NDArray[np.intp]:
+        """Return the rows at a kind of place, failed or not."""
+        if place.aspect is Aspect.HAND:
+            return np.zeros(0, dtype=np.intp)
+        if place.aspect is Aspect.PARTNER:
+            words = np.array([*self.table.nucleophile_words, ""], dtype=object)
+            return np.flatnonzero(words[self.table.nucleophile] == place.key[1])
+        if place.aspect is Aspect.MEDIUM:
+            return np.flatnonzero(
+                self.profiles.holds(f"solvent in ({place.key[1].replace('-', '_')})", np.arange(len(self.table)))
+            )
+        return np.asarray(self.view.rows_with_motif(place.smarts), dtype=np.intp)
+
+    def _line(self, group: _Group, members: NDArray[np.intp], successes: NDArray[np.intp]) -> Line | None:
+        first = ""
+        if group.place.aspect is Aspect.HAND:
+            return None
+        if group.place.aspect is Aspect.PARTNER:
+            first = f"nucleophile_class == {group.place.key[1]}"
+        elif group.place.aspect is Aspect.MEDIUM:
+            first = f"solvent in ({group.place.key[1].replace('-', '_')})"
+        return propose_line(self.profiles, members, successes, first, group.mode in _NOTHING_HAPPENED)
+
+    def _proposal(self, group: _Group, line: Line, rows: Sequence[int]) -> Proposal:
+        codes = [self.table.codes[r] for r in rows]
+        share = line.members / (line.members + line.alarms)
+        severity = Severity.SERIOUS if share >= 0.75 and line.members >= 3 else Severity.CAUTION
+        title = f"{group.mode.replace('-', ' ').capitalize()} at {group.place.words}"
+        rule = HouseRule(
+            title=title,
+            motif=group.place.smarts,
+            when=line.text,
+            severity=severity,
+            why=f"In {len(rows)} runs of this book: {meaning_of(group.mode)}.",
+            author="audit",
+            source="recurring failures: " + ", ".join(codes[:12]) + (" ..." if len(codes) > 12 else ""),
+        )
+        return Proposal(rule=rule, trial=try_rule(rule, self.view))
+
+    def _covered(self, rows: Sequence[int]) -> tuple[tuple[str, int], ...]:
+        found = []
+        for rule in self.rules:
+            if rule.rule_id not in self._warned:
+                self._warned[rule.rule_id] = set(try_rule(rule, self.view).hits)
+            count = sum(self.table.codes[r] in self._warned[rule.rule_id] for r in rows)
+            if count:
+                found.append((rule.rule_id, count))
+        return tuple(sorted(found, key=lambda pair: (-pair[1], pair[0])))
+
+    def _lost(self, rows: Sequence[int]) -> tuple[float, int]:
+        """Return substrate lost [mmol] and over how many runs that is known: scale x (1 - yield)."""
+        lost, known = 0.0, 0
+        for row in rows:
+            scale = self._circumstance(row).scale_mmol
+            if scale is None:
+                continue
+            got = self.table.yield_pct[row]
+            lost += scale * (1 - min(0.0 if np.isnan(got) else float(got) / 100, 1.0))
+            known += 1
+        return lost, known
+
+    def _circumstance(self, row: int) -> Circumstance:
+        return self.circumstances.get(self.table.codes[row], Circumstance())
+
+    def _repeats(self, group: _Group, rows: Sequence[int], shown: set[int]) -> list[tuple[str, str]]:
+        """Return (run, earlier run) for members that an earlier day's member under no harsher conditions preceded."""
+        dated = [r for r in rows if self.table.date[r] > 0]
+        if group.place.aspect is Aspect.HAND:
+            return []
+        found, earlier = [], []  # type: ignore[var-annotated]
+        for row in dated:
+            before = (r for r in earlier if self.table.date[r] < self.table.date[row])
+            warning = next((r for r in before if self._is_as_forcing(row, r, group.mode)), None)
+            if warning is not None and row in shown:
+                found.append((self.table.codes[row], self.table.codes[warning]))
+            earlier.append(row)
+        return found
+
+    def _is_as_forcing(self, row: int, earlier: int, mode: str) -> bool:
+        mild = mode in _NOTHING_HAPPENED
+        key = (int(self.profiles.of_row[row]), int(self.profiles.of_row[earlier]), mild)
+        if key not in self._order:
+            compare: Callable[..., bool | None] = is_no_more_forcing if mild else is_at_least_as_forcing
+            self._order[key] = compare(self.profiles.profiles[key[0]], self.profiles.profiles[key[1]])
+        return self._order[key] is True
+
+    def _example(self, row: int, place: Place) -> tuple[str, tuple[int, ...]]:
+        from rdkit import Chem
+
+        smiles = self.table.substrate[row]
+        mol = self.view.mol(smiles)
+        query = Chem.MolFromSmarts(place.smarts) if place.smarts else None
+        atoms = tuple(mol.GetSubstructMatch(query)) if mol is not None and query is not None else ()
+        return smiles, atoms
+
+
+def _conditions(line: Line | None) -> str:
+    """Return a line in plain words, without the sentence round it."""
+    if line is None:
+        return ""
+    said = parse_predicate(line.text).as_sentence()
+    return said.removeprefix("Applies when ").removesuffix(".").removesuffix(" (numbers are judged limits)")
