@@ -7,7 +7,9 @@ Stylesheets other than the common one belong to the screens that need them, for 
 
 from __future__ import annotations
 
+import asyncio
 import logging
+import signal
 from collections.abc import Callable, Iterable
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, ClassVar
@@ -15,6 +17,7 @@ from typing import TYPE_CHECKING, Any, ClassVar
 from textual import on
 from textual.app import App, ComposeResult, SystemCommand
 from textual.binding import Binding, BindingType
+from textual.events import Key
 from textual.reactive import reactive
 from textual.screen import Screen
 from textual.worker import Worker, WorkerState
@@ -30,6 +33,8 @@ if TYPE_CHECKING:
     from tui.ports import BookPort, Opener
 
 log = logging.getLogger(__name__)
+
+STOPPED = "Sidepath stopped on a fault of the program. What you typed is kept as a draft; the log has the details."
 
 SWITCH_S = 0.002
 """How long a worker thread may hold the interpreter while a key waits [s].
@@ -101,6 +106,7 @@ class SidepathApp(App[None]):
         self._opener = opener
         self._place = place
         self.who = who
+        self._early: list[Key] | None = []
         for known in THEMES:
             self.register_theme(known)
         names = [known.name for known in THEMES]
@@ -119,18 +125,37 @@ class SidepathApp(App[None]):
         yield PlaceBar("planning", id="place-bar")
 
     def on_mount(self) -> None:
-        """Go to work once the bar is painted."""
+        """Go to work once the bar is painted; when told to end from outside, leave the terminal as it was."""
+        if not self.is_headless:
+            for number in (signal.SIGTERM, signal.SIGHUP):
+                asyncio.get_running_loop().add_signal_handler(number, self.exit)
         self.call_after_refresh(self._begin)
 
     async def _begin(self) -> None:
         """Load the planning place and open the book."""
         self.open_book(lambda: self._opener.open(self._place))
         await self.switch_mode("planning")
+        self.call_after_refresh(self._type_early_keys)
+
+    def on_key(self, event: Key) -> None:
+        """Keep what is typed before there is a form to type into."""
+        if self._early is not None:
+            self._early.append(event)
+
+    def _type_early_keys(self) -> None:
+        early, self._early = self._early or [], None
+        for event in early:
+            self.post_message(Key(event.key, event.character))
 
     @property
     def opener(self) -> Opener:
         """Return how books are opened."""
         return self._opener
+
+    def _fatal_error(self) -> None:
+        """Stop on a fault of the program with plain words; the traceback goes to the log."""
+        log.error("stopped on a fault", exc_info=self._exception)
+        self.panic(STOPPED)
 
     def open_book(self, how: Callable[[], BookPort]) -> None:
         """Open a book in a worker; `how` runs in its thread."""
@@ -240,6 +265,7 @@ def run_application(book: str | None, who: str | None) -> None:
 
     Raises:
         SettingsError: the settings cannot be read.
+        SidepathError: the interface stopped on a fault.
     """
     import getpass
     import sys
@@ -252,12 +278,15 @@ def run_application(book: str | None, who: str | None) -> None:
     settings = load_settings({"book": book, "as": who}, file=settings_file())
     sys.setswitchinterval(SWITCH_S)
     with log_to_file(log_file()):
-        SidepathApp(
+        app = SidepathApp(
             DeskOpener(),
             place=settings.book,
             who=settings.initials or getpass.getuser(),
             theme=THEME_OF_SETTING.get(settings.theme, ""),
-        ).run()
+        )
+        app.run()
+    if app.return_code:
+        raise SidepathError("The terminal interface did not end as it should.", f"See {log_file()}.")
 
 
 def _late(module: str, name: str) -> Screen[Any]:

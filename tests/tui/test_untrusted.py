@@ -78,6 +78,21 @@ async def test_five_kilobytes_pasted_and_two_hundred_fast_keys_lose_nothing() ->
         assert line.value == keys
 
 
+async def test_letters_after_enter_belong_to_the_next_line_however_fast() -> None:
+    from textual.events import Key
+
+    async with driven() as (app, pilot):
+        app.screen.query_one("#field-scheme").focus()
+        await pilot.pause()
+        for word in ("CCBr", "NaI", "K2CO3"):
+            for character in word:
+                app.post_message(Key(character, character))
+            app.post_message(Key("enter", "\r"))
+        await settled(pilot)
+        state = app.screen.form.state
+        assert (state["scheme"], state["reagent"], state["base"]) == ("CCBr", "NaI", "K2CO3")
+
+
 async def test_resizing_while_typing_keeps_everything() -> None:
     async with driven() as (app, pilot):
         await typed(pilot, "#field-scheme", "CCBr")

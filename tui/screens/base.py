@@ -115,6 +115,8 @@ class AskingScreen(Screen[ScreenResult]):
             value = work()
         except SidepathError as error:
             self.post_message(Answered(kind, ticket, partial(failed, error)))
+        except SystemExit as error:  # would end the event loop, and with it the interface
+            raise RuntimeError(f"a worker asked to end the program: {error}") from error
         else:
             self.post_message(Answered(kind, ticket, partial(done, value)))
 

@@ -81,11 +81,16 @@ class CatalogueSuggester(Suggester):
 
 
 class LineInput(SafeInput):
-    """One line of a form: Enter and the arrow keys walk through the lines."""
+    """One line of a form: Enter and the arrow keys walk through the lines.
+
+    These keys are taken before the line sees them, in the order in which they were pressed: letters that
+        follow an Enter belong to the next line however fast they come.
+    """
 
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("down", "app.focus_next", "Next line", show=False, id="form.next"),
-        Binding("up", "app.focus_previous", "Line before", show=False, id="form.previous"),
+        Binding("enter", "leave_line", "Next line", show=False, priority=True, id="form.enter"),
+        Binding("down", "app.focus_next", "Next line", show=False, priority=True, id="form.next"),
+        Binding("up", "app.focus_previous", "Line before", show=False, priority=True, id="form.previous"),
     ]
 
     def __init__(self, field: str, placeholder: str = "", suggester: Suggester | None = None) -> None:
@@ -107,12 +112,15 @@ class LineInput(SafeInput):
             return
         super().action_cursor_right(select)
 
-    async def action_submit(self) -> None:
-        """Take the completion if there is one, and go to the next line."""
-        if self._suggestion and self.cursor_position >= len(self.value):
+    def action_leave_line(self) -> None:
+        """Go to the next line; the completion, if there is one, is taken once all letters are in."""
+        self.call_later(self._take_completion)
+        self.screen.focus_next()
+
+    def _take_completion(self) -> None:
+        if self._suggestion and self._suggestion.startswith(self.value) and self.cursor_position >= len(self.value):
             self.value = self._suggestion
             self.cursor_position = len(self.value)
-        self.screen.focus_next()
 
 
 class StepForm(Vertical):
