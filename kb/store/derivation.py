@@ -120,7 +120,8 @@ def profile_to_json(profile: ConditionProfile) -> str:
 def profile_from_json(text: str) -> ConditionProfile:
     """Read back what `profile_to_json` wrote; unknown keys of a later program are ignored."""
     known = {f.name for f in dataclasses.fields(ConditionProfile)}
-    values = {k: frozenset(v) if isinstance(v, list) else v for k, v in json.loads(text).items() if k in known}
+    given: dict[str, Any] = json.loads(text)
+    values: dict[str, Any] = {k: frozenset(v) if isinstance(v, list) else v for k, v in given.items() if k in known}
     return ConditionProfile(**values)
 
 
