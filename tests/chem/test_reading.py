@@ -7,6 +7,9 @@ and what it is called, never how much forms. Atoms are counted from 0 in the com
 from __future__ import annotations
 
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+from rdkit import Chem
 
 from kb.chem.reading import read_scheme
 from kb.vocabulary import Confidence
@@ -132,6 +135,7 @@ OTHER_FATES = [
     ("CC(C)=C.O>OS(=O)(=O)O>CC(C)(C)O", "addition", (0, 1), None, "hydration"),
     ("C=CC(=O)OC.CCN>>CCNCCC(=O)OC", "addition", (0, 0), None, "conjugate addition of an amine"),
     ("C=CC(=O)C.CCOC(=O)CC(=O)OCC>>CCOC(=O)C(CCC(C)=O)C(=O)OCC", "addition", (0, 0), None, "Michael"),
+    ("C=CC(C)=O.CC=O>>CC(=O)CCC(C)=O", "addition", (0, 0), None, "Stetter: no alcohol forms"),
     ("C=Cc1ccccc1.SCc1ccccc1>>c1ccccc1CCSCc1ccccc1", "addition", (0, 0), None, "thiol to styrene"),
     ("C1=CCCCC1.BrBr>>Br[C@@H]1CCCC[C@H]1Br", "addition", (0, 0), None, "dibromide"),
     ("C1=CCCCC1.O=C1CCC(=O)N1Br.O>>OC1CCCCC1Br", "addition", (0, 0), None, "bromohydrin"),
@@ -164,6 +168,8 @@ NOT_AT_SP3_CARBON = [
     ("CCCCO.CS(=O)(=O)Cl>CCN(CC)CC>CCCCOS(C)(=O)=O", "mesylation keeps the C-O bond"),
     ("CCCCO.CC(=O)Cl>>CCCCOC(C)=O", "acylation"),
     ("CCCCO.CC(=O)O>OS(=O)(=O)O>CCCCOC(C)=O", "Fischer ester: the acid's OH leaves"),
+    ("OCc1ccccc1.CC(=O)O>OS(=O)(=O)O>CC(=O)OCc1ccccc1", "Fischer ester, even of benzyl alcohol"),
+    ("CC=O.C=CC(=O)OC>>CC(O)C(=C)C(=O)OC", "Baylis-Hillman: the alkene is kept"),
     ("CCCCN.CC(=O)O>>CCCCNC(C)=O", "amide coupling"),
     ("CC(C)(C)OC(=O)OC(=O)OC(C)(C)C.CCCN>>CCCNC(=O)OC(C)(C)C", "Boc protection"),
     ("COC(=O)CCc1ccccc1>[OH-].[Na+].O>OC(=O)CCc1ccccc1", "saponification of a methyl ester"),
@@ -232,6 +238,7 @@ def test_a_nucleophile_that_was_left_out_is_seen_by_comparison() -> None:
     assert str(reading.fate) == "substitution"
     assert reading.centre is not None and reading.centre.atom == 7
     assert reading.nucleophile is None
+    assert "no stated component brings" in reading.reason
 
 
 def test_the_stated_product_comes_first_and_side_products_follow() -> None:
@@ -242,7 +249,11 @@ def test_the_stated_product_comes_first_and_side_products_follow() -> None:
     assert len(products) == len(set(products))
 
 
-def test_of_two_like_atoms_the_one_entered_first_is_named() -> None:
-    for scheme in ("BrCCCBr.Oc1ccccc1>>BrCCCOc1ccccc1", "Oc1ccccc1.BrCCCBr>>BrCCCOc1ccccc1"):
-        centre = read_scheme(scheme).centre
-        assert centre is not None and centre.leaving_atom == 0
+@given(st.integers(min_value=0, max_value=2**31 - 1))
+def test_of_two_like_atoms_the_one_entered_first_is_named(seed: int) -> None:
+    (text,) = Chem.MolToRandomSmilesVect(Chem.MolFromSmiles("BrCCCBr"), 1, randomSeed=seed)
+    typed = Chem.MolFromSmiles(text)
+    carbons = [a.GetIdx() for a in typed.GetAtoms() if any(n.GetSymbol() == "Br" for n in a.GetNeighbors())]
+    centre = read_scheme(f"{text}.Oc1ccccc1>>BrCCCOc1ccccc1").centre
+    assert centre is not None and centre.atom == min(carbons)
+    assert typed.GetBondBetweenAtoms(centre.atom, centre.leaving_atom) is not None
