@@ -39,11 +39,8 @@ class ProfileTable:
     """The distinct condition profiles of a view, and where each row's stands; answers kept by test."""
 
     def __init__(self, view: RecordView) -> None:
-        place: dict[ConditionProfile, int] = {}
-        self.of_row = np.empty(len(view.table), dtype=np.intp)
-        for row in range(len(view.table)):
-            self.of_row[row] = place.setdefault(view.profile(row), len(place))
-        self.profiles = list(place)
+        self.of_row: NDArray[np.intp] = np.asarray(view.table.profile, dtype=np.intp)
+        self.profiles = [view.profile_of_code(code) for code in range(len(view.table.profiles))]
         self._answers: dict[str, NDArray[np.bool_]] = {}
 
     def holds(self, line: str, rows: NDArray[np.intp]) -> NDArray[np.bool_]:

@@ -12,7 +12,7 @@ parts, stopped and taken up again, or spread over processes (tested).
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import asdict, dataclass
 from typing import Any
 
@@ -36,6 +36,7 @@ from kb.vocabulary import FindingKind, Severity
 WARNS = frozenset({FindingKind.LIABILITY, FindingKind.RESEMBLANCE, FindingKind.HOUSE_RULE})
 _WORRY = {Severity.SERIOUS: 0.6, Severity.CAUTION: 0.4, Severity.NOTE: 0.15}
 """Worry that a finding without counted runs gives; judgement."""
+_READ_AHEAD = 500
 _BASE_RUNS = 2.0
 """How many whole runs the book's own rate of failure is worth beside like runs; judgement."""
 
@@ -107,13 +108,15 @@ class Replayer:
         self._failed = failed_rows(dated.view)[dated.rows]
         self._judged = judged_rows(dated.view)[dated.rows]
 
-    def walk(self, places: Iterable[int], total: int | None = None, progress: Progress | None = None) -> list[Hindsight]:
+    def walk(self, places: Sequence[int], total: int | None = None, progress: Progress | None = None) -> list[Hindsight]:
         """Check the runs at some places, in the order given; stopped early where progress says so."""
         progress = progress or Silent()
         seen: list[Hindsight] = []
-        for place in places:
+        for number, place in enumerate(places):
             if progress.cancelled():
                 break
+            if number % _READ_AHEAD == 0:
+                self.dated.view.fetch(int(self.dated.rows[p]) for p in places[number : number + _READ_AHEAD])
             seen.append(self.check(place))
             progress.advance(len(seen), total, "runs checked")
         return seen
