@@ -15,12 +15,17 @@ if TYPE_CHECKING:
     from kb.book.keeping import create_book, migrate_book, restore_book
     from kb.book.materials_words import lookup_material
     from kb.book.plan_words import conditions_from_words, plan_from_words
+    from kb.book.run_words import runs_from_json
+    from kb.book.split_words import SplitAnswer, split_from_words
+    from kb.book.unrecorded import check_unrecorded
     from kb.book.words import (
+        check_scheme,
         house_rule,
         iter_scheme_column,
         outcome_from_words,
         parse_date,
         parse_fate,
+        parse_run_date,
         read_scheme,
         scheme_from_argument,
         today,
@@ -28,8 +33,11 @@ if TYPE_CHECKING:
 
 _HOMES = {
     "Book": "facade",
+    "SplitAnswer": "split_words",
     "open_book": "facade",
     "build_demo": "demo",
+    "check_scheme": "words",
+    "check_unrecorded": "unrecorded",
     "demo_plan": "demo",
     "conditions_from_words": "plan_words",
     "create_book": "keeping",
@@ -37,19 +45,25 @@ _HOMES = {
     "lookup_material": "materials_words",
     "migrate_book": "keeping",
     "restore_book": "keeping",
+    "runs_from_json": "run_words",
+    "split_from_words": "split_words",
     "house_rule": "words",
     "plan_from_words": "plan_words",
     "iter_scheme_column": "words",
     "outcome_from_words": "words",
     "parse_date": "words",
     "parse_fate": "words",
+    "parse_run_date": "words",
     "read_scheme": "words",
     "scheme_from_argument": "words",
     "today": "words",
 }
 __all__ = [
     "Book",
+    "SplitAnswer",
     "build_demo",
+    "check_scheme",
+    "check_unrecorded",
     "conditions_from_words",
     "create_book",
     "criteria_from_words",
@@ -62,10 +76,13 @@ __all__ = [
     "outcome_from_words",
     "parse_date",
     "parse_fate",
+    "parse_run_date",
     "plan_from_words",
     "read_scheme",
     "restore_book",
+    "runs_from_json",
     "scheme_from_argument",
+    "split_from_words",
     "today",
 ]
 

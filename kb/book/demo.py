@@ -2,45 +2,93 @@
 
 from __future__ import annotations
 
+import glob
 import importlib.util
 import sys
 import tomllib
 from pathlib import Path
 from types import ModuleType
+from typing import TYPE_CHECKING
 
 from kb import paths
+from kb.errors import Cancelled, SchemaBehind, StoreExists, StoreRefused
 from kb.logs import tame_rdkit
 from kb.progress import Progress
 from kb.record.plan import Plan
 
+if TYPE_CHECKING:
+    from kb.book.facade import Book
 
 def build_demo(book: str | None, progress: Progress) -> tuple[Path, bool]:
     """Return the demo book's place, building it where none is.
 
     Args:
-        book: where to keep it; None = the user's cache.
+        book: where to keep it; None = the user's cache. A book of an earlier program is brought up to date.
         progress: told while it builds.
 
     Returns:
         The path, and True when it was built now.
-    """
-    from kb.book.facade import open_book
 
-    target = Path(book).expanduser() if book else paths.demo_book()
+    Raises:
+        StoreExists: there is a book that is not the demo's; it is left alone.
+        StoreRefused: the place is a server's, or cannot be written.
+        Cancelled: stopped while building; nothing is left behind.
+    """
+    if book is not None and "://" in book and not book.startswith("sqlite:///"):
+        raise StoreRefused("The demo book is a file.", "Give --book a path.", book)
+    target = Path(book.removeprefix("sqlite:///")).expanduser() if book else paths.demo_book()
     if target.exists():
+        _bring_up_to_date(target, progress)
         return target, False
-    target.parent.mkdir(parents=True, exist_ok=True)
     tame_rdkit()
     half_built = target.with_name(target.name + ".building")
-    half_built.unlink(missing_ok=True)
     try:
-        with open_book(half_built, create=True) as new:
-            _builder().build(new.store, progress)
+        if book is None:
+            target.parent.mkdir(parents=True, exist_ok=True)
+        _build(half_built, progress)
         half_built.rename(target)
+    except OSError as error:
+        why = error.strerror or str(error)
+        raise StoreRefused(f"The demo book cannot be made at {target}: {why}.", "Give --book PATH.", target) from error
     finally:
-        for left_over in target.parent.glob(half_built.name + "*"):
-            left_over.unlink(missing_ok=True)
+        if target.parent.is_dir():
+            for left_over in target.parent.glob(glob.escape(half_built.name) + "*"):
+                left_over.unlink(missing_ok=True)
     return target, True
+
+
+def _build(place: Path, progress: Progress) -> None:
+    from kb.book.facade import open_book
+
+    place.unlink(missing_ok=True)
+    with open_book(place, create=True) as new:
+        if _builder().build(new.store, progress).stopped:
+            raise Cancelled("Stopped while the demo book was being built.", "Run the demo again.")
+
+
+def _bring_up_to_date(place: Path, progress: Progress) -> None:
+    """Refuse a book that is somebody's own; migrate and rebuild a demo book that an earlier program made."""
+    from kb.book.facade import open_book
+    from kb.book.keeping import migrate_book
+
+    try:
+        book = open_book(place)
+    except SchemaBehind:
+        migrate_book(str(place), progress)
+        book = open_book(place)
+    except StoreRefused:
+        book = open_book(place, read_only=True)
+    with book:
+        if not _is_demo(book):
+            raise StoreExists(f"{place} is a record book, but not the demo's.", "Give the demo another --book.", place)
+        if not book.is_read_only:
+            book.store.rebuild(progress)
+
+
+def _is_demo(book: Book) -> bool:
+    """Return True where the first entry of the first run was made by the builder."""
+    first = book.page(limit=1, sort="code", withdrawn=True, descending=False).items
+    return bool(first) and book.history(str(first[0].run_id))[0].who == _builder().WHO
 
 
 def demo_plan() -> Plan:

@@ -29,13 +29,19 @@ if TYPE_CHECKING:
     from kb.store.values import Check, HistoryEntry, HouseRule, MergeReport, Page
 
 
-def open_book(path_or_url: str | Path | None = None, create: bool = False, read_only: bool = False) -> Book:
+def open_book(
+    path_or_url: str | Path | None = None,
+    create: bool = False,
+    read_only: bool = False,
+    wait_s: float | None = None,
+) -> Book:
     """Open a record book, to be used as a context manager.
 
     Args:
         path_or_url: SQLite file or SQLAlchemy URL; None = the default place in the user's data directory.
         create: make a new one; refuses to overwrite.
         read_only: never write; several may read while one writes.
+        wait_s: how long to wait for another writer [s]; None = the store's own patience.
 
     Raises:
         StoreMissing: there is none and `create` is False.
@@ -47,9 +53,10 @@ def open_book(path_or_url: str | Path | None = None, create: bool = False, read_
     from kb.store.store import Store
 
     address = str(path_or_url) if path_or_url is not None else str(paths.default_book())
+    options = store_options() | ({} if wait_s is None else {"wait_s": wait_s})
     if create:
-        return Book(Store.create(address, **store_options()))
-    return Book(Store.open(address, read_only=read_only, **store_options()))
+        return Book(Store.create(address, **options))
+    return Book(Store.open(address, read_only=read_only, **options))
 
 
 class Book:
@@ -159,23 +166,42 @@ class Book:
         """Return what was done to a run, oldest first."""
         return tuple(self.store.history(code))
 
-    def page(self, offset: int = 0, limit: int = 50, sort: str = "date", withdrawn: bool = False) -> Page:
-        """Return one page of runs, newest first."""
+    def page(
+        self, offset: int = 0, limit: int = 50, sort: str = "date", withdrawn: bool = False, descending: bool = True
+    ) -> Page:
+        """Return one page of runs, newest or highest first.
+
+        Args:
+            offset, limit: the page is the one of `limit` runs that holds number `offset`, counted from 0.
+            sort: code, date, recorded, yield, verdict, project or by.
+            withdrawn: also the withdrawn ones.
+            descending: False = oldest or lowest first.
+        """
         from kb.store.runs import RunFilter, Sort
 
         return self.store.page(
             RunFilter(with_withdrawn=withdrawn),
             sort=Sort(sort),
-            descending=True,
+            descending=descending,
             page=offset // limit + 1,
             size=limit,
         )
 
-    def remarks(self, run: Run) -> tuple[Finding, ...]:
-        """Return what does not add up in a run, for telling whoever just recorded it."""
-        from kb.assess.data_findings import find_outcome_findings
+    def remarks(self, run: Run, wanted_code: str | None = None) -> tuple[Finding, ...]:
+        """Return what does not add up in a run, for telling whoever just recorded it; see `kb.book.remarks`."""
+        from kb.book.remarks import remarks_on
 
-        return find_outcome_findings(run.outcome)
+        return remarks_on(run, wanted_code)
+
+    def known(self, runs: Sequence[Run]) -> tuple[Run, ...]:
+        """Return, as they stand in the book, those of the runs that are in it already (by UUID)."""
+        return self.store.get_many([run.run_id for run in runs])
+
+    def reading_words(self, run: Run) -> str:
+        """Return what a run's scheme was read as: "substitution at secondary, ring, loses mesylate"."""
+        from kb.book.remarks import reading_words
+
+        return reading_words(run)
 
     def rules(self) -> tuple[HouseRule, ...]:
         """Return the house rules, retired ones included."""
@@ -244,11 +270,16 @@ class Book:
         every = RunFilter(with_withdrawn=True)
         return export_file(self.store.iter_runs(every), path, progress, total=self.store.count(every))
 
-    def backup(self, target: Path) -> Path:
-        """Copy the book while others may be writing, verify the copy, and return where it is."""
+    def backup(self, target: Path, keep: int | None = None) -> Path:
+        """Copy the book while others may be writing, verify the copy, and return where it is.
+
+        Args:
+            target: a file that is not there yet, or a folder for dated copies.
+            keep: copies of this book that a folder keeps; None = the store's own number.
+        """
         from kb.store.safekeeping import backup
 
-        return backup(self.store, target)
+        return backup(self.store, target) if keep is None else backup(self.store, target, keep=keep)
 
     def history_as_dicts(self, code: str) -> list[dict[str, Any]]:
         """Return the history as plain values, oldest first."""

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
+from kb.errors import StoreRefused
 from kb.progress import Progress
 
 
@@ -17,10 +18,15 @@ def create_book(book: str | None) -> str:
     from kb import paths
     from kb.book.facade import open_book
 
-    if book is None:
-        paths.default_book().parent.mkdir(parents=True, exist_ok=True)
-    with open_book(book, create=True) as new:
-        return new.path
+    try:
+        if book is None:
+            paths.default_book().parent.mkdir(parents=True, exist_ok=True)
+        with open_book(book, create=True) as new:
+            return new.path
+    except OSError as error:
+        place = book if book is not None else str(paths.default_book())
+        why = error.strerror or str(error)
+        raise StoreRefused(f"No book can be made at {place}: {why}.", "Choose another place.", place) from error
 
 
 def migrate_book(book: str | None, progress: Progress) -> str:
@@ -28,13 +34,14 @@ def migrate_book(book: str | None, progress: Progress) -> str:
     from kb import paths
     from kb.book.facade import open_book
     from kb.store.engine import parse_address
-    from kb.store.schema import SCHEMA_HEAD, upgrade
+    from kb.store.schema import upgrade
 
     address = book if book is not None else str(paths.default_book())
-    before, copy = upgrade(parse_address(address))
+    done = upgrade(parse_address(address))
     said = "The schema was up to date."
-    if before != SCHEMA_HEAD:
-        said = f"The schema went from {before} to {SCHEMA_HEAD}." + (f" The book as it was: {copy}." if copy else "")
+    if done is not None:
+        kept = f" The book as it was: {done.copy}." if done.copy else ""
+        said = f"The schema went from {done.before} to {done.after}.{kept}"
     with open_book(address) as opened:
         rebuilt = opened.store.rebuild(progress)
     return f"{said} {rebuilt} runs were read again." if rebuilt else f"{said} Derived facts were up to date."

@@ -5,6 +5,9 @@ from __future__ import annotations
 import dataclasses
 from typing import Any
 
+KINDS = ("solvent", "reagent")
+"""The two tables of the catalogue; a name may be in both."""
+
 
 def lookup_material(text: str, kind: str | None = None) -> dict[str, Any]:
     """Return what a name may mean.
@@ -14,33 +17,49 @@ def lookup_material(text: str, kind: str | None = None) -> dict[str, Any]:
         kind: "solvent" or "reagent"; None = both.
 
     Returns:
-        `query`, `match` (the entry's fields with its kind, or None) and `offers` (name, kind, likeness 0..100).
+        `query`, `match` (the entry's fields with its kind, or None), `also` (the other kind, where the same name is in
+        that table too, with the name it has there) and `offers` (name, kind, likeness 0..100).
+
+    Raises:
+        InvalidRecord: another kind.
     """
     from kb.errors import InvalidRecord
-    from kb.materials.names import by_smiles, find_material
 
-    if kind not in (None, "solvent", "reagent"):
+    if kind is not None and kind not in KINDS:
         raise InvalidRecord(f"{kind!r} is no kind of material.", "Use solvent or reagent.", kind)
-    found = find_material(text, kind)
-    entry = found.exact
-    if entry is None:
-        entry = _by_structure(text, kind, by_smiles)
-    offers = [
-        {"name": o.entry.name, "kind": _kind(o.entry), "score": round(o.score, 1)}
-        for o in found.offers
-        if o.entry is not entry
-    ]
+    entry, offers = _found(text, kind)
+    others = [_found(text, other)[0] for other in KINDS if other != (kind or (entry and _kind(entry)))]
+    also = [{"name": o.name, "kind": _kind(o)} for o in others if o is not None and o is not entry]
     match = None
     if entry is not None:
         match = {"name": entry.name, "kind": _kind(entry)} | {
             k: sorted(v) if isinstance(v, frozenset) else v for k, v in dataclasses.asdict(entry).items() if k != "name"
         }
-    return {"query": text, "match": match, "offers": offers}
+    return {"query": text, "match": match, "also": also, "offers": offers}
+
+
+def _found(text: str, kind: str | None) -> tuple[Any, list[dict[str, Any]]]:
+    """Return the entry that a text means, or None, and the near names."""
+    from kb.materials.names import by_smiles, find_material
+
+    found = find_material(text, kind)
+    entry = found.exact if found.exact is not None else _by_structure(text, kind, by_smiles)
+    offers = [
+        {"name": o.entry.name, "kind": _kind(o.entry), "score": round(o.score, 1)}
+        for o in found.offers
+        if o.entry is not entry
+    ]
+    return entry, offers
 
 
 def _by_structure(text: str, kind: str | None, by_smiles: Any) -> Any:
-    from kb.chem.structure import canonical_smiles
     from kb.errors import ChemistryError
+    from kb.logs import tame_rdkit
+
+    if len(text) > _LONGEST_STRUCTURE:
+        return None
+    tame_rdkit()
+    from kb.chem.structure import canonical_smiles
 
     try:
         return by_smiles(canonical_smiles(text), kind)
@@ -50,3 +69,7 @@ def _by_structure(text: str, kind: str | None, by_smiles: Any) -> Any:
 
 def _kind(entry: Any) -> str:
     return type(entry).__name__.lower()
+
+
+_LONGEST_STRUCTURE = 500
+"""No material of the catalogue is written in more characters."""

@@ -39,7 +39,7 @@ def conditions_from_words(words: Mapping[str, Any]) -> Conditions:
         InvalidRecord: a field that conditions do not have.
         QuantityError, NameUnknown: a value or a name that cannot be read.
     """
-    from kb.materials.resolving import resolve_component, resolve_solvent
+    from kb.materials.resolving import resolve_component, resolve_solvents
     from kb.quantity import parse_amount_mmol, parse_concentration, parse_duration, parse_temperature
 
     unknown = sorted(set(words) - _FIELDS)
@@ -51,7 +51,7 @@ def conditions_from_words(words: Mapping[str, Any]) -> Conditions:
     concentration, scale = words.get("concentration"), words.get("scale")
     return Conditions(
         components=tuple(resolve_component(t, role) for key, role in _ROLES.items() for t in _texts(words.get(key))),
-        solvents=tuple(resolve_solvent(t) for t in _texts(words.get("solvents"))),
+        solvents=tuple(part for t in _texts(words.get("solvents")) for part in resolve_solvents(t)),
         temperature=parse_temperature(temperature) if temperature else None,
         time=parse_duration(time) if time else None,
         conc_molar=parse_concentration(concentration) if concentration else None,

@@ -8,12 +8,13 @@ from __future__ import annotations
 
 import csv
 import datetime as dt
-from collections.abc import Iterator, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from kb.errors import ChemistryError, ImportFileError, InvalidRecord, QuantityError, StructureError
 from kb.logs import tame_rdkit
+from kb.plain import excerpt
 from kb.record.failure_modes import parse_failure_mode
 from kb.record.outcome import Failure, Outcome, ProductSeen
 from kb.vocabulary import Cause, Fate, Method, Severity
@@ -25,6 +26,10 @@ if TYPE_CHECKING:
 _FILE_ENDINGS = (".rxn", ".mol", ".sdf", ".rd", ".rdf")
 LONGEST_CELL = 1_000_000
 """Longest cell that a batch reads [characters]; a scheme is never this long."""
+EARLIEST_RUN = dt.date(1900, 1, 1)
+"""Runs dated before this are taken for slips of the keyboard."""
+MOST_YIELD_PCT = 200.0
+"""Highest yield that is kept [%]; above 100 it is remarked on (wet product happens)."""
 
 
 def today() -> dt.date:
@@ -44,6 +49,23 @@ def parse_date(text: str) -> dt.date:
         raise QuantityError(f"{text!r} is no date.", "Write it as 2026-03-09.", text) from None
 
 
+def parse_run_date(text: str) -> dt.date:
+    """Read the day of a run.
+
+    Raises:
+        QuantityError: no date. InvalidRecord: a day on which no run can have been made.
+    """
+    return check_run_date(parse_date(text))
+
+
+def check_run_date(day: dt.date) -> dt.date:
+    """Return the day, refused before 1900 and after tomorrow (it may be tomorrow already where the run was made)."""
+    if not EARLIEST_RUN <= day <= today() + dt.timedelta(days=1):
+        when = "in the future" if day > today() else "before 1900"
+        raise InvalidRecord(f"{day.isoformat()} lies {when}.", "Check the year.", day)
+    return day
+
+
 def read_scheme(text: str, *, ignore_maps: bool = False) -> Reading:
     """Say what a scheme does; needs no book. Bad text gives `ok` False with the reason, never an exception."""
     from kb.chem.reading import read_scheme as read
@@ -56,7 +78,7 @@ def scheme_from_argument(text: str) -> str:
     """Return scheme text from what was typed: reaction SMILES, SMILES, a catalogue name, or a path to RXN or mol.
 
     Raises:
-        StructureError: a file that cannot be read, or text that is neither structure nor name.
+        StructureError: a file that cannot be read, or text that is neither structure nor name; near names are offered.
     """
     tame_rdkit()
     word = text.strip()
@@ -64,21 +86,28 @@ def scheme_from_argument(text: str) -> str:
         from kb.chem.schemefile import read_scheme_file
 
         return read_scheme_file(Path(word))
-    from kb.chem.structure import canonical_smiles
-
     if ">" in word or not word:
         return word
+    from kb.chem.structure import parse_molecule
+
     try:
-        canonical_smiles(word)
+        parse_molecule(word)
     except ChemistryError as error:
-        smiles = _by_name(word)
-        if smiles is None:
-            hint = "Check brackets, ring closures and valences, or give a catalogue name (`sidepath lookup`)."
-            raise StructureError(
-                f"{error.message if isinstance(error, StructureError) else error}", hint, word
-            ) from error
-        return smiles
+        return _by_name(word, error)
     return word
+
+
+def check_scheme(scheme: str) -> str:
+    """Return a scheme that can be read as structures, whatever it may do.
+
+    Raises:
+        StructureError: it cannot; the sentence names the fragment.
+    """
+    from kb.chem.scheme import parse_scheme
+
+    tame_rdkit()
+    parse_scheme(scheme)
+    return scheme
 
 
 def iter_scheme_column(path: str, column: str) -> Iterator[str]:
@@ -126,22 +155,29 @@ def outcome_from_words(
 
     Raises:
         QuantityError: a number that cannot be read.
-        InvalidRecord: an unknown fate or failure mode, or a motif that is no SMARTS.
+        InvalidRecord: an unknown fate or failure mode, a motif that is no SMARTS, or a word about something that was
+            not given (a motif without a failure, a method without a share).
     """
     from kb.quantity import parse_percent
 
-    def number(text: str | None) -> float | None:
-        return None if text is None else parse_percent(text)
+    def number(text: str | None, what: str, most: float = 100.0) -> float | None:
+        return None if text is None else parse_percent(text, most, what)
 
     seen = [*_split_products(split, method), *_structure_products(products, scheme, method)]
     if motif is not None:
-        _check_smarts(motif)
+        check_motif(motif)
+    if (motif is not None or cause is not None) and not failed:
+        raise InvalidRecord(
+            "A motif or a cause says more about a failure, and none is given.", "Give the failure mode (--failed)."
+        )
+    if method is not None and not seen:
+        raise InvalidRecord("A method is given, and no share that it measured.", "Give --split or --product.", method)
     return Outcome(
         products=tuple(seen),
-        isolated_yield_pct=number(isolated),
-        assay_yield_pct=number(assay),
-        conversion_pct=number(conversion),
-        ee_pct=number(ee),
+        isolated_yield_pct=number(isolated, "isolated yield", MOST_YIELD_PCT),
+        assay_yield_pct=number(assay, "assay yield", MOST_YIELD_PCT),
+        conversion_pct=number(conversion, "conversion"),
+        ee_pct=number(ee, "ee"),
         failures=tuple(Failure(mode=parse_failure_mode(word), motif=motif, cause=cause) for word in failed),
     )
 
@@ -196,7 +232,7 @@ def _structure_products(products: Sequence[str], scheme: str, method: Method | N
 
     if not products:
         return []
-    possible = {p.product: p.fate for p in reversed(read_scheme(scheme).possible)}
+    fate_of = _fates_of_products(scheme)
     seen = []
     for text in products:
         smiles, equals, share = text.rpartition("=")
@@ -205,19 +241,64 @@ def _structure_products(products: Sequence[str], scheme: str, method: Method | N
         except QuantityError:
             smiles, value = text, None  # the last "=" was a double bond
         canonical = canonical_smiles(smiles if smiles else text)
-        seen.append(ProductSeen(fate=possible.get(canonical, Fate.OTHER), smiles=canonical, share=value, method=method))
+        seen.append(ProductSeen(fate=fate_of(canonical), smiles=canonical, share=value, method=method))
     return seen
 
 
-def _check_smarts(motif: str) -> None:
+def _fates_of_products(scheme: str) -> Callable[[str], Fate]:
+    """Return what tells the fate of a product [canonical SMILES]: as drawn first, then without stereo."""
+    from kb.chem.structure import standardise
+
+    reading = read_scheme(scheme)
+    exact = {p.product: p.fate for p in reversed(reading.possible)}
+    if reading.substrate:
+        exact.setdefault(reading.substrate, Fate.UNREACTED)
+    flat: dict[str, Fate] = {}
+
+    def fate(product: str) -> Fate:
+        if product in exact:
+            return exact[product]
+        if not flat:
+            flat.update({standardise(smiles).flat_key: of for smiles, of in reversed(exact.items())})
+        return flat.get(standardise(product).flat_key, Fate.OTHER)
+
+    return fate
+
+
+def check_motif(motif: str) -> str:
+    """Return a motif that is SMARTS.
+
+    Raises:
+        InvalidRecord: it is none.
+    """
+    tame_rdkit()
     from rdkit import Chem
 
-    if Chem.MolFromSmarts(motif) is None:
+    if not motif.strip() or Chem.MolFromSmarts(motif) is None:
         raise InvalidRecord(f"The motif {motif!r} is no SMARTS.", "Check brackets and ring closures.", motif)
+    return motif
 
 
-def _by_name(word: str) -> str | None:
+def _by_name(word: str, error: ChemistryError) -> str:
+    """Return the structure of a catalogue name; else refuse, with near names where what was typed looks like a name."""
     from kb.materials.names import find_material
 
     match = find_material(word)
-    return match.exact.smiles or None if match.exact is not None else None
+    if match.exact is not None and match.exact.smiles:
+        return match.exact.smiles
+    shown = excerpt(word, 60)
+    if match.exact is not None:
+        raise StructureError(f"{match.exact.name} has no one structure.", "Give a SMILES.", word) from error
+    if len(word) < 256 and Path(word).is_file():
+        raise StructureError(f"{shown!r} is a file, but none of RXN, mol or SDF.", _FILES_HINT, word) from error
+    near = list(dict.fromkeys(offer.entry.name for offer in match.offers if offer.score >= _NEAR_ENOUGH))[:3]
+    if near:
+        raise StructureError(
+            f"{shown!r} is neither a structure nor a known name.", f"Did you mean {', '.join(near)}?", word
+        ) from error
+    raise StructureError(error.message, f"{error.hint} Or give a name that `sidepath lookup` finds.", word) from error
+
+
+_NEAR_ENOUGH = 80.0
+"""Least likeness of a name that is offered where a structure was expected [0..100]."""
+_FILES_HINT = "Give it the ending .rxn or .mol if it is; a column of schemes is for `sidepath read --batch`."

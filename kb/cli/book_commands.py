@@ -4,15 +4,21 @@ from __future__ import annotations
 
 import json
 from pathlib import Path
-from typing import Annotated, Any, Optional
+from typing import TYPE_CHECKING, Annotated, Any, Optional
 
 import typer
 
 from kb.cli import exit_codes
-from kb.cli.render import wrapped
+from kb.cli.render import counted, wrapped
 from kb.cli.session import Session, current_session
-from kb.errors import SidepathError
+from kb.errors import ImportFileError, SidepathError
+from kb.plain import excerpt
 
+if TYPE_CHECKING:
+    from kb.exchange.loading import LoadReport
+
+FEW = 10
+"""Rejections and unknown names that are listed; --json has more."""
 Word = Optional[str]  # noqa: UP045 - typer reads the annotations at run time
 
 
@@ -34,18 +40,19 @@ def new() -> None:
     from kb.book import create_book
 
     session = current_session()
-    path = create_book(session.book)
-    session.answer({"book": path}, f"New record book at {path}")
+    path = create_book(session.settings.book)
+    session.answer({"book": path}, "\n".join(wrapped(f"New record book at {path}")))
 
 
 def verify() -> int:
     """Check the book from the file up to the facts derived from its runs."""
     session = current_session()
-    with session.opened(read_only=True) as book:
-        checks = book.verify(session.progress("Verifying"))
+    with session.opened_if_possible() as book, session.progress("Verifying") as progress:
+        checks = book.verify(progress)
+    progress.check_stopped()
     ok = all(c.ok for c in checks)
     lines = [
-        line for c in checks for line in wrapped(c.detail, 24, first=f"  {'ok ' if c.ok else 'BAD'} {c.name:<19} ")
+        line for c in checks for line in wrapped(c.detail, 22, first=f"  {'ok ' if c.ok else 'BAD'} {c.name:<15} ")
     ]
     data = {"ok": ok, "checks": [{"name": c.name, "ok": c.ok, "detail": c.detail} for c in checks]}
     session.answer(data, "\n".join(["The book is sound." if ok else "The book has trouble:", *lines]))
@@ -57,8 +64,10 @@ def migrate() -> None:
     from kb.book import migrate_book
 
     session = current_session()
-    said = migrate_book(session.book, session.progress("Rebuilding"))
-    session.answer({"done": said}, said)
+    with session.progress("Rebuilding") as progress:
+        said = migrate_book(session.settings.book, progress)
+    progress.check_stopped()
+    session.answer({"done": said}, "\n".join(wrapped(said)))
 
 
 def backup(
@@ -67,8 +76,8 @@ def backup(
     """Copy the book while others may be writing; the copy is verified."""
     session = current_session()
     with session.opened(read_only=True) as book:
-        path = book.backup(Path(target))
-    session.answer({"backup": str(path)}, f"Backed up to {path}; the copy was verified.")
+        path = book.backup(Path(target), keep=session.settings.backups_kept)
+    session.answer({"backup": str(path)}, "\n".join(wrapped(f"Backed up to {path}; the copy was verified.")))
 
 
 def restore(
@@ -80,23 +89,28 @@ def restore(
 
     session = current_session()
     path = restore_book(Path(source), Path(target))
-    session.answer({"book": str(path)}, f"Restored to {path} and verified. Move it where the group opens it.")
+    text = f"Restored to {path} and verified. Move it where the group opens it."
+    session.answer({"book": str(path)}, "\n".join(wrapped(text)))
 
 
-def merge(other: Annotated[str, typer.Argument(help="The other book.")]) -> None:
+def merge(other: Annotated[str, typer.Argument(help="The other book.")]) -> int:
     """Take in another book; twice, or the other way round, comes to the same."""
     session = current_session()
-    with session.opened() as book:
-        report = book.merge(other, who=session.initials, progress=session.progress("Merging"))
-    lines = [f"{report.added} runs added, {report.updated} brought up to date, {report.same} the same."]
+    with session.opened() as book, session.progress("Merging") as progress:
+        report = book.merge(other, who=session.initials, progress=progress)
+    added = counted(report.added, "run")
+    lines = wrapped(f"{added} added, {report.updated} brought up to date, {report.same} the same.")
     for conflict in report.conflicts:
         lines += wrapped(
             f"{conflict.code}, {conflict.field}: "
-            + " or ".join(f"{c.value!r} ({c.who})" for c in conflict.claims)
+            + " or ".join(f"{excerpt(repr(c.value), 100)} ({c.who})" for c in conflict.claims)
             + "; the first stands until somebody settles it.",
             2,
         )
+    if report.stopped:
+        lines.append("Stopped; merge again to go on. Nothing is doubled.")
     session.answer(report.as_dict(), "\n".join(lines))
+    return exit_codes.INTERRUPTED if report.stopped else exit_codes.DONE
 
 
 def import_file(
@@ -107,27 +121,19 @@ def import_file(
 ) -> int:
     """Take runs in from a file; run again, nothing is doubled."""
     session = current_session()
-    fields = json.loads(Path(mapping).read_text(encoding="utf-8")) if mapping else None
-    with session.opened() as book:
+    if rejects is not None and Path(rejects).exists() and Path(file).exists() and Path(rejects).samefile(file):
+        raise ImportFileError(f"{rejects} is the file that is read.", "Name another one for the rejects.", rejects)
+    fields = _mapping(mapping) if mapping is not None else None
+    with session.opened() as book, session.progress("Importing") as progress:
         report = book.import_file(
             Path(file),
             who=session.initials,
             dry_run=dry_run,
             rejects=Path(rejects) if rejects else None,
             mapping=fields,
-            progress=session.progress("Importing"),
+            progress=progress,
         )
-    lines = [
-        f"{report.read} rows read: {report.stored} {'would be stored' if dry_run else 'stored'}, "
-        f"{report.duplicate} already there, {report.rejected} rejected."
-    ]
-    for rejection in report.rejections[:10]:
-        lines += wrapped(f"row {rejection.row}, {rejection.column or 'whole row'}: {rejection.reason}", 2)
-    if report.rejected > 10:
-        lines.append(f"  and {report.rejected - 10} more")
-    if rejects and report.rejected:
-        lines.append(f"The rejected rows are in {rejects}: mend them there and import that file.")
-    session.answer(report.as_dict(), "\n".join(lines))
+    session.answer(report.as_dict(), _import_text(report, rejects, dry_run=dry_run))
     if report.stopped:
         return exit_codes.INTERRUPTED
     return exit_codes.REFUSED if report.rejected else exit_codes.DONE
@@ -138,9 +144,43 @@ def export_file(
 ) -> None:
     """Write every run of the book to a file."""
     session = current_session()
-    with session.opened(read_only=True) as book:
-        count = book.export_file(Path(file), session.progress("Exporting"))
-    session.answer({"file": file, "runs": count}, f"{count} runs written to {file}")
+    with session.opened(read_only=True) as book, session.progress("Exporting") as progress:
+        count = book.export_file(Path(file), progress)
+    text = f"{counted(count, 'run')} written to {file}"
+    session.answer({"file": file, "runs": count}, "\n".join(wrapped(text)))
+
+
+def _mapping(path: str) -> Any:
+    """Read a saved mapping of headings to fields."""
+    try:
+        return json.loads(Path(path).read_text(encoding="utf-8"))
+    except (ValueError, RecursionError) as error:
+        raise ImportFileError(
+            f"{path} is no JSON: {type(error).__name__}.", 'Write it like {"columns": {"T [K]": "temperature"}}.', path
+        ) from error
+
+
+def _import_text(report: LoadReport, rejects: str | None, *, dry_run: bool) -> str:
+    """Return what an import did, with the first rejections."""
+    lines = wrapped(
+        f"{counted(report.read, 'row')} read: {report.stored:,} {'would be stored' if dry_run else 'stored'}, "
+        f"{report.duplicate:,} already there, {report.rejected:,} rejected."
+    )
+    for rejection in report.rejections[:FEW]:
+        lines += wrapped(f"row {rejection.row}, {rejection.column or 'whole row'}: {rejection.reason}", 2)
+    if report.rejected > FEW:
+        lines.append(f"  and {report.rejected - FEW:,} more")
+    if report.unknown_names:
+        names = ", ".join(f"{name} ({count})" for name, count in report.unknown_names[:FEW])
+        more = f" and {len(report.unknown_names) - FEW} more" if len(report.unknown_names) > FEW else ""
+        lines += wrapped(f"Not in the catalogue, kept as written: {names}{more}.")
+    if report.rejected and rejects:
+        lines += wrapped(f"The rejected rows are in {rejects}: mend them there and import that file.")
+    elif report.rejected:
+        lines += wrapped("With --rejects FILE they are kept in a file to mend and import.")
+    if report.stopped:
+        lines.append("Stopped; import the file again to go on. Nothing is doubled.")
+    return "\n".join(lines)
 
 
 def tui(
@@ -152,7 +192,7 @@ def tui(
     if serve:
         from tui.serving import serve_on_loopback
 
-        serve_on_loopback(session.book, session.who, port)
+        serve_on_loopback(session.settings.book, session.who, port)
         return
     open_terminal_interface(session)
 
@@ -170,4 +210,4 @@ def open_terminal_interface(session: Session) -> None:
     run_application: Any
     from tui.application import run_application
 
-    run_application(session.book, session.who)
+    run_application(session.settings.book, session.who)

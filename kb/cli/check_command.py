@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import datetime as dt
+import shlex
+from dataclasses import replace
 from typing import TYPE_CHECKING, Annotated, Optional
 
 import typer
@@ -21,6 +24,8 @@ from kb.cli.conditions import (
     parse_conditions,
 )
 from kb.cli.session import Session, current_session
+from kb.errors import StoreMissing, StructureError
+from kb.plain import plain
 from kb.record.plan import Plan
 from kb.vocabulary import Severity
 
@@ -46,7 +51,10 @@ def check(
     conc: ConcFlag = None,
     scale: ScaleFlag = None,
     atmosphere: AtmosphereFlag = None,
-    top: Annotated[int, typer.Option(min=0, max=200, help="How many precedents.")] = 5,
+    top: Annotated[
+        Optional[int],  # noqa: UP045 - read at run time
+        typer.Option("--top", min=0, max=200, help="How many precedents; by the settings, else 5."),
+    ] = None,
     fail_on: Annotated[
         Optional[Severity],  # noqa: UP045 - read at run time
         typer.Option("--fail-on", help="Exit with 3 when a finding is at least this severe."),
@@ -62,12 +70,28 @@ def check(
     session = current_session()
     conditions = parse_conditions(reagents, bases, acids, additives, solvents, temp, time, conc, scale, atmosphere)
     plan = Plan(scheme=scheme_from_argument(scheme), conditions=conditions)
-    with session.opened(read_only=True) as book:
-        assessment = book.check(plan, top=top, at_date=parse_date(at_date) if at_date else None)
+    top = session.settings.precedents if top is None else top
+    assessment = _assess(session, plan, top, parse_date(at_date) if at_date else None)
+    if not assessment.reading.ok:
+        raise StructureError(assessment.reading.reason, "", plan.scheme)
     show_assessment(session, assessment)
     if fail_on is not None and any(f.severity.rank >= fail_on.rank for f in assessment.findings):
         return exit_codes.FAIL_ON
-    return exit_codes.DONE if assessment.reading.ok else exit_codes.REFUSED
+    return exit_codes.DONE
+
+
+def _assess(session: Session, plan: Plan, top: int, at_date: dt.date | None) -> Assessment:
+    """Check against the book; where nobody named one and there is none yet, against published chemistry alone."""
+    try:
+        with session.opened(read_only=True) as book:
+            return book.check(plan, top=top, at_date=at_date)
+    except StoreMissing:
+        if session.settings.book is not None:
+            raise
+        from kb.book import check_unrecorded
+
+        session.say("There is no record book yet: published chemistry alone. `sidepath new` makes one.")
+        return check_unrecorded(plan)
 
 
 def demo() -> None:
@@ -75,9 +99,10 @@ def demo() -> None:
     from kb.book import build_demo, demo_plan
 
     session = current_session()
-    path, built = build_demo(session.book, session.progress("Building the demo book"))
+    with session.progress("Building the demo book") as progress:
+        path, built = build_demo(session.book, progress)
     session.say(f"{'Built' if built else 'Using'} the demo book (invented runs) at {path}")
-    session.book = str(path)
+    session = replace(session, book=str(path))
     with session.opened(read_only=True) as book:
         assessment = book.check(demo_plan())
         count = book.count()
@@ -85,7 +110,7 @@ def demo() -> None:
     if not session.as_json:
         typer.echo(
             f"\nChecked against {count} invented runs. Open the book in the terminal interface with\n"
-            f"  sidepath --book {path} tui"
+            f"  sidepath --book {plain(shlex.quote(str(path)))} tui"
         )
 
 

@@ -6,7 +6,8 @@ Without a command on a terminal it opens the terminal interface.
 
 from __future__ import annotations
 
-import json
+import os
+import re
 import sys
 from collections.abc import Sequence
 from typing import Any
@@ -14,8 +15,8 @@ from typing import Any
 import typer
 
 from kb.cli import exit_codes
+from kb.cli.session import complain, json_line
 from kb.errors import SidepathError
-from kb.plain import plain
 
 # Typer carries its own copy of the library under it, or an installed one, by version; these are its bases either way.
 _UsageError: Any = typer.BadParameter.__bases__[0]
@@ -23,6 +24,18 @@ _CommandError: Any = _UsageError.__bases__[0]
 
 _FLAGS = {"--json", "--quiet", "--verbose", "-q", "-v"}
 _WITH_VALUE = {"--book", "--as"}
+_FREE_TEXT = {"--note", "--why", "--ref", "--words", "--title", "--instead", "--source", "--project"}
+"""Options of commands whose value may be any words, even those of a global option."""
+_PARSER_WORDS = (
+    (r"Value error, |^Invalid value: ", ""),
+    (r"Input should be a valid integer.*", "it is no whole number"),
+    (r"Input should be a valid number.*", "it is no number"),
+    (r"Input should be ", "give a number "),
+    (r" ?\(Possible options?: ([^)]*)\)", r". Did you mean \1?"),
+)
+"""What the parser under Typer says, and what we say."""
+_DISK_FULL = (28, 122)
+"""ENOSPC and EDQUOT."""
 
 
 def main(argv: Sequence[str] | None = None) -> None:
@@ -31,44 +44,50 @@ def main(argv: Sequence[str] | None = None) -> None:
     Args:
         argv: arguments without the program's name; None = sys.argv.
     """
-    sys.exit(run(sys.argv[1:] if argv is None else list(argv)))
+    for stream in (sys.stdout, sys.stderr):
+        if hasattr(stream, "reconfigure"):
+            stream.reconfigure(errors="replace")  # a note may hold what this terminal's encoding does not
+    code = run(sys.argv[1:] if argv is None else list(argv))
+    try:
+        sys.stdout.flush()
+    except OSError as error:
+        code = _after_failed_output(error, code)
+    sys.exit(code)
 
 
 def run(argv: Sequence[str]) -> int:
-    """Run one command and return its exit status; never raises what a user caused."""
+    """Run one command and return its exit status; never raises."""
     from kb.cli.root import app
 
-    arguments = hoist_globals(argv)
-    as_json = "--json" in arguments
-    command = typer.main.get_command(app)
+    front, rest = _parted(argv)
+    as_json, is_verbose = "--json" in front, bool({"--verbose", "-v"} & set(front))
     try:
-        result = command.main(args=arguments, prog_name="sidepath", standalone_mode=False)
+        command = typer.main.get_command(app)
+        result = command.main(args=front + rest, prog_name="sidepath", standalone_mode=False)
         return result if isinstance(result, int) else exit_codes.DONE
     except SidepathError as error:
         _complain(error.as_dict(), as_json)
         return exit_codes.exit_code_of(error)
-    except typer.Abort:
-        typer.echo("Stopped.", err=True)
+    except (typer.Abort, KeyboardInterrupt):
+        _complain({"code": "cancelled", "message": "Stopped.", "hint": ""}, as_json)
         return exit_codes.INTERRUPTED
     except typer.Exit as leaving:
         return leaving.exit_code
-    except _UsageError as error:
-        where = error.ctx.command_path if error.ctx else "sidepath"
-        _complain({"code": "usage", "message": error.format_message(), "hint": f"See `{where} --help`."}, as_json)
-        return exit_codes.USAGE
+    except SystemExit as leaving:
+        return leaving.code if isinstance(leaving.code, int) else exit_codes.DONE
     except _CommandError as error:
-        _complain({"code": "usage", "message": error.format_message(), "hint": ""}, as_json)
+        context = getattr(error, "ctx", None)
+        where = context.command_path if context else "sidepath"
+        _complain({"code": "usage", "message": _usage_words(error), "hint": f"See `{where} --help`."}, as_json)
         return exit_codes.USAGE
-    except KeyboardInterrupt:
-        typer.echo("Stopped.", err=True)
-        return exit_codes.INTERRUPTED
-    except BrokenPipeError:
-        sys.stderr.close()
-        return exit_codes.DONE
+    except BrokenPipeError as error:
+        return _after_failed_output(error, exit_codes.DONE)
     except OSError as error:
         message = f"{error.strerror or error}{f': {error.filename}' if error.filename else ''}."
         _complain({"code": "system", "message": message, "hint": "Check the path and the permissions."}, as_json)
-        return exit_codes.BOOK_TROUBLE if error.errno in (28, 122) else exit_codes.REFUSED
+        return exit_codes.BOOK_TROUBLE if error.errno in _DISK_FULL else exit_codes.REFUSED
+    except Exception as error:  # noqa: BLE001 - the last door: a fault of ours must not fall on a chemist as a traceback
+        return _own_fault(error, as_json, is_verbose)
 
 
 def hoist_globals(argv: Sequence[str]) -> list[str]:
@@ -80,14 +99,19 @@ def hoist_globals(argv: Sequence[str]) -> list[str]:
     >>> hoist_globals(["check", "CCBr", "--json", "--book", "b.db"])
     ['--json', '--book', 'b.db', 'check', 'CCBr']
     """
+    front, rest = _parted(argv)
+    return front + rest
+
+
+def _parted(argv: Sequence[str]) -> tuple[list[str], list[str]]:
+    """Return the global options, and the rest."""
     front: list[str] = []
     rest: list[str] = []
     words = iter(argv)
-    free_text = {"--note", "--why", "--ref", "--words", "--title", "--instead"}
     for word in words:
         if word == "--":
             rest += [word, *words]
-        elif word in free_text:
+        elif word in _FREE_TEXT:
             rest += [word, *([value] if (value := next(words, None)) is not None else [])]
         elif word in _FLAGS or any(word.startswith(f"{option}=") for option in _WITH_VALUE):
             front.append(word)
@@ -95,12 +119,47 @@ def hoist_globals(argv: Sequence[str]) -> list[str]:
             front += [word, *([value] if (value := next(words, None)) is not None else [])]
         else:
             rest.append(word)
-    return front + rest
+    return front, rest
 
 
 def _complain(error: dict[str, str], as_json: bool) -> None:
     """Say an error: plain sentences on stderr, with --json also an object on stdout."""
     if as_json:
-        typer.echo(json.dumps({"error": error}, ensure_ascii=False))
-    sentence = f"{error['message']} {error['hint']}".strip()
-    typer.echo(f"sidepath: {plain(sentence)}", err=True)
+        typer.echo(json_line({"error": error}))
+    complain(error)
+
+
+def _usage_words(error: Any) -> str:
+    """Return what the parser says, as a sentence."""
+    said = str(error.format_message())
+    for theirs, ours in _PARSER_WORDS:
+        said = re.sub(theirs, ours, said)
+    said = said[:1].upper() + said[1:]
+    return said if said.endswith((".", "?", "!")) else f"{said}."
+
+
+def _after_failed_output(error: OSError, code: int) -> int:
+    """Settle a stdout that takes no more: a closed pipe is no failure of ours, a full disk is."""
+    sink = os.open(os.devnull, os.O_WRONLY)
+    try:
+        os.dup2(sink, sys.stdout.fileno())  # or Python complains once more when it flushes at exit
+    except (OSError, ValueError):
+        pass  # stdout is no file of its own
+    finally:
+        os.close(sink)
+    if isinstance(error, BrokenPipeError):
+        return code
+    complain({"message": f"The answer could not be written: {error.strerror or error}.", "hint": "Make room."})
+    return exit_codes.BOOK_TROUBLE if error.errno in _DISK_FULL else exit_codes.REFUSED
+
+
+def _own_fault(error: Exception, as_json: bool, is_verbose: bool) -> int:
+    """Say that the program itself failed, with a traceback only where --verbose asks for it."""
+    if is_verbose:
+        import traceback
+
+        traceback.print_exception(error)
+    message = f"Sidepath itself failed ({type(error).__name__}: {error})."
+    hint = "It is not what you typed. Tell whoever keeps Sidepath the command and what it says with --verbose."
+    _complain({"code": "fault", "message": message, "hint": hint}, as_json)
+    return exit_codes.REFUSED

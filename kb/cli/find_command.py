@@ -6,8 +6,10 @@ from typing import Annotated, Optional
 
 import typer
 
-from kb.cli.render import table, wrapped
+from kb.cli.look_commands import LAST_PAGE
+from kb.cli.render import counted, table, wrapped
 from kb.cli.session import current_session
+from kb.plain import excerpt
 from kb.vocabulary import CarbonClass, LeavingGroup, Verdict
 
 Word = Optional[str]  # noqa: UP045 - typer reads the annotations at run time
@@ -19,24 +21,26 @@ def register(app: typer.Typer) -> None:
 
 
 def find(
-    substructure: Annotated[Word, typer.Option("--substructure", metavar="SMARTS")] = None,
-    similar: Annotated[Word, typer.Option("--similar", metavar="SMILES")] = None,
+    substructure: Annotated[Word, typer.Option("--substructure", metavar="SMARTS", help="What it holds.")] = None,
+    similar: Annotated[Word, typer.Option("--similar", metavar="SMILES", help="What it is like; best first.")] = None,
     at_least: Annotated[float, typer.Option("--at-least", min=0, max=1, help="Least Tanimoto of --similar.")] = 0.4,
-    exact: Annotated[Word, typer.Option("--exact", metavar="SMILES")] = None,
-    transformation: Annotated[Word, typer.Option("--transformation", metavar="SMARTS>>SMARTS")] = None,
-    role: Annotated[str, typer.Option(help="substrate, product, reagent or any.")] = "any",
+    exact: Annotated[Word, typer.Option("--exact", metavar="SMILES", help="The very structure.")] = None,
+    transformation: Annotated[
+        Word, typer.Option("--transformation", metavar="SMARTS>>SMARTS", help="What becomes of what.")
+    ] = None,
+    role: Annotated[str, typer.Option(help="Of the structure: substrate, product, reagent or any.")] = "any",
     words: Annotated[Word, typer.Option("--words", help="In notes, titles and references.")] = None,
-    solvent: Annotated[Word, typer.Option("--solvent")] = None,
-    base: Annotated[Word, typer.Option("--base")] = None,
-    temp_from: Annotated[Word, typer.Option("--temp-from", metavar="T")] = None,
-    temp_to: Annotated[Word, typer.Option("--temp-to", metavar="T")] = None,
-    failed: Annotated[Word, typer.Option("--failed", metavar="MODE")] = None,
+    solvent: Annotated[Word, typer.Option("--solvent", metavar="NAME")] = None,
+    base: Annotated[Word, typer.Option("--base", metavar="NAME")] = None,
+    temp_from: Annotated[Word, typer.Option("--temp-from", metavar="T", help="At least this hot.")] = None,
+    temp_to: Annotated[Word, typer.Option("--temp-to", metavar="T", help="At most this hot.")] = None,
+    failed: Annotated[Word, typer.Option("--failed", metavar="MODE", help="How it failed.")] = None,
     verdict: Annotated[Optional[Verdict], typer.Option("--verdict")] = None,  # noqa: UP045
     carbon_class: Annotated[Optional[CarbonClass], typer.Option("--carbon-class")] = None,  # noqa: UP045
     leaving_group: Annotated[Optional[LeavingGroup], typer.Option("--leaving-group")] = None,  # noqa: UP045
-    since: Annotated[Word, typer.Option("--since", metavar="YYYY-MM-DD")] = None,
-    limit: Annotated[int, typer.Option(min=1, max=1000)] = 20,
-    page: Annotated[int, typer.Option(min=1)] = 1,
+    since: Annotated[Word, typer.Option("--since", metavar="YYYY-MM-DD", help="Run on or after this day.")] = None,
+    limit: Annotated[int, typer.Option(min=1, max=1000, help="Runs on a page.")] = 20,
+    page: Annotated[int, typer.Option(min=1, max=LAST_PAGE)] = 1,
 ) -> None:
     """Find runs; every option given must hold."""
     from kb.book import criteria_from_words
@@ -69,12 +73,17 @@ def find(
         session.print_json(result.as_dict())
         return
     for remark in result.notes:
-        session.say(remark)
+        session.say(excerpt(remark, 200))
     if not result.items:
         typer.echo("No run fits." if result.total == 0 else f"No run on this page; {result.total} fit.")
         return
-    rows = [(i.run, "" if i.score is None else f"{i.score:.2f}", *lines[i.run]) for i in result.items]
-    typer.echo("\n".join(table(rows, ("run", "score", "date", "verdict", "what"), (7, 5, 10, 7, 43))))
-    typer.echo(f"{len(result.items)} of {result.total} shown, {result.elapsed_ms:.0f} ms")
+    if any(item.score is not None for item in result.items):
+        scored = [(i.run, "" if i.score is None else f"{i.score:.2f}", *lines[i.run]) for i in result.items]
+        text = table(scored, ("run", "score", "date", "verdict", "what"), (7, 5, 10, 7, 43))
+    else:
+        text = table([(i.run, *lines[i.run]) for i in result.items], ("run", "date", "verdict", "what"), (7, 10, 7, 50))
+    first = (page - 1) * limit
+    shown = f"{first + 1} to {first + len(result.items)} of {counted(result.total, 'run')}"
+    typer.echo("\n".join([*text, f"{shown}, {result.elapsed_ms:.0f} ms"]))
     if not result.complete:
         session.say("\n".join(wrapped("The search was stopped at its deadline: this is only part of the answer.")))

@@ -2,17 +2,30 @@
 
 from __future__ import annotations
 
-import json
-from typing import Annotated, Any, Optional
+from enum import StrEnum
+from typing import Annotated, Optional
 
 import typer
 
 from kb.cli import exit_codes
-from kb.cli.render import wrapped
 from kb.cli.session import current_session
-from kb.plain import plain
+from kb.errors import NameUnknown, StructureError
+from kb.plain import excerpt
 
 Word = Optional[str]  # noqa: UP045 - typer reads the annotations at run time
+LAST_PAGE = 1_000_000
+
+
+class SortWord(StrEnum):
+    """By what `runs` sorts, latest, highest or last first."""
+
+    DATE = "date"
+    CODE = "code"
+    RECORDED = "recorded"
+    YIELD = "yield"
+    VERDICT = "verdict"
+    PROJECT = "project"
+    BY = "by"
 
 
 def register(app: typer.Typer) -> None:
@@ -31,37 +44,56 @@ def read(
     column: Annotated[Word, typer.Option("--column", metavar="NAME", help="Its heading.")] = None,
 ) -> int:
     """Say what a scheme does: centre, leaving group, fate, and what else could form."""
-    from kb.book import iter_scheme_column, read_scheme, scheme_from_argument
+    from kb.book import read_scheme, scheme_from_argument
+    from kb.cli.render_reading import render_reading
 
-    session = current_session()
-    if batch is not None:
-        if column is None:
-            raise typer.BadParameter("--batch needs --column NAME.")
-        failed = 0
-        for text in iter_scheme_column(batch, column):
-            reading = read_scheme(text, ignore_maps=ignore_maps)
-            failed += not reading.ok
-            session.print_json(reading.as_dict())
-        if failed:
-            session.say(f"{failed} rows could not be read; their lines say why.")
-        return exit_codes.REFUSED if failed else exit_codes.DONE
-    if scheme is None:
+    if (batch is None) == (scheme is None):
         raise typer.BadParameter("Give a scheme, or --batch FILE.csv --column NAME.")
-    reading = read_scheme(scheme_from_argument(scheme), ignore_maps=ignore_maps)
-    if session.as_json:
-        session.print_json(reading.as_dict())
-    elif reading.ok:
-        typer.echo(_reading_text(reading))
-    if not reading.ok:
-        session.say(f"sidepath: {reading.reason}")
+    if (batch is None) != (column is None):
+        raise typer.BadParameter("--batch and --column go together.")
+    if batch is not None and column is not None:
+        return _read_batch(batch, column, ignore_maps=ignore_maps)
+    session = current_session()
+    try:
+        text = scheme_from_argument(scheme or "")
+    except StructureError as error:
+        session.refuse(read_scheme(scheme or "", ignore_maps=ignore_maps).as_dict(), error)
         return exit_codes.REFUSED
+    reading = read_scheme(text, ignore_maps=ignore_maps)
+    if not reading.ok:
+        session.refuse(reading.as_dict(), StructureError(reading.reason))
+        return exit_codes.REFUSED
+    session.answer(reading.as_dict(), "" if session.as_json else render_reading(reading))
     return exit_codes.DONE
 
 
+def _read_batch(path: str, column: str, *, ignore_maps: bool) -> int:
+    """Write one JSON line a row, in order, as the rows are read."""
+    from kb.book import iter_scheme_column, read_scheme
+
+    session = current_session()
+    read_rows = failed = 0
+    with session.progress("Reading") as progress:
+        for text in iter_scheme_column(path, column):
+            if progress.cancelled():
+                break
+            reading = read_scheme(text, ignore_maps=ignore_maps)
+            read_rows += 1
+            failed += not reading.ok
+            session.print_json(reading.as_dict())
+            progress.advance(read_rows, None)
+    if failed:
+        session.say(f"{failed} of {read_rows} rows could not be read; their lines say why.")
+    if progress.stopped:
+        session.say(f"Stopped after {read_rows} rows.")
+        return exit_codes.INTERRUPTED
+    return exit_codes.REFUSED if failed else exit_codes.DONE
+
+
 def runs(
-    limit: Annotated[int, typer.Option(min=1, max=1000)] = 30,
-    page: Annotated[int, typer.Option(min=1)] = 1,
-    sort: Annotated[str, typer.Option(help="date, code or yield; newest first.")] = "date",
+    limit: Annotated[int, typer.Option(min=1, max=1000, help="Runs on a page.")] = 30,
+    page: Annotated[int, typer.Option(min=1, max=LAST_PAGE)] = 1,
+    sort: Annotated[SortWord, typer.Option(help="Latest or highest first.")] = SortWord.DATE,
     withdrawn: Annotated[bool, typer.Option("--withdrawn", help="Also the withdrawn ones.")] = False,
 ) -> None:
     """List the runs of the book."""
@@ -70,7 +102,7 @@ def runs(
 
     session = current_session()
     with session.opened(read_only=True) as book:
-        got = book.page(offset=(page - 1) * limit, limit=limit, sort=sort, withdrawn=withdrawn)
+        got = book.page(offset=(page - 1) * limit, limit=limit, sort=sort.value, withdrawn=withdrawn)
     session.answer(
         {"total": got.total, "page": page, "items": [run_to_dict(r) for r in got.items]},
         render_runs(got.items, got.total, (page - 1) * limit),
@@ -85,7 +117,8 @@ def show(code: Annotated[str, typer.Argument(help="The run's code.")]) -> None:
     session = current_session()
     with session.opened(read_only=True) as book:
         run = book.get(code)
-    session.answer(run_to_dict(run), render_run(run))
+        reading = "" if session.as_json else book.reading_words(run)
+    session.answer(run_to_dict(run), "" if session.as_json else render_run(run, reading))
 
 
 def history(code: Annotated[str, typer.Argument(help="The run's code.")]) -> None:
@@ -94,11 +127,8 @@ def history(code: Annotated[str, typer.Argument(help="The run's code.")]) -> Non
 
     session = current_session()
     with session.opened(read_only=True) as book:
-        entries = book.history_as_dicts(code)
-    if session.as_json:
-        typer.echo(json.dumps({"run": code, "history": entries}, ensure_ascii=False, default=str))
-    else:
-        typer.echo(render_history(entries))
+        run, entries = book.get(code), book.history_as_dicts(code)
+    session.answer({"run": run.code, "history": entries}, render_history(entries))
 
 
 def lookup(
@@ -107,44 +137,14 @@ def lookup(
 ) -> int:
     """Look a solvent or reagent up; near names are offered, not taken."""
     from kb.book import lookup_material
+    from kb.cli.render_material import render_lookup
 
     session = current_session()
     found = lookup_material(name, kind)
-    session.answer(found, _lookup_text(name, found))
-    return exit_codes.DONE if found["match"] or found["offers"] else exit_codes.REFUSED
-
-
-def _lookup_text(name: str, found: dict[str, Any]) -> str:
-    match = found["match"]
-    if match is None:
-        offers = [f"  {o['name']} ({o['score']:.0f})" for o in found["offers"]]
-        said = f"No material is called {plain(name)!r}."
-        return "\n".join([said, "Near names:" if offers else "Nothing near either.", *offers])
-    lines = [plain(match["name"])]
-    for key, value in match.items():
-        if key != "name" and value not in (None, "", [], ()):
-            shown = ", ".join(map(str, value)) if isinstance(value, (list, tuple)) else str(value)
-            lines += wrapped(shown, 22, first=f"  {key.replace('_', ' '):<20}")
-    return "\n".join(lines)
-
-
-def _reading_text(reading: Any) -> str:
-    lines = [f"{reading.confidence}: {reading.fate or 'no single fate'}"]
-    if reading.reason:
-        lines += wrapped(reading.reason, 2)
-    for centre in reading.centres:
-        words = [str(centre.carbon_class), *map(str, centre.flags)]
-        if centre.leaving_group:
-            words.append(f"loses {centre.leaving_group}")
-        words.append(f"{centre.beta_hydrogens} beta hydrogens")
-        lines += wrapped(f"component {centre.component}, atom {centre.atom}: {', '.join(words)}", 2)
-    if reading.nucleophile:
-        lines += wrapped(f"nucleophile: {reading.nucleophile.nucleophile_class.replace('_', ' ')}", 2)
-    if reading.possible:
-        lines.append("could form")
-        for possible in reading.possible[:20]:
-            lines += wrapped(f"{possible.fate}: {possible.product}", 4)
-            lines += wrapped(possible.note, 8) if possible.note else []
-        if len(reading.possible) > 20:
-            lines.append(f"    and {len(reading.possible) - 20} more (--json lists all)")
-    return "\n".join(lines)
+    if found["match"] is None and not found["offers"] and not found["also"]:
+        what = kind or "material"
+        error = NameUnknown(f"No {what} is called {excerpt(name, 60)!r}.", "Try another name, or its SMILES.", name)
+        session.refuse(found, error)
+        return exit_codes.REFUSED
+    session.answer(found, render_lookup(found))
+    return exit_codes.DONE

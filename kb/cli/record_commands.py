@@ -2,11 +2,10 @@
 
 from __future__ import annotations
 
-import json
 import sys
 from collections.abc import Sequence
 from pathlib import Path
-from typing import Annotated, Any, Optional
+from typing import TYPE_CHECKING, Annotated, Any, Optional
 
 import typer
 
@@ -23,11 +22,16 @@ from kb.cli.conditions import (
     WithFlag,
     parse_conditions,
 )
-from kb.cli.render_run import render_run
+from kb.cli.render import wrapped
+from kb.cli.render_run import change_words, render_run
 from kb.cli.session import Session, current_session
-from kb.errors import ImportFileError, InvalidRecord
+from kb.errors import ImportFileError, RecordConflict, SidepathError
+from kb.plain import excerpt
 from kb.record.run import Run
 from kb.vocabulary import Cause, Method, Verdict
+
+if TYPE_CHECKING:
+    from kb.book import Book
 
 Words = Optional[list[str]]  # noqa: UP045 - typer reads the annotations at run time
 Word = Optional[str]  # noqa: UP045
@@ -43,7 +47,8 @@ def register(app: typer.Typer) -> None:
 def record(
     scheme: Annotated[Word, typer.Argument(help="Reaction SMILES, a substrate, a name, or a file.")] = None,
     from_file: Annotated[
-        Word, typer.Option("--from", metavar="FILE.json", help="A whole run as JSON; - = stdin.")
+        Word,
+        typer.Option("--from", metavar="FILE.json", help="Whole runs as JSON: one, a list, or one a line; - = stdin."),
     ] = None,
     reagents: WithFlag = None,
     bases: BaseFlag = None,
@@ -58,35 +63,40 @@ def record(
     split: Annotated[Word, typer.Option(metavar="FATE=PCT,...", help="substitution=88,elimination=10.")] = None,
     by: Annotated[Optional[Method], typer.Option("--by", help="How the split was measured.")] = None,  # noqa: UP045
     isolated: Annotated[Word, typer.Option("--yield", metavar="PCT", help="Isolated yield.")] = None,
-    assay: Annotated[Word, typer.Option("--assay-yield", metavar="PCT")] = None,
+    assay: Annotated[Word, typer.Option("--assay-yield", metavar="PCT", help="Yield against a standard.")] = None,
     conversion: Annotated[Word, typer.Option("--conversion", metavar="PCT")] = None,
-    ee: Annotated[Word, typer.Option("--ee", metavar="PCT")] = None,
+    ee: Annotated[Word, typer.Option("--ee", metavar="PCT", help="Enantiomeric excess.")] = None,
     product: Annotated[
         Words, typer.Option("--product", metavar="SMILES=SHARE", help="Seen product; repeatable.")
     ] = None,
     failed: Annotated[Words, typer.Option("--failed", metavar="MODE", help="Failure mode; repeatable.")] = None,
     motif: Annotated[Word, typer.Option("--motif", metavar="SMARTS", help="What the failure hit.")] = None,
-    cause: Annotated[Optional[Cause], typer.Option("--cause")] = None,  # noqa: UP045
-    note: Annotated[str, typer.Option("--note", help="Free words.")] = "",
+    cause: Annotated[Optional[Cause], typer.Option("--cause", help="How sure you are.")] = None,  # noqa: UP045
+    note: Annotated[str, typer.Option("--note", help="Free words, kept to the letter.")] = "",
     ref: Annotated[Word, typer.Option("--ref", help="Notebook reference.")] = None,
     project: Annotated[Word, typer.Option("--project")] = None,
     date: Annotated[Word, typer.Option("--date", metavar="YYYY-MM-DD", help="Day of the run; default today.")] = None,
-    verdict: Annotated[Optional[Verdict], typer.Option("--verdict")] = None,  # noqa: UP045
+    verdict: Annotated[Optional[Verdict], typer.Option("--verdict", help="In a word.")] = None,  # noqa: UP045
 ) -> None:
     """Add a run to the record."""
-    from kb.book import outcome_from_words, parse_date, scheme_from_argument, today
+    from kb.book import check_scheme, outcome_from_words, parse_run_date, scheme_from_argument, today
 
     session = current_session()
+    conditions = (reagents, bases, acids, additives, solvents, temp, time, conc, scale, atmosphere)
     if from_file is not None:
+        others = (scheme, *conditions, split, by, isolated, assay, conversion, ee, product, failed, motif, cause)
+        if any(v is not None for v in (*others, ref, project, date, verdict)) or note:
+            raise typer.BadParameter("--from brings whole runs; give it alone, and amend afterwards.")
         _record_file(session, from_file)
         return
     if scheme is None:
-        raise typer.BadParameter("give a scheme, or --from FILE.json")
+        raise typer.BadParameter("Give a scheme, or --from FILE.json.")
+    text = check_scheme(scheme_from_argument(scheme))
     run = Run(
-        scheme=scheme_from_argument(scheme),
-        conditions=parse_conditions(reagents, bases, acids, additives, solvents, temp, time, conc, scale, atmosphere),
+        scheme=text,
+        conditions=parse_conditions(*conditions),
         outcome=outcome_from_words(
-            scheme=scheme,
+            scheme=text,
             split=split,
             method=by,
             isolated=isolated,
@@ -101,7 +111,7 @@ def record(
         verdict=verdict,
         note=note,
         by=session.initials,
-        date=parse_date(date) if date else today(),
+        date=parse_run_date(date) if date else today(),
         reference=ref,
         project=project,
     )
@@ -116,7 +126,7 @@ def amend(
         typer.Option(
             "--set",
             metavar="FIELD=VALUE",
-            help="note, verdict, temp, time, yield, split, date...; repeatable.",
+            help="note, verdict, temp, time, yield, split, date...; repeatable; nothing behind the = takes it away.",
         ),
     ],
 ) -> None:
@@ -124,7 +134,12 @@ def amend(
     session = current_session()
     with session.opened() as book:
         run = book.amend(code, book.changes_from_words(code, changes), who=session.initials, why=why)
-    session.answer(_as_dict(run), f"{run.code} amended (revision {run.revision}).")
+        changed = book.history_as_dicts(code)[-1]["changed"]
+        _remark(session, book, run)
+    lines = [f"{run.code} amended (revision {run.revision})."]
+    for change in changed:
+        lines += wrapped(change_words(change), 2)
+    session.answer(_as_dict(run), "\n".join(lines))
 
 
 def withdraw(
@@ -134,6 +149,11 @@ def withdraw(
     """Withdraw a run: it stays in the record but no longer speaks."""
     session = current_session()
     with session.opened() as book:
+        before = book.get(code)
+        if before.withdrawn_why is not None:
+            why_then = excerpt(before.withdrawn_why, 80)
+            hint = f"See `sidepath history {before.code}`."
+            raise RecordConflict(f"{before.code} is withdrawn already ({why_then}).", hint, code)
         run = book.withdraw(code, why=why, who=session.initials)
     session.answer(_as_dict(run), f"{run.code} withdrawn. It stays in the history and can be read with `show`.")
 
@@ -145,31 +165,58 @@ def _as_dict(run: Run) -> dict[str, Any]:
 
 
 def _record_file(session: Session, name: str) -> None:
-    from kb.record.portable import run_from_dict
+    from kb.book import runs_from_json
 
+    place = "Standard input" if name == "-" else name
     try:
         text = sys.stdin.read() if name == "-" else Path(name).read_text(encoding="utf-8-sig")
     except UnicodeDecodeError as error:
-        raise ImportFileError(f"{name} is not UTF-8 text.", "Save it as UTF-8.", name) from error
-    try:
-        data = json.loads(text)
-    except (json.JSONDecodeError, RecursionError) as error:
-        raise ImportFileError(
-            f"{name} is no JSON: {error}.", "Give one run as `show --json` prints it.", name
-        ) from error
-    runs = [run_from_dict(entry) for entry in (data if isinstance(data, list) else [data])]
-    if not runs:
-        raise InvalidRecord("The file holds no run.", "Give one run as `show --json` prints it.", name)
-    _store(session, runs)
+        raise ImportFileError(f"{place} is not UTF-8 text.", "Save it as UTF-8.", name) from error
+    _store(session, runs_from_json(text.removeprefix("\ufeff"), place))
 
 
 def _store(session: Session, runs: Sequence[Run]) -> None:
+    """Keep runs, tell what they were read as and what does not add up; all are new, or none is kept."""
+    stored: list[Run] = []
     with session.opened() as book:
-        stored = [book.add(run, who=session.initials) for run in runs]
-        remarks = [remark for run in stored for remark in book.remarks(run)]
+        there = book.known(runs)
+        if there:
+            names = ", ".join(f"{run.code}" for run in there[:5]) + (" ..." if len(there) > 5 else "")
+            raise RecordConflict(f"In the book already: {names}.", "Amend what is there instead.", str(there[0].run_id))
+        try:
+            for run in runs:
+                stored.append(book.add(run, who=session.initials))
+        except SidepathError as error:
+            if not stored:
+                raise
+            message = f"{error.message} {len(stored)} of {len(runs)} runs were kept, up to {stored[-1].code}."
+            raise type(error)(message, error.hint, error.value) from error
+        for given, run in zip(runs, stored, strict=True):
+            _remark(session, book, run, given.code)
+        readings = [book.reading_words(run) for run in stored]
     if session.as_json:
         session.print_json(_as_dict(stored[0]) if len(stored) == 1 else [_as_dict(r) for r in stored])
+    elif len(stored) > MANY:
+        typer.echo(f"{len(stored)} runs recorded, {stored[0].code} to {stored[-1].code}.")
     else:
-        typer.echo("\n\n".join(render_run(run) for run in stored))
-    for finding in remarks:
-        session.say(f"{str(finding.severity).upper()}: {finding.title}. {finding.why}")
+        typer.echo("\n\n".join(_recorded(run, words) for run, words in zip(stored, readings, strict=True)))
+
+
+def _recorded(run: Run, reading: str) -> str:
+    """Return a run just recorded, its long texts cut: whoever typed them knows them."""
+    import dataclasses
+
+    brief = dataclasses.replace(run, scheme=excerpt(run.scheme, BRIEF), note=excerpt(run.note, BRIEF))
+    return render_run(brief, reading)
+
+
+def _remark(session: Session, book: Book, run: Run, wanted_code: str | None = None) -> None:
+    """Say what does not add up in a run, and that it got another code than it brought."""
+    for finding in book.remarks(run, wanted_code):
+        session.say("\n".join(wrapped(f"{str(finding.severity).upper()}: {finding.title}. {finding.why}")))
+
+
+MANY = 5
+"""Runs beyond which only their codes are told."""
+BRIEF = 400
+"""Longest scheme or note of a run just recorded that is shown [characters]."""

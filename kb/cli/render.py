@@ -1,22 +1,34 @@
-"""Text for a terminal 80 columns wide: wrapping, headings, severity in words as well as colour, figures.
+"""Text for a terminal: wrapping, headings, severity in words as well as colour, figures.
 
-It owns looks shared by all commands; what is said is decided where the values are made. All text that came from a
-person passes `plain`.
+Lines are at most 80 columns wide, less where the terminal is narrower, never less than 40. It owns looks shared by all
+commands; what is said is decided where the values are made. All text that came from a person passes `plain`.
 """
 
 from __future__ import annotations
 
+import os
+import shutil
+import sys
 import textwrap
 from collections.abc import Iterable, Sequence
 
 import typer
 
 from kb.cli.session import use_colour
-from kb.plain import plain, shortened
+from kb.plain import excerpt, plain, shortened
 from kb.vocabulary import Fate, Severity
 
-WIDTH = 80
+WIDEST, NARROWEST = 80, 40
+LONGEST_TEXT = 20_000
+"""Longest text of one field that is shown [characters]; --json shows the whole."""
 _COLOUR = {Severity.SERIOUS: "red", Severity.CAUTION: "yellow", Severity.NOTE: "cyan"}
+
+
+def width() -> int:
+    """Return how many columns lines may take: 80, or fewer where a terminal or COLUMNS says so."""
+    if not (sys.stdout.isatty() or os.environ.get("COLUMNS")):
+        return WIDEST
+    return max(NARROWEST, min(WIDEST, shutil.get_terminal_size((WIDEST, 24)).columns))
 
 
 def heading(text: str) -> str:
@@ -34,20 +46,26 @@ def wrapped(text: str, indent: int = 0, first: str | None = None) -> list[str]:
     """Wrap text to the width.
 
     Args:
-        text: made safe here.
+        text: made safe here, and cut where it is longer than LONGEST_TEXT.
         indent: spaces before each line.
         first: put before the first line instead of the indent (its visible width counts as `indent`).
     """
     pad = " " * indent
+    columns = max(width() - indent, 12)
     lines: list[str] = []
-    for paragraph in plain(text, keep_lines=True).split("\n"):
+    for paragraph in plain(excerpt(text, LONGEST_TEXT), keep_lines=True).split("\n"):
         lines += textwrap.wrap(
-            paragraph, WIDTH - indent, break_long_words=True, break_on_hyphens=False, replace_whitespace=True
+            paragraph, columns, break_long_words=True, break_on_hyphens=False, replace_whitespace=True
         ) or [""]
     out = [pad + line for line in lines]
     if first is not None and lines:
         out[0] = first + lines[0]
     return out
+
+
+def counted(number: int, thing: str, things: str | None = None) -> str:
+    """Return "1 run", "2 runs"."""
+    return f"{number:,} {thing if number == 1 else things or thing + 's'}"
 
 
 def percent(share: float) -> str:
@@ -67,10 +85,12 @@ def split_words(split: Iterable[tuple[Fate, float]], limit: int = 3) -> str:
 
 
 def table(rows: Sequence[Sequence[str]], header: Sequence[str], widths: Sequence[int]) -> list[str]:
-    """Return aligned rows, each cell cut to its width."""
+    """Return aligned rows, each cell cut to its width; the last column gives or takes what the terminal has."""
+    room = width() - sum(widths[:-1]) - 2 * (len(widths) - 1)
+    columns = [*widths[:-1], max(room, 8)]
     lines = []
     for cells in (header, *rows):
-        line = "  ".join(f"{shortened(plain(c), w):<{w}}" for c, w in zip(cells, widths, strict=True))
-        lines.append(line.rstrip())
-    lines.insert(1, "  ".join("-" * w for w in widths))
+        line = "  ".join(f"{shortened(plain(c), w):<{w}}" for c, w in zip(cells, columns, strict=True))
+        lines.append(line.rstrip()[: width()])
+    lines.insert(1, "  ".join("-" * w for w in columns)[: width()])
     return lines

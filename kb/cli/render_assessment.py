@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
-from kb.cli.render import bar, heading, percent, severity_word, split_words, wrapped
+import re
+
+from kb.cli.render import bar, counted, heading, percent, severity_word, split_words, wrapped
 from kb.plain import plain, shortened
 from kb.record.assessment import Advice, Assessment, Estimate, Precedent
+from kb.record.component import Component
 from kb.record.conditions import Conditions
 from kb.record.finding import Evidence, Finding
 from kb.vocabulary import Basis, FindingKind, Severity
@@ -50,14 +53,35 @@ def render_assessment(assessment: Assessment, *, verbose: bool = False) -> str:
 
 def conditions_line(conditions: Conditions) -> str:
     """Return conditions in one line: components, solvents, temperature, time."""
-    words = [c.name + (f" ({c.equiv:g} equiv)" if c.equiv is not None else "") for c in conditions.components]
+    words = [c.name + _amount(c) for c in conditions.components]
     if conditions.solvents:
-        words.append("/".join(s.name for s in conditions.solvents))
+        names = "/".join(s.name for s in conditions.solvents)
+        parts = [s.parts for s in conditions.solvents]
+        given = len(parts) > 1 and all(p is not None for p in parts)
+        words.append(names + (" " + ":".join(f"{p:g}" for p in parts) if given else ""))
     if conditions.temperature:
-        words.append(conditions.temperature.text)
+        text = conditions.temperature.text
+        words.append(text if re.search(r"[^\d\s.,+-]", text) else f"{text} °C")
     if conditions.time:
         words.append(conditions.time.text)
     return ", ".join(words) or "no conditions given"
+
+
+def _amount(component: Component) -> str:
+    """Return the amounts of a component in brackets, as given; nothing where none was."""
+    given = [
+        f"{value:g} {unit}"
+        for value, unit in (
+            (component.equiv, "equiv"),
+            (component.loading_mol_pct, "mol %"),
+            (component.amount_mmol, "mmol"),
+            (component.mass_mg, "mg"),
+            (component.volume_ml, "mL"),
+            (component.conc_molar, "M"),
+        )
+        if value is not None
+    ]
+    return f" ({', '.join(given)})" if given else ""
 
 
 def _few(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:
@@ -150,5 +174,5 @@ def _precedents(precedents: tuple[Precedent, ...], *, verbose: bool) -> list[str
 def _advice(advice: Advice) -> list[str]:
     effect = advice.effect
     points = f"{100 * effect.mean:+.0f} points ({100 * effect.low:.0f} to {100 * effect.high:.0f})"
-    basis = f"{advice.pairs} pairs" if advice.basis is Basis.RECORD else "published trend"
+    basis = counted(advice.pairs, "pair") if advice.basis is Basis.RECORD else "published trend"
     return wrapped(f"{advice.change}: {points}, {basis}", 4, first="  - ") + wrapped(advice.why, 4)

@@ -8,15 +8,28 @@ from typing import Any
 
 from kb.cli.render import heading, split_words, table, wrapped
 from kb.cli.render_assessment import conditions_line
-from kb.plain import plain
+from kb.plain import excerpt, plain, shortened
 from kb.record.run import Run
 
+_HEADS = ("name", "text", "mode", "fate")
+"""Fields of a portable value that say what it is, shown first and without their names."""
+_UNTOLD = ("smiles", "role", "start_c", "end_c", "between_c", "h")
+"""Fields that only repeat what such a field says."""
+LONGEST_VALUE = 200
+"""Longest old or new value of a history that is shown [characters]; --json shows the whole."""
 
-def render_run(run: Run) -> str:
-    """Return one run in full."""
+
+def render_run(run: Run, reading: str = "") -> str:
+    """Return one run in full.
+
+    Args:
+        run: to show.
+        reading: what its scheme was read as, in words; "" = not told.
+    """
     withdrawn = " (withdrawn)" if run.is_withdrawn else ""
     lines = [heading(f"{run.code or 'new run'}{withdrawn}")]
-    lines += wrapped(plain(run.scheme), 2)
+    lines += wrapped(run.scheme, 2)
+    lines += _field("read as", reading)
     lines += _field("conditions", conditions_line(run.conditions))
     for label, value in (
         ("atmosphere", run.conditions.atmosphere),
@@ -33,6 +46,8 @@ def render_run(run: Run) -> str:
         lines += _field(label, value)
     if run.note:
         lines += _field("note", run.note)
+    for attachment in run.attachments:
+        lines += _field("attached", f"{attachment.name} ({attachment.size_bytes:,} bytes)")
     if run.withdrawn_why is not None:
         lines += _field("withdrawn", run.withdrawn_why)
     if run.revision > 1:
@@ -67,15 +82,33 @@ def render_history(entries: Sequence[Mapping[str, Any]]) -> str:
         stamp = dt.datetime.fromisoformat(entry["at"]).strftime("%Y-%m-%d %H:%M UTC")
         lines.append(f"{entry['revision']:>3}  {stamp}  {plain(str(entry['action']))} by {plain(str(entry['who']))}")
         if entry.get("why"):
-            lines += wrapped(str(entry["why"]), 5)
+            lines += wrapped(excerpt(str(entry["why"]), LONGEST_VALUE), 5)
         for change in entry["changed"]:
-            lines += wrapped(f"{change['field']}: {_short(change['from'])} → {_short(change['to'])}", 5)
+            lines += wrapped(change_words(change), 5)
     return "\n".join(lines) or "No history."
 
 
+def change_words(change: Mapping[str, Any]) -> str:
+    """Return one changed field in words: "isolated yield pct: 76 → 72"."""
+    label = change["field"].rpartition(".")[2].replace("_", " ")
+    return f"{label}: {_short(change['from'])} → {_short(change['to'])}"
+
+
 def _short(value: Any) -> str:
-    text = plain(str(value))
-    return "not recorded" if value is None else text if len(text) <= 160 else text[:159] + "…"
+    """Return a portable value in few words: "NaN3, 3 equiv; K2CO3" for a list of components."""
+    if value is None or value == []:
+        return "not recorded"
+    if isinstance(value, list):
+        text = "; ".join(_short(item) for item in value)
+    elif isinstance(value, dict):
+        heads = [str(value[k]) for k in _HEADS if k in value]
+        rest = [(k, v) for k, v in value.items() if k not in _HEADS and k not in (_UNTOLD if heads else ())]
+        text = ", ".join([*heads, *(f"{k.replace('_', ' ')} {_short(v)}" for k, v in rest)])
+    elif isinstance(value, float):
+        text = f"{value:g}"
+    else:
+        text = str(value)
+    return shortened(plain(text), LONGEST_VALUE)
 
 
 def _field(label: str, value: str | None) -> list[str]:
@@ -86,7 +119,7 @@ def _outcome(run: Run) -> list[str]:
     outcome = run.outcome
     lines = _field("verdict", str(run.verdict) if run.verdict else None)
     for product in outcome.products:
-        share = "seen" if product.share is None else f"{100 * product.share:.0f} %"
+        share = "seen" if product.share is None else f"{100 * product.share:g} %"
         how = f" by {product.method}" if product.method else ""
         lines += wrapped(f"{product.fate} {share}{how} {product.smiles or ''}".strip(), 14, first=f"  {'outcome':<12}")
     for label, value in (
@@ -96,6 +129,7 @@ def _outcome(run: Run) -> list[str]:
         ("ee", outcome.ee_pct),
     ):
         lines += _field(label, None if value is None else f"{value:g} %")
+    lines += _field("dr", outcome.dr)
     for failure in outcome.failures:
         words = (
             failure.mode

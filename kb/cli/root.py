@@ -7,8 +7,17 @@ from typing import Annotated, Optional
 
 import typer
 
-from kb.cli import book_commands, check_command, find_command, look_commands, record_commands, rule_commands
+from kb.cli import (
+    book_commands,
+    check_command,
+    find_command,
+    look_commands,
+    record_commands,
+    rule_commands,
+    split_command,
+)
 from kb.cli.session import Session, set_session
+from kb.cli.strict import make_strict
 
 app = typer.Typer(
     name="sidepath",
@@ -44,5 +53,14 @@ def root(
             typer.echo(ctx.get_help())
 
 
-for _module in (book_commands, look_commands, check_command, record_commands, find_command, rule_commands):
+for _module in (
+    book_commands,
+    look_commands,
+    check_command,
+    record_commands,
+    find_command,
+    rule_commands,
+    split_command,
+):
     _module.register(app)
+make_strict(app)

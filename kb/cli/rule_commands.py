@@ -6,13 +6,18 @@ from typing import Annotated, Any, Optional
 
 import typer
 
-from kb.cli.render import severity_word, wrapped
+from kb.cli.render import counted, severity_word, wrapped
 from kb.cli.session import current_session
+from kb.errors import InvalidRecord
 from kb.vocabulary import Severity
 
 Word = Optional[str]  # noqa: UP045 - typer reads the annotations at run time
 MotifFlag = Annotated[Word, typer.Option("--motif", metavar="SMARTS", help="What must be in the molecule.")]
 WhenFlag = Annotated[str, typer.Option("--when", help="Condition, e.g. 'acidity >= strong and temperature_c >= 40'.")]
+
+
+LONGEST_TITLE = 200
+"""Longest title of a rule [characters]: it is one line of a finding."""
 
 
 def register(app: typer.Typer) -> None:
@@ -28,20 +33,24 @@ def register(app: typer.Typer) -> None:
 def add(
     title: Annotated[str, typer.Argument(help="The rule in one line.")],
     when: WhenFlag,
+    why: Annotated[str, typer.Option("--why", help="The reason, in plain words; shown with each warning.")],
     motif: MotifFlag = None,
-    severity: Annotated[Severity, typer.Option("--severity")] = Severity.CAUTION,
-    why: Annotated[str, typer.Option("--why")] = "",
+    severity: Annotated[Severity, typer.Option("--severity", help="How much it matters.")] = Severity.CAUTION,
     source: Annotated[str, typer.Option("--source", help="Runs or reference behind it.")] = "",
 ) -> None:
     """Write a rule down; it is tried on the whole book first and the outcome is shown."""
     from kb.book import house_rule
 
     session = current_session()
+    if len(title) > LONGEST_TITLE:
+        hint = f"Keep it to {LONGEST_TITLE}, and say the rest in --why."
+        raise InvalidRecord(f"The title has {len(title):,} characters.", hint, title)
     rule = house_rule(title, motif, when, severity, why, source, session.initials)
     with session.opened() as book:
         trial = book.try_rule(rule)
         rule = book.add_rule(rule)
-    session.answer(_trial_dict(rule.rule_id, trial), f"Rule {rule.rule_id} added.\n{_trial_text(trial)}")
+    text = "\n".join([*wrapped(f"Rule {rule.rule_id} added."), _trial_text(trial)])
+    session.answer(_trial_dict(rule.rule_id, trial), text)
 
 
 def list_rules() -> None:
@@ -54,6 +63,9 @@ def list_rules() -> None:
         state = f" (retired: {rule.retired_why})" if rule.is_retired else ""
         lines += wrapped(f"{rule.rule_id}: {rule.title}{state}", 10, first=f"  {severity_word(rule.severity)} ")
         lines += wrapped(f"when {rule.when}" + (f"; motif {rule.motif}" if rule.motif else ""), 10)
+        lines += wrapped(rule.why, 10)
+        if rule.source or rule.author:
+            lines += wrapped("; ".join(filter(None, (rule.source, f"by {rule.author}" if rule.author else ""))), 10)
     data = [
         {
             "id": r.rule_id,
@@ -73,7 +85,7 @@ def list_rules() -> None:
 
 def test(
     name: Annotated[Word, typer.Argument(help="A rule of the book; or give --when and --motif.")] = None,
-    when: Annotated[Word, typer.Option("--when")] = None,
+    when: Annotated[Word, typer.Option("--when", help="Condition of a rule not yet in the book.")] = None,
     motif: MotifFlag = None,
 ) -> None:
     """Try a rule on every run: failures it warns of, false alarms."""
@@ -81,7 +93,7 @@ def test(
 
     session = current_session()
     if (name is None) == (when is None):
-        raise typer.BadParameter("name a rule, or give --when (and --motif) of a new one")
+        raise typer.BadParameter("Name a rule, or give --when (and --motif) of a new one.")
     with session.opened(read_only=True) as book:
         if name is not None:
             rule = book.rule(name)
@@ -92,14 +104,14 @@ def test(
 
 
 def retire(
-    name: Annotated[str, typer.Argument()],
+    name: Annotated[str, typer.Argument(help="A rule of the book.")],
     why: Annotated[str, typer.Option("--why", help="Reason, kept with the rule.")],
 ) -> None:
     """Retire a rule; it is kept with the reason but warns no more."""
     session = current_session()
     with session.opened() as book:
         book.retire_rule(name, why=why, who=session.initials)
-    session.answer({"id": name, "retired_why": why}, f"Rule {name} retired.")
+    session.answer({"id": name, "retired_why": why}, "\n".join(wrapped(f"Rule {name} retired.")))
 
 
 def _trial_dict(name: str, trial: Any) -> dict[str, Any]:
@@ -113,10 +125,10 @@ def _trial_dict(name: str, trial: Any) -> dict[str, Any]:
 
 
 def _trial_text(trial: Any) -> str:
-    lines = [
-        f"On this book it warns of {len(trial.hits)} of {trial.failures_in_book} failures, "
-        f"with {len(trial.false_alarms)} false alarms and {len(trial.undecided)} that cannot be told."
-    ]
+    lines = wrapped(
+        f"On this book it warns of {len(trial.hits)} of {counted(trial.failures_in_book, 'failure')}, "
+        f"with {counted(len(trial.false_alarms), 'false alarm')} and {len(trial.undecided)} that cannot be told."
+    )
     if trial.hits:
         lines += wrapped("Failures: " + ", ".join(trial.hits[:20]), 2)
     if trial.false_alarms:

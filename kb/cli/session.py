@@ -1,37 +1,45 @@
 """What every command shares: where the book is, who is asking, how to answer.
 
 It owns the output channels: results to stdout, everything else to stderr; JSON when asked. It opens the book only
-when a command asks for it, so that `--help` and completion load nothing heavy.
+when a command asks for it, and reads the settings only then, so that `--help` and completion load nothing heavy.
 """
 
 from __future__ import annotations
 
 import json
 import os
+import signal
 import sys
 import time
 from collections.abc import Iterator
 from contextlib import contextmanager
 from contextvars import ContextVar
 from dataclasses import dataclass
+from functools import cached_property
+from types import FrameType, TracebackType
 from typing import TYPE_CHECKING, Any
 
 import typer
 
-from kb.errors import SettingsError
-from kb.plain import plain
+from kb.errors import Cancelled, SettingsError, SidepathError, StoreRefused
+from kb.plain import excerpt, plain, plain_json
 
 if TYPE_CHECKING:
     from kb.book import Book
+    from kb.settings import Settings
+
+LONGEST_MESSAGE = 600
+"""Longest message on stderr [characters]; what a person typed may be part of it."""
+LONGEST_INITIALS = 80
 
 
-@dataclass(slots=True)
+@dataclass(kw_only=True)
 class Session:
     """The options given before or after the command.
 
     Attributes:
-        book: path or URL; None = the default place.
-        who: initials; None = SIDEPATH_AS, else the login name.
+        book: path or URL; None = by the settings, else the default place.
+        who: initials; None = by the settings, else the login name.
         as_json, quiet, verbose: as asked.
     """
 
@@ -41,32 +49,61 @@ class Session:
     quiet: bool = False
     verbose: bool = False
 
+    @cached_property
+    def settings(self) -> Settings:
+        """Return the settings, flags first.
+
+        Raises:
+            SettingsError: an unknown key or an impossible value.
+        """
+        from kb.paths import settings_file
+        from kb.settings import load_settings
+
+        return load_settings({"book": self.book, "as": self.who}, file=settings_file())
+
     @property
     def initials(self) -> str:
         """Return who is asking.
 
         Raises:
-            SettingsError: nobody is named and the login name is not to be had.
+            SettingsError: nobody is named and the login name is not to be had, or the name is no name.
         """
         import getpass
 
-        if self.who:
-            return self.who
-        try:
-            return getpass.getuser()
-        except (OSError, KeyError):
-            raise SettingsError("Nobody is named.", "Give --as INITIALS or set SIDEPATH_AS.") from None
+        who = self.settings.initials
+        if who is None:
+            try:
+                who = getpass.getuser()
+            except (OSError, KeyError):
+                raise SettingsError("Nobody is named.", "Give --as INITIALS or set SIDEPATH_AS.") from None
+        if len(who) > LONGEST_INITIALS or not who.isprintable():
+            raise SettingsError(
+                f"{excerpt(who, 20)!r} are no initials.", "Give a few letters with --as or SIDEPATH_AS.", who
+            )
+        return who
 
     @contextmanager
     def opened(self, *, read_only: bool = False) -> Iterator[Book]:
         """Open the book for the length of a command."""
         from kb.book import open_book
 
-        with open_book(self.book, read_only=read_only) as book:
+        with open_book(self.settings.book, read_only=read_only, wait_s=self.settings.wait_s) as book:
+            yield book
+
+    @contextmanager
+    def opened_if_possible(self) -> Iterator[Book]:
+        """Open the book for writing where that is allowed, else for reading; for checks that can do more with it."""
+        from kb.book import open_book
+
+        try:
+            book = open_book(self.settings.book, wait_s=self.settings.wait_s)
+        except StoreRefused:
+            book = open_book(self.settings.book, read_only=True)
+        with book:
             yield book
 
     def answer(self, data: Any, text: str) -> None:
-        """Print a result: JSON when asked, else text."""
+        """Print a result: JSON when asked, else text, which the caller has made safe."""
         if self.as_json:
             self.print_json(data)
         elif text:
@@ -74,20 +111,33 @@ class Session:
 
     def print_json(self, data: Any) -> None:
         """Print one JSON value on one line of stdout."""
-        typer.echo(json.dumps(data, ensure_ascii=False))
+        typer.echo(json_line(data))
+
+    def refuse(self, data: dict[str, Any], error: SidepathError) -> None:
+        """Say an error on stderr; with JSON asked also the object on stdout, which has more to tell, with it inside."""
+        if self.as_json:
+            self.print_json(data | {"error": error.as_dict()})
+        complain(error.as_dict())
 
     def say(self, text: str) -> None:
         """Tell the user something on stderr, unless --quiet."""
         if not self.quiet:
-            typer.echo(plain(text, keep_lines=True), err=True)
+            typer.echo(plain(excerpt(text, LONGEST_MESSAGE), keep_lines=True), err=True)
 
     def progress(self, label: str) -> BarOnStderr:
-        """Return a progress that draws one line on stderr (nothing with --quiet or away from a terminal)."""
+        """Return a progress, to be used as a context: one line on stderr, and Ctrl-C taken for a wish to stop.
+
+        It draws nothing with --quiet or away from a terminal.
+        """
         return BarOnStderr(label, shown=not self.quiet and sys.stderr.isatty())
 
 
 class BarOnStderr:
-    """Progress as one line rewritten at most four times a second; Ctrl-C asks the job to stop."""
+    """Progress as one line rewritten at most four times a second.
+
+    The first Ctrl-C asks the job to stop at the next good place, so that what is finished is kept; the second one stops
+    it where it is.
+    """
 
     def __init__(self, label: str, *, shown: bool) -> None:
         self.label = label
@@ -95,6 +145,33 @@ class BarOnStderr:
         self.stopped = False
         self._last = 0.0
         self._start = time.monotonic()
+        self._open_line = False
+        self._before: Any = None
+
+    def __enter__(self) -> BarOnStderr:
+        try:
+            self._before = signal.signal(signal.SIGINT, self._ask_to_stop)
+        except ValueError:  # only the main thread may set handlers
+            self._before = None
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        if self._before is not None:
+            signal.signal(signal.SIGINT, self._before)
+        if self._open_line:
+            sys.stderr.write("\n")
+
+    def _ask_to_stop(self, number: int, frame: FrameType | None) -> None:
+        if self.stopped:
+            raise KeyboardInterrupt
+        self.stopped = True
+
+    def check_stopped(self) -> None:
+        """Raise Cancelled where the job was stopped; for jobs that give nothing when they are not finished."""
+        if self.stopped:
+            raise Cancelled("Stopped.", "What was finished before is kept.")
 
     def advance(self, done: int, total: int | None, note: str = "") -> None:
         """Redraw the line when a quarter of a second has passed."""
@@ -106,13 +183,29 @@ class BarOnStderr:
         of = f" of {total:,}" if total else ""
         left = f", {(total - done) / rate:.0f} s left" if total and rate > 0 and done < total else ""
         line = f"{self.label}: {done:,}{of} ({rate:,.0f}/s{left}) {plain(note)}"
-        end = "\n" if done == total else ""
-        sys.stderr.write("\r\x1b[2K" + line[:100] + end)
+        self._open_line = done != total
+        sys.stderr.write("\r\x1b[2K" + line[:79] + ("" if self._open_line else "\n"))
         sys.stderr.flush()
 
     def cancelled(self) -> bool:
         """Return True once Ctrl-C was pressed."""
         return self.stopped
+
+
+def json_line(data: Any) -> str:
+    """Return a value as one line of JSON that is safe on a terminal and fits the encoding of stdout."""
+    line = plain_json(json.dumps(data, ensure_ascii=False, default=str))
+    try:
+        line.encode(sys.stdout.encoding or "utf-8")
+    except (UnicodeEncodeError, LookupError):
+        return json.dumps(data, default=str)
+    return line
+
+
+def complain(error: dict[str, str]) -> None:
+    """Say an error in plain sentences on stderr."""
+    message, hint = (excerpt(error[part], LONGEST_MESSAGE) for part in ("message", "hint"))
+    typer.echo(f"sidepath: {plain(f'{message} {hint}'.strip())}", err=True)
 
 
 def use_colour() -> bool:
