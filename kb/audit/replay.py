@@ -116,10 +116,14 @@ class Replayer:
             if progress.cancelled():
                 break
             if number % _READ_AHEAD == 0:
-                self.dated.view.fetch(int(self.dated.rows[p]) for p in places[number : number + _READ_AHEAD])
+                self.read_ahead(places[number : number + _READ_AHEAD])
             seen.append(self.check(place))
             progress.advance(len(seen), total, "runs checked")
         return seen
+
+    def read_ahead(self, places: Sequence[int]) -> None:
+        """Read the whole runs at some places in one go, which is ten times as fast as one by one."""
+        self.dated.view.fetch(int(self.dated.rows[place]) for place in places)
 
     def check(self, place: int) -> Hindsight:
         """Check the run at a place against what stood in the book that morning."""
