@@ -17,6 +17,7 @@ def calm(monkeypatch: pytest.MonkeyPatch) -> None:
     """Shorten the pauses in typing and keep the cursor still."""
     monkeypatch.setattr(planning, "SETTLE_S", 0.01)
     monkeypatch.setattr(entry, "KEEP_S", 0.01)
+    monkeypatch.setattr(entry, "READ_S", 0.01)
     monkeypatch.setattr(EditLog, "MERGE_S", 0.0)
     monkeypatch.setattr(Input, "cursor_blink", False)
     monkeypatch.setattr(TextArea, "cursor_blink", False)

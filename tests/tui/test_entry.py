@@ -38,7 +38,7 @@ async def test_a_run_is_recorded_from_three_integrals() -> None:
         for name, value in (("p0-value", "1.80"), ("p0-protons", "2"), ("p1-value", "0.08"), ("p2-value", "0.02")):
             screen.query_one(f"#{name}").value = value
         await settled(pilot)
-        assert "90 % (89 to 91)" in on_screen(app)
+        assert "90 % (89–91)" in on_screen(app)
         screen.query_one("#field-verdict", Select).value = "partly"
         ticks = screen.query_one(TickList)
         ticks.focus()

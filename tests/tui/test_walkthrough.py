@@ -36,7 +36,7 @@ async def test_plan_warned_changed_run_recorded_and_found() -> None:
             app.screen.query_one(f"#{name}").value = value
         app.screen.query_one("#field-verdict", Select).value = "worked"
         await settled(pilot)
-        assert "90 % (89 to 91)" in on_screen(app)
+        assert "90 % (89–91)" in on_screen(app)
         await pressed(pilot, "ctrl+s")
         assert isinstance(app.screen, PlanningScreen)
         assert book.runs["R-0013"].outcome.split

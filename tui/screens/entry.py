@@ -6,8 +6,9 @@ scheme, so that nobody has to draw them. A save that fails leaves the form as it
 
 from __future__ import annotations
 
+import asyncio
 import datetime as dt
-from collections.abc import Callable, Sequence
+from collections.abc import Callable
 from functools import partial
 from typing import ClassVar
 from uuid import uuid4
@@ -38,6 +39,7 @@ from tui.entry_state import (
 )
 from tui.jobs import EditLog
 from tui.messages import RunStored
+from tui.plan_state import read_plan
 from tui.ports import BookPort
 from tui.present import reading_words, safe
 from tui.screens.base import AskingScreen
@@ -46,6 +48,12 @@ from tui.widgets.entry_form import EntryForm
 
 KEEP_S = 0.5
 """Pause after an edit until the draft is saved [s]."""
+
+READ_S = 0.3
+"""Pause after an edit until the products are proposed anew [s]."""
+
+READ_FIELDS = ("scheme", "reagent", "base", "acid", "additive", "solvent")
+"""What decides which products can form."""
 
 ReadScheme = tuple[Reading, dict[str, SchemeDrawing], tuple[ProductRow, ...]]
 
@@ -56,7 +64,7 @@ class EntryScreen(AskingScreen[Run | None]):
     CSS_PATH = HERE / "entry.tcss"
     HELP = """
 The entry form. The step is what you planned; change what was done differently. Below "What was seen" stand
-the products that could have formed: give the integral and the protons behind it (or the area and 1, or
+the products that could have formed: give the integral and the protons (H) behind it (or the area and 1, or
 shares in %), "0" where you looked and found nothing, "seen" where you could not measure; leave empty what
 you did not look for. Ctrl+S stores the run. Everything is kept as a draft while you type; Escape leaves,
 F10 takes it up again.
@@ -78,6 +86,7 @@ F10 takes it up again.
         self._log = EditLog(self._state)
         self._delayed: dict[str, Timer] = {}
         self._drawings: dict[str, SchemeDrawing] = {}
+        self._laying_out = asyncio.Lock()
         self._was_edited = bool(draft_key)
 
     def compose(self) -> ComposeResult:
@@ -112,12 +121,13 @@ F10 takes it up again.
         self._lay_out_products(is_restored=True)
 
     def _lay_out_products(self, is_restored: bool = False) -> None:
-        self.run_worker(self._show_products(is_restored), group="rows", exclusive=True)
+        self.run_worker(self._show_products(is_restored), group="rows")
 
     async def _show_products(self, is_restored: bool) -> None:
-        if not is_restored:
-            self._state = self.form.collect(self._state)
-        await self.form.show_products(self._state, self._drawings, self.app.in_words, is_restored)
+        async with self._laying_out:  # rows are mounted one set after the other, never half a set
+            if not is_restored:
+                self._state = self.form.collect(self._state)
+            await self.form.show_products(self._state, self._drawings, self.app.in_words, is_restored)
 
     @on(EntryForm.Changed)
     def _edited(self) -> None:
@@ -128,8 +138,8 @@ F10 takes it up again.
         changed = next(k for k in self._state if self._state.get(k) != before.get(k))
         self._log.note(changed, self._state)
         self.form.show_split(self._state)
-        if self._state["scheme"] != before.get("scheme"):
-            self._later("read", 0.25, self._read_scheme)
+        if any(self._state.get(name) != before.get(name) for name in READ_FIELDS):
+            self._later("read", READ_S, self._read_scheme)
         self._later("keep", KEEP_S, self._keep)
 
     def _later(self, name: str, delay_s: float, what: Callable[[], None]) -> None:
@@ -138,9 +148,9 @@ F10 takes it up again.
         self._delayed[name] = self.set_timer(delay_s, what)
 
     def _read_scheme(self) -> None:
-        book, text = self.book, self._state.get("scheme", "").strip()
-        if book is not None and text:
-            self.ask("read", partial(_read, text, rows_in(self._state), book), self._show_reading, self._show_bad)
+        book = self.book
+        if book is not None and self._state.get("scheme", "").strip():
+            self.ask("read", partial(_read, dict(self._state), book), self._show_reading, self._show_bad)
 
     def _show_reading(self, found: ReadScheme) -> None:
         reading, drawings, rows = found
@@ -263,12 +273,16 @@ F10 takes it up again.
         return {"SMILES": scheme} if scheme else {}
 
 
-def _read(text: str, rows: Sequence[ProductRow], book: BookPort) -> ReadScheme:
-    """In the thread: read the scheme, list the products and lay them out."""
-    reading = book.read_scheme(book.scheme_text(text))
-    wanted = possible_rows(reading) if reading.ok else tuple(rows)
-    smiles = {row.smiles for row in (*wanted, *rows) if row.smiles}
-    return reading, {s: scheme_drawing(s) for s in smiles}, wanted
+def _read(state: dict[str, str], book: BookPort) -> ReadScheme:
+    """In the thread: say what the step can give under its conditions, and lay the products out."""
+    plan = read_plan({**state, "scheme": book.scheme_text(state["scheme"].strip())}, book).plan
+    reading = book.read_scheme(plan.scheme)
+    if reading.ok:
+        reading = book.check(plan, top=1).reading  # knows the nucleophile that is named in the conditions only
+    kept = rows_in(state)
+    wanted = possible_rows(reading) if reading.ok else kept
+    smiles = {row.smiles for row in (*wanted, *kept) if row.smiles}
+    return reading, {text: scheme_drawing(text) for text in smiles}, wanted
 
 
 def _store_run(state: dict[str, str], book: BookPort, who: str, amending: Run | None, why: str) -> EntryRead:

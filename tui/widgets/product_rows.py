@@ -14,11 +14,11 @@ from textual.widgets import Input, Static
 
 from kb.chem.layout import SchemeDrawing
 from tui.entry_state import INTEGRALS, ProductRow, RowShare, SplitRead
-from tui.present import FATE_WORDS, bar_cells, interval_words, percent, safe
+from tui.present import FATE_WORDS, bar_cells, bounds_short, percent, safe
 from tui.widgets.lines import SafeInput
 from tui.widgets.structure import SchemeView
 
-BAR = 12
+BAR = 10
 
 
 class ProductEntry(Horizontal):
@@ -42,9 +42,14 @@ class ProductEntry(Horizontal):
             with Horizontal(classes="form-row"):
                 yield Static("Integral", classes="form-word product-word", markup=False)
                 yield SafeInput(placeholder="seen", id=f"p{self.number}-value", classes="line")
-                yield Static("protons", classes="form-word second product-protons", markup=False)
+                yield Static("H", classes="form-word second product-protons", markup=False)
                 yield SafeInput(placeholder="1", id=f"p{self.number}-protons", classes="line product-protons")
             yield Static("", classes="product-share", markup=False)
+
+    @property
+    def is_laid_out(self) -> bool:
+        """Return True once the lines are there."""
+        return bool(self.query(f"#p{self.number}-value"))
 
     def show_share(self, read: RowShare) -> None:
         """Show what the figure comes to, or what is wrong with it."""
@@ -54,7 +59,7 @@ class ProductEntry(Horizontal):
         if read.error:
             line.update(f"✗ {safe(read.error)}")
         elif read.share is not None:
-            bounds = "" if read.share.low == read.share.high else f" ({interval_words(read.share)})"
+            bounds = "" if read.share.low == read.share.high else f" {bounds_short(read.share)}"
             line.update(f"{bar_cells(read.share, BAR)} {percent(read.share.mean)}{bounds}")
         else:
             line.update("seen, not measured" if read.is_seen else "")
@@ -98,7 +103,7 @@ class ProductRows(Vertical):
         with self.prevent(Input.Changed):
             for entry in self.query(ProductEntry):
                 for part in ("value", "protons"):
-                    line = self.query_one(f"#p{entry.number}-{part}", Input)
+                    line = entry.query_one(f"#p{entry.number}-{part}", Input)
                     line.value = state.get(f"p{entry.number}.{part}", "")
 
     @property
@@ -113,7 +118,8 @@ class ProductRows(Vertical):
 
     def show_split(self, read: SplitRead, how: str) -> None:
         """Show every share and what they add up to."""
-        for entry, share in zip(self.query(ProductEntry), read.rows, strict=False):
+        entries = [entry for entry in self.query(ProductEntry) if entry.is_laid_out]
+        for entry, share in zip(entries, read.rows, strict=False):
             entry.show_share(share)
             entry.set_class(how != INTEGRALS, "-shares")
             entry.query_one(".product-word", Static).update("Integral" if how == INTEGRALS else "Share, %")
