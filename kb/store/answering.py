@@ -17,7 +17,7 @@ from kb.store import facts, history, lineage, runs, words
 from kb.store.rows import RunRow
 from kb.store.runs import EVERY_STANDING_RUN, RunFilter, Sort
 from kb.store.session import CHANGES, OpenBook, book_id_of
-from kb.store.values import Conflict, HistoryEntry, Page, StoredStructure, WordHit
+from kb.store.values import Conflict, Event, HistoryEntry, Page, StoredStructure, WordHit
 
 if TYPE_CHECKING:
     import numpy as np
@@ -45,6 +45,11 @@ class Answers:
         """Return a number that goes up with every change by anybody; cheap to ask."""
         with self.book.reading() as connection:
             return int(history.read_meta(connection, CHANGES) or 0)
+
+    def events(self) -> tuple[Event, ...]:
+        """Return what was done to the book as a whole (made, migrated, merged), oldest first."""
+        with self.book.reading() as connection:
+            return tuple(history.events(connection))
 
     def tip(self) -> int:
         """Return the `seq` of the last history entry; 0 = none."""
@@ -165,12 +170,8 @@ class Answers:
             IndexStale: some were encoded by another recipe.
         """
         with self.book.reading() as connection:
-            if self.book.deriving.encode is not None and facts.stale_structures(
-                connection, self.book.deriving.recipe
-            ):
-                raise IndexStale(
-                    "Structures were encoded by another recipe.", "Rebuild them: `sidepath migrate`."
-                )
+            if self.book.deriving.encode is not None and facts.stale_structures(connection, self.book.deriving.recipe):
+                raise IndexStale("Structures were encoded by another recipe.", "Rebuild them: `sidepath migrate`.")
             yield from facts.iter_structures(connection, after, batch)
 
     def places(self, run_ids: Iterable[UUID] | None = None) -> dict[str, np.ndarray]:

@@ -249,6 +249,8 @@ def translated(address: Address | Path) -> Iterator[None]:
         raise StoreDamaged(
             f"{address} holds what this program cannot read ({_first_line(error)}).", "Run `sidepath verify`."
         ) from error
+    except BrokenPipeError:  # whoever reads our output went away; nothing to do with the book
+        raise
     except OSError as error:
         raise _system_refused(error, str(address)) from error
     except SidepathError:

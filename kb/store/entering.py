@@ -32,8 +32,8 @@ def enter(book: OpenBook, chunk: Sequence[Run], who: str) -> list[Run]:
     for run in chunk:
         if run.run_id not in known:
             fresh.setdefault(run.run_id, run if run.recorded_at else replace(run, recorded_at=now))
-    for run in fresh.values():
-        lineage.content_of(run)  # refuses what no book can keep, before anything is worked out or locked
+    # refuses what no book can keep, before anything is worked out or locked
+    contents = {run.run_id: lineage.content_of(replace(run, code=None)) for run in fresh.values()}
     if not fresh:
         return []
     prepared = {run.run_id: book.deriving.prepare(run) for run in fresh.values()}
@@ -53,7 +53,7 @@ def enter(book: OpenBook, chunk: Sequence[Run], who: str) -> list[Run]:
                 at=now,
                 why="",
                 changed=(),
-                after=lineage.content_of(run),
+                after={**contents[run.run_id], "code": run.code},
                 parents=(),
                 book_id=book_id,
             )
@@ -67,9 +67,7 @@ def _with_codes(connection: sa.Connection, new: Sequence[Run]) -> list[tuple[Run
     """Return each run with its code, and the number in it: the one it brings if free, else the next."""
     brought = {run.run_id: parse_code(run.code) if run.code else None for run in new}
     taken = recording.taken_numbers(connection, {code[0] for code in brought.values() if code})
-    free = max(
-        [recording.next_free(connection, RunRow.code_number), *(c[0] + 1 for c in brought.values() if c)]
-    )
+    free = max([recording.next_free(connection, RunRow.code_number), *(c[0] + 1 for c in brought.values() if c)])
     given: list[tuple[Run, int]] = []
     for run in new:
         code = brought[run.run_id]

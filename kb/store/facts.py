@@ -82,7 +82,7 @@ def derived_columns(connection: sa.Connection, recipe: str) -> dict[str, np.ndar
     )
     result = connection.execute(statement)
     names = list(result.keys())
-    fetched: list[Any] = [tuple(row) for row in result]
+    fetched: Any = result.all()
     columns = dict(zip(names, zip(*fetched, strict=True), strict=True)) if fetched else dict.fromkeys(names, ())
     found: dict[str, np.ndarray] = {"run_key": np.array(columns["run_key"], dtype=np.int64)}
     for name in ("run_id", "code", "verdict", *WORDS):
@@ -101,22 +101,26 @@ def derived_columns(connection: sa.Connection, recipe: str) -> dict[str, np.ndar
 
 
 def _shares(connection: sa.Connection, run_keys: np.ndarray) -> np.ndarray:
-    """Return molar shares (n, 8) summed per fate."""
+    """Return molar shares (n, 8) summed per fate; the sum of nothing measured is NULL, hence NaN."""
     import numpy as np
 
-    place = {str(fate): column for column, fate in enumerate(Fate)}
-    shares = np.full((len(run_keys), len(place)), np.nan)
+    shares = np.full((len(run_keys), len(Fate)), np.nan)
+    share = ProductSeenRow.share
     statement = (
-        sa.select(ProductSeenRow.run_key, ProductSeenRow.fate, sa.func.sum(ProductSeenRow.share))
-        .where(ProductSeenRow.share.is_not(None))
-        .group_by(ProductSeenRow.run_key, ProductSeenRow.fate)
+        sa.select(
+            ProductSeenRow.run_key,
+            *(sa.func.sum(sa.case((ProductSeenRow.fate == str(fate), share))) for fate in Fate),
+        )
+        .where(share.is_not(None))
+        .group_by(ProductSeenRow.run_key)
     )
-    measured = [(key, place[fate], share) for key, fate, share in connection.execute(statement) if fate in place]
-    if measured:
-        keys, columns, values = (np.array(part) for part in zip(*measured, strict=True))
-        rows = np.searchsorted(run_keys, keys)
-        stands = (rows < len(run_keys)) & (run_keys[np.minimum(rows, len(run_keys) - 1)] == keys) if len(run_keys) else np.zeros(len(keys), bool)  # fmt: skip  # noqa: E501
-        shares[rows[stands], columns[stands]] = values[stands]
+    measured: Any = connection.execute(statement).all()
+    if measured and len(run_keys):
+        table_of_sums = np.array([tuple(row) for row in measured], dtype=np.float64)
+        keys = table_of_sums[:, 0].astype(np.int64)  # exact: keys are far below 2 ** 53
+        rows = np.minimum(np.searchsorted(run_keys, keys), len(run_keys) - 1)
+        stands = run_keys[rows] == keys
+        shares[rows[stands]] = table_of_sums[stands, 1:]
     return shares
 
 

@@ -21,8 +21,8 @@ import sqlalchemy as sa
 from kb.errors import StoreDamaged
 from kb.store import lineage
 from kb.store.mapping import table
-from kb.store.rows import HistoryRow, MetaRow
-from kb.store.values import Change, HistoryEntry
+from kb.store.rows import EventRow, HistoryRow, MetaRow
+from kb.store.values import Change, Event, HistoryEntry
 
 TIP = "history_tip"
 CHUNK = 500
@@ -37,6 +37,19 @@ def read_meta(connection: sa.Connection, name: str) -> str:
 def write_meta(connection: sa.Connection, name: str, value: str) -> None:
     """Set a fact about the book that is there already."""
     connection.execute(sa.update(MetaRow).where(MetaRow.name == name).values(value=value))
+
+
+def note_event(connection: sa.Connection, at: dt.datetime, who: str, action: str, detail: str) -> None:
+    """Write down what was done to the book as a whole."""
+    last = connection.execute(sa.select(sa.func.max(EventRow.event_id))).scalar() or 0
+    values = {"event_id": last + 1, "at": at, "who": who, "action": action, "detail": detail}
+    connection.execute(sa.insert(table(EventRow)).values(**values))
+
+
+def events(connection: sa.Connection) -> list[Event]:
+    """Return what was done to the book as a whole, oldest first."""
+    rows = connection.execute(sa.select(table(EventRow)).order_by(EventRow.event_id)).all()
+    return [Event(at=row.at, who=row.who, action=row.action, detail=row.detail) for row in rows]
 
 
 def read_tip(connection: sa.Connection) -> tuple[int, str]:
@@ -129,10 +142,7 @@ def iter_rows(connection: sa.Connection) -> Iterator[tuple[HistoryEntry, str]]:
     while True:
         rows = (
             connection.execute(
-                sa.select(table(HistoryRow))
-                .where(HistoryRow.seq > last)
-                .order_by(HistoryRow.seq)
-                .limit(CHUNK)
+                sa.select(table(HistoryRow)).where(HistoryRow.seq > last).order_by(HistoryRow.seq).limit(CHUNK)
             )
             .mappings()
             .all()
@@ -146,9 +156,7 @@ def iter_rows(connection: sa.Connection) -> Iterator[tuple[HistoryEntry, str]]:
 
 def changed_since(connection: sa.Connection, seq: int) -> list[UUID]:
     """Return the runs that got history after `seq`."""
-    return list(
-        connection.execute(sa.select(HistoryRow.run_id).where(HistoryRow.seq > seq).distinct()).scalars()
-    )
+    return list(connection.execute(sa.select(HistoryRow.run_id).where(HistoryRow.seq > seq).distinct()).scalars())
 
 
 def entry_of(row: sa.RowMapping) -> HistoryEntry:

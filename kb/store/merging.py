@@ -52,7 +52,7 @@ def merge(store: Store, other: str | Path, *, who: str, progress: Progress | Non
     Args:
         store: the book that grows.
         other: path or URL of the other one; it must have the same form (`sidepath migrate` it first).
-        who: initials of who merges; only needed to be there, since every entry keeps its own author.
+        who: initials of who merges, for the book's own log; every entry keeps its own author.
         progress: asked before each transaction; what was taken in stays.
 
     Raises:
@@ -78,6 +78,10 @@ def merge(store: Store, other: str | Path, *, who: str, progress: Progress | Non
                 _take_runs(store.book, history.entries_of(theirs, chunk), tally)
                 done += len(chunk)
                 progress.advance(done, len(ids), "runs compared")
+    if tally.added or tally.updated:
+        with store.book.writing() as connection:
+            said = f"With {other}: {tally.added} runs added, {tally.updated} changed, {tally.same} the same."
+            history.note_event(connection, store.book.clock(), who, "merged", said)
     both = set(ids)
     return MergeReport(
         added=tally.added,

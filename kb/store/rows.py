@@ -82,6 +82,17 @@ class MetaRow(Row):
     value: Mapped[str]
 
 
+class EventRow(Row):
+    """Something that was done to the book as a whole: made, migrated, merged with another. Append-only."""
+
+    __tablename__ = "event"
+    event_id: Mapped[int] = mapped_column(primary_key=True)
+    at: Mapped[dt.datetime]
+    who: Mapped[str]
+    action: Mapped[str]
+    detail: Mapped[str]
+
+
 class RunRow(Row):
     """One experiment as it stands now."""
 

@@ -129,18 +129,14 @@ def select_keys(wanted: RunFilter, sort: Sort = Sort.CODE, descending: bool = Fa
     if wanted.until is not None:
         clauses.append(RunRow.run_date <= wanted.until)
     if wanted.failed is not None:
-        clauses.append(
-            sa.exists().where(FailureRow.run_key == RunRow.run_key, FailureRow.mode == str(wanted.failed))
-        )
+        clauses.append(sa.exists().where(FailureRow.run_key == RunRow.run_key, FailureRow.mode == str(wanted.failed)))
     clauses += [_holds(ComponentRow, material) for material in wanted.components]
     clauses += [_holds(SolventRow, material) for material in wanted.solvents]
     return statement.where(*clauses).order_by(*_order(sort, descending))
 
 
 def _holds(row_class: type[ComponentRow] | type[SolventRow], material: Material) -> sa.ColumnElement[bool]:
-    same: list[sa.ColumnElement[bool]] = [
-        sa.func.lower(row_class.name).in_([n.lower() for n in material.names])
-    ]
+    same: list[sa.ColumnElement[bool]] = [sa.func.lower(row_class.name).in_([n.lower() for n in material.names])]
     if material.smiles is not None:
         same.append(row_class.smiles == material.smiles)
     clauses: list[sa.ColumnElement[bool]] = [row_class.run_key == RunRow.run_key, sa.or_(*same)]
@@ -183,15 +179,12 @@ def load(connection: sa.Connection, run_keys: Sequence[int]) -> list[Run]:
             of_run: dict[int, list[Any]] = {}
             columns = table(child)
             statement = sa.select(columns).where(columns.c.run_key.in_(chunk))
-            for row in connection.execute(
-                statement.order_by(columns.c.run_key, columns.c.position)
-            ).mappings():
+            statement = statement.order_by(columns.c.run_key, columns.c.position)
+            for row in connection.execute(statement).mappings().all():
                 of_run.setdefault(row["run_key"], []).append(row)
             children.append(of_run)
         for row in rows:
-            loaded[row["run_key"]] = run_from_rows(
-                row, [of_run.get(row["run_key"], ()) for of_run in children]
-            )
+            loaded[row["run_key"]] = run_from_rows(row, [of_run.get(row["run_key"], ()) for of_run in children])
     return [loaded[key] for key in run_keys if key in loaded]
 
 
@@ -207,9 +200,7 @@ def keys_of(connection: sa.Connection, run_ids: Iterable[UUID]) -> dict[UUID, in
     found: dict[UUID, int] = {}
     for start in range(0, len(wanted), 10_000):
         chunk = wanted[start : start + 10_000]
-        for row in connection.execute(
-            sa.select(RunRow.run_id, RunRow.run_key).where(RunRow.run_id.in_(chunk))
-        ):
+        for row in connection.execute(sa.select(RunRow.run_id, RunRow.run_key).where(RunRow.run_id.in_(chunk))):
             found[row[0]] = row[1]
     return found
 

@@ -25,7 +25,7 @@ from kb.errors import SchemaBehind, SchemaTooNew, StoreDamaged, StoreError, Stor
 from kb.store import copying, words
 from kb.store import engine as engines
 from kb.store.engine import Address, translated
-from kb.store.history import TIP
+from kb.store.history import TIP, note_event
 from kb.store.mapping import table
 from kb.store.rows import SCHEMA_HEAD, SCHEMA_REVISIONS, MetaRow, Row
 from kb.store.session import BOOK_ID, CHANGES, CREATED_AT, utc_now
@@ -79,6 +79,7 @@ def _lay_out(connection: sa.Connection) -> None:
     words.create(connection)
     facts = {BOOK_ID: uuid4().hex, CREATED_AT: utc_now().isoformat(), CHANGES: "0", TIP: ""}
     connection.execute(sa.insert(table(MetaRow)), [{"name": n, "value": v} for n, v in facts.items()])
+    note_event(connection, utc_now(), "", "made", f"An empty book of form {SCHEMA_HEAD}.")
     connection.exec_driver_sql(
         "CREATE TABLE alembic_version (version_num VARCHAR(32) NOT NULL, "
         "CONSTRAINT alembic_version_pkc PRIMARY KEY (version_num))"
@@ -191,6 +192,8 @@ def upgrade(address: Address, *, backup: bool = True) -> Upgraded | None:
     engine = _raw_engine(address, read_only=False, wait_s=5.0)
     try:
         run_revisions(engine, address)
+        with engines.writing(engine, address) as connection:
+            note_event(connection, utc_now(), "", "migrated", f"From form {before} to form {SCHEMA_HEAD}.")
     finally:
         engine.dispose()
     return Upgraded(before=before, after=SCHEMA_HEAD, copy=copied)

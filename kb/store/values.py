@@ -236,6 +236,23 @@ class Draft:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Event:
+    """Something that was done to the book as a whole.
+
+    Attributes:
+        at: UTC moment.
+        who: initials; "" where nobody was named (making, migrating).
+        action: made, migrated or merged.
+        detail: a plain sentence.
+    """
+
+    at: dt.datetime
+    who: str
+    action: str
+    detail: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Check:
     """One check of `verify`: its name, whether it held, and a plain sentence."""
 

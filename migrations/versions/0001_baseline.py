@@ -50,6 +50,7 @@ TABLES = (
     "meta",
     "house_rule",
     "draft",
+    "event",
     "attachment_blob",
     "acknowledgement",
 )
@@ -82,6 +83,15 @@ def upgrade() -> None:
         sa.Column("updated_at", sa.DateTime(timezone=True), nullable=False),
         sa.Column("content", sa.Text(), nullable=False),
         sa.PrimaryKeyConstraint("draft_id", name="pk_draft"),
+    )
+    op.create_table(
+        "event",
+        sa.Column("event_id", sa.Integer(), nullable=False),
+        sa.Column("at", sa.DateTime(timezone=True), nullable=False),
+        sa.Column("who", sa.Text(), nullable=False),
+        sa.Column("action", sa.Text(), nullable=False),
+        sa.Column("detail", sa.Text(), nullable=False),
+        sa.PrimaryKeyConstraint("event_id", name="pk_event"),
     )
     op.create_table(
         "house_rule",

@@ -167,4 +167,5 @@ def test_killed_300_times_nothing_acknowledged_is_lost(tmp_path: Path) -> None:
     killer = Killer(tmp_path, seed=12)
     for deed in ("record", "take_in", "merge_in", "back_up", "migrate") * 60:
         killer.kill_once(deed)
+    assert killer.landed >= 150
     killer.finish()

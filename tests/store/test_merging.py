@@ -65,7 +65,11 @@ def test_runs_of_both_are_in_the_merged_book_once(tmp_path: Path) -> None:
         assert report.conflicts == () and report.renamed == ()
         assert group.get(away.run_id) == away
         assert [e.who for e in group.history("1")] == ["MK", "TB"]
+        made, merged = group.events()
+        assert (made.action, merged.action, merged.who) == ("made", "merged", "MK")
+        assert "1 runs added, 1 changed" in merged.detail
         again = merge(group, path_of(laptop), who="MK")
+        assert len(group.events()) == 2
         assert (again.added, again.updated, again.same) == (0, 0, 4)
         assert [hit.code for hit in group.words("weighed")] == ["R-0001"]
         assert len(group.derived_columns()["code"]) == 4

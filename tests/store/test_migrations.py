@@ -140,6 +140,8 @@ def test_migrating_keeps_parents_and_children(tmp_path: Path, monkeypatch: pytes
     done = schema.upgrade(parse_address(book))
     assert done is not None and (done.before, done.after) == ("0001", "0002")
     after = contents_of(book)
+    assert [row[3] for row in after["event"]] == ["made", "migrated"]
+    assert after.pop("event")[:1] == before.pop("event")
     assert [row[:-1] for row in after.pop("run")] == before.pop("run")
     assert after == before
     assert schema.upgrade(parse_address(book)) is None

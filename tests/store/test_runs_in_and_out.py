@@ -31,7 +31,7 @@ def test_a_run_comes_back_equal_with_code_and_moment(tmp_path: Path) -> None:
 
 
 @given(run=runs())
-@hypothesis_settings(max_examples=60)
+@hypothesis_settings(max_examples=25)
 def test_any_run_is_kept_to_the_letter(run: Run, tmp_path_factory: pytest.TempPathFactory) -> None:
     with a_book(tmp_path_factory.mktemp("book")) as store:
         stored = store.add(run, "MK")

@@ -68,7 +68,7 @@ def test_no_word_is_refused(store: Store, words: str) -> None:
 
 
 @given(words=st.text(max_size=40))
-@hypothesis_settings(max_examples=150)
+@hypothesis_settings(max_examples=80)
 def test_no_text_is_an_operator_or_an_error(words: str, tmp_path_factory: pytest.TempPathFactory) -> None:
     folder = tmp_path_factory.getbasetemp() / "operators"
     if not (folder / "book.sidepath").exists():
