@@ -1,0 +1,347 @@
+"""The ledger of a route: cumulative yield, what must go in, the weakest step, and what improving it would buy.
+
+It owns the arithmetic, twice. *Closed form*: yields of different steps are independent, so the mean of their product is the
+product of their means, and ln of the product has variance sum ln(1 + cv^2); its 80 % interval is that of a lognormal.
+*Monte Carlo*: each yield is a Beta with the same mean and standard deviation, drawn from a fixed seed; it knows that
+no yield passes 100 %, so it is the one shown. The two means agree within the sampling error (tested). Independence is an
+assumption: one bad bottle used in five steps breaks it.
+
+A step whose poor yield the chemist has forgiven is no weakness, and is left out of the yield that counts. Where
+prices are given, weakness is reckoned in money instead.
+"""
+
+from __future__ import annotations
+
+import dataclasses
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from kb.errors import RecordNotFound
+from kb.record.finding import Interval
+from kb.route.sequence import Z80, Material, Route, Step, StepYield
+
+DRAWS = 20_000
+SEED = 20
+GOOD_PCT = 80.0
+"""The yield that a weak step is imagined to reach; a step that has it is imagined ten points better. A judgement."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Need:
+    """How much of one material goes in.
+
+    Attributes:
+        mmol: at the mean yields. low, high: 80 % interval of what it takes [mmol].
+        grams: at the mean yields; None = molar mass not known. cost: None = no price.
+    """
+
+    material: str
+    mmol: float
+    low: float
+    high: float
+    grams: float | None
+    cost: float | None
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return plain JSON values."""
+        return {name: getattr(self, name) for name in self.__slots__}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Improvement:
+    """What a better yield in one step would buy.
+
+    Attributes:
+        at_pct: the yield imagined.
+        needed_mmol, needed_g: of the main starting material then.
+        saves: of `unit` over the whole route.
+        unit: "mmol", "g" of all starting materials, or money.
+    """
+
+    step: str
+    at_pct: float
+    needed_mmol: float
+    needed_g: float | None
+    saves: float
+    unit: str
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return plain JSON values."""
+        return {name: getattr(self, name) for name in self.__slots__}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Entry:
+    """One step in the ledger.
+
+    Attributes:
+        input_mmol, product_mmol: of the main line, at the mean yields.
+        so_far_pct: cumulative yield along its own line [%], at the mean yields.
+        improvement: None = the yield cannot be bettered.
+    """
+
+    step: Step
+    input_mmol: float
+    product_mmol: float
+    so_far_pct: float
+    improvement: Improvement | None
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return plain JSON values."""
+        step = self.step
+        return {
+            "name": step.name,
+            "from": [{"name": i.name, "equiv": i.equiv} for i in step.inputs],
+            "yield_pct": step.yield_pct.pct.as_dict(),
+            "basis": step.yield_pct.basis,
+            "runs": list(step.yield_pct.runs),
+            "note": step.yield_pct.note,
+            "forgiven": list(step.forgiven),
+            "findings": [{"severity": s, "title": t} for s, t in step.findings],
+            "input_mmol": self.input_mmol,
+            "product_mmol": self.product_mmol,
+            "so_far_pct": self.so_far_pct,
+            "if_better": self.improvement.as_dict() if self.improvement else None,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Ledger:
+    """A route, reckoned.
+
+    Attributes:
+        entries: in the order of the steps.
+        overall_pct: along the main line, by Monte Carlo [%].
+        closed_form_pct: the same in closed form [%].
+        sampling_error_pct: standard error of the Monte Carlo mean [%].
+        counted_pct: mean over the main line with forgiven steps left out [%]; None = none is forgiven.
+        target_mmol: wanted of the product; 1 where none was said.
+        needed: main starting material first.
+        cost: of all priced materials and steps, at the mean yields; None = nothing has a price.
+        weakest: the improvement that would buy most; None = every step is forgiven or perfect.
+        reckoned_in: "mmol", "g" or the word for money.
+    """
+
+    route: Route
+    entries: tuple[Entry, ...]
+    overall_pct: Interval
+    closed_form_pct: Interval
+    sampling_error_pct: float
+    counted_pct: float | None
+    target_mmol: float
+    needed: tuple[Need, ...]
+    cost: float | None
+    weakest: Improvement | None
+    reckoned_in: str
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return the contract's JSON object."""
+        first = self.needed[0]
+        return {
+            "title": self.route.title,
+            "steps": [e.as_dict() for e in self.entries],
+            "overall_yield_pct": self.overall_pct.as_dict(),
+            "closed_form_yield_pct": self.closed_form_pct.as_dict(),
+            "sampling_error_pct": self.sampling_error_pct,
+            "counted_yield_pct": self.counted_pct,
+            "level": 0.8,
+            "target_mmol": self.target_mmol,
+            "needed_mmol": first.mmol,
+            "needed": [n.as_dict() for n in self.needed],
+            "cost": self.cost,
+            "money": self.route.money,
+            "reckoned_in": self.reckoned_in,
+            "weakest": self.weakest.as_dict() if self.weakest else None,
+        }
+
+
+def reckon(route: Route, draws: int = DRAWS, seed: int = SEED) -> Ledger:
+    """Reckon a route.
+
+    Args:
+        draws: of the Monte Carlo.
+        seed: fixed, so that a page shows the same figures twice.
+    """
+    means = {step.name: step.yield_pct.mean for step in route.steps}
+    drawn = {step.name: draw_yields(step.yield_pct, draws, seed + place) for place, step in enumerate(route.steps)}
+    target = route.target_mmol or 1.0
+    overall = np.prod([drawn[step.name] for step in route.main_line], axis=0)
+    inputs, materials = demand(route, means, target)
+    sampled = demand(route, drawn, target)[1]
+    needed = tuple(_need(route, name, materials[name], sampled[name]) for name in _main_first(route, materials))
+    value, unit = _value(route, inputs, materials)
+    entries = tuple(_entry(route, step, means, inputs, target, (value, unit)) for step in route.steps)
+    open_steps = [e.improvement for e in entries if e.improvement is not None and not e.step.forgiven]
+    counted = [s.yield_pct.mean for s in route.main_line if not s.forgiven]
+    return Ledger(
+        route=route,
+        entries=entries,
+        overall_pct=_interval(overall),
+        closed_form_pct=closed_form(route.main_line),
+        sampling_error_pct=float(np.std(overall) / math.sqrt(draws) * 100),
+        counted_pct=round(100 * math.prod(counted), 4) if len(counted) < len(route.main_line) else None,
+        target_mmol=target,
+        needed=needed,
+        cost=_cost(route, inputs, materials),
+        weakest=max(open_steps, key=lambda i: i.saves, default=None),
+        reckoned_in=unit,
+    )
+
+
+def with_yield(route: Route, step: str, pct: float) -> Route:
+    """Return the route with one step's yield taken as exactly `pct` [%].
+
+    Raises:
+        RecordNotFound: no step has that name.
+    """
+    if step not in {s.name for s in route.steps}:
+        raise RecordNotFound(
+            f"The route has no step {step!r}.", f"Its steps: {', '.join(s.name for s in route.steps)}.", step
+        )
+    imagined = StepYield(pct=Interval(mean=pct, low=pct, high=pct), basis="given", note="what if")
+    steps = [dataclasses.replace(s, yield_pct=imagined) if s.name == step else s for s in route.steps]
+    return dataclasses.replace(route, steps=tuple(steps))
+
+
+def draw_yields(step_yield: StepYield, draws: int, seed: int) -> NDArray[np.float64]:
+    """Return drawn yields (draws) as fractions: Beta with the step's mean and standard deviation."""
+    mean, sd = step_yield.mean, step_yield.sd
+    if sd < 1e-9:
+        return np.full(draws, mean)
+    size = mean * (1 - mean) / sd**2 - 1
+    rng = np.random.default_rng(seed)
+    return np.maximum(rng.beta(mean * size, (1 - mean) * size, draws), 1e-6)
+
+
+def closed_form(line: tuple[Step, ...]) -> Interval:
+    """Return the overall yield of a line of steps [%] as product of means with a lognormal 80 % interval."""
+    mean = math.prod(step.yield_pct.mean for step in line)
+    variance = sum(math.log1p((step.yield_pct.sd / step.yield_pct.mean) ** 2) for step in line)
+    middle, half = math.log(mean) - variance / 2, Z80 * math.sqrt(variance)
+    return Interval(
+        mean=_pct(mean), low=_pct(min(math.exp(middle - half), mean)), high=_pct(min(max(math.exp(middle + half), mean), 1.0))
+    )
+
+
+def demand(route: Route, yields: Mapping[str, Any], target_mmol: float) -> tuple[dict[str, Any], dict[str, Any]]:
+    """Work back from the target.
+
+    Args:
+        yields: fraction (or array of draws) per step.
+
+    Returns:
+        Main input per step [mmol], and amount per material [mmol].
+    """
+    wanted: dict[str, Any] = {route.steps[-1].name: target_mmol}
+    inputs: dict[str, Any] = {}
+    for step in reversed(route.steps):
+        inputs[step.name] = wanted[step.name] / yields[step.name]
+        for one in step.inputs:
+            wanted[one.name] = wanted.get(one.name, 0.0) + inputs[step.name] * one.equiv
+    return inputs, {m.name: wanted[m.name] for m in route.materials if m.name in wanted}
+
+
+def _entry(
+    route: Route,
+    step: Step,
+    means: Mapping[str, float],
+    inputs: Mapping[str, float],
+    target: float,
+    now: tuple[float, str],
+) -> Entry:
+    mean = means[step.name]
+    better = max(GOOD_PCT / 100, min(mean + 0.1, 0.99))
+    improvement = None
+    if better > mean:
+        changed = demand(route, {**means, step.name: better}, target)
+        main = _main_first(route, changed[1])[0]
+        material = _material(route, main)
+        mmol = float(changed[1][main])
+        improvement = Improvement(
+            step=step.name,
+            at_pct=round(100 * better, 1),
+            needed_mmol=_figure(mmol),
+            needed_g=_grams(material, mmol),
+            saves=_figure(now[0] - _value(route, *changed)[0]),
+            unit=now[1],
+        )
+    return Entry(
+        step=step,
+        input_mmol=_figure(inputs[step.name]),
+        product_mmol=_figure(inputs[step.name] * mean),
+        so_far_pct=_pct(_so_far(route, step, means)),
+        improvement=improvement,
+    )
+
+
+def _so_far(route: Route, step: Step, means: Mapping[str, float]) -> float:
+    by_name = {s.name: s for s in route.steps}
+    total, at = 1.0, by_name.get(step.name)
+    while at is not None:
+        total *= means[at.name]
+        at = by_name.get(at.inputs[0].name)
+    return total
+
+
+def _value(route: Route, inputs: Mapping[str, float], materials: Mapping[str, float]) -> tuple[float, str]:
+    """Return what a route takes, in money where anything has a price, else in grams, else in mmol of all materials."""
+    cost = _cost(route, inputs, materials)
+    if cost is not None:
+        return cost, route.money or "money"
+    masses = [_material(route, name).molar_mass for name in materials]
+    if all(m is not None for m in masses):
+        return sum(mmol * (m or 0) / 1000 for mmol, m in zip(materials.values(), masses, strict=True)), "g"
+    return sum(materials.values()), "mmol"
+
+
+def _cost(route: Route, inputs: Mapping[str, float], materials: Mapping[str, float]) -> float | None:
+    prices = {name: _material(route, name).price_per_mmol for name in materials}
+    parts = [mmol * price for name, mmol in materials.items() if (price := prices[name]) is not None]
+    parts += [inputs[s.name] * s.cost_per_mmol for s in route.steps if s.cost_per_mmol is not None]
+    return _figure(sum(parts)) if parts else None
+
+
+def _need(route: Route, name: str, mmol: float, sampled: NDArray[np.float64] | float) -> Need:
+    material = _material(route, name)
+    low, high = (float(q) for q in np.quantile(sampled, [0.1, 0.9]))
+    price = material.price_per_mmol
+    return Need(
+        material=name,
+        mmol=_figure(mmol),
+        low=_figure(min(low, mmol)),
+        high=_figure(max(high, mmol)),
+        grams=_grams(material, mmol),
+        cost=_figure(mmol * price) if price is not None else None,
+    )
+
+
+def _main_first(route: Route, materials: Mapping[str, Any]) -> list[str]:
+    main = route.main_line[0].inputs[0].name
+    return [main, *(name for name in materials if name != main)]
+
+
+def _material(route: Route, name: str) -> Material:
+    return next(m for m in route.materials if m.name == name)
+
+
+def _grams(material: Material, mmol: float) -> float | None:
+    return _figure(mmol * material.molar_mass / 1000) if material.molar_mass is not None else None
+
+
+def _interval(drawn: NDArray[np.float64]) -> Interval:
+    low, high = np.quantile(drawn, [0.1, 0.9])
+    mean = float(drawn.mean())
+    return Interval(mean=_pct(mean), low=_pct(min(float(low), mean)), high=_pct(max(float(high), mean)))
+
+
+def _pct(share: float) -> float:
+    return float(f"{100 * share:.4g}")
+
+
+def _figure(value: float) -> float:
+    return float(f"{float(value):.5g}")
