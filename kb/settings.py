@@ -131,7 +131,7 @@ def _apply(
         if key not in FIELDS:
             near = difflib.get_close_matches(key, FIELDS, n=1)
             hint = f"Did you mean {shown(near[0])}?" if near else f"Settings: {', '.join(map(shown, FIELDS))}."
-            raise SettingsError(f"There is no setting {ascii(shown(key))[1:61]} (in {place}).", hint, key)
+            raise SettingsError(f"There is no setting {ascii(shown(key))[1:-1][:60]} (in {place}).", hint, key)
         field, read, wanted = FIELDS[key]
         try:
             settings = replace(settings, **{field: read(value)})

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import glob
 import importlib.util
 import sys
@@ -37,12 +38,12 @@ def build_demo(book: str | None, progress: Progress) -> tuple[Path, bool]:
     if book is not None and "://" in book and not book.startswith("sqlite:///"):
         raise StoreRefused("The demo book is a file.", "Give --book a path.", book)
     target = Path(book.removeprefix("sqlite:///")).expanduser() if book else paths.demo_book()
-    if target.exists():
-        _bring_up_to_date(target, progress)
-        return target, False
     tame_rdkit()
     half_built = target.with_name(target.name + ".building")
     try:
+        if target.exists():
+            _bring_up_to_date(target, progress)
+            return target, False
         if book is None:
             target.parent.mkdir(parents=True, exist_ok=True)
         _build(half_built, progress)
@@ -51,10 +52,15 @@ def build_demo(book: str | None, progress: Progress) -> tuple[Path, bool]:
         why = error.strerror or str(error)
         raise StoreRefused(f"The demo book cannot be made at {target}: {why}.", "Give --book PATH.", target) from error
     finally:
-        if target.parent.is_dir():
-            for left_over in target.parent.glob(glob.escape(half_built.name) + "*"):
-                left_over.unlink(missing_ok=True)
+        _remove(half_built)
     return target, True
+
+
+def _remove(half_built: Path) -> None:
+    """Remove what a build that was stopped left behind, its log included; what cannot be removed stays."""
+    with contextlib.suppress(OSError):
+        for left_over in half_built.parent.glob(glob.escape(half_built.name) + "*"):
+            left_over.unlink(missing_ok=True)
 
 
 def _build(place: Path, progress: Progress) -> None:

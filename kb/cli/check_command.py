@@ -23,7 +23,7 @@ from kb.cli.conditions import (
     WithFlag,
     parse_conditions,
 )
-from kb.cli.session import Session, current_session
+from kb.cli.session import Session, current_session, put
 from kb.errors import StoreMissing, StructureError
 from kb.plain import plain
 from kb.record.plan import Plan
@@ -53,7 +53,7 @@ def check(
     atmosphere: AtmosphereFlag = None,
     top: Annotated[
         Optional[int],  # noqa: UP045 - read at run time
-        typer.Option("--top", min=0, max=200, help="How many precedents; by the settings, else 5."),
+        typer.Option("--top", metavar="N", min=0, max=200, help="How many precedents; by the settings, else 5."),
     ] = None,
     fail_on: Annotated[
         Optional[Severity],  # noqa: UP045 - read at run time
@@ -108,7 +108,7 @@ def demo() -> None:
         count = book.count()
     show_assessment(session, assessment)
     if not session.as_json:
-        typer.echo(
+        put(
             f"\nChecked against {count} invented runs. Open the book in the terminal interface with\n"
             f"  sidepath --book {plain(shlex.quote(str(path)))} tui"
         )
@@ -121,4 +121,4 @@ def show_assessment(session: Session, assessment: Assessment) -> None:
     if session.as_json:
         session.print_json(assessment.as_dict())
     else:
-        typer.echo(render_assessment(assessment, verbose=session.verbose))
+        put(render_assessment(assessment, verbose=session.verbose))

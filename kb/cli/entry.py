@@ -10,12 +10,13 @@ import os
 import re
 import sys
 from collections.abc import Sequence
+from pathlib import Path
 from typing import Any
 
 import typer
 
 from kb.cli import exit_codes
-from kb.cli.session import complain, json_line
+from kb.cli.session import STDOUT, complain, json_line
 from kb.errors import SidepathError
 
 # Typer carries its own copy of the library under it, or an installed one, by version; these are its bases either way.
@@ -44,9 +45,7 @@ def main(argv: Sequence[str] | None = None) -> None:
     Args:
         argv: arguments without the program's name; None = sys.argv.
     """
-    for stream in (sys.stdout, sys.stderr):
-        if hasattr(stream, "reconfigure"):
-            stream.reconfigure(errors="replace")  # a note may hold what this terminal's encoding does not
+    _settle_streams()
     code = run(sys.argv[1:] if argv is None else list(argv))
     try:
         sys.stdout.flush()
@@ -83,9 +82,13 @@ def run(argv: Sequence[str]) -> int:
     except BrokenPipeError as error:
         return _after_failed_output(error, exit_codes.DONE)
     except OSError as error:
+        if error.filename == STDOUT:
+            return _after_failed_output(error, exit_codes.REFUSED)
+        is_full = error.errno in _DISK_FULL
         message = f"{error.strerror or error}{f': {error.filename}' if error.filename else ''}."
-        _complain({"code": "system", "message": message, "hint": "Check the path and the permissions."}, as_json)
-        return exit_codes.BOOK_TROUBLE if error.errno in _DISK_FULL else exit_codes.REFUSED
+        hint = "Make room." if is_full else "Check the path and the permissions."
+        _complain({"code": "system", "message": message, "hint": hint}, as_json)
+        return exit_codes.BOOK_TROUBLE if is_full else exit_codes.REFUSED
     except Exception as error:  # noqa: BLE001 - the last door: a fault of ours must not fall on a chemist as a traceback
         return _own_fault(error, as_json, is_verbose)
 
@@ -120,6 +123,16 @@ def _parted(argv: Sequence[str]) -> tuple[list[str], list[str]]:
         else:
             rest.append(word)
     return front, rest
+
+
+def _settle_streams() -> None:
+    """Give the streams that a caller closed somewhere to go, and let the others take any character."""
+    for name, mode in (("stdin", "r"), ("stdout", "w"), ("stderr", "w")):
+        stream = getattr(sys, name)
+        if stream is None:
+            setattr(sys, name, Path(os.devnull).open(mode, encoding="utf-8"))  # noqa: SIM115 - for the whole run
+        elif mode == "w" and hasattr(stream, "reconfigure"):
+            stream.reconfigure(errors="replace")  # a note may hold what this terminal's encoding does not
 
 
 def _complain(error: dict[str, str], as_json: bool) -> None:

@@ -8,7 +8,7 @@ import typer
 
 from kb.cli.look_commands import LAST_PAGE
 from kb.cli.render import counted, table, wrapped
-from kb.cli.session import current_session
+from kb.cli.session import current_session, put
 from kb.plain import excerpt
 from kb.vocabulary import CarbonClass, LeavingGroup, Verdict
 
@@ -23,7 +23,9 @@ def register(app: typer.Typer) -> None:
 def find(
     substructure: Annotated[Word, typer.Option("--substructure", metavar="SMARTS", help="What it holds.")] = None,
     similar: Annotated[Word, typer.Option("--similar", metavar="SMILES", help="What it is like; best first.")] = None,
-    at_least: Annotated[float, typer.Option("--at-least", min=0, max=1, help="Least Tanimoto of --similar.")] = 0.4,
+    at_least: Annotated[
+        float, typer.Option("--at-least", metavar="T", min=0, max=1, help="Least Tanimoto of --similar.")
+    ] = 0.4,
     exact: Annotated[Word, typer.Option("--exact", metavar="SMILES", help="The very structure.")] = None,
     transformation: Annotated[
         Word, typer.Option("--transformation", metavar="SMARTS>>SMARTS", help="What becomes of what.")
@@ -36,11 +38,17 @@ def find(
     temp_to: Annotated[Word, typer.Option("--temp-to", metavar="T", help="At most this hot.")] = None,
     failed: Annotated[Word, typer.Option("--failed", metavar="MODE", help="How it failed.")] = None,
     verdict: Annotated[Optional[Verdict], typer.Option("--verdict")] = None,  # noqa: UP045
-    carbon_class: Annotated[Optional[CarbonClass], typer.Option("--carbon-class")] = None,  # noqa: UP045
-    leaving_group: Annotated[Optional[LeavingGroup], typer.Option("--leaving-group")] = None,  # noqa: UP045
+    carbon_class: Annotated[
+        Optional[CarbonClass],  # noqa: UP045
+        typer.Option("--carbon-class", metavar="WORD", help="primary, tertiary, aryl..."),
+    ] = None,
+    leaving_group: Annotated[
+        Optional[LeavingGroup],  # noqa: UP045
+        typer.Option("--leaving-group", metavar="WORD", help="bromide, mesylate, epoxide..."),
+    ] = None,
     since: Annotated[Word, typer.Option("--since", metavar="YYYY-MM-DD", help="Run on or after this day.")] = None,
-    limit: Annotated[int, typer.Option(min=1, max=1000, help="Runs on a page.")] = 20,
-    page: Annotated[int, typer.Option(min=1, max=LAST_PAGE)] = 1,
+    limit: Annotated[int, typer.Option(metavar="N", min=1, max=1000, help="Runs on a page.")] = 20,
+    page: Annotated[int, typer.Option(metavar="N", min=1, max=LAST_PAGE)] = 1,
 ) -> None:
     """Find runs; every option given must hold."""
     from kb.book import criteria_from_words
@@ -75,7 +83,7 @@ def find(
     for remark in result.notes:
         session.say(excerpt(remark, 200))
     if not result.items:
-        typer.echo("No run fits." if result.total == 0 else f"No run on this page; {result.total} fit.")
+        put("No run fits." if result.total == 0 else f"No run on this page; {result.total} fit.")
         return
     if any(item.score is not None for item in result.items):
         scored = [(i.run, "" if i.score is None else f"{i.score:.2f}", *lines[i.run]) for i in result.items]
@@ -84,6 +92,6 @@ def find(
         text = table([(i.run, *lines[i.run]) for i in result.items], ("run", "date", "verdict", "what"), (7, 10, 7, 50))
     first = (page - 1) * limit
     shown = f"{first + 1} to {first + len(result.items)} of {counted(result.total, 'run')}"
-    typer.echo("\n".join([*text, f"{shown}, {result.elapsed_ms:.0f} ms"]))
+    put("\n".join([*text, f"{shown}, {result.elapsed_ms:.0f} ms"]))
     if not result.complete:
         session.say("\n".join(wrapped("The search was stopped at its deadline: this is only part of the answer.")))

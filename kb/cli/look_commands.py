@@ -91,8 +91,8 @@ def _read_batch(path: str, column: str, *, ignore_maps: bool) -> int:
 
 
 def runs(
-    limit: Annotated[int, typer.Option(min=1, max=1000, help="Runs on a page.")] = 30,
-    page: Annotated[int, typer.Option(min=1, max=LAST_PAGE)] = 1,
+    limit: Annotated[int, typer.Option(metavar="N", min=1, max=1000, help="Runs on a page.")] = 30,
+    page: Annotated[int, typer.Option(metavar="N", min=1, max=LAST_PAGE)] = 1,
     sort: Annotated[SortWord, typer.Option(help="Latest or highest first.")] = SortWord.DATE,
     withdrawn: Annotated[bool, typer.Option("--withdrawn", help="Also the withdrawn ones.")] = False,
 ) -> None:

@@ -24,7 +24,7 @@ from kb.cli.conditions import (
 )
 from kb.cli.render import wrapped
 from kb.cli.render_run import change_words, render_run
-from kb.cli.session import Session, current_session
+from kb.cli.session import Session, current_session, put
 from kb.errors import ImportFileError, RecordConflict, SidepathError
 from kb.plain import excerpt
 from kb.record.run import Run
@@ -197,9 +197,9 @@ def _store(session: Session, runs: Sequence[Run]) -> None:
     if session.as_json:
         session.print_json(_as_dict(stored[0]) if len(stored) == 1 else [_as_dict(r) for r in stored])
     elif len(stored) > MANY:
-        typer.echo(f"{len(stored)} runs recorded, {stored[0].code} to {stored[-1].code}.")
+        put(f"{len(stored)} runs recorded, {stored[0].code} to {stored[-1].code}.")
     else:
-        typer.echo("\n\n".join(_recorded(run, words) for run, words in zip(stored, readings, strict=True)))
+        put("\n\n".join(_recorded(run, words) for run, words in zip(stored, readings, strict=True)))
 
 
 def _recorded(run: Run, reading: str) -> str:

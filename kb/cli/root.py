@@ -19,6 +19,13 @@ from kb.cli import (
 from kb.cli.session import Session, set_session
 from kb.cli.strict import make_strict
 
+ORDER = (
+    *("demo", "new", "read", "check", "record"),
+    *("runs", "show", "history", "amend", "withdraw", "find", "split", "lookup"),
+    *("import", "export", "merge", "backup", "restore", "verify", "migrate", "tui"),
+)
+"""Commands in the order of a working day; others follow as they are registered."""
+
 app = typer.Typer(
     name="sidepath",
     no_args_is_help=False,
@@ -42,8 +49,12 @@ def root(
     as_json: Annotated[bool, typer.Option("--json", help="Answer in JSON on stdout.")] = False,
     quiet: Annotated[bool, typer.Option("--quiet", "-q", help="Only results and errors.")] = False,
     verbose: Annotated[bool, typer.Option("--verbose", "-v", help="More detail, with sources.")] = False,
+    version: Annotated[bool, typer.Option("--version", help="Say which version this is.")] = False,
 ) -> None:
     """Sidepath."""
+    if version:
+        typer.echo(f"sidepath {_version()}")
+        raise typer.Exit
     session = Session(book=book, who=who, as_json=as_json, quiet=quiet, verbose=verbose)
     set_session(session)
     if ctx.invoked_subcommand is None:
@@ -63,4 +74,15 @@ for _module in (
     split_command,
 ):
     _module.register(app)
+_place = {name: number for number, name in enumerate(ORDER)}
+app.registered_commands.sort(key=lambda command: _place.get(str(command.name), len(ORDER)))
 make_strict(app)
+
+
+def _version() -> str:
+    from importlib.metadata import PackageNotFoundError, version
+
+    try:
+        return version("sidepath")
+    except PackageNotFoundError:
+        return "(from a folder, not installed)"

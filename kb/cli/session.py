@@ -31,6 +31,8 @@ if TYPE_CHECKING:
 LONGEST_MESSAGE = 600
 """Longest message on stderr [characters]; what a person typed may be part of it."""
 LONGEST_INITIALS = 80
+STDOUT = "<stdout>"
+"""What an error names as its file when the answer could not be written."""
 
 
 @dataclass(kw_only=True)
@@ -107,11 +109,11 @@ class Session:
         if self.as_json:
             self.print_json(data)
         elif text:
-            typer.echo(text)
+            put(text)
 
     def print_json(self, data: Any) -> None:
         """Print one JSON value on one line of stdout."""
-        typer.echo(json_line(data))
+        put(json_line(data))
 
     def refuse(self, data: dict[str, Any], error: SidepathError) -> None:
         """Say an error on stderr; with JSON asked also the object on stdout, which has more to tell, with it inside."""
@@ -190,6 +192,21 @@ class BarOnStderr:
     def cancelled(self) -> bool:
         """Return True once Ctrl-C was pressed."""
         return self.stopped
+
+
+def put(text: str) -> None:
+    """Print a line of a result on stdout.
+
+    Raises:
+        OSError: stdout takes no more; its file name is STDOUT, so that nobody blames the book.
+    """
+    try:
+        typer.echo(text)
+    except BrokenPipeError:
+        raise
+    except OSError as error:
+        error.filename = STDOUT
+        raise
 
 
 def json_line(data: Any) -> str:

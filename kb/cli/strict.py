@@ -1,7 +1,8 @@
 """How every command is parsed: a value given but empty is refused, and Ctrl-C becomes an error of the family.
 
 An empty value comes from an unset variable in a script (`--with "$BASE"`); left alone it would silently drop a base
-from a check, or turn a search into "everything".
+from a check, or turn a search into "everything". It also lets the list of commands say the whole first sentence of
+each.
 """
 
 from __future__ import annotations
@@ -51,6 +52,8 @@ def make_strict(app: Typer) -> None:
     """Let every command of an application and of its groups be parsed this way."""
     for command in app.registered_commands:
         command.cls = StrictCommand
+        if command.short_help is None and command.callback is not None:
+            command.short_help = (command.callback.__doc__ or "").strip().split(".\n")[0].split(". ")[0].rstrip(".")
     for group in app.registered_groups:
         if group.typer_instance is not None:
             make_strict(group.typer_instance)
