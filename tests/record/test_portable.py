@@ -6,6 +6,7 @@ import json
 
 import pytest
 from hypothesis import given
+from hypothesis import settings as hypothesis_settings
 
 from kb.errors import InvalidRecord
 from kb.record.portable import run_from_dict, run_to_dict
@@ -15,6 +16,14 @@ from tests.factories import a_run, runs
 
 @given(runs())
 def test_any_run_comes_back_equal_through_json_text(run: Run) -> None:
+    text = json.dumps(run_to_dict(run), ensure_ascii=False, allow_nan=False)
+    assert run_from_dict(json.loads(text)) == run
+
+
+@pytest.mark.soak
+@given(runs())
+@hypothesis_settings(max_examples=5000)
+def test_five_thousand_runs_come_back_equal_through_json_text(run: Run) -> None:
     text = json.dumps(run_to_dict(run), ensure_ascii=False, allow_nan=False)
     assert run_from_dict(json.loads(text)) == run
 
