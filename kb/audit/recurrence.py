@@ -304,7 +304,7 @@ class _Finder:
             meaning=meaning_of(group.mode),
             place=place.words,
             smarts=place.smarts,
-            conditions=_conditions(line),
+            conditions=_conditions(line, self._first(place)),
             runs=tuple(table.codes[r] for r in shown),
             first=dated[0] if dated else None,
             last=dated[-1] if dated else None,
@@ -330,20 +330,20 @@ class _Finder:
             words = np.array([*self.table.nucleophile_words, ""], dtype=object)
             return np.flatnonzero(words[self.table.nucleophile] == place.key[1])
         if place.aspect is Aspect.MEDIUM:
-            return np.flatnonzero(
-                self.profiles.holds(f"solvent in ({place.key[1].replace('-', '_')})", np.arange(len(self.table)))
-            )
+            return np.flatnonzero(self.profiles.holds(self._first(place), np.arange(len(self.table))))
         return np.asarray(self.view.rows_with_motif(place.smarts), dtype=np.intp)
 
     def _line(self, group: _Group, members: NDArray[np.intp], successes: NDArray[np.intp]) -> Line | None:
-        first = ""
         if group.place.aspect is Aspect.HAND:
             return None
-        if group.place.aspect is Aspect.PARTNER:
-            first = f"nucleophile_class == {group.place.key[1]}"
-        elif group.place.aspect is Aspect.MEDIUM:
-            first = f"solvent in ({group.place.key[1].replace('-', '_')})"
+        first = self._first(group.place)
         return propose_line(self.profiles, members, successes, first, group.mode in _NOTHING_HAPPENED)
+
+    def _first(self, place: Place) -> str:
+        """Return the test that a place itself is told by, where it lies in the flask; "" = in the substrate."""
+        if place.aspect is Aspect.PARTNER:
+            return f"nucleophile_class == {place.key[1]}"
+        return f"solvent in ({place.key[1].replace('-', '_')})" if place.aspect is Aspect.MEDIUM else ""
 
     def _proposal(self, group: _Group, line: Line, rows: Sequence[int]) -> Proposal:
         codes = [self.table.codes[r] for r in rows]
@@ -418,9 +418,10 @@ class _Finder:
         return smiles, atoms
 
 
-def _conditions(line: Line | None) -> str:
-    """Return a line in plain words, without the sentence round it."""
-    if line is None:
+def _conditions(line: Line | None, first: str) -> str:
+    """Return a line in plain words, without the sentence round it and without what the place says already."""
+    text = line.text.removeprefix(first).removeprefix(" and ") if line is not None else ""
+    if not text:
         return ""
-    said = parse_predicate(line.text).as_sentence()
+    said = parse_predicate(text).as_sentence()
     return said.removeprefix("Applies when ").removesuffix(".").removesuffix(" (numbers are judged limits)")
