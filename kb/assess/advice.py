@@ -1,104 +1,205 @@
-"""The change most likely to help: matched pairs from the record.
+"""The change most likely to help: matched pairs from the record, and published trends over what the group has used.
 
-It owns the pairing. Two runs form a pair for a change when they share carbon class, leaving group and nucleophile
-class, one stands where the plan stands in the condition that changes and the other where the change would take it, and
-nothing else that is recorded differs much (kernel parts at least `ALIKE`). Each pair gives a difference in the share
-wanted; the effect is their mean with an 80 % interval that also carries a prior scatter, so that two lucky pairs do
-not look like a law. Published trends are added by the caller.
+It owns the ranking and the refusals. A change is measured by pairs of runs where the record has them
+(`advice_pairs.py`), else by what published rates say (`kb.physorg.what_if`), and is labelled for what it is. Never
+advised: a change that raises a serious finding which the plan does not have, found by making the findings anew for
+the changed plan against the runs nearest to it; a change after which published rates expect the step to stall.
 """
 
 from __future__ import annotations
 
-from collections import defaultdict
-from collections.abc import Callable, Hashable
+import dataclasses
+from collections.abc import Callable, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
 
-from kb.assess.table import FATES, FactTable
+from kb.assess.advice_options import Option, leaving_group_options, list_options, words_of_rows
+from kb.assess.advice_pairs import Paired, pair_runs
+from kb.assess.published import step_facts
+from kb.assess.published_medium import medium_of
+from kb.assess.record_view import RecordView
+from kb.assess.table import FATES
+from kb.materials.classes import profile_of
+from kb.physorg.step import StepFacts
+from kb.physorg.what_if import Contrast, contrast
 from kb.record.assessment import Advice
-from kb.record.finding import Interval
-from kb.vocabulary import Basis, Fate
+from kb.record.finding import Finding, Interval
+from kb.record.plan import Plan
+from kb.store.derivation import Account
+from kb.vocabulary import Basis, Fate, LeavingGroup, Role, Severity
 
 ALIKE = 0.6
 """Least likeness of each part that is not being changed; judgement."""
-PRIOR_SD = 0.12
-PRIOR_PAIRS = 1.0
+ALIKE_REAGENTS = 0.45
 LEAST_EFFECT = 0.02
-_Z80 = 1.2816  # 90th centile of the normal distribution
-_TEMPERATURE_STEP_K = 20.0
-_PAIRED_PARTS = ("centre", "leaving group", "nucleophile")
+"""Smallest gain in the share wanted that is worth a line."""
+LEAST_TREND = 0.03
+WORST_TREND = -0.10
+"""Low end of a published trend below which it is not advised."""
+NEAR = 600
+"""Runs with a like nucleophile whose conditions are offered."""
+TOP = 4
+MOST_CHECKED = 7
+"""Candidates whose findings are made anew before giving up."""
+SLOWEST = 0.1
+"""Pace after a change below which the step is taken to stall, unless its half-life is still short."""
+OVERNIGHT_H = 16.0
+_PART_OF = {"temperature": "temperature", "solvent": "solvent", "base": "base"}
+_MATCHED = ("centre", "leaving group", "nucleophile", "promoter", "solvent", "temperature", "base")
+
+SeriousOf = Callable[[Plan], frozenset[str]]
 
 
 def advise(
-    plan: FactTable,
-    table: FactTable,
+    plan: Plan,
+    account: Account,
+    view: RecordView,
     parts: dict[str, NDArray[np.float64]],
-    wanted: Fate,
-    names: dict[str, Callable[[int], str | None]],
-    top: int = 3,
+    similarity: NDArray[np.float64],
+    wanted: Fate | None,
+    findings: Sequence[Finding],
+    serious_of: SeriousOf,
 ) -> tuple[Advice, ...]:
-    """Rank single changes by what matched pairs say they do to the wanted share.
+    """Rank single changes by what they are likely to do to the wanted share.
 
     Args:
-        plan: one row.
-        table: the runs (n).
-        parts: likeness of each run to the plan.
-        wanted: the fate whose share should rise.
-        names: condition part ("solvent", "base", "temperature") to a callable giving a row's word for it.
-        top: how many to return.
+        plan, account: as planned.
+        view: the runs (n).
+        parts, similarity: of each run to the plan.
+        wanted: the fate whose share should rise; None = not known, no advice.
+        findings: of the plan as it stands.
+        serious_of: from a changed plan to the ids of its serious findings.
 
     Returns:
         Helpful changes only, best first.
     """
-    column = FATES.index(wanted)
-    share = table.shares[:, column]
-    usable = ~np.isnan(share)
-    for name in _PAIRED_PARTS:
-        usable &= parts[name] >= ALIKE
-    advice = []
-    for what in ("temperature", "base", "solvent"):
-        others = [p for p in ("temperature", "base", "solvent", "promoter") if p != what]
-        rows = usable.copy()
-        for other in others:
-            rows &= parts[other] >= ALIKE
-        groups: dict[Hashable, list[int]] = defaultdict(list)
-        for row in np.flatnonzero(rows):
-            word = names[what](int(row))
-            if word is not None:
-                groups[word].append(int(row))
-        here = names[what](-1)
-        if here is None or here not in groups:
-            continue
-        for word, members in groups.items():
-            if word == here:
-                continue
-            differences = [float(share[m] - share[h]) for m in members for h in groups[here]]
-            pairs = min(len(members), len(groups[here]))
-            effect = _effect(np.array(differences), pairs)
-            if effect.mean >= LEAST_EFFECT:
-                advice.append(
-                    Advice(
-                        change=f"{word} instead of {here}",
-                        effect=effect,
-                        pairs=pairs,
-                        basis=Basis.RECORD,
-                        why=f"{len(members)} runs against {len(groups[here])}, alike in all else that was recorded.",
-                    )
-                )
-    return tuple(sorted(advice, key=lambda a: -a.effect.low - 0.25 * a.effect.mean))[:top]
+    if (
+        wanted is None
+        or wanted in (Fate.UNREACTED, Fate.OTHER)
+        or account.reading.centre is None
+        or not len(view.table)
+    ):
+        return ()
+    like = np.flatnonzero(parts["nucleophile"] >= 0.5)
+    near = like[np.argsort(-similarity[like], kind="stable")][:NEAR]
+    step = _step(account, plan)
+    options = list_options(plan, account.profile, view, near)
+    if step is not None:
+        options += leaving_group_options(plan, account.reading, view)
+    candidates = []
+    for option in options:
+        found = _by_record(option, view, parts, similarity, wanted) or _by_trend(option, account, step, wanted)
+        if found is not None:
+            candidates.append((found, option))
+    candidates.sort(key=lambda pair: -_rank(pair[0]))
+    already = frozenset(_kind(f.rule_id) for f in findings if f.severity is Severity.SERIOUS)
+    advised: list[Advice] = []
+    for found, option in candidates[:MOST_CHECKED]:
+        if {_kind(rule_id) for rule_id in serious_of(option.plan)} <= already:
+            advised.append(found)
+            if len(advised) == TOP:
+                break
+    return tuple(advised)
 
 
-def temperature_band(temperature_c: float | None) -> str | None:
-    """Name a temperature by its band of 20 K, so that 58 and 62 degC pair up."""
-    if temperature_c is None:
+def _rank(advice: Advice) -> float:
+    return advice.effect.low + 0.25 * advice.effect.mean + (0.05 if advice.basis is Basis.RECORD else 0.0)
+
+
+def _kind(rule_id: str) -> str:
+    """Return a finding's id without the run that it is named after."""
+    return rule_id.rsplit(":", 1)[0] if rule_id.startswith("resemblance:") else rule_id
+
+
+def _by_record(
+    option: Option,
+    view: RecordView,
+    parts: dict[str, NDArray[np.float64]],
+    similarity: NDArray[np.float64],
+    wanted: Fate,
+) -> Advice | None:
+    if option.kind not in _PART_OF:
         return None
-    return f"about {_TEMPERATURE_STEP_K * round(temperature_c / _TEMPERATURE_STEP_K):.0f} °C"
+    shares = view.table.shares[:, FATES.index(wanted)]
+    usable = ~np.isnan(shares)
+    for name in _MATCHED:
+        if name != _PART_OF[option.kind]:
+            usable &= parts[name] >= ALIKE
+    if option.kind != "base":
+        usable &= parts["reagents"] >= ALIKE_REAGENTS
+    rows = np.flatnonzero(usable)
+    rows = rows[np.argsort(-similarity[rows], kind="stable")][:NEAR]
+    words = words_of_rows(view, option.kind, rows)
+    sides = [[int(r) for r, w in zip(rows, words, strict=True) if w == word] for word in (option.here, option.word)]
+    paired = pair_runs(view.table, sides[0], sides[1], shares)
+    if paired is None or paired.effect.mean < LEAST_EFFECT:
+        return None
+    return Advice(
+        change=f"{option.word} instead of {option.here}",
+        effect=paired.effect,
+        pairs=len(paired.pairs),
+        basis=Basis.RECORD,
+        why=_pairs_in_words(paired, view),
+    )
 
 
-def _effect(differences: NDArray[np.float64], pairs: int) -> Interval:
-    mean = float(differences.mean()) * pairs / (pairs + PRIOR_PAIRS)
-    spread = float(((differences - differences.mean()) ** 2).mean())
-    variance = (pairs * spread + PRIOR_PAIRS * PRIOR_SD**2) / (pairs + PRIOR_PAIRS) / pairs
-    half = _Z80 * float(np.sqrt(variance))
-    return Interval(mean=round(mean, 3), low=round(max(mean - half, -1), 3), high=round(min(mean + half, 1), 3))
+def _pairs_in_words(paired: Paired, view: RecordView) -> str:
+    codes = view.table.codes
+    named = ", ".join(f"{codes[a]} and {codes[b]}" for a, b in paired.pairs[:3])
+    of_one = f", {paired.same_substrate} of one substrate" if paired.same_substrate else ""
+    pairs = "pair" if len(paired.pairs) == 1 else "pairs"
+    return f"{len(paired.pairs)} {pairs} of runs alike in all else that was compared{of_one}: {named}."
+
+
+def _step(account: Account, plan: Plan) -> StepFacts | None:
+    facts = step_facts(account.reading, account.facts.substrate or "", account.profile, _base_smiles(plan))
+    return None if isinstance(facts, str) else facts
+
+
+def _base_smiles(plan: Plan) -> str | None:
+    return next((c.smiles for c in plan.conditions.components if c.role is Role.BASE and c.smiles), None)
+
+
+def _by_trend(option: Option, account: Account, step: StepFacts | None, wanted: Fate) -> Advice | None:
+    if step is None:
+        return None
+    found = contrast(step, _changed_step(option, account, step), wanted)
+    if found is None or found.effect.mean < LEAST_TREND or found.effect.low < WORST_TREND:
+        return None
+    hours = option.plan.conditions.time.h if option.plan.conditions.time is not None else None
+    if found.pace < SLOWEST and found.half_life_h > max(hours or 0.0, OVERNIGHT_H) / 3:
+        return None
+    effect = found.effect
+    return Advice(
+        change=f"{option.word} instead of {option.here}",
+        effect=Interval(mean=round(effect.mean, 3), low=round(effect.low, 3), high=round(effect.high, 3)),
+        pairs=0,
+        basis=Basis.PUBLISHED,
+        why=_trend_in_words(found),
+    )
+
+
+def _changed_step(option: Option, account: Account, step: StepFacts) -> StepFacts:
+    if option.leaving_group is not None:
+        return dataclasses.replace(step, leaving_group=option.leaving_group)
+    centre, nucleophile = account.reading.centre, account.reading.nucleophile
+    others = [s for i, s in enumerate(account.fragments) if centre is None or i != centre.component]
+    medium = medium_of(
+        profile_of(option.plan.conditions, others),
+        nucleophile.nucleophile_class if nucleophile else None,
+        step.leaving_group in (LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE),
+        _base_smiles(option.plan),
+    )
+    return dataclasses.replace(step, medium=medium)
+
+
+def _trend_in_words(found: Contrast) -> str:
+    said = "Published relative rates"
+    if found.because:
+        said += f" ({'; '.join(found.because[:2])})"
+    if found.pace < 0.5:
+        said += f"; about {1 / found.pace:.0f} times slower" if found.pace > 1e-3 else "; far slower"
+    elif found.pace > 2:
+        said += f"; about {found.pace:.0f} times faster" if found.pace < 1e3 else "; far faster"
+    return f"{said}. {'; '.join(found.sources[:2])}".rstrip(" .") + "."

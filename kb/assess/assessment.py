@@ -5,28 +5,56 @@ It owns the order and the handing-over; each judgement is made in its own file. 
 
 from __future__ import annotations
 
+import dataclasses
 from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
-from kb.assess.advice import advise, temperature_band
+from kb.assess.advice import advise
 from kb.assess.caution import find_cautions
 from kb.assess.data_findings import find_data_findings
-from kb.assess.estimate import estimate
-from kb.assess.evidence import count_evidence, weighed_severity, word_evidence
+from kb.assess.disagreement import word_disagreement
+from kb.assess.endangered import Endangered, find_endangered
+from kb.assess.estimate import estimate, weights_of
+from kb.assess.evidence import with_evidence
 from kb.assess.house_rules import HouseRule, find_house_rules
-from kb.assess.liability import all_rules, find_liabilities, get_rule
+from kb.assess.liability import find_liabilities
+from kb.assess.low_yield import find_low_yield
 from kb.assess.precedent import compare, rank_precedents, word_precedents
-from kb.assess.published import published_estimate
+from kb.assess.published import PublishedEstimate, published_estimate
 from kb.assess.record_view import RecordView
 from kb.assess.resemblance import find_resemblances
+from kb.assess.stereo_findings import find_stereo_findings
 from kb.assess.table import FactTable, one_row
-from kb.record.assessment import Advice, Assessment, Estimate
+from kb.assess.yields import YieldFit, fit_yield
+from kb.record.assessment import Assessment, Estimate
 from kb.record.finding import Finding
 from kb.record.plan import Plan
 from kb.store.derivation import Account, account_of_plan
 from kb.vocabulary import Fate, FindingKind, Role, Severity
+
+NEAREST = 1500
+"""Runs against which the findings of a changed plan are made anew."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Comparison:
+    """A plan beside every run of a view.
+
+    Attributes:
+        row: the plan's facts, a table of one row.
+        parts: likeness per part (n each).
+        similarity: of each run (n); zeros where no centre was read.
+        endangered: who holds which endangered group.
+    """
+
+    row: FactTable
+    parts: dict[str, NDArray[np.float64]]
+    similarity: NDArray[np.float64]
+    endangered: Endangered
 
 
 def assess(
@@ -51,62 +79,111 @@ def assess(
         The assessment. A scheme that cannot be read still gets the findings about its mixture.
     """
     account = account or account_of_plan(plan)
-    row = one_row(account.facts)
-    parts, similarity = compare(row, view.table, rest, risk_differences(account, view))
-    if account.reading.centre is None:
-        similarity = np.zeros(len(view.table))
-    findings = _findings(account, plan, view, parts, house_rules)
+    compared = compare_with_record(account, view, rest)
+    published = _published(account, plan)
+    expected, fit = estimate_plan(account, view, compared, published)
+    findings = find_findings(plan, account, view, compared, house_rules, published, fit)
+    row, parts, similarity = compared.row, compared.parts, compared.similarity
+    near = _Near(view, compared, house_rules)
     return Assessment(
         plan=plan,
         reading=account.reading,
         findings=findings,
-        estimate=_estimate(account, plan, view, similarity),
+        estimate=expected,
         precedents=word_precedents(row, view.table, rank_precedents(similarity, top), parts, similarity),
-        advice=_advice(account, row, view, parts),
+        advice=advise(plan, account, view, parts, similarity, wanted_fate(account), findings, near.serious_of),
     )
 
 
+class _Near:
+    """The runs nearest to a plan, against which changed plans are checked anew."""
+
+    def __init__(self, view: RecordView, compared: Comparison, house_rules: Sequence[HouseRule]) -> None:
+        self._view = view
+        self._compared = compared
+        self._house_rules = house_rules
+
+    @cached_property
+    def view(self) -> RecordView:
+        """Return the NEAREST runs; all of them in a small book."""
+        if len(self._view.table) <= NEAREST:
+            return self._view
+        keep = np.zeros(len(self._view.table), dtype=bool)
+        keep[np.argpartition(-self._compared.similarity, NEAREST)[:NEAREST]] = True
+        return self._view.only(keep)
+
+    def serious_of(self, plan: Plan) -> frozenset[str]:
+        """Return the ids of the serious findings of a plan."""
+        account = account_of_plan(plan)
+        compared = compare_with_record(account, self.view)
+        published = _published(account, plan)
+        findings = find_findings(plan, account, self.view, compared, self._house_rules, published, None)
+        return frozenset(f.rule_id for f in findings if f.severity is Severity.SERIOUS)
+
+
+def compare_with_record(account: Account, view: RecordView, rest: NDArray[np.float64] | None = None) -> Comparison:
+    """Compare what was read of a plan with every run."""
+    row = one_row(account.facts)
+    endangered = find_endangered(account, view)
+    parts, similarity = compare(row, view.table, rest, endangered.differences())
+    if account.reading.centre is None:
+        similarity = np.zeros(len(view.table))
+    return Comparison(row=row, parts=parts, similarity=similarity, endangered=endangered)
+
+
 def risk_differences(account: Account, view: RecordView) -> NDArray[np.float64]:
-    """Count, for each run, the groups endangered by the plan's conditions that stand in only one of the two (n).
-
-    Only serious liabilities of bystanders count: a run that lost a group which the plan does not have says little about
-    the plan, and a run without the group that the plan puts at risk says less still.
-    """
-    differences = np.zeros(len(view.table))
-    mols = [mol for smiles in account.fragments if (mol := view.mol(smiles)) is not None]
-    for rule in all_rules():
-        if rule.side != "bystander" or rule.severity is not Severity.SERIOUS:
-            continue
-        if rule.applies(account.profile) is not True:
-            continue
-        holds = np.zeros(len(view.table), dtype=bool)
-        for smarts in rule.motifs:
-            holds[view.rows_with_motif(smarts)] = True
-        differences += holds != any(rule.find_motif(mol) for mol in mols)
-    return differences
+    """Return, for each run, how many endangered groups stand in only one of plan and run (n)."""
+    return find_endangered(account, view).differences()
 
 
-def _estimate(account: Account, plan: Plan, view: RecordView, similarity: NDArray[np.float64]) -> Estimate:
+def wanted_fate(account: Account) -> Fate | None:
+    """Return the fate that a plan is after; None where it does not say."""
+    wanted = account.reading.fate
+    if wanted is None and account.profile.nucleophile_class is not None:
+        wanted = Fate.SUBSTITUTION  # no product stated, but a nucleophile was brought
+    return wanted
+
+
+def estimate_plan(
+    account: Account, view: RecordView, compared: Comparison, published: PublishedEstimate
+) -> tuple[Estimate, YieldFit | None]:
+    """Return what to expect, and the fit behind its yield."""
+    similarity = compared.similarity
+    expected = estimate(similarity, view.table, dict(published.fates), "" if published.fates else published.note)
+    wanted = wanted_fate(account)
+    share = next((interval.mean for fate, interval in expected.fates if fate is wanted), None)
+    if share is None and expected.fates and wanted is not None:
+        share = 0.0
+    held = (compared.endangered.mine, compared.endangered.runs)
+    fit = fit_yield(compared.row, view, similarity, share, held)
+    words = word_disagreement(view, weights_of(similarity), expected.fates[0][0]) if expected.fates else ""
+    return (
+        dataclasses.replace(
+            expected, yield_pct=fit.yield_pct if fit else None, note=" ".join(filter(None, (expected.note, words)))
+        ),
+        fit,
+    )
+
+
+def _published(account: Account, plan: Plan) -> PublishedEstimate:
     base = next((c.smiles for c in plan.conditions.components if c.role is Role.BASE and c.smiles), None)
-    published = published_estimate(account.reading, account.facts.substrate or "", account.profile, base)
-    prior = {fate: interval.mean for fate, interval in published.fates}
-    scatter = None
-    if published.fates:
-        main = published.fates[0][1]
-        scatter = max((main.high - main.low) / 2.56, 0.02)  # 80 % interval of a normal is 2.56 sd wide
-    return estimate(similarity, view.table, prior, scatter, published.note if not published.fates else "")
+    return published_estimate(account.reading, account.facts.substrate or "", account.profile, base)
 
 
-def _findings(
-    account: Account,
+def find_findings(
     plan: Plan,
+    account: Account,
     view: RecordView,
-    parts: dict[str, NDArray[np.float64]],
+    compared: Comparison,
     house_rules: Sequence[HouseRule],
+    published: PublishedEstimate,
+    fit: YieldFit | None,
 ) -> tuple[Finding, ...]:
-    others = [part.smiles for part in (*plan.conditions.components, *plan.conditions.solvents) if part.smiles]
+    """Return everything that a check reports of a plan, most severe first."""
+    conditions = plan.conditions
+    others = [c.smiles for c in conditions.components if c.smiles] + [s.smiles for s in conditions.solvents if s.smiles]
     liabilities = [
-        _with_evidence(f, account, view)
+        with_evidence(f, compared.row, view)
         for f in find_liabilities(
             reading=account.reading,
             fragments=account.fragments,
@@ -119,7 +196,9 @@ def _findings(
     centre = account.reading.centre
     resemblances = find_resemblances(
         view,
-        parts,
+        compared.row,
+        compared.parts,
+        compared.similarity,
         account.profile,
         account.fragments,
         (centre.component, centre.atom) if centre else None,
@@ -133,9 +212,19 @@ def _findings(
         conditions=plan.conditions,
         products=account.products,
     )
-    own = find_house_rules(house_rules, account, view)
-    data = find_data_findings(plan, account)
-    return sort_findings([*liabilities, *resemblances, *own, *cautions, *data])
+    return sort_findings(
+        [
+            *liabilities,
+            *resemblances,
+            *find_low_yield(
+                fit, view, compared.similarity, centre.component if centre else None, centre.atom if centre else None
+            ),
+            *find_house_rules(house_rules, account, view),
+            *cautions,
+            *find_stereo_findings(account, published, {f.rule_id for f in liabilities}),
+            *find_data_findings(plan, account),
+        ]
+    )
 
 
 def sort_findings(findings: Sequence[Finding]) -> tuple[Finding, ...]:
@@ -153,44 +242,3 @@ def sort_findings(findings: Sequence[Finding]) -> tuple[Finding, ...]:
         return (-finding.severity.rank, -lost, kinds.index(finding.kind), int(finding.is_uncertain))
 
     return tuple(sorted(findings, key=key))
-
-
-def _with_evidence(finding: Finding, account: Account, view: RecordView) -> Finding:
-    """Put the book's evidence beside a liability of a motif, and let it speak for the severity."""
-    import dataclasses
-
-    rule = get_rule(finding.rule_id)
-    if rule.side != "bystander" or not len(view.table):
-        return finding
-    holding = sorted({int(r) for smarts in rule.motifs for r in view.rows_with_motif(smarts)})
-    rows = [r for r in holding if rule.applies(view.profile(r)) is True]
-    lost, survived = count_evidence(view, rows, rule.find_motif)
-    evidence = word_evidence(view, lost, survived, account.profile.temperature_c)
-    severity = weighed_severity(finding.severity, evidence) if not finding.is_uncertain else finding.severity
-    return dataclasses.replace(finding, evidence=evidence, severity=severity)
-
-
-def _advice(
-    account: Account, row: FactTable, view: RecordView, parts: dict[str, NDArray[np.float64]]
-) -> tuple[Advice, ...]:
-    wanted = account.reading.fate
-    if wanted is None and account.profile.nucleophile_class is not None:
-        wanted = Fate.SUBSTITUTION  # no product stated, but a nucleophile was brought
-    if wanted is None or wanted in (Fate.UNREACTED, Fate.OTHER) or not len(view.table):
-        return ()
-
-    def temperature(r: int) -> str | None:
-        return temperature_band(row.number("temperature_c", 0) if r < 0 else view.table.number("temperature_c", r))
-
-    def solvent(r: int) -> str | None:
-        profile = account.profile if r < 0 else view.profile(r)
-        classes = sorted(profile.solvent_classes)
-        return "/".join(classes).replace("_", " ") or None
-
-    def base(r: int) -> str | None:
-        profile = account.profile if r < 0 else view.profile(r)
-        if profile.has_unknown_reagent and profile.base_name is None:
-            return None
-        return profile.base_name or "no base"
-
-    return advise(row, view.table, parts, wanted, {"temperature": temperature, "base": base, "solvent": solvent})

@@ -1,71 +1,83 @@
-"""What the book knows of a motif under a rule's conditions: lost in these runs, survived in those.
+"""What the book knows of a liability under its conditions: it struck in these runs, not in those.
 
-It owns the question "did the motif come through this run?" and the counting. A motif counts as lost when a failure of
-the run names it, or when products that lack it make up `LOST_SHARE` or more; as survived when the main product still
-holds it. Runs that say neither are not counted. An intended loss (a deprotection that worked) is a loss: it shows
-that the conditions do it.
+It owns the choice of witnesses, how much each counts, and what that does to a severity. Witnesses are runs with the
+rule's motif in the rule's place under conditions that fulfil its condition line; a loss under no harsher and a survival
+under no milder conditions than the plan's count in full, others in part (`forcing.say_of`). An intended loss (a
+deprotection that worked) is a loss: it shows that the conditions do it. At most MOST_WITNESSES are asked, those whose
+conditions are nearest to the plan's.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Sequence
-from typing import Any
+import dataclasses
+from collections.abc import Iterable, Sequence
+
+import numpy as np
+from numpy.typing import NDArray
 
 from kb.assess.estimate import loss_chance
+from kb.assess.evidence_motif import FindMotif, motif_came_through
+from kb.assess.forcing import harsher_by_k, say_of
+from kb.assess.liability import get_rule
+from kb.assess.liability_rule import Rule
 from kb.assess.record_view import RecordView
-from kb.record.failure_modes import modes_that_lose_a_group
-from kb.record.finding import Evidence
-from kb.record.run import Run
-from kb.vocabulary import Fate, Severity, Verdict
+from kb.assess.table import FATES, FactTable
+from kb.record.finding import Evidence, Finding, Interval
+from kb.vocabulary import Fate, Severity
 
-LOST_SHARE = 0.10
-"""Share of products without the motif from which it counts as lost; judgement."""
+FEARED_SHARE = 0.2
+"""Share of the feared fate from which a run at the centre counts as struck; judgement."""
+MOST_WITNESSES = 48
+FEWEST_TO_LOWER = 4.0
+"""Survivals, weighed, below which no severity is lowered; judgement."""
+
+_MODES_OF_FATE: dict[Fate, frozenset[str]] = {
+    Fate.ELIMINATION: frozenset({"elimination"}),
+    Fate.REARRANGED: frozenset({"rearrangement"}),
+    Fate.TRANSPOSED: frozenset({"transposition"}),
+    Fate.UNREACTED: frozenset({"no-reaction", "stalled"}),
+}
+_MODES_OF_GROUP: dict[str, frozenset[str]] = {
+    "stereo": frozenset({"racemisation"}),
+    "solvolysis": frozenset({"solvolysis"}),
+    "exchange": frozenset({"exchange"}),
+    "participation": frozenset({"neighbour-attack"}),
+    "ring-closure": frozenset({"neighbour-attack"}),
+    "regiochemistry": frozenset({"wrong-regioisomer"}),
+    "epoxide": frozenset({"wrong-regioisomer"}),
+}
+"""Failure modes that say that a rule without a fate of its own has struck."""
 
 
-FindMotif = Callable[[Any], Sequence[tuple[int, ...]]]
-"""From an RDKit molecule to the atom numbers of each instance of the motif."""
-
-
-def motif_came_through(run: Run, find: FindMotif, mols: Callable[[str], Any]) -> bool | None:
-    """Say whether a motif survived a run.
+def with_evidence(finding: Finding, plan: FactTable, view: RecordView) -> Finding:
+    """Put the book's evidence beside a liability, and let it speak for the severity.
 
     Args:
-        run: as recorded.
-        find: finds the motif in a molecule.
-        mols: from SMILES to RDKit molecule or None.
-
-    Returns:
-        True = survived, False = lost, None = the record does not say.
+        finding: of a shipped rule.
+        plan: facts of the plan, a table of one row.
+        view: the runs.
     """
-    left = [m for s in _left(run) if (m := mols(s)) is not None]
-    before = sum(len(find(m)) for m in left)
-    if not before:
-        return None
-    for failure in run.outcome.failures:
-        if failure.mode in modes_that_lose_a_group() and failure.motif and _overlaps(failure.motif, find, left):
-            return False
-    lacking, holding = 0.0, 0.0
-    for smiles, share in _products(run):
-        mol = mols(smiles)
-        if mol is None:
-            continue
-        if len(find(mol)) < before:
-            lacking += share
-        else:
-            holding += share
-    unseen_loss = sum(p.share or 0.0 for p in run.outcome.products if p.fate is Fate.GROUP_LOSS and p.smiles is None)
-    if lacking >= LOST_SHARE:
-        return False
-    if holding > 0 and unseen_loss < LOST_SHARE and holding >= lacking:
-        return True
-    return None
+    rule = get_rule(finding.rule_id)
+    if not len(view.table) or rule.side not in ("bystander", "centre"):
+        return finding
+    if rule.side == "bystander":
+        struck, spared = count_evidence(view, _nearest(rule, plan, view), rule.find_motif)
+    elif rule.gives is not None or rule.group in _MODES_OF_GROUP:
+        struck, spared = _count_at_centre(rule, view, _nearest(rule, plan, view))
+    else:
+        return finding
+    evidence = word_evidence(view, struck, spared, plan)
+    severity = finding.severity if finding.is_uncertain else weighed_severity(finding.severity, evidence)
+    return dataclasses.replace(finding, evidence=evidence, severity=severity)
 
 
 def count_evidence(view: RecordView, rows: Iterable[int], find: FindMotif) -> tuple[list[int], list[int]]:
-    """Split rows into (lost, survived) row numbers, in record order."""
+    """Split rows by whether a motif was lost or survived; rows that say neither are left out."""
+    asked = [int(row) for row in rows]
+    view.fetch(asked)
     lost: list[int] = []
     survived: list[int] = []
-    for row in rows:
+    for row in asked:
         outcome = motif_came_through(view.run(row), find, view.mol)
         if outcome is False:
             lost.append(row)
@@ -74,73 +86,100 @@ def count_evidence(view: RecordView, rows: Iterable[int], find: FindMotif) -> tu
     return lost, survived
 
 
-def word_evidence(view: RecordView, lost: list[int], survived: list[int], temperature_c: float | None) -> Evidence:
-    """Turn counted rows into evidence with the chance of loss and a note on temperature where it divides them."""
+def word_evidence(view: RecordView, lost: list[int], survived: list[int], plan: FactTable) -> Evidence:
+    """Turn counted rows into evidence: runs named, chance of loss weighed, and what divides them in words."""
     codes = view.table.codes
+    rows = np.array([*lost, *survived], dtype=np.intp)
+    is_lost = np.arange(len(rows)) < len(lost)
+    say = say_of(harsher_by_k(plan, view.table, rows), is_lost)
+    in_part = int((say < 0.75).sum())
+    notes = [_temperature_note(view, lost, survived, plan.number("temperature_c", 0))]
+    if in_part:
+        runs = "run counts" if in_part == 1 else "runs count"
+        notes.append(f"{in_part} {runs} in part: lost under harsher or spared under milder conditions than this plan's")
     return Evidence(
         lost=len(lost),
         survived=len(survived),
         runs=tuple(codes[r] for r in [*lost, *survived]),
-        chance=loss_chance(len(lost), len(survived)) if lost or survived else None,
-        note=_temperature_note(view, lost, survived, temperature_c),
+        chance=_chance(float(say[is_lost].sum()), float(say[~is_lost].sum())) if len(rows) else None,
+        note="; ".join(note for note in notes if note),
     )
 
 
 def weighed_severity(severity: Severity, evidence: Evidence) -> Severity:
     """Let the book speak: raise or lower a rule's severity by one step where its evidence is clear.
 
-    Raised where even the low end of the chance is above one half; lowered where the high end is below one quarter
-    (a lone survivor never lowers anything). Both limits are judgements.
+    Raised where even the low end of the chance is above one half; lowered where the high end is below one third and the
+    survivals that count are at least FEWEST_TO_LOWER (a lone survivor never lowers anything). Limits are judgements.
     """
     if evidence.chance is None:
         return severity
     order = list(Severity)
     if evidence.chance.low > 0.5:
         return order[min(severity.rank + 1, 2)]
-    if evidence.chance.high < 0.25:
+    if evidence.chance.high < 1 / 3 and evidence.survived >= FEWEST_TO_LOWER:
         return order[max(severity.rank - 1, 0)]
     return severity
 
 
-def _left(run: Run) -> list[str]:
-    side = run.scheme.split(">")
-    return [s for part in side[:2] for s in part.split(".") if s] if len(side) == 3 else run.scheme.split(".")
+def _chance(lost: float, survived: float) -> Interval:
+    return loss_chance(lost, survived)
 
 
-def _products(run: Run) -> list[tuple[str, float]]:
-    """Return products with structure and a share: measured, else told by the verdict."""
-    measured = [(p.smiles, p.share) for p in run.outcome.products if p.smiles and p.share]
-    if measured:
-        return [(s, float(share)) for s, share in measured if s and share]
-    side = run.scheme.split(">")
-    stated = [s for s in side[2].split(".") if s] if len(side) == 3 else []
-    share = {Verdict.WORKED: 1.0, Verdict.PARTLY: 0.5}.get(run.verdict, 0.0) if run.verdict else 0.0
-    yield_pct = run.outcome.yield_pct
-    if yield_pct is not None:
-        share = max(share, min(yield_pct / 100, 1.0))
-    return [(s, share) for s in stated] if share else []
+def _nearest(rule: Rule, plan: FactTable, view: RecordView) -> list[int]:
+    """Return the runs that can bear witness, those nearest in conditions first, at most MOST_WITNESSES."""
+    holding = np.unique(np.concatenate([view.rows_with_motif(smarts) for smarts in rule.motifs])).astype(np.intp)
+    rows = holding[view.told(("rule", rule.rule_id), rule.applies, holding) == 1]
+    away = np.abs(harsher_by_k(plan, view.table, rows))
+    rows = rows[np.argsort(away, kind="stable")]
+    if rule.side == "bystander":
+        return [int(row) for row in rows[:MOST_WITNESSES]]
+    found: list[int] = []
+    for row in rows:
+        if _is_at_centre(rule, view, int(row)):
+            found.append(int(row))
+            if len(found) >= MOST_WITNESSES:
+                break
+    return found
 
 
-def finder_of(smarts: str) -> FindMotif:
-    """Return a finder for one SMARTS; a SMARTS that cannot be read is found nowhere."""
-    from rdkit import Chem
+def _is_at_centre(rule: Rule, view: RecordView, row: int) -> bool:
+    """Return True where the rule's motif sits on the centre that was read in a run."""
+    atom = view.table.number("centre_atom", row)
+    if atom is None:
+        return False
+    substrate = view.table.substrate[row]
+    key = ("at centre", rule.rule_id, substrate, atom)
+    if key not in view.known:
+        mol = view.mol(substrate)
+        matches = rule.matches(mol) if mol is not None else ()
+        view.known[key] = any(way.get(m) == int(atom) for match in matches for way in match.ways for m in rule.at)
+    return bool(view.known[key])
 
-    query = Chem.MolFromSmarts(smarts)
 
-    def find(mol: Any) -> Sequence[tuple[int, ...]]:
-        return () if query is None else mol.GetSubstructMatches(query, uniquify=True, maxMatches=64)
+def _count_at_centre(rule: Rule, view: RecordView, rows: Sequence[int]) -> tuple[list[int], list[int]]:
+    """Split rows by whether the feared fate took FEARED_SHARE or a failure names it; silent rows are left out."""
+    modes = _MODES_OF_GROUP.get(rule.group, frozenset())
+    if rule.gives is not None:
+        modes = modes | _MODES_OF_FATE.get(rule.gives, frozenset())
+    struck: list[int] = []
+    spared: list[int] = []
+    for row in rows:
+        shares = view.table.shares[row]
+        is_measured = not np.isnan(shares).all()
+        share = _share(shares, rule.gives) if is_measured else 0.0
+        if share >= FEARED_SHARE or any(mode in modes for mode, _ in view.failures[row]):
+            struck.append(row)
+        elif is_measured or view.table.word("verdict", row) == "worked":
+            spared.append(row)
+    return struck, spared
 
-    return find
 
-
-def _overlaps(smarts: str, find: FindMotif, mols: list[Any]) -> bool:
-    """Return True when a failure's motif and the rule's share an atom somewhere."""
-    named = finder_of(smarts)
-    for mol in mols:
-        hit = {a for match in named(mol) for a in match}
-        if any(hit & set(match) for match in find(mol)):
-            return True
-    return False
+def _share(shares: NDArray[np.float64], fate: Fate | None) -> float:
+    if fate is None:
+        return 0.0
+    total = float(np.nansum(shares))
+    return float(np.nan_to_num(shares[FATES.index(fate)])) / total if total > 0 else 0.0
 
 
 def _temperature_note(view: RecordView, lost: list[int], survived: list[int], plan_c: float | None) -> str:

@@ -7,12 +7,23 @@ a bath 10 K cooler or a base 1.5 pKaH units weaker is not yet a different case.
 
 from __future__ import annotations
 
+import numpy as np
+from numpy.typing import NDArray
+
+from kb.assess.table import WORDS, FactTable
 from kb.materials.profile import LEVELS, ConditionProfile
 
 MARGIN_K = 10.0
 MARGIN_PKAH = 1.5
 STRONG_BASE_PKAH = 8.0
 """From here a base, rather than the solvent or the nucleophile, is taken to do the forcing."""
+HALVING_K = 10.0
+"""A witness under other conditions counts half for each 10 K: a rate doubles or so with 10 K (common practice)."""
+STEP_K = 20.0
+"""What one level of acidity is worth [K]; judgement."""
+PKAH_K = 3.0
+"""What one unit of pKaH of the base is worth [K]; judgement."""
+SAME_WITHIN_K = 5.0
 
 
 def is_at_least_as_forcing(plan: ConditionProfile, failed: ConditionProfile) -> bool | None:
@@ -58,3 +69,41 @@ def _temperature(plan: ConditionProfile, failed: ConditionProfile) -> bool | Non
     if failed.temperature_c is None or plan.temperature_c is None:
         return None
     return plan.temperature_c >= failed.temperature_c - MARGIN_K
+
+
+def harsher_by_k(plan: FactTable, table: FactTable, rows: NDArray[np.intp]) -> NDArray[np.float64]:
+    """Return how much more forcing some runs were than the plan, put in kelvin; negative = milder.
+
+    The difference in temperature, plus STEP_K for each level of acid (or, where neither has acid, PKAH_K for each
+    unit of a base above STRONG_BASE_PKAH). What is not recorded on either side adds nothing.
+
+    Args:
+        plan: a table of one row.
+        table: the runs.
+        rows: row numbers (m).
+    """
+    temperature = plan.number("temperature_c", 0)
+    harsher = np.zeros(len(rows)) if temperature is None else table.numbers["temperature_c"][rows] - temperature
+    harsher = np.nan_to_num(harsher)
+    no_acid = np.ones(len(rows), dtype=bool)
+    for column in ("acidity", "lewis_acid"):
+        mine, theirs = int(plan.words[column][0]), table.words[column][rows]
+        harsher += np.where((theirs >= 0) & (mine >= 0), STEP_K * (theirs.astype(np.float64) - mine), 0.0)
+        no_acid &= (theirs <= WORDS[column].index("none")) & (mine <= WORDS[column].index("none"))
+    pkah = plan.number("base_pkah", 0)
+    if pkah is not None:
+        theirs_pkah = table.numbers["base_pkah"][rows]
+        counts = no_acid & (np.maximum(theirs_pkah, pkah) >= STRONG_BASE_PKAH)
+        harsher += np.where(counts, PKAH_K * np.nan_to_num(theirs_pkah - pkah), 0.0)
+    return harsher
+
+
+def say_of(harsher: NDArray[np.float64], is_lost: NDArray[np.bool_]) -> NDArray[np.float64]:
+    """Return how much each witness counts, 0..1.
+
+    A loss under conditions no harsher than the plan's, and a survival under conditions no milder, count in full: they
+    hold for the plan all the more. A loss under harsher and a survival under milder conditions count half for each
+    HALVING_K.
+    """
+    aside = np.where(is_lost, harsher, -harsher) - SAME_WITHIN_K
+    return np.asarray(0.5 ** (np.maximum(aside, 0.0) / HALVING_K))

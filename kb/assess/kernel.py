@@ -10,7 +10,7 @@ distances rest on the published relative reactivities held in `LEAVING_SCALE`.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Collection, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -83,6 +83,7 @@ def similarity_parts(
     table: FactTable,
     rest: NDArray[np.float64] | None = None,
     risk_differences: NDArray[np.float64] | None = None,
+    only: Collection[str] | None = None,
 ) -> dict[str, NDArray[np.float64]]:
     """Compare one plan with every row of a table, part by part.
 
@@ -92,29 +93,46 @@ def similarity_parts(
         risk_differences: how many groups that the plan's conditions endanger stand in only one of the two (n); None =
             not looked for.
         rest: whole-molecule Tanimoto (n), 0..1; None or NaN = not computed, counts as not recorded.
+        only: names of the parts wanted; None = all.
 
     Returns:
         Part name to (n) float64 in [FLOOR, 1].
     """
-    parts = {
-        "centre": _centre(plan, table),
-        "leaving group": _leaving(plan, table),
-        "nucleophile": _nucleophile(plan, table),
-        "base": _base(plan, table),
-        "solvent": _solvent(plan, table),
-        "temperature": _gauss(plan, table, "temperature_c", 28.0),
-        "promoter": _promoter(plan, table),
-        "groups at risk": np.ones(len(table)) if risk_differences is None else RISK_STEP**risk_differences,
-        "reagents": _reagents(plan, table),
-        "rest of molecule": _rest(rest, len(table)),
+    n = len(table)
+    ways: dict[str, Callable[[], NDArray[np.float64]]] = {
+        "centre": lambda: _centre(plan, table),
+        "leaving group": lambda: _leaving(plan, table),
+        "nucleophile": lambda: _nucleophile(plan, table),
+        "base": lambda: _base(plan, table),
+        "solvent": lambda: _solvent(plan, table),
+        "temperature": lambda: _gauss(plan, table, "temperature_c", 28.0),
+        "promoter": lambda: _promoter(plan, table),
+        "groups at risk": lambda: np.ones(n) if risk_differences is None else RISK_STEP**risk_differences,
+        "reagents": lambda: _reagents(plan, table),
+        "rest of molecule": lambda: _rest(rest, n),
     }
-    return {name: np.clip(values, FLOOR, 1.0) for name, values in parts.items()}
+    return {name: np.clip(way(), FLOOR, 1.0) for name, way in ways.items() if only is None or name in only}
 
 
 def combine(parts: dict[str, NDArray[np.float64]]) -> NDArray[np.float64]:
     """Return the weighted geometric mean of the parts (n), 0..1."""
     total = sum(weight * np.log(parts[name]) for name, weight in PARTS)
     return np.asarray(np.exp(total), dtype=np.float64)
+
+
+def centre_likeness(query: NDArray[np.uint64], rows: NDArray[np.uint64]) -> NDArray[np.float64]:
+    """Return the Tanimoto similarity (n) of a rooted environment to others; 0 where there is no centre."""
+    both = np.bitwise_count(rows & query).sum(axis=1, dtype=np.float64)
+    either = np.bitwise_count(rows | query).sum(axis=1, dtype=np.float64)
+    return np.divide(both, either, out=np.zeros(len(rows)), where=either > 0)
+
+
+def leaving_likeness(words: Sequence[str | None]) -> NDArray[np.float64]:
+    """Return `leaving_similarity` of each pair of some words (m, m)."""
+    distinct = list(dict.fromkeys(words))
+    table = np.array([[leaving_similarity(a, b) for b in distinct] for a in distinct])
+    codes = [distinct.index(word) for word in words]
+    return table[np.ix_(codes, codes)]
 
 
 def leaving_similarity(one: str | None, other: str | None) -> float:
@@ -163,7 +181,7 @@ def _centre(plan: FactTable, table: FactTable) -> NDArray[np.float64]:
     distinct, where = np.unique(table.flags, return_inverse=True)
     mine_flags = flag_words(int(plan.flags[0]))
     flag = np.array([_flag_similarity(mine_flags, flag_words(int(code))) for code in distinct])[where]
-    return np.asarray(carbon * flag * (0.55 + 0.45 * _tanimoto(plan.centre_bits[0], table.centre_bits)))
+    return np.asarray(carbon * flag * (0.55 + 0.45 * centre_likeness(plan.centre_bits[0], table.centre_bits)))
 
 
 def _flag_similarity(one: frozenset[str], other: frozenset[str]) -> float:
@@ -172,12 +190,6 @@ def _flag_similarity(one: frozenset[str], other: frozenset[str]) -> float:
     if one & activation and other & activation and (one ^ other) & activation:
         distance -= 0.5  # allylic against benzylic: both activated
     return float(np.exp(-max(distance, 0.0)))
-
-
-def _tanimoto(query: NDArray[np.uint64], rows: NDArray[np.uint64]) -> NDArray[np.float64]:
-    both = np.bitwise_count(rows & query).sum(axis=1, dtype=np.float64)
-    either = np.bitwise_count(rows | query).sum(axis=1, dtype=np.float64)
-    return np.divide(both, either, out=np.zeros(len(rows)), where=either > 0)
 
 
 def _leaving(plan: FactTable, table: FactTable) -> NDArray[np.float64]:

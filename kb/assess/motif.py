@@ -8,12 +8,14 @@ and marked: the record contradicts itself there.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Any
 
 MAX_RADIUS = 2
 MCS_SECONDS = 1
+_MATCHES = 64
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -33,8 +35,21 @@ class Motif:
     is_contradicted: bool
 
 
+@lru_cache(maxsize=65536)
+def lost_atoms_of(substrate_smiles: str, found_smiles: str) -> frozenset[int]:
+    """Return `lost_atoms` of two SMILES, kept; empty where either cannot be read."""
+    from rdkit import Chem, rdBase
+
+    with rdBase.BlockLogs():
+        substrate, found = Chem.MolFromSmiles(substrate_smiles), Chem.MolFromSmiles(found_smiles)
+    return lost_atoms(substrate, found) if substrate is not None and found is not None else frozenset()
+
+
 def lost_atoms(substrate: Any, found: Any) -> frozenset[int]:
     """Return the substrate's atoms that the found product no longer has.
+
+    Where what was found is a part of the substrate, as after the loss of most groups, that part is the answer; where it
+    fits in several ways, one that leaves the lost atoms in one piece. Otherwise a maximum common substructure decides.
 
     Args:
         substrate, found: RDKit molecules.
@@ -42,6 +57,16 @@ def lost_atoms(substrate: Any, found: Any) -> frozenset[int]:
     Returns:
         Atom numbers of the substrate; empty where nothing was lost or the two share too little to say (under half).
     """
+    every = frozenset(range(substrate.GetNumAtoms()))
+    if found.GetNumAtoms() < len(every):
+        matches = substrate.GetSubstructMatches(found, uniquify=True, maxMatches=_MATCHES)
+        if matches and found.GetNumAtoms() * 2 >= len(every):
+            rests = sorted((every - frozenset(match) for match in matches), key=sorted)
+            return min(rests, key=lambda rest: _pieces(substrate, rest))
+    return _by_common_part(substrate, found, every)
+
+
+def _by_common_part(substrate: Any, found: Any, every: frozenset[int]) -> frozenset[int]:
     from rdkit import Chem
     from rdkit.Chem import rdFMCS
 
@@ -54,34 +79,59 @@ def lost_atoms(substrate: Any, found: Any) -> frozenset[int]:
     )
     if common.numAtoms * 2 < min(substrate.GetNumAtoms(), found.GetNumAtoms()):
         return frozenset()
-    kept = substrate.GetSubstructMatch(Chem.MolFromSmarts(common.smartsString))
-    return frozenset(range(substrate.GetNumAtoms())) - frozenset(kept)
+    return every - frozenset(substrate.GetSubstructMatch(Chem.MolFromSmarts(common.smartsString)))
 
 
-def generalise(substrate: Any, lost: frozenset[int], survivors: Sequence[Any]) -> Motif | None:
-    """Return the smallest environment of the lost atoms that excludes the survivors; None where nothing was lost."""
+def _pieces(mol: Any, atoms: frozenset[int]) -> int:
+    """Return in how many connected pieces some atoms lie."""
+    left, pieces = set(atoms), 0
+    while left:
+        pieces += 1
+        stack = [left.pop()]
+        while stack:
+            for n in mol.GetAtomWithIdx(stack.pop()).GetNeighbors():
+                if n.GetIdx() in left:
+                    left.remove(n.GetIdx())
+                    stack.append(n.GetIdx())
+    return pieces
+
+
+def generalise(substrate: Any, lost: frozenset[int], survivors: Sequence[Any] | Callable[[str], bool]) -> Motif | None:
+    """Return the smallest environment of the lost atoms that excludes the survivors; None where nothing was lost.
+
+    Args:
+        substrate: RDKit molecule.
+        lost: its lost atoms.
+        survivors: molecules that came through, or a callable that says whether any of them holds a SMARTS.
+    """
     from rdkit import Chem
 
     if not lost:
         return None
     motif: Motif | None = None
-    around = set(lost) | {n.GetIdx() for a in lost for n in substrate.GetAtomWithIdx(a).GetNeighbors()}
     for radius in range(MAX_RADIUS + 1):
-        if radius:
-            around |= {n.GetIdx() for a in around for n in substrate.GetAtomWithIdx(a).GetNeighbors()}
-        smarts = _smarts(substrate, around)
+        atoms = surrounding(substrate, lost, radius)
+        smarts = write_motif(substrate, atoms)
         query = Chem.MolFromSmarts(smarts)
         if query is None:
             continue
-        excludes = not any(s.HasSubstructMatch(query) for s in survivors)
-        motif = Motif(smarts=smarts, atoms=tuple(sorted(around)), radius=radius, is_contradicted=not excludes)
-        if excludes:
+        held = survivors(smarts) if callable(survivors) else any(s.HasSubstructMatch(query) for s in survivors)
+        motif = Motif(smarts=smarts, atoms=tuple(sorted(atoms)), radius=radius, is_contradicted=held)
+        if not held:
             return motif
     return motif
 
 
-def _smarts(mol: Any, atoms: set[int]) -> str:
-    """Write a fragment as SMARTS: element, aromaticity and, inside the lost part, the count of hydrogens."""
+def surrounding(mol: Any, lost: frozenset[int], radius: int) -> set[int]:
+    """Return the lost atoms, the atoms they were bonded to, and what lies within `radius` bonds of these."""
+    around = set(lost) | {n.GetIdx() for a in lost for n in mol.GetAtomWithIdx(a).GetNeighbors()}
+    for _ in range(radius):
+        around |= {n.GetIdx() for a in around for n in mol.GetAtomWithIdx(a).GetNeighbors()}
+    return around
+
+
+def write_motif(mol: Any, atoms: set[int]) -> str:
+    """Write a fragment as SMARTS: element, aromaticity and, inside the fragment, the count of hydrogens."""
     from rdkit import Chem
 
     symbols = []

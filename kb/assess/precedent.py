@@ -48,7 +48,7 @@ def word_precedents(
             run=table.codes[row],
             similarity=round(float(similarity[row]), 3),
             parts=tuple((name, round(float(values[row]), 3)) for name, values in parts.items()),
-            differs=tuple(_differences(plan, table, int(row), parts)),
+            differs=tuple(differences(plan, table, int(row), parts)),
             split=table.split(int(row)),
             yield_pct=_number(table.yield_pct[row]),
             verdict=Verdict(word) if (word := table.word("verdict", int(row))) else None,
@@ -61,8 +61,8 @@ def _number(value: float) -> float | None:
     return None if np.isnan(value) else float(value)
 
 
-def _differences(plan: FactTable, table: FactTable, row: int, parts: dict[str, NDArray[np.float64]]) -> list[str]:
-    """Return words for each part that differs, least alike part first."""
+def differences(plan: FactTable, table: FactTable, row: int, parts: dict[str, NDArray[np.float64]]) -> list[str]:
+    """Return words for each part in which a row differs from the plan, least alike part first."""
     words: list[tuple[float, str]] = []
 
     def say(part: str, text: str) -> None:

@@ -2,39 +2,50 @@
 
 It owns two likenesses. Failures *at the centre* (an alkene instead of the ether, a shift, nothing at all) resemble a
 plan with the same kind of centre, leaving group and nucleophile. Failures *elsewhere* (a group lost or attacked)
-resemble a plan that holds the failure's motif. Both only under conditions at least as forcing, or, for runs in which
-nothing happened, no more forcing. Failures of one kind are told once, with the runs that came through beside them.
+resemble a plan that holds the failure's motif (`resemblance_motifs.py`). Both only under conditions at least as
+forcing, or, for runs in which nothing happened, no more forcing. Failures of one kind are told once, with the runs
+that came through beside them. A run whose chemist said that it failed but named no mode counts as a mode of its own.
 """
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-from typing import Any
+from collections.abc import Callable, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
 
 from kb.assess.estimate import loss_chance
-from kb.assess.evidence import finder_of, motif_came_through
-from kb.assess.forcing import is_at_least_as_forcing, is_no_more_forcing
-from kb.assess.motif import generalise, lost_atoms
+from kb.assess.evidence_motif import finder_of, motif_came_through
+from kb.assess.forcing import harsher_by_k, is_at_least_as_forcing, is_no_more_forcing
 from kb.assess.record_view import RecordView
+from kb.assess.resemblance_motifs import gather_motifs
+from kb.assess.table import FactTable
 from kb.materials.profile import ConditionProfile
 from kb.record.failure_modes import failure_modes, modes_that_lose_a_group
 from kb.record.finding import Evidence, Finding
-from kb.vocabulary import Fate, FindingKind, Severity
+from kb.vocabulary import FindingKind, Severity
 
 LEAST_PARTS = {"centre": 0.45, "leaving group": 0.55, "nucleophile": 0.5}
 """Likeness of each part from which a failure at the centre concerns the plan; judgement."""
 LEAST_CHANCE = 0.2
 """Chance of the failure below which a resemblance is not worth a line; judgement."""
+MOST_ALIKE = 150
+"""Runs of the plan's kind that are counted, the most similar ones."""
+MOST_WITNESSES = 48
+"""Runs with a failure's motif that are counted, those nearest in conditions."""
+_MILDEST = 12
 _NOTHING_HAPPENED = frozenset({"no-reaction", "stalled"})
 _NOT_CHEMISTRY = frozenset({"emulsion", "isolation-loss", "reagent-quality", "other"})
+UNNAMED = "failed, mode not named"
+
+Compare = Callable[[ConditionProfile, ConditionProfile], bool | None]
 
 
 def find_resemblances(
     view: RecordView,
+    plan: FactTable,
     parts: dict[str, NDArray[np.float64]],
+    similarity: NDArray[np.float64],
     profile: ConditionProfile,
     fragments: Sequence[str],
     centre: tuple[int, int] | None,
@@ -45,7 +56,8 @@ def find_resemblances(
 
     Args:
         view: the runs.
-        parts: of the similarity of each run to the plan (`kernel.similarity_parts`).
+        plan: its facts, a table of one row.
+        parts, similarity: of each run to the plan (`kernel.similarity_parts`, `kernel.combine`).
         profile: the plan's conditions.
         fragments: SMILES of its left-side fragments as entered.
         centre: (component, atom) of its centre; None = not read.
@@ -55,8 +67,10 @@ def find_resemblances(
     Returns:
         Findings, sorted by severity and chance; empty where the record holds nothing alike.
     """
-    found = _at_the_centre(view, parts, profile, centre)
-    found += _elsewhere(view, profile, fragments, skip_motifs, products)
+    if not len(view.table):
+        return ()
+    found = _at_the_centre(view, parts, similarity, profile, centre)
+    found += _elsewhere(view, plan, similarity, profile, fragments, skip_motifs, products)
     return tuple(sorted(found, key=lambda f: (-f.severity.rank, -_mean(f))))
 
 
@@ -73,35 +87,62 @@ def _severity(chance: float, lost: int) -> Severity:
 def _at_the_centre(
     view: RecordView,
     parts: dict[str, NDArray[np.float64]],
+    similarity: NDArray[np.float64],
     profile: ConditionProfile,
     centre: tuple[int, int] | None,
 ) -> list[Finding]:
-    if centre is None or not len(view.table):
+    if centre is None:
         return []
-    alike = np.ones(len(view.table), dtype=bool)
+    is_alike = np.ones(len(view.table), dtype=bool)
     for name, least in LEAST_PARTS.items():
-        alike &= parts[name] >= least
+        is_alike &= parts[name] >= least
+    alike = np.flatnonzero(is_alike)
+    alike = alike[np.argsort(-similarity[alike], kind="stable")][:MOST_ALIKE]
     findings = []
-    for mode in view.modes:
-        if mode in modes_that_lose_a_group() or mode in _NOT_CHEMISTRY:
-            continue
-        failed = view.failed_in(mode) & alike
-        if not failed.any():
-            continue
+    for mode, failed in _kinds_of_failure(view, alike).items():
         compare = is_no_more_forcing if mode in _NOTHING_HAPPENED else is_at_least_as_forcing
-        answers = {int(r): compare(profile, view.profile(int(r))) for r in np.flatnonzero(failed)}
+        answers = _compared(view, failed, lambda other, c=compare: c(profile, other))  # type: ignore[misc]
         lost = [r for r, answer in answers.items() if answer is not False]
         if not lost:
             continue
-        mildest = [r for r in lost if answers[r]] or lost
-        others = [int(r) for r in np.flatnonzero(alike & ~view.failed_in(mode))]
-        survived = [
-            r for r in others if any(compare(view.profile(r), view.profile(f)) for f in mildest) and _spoke(view, r)
-        ]
-        finding = _finding(view, mode, lost, survived, centre[0], (centre[1],), all(answers[r] is None for r in lost))
+        decided = [r for r in lost if answers[r]] or lost
+        others = [int(r) for r in alike if int(r) not in answers and _spoke(view, int(r))]
+        survived = _through_as_much(view, others, decided, compare)
+        is_uncertain = all(answers[r] is None for r in lost)
+        finding = _finding(view, mode, lost, survived, centre[0], (centre[1],), is_uncertain)
         if finding is not None:
             findings.append(finding)
     return findings
+
+
+def _kinds_of_failure(view: RecordView, alike: NDArray[np.intp]) -> dict[str, list[int]]:
+    """Return the rows that failed at the centre, by mode; those without a named mode under UNNAMED."""
+    kinds: dict[str, list[int]] = {}
+    for row in map(int, alike):
+        modes = {mode for mode, _ in view.failures[row]}
+        if not modes and view.table.word("verdict", row) == "failed":
+            kinds.setdefault(UNNAMED, []).append(row)
+        for mode in modes - modes_that_lose_a_group() - _NOT_CHEMISTRY:
+            kinds.setdefault(mode, []).append(row)
+    return dict(sorted(kinds.items()))
+
+
+def _compared(
+    view: RecordView, rows: Sequence[int], compare: Callable[[ConditionProfile], bool | None]
+) -> dict[int, bool | None]:
+    """Return what a comparison says of each row's conditions, asked once per distinct profile."""
+    codes = {int(view.table.profile[row]) for row in rows}
+    told = {code: compare(view.profile_of_code(code)) for code in codes}
+    return {row: told[int(view.table.profile[row])] for row in rows}
+
+
+def _through_as_much(view: RecordView, others: Sequence[int], failed: Sequence[int], compare: Compare) -> list[int]:
+    """Return the rows under conditions at least as forcing (or, by `compare`, no more so) as some failed run's."""
+    profiles = [view.profile_of_code(code) for code in {int(view.table.profile[r]) for r in failed}]
+    profiles.sort(key=lambda p: p.temperature_c or 0.0, reverse=compare is is_no_more_forcing)
+    mildest = profiles[:_MILDEST]
+    answers = _compared(view, others, lambda other: any(compare(other, one) for one in mildest))
+    return [row for row in others if answers[row]]
 
 
 def _spoke(view: RecordView, row: int) -> bool:
@@ -111,89 +152,52 @@ def _spoke(view: RecordView, row: int) -> bool:
 
 def _elsewhere(
     view: RecordView,
+    plan: FactTable,
+    similarity: NDArray[np.float64],
     profile: ConditionProfile,
     fragments: Sequence[str],
     skip: Sequence[frozenset[int]],
     products: Sequence[str],
 ) -> list[Finding]:
+    failed = np.zeros(len(view.table), dtype=bool)
+    for mode in modes_that_lose_a_group() & set(view.modes):
+        failed |= view.failed_in(mode)
+    answers = _compared(view, np.flatnonzero(failed).tolist(), lambda other: is_at_least_as_forcing(profile, other))
+    concerns = np.zeros(len(view.table), dtype=bool)
+    concerns[[row for row, answer in answers.items() if answer is not False]] = True
+    wanted = [m for p in products if (m := view.mol(p)) is not None]
     findings: list[Finding] = []
     seen: set[tuple[str, frozenset[int]]] = set()
-    for (mode, smarts), rows in _motifs(view).items():
+    for (mode, smarts), rows in gather_motifs(view, concerns, similarity, fragments).items():
         find = finder_of(smarts)
         for component, smiles in enumerate(fragments):
             mol = view.mol(smiles)
             matches = find(mol) if mol is not None else ()
             match = next(iter(matches), ())
-            wanted = [m for p in products if (m := view.mol(p)) is not None]
-            if wanted and sum(len(find(m)) for m in wanted) < len(matches):
-                continue
             if not match or (mode, frozenset(match)) in seen:
+                continue
+            if wanted and sum(len(find(m)) for m in wanted) < len(matches):
                 continue
             if any(len(frozenset(match) & s) * 2 >= len(match) for s in skip):
                 continue
-            answers = {r: is_at_least_as_forcing(profile, view.profile(r)) for r in rows}
-            lost = [r for r, answer in answers.items() if answer is not False]
-            if not lost:
-                continue
-            survived = [
-                int(r)
-                for r in view.rows_with_motif(smarts)
-                if int(r) not in rows
-                and any(is_at_least_as_forcing(view.profile(int(r)), view.profile(f)) for f in lost)
-                and motif_came_through(view.run(int(r)), find, view.mol)
-            ]
-            unsure = all(answers[r] is None for r in lost)
-            finding = _finding(view, mode, lost, survived, component, tuple(match), unsure)
+            survived = _motif_survived(view, plan, smarts, rows)
+            unsure = all(answers[r] is None for r in rows)
+            finding = _finding(view, mode, rows, survived, component, tuple(match), unsure)
             if finding is not None:
                 seen.add((mode, frozenset(match)))
                 findings.append(finding)
     return findings
 
 
-def _motifs(view: RecordView) -> dict[tuple[str, str], list[int]]:
-    """Gather the motifs of recorded losses, stated or generalised, and the rows that failed by them; kept in the view."""
-    key = "resemblance motifs"
-    if key not in view.memory:
-        gathered: dict[tuple[str, str], list[int]] = {}
-        for row, pairs in enumerate(view.failures):
-            for mode, stated in pairs:
-                if mode not in modes_that_lose_a_group():
-                    continue
-                smarts = stated or _generalised(view, row)
-                if smarts:
-                    gathered.setdefault((mode, smarts), []).append(row)
-        view.memory[key] = gathered
-    motifs: dict[tuple[str, str], list[int]] = view.memory[key]
-    return motifs
-
-
-def _generalised(view: RecordView, row: int) -> str | None:
-    """Work out the motif of a loss from what was found; None where the record does not show it."""
-    run = view.run(row)
-    substrate = view.mol(view.table.substrate[row])
-    found = [p.smiles for p in run.outcome.products if p.fate is Fate.GROUP_LOSS and p.smiles]
-    if substrate is None or not found or (product := view.mol(found[0])) is None:
-        return None
-    lost = lost_atoms(substrate, product)
-    survivors = _survivors(view, row)
-    motif = generalise(substrate, lost, survivors)
-    return motif.smarts if motif else None
-
-
-def _survivors(view: RecordView, row: int, limit: int = 200) -> list[Any]:
-    """Return substrates that came through conditions at least as forcing as those of a failed row."""
-    failed = view.profile(row)
-    mols = []
-    for other in range(len(view.table)):
-        if view.failures[other] or view.table.word("verdict", other) != "worked":
-            continue
-        if view.table.word("fate", other) == "group-loss":
-            continue
-        if is_at_least_as_forcing(view.profile(other), failed) and (mol := view.mol(view.table.substrate[other])):
-            mols.append(mol)
-            if len(mols) >= limit:
-                break
-    return mols
+def _motif_survived(view: RecordView, plan: FactTable, smarts: str, failed: Sequence[int]) -> list[int]:
+    """Return the rows in which a motif came through conditions at least as forcing as some failed run's."""
+    holding = np.setdiff1d(view.rows_with_motif(smarts), np.array(failed, dtype=np.intp))
+    away = np.abs(harsher_by_k(plan, view.table, holding))
+    nearest = holding[np.argsort(away, kind="stable")][:MOST_WITNESSES].tolist()
+    through = _through_as_much(view, nearest, failed, is_at_least_as_forcing)
+    view.fetch(through)
+    find = finder_of(smarts)
+    return [row for row in through if motif_came_through(view.run(row), find, view.mol)]
 
 
 def _finding(
@@ -215,13 +219,14 @@ def _finding(
     first = view.table.codes[lost[0]]
     runs = "run" if len(lost) == 1 else "runs"
     why = f"In {len(lost)} {runs} of this book: {meaning}. {len(survived)} like it came through."
+    view.fetch(lost[:3])
     notes = [run.note.strip() for run in (view.run(r) for r in lost[:3]) if run.note.strip()]
     if notes:
         why += f" Noted then: “{notes[0]}”"
     if is_uncertain:
         why += " Cannot tell whether this plan is as forcing: temperature or components not given."
     return Finding(
-        rule_id=f"resemblance:{mode}:{first}",
+        rule_id=f"resemblance:{mode.replace(', ', '-').replace(' ', '-')}:{first}",
         kind=FindingKind.RESEMBLANCE,
         severity=severity,
         title=f"Like {len(lost)} recorded {'failure' if len(lost) == 1 else 'failures'}: {mode.replace('-', ' ')}",

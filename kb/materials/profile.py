@@ -53,6 +53,7 @@ class ConditionProfile:
         swain_scott_n: Swain-Scott n of that nucleophile, where published.
         reagents: what is in the flask but the substrate and the solvents, for likeness: canonical SMILES of each ion
             or molecule, lone metal cations left out; the name where there is no structure.
+        solvents: names of the solvents, as the catalogue has them, else as written.
     """
 
     reagent_classes: frozenset[str] = frozenset()
@@ -92,3 +93,4 @@ class ConditionProfile:
     nucleophile_class: str | None = None
     swain_scott_n: float | None = None
     reagents: frozenset[str] = frozenset()
+    solvents: frozenset[str] = frozenset()

@@ -143,7 +143,11 @@ def _account(scheme: str, conditions: Conditions, run_id: UUID) -> Account:
         products = tuple(f.smiles_as_entered for f in parsed.products)
     skip = reading.centre.component if reading.centre else 0
     others = [s for i, s in enumerate(fragments) if i != skip]
-    profile = dataclasses.replace(profile_of(conditions, others), reagents=_reagent_keys(conditions, others))
+    profile = dataclasses.replace(
+        profile_of(conditions, others),
+        reagents=_reagent_keys(conditions, others),
+        solvents=_solvent_names(conditions),
+    )
     return Account(
         reading=reading,
         fragments=fragments,
@@ -172,6 +176,17 @@ def _reagent_keys(conditions: Conditions, drawn: list[str]) -> frozenset[str]:
     for component in conditions.components:
         keys |= _parts_of(component.smiles) if component.smiles else {component.name.strip().lower()}
     return frozenset(keys)
+
+
+def _solvent_names(conditions: Conditions) -> frozenset[str]:
+    """Return what the solvents are called; see `ConditionProfile.solvents`."""
+    from kb.materials.names import by_smiles
+
+    names = set()
+    for solvent in conditions.solvents:
+        entry = by_smiles(solvent.smiles, "solvent") if solvent.smiles else None
+        names.add(entry.name if entry is not None else solvent.name.strip())
+    return frozenset(names)
 
 
 @lru_cache(maxsize=4096)

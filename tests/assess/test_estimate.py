@@ -8,7 +8,15 @@ from scipy import stats
 from tables_by_hand import facts, table_of
 
 from kb.assess.estimate import beta_interval, estimate, loss_chance
+from kb.record.finding import Interval
 from kb.vocabulary import Basis, Fate
+
+
+def prior(substitution: float) -> dict[Fate, Interval]:
+    return {
+        Fate.SUBSTITUTION: Interval(mean=substitution, low=max(substitution - 0.15, 0), high=min(substitution + 0.15, 1)),
+        Fate.ELIMINATION: Interval(mean=1 - substitution, low=0, high=1),
+    }
 
 
 def runs(*shares: float, yield_pct: float | None = None):  # type: ignore[no-untyped-def]
@@ -49,34 +57,23 @@ def test_a_disagreement_is_said_in_words() -> None:
 
 def test_shares_sum_to_one() -> None:
     table = runs(0.7, 0.9)
-    result = estimate(np.ones(2), table, {Fate.SUBSTITUTION: 0.5, Fate.ELIMINATION: 0.5})
+    result = estimate(np.ones(2), table, prior(0.5))
     assert sum(i.mean for _, i in result.fates) == pytest.approx(1, abs=1e-3)
 
 
 def test_far_runs_have_no_say_and_nothing_is_invented() -> None:
-    result = estimate(np.full(3, 0.2), runs(0.7, 0.9, 0.8), None, None, "Bridgehead: neither way is open.")
+    result = estimate(np.full(3, 0.2), runs(0.7, 0.9, 0.8), None, "Bridgehead: neither way is open.")
     assert result.fates == ()
     assert result.basis is Basis.NONE
     assert result.note == "Bridgehead: neither way is open."
 
 
 def test_near_runs_outweigh_the_prior_and_far_ones_do_not() -> None:
-    prior = {Fate.SUBSTITUTION: 0.1, Fate.ELIMINATION: 0.9}
-    near = main(estimate(np.ones(4), runs(0.9, 0.9, 0.9, 0.9), prior))[0]
-    far = main(estimate(np.full(4, 0.45), runs(0.9, 0.9, 0.9, 0.9), prior))[0]
+    near = main(estimate(np.ones(4), runs(0.9, 0.9, 0.9, 0.9), prior(0.1)))[0]
+    far = main(estimate(np.full(4, 0.45), runs(0.9, 0.9, 0.9, 0.9), prior(0.1)))[0]
     assert near > 0.75 > far
 
 
 def test_a_split_that_does_not_add_up_is_scaled() -> None:
     table = table_of((facts(), {"substitution": 0.6, "elimination": 0.3}, None, "worked"))
     assert main(estimate(np.ones(1), table))[0] == pytest.approx(2 / 3, abs=1e-3)
-
-
-def test_yield_lies_between_0_and_100_even_from_a_wet_product() -> None:
-    result = estimate(np.ones(3), runs(0.9, 0.9, 0.9, yield_pct=118.0))
-    assert result.yield_pct is not None
-    assert 0 <= result.yield_pct.low <= result.yield_pct.mean <= result.yield_pct.high <= 100
-
-
-def test_no_yield_recorded_gives_no_yield() -> None:
-    assert estimate(np.ones(2), runs(0.9, 0.8)).yield_pct is None

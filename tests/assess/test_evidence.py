@@ -7,7 +7,9 @@ from rdkit import Chem
 from tables_by_hand import facts, table_of, view_of
 
 from kb.assess.estimate import loss_chance
-from kb.assess.evidence import count_evidence, finder_of, motif_came_through, weighed_severity, word_evidence
+from kb.assess.evidence import count_evidence, weighed_severity, word_evidence
+from kb.assess.evidence_motif import finder_of, motif_came_through
+from kb.assess.table import one_row
 from kb.materials.profile import ConditionProfile
 from kb.record.finding import Evidence
 from kb.record.outcome import Failure, Outcome, ProductSeen
@@ -56,7 +58,7 @@ def test_counts_run_codes_and_the_temperature_that_divides_them() -> None:
     ]
     view = view_of(table_of(*rows), [ConditionProfile()] * 3, [()] * 3, records)
     lost, survived = count_evidence(view, range(3), TBU_ETHER)
-    evidence = word_evidence(view, lost, survived, 60.0)
+    evidence = word_evidence(view, lost, survived, one_row(facts(temperature_c=60.0)))
     assert (evidence.lost, evidence.survived) == (2, 1)
     assert evidence.runs == ("R-1", "R-2", "R-3")
     assert "survived at 0 °C and below" in evidence.note

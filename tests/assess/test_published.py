@@ -112,7 +112,7 @@ def test_what_is_not_known_stays_so() -> None:
         ("CC(C)(C)OC(=O)NCc1ccccc1>>NCc1ccccc1", "another kind"),
         ("C=CC>>CC(C)Br", "no published rates"),
         ("not a scheme", "no published rates"),
-        ("C=CBr", "another kind"),
+        ("C=CBr", "vinyl"),
         ("Brc1ccccc1", "aryl"),
     ],
 )

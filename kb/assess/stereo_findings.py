@@ -1,0 +1,70 @@
+"""What becomes of a drawn stereocentre at the reacting carbon, as a finding.
+
+It owns the words and severities; the outcome itself is `kb.physorg.stereo`. Inversion is what a chemist expects of a
+displacement and is a note; a centre that is likely to lose its configuration through a cation or an ion pair is a
+caution. Where a liability rule has already said that the centre racemises, only a note is added.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Collection
+
+from kb.assess.published import PublishedEstimate
+from kb.record.finding import Finding
+from kb.store.derivation import Account
+from kb.vocabulary import Fate, FindingKind, Severity
+
+LEAST_SUBSTITUTION = 0.05
+"""Share of substitution below which its stereochemistry is not worth a line; judgement."""
+_SAID_BY_RULE = frozenset({"ion-pair-racemisation", "thionyl-chloride-stereochemistry"})
+_TITLES = {
+    "inversion": "The drawn centre inverts",
+    "mostly inversion": "The drawn centre mostly inverts",
+    "racemisation with some inversion": "The drawn centre loses most of its configuration",
+    "racemisation": "The drawn centre racemises",
+    "unsettled": "Configuration at the drawn centre cannot be told",
+}
+_KEPT = frozenset({"inversion", "mostly inversion"})
+
+
+def find_stereo_findings(
+    account: Account, published: PublishedEstimate, rules_fired: Collection[str]
+) -> tuple[Finding, ...]:
+    """Return what to expect of the configuration at a drawn centre; nothing where none is drawn or none substitutes.
+
+    Args:
+        account: the plan, read.
+        published: what published chemistry expects of it.
+        rules_fired: ids of the liabilities that fired.
+    """
+    stereo, centre = published.stereo, account.reading.centre
+    if stereo is None or centre is None or account.reading.fate not in (None, Fate.SUBSTITUTION):
+        return ()
+    substituted = dict(published.fates).get(Fate.SUBSTITUTION)
+    if substituted is None or substituted.mean < LEAST_SUBSTITUTION:
+        return ()
+    is_told = bool(_SAID_BY_RULE & set(rules_fired))
+    is_kept = stereo.word in _KEPT
+    net = stereo.net_inversion
+    return (
+        Finding(
+            rule_id=f"stereo:{stereo.word.replace(' ', '-')}",
+            kind=FindingKind.LIABILITY,
+            severity=Severity.NOTE if is_kept or is_told else Severity.CAUTION,
+            title=_TITLES[stereo.word],
+            why=(
+                f"{stereo.why} Net inversion of the substituted product, from 1 (all inverted) over 0 (racemic) to -1 "
+                f"(all retained): {net.mean:.2f} ({net.low:.2f} to {net.high:.2f})."
+            ),
+            component=centre.component,
+            atoms=(centre.atom,),
+            do_instead=()
+            if is_kept
+            else (
+                "a better nucleophile in a dipolar aprotic solvent",
+                "a less ionising solvent and no acid, Lewis acid or silver",
+                "carry the configuration in later, or check ee before going on",
+            ),
+            source="; ".join(stereo.sources),
+        ),
+    )
