@@ -70,6 +70,27 @@ def tanimoto(one: bytes, other: bytes) -> float:
     return (a & b).bit_count() / union if union else 0.0
 
 
+def tanimoto_to_each(one: bytes, packed: bytes) -> NDArray[np.float64]:
+    """Return the Tanimoto coefficient of one packed fingerprint to each of many (n,) float64.
+
+    Args:
+        one: as `pack_morgan` gives it.
+        packed: n fingerprints of the same length, one behind the other.
+    """
+    rows = np.frombuffer(packed, "<u8").reshape(-1, len(one) // 8)
+    query = np.frombuffer(one, "<u8")
+    shared = _ones(rows & query)
+    union = _ones(rows | query)
+    return np.divide(shared, union, out=np.zeros(len(rows)), where=union > 0)
+
+
+def _ones(words: NDArray[np.uint64]) -> NDArray[np.int64]:
+    """Return how many bits are set in each row of words (n, w)."""
+    if hasattr(np, "bitwise_count"):
+        return np.bitwise_count(words).sum(axis=1, dtype=np.int64)
+    return np.unpackbits(words.view(np.uint8), axis=1).sum(axis=1, dtype=np.int64)
+
+
 def popcount_bounds(bits_set: int, at_least: float) -> tuple[int, int]:
     """Return the fewest and the most bits that a fingerprint of that similarity can have.
 

@@ -15,11 +15,11 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from kb.progress import Progress
-from kb.search.columns import role_code
 from kb.search.conditions import narrow_by_conditions
 from kb.search.criteria import Criteria, Order
 from kb.search.live import LiveRecord
 from kb.search.result import FindItem, FindResult
+from kb.store.searching import substrate_fingerprints
 from kb.vocabulary import Role
 
 if TYPE_CHECKING:
@@ -62,7 +62,7 @@ class Finder:
             answer = _Answer(self.live, deadline_s, progress)
             rows = answer.ordered(answer.runs(criteria, self.live.columns.alive.copy()), criteria)
             first = (criteria.page - 1) * criteria.limit
-            items = tuple(answer.item(row) for row in rows[first : first + criteria.limit].tolist())
+            items = answer.items(rows[first : first + criteria.limit].tolist())
         return FindResult(
             total=len(rows),
             page=criteria.page,
@@ -103,21 +103,14 @@ class Finder:
         """
         from rdkit import Chem
 
+        from kb.chem.fingerprint import pack_morgan, tanimoto_to_each
+
         mol = Chem.MolFromSmiles(smiles) if smiles else None
         if mol is None:
             return None
-        with self.live.lock:
-            self.live.follow()
-            index = self.live.index()
-            scores = index.scores(mol)
-            columns = self.live.columns
-            rows = self.live.place_rows
-            chosen = (rows >= 0) & (columns.place_role == role_code(Role.SUBSTRATE))
-            by_row = np.full(len(columns), np.nan)
-            by_row[columns.place_row[chosen]] = scores[rows[chosen]]
-            row_of = {columns.codes[row]: row for row in np.flatnonzero(columns.alive).tolist()}
-        found = [row_of.get(code, -1) for code in codes]
-        return np.array([by_row[row] if row >= 0 else np.nan for row in found], np.float64)
+        found, packed = substrate_fingerprints(self.store.book, self.store.book.deriving.recipe)
+        score_of = dict(zip(found, tanimoto_to_each(pack_morgan(mol), packed).tolist(), strict=True))
+        return np.array([score_of.get(code, np.nan) for code in codes], np.float64)
 
 
 class _Answer:
@@ -185,8 +178,16 @@ class _Answer:
             keys = newest if scores is None else (*newest, -scores[rows])
         return rows[np.lexsort(keys)]
 
-    def item(self, row: int) -> FindItem:
-        """Return one run of the answer, with where it matched."""
+    def items(self, rows: list[int]) -> tuple[FindItem, ...]:
+        """Return some runs of the answer, with where they matched."""
+        if self._parts:
+            columns = self.live.columns
+            ends = [np.searchsorted(columns.place_row, (row, row + 1)) for row in rows]
+            shown = [int(i) for low, high in ends for i in columns.place_structure[low:high]]
+            self.live.fetch_smiles(list(dict.fromkeys(shown)))
+        return tuple(self._item(row) for row in rows)
+
+    def _item(self, row: int) -> FindItem:
         matched = next((found for part in self._parts if (found := part.where(row)) is not None), None)
         scores = self._scores()
         return FindItem(

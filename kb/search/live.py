@@ -15,7 +15,7 @@ import numpy as np
 from kb.errors import Cancelled
 from kb.progress import Progress, Silent
 from kb.search.columns import RunColumns
-from kb.store.searching import iter_blobs, read_runs, smiles_of, vocabulary
+from kb.store.searching import iter_blobs, last_structure_id, read_runs, smiles_of, vocabulary
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -48,6 +48,7 @@ class LiveRecord:
         self._version = -1
         self._tip: int | None = None
         self._words: tuple[int, list[str]] = (-1, [])
+        self._smiles: dict[int, str] = {}
         self._place_rows: NDArray[np.int64] = np.zeros(0, np.int64)
 
     def follow(self) -> None:
@@ -71,7 +72,8 @@ class LiveRecord:
             if self._index is None:
                 from kb.search.index import StructureIndex
 
-                self._index = StructureIndex(threads=self._threads)
+                room = last_structure_id(self.store.book)
+                self._index = StructureIndex(reserve=room, threads=self._threads)
             index = self._index
             if self._index_version != self._version:
                 after = int(index.ids[-1]) if len(index) else 0
@@ -96,6 +98,12 @@ class LiveRecord:
             self._words = (self._version, sorted(vocabulary(self.store.book)))
         return self._words[1]
 
-    def smiles(self, structure_ids: Sequence[int]) -> dict[int, str]:
-        """Return the SMILES of some structures."""
-        return smiles_of(self.store.book, structure_ids)
+    def smiles(self, structure_id: int) -> str:
+        """Return the SMILES of a structure; those of a page are best fetched together first."""
+        if structure_id not in self._smiles:
+            self.fetch_smiles([structure_id])
+        return self._smiles[structure_id]
+
+    def fetch_smiles(self, structure_ids: Sequence[int]) -> None:
+        """Read the SMILES of some structures in one go, in place of those read before."""
+        self._smiles = smiles_of(self.store.book, structure_ids)

@@ -80,7 +80,7 @@ class Part(ABC):
         return MatchedAt(
             component=int(columns.place_position[place]),
             role=ROLES[columns.place_role[place]],
-            smiles=self.live.smiles([structure_id])[structure_id],
+            smiles=self.live.smiles(structure_id),
             atoms=atoms,
         )
 

@@ -24,7 +24,8 @@ if TYPE_CHECKING:
 
 BLOCK_ROWS = 4096
 BLOCK_WORDS = 64
-_GROWTH = 1.125
+_GROWTH = 1.5
+"""Factor by which planes grow; pages that no row has touched yet are not in memory."""
 _STAGES = (
     (32, np.uint64(0x00000000FFFFFFFF)),
     (16, np.uint64(0x0000FFFF0000FFFF)),

@@ -19,6 +19,7 @@ from kb.store import history, runs
 from kb.store.rows import RecipeRow
 from kb.store.session import CHANGES, OpenBook
 from kb.store.words import COLUMNS
+from kb.vocabulary import Role
 
 _KEYS_AT_ONCE = 10_000
 _WORD_COLUMNS = " ".join(name for name in COLUMNS if name != "scheme")
@@ -32,6 +33,10 @@ _COMPONENTS = "SELECT t.run_key, t.role, t.name, t.smiles FROM component t"
 _SOLVENTS = "SELECT t.run_key, t.name, t.smiles FROM solvent t"
 _FAILURES = "SELECT t.run_key, t.mode FROM failure t"
 _PLACES = "SELECT t.run_key, t.role, t.position, t.structure_id FROM run_structure t"
+_SUBSTRATES = """SELECT run.code, structure.morgan, recipe.name FROM run_structure place
+    JOIN run ON run.run_key = place.run_key JOIN structure ON structure.structure_id = place.structure_id
+    LEFT JOIN recipe ON recipe.recipe_id = structure.recipe_id
+    WHERE place.role = :role AND run.withdrawn_why IS NULL AND structure.morgan IS NOT NULL"""
 _STRUCTURES = """SELECT structure_id, recipe_id, mol_binary, augmented, morgan FROM structure
     WHERE structure_id > :after ORDER BY structure_id LIMIT :batch"""
 
@@ -80,7 +85,13 @@ def read_runs(book: OpenBook, since_tip: int | None = None) -> RunBatch:
         )
 
 
-def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 8192) -> Iterator[list[list[Any]]]:
+def last_structure_id(book: OpenBook) -> int:
+    """Return the highest structure id; 0 = none. Ids start at 1 and are never given twice."""
+    with book.reading() as connection:
+        return connection.execute(sa.text("SELECT max(structure_id) FROM structure")).scalar() or 0
+
+
+def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 16384) -> Iterator[list[list[Any]]]:
     """Yield structures with an id beyond `after`, ascending, in batches, all as of one moment.
 
     Args:
@@ -105,12 +116,25 @@ def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 8192) -
             after = rows[-1][0]
             usable = [row for row in rows if row[2] is not None]
             if recipe and any(row[1] != good for row in usable):
-                raise IndexStale(
-                    "Structures in the book were encoded by another recipe.", "Rebuild them: `sidepath migrate`."
-                )
+                raise _stale()
             if usable:
                 ids, _, *blobs = zip(*usable, strict=True)
                 yield [list(ids), *(list(column) for column in blobs)]
+
+
+def substrate_fingerprints(book: OpenBook, recipe: str) -> tuple[list[str], bytes]:
+    """Return the codes of the standing runs that have a substrate, and its Morgan fingerprint for each, packed.
+
+    A check needs no more of the structures than this, so it is spared reading all of them.
+
+    Raises:
+        IndexStale: a structure was encoded by another recipe.
+    """
+    with book.reading() as connection:
+        rows = connection.execute(sa.text(_SUBSTRATES), {"role": str(Role.SUBSTRATE)}).all()
+    if recipe and any(name != recipe for name in {row[2] for row in rows}):
+        raise _stale()
+    return [row[0] for row in rows], b"".join(row[1] for row in rows)
 
 
 def smiles_of(book: OpenBook, structure_ids: Sequence[int]) -> dict[int, str]:
@@ -163,6 +187,12 @@ def vocabulary(book: OpenBook) -> list[str]:
             return [row[0] for row in connection.exec_driver_sql("SELECT term FROM temp.run_terms")]
         except sa.exc.DatabaseError as error:
             raise StoreError("The word index cannot be read.", "Run `sidepath verify`.") from error
+
+
+def _stale() -> IndexStale:
+    return IndexStale(
+        "Structures in the book were encoded by another recipe.", "Rebuild them: `sidepath migrate`."
+    )
 
 
 def _fetch(connection: sa.Connection, statement: str, table: str, keys: list[int] | None) -> list[Any]:

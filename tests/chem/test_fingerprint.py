@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import numpy as np
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
@@ -15,6 +16,7 @@ from kb.chem.fingerprint import (
     pack_pattern,
     popcount_bounds,
     tanimoto,
+    tanimoto_to_each,
 )
 
 SMILES = ("CCBr", "c1ccccc1CBr", "CC(C)(C)OC(=O)NCCO", "OS(=O)(=O)c1ccc(C)cc1", "C[C@H](Br)CC", "[Na+].[Cl-]")
@@ -36,6 +38,14 @@ def test_tanimoto_is_that_of_rdkit_for_every_pair() -> None:
                 morgan_generator().GetFingerprint(one), morgan_generator().GetFingerprint(other)
             )
             assert tanimoto(pack_morgan(one), pack_morgan(other)) == pytest.approx(want)
+
+
+def test_one_against_many_is_one_against_each(monkeypatch: pytest.MonkeyPatch) -> None:
+    packed = [pack_morgan(Chem.MolFromSmiles(s)) for s in SMILES] + [bytes(MORGAN_BITS // 8)]
+    want = [tanimoto(packed[0], other) for other in packed]
+    assert tanimoto_to_each(packed[0], b"".join(packed)).tolist() == pytest.approx(want)
+    monkeypatch.delattr(np, "bitwise_count", raising=False)  # numpy before 2.0
+    assert tanimoto_to_each(packed[0], b"".join(packed)).tolist() == pytest.approx(want)
 
 
 def test_two_empty_fingerprints_have_nothing_in_common() -> None:

@@ -9,7 +9,9 @@ from hypothesis import strategies as st
 from kb.errors import QueryError
 from kb.search.words import MAX_WORDS, alike, bend, fold, is_known, split_words
 
-BOOK = sorted(["alkene", "chromatography", "crystallised", "dimethylformamide", "emulsion", "filtered", "meoh", "mesylate"])
+BOOK = sorted(
+    ["alkene", "chromatography", "crystallised", "dimethylformamide", "emulsion", "filtered", "meoh", "mesylate"]
+)
 
 
 @pytest.mark.parametrize(
