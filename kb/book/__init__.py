@@ -14,10 +14,18 @@ if TYPE_CHECKING:
     from kb.book.find_words import criteria_from_words
     from kb.book.keeping import create_book, migrate_book, restore_book
     from kb.book.materials_words import lookup_material
+    from kb.book.pages import page_of, plan_from_file, save_page, thing_named
     from kb.book.plan_words import conditions_from_words, plan_from_words
+    from kb.book.routes import reckon_route, route_lead
     from kb.book.run_words import runs_from_json
     from kb.book.split_words import SplitAnswer, split_from_words
     from kb.book.unrecorded import check_unrecorded
+    from kb.book.whole import (
+        adopt_proposal,
+        find_recurring_failures,
+        measure_book_coverage,
+        replay_book,
+    )
     from kb.book.words import (
         check_scheme,
         house_rule,
@@ -32,6 +40,16 @@ if TYPE_CHECKING:
     )
 
 _HOMES = {
+    "adopt_proposal": "whole",
+    "find_recurring_failures": "whole",
+    "measure_book_coverage": "whole",
+    "replay_book": "whole",
+    "reckon_route": "routes",
+    "route_lead": "routes",
+    "page_of": "pages",
+    "plan_from_file": "pages",
+    "save_page": "pages",
+    "thing_named": "pages",
     "Book": "facade",
     "SplitAnswer": "split_words",
     "open_book": "facade",
@@ -61,6 +79,7 @@ _HOMES = {
 __all__ = [
     "Book",
     "SplitAnswer",
+    "adopt_proposal",
     "build_demo",
     "check_scheme",
     "check_unrecorded",
@@ -68,21 +87,30 @@ __all__ = [
     "create_book",
     "criteria_from_words",
     "demo_plan",
+    "find_recurring_failures",
     "house_rule",
     "iter_scheme_column",
     "lookup_material",
+    "measure_book_coverage",
     "migrate_book",
     "open_book",
     "outcome_from_words",
+    "page_of",
     "parse_date",
     "parse_fate",
     "parse_run_date",
+    "plan_from_file",
     "plan_from_words",
     "read_scheme",
+    "reckon_route",
+    "replay_book",
     "restore_book",
+    "route_lead",
     "runs_from_json",
+    "save_page",
     "scheme_from_argument",
     "split_from_words",
+    "thing_named",
     "today",
 ]
 

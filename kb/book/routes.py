@@ -7,6 +7,7 @@ scatter between repeats (REPEAT_SD_PCT, or that of the runs named, whichever is 
 from __future__ import annotations
 
 import dataclasses
+from collections.abc import Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -26,16 +27,32 @@ REPEAT_SD_PCT = 5.0
 _WIDEST = Interval(mean=50.0, low=10.0, high=90.0)
 
 
-def reckon_route(book: Book, path: Path) -> Ledger:
+def reckon_route(book: Book, path: Path, what_if: Sequence[str] = ()) -> Ledger:
     """Read a route file, look its yields up in the book, and reckon it.
+
+    Args:
+        what_if: "STEP=PCT": another yield to reckon with.
 
     Raises:
         ImportFileError, InvalidRecord, QuantityError, NameUnknown, RecordNotFound: as their names say.
     """
-    from kb.route.ledger import reckon
-    from kb.route.routefile import read_route
+    from kb.route.ledger import reckon, with_yield
+    from kb.route.routefile import parse_yield, read_route
 
-    return reckon(resolve_route(book, read_route(path)))
+    route = resolve_route(book, read_route(path))
+    for text in what_if:
+        step, equals, pct = text.rpartition("=")
+        if not equals:
+            raise InvalidRecord(f"{text!r} names no step and yield.", "Write it as STEP=PCT, such as amine=90.", text)
+        route = with_yield(route, step.strip(), parse_yield(pct, f"The yield of {step.strip()!r}").mean)
+    return reckon(route)
+
+
+def route_lead(ledger: Ledger) -> str:
+    """Return the answer of a route in two or three sentences."""
+    from kb.exchange.report_route import route_lead as lead
+
+    return lead(ledger)
 
 
 def resolve_route(book: Book, draft: RouteDraft) -> Route:

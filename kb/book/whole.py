@@ -1,7 +1,7 @@
 """The record as a whole, asked through an open book: recurring failures, replay, coverage, and a route's estimates.
 
 It owns the wiring of `kb.audit` and `kb.route` to a book: where runs and rules come from, how a replay is spread over
-processes and kept in a file. It judges nothing. Everything here only reads, but `adopt` which writes one house rule.
+processes and kept in a file. It judges nothing. Everything here only reads, but `adopt_proposal`, which writes one house rule.
 """
 
 from __future__ import annotations
@@ -50,7 +50,7 @@ def find_recurring_failures(
     return find_recurring(book.view(), _circumstances(book), book.rules(), since, progress)
 
 
-def adopt(book: Book, proposal: Proposal, *, who: str) -> HouseRule:
+def adopt_proposal(book: Book, proposal: Proposal, *, who: str) -> HouseRule:
     """Adopt a proposed house rule and return it with its id; it is signed by whoever adopts it."""
     return book.add_rule(replace(proposal.rule, author=who))
 

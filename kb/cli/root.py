@@ -8,11 +8,14 @@ from typing import Annotated, Optional
 import typer
 
 from kb.cli import (
+    audit_commands,
     book_commands,
     check_command,
     find_command,
     look_commands,
     record_commands,
+    report_commands,
+    route_commands,
     rule_commands,
     split_command,
 )
@@ -21,7 +24,7 @@ from kb.cli.strict import make_strict
 
 ORDER = (
     *("demo", "new", "read", "check", "record"),
-    *("runs", "show", "history", "amend", "withdraw", "find", "split", "lookup"),
+    *("runs", "show", "history", "amend", "withdraw", "find", "split", "lookup", "route", "report"),
     *("import", "export", "merge", "backup", "restore", "verify", "migrate", "tui"),
 )
 """Commands in the order of a working day; others follow as they are registered."""
@@ -72,6 +75,9 @@ for _module in (
     find_command,
     rule_commands,
     split_command,
+    route_commands,
+    report_commands,
+    audit_commands,
 ):
     _module.register(app)
 _place = {name: number for number, name in enumerate(ORDER)}

@@ -124,7 +124,7 @@ class Ledger:
         needed: main starting material first.
         cost: of all priced materials and steps, at the mean yields; None = nothing has a price.
         weakest: the improvement that would buy most; None = every step is forgiven or perfect.
-        reckoned_in: "mmol", "g" or the word for money.
+        reckoned_in: "mmol", "g", or the word for money ("cost units" where none was given).
     """
 
     route: Route
@@ -292,7 +292,7 @@ def _value(route: Route, inputs: Mapping[str, float], materials: Mapping[str, fl
     """Return what a route takes, in money where anything has a price, else in grams, else in mmol of all materials."""
     cost = _cost(route, inputs, materials)
     if cost is not None:
-        return cost, route.money or "money"
+        return cost, route.money or "cost units"
     masses = [_material(route, name).molar_mass for name in materials]
     if all(m is not None for m in masses):
         return sum(mmol * (m or 0) / 1000 for mmol, m in zip(materials.values(), masses, strict=True)), "g"

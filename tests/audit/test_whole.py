@@ -8,7 +8,7 @@ from pathlib import Path
 import pytest
 
 from kb.book import Book, open_book
-from kb.book.whole import adopt, find_recurring_failures, measure_book_coverage, replay_book
+from kb.book.whole import adopt_proposal, find_recurring_failures, measure_book_coverage, replay_book
 from kb.errors import InvalidRecord
 
 LATE = dt.date(2025, 6, 1)
@@ -58,7 +58,7 @@ def test_an_adopted_proposal_warns_and_is_then_named(demo: Book, tmp_path: Path)
     with open_book(copy) as book:
         cluster = next(c for c in find_recurring_failures(book).clusters if c.name == "group-loss/tertiary-alkyl-ester")
         assert cluster.proposal is not None
-        rule = adopt(book, cluster.proposal, who="MK")
+        rule = adopt_proposal(book, cluster.proposal, who="MK")
         assert (rule.author, rule.when) == ("MK", cluster.proposal.rule.when)
         again = next(c for c in find_recurring_failures(book).clusters if c.name == cluster.name)
         assert again.covered_by == ((rule.rule_id, len(cluster.runs)),)

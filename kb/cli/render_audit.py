@@ -1,0 +1,184 @@
+"""Audits and routes as text for a terminal: the answer first, then the figures behind it.
+
+It owns what a terminal shows of them; the pages (`--html`) show all. Everything that came from a person is made safe by the
+functions of `render`.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from kb.cli.render import bar, counted, heading, severity_word, table, wrapped
+from kb.vocabulary import Severity
+
+if TYPE_CHECKING:
+    from kb.audit.coverage import Coverage
+    from kb.audit.recurrence import Cluster, Recurrence
+    from kb.audit.replay_report import ReplayReport
+    from kb.record.finding import Interval
+    from kb.route.ledger import Ledger
+
+FEW = 8
+"""Clusters shown without --verbose."""
+
+
+def render_recurring(found: Recurrence, *, verbose: bool = False) -> str:
+    """Return the recurring failures, costliest first, numbered for `--adopt`."""
+    since = f" since {found.since}" if found.since else ""
+    lines = wrapped(
+        f"{counted(found.failures, 'failure')}{since} in {counted(found.runs, 'run')}; {found.in_clusters} of them "
+        f"recur, as {counted(len(found.clusters), 'kind')}. {found.unplaced} do not say what was hit."
+    )
+    shown = found.clusters if verbose else found.clusters[:FEW]
+    for number, cluster in enumerate(shown, 1):
+        lines += ["", *_cluster(cluster, number, verbose=verbose)]
+    left = len(found.clusters) - len(shown)
+    if left:
+        lines += ["", f"and {left} more: --verbose shows all, --html FILE draws them"]
+    return "\n".join(lines)
+
+
+def _cluster(c: Cluster, number: int, *, verbose: bool) -> list[str]:
+    lines = wrapped(c.title, 4, first=f"{number:>2}  ")
+    span = f"{c.first} to {c.last}" if c.first else "not dated"
+    lines += wrapped(f"{counted(len(c.runs), 'run')}, {span}; {len(c.came_through)} came through at the same place", 4)
+    cost = []
+    if c.lost_mmol_runs:
+        cost.append(f"{c.lost_mmol:.3g} mmol lost over the {c.lost_mmol_runs} that record a scale")
+    if c.days_runs:
+        cost.append(f"{c.days:.3g} days of reaction time")
+    if cost:
+        lines += wrapped("; ".join(cost), 4)
+    if c.repeats:
+        first, earlier = c.repeats[-1]
+        lines += wrapped(f"{len(c.repeats)} had an earlier record (the last: {first} after {earlier})", 4)
+    if c.covered_by:
+        lines += wrapped("house rules: " + ", ".join(f"{rule} warns of {n}" for rule, n in c.covered_by), 4)
+    if c.proposal is not None:
+        rule, trial = c.proposal.rule, c.proposal.trial
+        lines += wrapped(f"proposed rule: when {rule.when}" + (f"; motif {rule.motif}" if rule.motif else ""), 4)
+        lines += wrapped(
+            f"on this book it warns of {counted(len(trial.hits), 'failure')}, with "
+            f"{counted(len(trial.false_alarms), 'false alarm')}; adopt it with --adopt {number}",
+            4,
+        )
+    if verbose:
+        lines += wrapped("projects: " + (", ".join(f"{p} {n}" for p, n in c.projects) or "not recorded"), 4)
+        lines += wrapped("runs: " + ", ".join(c.runs), 4)
+    return lines
+
+
+def render_replay(report: ReplayReport, *, verbose: bool = False) -> str:
+    """Return what a replay came to."""
+    lines = ["Stopped before the end; these are the runs that were checked.", ""] if report.stopped else []
+    lines += wrapped(
+        f"Each of {counted(len(report.runs), 'run')} was checked against what stood in the book that morning. "
+        f"{report.warned} of {counted(report.failures, 'failure')} would have been warned of "
+        f"({report.warned_by_record} by recorded losses or house rules), {report.missed} not; "
+        f"{report.false_alarms} of {counted(report.successes, 'success', 'successes')} would have been warned of too."
+    )
+    lines += ["", heading("With 80 % intervals")]
+    for name, share in (
+        ("failures warned of", report.recall),
+        ("warnings that were right", report.precision),
+        ("successes warned of", report.false_alarm_share),
+    ):
+        if share is not None:
+            lines.append(f"  {name:<26}{bar(share.mean):<20}  {_share(share)}")
+    lines += ["", heading("By failure mode")]
+    rows = [(m.mode.replace("-", " "), str(m.failures), str(m.warned), _share(m.share)) for m in report.by_mode]
+    lines += table(rows, ("mode", "failures", "warned of", "share"), (20, 8, 9, 24))
+    lines += ["", heading("Over time")]
+    periods = [
+        (p.name, str(p.failures), str(p.warned), str(p.successes), str(p.false_alarms)) for p in report.periods
+    ]
+    lines += table(periods, ("quarter", "failures", "warned of", "successes", "false alarms"), (8, 8, 9, 9, 12))
+    lines += ["", heading("Other thresholds on the worry")]
+    points = report.curve if verbose else report.curve[:: max(1, len(report.curve) // 10)]
+    thresholds = [
+        (
+            f"{p.threshold:.2f}",
+            f"{100 * p.recall:.0f} %",
+            "none" if p.precision is None else f"{100 * p.precision:.0f} %",
+            str(p.false_alarms),
+        )
+        for p in points
+    ]
+    lines += table(thresholds, ("from", "failures warned", "warnings right", "false alarms"), (6, 15, 14, 12))
+    if verbose:
+        missed = [f"{r.run} ({', '.join(r.modes)})" for r in report.runs if r.failed and not r.warned]
+        lines += ["", *wrapped("Missed: " + (", ".join(missed) or "none"))]
+    if report.undated or report.unjudged:
+        lines += ["", *wrapped(f"Left out: {report.undated} undated, {report.unjudged} that do not say how they went.")]
+    return "\n".join(lines)
+
+
+def render_coverage(coverage: Coverage, *, verbose: bool = False) -> str:
+    """Return the cells, contradictions and experiments."""
+    lines = wrapped(
+        f"{counted(coverage.runs, 'run')} in {counted(len(coverage.cells), 'combination')}; {coverage.thin} hold two "
+        f"runs or fewer, {len(coverage.contradictions)} contradict themselves."
+    )
+    lines += ["", heading("Experiments that would teach most")]
+    for number, e in enumerate(coverage.experiments, 1):
+        lines += wrapped(e.words + (f" (like {e.like})" if e.like else ""), 5, first=f"{number:>3}  ")
+        lines += wrapped(f"{e.why} Its own doubt: ±{100 * e.before:.0f} points now, ±{100 * e.after:.0f} after.", 5)
+    if coverage.contradictions:
+        lines += ["", heading("Like flasks that disagree")]
+        for c in coverage.contradictions if verbose else coverage.contradictions[:FEW]:
+            lines += wrapped(
+                f"{', '.join(c.cell)}: {100 * c.low:.0f} % ({c.low_run}) against {100 * c.high:.0f} % ({c.high_run})", 2
+            )
+    lines += ["", heading("Fullest combinations")]
+    rows = [
+        (
+            c.carbon_class,
+            c.leaving_group,
+            c.reagent,
+            c.solvent,
+            str(c.runs),
+            "" if c.best is None else f"{100 * c.best:.0f} %",
+            "" if c.mean is None else f"{100 * c.mean:.0f}" + ("" if c.spread is None else f"±{100 * c.spread:.0f}"),
+        )
+        for c in (coverage.cells if verbose else coverage.cells[:20])
+    ]
+    header = ("carbon", "leaving", "reagent", "solvent", "runs", "best", "mean")
+    return "\n".join([*lines, *table(rows, header, (10, 12, 16, 13, 4, 5, 7))])
+
+
+def render_route(ledger: Ledger, lead: str, *, verbose: bool = False) -> str:
+    """Return a ledger: the answer, the steps, what goes in."""
+    lines = [heading(ledger.route.title), *wrapped(lead, 2), "", heading("Steps")]
+    for number, e in enumerate(ledger.entries, 1):
+        y = e.step.yield_pct
+        lines += wrapped(f"{e.step.name}: {_percent(y.pct)} ({y.basis}: {y.note})", 5, first=f"{number:>3}  ")
+        lines += wrapped(f"{e.input_mmol:.3g} mmol in, {e.product_mmol:.3g} mmol out; {e.so_far_pct:.3g} % so far", 5)
+        if e.step.forgiven:
+            lines += wrapped(f"a poor yield does not matter: {', '.join(e.step.forgiven)}", 5)
+        if e.improvement is not None and (verbose or not e.step.forgiven):
+            i = e.improvement
+            lines += wrapped(f"at {i.at_pct:.3g} % the route would save {i.saves:.3g} {i.unit}", 5)
+        for severity, title in e.step.findings if verbose else e.step.findings[:2]:
+            lines += wrapped(title, 13, first=f"     {severity_word(Severity(severity))} ")
+    lines += ["", heading("Material, at the mean yields and between")]
+    for need in ledger.needed:
+        grams = f", {need.grams:.3g} g" if need.grams is not None else ""
+        cost = f", {need.cost:,.3g} {ledger.route.money}".rstrip() if need.cost is not None else ""
+        lines += wrapped(f"{need.material}: {need.mmol:.3g} mmol ({need.low:.3g} to {need.high:.3g}){grams}{cost}", 2)
+    if ledger.counted_pct is not None:
+        lines += wrapped(f"Without the steps where yield does not matter: {ledger.counted_pct:.3g} % overall.", 2)
+    closed = _percent(ledger.closed_form_pct)
+    lines += ["", *wrapped(f"In closed form {closed}; sampling error {ledger.sampling_error_pct:.2g} points.")]
+    return "\n".join(lines)
+
+
+def _share(interval: Interval | None) -> str:
+    if interval is None:
+        return ""
+    return f"{100 * interval.mean:.0f} % ({100 * interval.low:.0f} to {100 * interval.high:.0f})"
+
+
+def _percent(interval: Interval) -> str:
+    if interval.low == interval.high:
+        return f"{interval.mean:.3g} %"
+    return f"{interval.mean:.3g} % ({interval.low:.3g} to {interval.high:.3g})"
