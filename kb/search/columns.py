@@ -69,6 +69,7 @@ class RunColumns:
         temperature_c: most forcing temperature, float32; NaN = not recorded.
         centre_atom: centre in the substrate, int32; -1 = none.
         alive: the row is the run as it stands, and not withdrawn.
+        recipes: what read the run, by row; None = nothing did.
         place_row, place_structure, place_position: of every place, int64.
         place_role: index into ROLES, uint8.
         codes, substrates, fates, nucleophile_classes: text or None by row.
@@ -84,6 +85,7 @@ class RunColumns:
         self._place_position, self._place_role = Column(np.int64), Column(np.uint8)
         self.codes: list[str] = []
         self.substrates: list[str | None] = []
+        self.recipes: list[str | None] = []
         self.fates: list[str | None] = []
         self.nucleophile_classes: list[str | None] = []
         self._solvents: dict[str, array[int]] = {}
@@ -136,6 +138,7 @@ class RunColumns:
         self.substrates += columns[14]
         self._centre.extend(-1 if atom is None else int(atom) for atom in columns[15])
         self._alive.extend(map(bool, columns[16]))
+        self.recipes += columns[17]
         _post(self._solvents, ((text, rows[k]) for k, n, s in batch.solvents for text in _spellings(n, s)))
         _post(
             self._components,
@@ -148,6 +151,12 @@ class RunColumns:
             self._place_role.extend(_ROLE_CODE.get(role, len(ROLES)) for role in roles)
             self._place_position.extend(positions)
             self._place_structure.extend(structures)
+
+    def count_stale(self, recipe: str) -> int:
+        """Return how many standing runs were not read by this recipe."""
+        if set(self.recipes) <= {recipe}:
+            return 0
+        return sum(stands and made_by != recipe for stands, made_by in zip(self.alive, self.recipes, strict=True))
 
     def rows_of_keys(self, run_keys: Iterable[int]) -> NDArray[np.bool_]:
         """Return a mask of the rows of these runs, as they stand now."""

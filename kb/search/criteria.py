@@ -107,6 +107,19 @@ class Criteria:
         own = (self.substructure, self.similar, self.exact, self.at_centre, self.transformation)
         return any(part is not None for part in own) or any(c.asks_for_structure for c in self.parts())
 
+    @property
+    def asks_for_facts(self) -> bool:
+        """Return whether this part, nested ones left out, rests on what was read from schemes and conditions."""
+        own = (
+            self.carbon_class,
+            self.leaving_group,
+            self.at_centre,
+            self.transformation,
+            self.temp_from_c,
+            self.temp_to_c,
+        )
+        return any(part is not None for part in own)
+
     def parts(self) -> Iterator[Criteria]:
         """Yield the criteria directly inside."""
         yield from self.all_of

@@ -128,6 +128,8 @@ class _Answer:
 
     def runs(self, criteria: Criteria, mask: NDArray[np.bool_]) -> NDArray[np.bool_]:
         """Return the rows of `mask` that satisfy the criteria, nested ones included."""
+        if criteria.asks_for_facts:
+            self.live.need_fresh_facts()
         parts = self._structure_parts(criteria)
         mask = narrow_by_conditions(criteria, mask, self.live, self.notes)
         nested = sorted(criteria.all_of, key=lambda inner: inner.asks_for_structure)

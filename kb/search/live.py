@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from kb.errors import Cancelled
+from kb.errors import Cancelled, IndexStale
 from kb.progress import Progress, Silent
 from kb.search.columns import RunColumns
 from kb.store.searching import iter_blobs, last_structure_id, read_runs, smiles_of, vocabulary
@@ -46,6 +46,7 @@ class LiveRecord:
         self._index: StructureIndex | None = None
         self._index_version = -1
         self._version = -1
+        self._checked_version = -1
         self._tip: int | None = None
         self._words: tuple[int, list[str]] = (-1, [])
         self._smiles: dict[int, str] = {}
@@ -59,6 +60,21 @@ class LiveRecord:
             batch = read_runs(self.store.book, self._tip)
             self.columns.take_in(batch)
             self._version, self._tip = batch.version, batch.tip
+
+    def need_fresh_facts(self) -> None:
+        """Refuse to answer from facts that another recipe made.
+
+        Raises:
+            IndexStale: some standing runs were read by another recipe, or not at all.
+        """
+        deriving = self.store.book.deriving
+        if deriving.derive is None:
+            return
+        if self._checked_version != self._version:
+            stale = self.columns.count_stale(deriving.recipe)
+            if stale:
+                raise IndexStale(f"{stale} runs were read by another recipe.", "Rebuild them: `sidepath migrate`.")
+            self._checked_version = self._version
 
     def index(self, progress: Progress | None = None) -> StructureIndex:
         """Return the structure index, complete for the runs in `columns`.

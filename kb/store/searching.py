@@ -27,8 +27,9 @@ _WORD_COLUMNS = " ".join(name for name in COLUMNS if name != "scheme")
 _RUN_COLUMNS = """SELECT run.run_key, run.code, run.code_number, run.run_date, run.verdict, run.project,
     run.by_initials, run.temperature_start_c, run.temperature_end_c, facts.temperature_c, facts.carbon_class,
     facts.leaving_group, facts.fate, facts.nucleophile_class, facts.substrate, facts.centre_atom,
-    run.withdrawn_why IS NULL
-    FROM run LEFT JOIN facts ON facts.run_key = run.run_key"""
+    run.withdrawn_why IS NULL, recipe.name
+    FROM run LEFT JOIN facts ON facts.run_key = run.run_key
+    LEFT JOIN recipe ON recipe.recipe_id = facts.recipe_id"""
 _COMPONENTS = "SELECT t.run_key, t.role, t.name, t.smiles FROM component t"
 _SOLVENTS = "SELECT t.run_key, t.name, t.smiles FROM solvent t"
 _FAILURES = "SELECT t.run_key, t.mode FROM failure t"
@@ -49,7 +50,7 @@ class RunBatch:
         version: the book's counter of changes at that moment; tip: its last history entry.
         runs: (run_key, code, code_number, run_date as ISO text or None, verdict, project, by_initials,
             temperature_start_c, temperature_end_c, temperature_c of the facts, carbon_class, leaving_group,
-            fate, nucleophile_class, substrate, centre_atom, stands).
+            fate, nucleophile_class, substrate, centre_atom, stands, recipe of the facts or None).
         components: (run_key, role, name, smiles). solvents: (run_key, name, smiles). failures: (run_key,
         mode). places: (run_key, role, position, structure_id).
     """

@@ -229,6 +229,9 @@ def test_structures_of_another_recipe_are_refused_not_searched(tmp_path: Path) -
     with Store.open(tmp_path / "book.sidepath", **{**CHEMISTRY, "recipe": "another"}) as store:
         with pytest.raises(IndexStale):
             Finder(store).find(Criteria(substructure="CBr"))
+        for asked in ({"carbon_class": CarbonClass.PRIMARY}, {"temp_from_c": 20}, {"transformation": "C-Br>>C-N"}):
+            with pytest.raises(IndexStale):
+                Finder(store).find(Criteria(**asked))  # type: ignore[arg-type]
         assert Finder(store).find(Criteria(words="emulsion")).total == 2, "words need no screens"
 
 
