@@ -16,17 +16,16 @@ from numpy.typing import NDArray
 
 from kb.assess.advice_options import Option, leaving_group_options, list_options, words_of_rows
 from kb.assess.advice_pairs import Paired, pair_runs
-from kb.assess.published import step_facts
 from kb.assess.published_medium import medium_of
 from kb.assess.record_view import RecordView
 from kb.assess.table import FATES
 from kb.materials.classes import profile_of
 from kb.physorg.step import StepFacts
-from kb.physorg.what_if import Contrast, contrast
+from kb.physorg.what_if import Contrast, contrasts
 from kb.record.assessment import Advice
 from kb.record.finding import Finding, Interval
 from kb.record.plan import Plan
-from kb.store.derivation import Account
+from kb.store.derivation import Account, account_of_plan
 from kb.vocabulary import Basis, Fate, LeavingGroup, Role, Severity
 
 ALIKE = 0.6
@@ -42,8 +41,9 @@ NEAR = 600
 TOP = 4
 MOST_CHECKED = 7
 """Candidates whose findings are made anew before giving up."""
-SLOWEST = 0.1
-"""Pace after a change below which the step is taken to stall, unless its half-life is still short."""
+SLOW = 0.1
+"""Pace after a change below which the gain must be LEAST_TREND_IF_SLOW and the half-life still short."""
+LEAST_TREND_IF_SLOW = 0.1
 OVERNIGHT_H = 16.0
 _PART_OF = {"temperature": "temperature", "solvent": "solvent", "base": "base"}
 _MATCHED = ("centre", "leaving group", "nucleophile", "promoter", "solvent", "temperature", "base")
@@ -58,6 +58,7 @@ def advise(
     parts: dict[str, NDArray[np.float64]],
     similarity: NDArray[np.float64],
     wanted: Fate | None,
+    step: StepFacts | None,
     findings: Sequence[Finding],
     serious_of: SeriousOf,
 ) -> tuple[Advice, ...]:
@@ -68,30 +69,26 @@ def advise(
         view: the runs (n).
         parts, similarity: of each run to the plan.
         wanted: the fate whose share should rise; None = not known, no advice.
+        step: as the published models see the plan; None = they do not cover it.
         findings: of the plan as it stands.
         serious_of: from a changed plan to the ids of its serious findings.
 
     Returns:
         Helpful changes only, best first.
     """
-    if (
-        wanted is None
-        or wanted in (Fate.UNREACTED, Fate.OTHER)
-        or account.reading.centre is None
-        or not len(view.table)
-    ):
+    is_open = wanted is not None and wanted not in (Fate.UNREACTED, Fate.OTHER)
+    if wanted is None or not is_open or account.reading.centre is None or not len(view.table):
         return ()
     like = np.flatnonzero(parts["nucleophile"] >= 0.5)
     near = like[np.argsort(-similarity[like], kind="stable")][:NEAR]
-    step = _step(account, plan)
     options = list_options(plan, account.profile, view, near)
     if step is not None:
         options += leaving_group_options(plan, account.reading, view)
-    candidates = []
-    for option in options:
-        found = _by_record(option, view, parts, similarity, wanted) or _by_trend(option, account, step, wanted)
-        if found is not None:
-            candidates.append((found, option))
+    by_record = [_by_record(option, view, parts, similarity, wanted) for option in options]
+    candidates = [(found, option) for found, option in zip(by_record, options, strict=True) if found is not None]
+    if step is not None:
+        others = [option for found, option in zip(by_record, options, strict=True) if found is None]
+        candidates += _by_trend(others, account, step, wanted)
     candidates.sort(key=lambda pair: -_rank(pair[0]))
     already = frozenset(_kind(f.rule_id) for f in findings if f.severity is Severity.SERIOUS)
     advised: list[Advice] = []
@@ -147,29 +144,32 @@ def _by_record(
 def _pairs_in_words(paired: Paired, view: RecordView) -> str:
     codes = view.table.codes
     named = ", ".join(f"{codes[a]} and {codes[b]}" for a, b in paired.pairs[:3])
-    of_one = f", {paired.same_substrate} of one substrate" if paired.same_substrate else ""
+    of_one = f", in {paired.same_substrate} of them both of one substrate" if paired.same_substrate else ""
     pairs = "pair" if len(paired.pairs) == 1 else "pairs"
     return f"{len(paired.pairs)} {pairs} of runs alike in all else that was compared{of_one}: {named}."
 
 
-def _step(account: Account, plan: Plan) -> StepFacts | None:
-    facts = step_facts(account.reading, account.facts.substrate or "", account.profile, _base_smiles(plan))
-    return None if isinstance(facts, str) else facts
+def _by_trend(
+    options: Sequence[Option], account: Account, step: StepFacts, wanted: Fate
+) -> list[tuple[Advice, Option]]:
+    """Return what published rates expect of some changes, those worth trying only."""
+    found = contrasts(step, [_changed_step(option, account, step) for option in options], wanted)
+    return [
+        (_advice_of(one, option), option)
+        for one, option in zip(found, options, strict=True)
+        if one is not None and _is_worth_trying(one, option.plan)
+    ]
 
 
-def _base_smiles(plan: Plan) -> str | None:
-    return next((c.smiles for c in plan.conditions.components if c.role is Role.BASE and c.smiles), None)
+def _is_worth_trying(found: Contrast, changed: Plan) -> bool:
+    gain = LEAST_TREND_IF_SLOW if found.pace < SLOW else LEAST_TREND
+    if found.effect.mean < gain or found.effect.low < WORST_TREND:
+        return False
+    hours = changed.conditions.time.h if changed.conditions.time is not None else None
+    return found.pace >= SLOW or found.half_life_h <= max(hours or 0.0, OVERNIGHT_H) / 3
 
 
-def _by_trend(option: Option, account: Account, step: StepFacts | None, wanted: Fate) -> Advice | None:
-    if step is None:
-        return None
-    found = contrast(step, _changed_step(option, account, step), wanted)
-    if found is None or found.effect.mean < LEAST_TREND or found.effect.low < WORST_TREND:
-        return None
-    hours = option.plan.conditions.time.h if option.plan.conditions.time is not None else None
-    if found.pace < SLOWEST and found.half_life_h > max(hours or 0.0, OVERNIGHT_H) / 3:
-        return None
+def _advice_of(found: Contrast, option: Option) -> Advice:
     effect = found.effect
     return Advice(
         change=f"{option.word} instead of {option.here}",
@@ -181,15 +181,22 @@ def _by_trend(option: Option, account: Account, step: StepFacts | None, wanted: 
 
 
 def _changed_step(option: Option, account: Account, step: StepFacts) -> StepFacts:
+    """Return the step after a change; with another base the nucleophile is read anew (it may stay undeprotonated)."""
     if option.leaving_group is not None:
         return dataclasses.replace(step, leaving_group=option.leaving_group)
-    centre, nucleophile = account.reading.centre, account.reading.nucleophile
-    others = [s for i, s in enumerate(account.fragments) if centre is None or i != centre.component]
+    if option.kind == "base":
+        account = account_of_plan(option.plan)
+        profile = account.profile
+    else:
+        centre = account.reading.centre
+        others = [s for i, s in enumerate(account.fragments) if centre is None or i != centre.component]
+        profile = profile_of(option.plan.conditions, others)
+    nucleophile = account.reading.nucleophile
     medium = medium_of(
-        profile_of(option.plan.conditions, others),
+        profile,
         nucleophile.nucleophile_class if nucleophile else None,
         step.leaving_group in (LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE),
-        _base_smiles(option.plan),
+        next((c.smiles for c in option.plan.conditions.components if c.role is Role.BASE and c.smiles), None),
     )
     return dataclasses.replace(step, medium=medium)
 

@@ -52,7 +52,7 @@ def pair_runs(table: FactTable, here: Sequence[int], there: Sequence[int], share
     before, after = list(here)[:MOST_A_SIDE], list(there)[:MOST_A_SIDE]
     if not before or not after:
         return None
-    likeness = np.array([centre_likeness(table.centre_bits[row], table.centre_bits[after]) for row in before])
+    likeness = centre_likeness(table.centre_bits[before], table.centre_bits[after])
     is_same = np.array([[table.substrate[a] == table.substrate[b] for b in after] for a in before])
     score = likeness + 2.0 * is_same
     pairs: list[tuple[int, int]] = []

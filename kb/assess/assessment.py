@@ -91,7 +91,9 @@ def assess(
         findings=findings,
         estimate=expected,
         precedents=word_precedents(row, view.table, rank_precedents(similarity, top), parts, similarity),
-        advice=advise(plan, account, view, parts, similarity, wanted_fate(account), findings, near.serious_of),
+        advice=advise(
+            plan, account, view, parts, similarity, wanted_fate(account), published.step, findings, near.serious_of
+        ),
     )
 
 
@@ -116,8 +118,8 @@ class _Near:
         """Return the ids of the serious findings of a plan."""
         account = account_of_plan(plan)
         compared = compare_with_record(account, self.view)
-        published = _published(account, plan)
-        findings = find_findings(plan, account, self.view, compared, self._house_rules, published, None)
+        nothing_published = PublishedEstimate()  # it makes no serious finding
+        findings = find_findings(plan, account, self.view, compared, self._house_rules, nothing_published, None)
         return frozenset(f.rule_id for f in findings if f.severity is Severity.SERIOUS)
 
 

@@ -11,6 +11,7 @@ from itertools import combinations
 import numpy as np
 from numpy.typing import NDArray
 
+from kb.assess.estimate import DISAGREE_FROM
 from kb.assess.precedent import compare, differences
 from kb.assess.record_view import RecordView
 from kb.assess.table import FATES
@@ -32,6 +33,8 @@ def word_disagreement(view: RecordView, weight: NDArray[np.float64], fate: Fate)
         fate: on whose share they are compared.
     """
     column = FATES.index(fate)
+    if _scatter(weight, view.table.shares[:, column]) < DISAGREE_FROM:
+        return ""
     shares = view.table.shares[:, column]
     heaviest = [
         int(r) for r in np.argsort(-weight, kind="stable")[:CLOSEST] if weight[r] > 0 and not np.isnan(shares[r])
@@ -45,6 +48,15 @@ def word_disagreement(view: RecordView, weight: NDArray[np.float64], fate: Fate)
     codes = view.table.codes
     said = ", ".join(f"{codes[row]} gave {100 * shares[row]:.0f} % {fate}" for row in (first, second))
     return f"{said}; {_what_differs(view, first, second)}."
+
+
+def _scatter(weight: NDArray[np.float64], shares: NDArray[np.float64]) -> float:
+    """Return the weighted standard deviation of a share between the runs that speak (0..1)."""
+    heard = (weight > 0) & ~np.isnan(shares)
+    if not heard.any():
+        return 0.0
+    mean = np.average(shares[heard], weights=weight[heard])
+    return float(np.sqrt(np.average((shares[heard] - mean) ** 2, weights=weight[heard])))
 
 
 def _what_differs(view: RecordView, first: int, second: int) -> str:

@@ -15,6 +15,7 @@ point) rather than from an inverse incomplete beta function of our own.
 from __future__ import annotations
 
 from collections.abc import Mapping
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -94,6 +95,7 @@ def estimate(
     )
 
 
+@lru_cache(maxsize=4096)
 def beta_interval(mean: float, concentration: float) -> Interval:
     """Return mean and 80 % bounds of a Beta distribution.
 

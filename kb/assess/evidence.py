@@ -25,7 +25,7 @@ from kb.assess.table import FATES, FactTable
 from kb.record.finding import Evidence, Finding, Interval
 from kb.vocabulary import Fate, Severity
 
-FEARED_SHARE = 0.2
+FEARED_SHARE = 0.3
 """Share of the feared fate from which a run at the centre counts as struck; judgement."""
 MOST_WITNESSES = 48
 FEWEST_TO_LOWER = 4.0

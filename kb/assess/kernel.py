@@ -10,7 +10,8 @@ distances rest on the published relative reactivities held in `LEAVING_SCALE`.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Collection, Sequence
+from collections.abc import Callable
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -36,6 +37,9 @@ UNRECORDED = 0.6
 FLOOR = 0.01
 RISK_STEP = 0.1
 """Likeness left for each endangered group that only one of the two molecules holds."""
+
+TEMPERATURE_WIDTH_K = 28.0
+"""Standard deviation of the Gaussian in temperature."""
 
 _CLASS_STEP = (1.0, 0.45, 0.15, 0.05)
 _FLAG_WEIGHT = {
@@ -83,7 +87,6 @@ def similarity_parts(
     table: FactTable,
     rest: NDArray[np.float64] | None = None,
     risk_differences: NDArray[np.float64] | None = None,
-    only: Collection[str] | None = None,
 ) -> dict[str, NDArray[np.float64]]:
     """Compare one plan with every row of a table, part by part.
 
@@ -93,25 +96,21 @@ def similarity_parts(
         risk_differences: how many groups that the plan's conditions endanger stand in only one of the two (n); None =
             not looked for.
         rest: whole-molecule Tanimoto (n), 0..1; None or NaN = not computed, counts as not recorded.
-        only: names of the parts wanted; None = all.
 
     Returns:
         Part name to (n) float64 in [FLOOR, 1].
     """
-    n = len(table)
-    ways: dict[str, Callable[[], NDArray[np.float64]]] = {
-        "centre": lambda: _centre(plan, table),
-        "leaving group": lambda: _leaving(plan, table),
-        "nucleophile": lambda: _nucleophile(plan, table),
-        "base": lambda: _base(plan, table),
-        "solvent": lambda: _solvent(plan, table),
-        "temperature": lambda: _gauss(plan, table, "temperature_c", 28.0),
-        "promoter": lambda: _promoter(plan, table),
-        "groups at risk": lambda: np.ones(n) if risk_differences is None else RISK_STEP**risk_differences,
-        "reagents": lambda: _reagents(plan, table),
-        "rest of molecule": lambda: _rest(rest, n),
-    }
-    return {name: np.clip(way(), FLOOR, 1.0) for name, way in ways.items() if only is None or name in only}
+    parts = {name: np.clip(way(plan, table)[0], FLOOR, 1.0) for name, way in _WAYS.items()}
+    parts["groups at risk"] = np.clip(
+        np.ones(len(table)) if risk_differences is None else RISK_STEP**risk_differences, FLOOR, 1.0
+    )
+    parts["rest of molecule"] = _rest(rest, len(table))
+    return {name: parts[name] for name, _ in PARTS}
+
+
+def pairwise_part(name: str, table: FactTable) -> NDArray[np.float64]:
+    """Compare every row of a table with every row, in one part of those that rest on the facts alone (n, n)."""
+    return np.clip(_WAYS[name](table, table), FLOOR, 1.0)
 
 
 def combine(parts: dict[str, NDArray[np.float64]]) -> NDArray[np.float64]:
@@ -120,19 +119,15 @@ def combine(parts: dict[str, NDArray[np.float64]]) -> NDArray[np.float64]:
     return np.asarray(np.exp(total), dtype=np.float64)
 
 
-def centre_likeness(query: NDArray[np.uint64], rows: NDArray[np.uint64]) -> NDArray[np.float64]:
-    """Return the Tanimoto similarity (n) of a rooted environment to others; 0 where there is no centre."""
-    both = np.bitwise_count(rows & query).sum(axis=1, dtype=np.float64)
-    either = np.bitwise_count(rows | query).sum(axis=1, dtype=np.float64)
-    return np.divide(both, either, out=np.zeros(len(rows)), where=either > 0)
-
-
-def leaving_likeness(words: Sequence[str | None]) -> NDArray[np.float64]:
-    """Return `leaving_similarity` of each pair of some words (m, m)."""
-    distinct = list(dict.fromkeys(words))
-    table = np.array([[leaving_similarity(a, b) for b in distinct] for a in distinct])
-    codes = [distinct.index(word) for word in words]
-    return table[np.ix_(codes, codes)]
+def centre_likeness(some: NDArray[np.uint64], others: NDArray[np.uint64]) -> NDArray[np.float64]:
+    """Return the Tanimoto similarity of rooted environments (k, n); 0 where there is no centre."""
+    both = np.zeros((len(some), len(others)))
+    either = np.zeros((len(some), len(others)))
+    for word in range(some.shape[1]):
+        one, other = some[:, None, word], others[None, :, word]
+        both += np.bitwise_count(one & other)
+        either += np.bitwise_count(one | other)
+    return np.divide(both, either, out=np.zeros_like(both), where=either > 0)
 
 
 def leaving_similarity(one: str | None, other: str | None) -> float:
@@ -157,34 +152,37 @@ def nucleophile_similarity(one: str | None, other: str | None) -> float:
     return 0.55 if family is not None and family == _NUCLEOPHILE_FAMILY.get(other) else 0.18
 
 
-def _reagents(plan: FactTable, table: FactTable) -> NDArray[np.float64]:
-    mine = plan.flasks.sets[int(plan.flask[0])]
-    return table.flasks.likeness_to(mine)[table.flask] if len(table) else np.zeros(0)
-
-
 def _rest(rest: NDArray[np.float64] | None, n: int) -> NDArray[np.float64]:
     if rest is None:
         return np.full(n, UNRECORDED)
     return np.asarray(np.where(np.isnan(rest), UNRECORDED, 0.35 + 0.65 * rest))
 
 
-def _centre(plan: FactTable, table: FactTable) -> NDArray[np.float64]:
-    vocabulary = WORDS["carbon_class"]
-    ladder = vocabulary.index("tertiary")
-    mine = int(plan.words["carbon_class"][0])
-    by_code = np.full(len(vocabulary) + 1, UNRECORDED)  # last place answers code -1
-    if mine >= 0:
-        for code in range(len(vocabulary)):
-            on_ladder = code <= ladder and mine <= ladder
-            by_code[code] = _CLASS_STEP[abs(code - mine)] if on_ladder else float(code == mine) or 0.03
-    carbon = by_code[table.words["carbon_class"]]
-    distinct, where = np.unique(table.flags, return_inverse=True)
-    mine_flags = flag_words(int(plan.flags[0]))
-    flag = np.array([_flag_similarity(mine_flags, flag_words(int(code))) for code in distinct])[where]
-    return np.asarray(carbon * flag * (0.55 + 0.45 * centre_likeness(plan.centre_bits[0], table.centre_bits)))
+# Each of the following compares k rows with n rows and returns (k, n).
 
 
-def _flag_similarity(one: frozenset[str], other: frozenset[str]) -> float:
+def _reagents(some: FactTable, others: FactTable) -> NDArray[np.float64]:
+    codes, place = np.unique(some.flask, return_inverse=True)
+    if not len(others) or not len(codes):
+        return np.zeros((len(some), len(others)))
+    rows = np.stack([others.flasks.likeness_to(some.flasks.sets[int(code)]) for code in codes])
+    return rows[place][:, others.flask]
+
+
+def _centre(some: FactTable, others: FactTable) -> NDArray[np.float64]:
+    carbon = _CLASS_TABLE[some.words["carbon_class"]][:, others.words["carbon_class"]]
+    mine, theirs = np.unique(some.flags), np.flatnonzero(np.bincount(others.flags, minlength=1))
+    lookup = np.zeros((int(mine.max(initial=0)) + 1, int(theirs.max(initial=0)) + 1))
+    for one in mine:
+        for other in theirs:
+            lookup[one, other] = _flag_similarity(int(one), int(other))
+    flag = lookup[some.flags][:, others.flags]
+    return np.asarray(carbon * flag * (0.55 + 0.45 * centre_likeness(some.centre_bits, others.centre_bits)))
+
+
+@lru_cache(maxsize=65536)
+def _flag_similarity(one_code: int, other_code: int) -> float:
+    one, other = flag_words(one_code), flag_words(other_code)
     activation = {"allylic", "benzylic", "propargylic"}
     distance = sum(_FLAG_WEIGHT[CentreFlag(word)] for word in one ^ other)
     if one & activation and other & activation and (one ^ other) & activation:
@@ -192,57 +190,76 @@ def _flag_similarity(one: frozenset[str], other: frozenset[str]) -> float:
     return float(np.exp(-max(distance, 0.0)))
 
 
-def _leaving(plan: FactTable, table: FactTable) -> NDArray[np.float64]:
-    mine = plan.word("leaving_group", 0)
-    by_code = [leaving_similarity(mine, word) for word in WORDS["leaving_group"]] + [leaving_similarity(mine, None)]
-    return np.array(by_code)[table.words["leaving_group"]]
+def _leaving(some: FactTable, others: FactTable) -> NDArray[np.float64]:
+    return _LEAVING_TABLE[some.words["leaving_group"]][:, others.words["leaving_group"]]
 
 
-def _nucleophile(plan: FactTable, table: FactTable) -> NDArray[np.float64]:
-    mine = plan.nucleophile_word(0)
-    by_code: Sequence[float] = [nucleophile_similarity(mine, w) for w in table.nucleophile_words]
-    by_code = [*by_code, nucleophile_similarity(mine, None)]
-    return np.array(by_code)[table.nucleophile]
+def _nucleophile(some: FactTable, others: FactTable) -> NDArray[np.float64]:
+    mine, theirs = (*some.nucleophile_words, None), (*others.nucleophile_words, None)
+    codes, place = np.unique(some.nucleophile, return_inverse=True)
+    rows = np.array([[nucleophile_similarity(mine[code], word) for word in theirs] for code in codes])
+    return rows.reshape(len(codes), len(theirs))[place][:, others.nucleophile]
 
 
-def _base(plan: FactTable, table: FactTable) -> NDArray[np.float64]:
+def _base(some: FactTable, others: FactTable) -> NDArray[np.float64]:
     water_pkah = -1.7  # with no base in the flask the strongest one is the solvent; water, common practice
-    mine = plan.number("base_pkah", 0)
-    theirs = np.nan_to_num(table.numbers["base_pkah"], nan=water_pkah)
-    strength = np.exp(-np.abs(theirs - (water_pkah if mine is None else mine)) / 7.0)
-    bulk_code = int(plan.words["base_bulk"][0])
-    other = table.words["base_bulk"]
-    differs = (bulk_code >= 0) & (other >= 0) & (other != bulk_code)
-    return np.asarray(strength * np.where(differs, 0.45, 1.0))
+    mine = np.nan_to_num(some.numbers["base_pkah"], nan=water_pkah)[:, None]
+    theirs = np.nan_to_num(others.numbers["base_pkah"], nan=water_pkah)
+    bulk, other = some.words["base_bulk"][:, None], others.words["base_bulk"]
+    differs = (bulk >= 0) & (other >= 0) & (other != bulk)
+    return np.asarray(np.exp(-np.abs(theirs - mine) / 7.0) * np.where(differs, 0.45, 1.0))
 
 
-def _solvent(plan: FactTable, table: FactTable) -> NDArray[np.float64]:
-    mine = int(plan.protic[0])
-    proton = np.where((table.protic < 0) | (mine < 0), UNRECORDED, np.where(table.protic == mine, 1.0, 0.4))
-    polarity = np.full(len(table), np.nan)
+def _solvent(some: FactTable, others: FactTable) -> NDArray[np.float64]:
+    mine, theirs = some.protic[:, None], others.protic
+    proton = np.where((theirs < 0) | (mine < 0), UNRECORDED, np.where(theirs == mine, 1.0, 0.4))
+    polarity = np.full(proton.shape, np.nan)
     for column, scale in (("et30_kcal_mol", 9.0), ("permittivity", 25.0)):
-        value = plan.number(column, 0)
-        if value is not None:
-            step = np.exp(-np.abs(table.numbers[column] - value) / scale)
-            polarity = np.where(np.isnan(polarity), step, polarity)
+        step = np.exp(-np.abs(others.numbers[column] - some.numbers[column][:, None]) / scale)
+        polarity = np.where(np.isnan(polarity), step, polarity)
     return np.asarray(proton * np.where(np.isnan(polarity), 0.8, polarity))
 
 
-def _gauss(plan: FactTable, table: FactTable, column: str, width: float) -> NDArray[np.float64]:
-    mine = plan.number(column, 0)
-    theirs = table.numbers[column]
-    if mine is None:
-        return np.full(len(table), UNRECORDED)
-    alike = np.exp(-0.5 * ((theirs - mine) / width) ** 2)
-    return np.asarray(np.where(np.isnan(theirs), UNRECORDED, alike))
+def _temperature(some: FactTable, others: FactTable) -> NDArray[np.float64]:
+    away = (others.numbers["temperature_c"] - some.numbers["temperature_c"][:, None]) / TEMPERATURE_WIDTH_K
+    return np.asarray(np.where(np.isnan(away), UNRECORDED, np.exp(-0.5 * away**2)))
 
 
-def _promoter(plan: FactTable, table: FactTable) -> NDArray[np.float64]:
-    result = np.ones(len(table))
+def _promoter(some: FactTable, others: FactTable) -> NDArray[np.float64]:
+    result = np.ones((len(some), len(others)))
     step = np.array([1.0, 0.45, 0.12])
     for column in ("acidity", "lewis_acid", "halophile"):
-        mine = int(plan.words[column][0])
-        theirs = table.words[column]
+        mine, theirs = some.words[column][:, None], others.words[column]
         unknown = (theirs < 0) | (mine < 0)
-        result *= np.where(unknown, 0.8, step[np.abs(theirs - max(mine, 0)).clip(0, 2)])
-    return np.asarray(result)
+        result *= np.where(unknown, 0.8, step[np.abs(theirs - np.maximum(mine, 0)).clip(0, 2)])
+    return result
+
+
+def _class_table() -> NDArray[np.float64]:
+    """Return the likeness of carbon classes by code; the last row and column answer code -1, not read."""
+    words = WORDS["carbon_class"]
+    ladder = words.index("tertiary")
+    table = np.full((len(words) + 1, len(words) + 1), UNRECORDED)
+    for one in range(len(words)):
+        for other in range(len(words)):
+            on_ladder = one <= ladder and other <= ladder
+            table[one, other] = _CLASS_STEP[abs(one - other)] if on_ladder else 1.0 if one == other else 0.03
+    return table
+
+
+def _leaving_table() -> NDArray[np.float64]:
+    words = (*WORDS["leaving_group"], None)
+    return np.array([[leaving_similarity(one, other) for other in words] for one in words])
+
+
+_CLASS_TABLE, _LEAVING_TABLE = _class_table(), _leaving_table()
+_WAYS: dict[str, Callable[[FactTable, FactTable], NDArray[np.float64]]] = {
+    "centre": _centre,
+    "leaving group": _leaving,
+    "nucleophile": _nucleophile,
+    "base": _base,
+    "solvent": _solvent,
+    "temperature": _temperature,
+    "promoter": _promoter,
+    "reagents": _reagents,
+}

@@ -14,7 +14,7 @@ from kb.assess.table import FactTable, flag_words
 from kb.record.assessment import Precedent
 from kb.vocabulary import Verdict
 
-WORTH_SHOWING = 0.25
+WORTH_SHOWING = 0.4
 """Least similarity of a precedent that is listed; below it the run says little. A judgement."""
 
 

@@ -22,7 +22,7 @@ from kb.physorg.competition import AlkeneShare, Channel, Competition, Share, com
 from kb.physorg.step import StepFacts
 from kb.physorg.stereo import StereoOutcome, expect_stereo
 from kb.record.finding import Interval
-from kb.vocabulary import Fate, LeavingGroup
+from kb.vocabulary import CarbonClass, Confidence, Fate, LeavingGroup
 
 NOT_COVERED = frozenset({Fate.ADDITION, Fate.GROUP_LOSS})
 
@@ -39,6 +39,7 @@ class PublishedEstimate:
         half_life_h: to about a factor of ten, at 1 M of reagent [h]; None without a number.
         note: plain words: what it rests on, or why there is no number.
         sources: in order of appearance.
+        step: the step as the models were asked; None where it could not be put so.
     """
 
     fates: tuple[tuple[Fate, Interval], ...] = ()
@@ -48,6 +49,7 @@ class PublishedEstimate:
     half_life_h: Interval | None = None
     note: str = ""
     sources: tuple[str, ...] = ()
+    step: StepFacts | None = None
 
 
 def published_estimate(
@@ -75,7 +77,7 @@ def step_facts(
     centre = reading.centre
     if not reading.ok or centre is None:
         return "No reacting centre was read, so there are no published rates to ask."
-    if reading.fate in NOT_COVERED or centre.leaving_group is None or centre.leaving_atom is None:
+    if _is_of_another_kind(reading) or centre.leaving_group is None or centre.leaving_atom is None:
         return "The published tables cover loss of a leaving group from carbon; this step is of another kind."
     mol = _fragment(reading, substrate_smiles)
     if mol is None:
@@ -85,6 +87,15 @@ def step_facts(
     nucleophile = reading.nucleophile.nucleophile_class if reading.nucleophile else None
     medium = medium_of(profile, nucleophile, is_activated, base_smiles)
     return StepFacts(centre=described, leaving_group=centre.leaving_group, medium=medium)
+
+
+def _is_of_another_kind(reading: Reading) -> bool:
+    """Return True for additions and losses of a group; a bridgehead that was only guessed at is asked why not."""
+    if reading.fate not in NOT_COVERED:
+        return False
+    is_only_guessed = reading.confidence is not Confidence.MATCHED
+    centre = reading.centre
+    return not (is_only_guessed and centre is not None and centre.carbon_class is CarbonClass.BRIDGEHEAD)
 
 
 def _fragment(reading: Reading, substrate_smiles: str) -> Chem.Mol | None:
@@ -113,7 +124,7 @@ def _fragment(reading: Reading, substrate_smiles: str) -> Chem.Mol | None:
 
 def _translate(result: Competition, facts: StepFacts) -> PublishedEstimate:
     if not result.fates:
-        return PublishedEstimate(note=result.no_number)
+        return PublishedEstimate(note=result.no_number, step=facts)
     half_life = result.half_life_h
     return PublishedEstimate(
         fates=tuple((fate, _interval(share)) for fate, share in result.fates),
@@ -123,6 +134,7 @@ def _translate(result: Competition, facts: StepFacts) -> PublishedEstimate:
         half_life_h=Interval(mean=half_life.mean, low=half_life.low, high=half_life.high) if half_life else None,
         note=" ".join(result.notes),
         sources=result.sources,
+        step=facts,
     )
 
 

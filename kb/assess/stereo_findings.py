@@ -16,6 +16,8 @@ from kb.vocabulary import Fate, FindingKind, Severity
 
 LEAST_SUBSTITUTION = 0.05
 """Share of substitution below which its stereochemistry is not worth a line; judgement."""
+KEPT_FROM = 0.5
+"""Low end of the net inversion from which the configuration is taken to be carried over; judgement."""
 _SAID_BY_RULE = frozenset({"ion-pair-racemisation", "thionyl-chloride-stereochemistry"})
 _TITLES = {
     "inversion": "The drawn centre inverts",
@@ -44,8 +46,8 @@ def find_stereo_findings(
     if substituted is None or substituted.mean < LEAST_SUBSTITUTION:
         return ()
     is_told = bool(_SAID_BY_RULE & set(rules_fired))
-    is_kept = stereo.word in _KEPT
     net = stereo.net_inversion
+    is_kept = stereo.word in _KEPT and net.low >= KEPT_FROM
     return (
         Finding(
             rule_id=f"stereo:{stereo.word.replace(' ', '-')}",

@@ -201,6 +201,31 @@ def build_table(columns: Mapping[str, Any]) -> FactTable:
     )
 
 
+def stack(first: FactTable, second: FactTable) -> FactTable:
+    """Return the rows of two tables one after the other; classes, profiles and flasks are coded anew."""
+    profiles = [*(first.profiles[c] for c in first.profile), *(second.profiles[c] for c in second.profile)]
+    words = tuple(dict.fromkeys((*first.nucleophile_words, *second.nucleophile_words)))
+    code = {word: place for place, word in enumerate(words)}
+    nucleophile = [first.nucleophile_word(i) for i in range(len(first))]
+    nucleophile += [second.nucleophile_word(i) for i in range(len(second))]
+    columns: dict[str, Any] = {
+        name: np.concatenate([getattr(first, name), getattr(second, name)])
+        for name in _COLUMNS
+        if name not in ("nucleophile", "profile", "flask")
+    }
+    both = replace(
+        first,
+        codes=(*first.codes, *second.codes),
+        words={k: np.concatenate([v, second.words[k]]) for k, v in first.words.items()},
+        numbers={k: np.concatenate([v, second.numbers[k]]) for k, v in first.numbers.items()},
+        substrate=(*first.substrate, *second.substrate),
+        nucleophile=np.array([-1 if w is None else code[w] for w in nucleophile], dtype=np.int16),
+        nucleophile_words=words,
+        **columns,
+    )
+    return with_profiles(both, profiles)
+
+
 def with_profiles(table: FactTable, profiles_json: Sequence[str]) -> FactTable:
     """Return the table with other condition profiles (n)."""
     profile, profiles, flask, flasks = _coded_profiles(profiles_json)

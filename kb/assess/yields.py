@@ -28,10 +28,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kb.assess.estimate import WEIGHT_THAT_COUNTS, beta_interval, weights_of
-from kb.assess.kernel import centre_likeness, leaving_likeness, similarity_parts
+from kb.assess.kernel import centre_likeness, pairwise_part
 from kb.assess.published_runs import published_share
 from kb.assess.record_view import RecordView
-from kb.assess.table import FATES, FactTable
+from kb.assess.table import FATES, FactTable, stack
 from kb.record.finding import Interval
 from kb.vocabulary import Fate
 
@@ -135,28 +135,12 @@ def expected_share_of(view: RecordView, row: int) -> float:
 
 def likenesses(plan: FactTable, near: FactTable) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """Return the likeness of centres and of conditions between the plan (place 0) and m runs, each (m + 1, m + 1)."""
-    size = len(near) + 1
-    alike, medium = np.ones((size, size)), np.ones((size, size))
-    bits = np.concatenate([plan.centre_bits, near.centre_bits])
-    for place in range(size):
-        alike[place] = centre_likeness(bits[place], bits)
+    both = stack(plan, near)
+    alike = centre_likeness(both.centre_bits, both.centre_bits)
     np.fill_diagonal(alike, 1.0)
-    alike *= leaving_likeness(
-        [plan.word("leaving_group", 0), *(near.word("leaving_group", i) for i in range(len(near)))]
-    )
-    medium[0, 1:] = _conditions(plan, near)
-    kinds: dict[tuple[int, int], list[int]] = {}
-    for place in range(len(near)):
-        kinds.setdefault((int(near.profile[place]), int(near.nucleophile[place])), []).append(place)
-    for places in kinds.values():
-        medium[np.array(places) + 1, 1:] = _conditions(near.rows(np.array(places[:1])), near)
-    medium[1:, 0] = medium[0, 1:]
-    return (alike + alike.T) / 2, (medium + medium.T) / 2
-
-
-def _conditions(one: FactTable, near: FactTable) -> NDArray[np.float64]:
-    parts = similarity_parts(one, near, only=CONDITION_PARTS)
-    return np.asarray(np.prod([parts[name] for name in CONDITION_PARTS], axis=0) ** CONDITION_POWER)
+    alike *= pairwise_part("leaving group", both)
+    medium = np.prod([pairwise_part(name, both) for name in CONDITION_PARTS], axis=0) ** CONDITION_POWER
+    return alike, (medium + medium.T) / 2
 
 
 def _weights(

@@ -54,8 +54,6 @@ def e2_sites(step: StepFacts) -> list[SiteRate]:
         *_branch_terms(step.centre),
     ]
     bulk, bulk_sigma = bulk_of(step.medium)
-    if step.leaving_group in SULFONATES and bulk:
-        common.append(term("merging", "sulfonate with bulky base", "a sulfonate with a bulky base prefers SN2", bulk))
     y = y_of(step.medium)
     if y is not None and step.medium.is_protic:
         slope = get_constant("solvent_e2", "per Y")
@@ -80,6 +78,7 @@ def e2_sites(step: StepFacts) -> list[SiteRate]:
             _statistics(neighbour),
             *_beta_terms(step, neighbour, bulk, bulk_sigma),
             *_ring_terms(step.centre),
+            *_merging_terms(step, neighbour, bulk),
         ]
         sites.append(
             SiteRate(
@@ -90,6 +89,13 @@ def e2_sites(step: StepFacts) -> list[SiteRate]:
             )
         )
     return sites
+
+
+def _merging_terms(step: StepFacts, neighbour: Neighbour, bulk: float) -> tuple[Term, ...]:
+    """Return what holds a bulky base back from a sulfonate: seen for plain alkyl, not where the proton is acidic."""
+    if step.leaving_group not in SULFONATES or not bulk or {"aryl", "carbonyl"} & set(neighbour.substituents):
+        return ()
+    return (term("merging", "sulfonate with bulky base", "a sulfonate with a bulky base prefers SN2", bulk),)
 
 
 def soft_sites(step: StepFacts) -> list[SiteRate]:

@@ -1,7 +1,7 @@
 """One change to a step: what published rates say it does to the share of a fate, and to the pace.
 
-It owns the comparison of two steps. Both are sampled together, so that uncertainty which they share (the class of the
-centre, the strength of the base) cancels and only what differs is left in the interval.
+It owns the comparison of a step with others. All are sampled together, so that uncertainty which they share (the
+class of the centre, the strength of the base) cancels and only what differs is left in the interval.
 """
 
 from __future__ import annotations
@@ -10,8 +10,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
-from kb.physorg.cation import partition
+from kb.physorg.cation import Branch, partition
 from kb.physorg.channels import Draft, list_channels
 from kb.physorg.competition import LEVEL, Share, sample_rates
 from kb.physorg.rates import closed_because
@@ -20,6 +21,8 @@ from kb.physorg.terms import Term
 from kb.vocabulary import Fate
 
 SAMPLES = 300
+WORTH_TELLING = 0.02
+"""Share of a channel from which its terms are told."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -41,34 +44,59 @@ class Contrast:
     sources: tuple[str, ...] = ()
 
 
-def contrast(before: StepFacts, after: StepFacts, fate: Fate) -> Contrast | None:
-    """Return what going from one step to another does to a fate; None where either has no honest number."""
-    sides = []
-    for step in (before, after):
-        if closed_because(step):
-            return None
-        ways = partition(step)
-        drafts = list_channels(step, ways)
-        if not drafts:
-            return None
-        sides.append((drafts, ways))
-    rates = sample_rates(sides, SAMPLES)
-    shares = []
-    for (drafts, _), of_channels in zip(sides, rates, strict=True):
-        of_fate = [i for i, d in enumerate(drafts) if d.fate is fate]
-        shares.append(of_channels[of_fate].sum(axis=0) / of_channels.sum(axis=0))
-    change = shares[1] - shares[0]
+def contrasts(before: StepFacts, after: Sequence[StepFacts], fate: Fate) -> list[Contrast | None]:
+    """Return what going from one step to each of some others does to a fate; None where there is no honest number."""
+    sides = [_open(step) for step in (before, *after)]
+    start = sides[0]
+    if start is None:
+        return [None] * len(after)
+    sampled = iter(sample_rates([side for side in sides if side is not None], SAMPLES))
+    rates = [None if side is None else next(sampled) for side in sides]
+    first = rates[0]
+    found: list[Contrast | None] = []
+    for side, of_side in zip(sides[1:], rates[1:], strict=True):
+        if side is None or of_side is None or first is None:
+            found.append(None)
+        else:
+            found.append(_contrast(start[0], first, side[0], of_side, fate))
+    return found
+
+
+def _open(step: StepFacts) -> tuple[list[Draft], Sequence[Branch]] | None:
+    """Return the channels of a step, None where none is open."""
+    if closed_because(step):
+        return None
+    ways = partition(step)
+    drafts = list_channels(step, ways)
+    return (drafts, ways) if drafts else None
+
+
+def _contrast(
+    drafts: Sequence[Draft],
+    rates: NDArray[np.float64],
+    new_drafts: Sequence[Draft],
+    new_rates: NDArray[np.float64],
+    fate: Fate,
+) -> Contrast:
+    whole, new_whole = rates.sum(axis=0), new_rates.sum(axis=0)
+    share = rates[[i for i, d in enumerate(drafts) if d.fate is fate]].sum(axis=0) / whole
+    new_share = new_rates[[i for i, d in enumerate(new_drafts) if d.fate is fate]].sum(axis=0) / new_whole
+    change = new_share - share
     mean = float(change.mean())
     low, high = np.quantile(change, [(1 - LEVEL) / 2, (1 + LEVEL) / 2])
-    whole = [r.sum(axis=0) for r in rates]
-    moved = _moved(sides[0][0], sides[1][0])
+    moved = _moved(_that_count(drafts, rates / whole), _that_count(new_drafts, new_rates / new_whole))
     return Contrast(
         effect=Share(mean=mean, low=min(float(low), mean), high=max(float(high), mean)),
-        pace=float(np.median(whole[1] / whole[0])),
-        half_life_h=float(np.log(2) / np.median(whole[1]) / 3600),
+        pace=float(np.median(new_whole / whole)),
+        half_life_h=float(np.log(2) / np.median(new_whole) / 3600),
         because=tuple(dict.fromkeys(t.because for t in moved)),
         sources=tuple(dict.fromkeys(t.source for t in moved if t.source)),
     )
+
+
+def _that_count(drafts: Sequence[Draft], shares: NDArray[np.float64]) -> list[Draft]:
+    """Return the channels that take a share worth telling."""
+    return [d for d, share in zip(drafts, shares.mean(axis=1), strict=True) if share >= WORTH_TELLING]
 
 
 def _moved(before: Sequence[Draft], after: Sequence[Draft]) -> list[Term]:

@@ -14,7 +14,9 @@ from kb.vocabulary import Basis, Fate
 
 def prior(substitution: float) -> dict[Fate, Interval]:
     return {
-        Fate.SUBSTITUTION: Interval(mean=substitution, low=max(substitution - 0.15, 0), high=min(substitution + 0.15, 1)),
+        Fate.SUBSTITUTION: Interval(
+            mean=substitution, low=max(substitution - 0.15, 0), high=min(substitution + 0.15, 1)
+        ),
         Fate.ELIMINATION: Interval(mean=1 - substitution, low=0, high=1),
     }
 
