@@ -1,9 +1,10 @@
 """A condition line that tells failures of one kind from runs at the same place that came through.
 
-It owns the search: candidate tests are read off the failures themselves, in the language of `kb.assess.predicate`, and
-joined by `and`, best first, as long as the line gets better. It judges a line by the F1 of members warned of against
-successes warned of; it adopts nothing. A test that only names what was *not* there is never proposed: absence explains
-nothing. Distinct condition profiles are evaluated once, so the cost follows the variety of a book, not its length.
+It owns the search: candidate tests are read off the failures themselves, in the language of `kb.assess.predicate`,
+and joined by `and`, best first, as long as the line gets better. It judges a line by the F1 of members warned of
+against successes warned of; it adopts nothing. A test that only names what was *not* there is never proposed: absence
+explains nothing. Distinct condition profiles are evaluated once, so the cost follows the variety of a book, not its
+length.
 """
 
 from __future__ import annotations
@@ -112,7 +113,9 @@ def _candidates(profiles: Sequence[ConditionProfile], nothing_happened: bool) ->
     for fact in ("acidity", "lewis_acid", "hydride"):
         order = LEVELS[fact]
         met = [order.index(w) for p in profiles if (w := getattr(p, fact)) in order]
-        tests += [f"{fact} >= {order[level]}" for level in (2, 1) if sum(m >= level for m in met) >= _SHARED * len(profiles)]
+        tests += [
+            f"{fact} >= {order[level]}" for level in (2, 1) if sum(m >= level for m in met) >= _SHARED * len(profiles)
+        ]
     tests += _numbers("base_pkah", [p.base_pkah for p in profiles], 0.5)
     tests += [
         fact

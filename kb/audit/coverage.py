@@ -1,9 +1,9 @@
 """What the record covers: counts, best split and spread by class of centre, leaving group, reagent and solvent.
 
 It owns the cells, which of them are thin, and where like flasks disagree; which experiments would teach most is
-`teaching.py`. The *share* of a run is that of the fate that its scheme wanted (0..1); where no split was measured the yield
-stands in for it. A cell's reagent is the nucleophile's class, or the base's where nothing bonds; its solvent is the
-coarse class. Limits below are judgements.
+`teaching.py`. The *share* of a run is that of the fate that its scheme wanted (0..1); where no split was measured the
+yield stands in for it. A cell's reagent is the nucleophile's class, or the base's where nothing bonds; its solvent is
+the coarse class. Limits below are judgements.
 """
 
 from __future__ import annotations
@@ -22,6 +22,7 @@ from kb.audit.teaching import Experiment, teach_most
 from kb.materials.profile import ConditionProfile
 from kb.progress import Progress, Silent
 from kb.record.plan import Plan
+from kb.record.showing import ShowsItself
 
 THIN = 2
 """At most so many runs make a cell thin."""
@@ -87,7 +88,7 @@ class Contradiction:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Coverage:
+class Coverage(ShowsItself):
     """The record by cells, fullest first; contradictions widest first; experiments most telling first."""
 
     runs: int
@@ -184,9 +185,7 @@ def _flask_words(profile: ConditionProfile) -> tuple[str, str]:
     return reagent, solvent or "not recorded"
 
 
-def _cell(
-    table: FactTable, key: tuple[str, str, str, str], rows: NDArray[np.intp], share: NDArray[np.float64]
-) -> Cell:
+def _cell(table: FactTable, key: tuple[str, str, str, str], rows: NDArray[np.intp], share: NDArray[np.float64]) -> Cell:
     told = rows[~np.isnan(share[rows])]
     best = told[np.argmax(share[told])] if len(told) else None
     failed = WORDS["verdict"].index("failed")

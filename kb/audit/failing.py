@@ -1,8 +1,8 @@
 """What counts as a failure when the record is looked at as a whole.
 
-It owns that one judgement, so that clusters, replay and coverage count the same runs: a run failed when the chemist said
-so, or when it went only partly and a failure mode was named; a run without a verdict counts by its named failure, and
-else not at all.
+It owns that one judgement, so that clusters, replay and coverage count the same runs: a run failed when the chemist
+said so, or when it went only partly and a failure mode was named; a run without a verdict counts by its named
+failure, and else not at all.
 """
 
 from __future__ import annotations

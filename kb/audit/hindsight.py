@@ -1,9 +1,9 @@
 """The record as it stood on the morning of each run: views that hold earlier runs only.
 
 It owns the order in time and the cut, and judges nothing. A run sees the runs of earlier *days*: what was set up the
-same day had no outcome yet. Undated runs neither see nor are seen, since nobody can say what they knew. All views share
-one set of caches (profiles, runs, molecules, motif hits), which hold no outcome of a later run: a profile, a molecule
-and a motif hit follow from the row itself.
+same day had no outcome yet. Undated runs neither see nor are seen, since nobody can say what they knew. All views
+share one set of caches (profiles, runs, molecules, motif hits), which hold no outcome of a later run: a profile, a
+molecule and a motif hit follow from the row itself.
 """
 
 from __future__ import annotations

@@ -1,9 +1,9 @@
 """Where a failure happened, generalised: the group that was hit, the kind of centre, the partner or the medium.
 
-It owns the words and SMARTS of places and which aspect of a run a failure mode is about: an over-alkylation is about the
-nucleophile, a lost group about the group, an elimination about the centre. Two failures stand at the same place when
-their keys are equal. Groups are told by their own pattern, most particular first, so that a tert-butyl ester is not
-called an ether. Nothing here looks at conditions.
+It owns the words and SMARTS of places and which aspect of a run a failure mode is about: an over-alkylation is about
+the nucleophile, a lost group about the group, an elimination about the centre. Two failures stand at the same place
+when their keys are equal. Groups are told by their own pattern, most particular first, so that a tert-butyl ester is
+not called an ether. Nothing here looks at conditions.
 
 The table of groups and the choice of aspect are common practice; the precedence of flags is a judgement.
 """
@@ -202,17 +202,13 @@ def family_of(leaving_group: str | None) -> str:
     return _FAMILY.get(LeavingGroup(leaving_group), "other") if known else "other"
 
 
-def centre_place(
-    mode: str, carbon_class: str | None, flags: frozenset[str], leaving_group: str | None
-) -> Place | None:
+def centre_place(mode: str, carbon_class: str | None, flags: frozenset[str], leaving_group: str | None) -> Place | None:
     """Return the place of a reacting carbon for a failure mode; None where no carbon was read."""
     if carbon_class is None:
         return None
     family = family_of(leaving_group)
     if family == "epoxide":
-        return Place(
-            aspect=Aspect.CENTRE, key=("centre", "epoxide"), words="epoxide", smarts=dict(GROUPS)["epoxide"]
-        )
+        return Place(aspect=Aspect.CENTRE, key=("centre", "epoxide"), words="epoxide", smarts=dict(GROUPS)["epoxide"])
     if carbon_class == CarbonClass.VINYL and family == "none":
         return Place(aspect=Aspect.CENTRE, key=("centre", "alkene"), words="alkene", smarts="[CX3]=[CX3]")
     flag = next((f for f in _FLAGS if str(f) in flags), None)
@@ -221,11 +217,13 @@ def centre_place(
     if mode in _IONISING and flag in _ACTIVATION:
         carbon_class = "any"
     key = ("centre", carbon_class, str(flag or ""), family)
-    return Place(aspect=Aspect.CENTRE, key=key, words=_centre_words(key), smarts=_centre_smarts(carbon_class, flag, family))
+    return Place(
+        aspect=Aspect.CENTRE, key=key, words=_centre_words(key), smarts=_centre_smarts(carbon_class, flag, family)
+    )
 
 
 def centre_from_structure(mode: str, mol: Any, within: frozenset[int]) -> Place | None:
-    """Return the place of the one sp3 carbon with a leaving atom among some atoms, for a scheme whose centre was not read."""
+    """Return the place of the first sp3 carbon with a leaving atom, where a scheme's centre was not read; else None."""
     for atom in sorted(within):
         carbon = mol.GetAtomWithIdx(atom)
         if carbon.GetAtomicNum() != 6 or str(carbon.GetHybridization()) != "SP3":

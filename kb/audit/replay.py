@@ -1,9 +1,9 @@
-"""Hindsight replay: each run checked against what stood in the book that morning, and whether a warning would have come.
+"""Hindsight replay: each run checked against what stood in the book that morning; would a warning have come?
 
-It owns the walk and what is kept of each check; judging is `kb.assess`, counting is `replay_report`. A run is *warned of*
-when its check reports a liability, a resemblance or a house rule of severity caution or more; hazards of the mixture and
-gaps in the data are other matters. Beside that yes or no each check gives a *worry*, 0..1: how likely the check makes a
-failure, so that a group may choose its own threshold (`worry_of`).
+It owns the walk and what is kept of each check; judging is `kb.assess`, counting is `replay_report`. A run is *warned
+of* when its check reports a liability, a resemblance or a house rule of severity caution or more; hazards of the
+mixture and gaps in the data are other matters. Beside that yes or no each check gives a *worry*, 0..1: how likely the
+check makes a failure, so that a group may choose its own threshold (`worry_of`).
 
 The answer for a run depends on that run and on earlier days only, so it is the same however the walk is cut into
 parts, stopped and taken up again, or spread over processes (tested).
@@ -108,7 +108,9 @@ class Replayer:
         self._failed = failed_rows(dated.view)[dated.rows]
         self._judged = judged_rows(dated.view)[dated.rows]
 
-    def walk(self, places: Sequence[int], total: int | None = None, progress: Progress | None = None) -> list[Hindsight]:
+    def walk(
+        self, places: Sequence[int], total: int | None = None, progress: Progress | None = None
+    ) -> list[Hindsight]:
         """Check the runs at some places, in the order given; stopped early where progress says so."""
         progress = progress or Silent()
         seen: list[Hindsight] = []
@@ -146,7 +148,9 @@ class Replayer:
             by_record=bool(own),
             worry=worry_of(assessment, chance),
             findings=tuple((f.rule_id, str(f.severity)) for f in warnings),
-            precedents=tuple(dict.fromkeys(code for f in own if f.evidence for code in f.evidence.runs[: f.evidence.lost])),
+            precedents=tuple(
+                dict.fromkeys(code for f in own if f.evidence for code in f.evidence.runs[: f.evidence.lost])
+            ),
         )
 
     def _chance_by_likeness(self, similarity: NDArray[np.float64], count: int) -> float:
@@ -159,7 +163,7 @@ class Replayer:
 
 
 def worry_of(assessment: Assessment, chance_by_likeness: float) -> float:
-    """Return how likely a check makes a failure (0..1): its worst finding and its like runs, either of which may be right.
+    """Return how likely a check makes a failure (0..1): by its worst finding and by its like runs.
 
     A finding counts with the chance of loss that it states, else by its severity. The two are joined as independent
     reasons, 1 - (1 - a)(1 - b); the figure ranks plans, it is no calibrated chance.

@@ -17,6 +17,7 @@ import numpy as np
 from kb.audit.replay import Hindsight
 from kb.audit.wilson import counted_share
 from kb.record.finding import Interval
+from kb.record.showing import ShowsItself
 
 CURVE_POINTS = 50
 """Most thresholds that the curve lists."""
@@ -82,7 +83,7 @@ class CurvePoint:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class ReplayReport:
+class ReplayReport(ShowsItself):
     """A replay, counted.
 
     Attributes:

@@ -1,8 +1,8 @@
 """Finding the place of each recorded failure: from a stated motif, from what was found, or from the centre read.
 
-It owns that order of trust. A motif that the chemist wrote down is the first witness. Without one, what the found product
-lacks beside the *wanted* product was lost without being meant to be. Failing both, the place is the groups that the
-substrate shares with failures of the same mode whose place is known, where there is only one such.
+It owns that order of trust. A motif that the chemist wrote down is the first witness. Without one, what the found
+product lacks beside the *wanted* product was lost without being meant to be. Failing both, the place is the groups
+that the substrate shares with failures of the same mode whose place is known, where there is only one such.
 """
 
 from __future__ import annotations
@@ -40,7 +40,11 @@ class Sited:
 
 def site_failures(view: RecordView, rows: list[int]) -> list[Sited]:
     """Find the place of every failure of some rows, in their order."""
-    sited = [Sited(row=row, mode=mode, place=_place(view, row, mode, motif)) for row in rows for mode, motif in view.failures[row]]
+    sited = [
+        Sited(row=row, mode=mode, place=_place(view, row, mode, motif))
+        for row in rows
+        for mode, motif in view.failures[row]
+    ]
     return _with_the_usual_place(view, sited)
 
 

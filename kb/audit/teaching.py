@@ -1,10 +1,11 @@
 """Which experiments would teach a group most: the largest expected drop in the uncertainty of what it means to do.
 
-It owns the reckoning. A step's uncertainty is the variance of the mean share that the record gives for it,
-sigma^2 / (n + PRIOR_RUNS): n its effective precedents (the kernel's weights, as in an estimate), sigma the scatter of those
-precedents, shrunk towards the estimate's prior scatter. One more run, alike by weight w, makes n into n + w. The gain of
-an experiment is the sum of those drops over all steps; experiments are chosen one after another, so that the second does
-not teach what the first already has. Groups at risk elsewhere in the molecule are left out of the likeness here.
+It owns the reckoning. A step's uncertainty is the variance of the mean share that the record gives for it, sigma^2 /
+(n + PRIOR_RUNS): n its effective precedents (the kernel's weights, as in an estimate), sigma the scatter of those
+precedents, shrunk towards the estimate's prior scatter. One more run, alike by weight w, makes n into n + w. The gain
+of an experiment is the sum of those drops over all steps; experiments are chosen one after another, so that the
+second does not teach what the first already has. Groups at risk elsewhere in the molecule are left out of the
+likeness here.
 """
 
 from __future__ import annotations
@@ -193,4 +194,3 @@ def _words(table: FactTable, row: int) -> str:
     if temperature is not None:
         words.append(f"{temperature:.0f} °C")
     return ", ".join(words)
-

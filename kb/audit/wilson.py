@@ -1,7 +1,7 @@
 """The interval of a counted share.
 
-It owns one formula. Source: E. B. Wilson, J. Am. Stat. Assoc. 1927, 22, 209 (score interval), doi:10.1080/01621459.1927.10502953;
-chosen because it stays within 0..1 and says something sensible of 0 out of 3.
+It owns one formula. Source: E. B. Wilson, J. Am. Stat. Assoc. 1927, 22, 209 (score interval),
+doi:10.1080/01621459.1927.10502953; chosen because it stays within 0..1 and says something sensible of 0 out of 3.
 """
 
 from __future__ import annotations
@@ -26,6 +26,4 @@ def counted_share(hits: float, total: float, z: float = Z80) -> Interval | None:
     shrink = 1 + z * z / total
     middle = (share + z * z / (2 * total)) / shrink
     half = z / shrink * math.sqrt(share * (1 - share) / total + z * z / (4 * total * total))
-    return Interval(
-        mean=round(share, 4), low=round(max(middle - half, 0.0), 4), high=round(min(middle + half, 1.0), 4)
-    )
+    return Interval(mean=round(share, 4), low=round(max(middle - half, 0.0), 4), high=round(min(middle + half, 1.0), 4))

@@ -12,6 +12,7 @@ from pathlib import Path
 from types import TracebackType
 from typing import TYPE_CHECKING, Any
 
+from kb.book.pages import teach_notebooks
 from kb.logs import tame_rdkit
 from kb.progress import Progress, Silent
 from kb.record.assessment import Assessment, Estimate
@@ -22,6 +23,7 @@ from kb.record.run import Run
 if TYPE_CHECKING:
     from kb.assess.house_rules import RuleTrial
     from kb.assess.record_view import RecordView
+    from kb.audit.replay_report import ReplayReport
     from kb.exchange.loading import LoadReport
     from kb.search.criteria import Criteria
     from kb.search.finder import Finder, FindResult
@@ -66,6 +68,7 @@ class Book:
         self.store = store
         self._view: tuple[object, RecordView] | None = None
         self._finder: Finder | None = None
+        teach_notebooks()
 
     def __enter__(self) -> Book:
         return self
@@ -123,6 +126,12 @@ class Book:
             assessment = self.check(dataclasses.replace(plan, conditions=changed), top=0)
             answers.append((t, assessment.estimate))
         return tuple(answers)
+
+    def replay(self, since: dt.date | None = None, progress: Progress | None = None) -> ReplayReport:
+        """Check each run against what stood in the book that morning; see `kb.book.whole.replay_book`."""
+        from kb.book.whole import replay_book
+
+        return replay_book(self, since, progress)
 
     def find(self, criteria: Criteria, deadline_s: float | None = None) -> FindResult:
         """Find runs; with a deadline [s] the answer may be partial and says so."""

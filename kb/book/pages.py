@@ -13,7 +13,7 @@ from kb.errors import ImportFileError, InvalidRecord
 from kb.record.showing import show_with
 
 if TYPE_CHECKING:
-    from kb.book.facade import Book
+    from kb.book.asked import AskedBook
     from kb.exchange.report_blocks import Page
     from kb.progress import Progress
     from kb.record.plan import Plan
@@ -26,7 +26,7 @@ def teach_notebooks() -> None:
     show_with(_notebook_html)
 
 
-def page_of(book: Book, thing: object) -> Page:
+def page_of(book: AskedBook, thing: object) -> Page:
     """Lay out a run, an assessment, an audit or a route of a book."""
     from kb.book.words import today
     from kb.exchange.report import build_page
@@ -36,7 +36,7 @@ def page_of(book: Book, thing: object) -> Page:
     return build_page(thing, made_from(name, book.count(), today()))
 
 
-def save_page(book: Book, thing: object, path: Path) -> None:
+def save_page(book: AskedBook, thing: object, path: Path) -> None:
     """Write a page, HTML or (by the ending .md) Markdown."""
     from kb.exchange.report import write_page
 
@@ -45,7 +45,7 @@ def save_page(book: Book, thing: object, path: Path) -> None:
     write_page(page_of(book, thing), path)
 
 
-def thing_named(book: Book, name: str, progress: Progress | None = None) -> object:
+def thing_named(book: AskedBook, name: str, progress: Progress | None = None) -> object:
     """Return what a word names: an audit, a route or plan file (.toml, .json), or a run by its code.
 
     Raises:
@@ -92,7 +92,7 @@ def _words(path: Path) -> object:
         return None
 
 
-def _from_file(book: Book, path: Path) -> object:
+def _from_file(book: AskedBook, path: Path) -> object:
     """Return the ledger of a route file, or the assessment of a plan file (one with a `scheme`)."""
     from kb.book.routes import reckon_route
 

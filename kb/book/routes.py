@@ -1,7 +1,8 @@
-"""A route's yields, looked up in an open book: recorded runs, estimates of planned steps, and what a check says of them.
+"""A route's yields, looked up in an open book: recorded runs, estimates of planned steps, and their findings.
 
-It owns what a yield from the record is taken to mean for the *next* time: a recorded yield is one draw, so it carries the
-scatter between repeats (REPEAT_SD_PCT, or that of the runs named, whichever is larger). The arithmetic is `kb.route`.
+It owns what a yield from the record is taken to mean for the *next* time: a recorded yield is one draw, so it carries
+the scatter between repeats (REPEAT_SD_PCT, or that of the runs named, whichever is larger). The arithmetic is
+`kb.route`.
 """
 
 from __future__ import annotations
@@ -18,7 +19,7 @@ from kb.route.sequence import Z80, Route, Step, StepYield
 from kb.vocabulary import Severity
 
 if TYPE_CHECKING:
-    from kb.book.facade import Book
+    from kb.book.asked import AskedBook
     from kb.route.ledger import Ledger
     from kb.route.routefile import RouteDraft, StepDraft
 
@@ -27,7 +28,7 @@ REPEAT_SD_PCT = 5.0
 _WIDEST = Interval(mean=50.0, low=10.0, high=90.0)
 
 
-def reckon_route(book: Book, path: Path, what_if: Sequence[str] = ()) -> Ledger:
+def reckon_route(book: AskedBook, path: Path, what_if: Sequence[str] = ()) -> Ledger:
     """Read a route file, look its yields up in the book, and reckon it.
 
     Args:
@@ -55,7 +56,7 @@ def route_lead(ledger: Ledger) -> str:
     return lead(ledger)
 
 
-def resolve_route(book: Book, draft: RouteDraft) -> Route:
+def resolve_route(book: AskedBook, draft: RouteDraft) -> Route:
     """Look up the yields of a draft."""
     tame_rdkit()
     return Route(
@@ -68,7 +69,7 @@ def resolve_route(book: Book, draft: RouteDraft) -> Route:
     )
 
 
-def _resolve(book: Book, draft: StepDraft) -> Step:
+def _resolve(book: AskedBook, draft: StepDraft) -> Step:
     step = Step(
         name=draft.name,
         yield_pct=StepYield(pct=draft.given or _WIDEST, basis="given", note="as given in the file"),
@@ -84,13 +85,15 @@ def _resolve(book: Book, draft: StepDraft) -> Step:
     return dataclasses.replace(step, yield_pct=_recorded(book, draft))
 
 
-def _recorded(book: Book, draft: StepDraft) -> StepYield:
+def _recorded(book: AskedBook, draft: StepDraft) -> StepYield:
     yields = []
     for code in draft.runs:
         got = book.get(code).outcome.yield_pct
         if got is None:
             raise InvalidRecord(
-                f"Run {code}, named by step {draft.name!r}, records no yield.", "Name another run, or give `yield`.", code
+                f"Run {code}, named by step {draft.name!r}, records no yield.",
+                "Name another run, or give `yield`.",
+                code,
             )
         yields.append(min(got, 100.0))
     mean = max(sum(yields) / len(yields), 0.2)
@@ -106,14 +109,16 @@ def _recorded(book: Book, draft: StepDraft) -> StepYield:
     )
 
 
-def _estimated(book: Book, step: Step, draft: StepDraft) -> Step:
+def _estimated(book: AskedBook, step: Step, draft: StepDraft) -> Step:
     from kb.book.plan_words import plan_from_words
 
     if "scheme" not in (draft.plan or {}):
         raise InvalidRecord(f"The plan of step {draft.name!r} has no scheme.", 'Give scheme = "substrate>>product".')
     assessment = book.check(plan_from_words(dict(draft.plan or {})))
     if not assessment.reading.ok:
-        raise InvalidRecord(f"The plan of step {draft.name!r} cannot be read: {assessment.reading.reason}", "Mend its scheme.")
+        raise InvalidRecord(
+            f"The plan of step {draft.name!r} cannot be read: {assessment.reading.reason}", "Mend its scheme."
+        )
     estimate, wanted = assessment.estimate, assessment.reading.fate
     share = dict(estimate.fates).get(wanted) if wanted else None
     runs = tuple(p.run for p in assessment.precedents)

@@ -1,14 +1,15 @@
 """The record as a whole, asked through an open book: recurring failures, replay, coverage, and a route's estimates.
 
 It owns the wiring of `kb.audit` and `kb.route` to a book: where runs and rules come from, how a replay is spread over
-processes and kept in a file. It judges nothing. Everything here only reads, but `adopt_proposal`, which writes one house rule.
+processes and kept in a file. It judges nothing. Everything here only reads, but `adopt_proposal`, which writes one
+house rule.
 """
 
 from __future__ import annotations
 
 import datetime as dt
 import json
-from collections.abc import Iterator, Sequence
+from collections.abc import Generator, Sequence
 from contextlib import closing
 from dataclasses import replace
 from hashlib import sha256
@@ -23,10 +24,10 @@ from kb.record.plan import Plan
 if TYPE_CHECKING:
     from kb.audit.coverage import Coverage
     from kb.audit.hindsight import DatedRecord
-    from kb.audit.recurrence import Circumstance, Proposal, Recurrence
+    from kb.audit.recurrence_values import Circumstance, Proposal, Recurrence
     from kb.audit.replay import Hindsight, Replayer
     from kb.audit.replay_report import ReplayReport
-    from kb.book.facade import Book
+    from kb.book.asked import AskedBook
     from kb.store.values import HouseRule
 
 _PART = 100
@@ -34,7 +35,7 @@ _PART = 100
 
 
 def find_recurring_failures(
-    book: Book, since: dt.date | None = None, progress: Progress | None = None
+    book: AskedBook, since: dt.date | None = None, progress: Progress | None = None
 ) -> Recurrence:
     """Find what keeps going wrong; see `kb.audit.recurrence`.
 
@@ -50,13 +51,13 @@ def find_recurring_failures(
     return find_recurring(book.view(), _circumstances(book), book.rules(), since, progress)
 
 
-def adopt_proposal(book: Book, proposal: Proposal, *, who: str) -> HouseRule:
+def adopt_proposal(book: AskedBook, proposal: Proposal, *, who: str) -> HouseRule:
     """Adopt a proposed house rule and return it with its id; it is signed by whoever adopts it."""
     return book.add_rule(replace(proposal.rule, author=who))
 
 
 def measure_book_coverage(
-    book: Book, planned: Sequence[Plan] = (), experiments: int = 3, progress: Progress | None = None
+    book: AskedBook, planned: Sequence[Plan] = (), experiments: int = 3, progress: Progress | None = None
 ) -> Coverage:
     """Measure what the record covers, and which experiments would teach most; see `kb.audit.coverage`."""
     tame_rdkit()
@@ -66,7 +67,7 @@ def measure_book_coverage(
 
 
 def replay_book(
-    book: Book,
+    book: AskedBook,
     since: dt.date | None = None,
     progress: Progress | None = None,
     processes: int = 1,
@@ -111,19 +112,19 @@ def replay_book(
     return report_replay(found, dated.undated, stopped=len(found) < len(wanted))
 
 
-def _dated(book: Book) -> DatedRecord:
+def _dated(book: AskedBook) -> DatedRecord:
     from kb.audit.hindsight import DatedRecord
 
     return DatedRecord(book.view(), book.rules(), book.finder().tanimoto_of_runs)
 
 
-def _one_by_one(replayer: Replayer, places: list[int]) -> Iterator[list[Hindsight]]:
+def _one_by_one(replayer: Replayer, places: list[int]) -> Generator[list[Hindsight], None, None]:
     replayer.read_ahead(places)
     for place in places:
         yield [replayer.check(place)]
 
 
-def _replay_parts(address: str, places: list[int], processes: int) -> Iterator[list[Hindsight]]:
+def _replay_parts(address: str, places: list[int], processes: int) -> Generator[list[Hindsight], None, None]:
     """Yield results as processes finish their parts; leaving early drops what has not begun."""
     from concurrent.futures import ProcessPoolExecutor, as_completed
     from multiprocessing import get_context
@@ -142,7 +143,7 @@ _REPLAYER: list[Replayer] = []
 
 def _open_in_process(address: str) -> None:
     from kb.audit.replay import Replayer
-    from kb.book.facade import open_book
+    from kb.book import open_book
 
     tame_rdkit()
     _REPLAYER.append(Replayer(_dated(open_book(address, read_only=True))))
@@ -152,8 +153,8 @@ def _check_in_process(places: list[int]) -> list[Hindsight]:
     return _REPLAYER[0].walk(places)
 
 
-def _circumstances(book: Book) -> dict[str, Circumstance]:
-    from kb.audit.recurrence import Circumstance
+def _circumstances(book: AskedBook) -> dict[str, Circumstance]:
+    from kb.audit.recurrence_values import Circumstance
 
     return {
         run.code: Circumstance(project=run.project, scale_mmol=run.conditions.scale_mmol)
@@ -162,14 +163,17 @@ def _circumstances(book: Book) -> dict[str, Circumstance]:
     }
 
 
-def _state_of(dated: DatedRecord, book: Book) -> str:
+def _state_of(dated: DatedRecord, book: AskedBook) -> str:
     """Return a digest of everything a replay rests on, so that kept results are used for no other book."""
     table = dated.table
     digest = sha256()
     for text in (*table.codes, *(repr(pairs) for pairs in dated.failures), *table.substrate, *map(repr, book.rules())):
         digest.update(text.encode("utf-8", "surrogatepass") + b"\0")
-    for column in (dated.dates, table.shares, table.yield_pct, table.words["verdict"], *table.numbers.values()):
+    for name in ("verdict", "fate"):
+        digest.update(table.words[name].tobytes())
+    for column in (table.shares, table.yield_pct, *table.numbers.values()):
         digest.update(column.tobytes())
+    digest.update(dated.dates.tobytes())
     return digest.hexdigest()
 
 

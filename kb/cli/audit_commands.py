@@ -69,7 +69,8 @@ def replay(
     md: MarkdownFlag = None,
     processes: Annotated[int, typer.Option("--processes", min=1, max=64, help="How many work side by side.")] = 1,
     keep: Annotated[
-        File, typer.Option("--keep", metavar="FILE", help="Keep results as they come; a stopped replay goes on from it.")
+        File,
+        typer.Option("--keep", metavar="FILE", help="Keep results as they come; a stopped replay goes on from it."),
     ] = None,
 ) -> int:
     """Check each run against what stood in the book that morning: would the record have told us?"""

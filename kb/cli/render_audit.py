@@ -1,7 +1,7 @@
 """Audits and routes as text for a terminal: the answer first, then the figures behind it.
 
-It owns what a terminal shows of them; the pages (`--html`) show all. Everything that came from a person is made safe by the
-functions of `render`.
+It owns what a terminal shows of them; the pages (`--html`) show all. Everything that came from a person is made safe
+by the functions of `render`.
 """
 
 from __future__ import annotations
@@ -13,7 +13,7 @@ from kb.vocabulary import Severity
 
 if TYPE_CHECKING:
     from kb.audit.coverage import Coverage
-    from kb.audit.recurrence import Cluster, Recurrence
+    from kb.audit.recurrence_values import Cluster, Recurrence
     from kb.audit.replay_report import ReplayReport
     from kb.record.finding import Interval
     from kb.route.ledger import Ledger
@@ -89,9 +89,7 @@ def render_replay(report: ReplayReport, *, verbose: bool = False) -> str:
     rows = [(m.mode.replace("-", " "), str(m.failures), str(m.warned), _share(m.share)) for m in report.by_mode]
     lines += table(rows, ("mode", "failures", "warned of", "share"), (20, 8, 9, 24))
     lines += ["", heading("Over time")]
-    periods = [
-        (p.name, str(p.failures), str(p.warned), str(p.successes), str(p.false_alarms)) for p in report.periods
-    ]
+    periods = [(p.name, str(p.failures), str(p.warned), str(p.successes), str(p.false_alarms)) for p in report.periods]
     lines += table(periods, ("quarter", "failures", "warned of", "successes", "false alarms"), (8, 8, 9, 9, 12))
     lines += ["", heading("Other thresholds on the worry")]
     points = report.curve if verbose else report.curve[:: max(1, len(report.curve) // 10)]

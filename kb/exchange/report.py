@@ -12,7 +12,7 @@ from pathlib import Path
 from typing import Any
 
 from kb.audit.coverage import Coverage
-from kb.audit.recurrence import Recurrence
+from kb.audit.recurrence_values import Recurrence
 from kb.audit.replay_report import ReplayReport
 from kb.chem.facts import Reading
 from kb.exchange.report_assessment import assessment_page

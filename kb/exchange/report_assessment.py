@@ -28,10 +28,16 @@ def assessment_page(assessment: Assessment, source: str = "") -> Page:
     findings = assessment.findings
     serious = sum(f.severity is Severity.SERIOUS for f in findings)
     expected = assessment.estimate.fates[0] if assessment.estimate.fates else None
-    lead = f"{counted(serious, 'serious worry', 'serious worries')} of {counted(len(findings), 'finding')}." if findings else "Nothing known speaks against it."
+    lead = (
+        f"{counted(serious, 'serious worry', 'serious worries')} of {counted(len(findings), 'finding')}."
+        if findings
+        else "Nothing known speaks against it."
+    )
     if expected is not None:
         lead += f" Expect {expected[0]} {interval_words(expected[1])}"
-        lead += f", yield {interval_words(assessment.estimate.yield_pct, 1.0)}." if assessment.estimate.yield_pct else "."
+        lead += (
+            f", yield {interval_words(assessment.estimate.yield_pct, 1.0)}." if assessment.estimate.yield_pct else "."
+        )
     fragments = _fragments(assessment.plan.scheme)
     return Page(
         title="A planned step, checked",
@@ -112,7 +118,10 @@ def _estimate(assessment: Assessment) -> tuple[Block, ...]:
     if estimate.yield_pct is not None:
         blocks.append(Words(text=f"Yield {interval_words(estimate.yield_pct, 1.0)}."))
     blocks.append(
-        Words(text=f"Rests on {_BASIS[estimate.basis]}; {estimate.effective_precedents:.1f} effective precedents. {estimate.note}")
+        Words(
+            text=f"Rests on {_BASIS[estimate.basis]}; {estimate.effective_precedents:.1f} effective precedents. "
+            f"{estimate.note}"
+        )
     )
     return tuple(blocks)
 

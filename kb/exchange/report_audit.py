@@ -6,7 +6,7 @@ It owns what is said of each and in which order: the answer first, then where it
 from __future__ import annotations
 
 from kb.audit.coverage import Coverage
-from kb.audit.recurrence import Cluster, Recurrence
+from kb.audit.recurrence_values import Cluster, Recurrence
 from kb.audit.replay_report import ReplayReport
 from kb.exchange.report_blocks import Block, Facts, Page, Section, Table, Words
 from kb.exchange.report_drawings import fragment
@@ -21,7 +21,8 @@ def recurrence_page(found: Recurrence, source: str = "") -> Page:
     """Lay out recurring failures, costliest first."""
     since = f" since {found.since.isoformat()}" if found.since else ""
     top = sum(len(c.runs) for c in found.clusters[:3])
-    lead = f"{counted(found.failures, 'failure')}{since} in {counted(found.runs, 'run')}; {found.in_clusters} of them recur."
+    lead = f"{counted(found.failures, 'failure')}{since} in {counted(found.runs, 'run')}; "
+    lead += f"{found.in_clusters} of them recur."
     if found.clusters:
         lead += f" The {min(3, len(found.clusters))} costliest recurring failures make {top} of them."
     table = Table(
@@ -58,13 +59,20 @@ def recurrence_page(found: Recurrence, source: str = "") -> Page:
 def _cluster(c: Cluster) -> Section:
     blocks: list[Block] = [Words(text=f"{c.meaning[:1].upper()}{c.meaning[1:]}.", tone="quiet")]
     smiles, atoms = c.example
-    figure = fragment(smiles, atoms, f"The latest of them, {c.runs[-1]}: {c.place}") if smiles and c.foreseeable else None
+    figure = (
+        fragment(smiles, atoms, f"The latest of them, {c.runs[-1]}: {c.place}") if smiles and c.foreseeable else None
+    )
     blocks += [figure] if figure is not None else []
     span = f"{c.first} to {c.last}" if c.first and c.last else "not dated"
     pairs = [
         ("Runs", f"{len(c.runs)}, {span}"),
         ("Projects", ", ".join(f"{p} {n}" for p, n in c.projects) or "not recorded"),
-        ("Material lost", f"{c.lost_mmol:.3g} mmol, over the {c.lost_mmol_runs} that record a scale" if c.lost_mmol_runs else "not recorded"),
+        (
+            "Material lost",
+            f"{c.lost_mmol:.3g} mmol, over the {c.lost_mmol_runs} that record a scale"
+            if c.lost_mmol_runs
+            else "not recorded",
+        ),
         ("Reaction time spent", f"{c.days:.3g} d, over {c.days_runs}" if c.days_runs else "not recorded"),
         ("Came through at the same place", str(len(c.came_through))),
         ("House rules", ", ".join(f"{r} warns of {n}" for r, n in c.covered_by) or "none covers it"),
@@ -77,7 +85,10 @@ def _cluster(c: Cluster) -> Section:
         shown = "; ".join(f"{run} after {earlier}" for run, earlier in c.repeats[:12])
         more = f" and {len(c.repeats) - 12} more" if len(c.repeats) > 12 else ""
         blocks.append(
-            Words(text=f"An earlier run under conditions no harsher stood in the book before {len(c.repeats)} of them: {shown}{more}.")
+            Words(
+                text=f"An earlier run under conditions no harsher stood in the book before {len(c.repeats)} of them: "
+                f"{shown}{more}."
+            )
         )
     if c.proposal is not None:
         rule, trial = c.proposal.rule, c.proposal.trial
@@ -88,7 +99,11 @@ def _cluster(c: Cluster) -> Section:
                     ("When", rule.when),
                     ("Motif", rule.motif or "any substrate"),
                     ("Severity", str(rule.severity)),
-                    ("On this book", f"warns of {counted(len(trial.hits), 'failure')}, {counted(len(trial.false_alarms), 'false alarm')}"),
+                    (
+                        "On this book",
+                        f"warns of {counted(len(trial.hits), 'failure')}, "
+                        f"{counted(len(trial.false_alarms), 'false alarm')}",
+                    ),
                 )
             ),
         ]
@@ -99,9 +114,10 @@ def _cluster(c: Cluster) -> Section:
 def replay_page(report: ReplayReport, source: str = "") -> Page:
     """Lay out a replay."""
     lead = (
-        f"Checked against what stood in the book that morning, {report.warned} of {counted(report.failures, 'failure')} "
-        f"would have been warned of, {report.warned_by_record} of them by recorded losses or house rules; "
-        f"{report.false_alarms} of {counted(report.successes, 'success', 'successes')} too."
+        f"Checked against what stood in the book that morning, {report.warned} of "
+        f"{counted(report.failures, 'failure')} would have been warned of, {report.warned_by_record} of them by "
+        f"recorded losses or house rules; {report.false_alarms} of "
+        f"{counted(report.successes, 'success', 'successes')} too."
     )
     if report.stopped:
         lead = "Stopped before the end. " + lead
@@ -142,7 +158,12 @@ def replay_page(report: ReplayReport, source: str = "") -> Page:
     points = [(p.false_alarm_share, p.recall) for p in report.curve]
     now = (report.false_alarm_share.mean, report.recall.mean) if report.recall and report.false_alarm_share else None
     rows = tuple(
-        (f"{p.threshold:.2f}", f"{100 * p.recall:.0f} %", "none" if p.precision is None else f"{100 * p.precision:.0f} %", str(p.false_alarms))
+        (
+            f"{p.threshold:.2f}",
+            f"{100 * p.recall:.0f} %",
+            "none" if p.precision is None else f"{100 * p.precision:.0f} %",
+            str(p.false_alarms),
+        )
         for p in report.curve[:: max(1, len(report.curve) // 12)]
     )
     missed = [r for r in report.runs if r.failed and not r.warned]
@@ -157,8 +178,17 @@ def replay_page(report: ReplayReport, source: str = "") -> Page:
             Section(
                 heading="Other thresholds",
                 blocks=(
-                    curve("Failures warned of against successes warned of", points, "successes warned of", "failures warned of", now),
-                    Words(text="The ring is the rule in use: any liability, resemblance or house rule of caution or more.", tone="quiet"),
+                    curve(
+                        "Failures warned of against successes warned of",
+                        points,
+                        "successes warned of",
+                        "failures warned of",
+                        now,
+                    ),
+                    Words(
+                        text="The ring is the rule in use: a liability, resemblance or house rule of caution or more.",
+                        tone="quiet",
+                    ),
                     Table(
                         caption="What a threshold on the worry would do",
                         header=("Worry from", "Failures warned of", "Warnings right", "False alarms"),
@@ -178,25 +208,40 @@ def replay_page(report: ReplayReport, source: str = "") -> Page:
                 ),
             ),
         ),
-        source=source + (f" {report.undated} undated and {report.unjudged} unjudged runs are left out." if report.undated or report.unjudged else ""),
+        source=source
+        + (
+            f" {report.undated} undated and {report.unjudged} unjudged runs are left out."
+            if report.undated or report.unjudged
+            else ""
+        ),
     )
 
 
 def coverage_page(coverage: Coverage, source: str = "") -> Page:
     """Lay out coverage."""
     cells = coverage.cells
-    lead = f"{counted(coverage.runs, 'run')} in {counted(len(cells), 'combination')}; {coverage.thin} hold two runs or fewer, {counted(len(coverage.contradictions), 'place')} contradict themselves."
+    lead = (
+        f"{counted(coverage.runs, 'run')} in {counted(len(cells), 'combination')}; {coverage.thin} hold two runs or "
+        f"fewer, {counted(len(coverage.contradictions), 'place')} contradict themselves."
+    )
     experiments = tuple(
         Section(
             heading=f"{number}. {e.words}",
             blocks=(
                 Words(text=e.why),
-                *((figure,) if (figure := fragment(e.scheme.split(">")[0].split(".")[0], (), "The substrate")) is not None else ()),
+                *(
+                    (figure,)
+                    if (figure := fragment(e.scheme.split(">")[0].split(".")[0], (), "The substrate")) is not None
+                    else ()
+                ),
                 Facts(
                     pairs=(
                         ("Like", e.like or "a planned step"),
                         ("Steps made surer", str(e.serves)),
-                        ("Doubt about the step itself", f"± {100 * e.before:.0f} points now, ± {100 * e.after:.0f} after"),
+                        (
+                            "Doubt about the step itself",
+                            f"± {100 * e.before:.0f} points now, ± {100 * e.after:.0f} after",
+                        ),
                     )
                 ),
             ),
@@ -239,7 +284,17 @@ def coverage_page(coverage: Coverage, source: str = "") -> Page:
                 blocks=(
                     Table(
                         caption=f"The {min(len(cells), MOST_CELLS)} fullest; share is that of what was wanted",
-                        header=("Carbon", "Leaving group", "Reagent", "Solvent", "Runs", "Best", "Mean", "Spread", "Failed"),
+                        header=(
+                            "Carbon",
+                            "Leaving group",
+                            "Reagent",
+                            "Solvent",
+                            "Runs",
+                            "Best",
+                            "Mean",
+                            "Spread",
+                            "Failed",
+                        ),
                         rows=tuple(
                             (
                                 c.carbon_class,
@@ -261,4 +316,3 @@ def coverage_page(coverage: Coverage, source: str = "") -> Page:
         ),
         source=source,
     )
-

@@ -1,13 +1,19 @@
 """A page to hand round, as values: sections of paragraphs, facts, tables, lists and figures.
 
-It owns the shape of a page, so that HTML and Markdown say the same. It knows no chemistry and no markup. All text is plain
-text: whoever renders it escapes it. The one exception is `Figure.svg`, which only the drawing code of this project makes,
-from escaped text (`kb.chem.layout_svg`, `report_plots`).
+It owns the shape of a page, so that HTML and Markdown say the same. It knows no chemistry and no markup. All text is
+plain text: whoever renders it escapes it. The one exception is `Figure.svg`, which only the drawing code of this
+project makes, from escaped text (`kb.chem.layout_svg`, `report_plots`).
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
+
+NO_PERMISSION = (
+    "Figures and warnings describe a record; they are no permission. Hazards are for local rules and the people "
+    "responsible for safety to judge."
+)
+"""Stands at the foot of every page."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

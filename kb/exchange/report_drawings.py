@@ -1,7 +1,7 @@
 """Structures for pages: schemes with their centre marked, motifs of findings, a generalised place in an example.
 
-It owns which atoms are marked and the words beside a drawing; the drawing itself is `kb.chem.layout`. A structure that
-cannot be drawn is told in words with the reason, never left out.
+It owns which atoms are marked and the words beside a drawing; the drawing itself is `kb.chem.layout`. A structure
+that cannot be drawn is told in words with the reason, never left out.
 """
 
 from __future__ import annotations
@@ -53,9 +53,7 @@ def fragment(smiles: str, atoms: Sequence[int], title: str, kind: MarkKind = Mar
 def _piece(piece: Piece) -> Figure | str:
     if piece.drawing is None:
         return f"{plain(piece.smiles)} ({piece.reason})" if piece.reason else plain(piece.smiles)
-    return Figure(
-        svg=render_svg(piece.drawing), alternative=piece.drawing.text_alternative, is_paper=True
-    )
+    return Figure(svg=render_svg(piece.drawing), alternative=piece.drawing.text_alternative, is_paper=True)
 
 
 def _legend(drawings: Sequence[Drawing]) -> tuple[Block, ...]:

@@ -1,8 +1,9 @@
 """A page as one HTML file that needs nothing else: style inside, drawings inside, no script, no request.
 
-It owns the document, not what it says. Text is escaped by the template engine (autoescape is on for every template here)
-after control and direction characters were made visible. A content security policy in the head forbids scripts, frames,
-forms and every request; the one style sheet is allowed by its hash, so a style smuggled in with a note would not apply either.
+It owns the document, not what it says. Text is escaped by the template engine (autoescape is on for every template
+here) after control and direction characters were made visible. A content security policy in the head forbids scripts,
+frames, forms and every request; the one style sheet is allowed by its hash, so a style smuggled in with a note would
+not apply either.
 """
 
 from __future__ import annotations
@@ -13,7 +14,7 @@ from functools import cache
 from importlib import resources
 from typing import Any
 
-from kb.exchange.report_blocks import Figure, Page
+from kb.exchange.report_blocks import NO_PERMISSION, Figure, Page
 from kb.plain import plain
 
 
@@ -21,12 +22,20 @@ def page_html(page: Page) -> str:
     """Return a whole document."""
     style = style_sheet()
     digest = base64.b64encode(hashlib.sha256(style.encode()).digest()).decode()
-    return str(_templates().get_template("page.html.jinja").render(page=page, style=style, style_hash=digest))
+    return str(
+        _templates()
+        .get_template("page.html.jinja")
+        .render(page=page, style=style, style_hash=digest, no_permission=NO_PERMISSION)
+    )
 
 
 def page_fragment(page: Page) -> str:
     """Return the page's body with its style, for a notebook cell."""
-    return str(_templates().get_template("fragment.html.jinja").render(page=page, style=style_sheet()))
+    return str(
+        _templates()
+        .get_template("fragment.html.jinja")
+        .render(page=page, style=style_sheet(), no_permission=NO_PERMISSION)
+    )
 
 
 @cache

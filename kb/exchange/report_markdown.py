@@ -1,7 +1,8 @@
 """A page as Markdown: the same blocks as the HTML, drawings told in words.
 
-It owns escaping. What a person typed can be no markup: every character that CommonMark gives a meaning is escaped, angle
-brackets and ampersands become entities, and a note stands line by line in a quote. Control characters were made visible.
+It owns escaping. What a person typed can be no markup: every character that CommonMark gives a meaning is escaped,
+angle brackets and ampersands become entities, and a note stands line by line in a quote. Control characters were made
+visible.
 """
 
 from __future__ import annotations
@@ -9,7 +10,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterator
 
-from kb.exchange.report_blocks import Block, Facts, Figure, Items, Page, Row, Section, Table, Warn, Words
+from kb.exchange.report_blocks import NO_PERMISSION, Block, Facts, Figure, Items, Page, Row, Section, Table, Warn, Words
 from kb.plain import plain
 
 _SPECIAL = re.compile(r"([\\`*_{}\[\]()#+\-.!|~:])")
@@ -25,7 +26,7 @@ def page_markdown(page: Page) -> str:
     for section in page.sections:
         lines += _section(section, 2)
     lines += ["---", "", _safe(page.source), ""]
-    lines += ["Figures and warnings describe a record; they are no permission. Hazards are for local rules and the people responsible for safety to judge.", ""]
+    lines += [NO_PERMISSION, ""]
     return "\n".join(lines)
 
 

@@ -1,7 +1,8 @@
 """Plots as SVG: bars with intervals, columns over time, a curve, a stair; no script, no font, no outside file.
 
-It owns geometry and the words for those who cannot see it. Colours are classes of the page's style sheet, with a fallback
-in the attribute; two series differ in pattern as well as in colour. All text is escaped. Shares are 0..1, shown in percent.
+It owns geometry and the words for those who cannot see it. Colours are classes of the page's style sheet, with a
+fallback in the attribute; two series differ in pattern as well as in colour. All text is escaped. Shares are 0..1,
+shown in percent.
 """
 
 from __future__ import annotations
@@ -61,9 +62,12 @@ def stacked_columns(
     for number, (label, a, b) in enumerate(zip(labels, lower, upper, strict=True)):
         x = left + step * (number + 0.5) - width / 2
         tall_a, tall_b = ((base - 16) * v / most for v in (a, b))
-        parts.append(f'<rect class="fill" x="{x:.1f}" y="{base - tall_a:.1f}" width="{width:.1f}" height="{tall_a:.1f}"/>')
         parts.append(
-            f'<rect class="open" x="{x:.1f}" y="{base - tall_a - tall_b:.1f}" width="{width:.1f}" height="{tall_b:.1f}"/>'
+            f'<rect class="fill" x="{x:.1f}" y="{base - tall_a:.1f}" width="{width:.1f}" height="{tall_a:.1f}"/>'
+        )
+        parts.append(
+            f'<rect class="open" x="{x:.1f}" y="{base - tall_a - tall_b:.1f}" '
+            f'width="{width:.1f}" height="{tall_b:.1f}"/>'
         )
         if number % every == 0:
             parts.append(_text(x + width / 2, base + 15, label, "middle"))
@@ -79,7 +83,11 @@ def stacked_columns(
 
 
 def curve(
-    title: str, points: Sequence[tuple[float, float]], x_name: str, y_name: str, marked: tuple[float, float] | None = None
+    title: str,
+    points: Sequence[tuple[float, float]],
+    x_name: str,
+    y_name: str,
+    marked: tuple[float, float] | None = None,
 ) -> Figure:
     """Draw y over x, both 0..1 and shown in percent; `marked` is one point to be ringed."""
     left, right, top, base = 52, _WIDE - 16, 12, 230
@@ -100,7 +108,9 @@ def curve(
     if marked is not None:
         x, y = place(marked).split()
         parts.append(f'<circle class="ring" cx="{x}" cy="{y}" r="6"/>')
-    said = "; ".join(f"{x_name} {100 * x:.0f} %: {y_name} {100 * y:.0f} %" for x, y in ordered[:: max(1, len(ordered) // 8)])
+    said = "; ".join(
+        f"{x_name} {100 * x:.0f} %: {y_name} {100 * y:.0f} %" for x, y in ordered[:: max(1, len(ordered) // 8)]
+    )
     return _figure(title, said, _WIDE, base + 42, parts)
 
 

@@ -38,17 +38,26 @@ def route_page(ledger: Ledger, source: str = "") -> Page:
         kind="route",
         lead=route_lead(ledger),
         sections=(
-            Section(heading="Yield", blocks=(interval_bars("Yield of each step, with 80 % intervals", bars, 1.0), stair("What is left along the main line", stairs))),
+            Section(
+                heading="Yield",
+                blocks=(
+                    interval_bars("Yield of each step, with 80 % intervals", bars, 1.0),
+                    stair("What is left along the main line", stairs),
+                ),
+            ),
             Section(heading="Material", blocks=(needs, *_forgiven(ledger))),
             Section(heading="What a better step would buy", blocks=(_improvements(ledger),)),
-            Section(heading="Step by step", parts=tuple(_step(number, e) for number, e in enumerate(ledger.entries, 1))),
+            Section(
+                heading="Step by step", parts=tuple(_step(number, e) for number, e in enumerate(ledger.entries, 1))
+            ),
             Section(
                 heading="How this was reckoned",
                 blocks=(
                     Words(
-                        text=f"Monte Carlo over independent yields, {interval_words(ledger.overall_pct, 1.0)}, standard error "
-                        f"{ledger.sampling_error_pct:.2g} points; in closed form {interval_words(ledger.closed_form_pct, 1.0)}. "
-                        "One bad bottle used in several steps would make them fail together, which this does not reckon with."
+                        text=f"Monte Carlo over independent yields, {interval_words(ledger.overall_pct, 1.0)}, "
+                        f"standard error {ledger.sampling_error_pct:.2g} points; in closed form "
+                        f"{interval_words(ledger.closed_form_pct, 1.0)}. One bad bottle used in several steps would "
+                        "make them fail together, which this does not reckon with."
                     ),
                 ),
             ),
@@ -60,7 +69,8 @@ def route_page(ledger: Ledger, source: str = "") -> Page:
 def route_lead(ledger: Ledger) -> str:
     """Return the answer in two or three sentences."""
     first = ledger.needed[0]
-    said = f"Overall {interval_words(ledger.overall_pct, 1.0)}; for {_target(ledger)} start from {_amount(first)} of {first.material}."
+    said = f"Overall {interval_words(ledger.overall_pct, 1.0)}; for {_target(ledger)} start from {_amount(first)} of "
+    said += f"{first.material}."
     if ledger.weakest is not None:
         w = ledger.weakest
         then = f"{w.needed_g:.3g} g" if w.needed_g is not None else f"{w.needed_mmol:.3g} mmol"
@@ -102,10 +112,18 @@ def _improvements(ledger: Ledger) -> Block:
         if better is None:
             rows.append((e.step.name, f"{e.step.yield_pct.pct.mean:.3g} %", "as good as it gets", "", ""))
             continue
-        needed = f"{better.needed_mmol:.3g} mmol" + (f" ({better.needed_g:.3g} g)" if better.needed_g is not None else "")
+        needed = f"{better.needed_mmol:.3g} mmol" + (
+            f" ({better.needed_g:.3g} g)" if better.needed_g is not None else ""
+        )
         forgiven = " (forgiven)" if e.step.forgiven else ""
         rows.append(
-            (e.step.name + forgiven, f"{e.step.yield_pct.pct.mean:.3g} %", f"{better.at_pct:.3g} %", needed, f"{better.saves:.3g} {better.unit}")
+            (
+                e.step.name + forgiven,
+                f"{e.step.yield_pct.pct.mean:.3g} %",
+                f"{better.at_pct:.3g} %",
+                needed,
+                f"{better.saves:.3g} {better.unit}",
+            )
         )
     return Table(
         caption=f"One step bettered at a time; {ledger.needed[0].material} needed then, and what the whole route saves",

@@ -1,6 +1,7 @@
 """The page of one run: what was done, what came out, how it failed, what was noted.
 
-It owns the order of a run's page. Notes are quoted to the letter; None is said as "not recorded", never left to be guessed.
+It owns the order of a run's page. Notes are quoted to the letter; None is said as "not recorded", never left to be
+guessed.
 """
 
 from __future__ import annotations

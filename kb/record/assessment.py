@@ -13,6 +13,7 @@ from kb.record.finding import Finding, Interval
 from kb.record.plan import Plan
 from kb.record.portable import run_to_dict
 from kb.record.run import Run
+from kb.record.showing import ShowsItself
 from kb.vocabulary import Basis, Fate, Verdict
 
 
@@ -119,7 +120,7 @@ class Advice:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Assessment:
+class Assessment(ShowsItself):
     """All of a check for one plan."""
 
     plan: Plan

@@ -13,6 +13,7 @@ from kb.errors import InvalidRecord
 from kb.record.conditions import Conditions
 from kb.record.outcome import Outcome
 from kb.record.plan import Plan
+from kb.record.showing import ShowsItself
 from kb.vocabulary import Verdict
 
 
@@ -26,7 +27,7 @@ class Attachment:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Run:
+class Run(ShowsItself):
     """One experiment.
 
     Attributes:

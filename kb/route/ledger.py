@@ -1,10 +1,10 @@
 """The ledger of a route: cumulative yield, what must go in, the weakest step, and what improving it would buy.
 
-It owns the arithmetic, twice. *Closed form*: yields of different steps are independent, so the mean of their product is the
-product of their means, and ln of the product has variance sum ln(1 + cv^2); its 80 % interval is that of a lognormal.
-*Monte Carlo*: each yield is a Beta with the same mean and standard deviation, drawn from a fixed seed; it knows that
-no yield passes 100 %, so it is the one shown. The two means agree within the sampling error (tested). Independence is an
-assumption: one bad bottle used in five steps breaks it.
+It owns the arithmetic, twice. *Closed form*: yields of different steps are independent, so the mean of their product
+is the product of their means, and ln of the product has variance sum ln(1 + cv^2); its 80 % interval is that of a
+lognormal. *Monte Carlo*: each yield is a Beta with the same mean and standard deviation, drawn from a fixed seed; it
+knows that no yield passes 100 %, so it is the one shown. The two means agree within the sampling error (tested).
+Independence is an assumption: one bad bottle used in five steps breaks it.
 
 A step whose poor yield the chemist has forgiven is no weakness, and is left out of the yield that counts. Where
 prices are given, weakness is reckoned in money instead.
@@ -23,6 +23,7 @@ from numpy.typing import NDArray
 
 from kb.errors import RecordNotFound
 from kb.record.finding import Interval
+from kb.record.showing import ShowsItself
 from kb.route.sequence import Z80, Material, Route, Step, StepYield
 
 DRAWS = 20_000
@@ -111,7 +112,7 @@ class Entry:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Ledger:
+class Ledger(ShowsItself):
     """A route, reckoned.
 
     Attributes:
@@ -224,7 +225,9 @@ def closed_form(line: tuple[Step, ...]) -> Interval:
     variance = sum(math.log1p((step.yield_pct.sd / step.yield_pct.mean) ** 2) for step in line)
     middle, half = math.log(mean) - variance / 2, Z80 * math.sqrt(variance)
     return Interval(
-        mean=_pct(mean), low=_pct(min(math.exp(middle - half), mean)), high=_pct(min(max(math.exp(middle + half), mean), 1.0))
+        mean=_pct(mean),
+        low=_pct(min(math.exp(middle - half), mean)),
+        high=_pct(min(max(math.exp(middle + half), mean), 1.0)),
     )
 
 

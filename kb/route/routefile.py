@@ -1,7 +1,7 @@
 """A route file, TOML or JSON, read into a draft whose yields still have to be looked up.
 
-It owns the format, which stands here, and the sentences that refuse what does not fit it. It opens no book: whoever holds
-one turns `runs` and `plan` into yields (`kb.book.routes`).
+It owns the format, which stands here, and the sentences that refuse what does not fit it. It opens no book: whoever
+holds one turns `runs` and `plan` into yields (`kb.book.routes`).
 
     title = "Azide to amide"            # optional
     target = "2 g"                      # or "5 mmol"; optional
@@ -101,7 +101,9 @@ def read_route(path: Path) -> RouteDraft:
     except (OSError, UnicodeDecodeError):
         raise ImportFileError(f"{path.name} cannot be read.", "Give a TOML or JSON file in UTF-8.", str(path)) from None
     if size > LARGEST_BYTES:
-        raise ImportFileError(f"{path.name} holds {size:,} bytes; no route is that long.", "Is it the right file?", size)
+        raise ImportFileError(
+            f"{path.name} holds {size:,} bytes; no route is that long.", "Is it the right file?", size
+        )
     try:
         words = json.loads(text) if path.suffix.lower() == ".json" else tomllib.loads(text)
     except (ValueError, RecursionError) as error:
@@ -152,9 +154,7 @@ def parse_yield(value: Any, where: str = "The yield") -> Interval:
         low, high = parse_number(found["low"], what="yield"), parse_number(found["high"], what="yield")
         mean = parse_number(found["mean"], what="yield") if found["mean"] else (low + high) / 2
     if not 0 <= low <= mean <= high <= 100 or mean <= 0:
-        raise InvalidRecord(
-            f"{where} is {text}.", "A yield lies above 0 and up to 100 %, between its bounds.", value
-        )
+        raise InvalidRecord(f"{where} is {text}.", "A yield lies above 0 and up to 100 %, between its bounds.", value)
     return Interval(mean=mean, low=low, high=high)
 
 
@@ -237,7 +237,8 @@ def _target(value: Any, molar_mass: float | None) -> float | None:
         raise InvalidRecord(f"The target is {value!r}.", 'Write it with its unit: "2 g" or "5 mmol".', value)
     if molar_mass is None:
         raise InvalidRecord(
-            f"The target is {value!r}, but its molar mass is not known.", "Give `product` as SMILES, or the target in mmol."
+            f"The target is {value!r}, but its molar mass is not known.",
+            "Give `product` as SMILES, or the target in mmol.",
         )
     return amount.mass_mg / molar_mass
 

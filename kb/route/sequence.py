@@ -1,8 +1,9 @@
 """A sequence of steps as values: what goes in where, with which yield, from what, and towards how much of the product.
 
-It owns the shape of a route and its checks: every input is a material or an earlier step, exactly one step ends the route.
-The first input of a step is its main line; further ones are branches that meet it. It reckons nothing (`ledger.py`) and
-reads no file (`routefile.py`). Yields are percent, amounts mmol, molar masses g/mol, prices in whatever money the file speaks.
+It owns the shape of a route and its checks: every input is a material or an earlier step, exactly one step ends the
+route. The first input of a step is its main line; further ones are branches that meet it. It reckons nothing
+(`ledger.py`) and reads no file (`routefile.py`). Yields are percent, amounts mmol, molar masses g/mol, prices in
+whatever money the file speaks.
 """
 
 from __future__ import annotations
@@ -132,7 +133,9 @@ class Route:
         known = [m.name for m in self.materials]
         for step in self.steps:
             if step.name in known:
-                raise InvalidRecord(f"Two things are called {step.name!r}.", "Name each step and material once.", step.name)
+                raise InvalidRecord(
+                    f"Two things are called {step.name!r}.", "Name each step and material once.", step.name
+                )
             if not step.inputs:
                 raise InvalidRecord(f"Step {step.name!r} takes nothing.", "Say what it is made from.", step.name)
             for one in step.inputs:
@@ -144,7 +147,9 @@ class Route:
                     )
                 if not (math.isfinite(one.equiv) and one.equiv > 0):
                     raise InvalidRecord(
-                        f"Step {step.name!r} takes {one.equiv:g} equiv of {one.name!r}.", "Give more than zero.", one.equiv
+                        f"Step {step.name!r} takes {one.equiv:g} equiv of {one.name!r}.",
+                        "Give more than zero.",
+                        one.equiv,
                     )
             known.append(step.name)
         used = {one.name for step in self.steps for one in step.inputs}
@@ -156,7 +161,9 @@ class Route:
                 ends,
             )
         if self.target_mmol is not None and not (math.isfinite(self.target_mmol) and self.target_mmol > 0):
-            raise InvalidRecord("The target amount is not above zero.", 'Write it as "2 g" or "5 mmol".', self.target_mmol)
+            raise InvalidRecord(
+                "The target amount is not above zero.", 'Write it as "2 g" or "5 mmol".', self.target_mmol
+            )
 
     @property
     def main_line(self) -> tuple[Step, ...]:

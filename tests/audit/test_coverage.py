@@ -77,7 +77,9 @@ def test_the_experiments_are_those_of_largest_drop_in_variance() -> None:
         return float((sigma2 / (precedents + PRIOR_RUNS)).sum())
 
     first = max(range(7), key=lambda e: total(n) - total(n + alike[e]))
-    second = max((e for e in range(7) if e != first), key=lambda e: total(n + alike[first]) - total(n + alike[first] + alike[e]))
+    second = max(
+        (e for e in range(7) if e != first), key=lambda e: total(n + alike[first]) - total(n + alike[first] + alike[e])
+    )
     assert [e.like for e in chosen] == [f"R-{first}", f"R-{second}"]
     assert chosen[0].gain == pytest.approx(total(n) - total(n + alike[first]), abs=1e-5)
 

@@ -10,7 +10,8 @@ import pytest
 
 from kb.assess.predicate import parse_predicate
 from kb.audit.places import GROUPS, centre_place, group_query, groups_in
-from kb.audit.recurrence import Circumstance, Cluster, Recurrence, find_recurring
+from kb.audit.recurrence import find_recurring
+from kb.audit.recurrence_values import Circumstance, Cluster, Recurrence
 from kb.book import Book
 from kb.store.values import HouseRule
 from kb.vocabulary import Severity

@@ -1,4 +1,4 @@
-"""Replay: no run sees itself or later ones, the answer does not depend on how it is cut, and it warns of what it should."""
+"""Replay: no run sees itself or later ones, the answer does not depend on the cut, and it warns where it should."""
 
 from __future__ import annotations
 
@@ -124,7 +124,9 @@ def test_an_oracle_in_the_future_changes_nothing(demo: Book, replayed: list[Hind
         place = dated.table.codes.index(target.run)
         assert Replayer(dated).check(place) == target
         follower = max(range(len(dated)), key=lambda p: dated.dates[p])
-        book.add(dataclasses.replace(twin, run_id=_new_id(), code=None, date=target.date + dt.timedelta(days=900)), "MK")
+        book.add(
+            dataclasses.replace(twin, run_id=_new_id(), code=None, date=target.date + dt.timedelta(days=900)), "MK"
+        )
         later = _dated(book)
         last = Replayer(later).check(len(later) - 1)
         assert follower < len(later) and last.warned and last.worry > target.worry
@@ -143,7 +145,9 @@ def test_what_is_shown_is_what_check_would_have_shown_that_morning(
     hindsight = replayed[place]
     eve = hindsight.date - dt.timedelta(days=1)
     findings = demo.check(demo.get(hindsight.run).plan, top=0, at_date=eve).findings
-    shown = [(f.rule_id, str(f.severity)) for f in findings if str(f.kind) in ("liability", "resemblance", "house-rule")]
+    shown = [
+        (f.rule_id, str(f.severity)) for f in findings if str(f.kind) in ("liability", "resemblance", "house-rule")
+    ]
     assert [pair for pair in shown if pair[1] != "note"] == list(hindsight.findings)
 
 

@@ -16,7 +16,9 @@ from kb.route.sequence import Input, Material, Route, Step, StepYield, molar_mas
 
 
 def a_yield(mean: float, low: float | None = None, high: float | None = None) -> StepYield:
-    return StepYield(pct=Interval(mean=mean, low=mean if low is None else low, high=mean if high is None else high), basis="given")
+    return StepYield(
+        pct=Interval(mean=mean, low=mean if low is None else low, high=mean if high is None else high), basis="given"
+    )
 
 
 def linear(*yields: StepYield, target_mmol: float | None = None, **material: float) -> Route:

@@ -51,7 +51,12 @@ def test_the_documented_example_reads_and_reckons(tmp_path: Path) -> None:
             resolve_route(book, lost)
         with pytest.raises(InvalidRecord, match="cannot be read"):
             resolve_route(book, draft_route({"step": [{"plan": {"scheme": "C1CC>>CC"}}]}))
-        planned = {"scheme": "CCCCBr>>CCCCN=[N+]=[N-]", "reagents": ["NaN3=1.5"], "solvents": ["DMF"], "temperature": "60 C"}
+        planned = {
+            "scheme": "CCCCBr>>CCCCN=[N+]=[N-]",
+            "reagents": ["NaN3=1.5"],
+            "solvents": ["DMF"],
+            "temperature": "60 C",
+        }
         estimated = resolve_route(book, draft_route({"step": [{"plan": planned}]})).steps[0].yield_pct
         check = book.check(_plan(planned)).estimate.yield_pct
         assert check is not None and estimated.basis == "estimated"
