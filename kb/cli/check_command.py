@@ -26,11 +26,11 @@ from kb.cli.conditions import (
 from kb.cli.session import Session, current_session, put
 from kb.errors import StoreMissing, StructureError
 from kb.plain import plain
-from kb.record.plan import Plan
 from kb.vocabulary import Severity
 
 if TYPE_CHECKING:
     from kb.record.assessment import Assessment
+    from kb.record.plan import Plan
 
 
 def register(app: typer.Typer) -> None:
@@ -66,6 +66,7 @@ def check(
 ) -> int:
     """Check a planned step against the record, known liabilities and hazards."""
     from kb.book import parse_date, scheme_from_argument
+    from kb.record.plan import Plan
 
     session = current_session()
     conditions = parse_conditions(reagents, bases, acids, additives, solvents, temp, time, conc, scale, atmosphere)

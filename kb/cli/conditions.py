@@ -6,11 +6,12 @@ It owns the flags' names and help; reading the values is `kb.quantity` and `kb.m
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Annotated, Optional
+from typing import TYPE_CHECKING, Annotated, Optional
 
 import typer
 
-from kb.record.conditions import Conditions
+if TYPE_CHECKING:
+    from kb.record.conditions import Conditions
 
 Names = Optional[list[str]]  # noqa: UP045 - typer reads the annotation at run time
 Text = Optional[str]  # noqa: UP045

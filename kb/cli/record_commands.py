@@ -23,15 +23,14 @@ from kb.cli.conditions import (
     parse_conditions,
 )
 from kb.cli.render import wrapped
-from kb.cli.render_run import change_words, render_run
 from kb.cli.session import Session, current_session, put
 from kb.errors import ImportFileError, RecordConflict, SidepathError
 from kb.plain import excerpt
-from kb.record.run import Run
 from kb.vocabulary import Cause, Method, Verdict
 
 if TYPE_CHECKING:
     from kb.book import Book
+    from kb.record.run import Run
 
 Words = Optional[list[str]]  # noqa: UP045 - typer reads the annotations at run time
 Word = Optional[str]  # noqa: UP045
@@ -80,6 +79,7 @@ def record(
 ) -> None:
     """Add a run to the record."""
     from kb.book import check_scheme, outcome_from_words, parse_run_date, scheme_from_argument, today
+    from kb.record.run import Run
 
     session = current_session()
     conditions = (reagents, bases, acids, additives, solvents, temp, time, conc, scale, atmosphere)
@@ -131,6 +131,8 @@ def amend(
     ],
 ) -> None:
     """Change a run; the old values, who, when and why are kept."""
+    from kb.cli.render_run import change_words
+
     session = current_session()
     with session.opened() as book:
         run = book.amend(code, book.changes_from_words(code, changes), who=session.initials, why=why)
@@ -205,6 +207,8 @@ def _store(session: Session, runs: Sequence[Run]) -> None:
 def _recorded(run: Run, reading: str) -> str:
     """Return a run just recorded, its long texts cut: whoever typed them knows them."""
     import dataclasses
+
+    from kb.cli.render_run import render_run
 
     brief = dataclasses.replace(run, scheme=excerpt(run.scheme, BRIEF), note=excerpt(run.note, BRIEF))
     return render_run(brief, reading)
