@@ -13,7 +13,8 @@ from collections.abc import Iterator
 from kb.exchange.report_blocks import NO_PERMISSION, Block, Facts, Figure, Items, Page, Row, Section, Table, Warn, Words
 from kb.plain import plain
 
-_SPECIAL = re.compile(r"([\\`*_{}\[\]()#+\-.!|~:])")
+_INLINE = re.compile(r"([\\`*_\[\]|~@]|(?<=:)/(?=/)|(?<=www)\.)")
+_AT_START = re.compile(r"^(\d*)([#+\-=.)])")
 _ENTITY = {"&": "&amp;", "<": "&lt;", ">": "&gt;"}
 _SHAPE = {"serious": "■ serious", "caution": "▲ caution", "note": "● note"}
 
@@ -76,5 +77,5 @@ def _figure(figure: Figure) -> str:
 def _safe(text: str) -> str:
     """Return one line of text that Markdown takes as text."""
     one_line = " ".join(plain(text).split())
-    escaped = _SPECIAL.sub(r"\\\1", one_line)
+    escaped = _AT_START.sub(r"\1\\\2", _INLINE.sub(r"\\\1", one_line))
     return re.sub("[&<>]", lambda found: _ENTITY[found[0]], escaped)
