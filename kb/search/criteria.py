@@ -38,21 +38,25 @@ class Criteria:
     """What is asked.
 
     Attributes:
-        substructure: SMARTS, SMILES or a molfile that a structure of the run holds. ignore_stereo: stereo
-        marks of `substructure`, `exact` and `at_centre` do not count. similar: SMILES or molfile to which a
-        structure of the run is similar. at_least: lowest Tanimoto similarity, 0..1, for `similar`. exact:
-        SMILES or molfile that a structure of the run is. at_centre: SMARTS that the substrate holds with
-        its atom 1 (`[C:1]`; the first atom where none is marked)
-            at the reacting centre.
-        transformation: "C-Br>>C-N": what changed at the reacting centre. role: role of the structure that
-        `substructure`, `similar` and `exact` speak of; None = any. words: words of note, materials, failure
-        modes, labels; each must begin a word there, quotes hold together. solvent: name or SMILES of a
-        solvent. base: of a base. reagent: of anything else in the flask. temp_from_c, temp_to_c: bounds on
-        the most forcing temperature [degC], both included. failed: failure mode. verdict, carbon_class,
-        leaving_group: controlled words. project: as written. since, until: bounds on the day it was run,
-        both included; runs without a date are left out then. all_of, any_of, none_of: further criteria:
-        all, at least one, none of which hold. order, limit, page: how answers are sorted and cut into pages
-        (from 1).
+        substructure: SMARTS, SMILES or a molfile that a structure of the run holds.
+        ignore_stereo: stereo marks of `substructure`, `exact` and `at_centre` do not count.
+        similar: SMILES or molfile to which a structure of the run is similar.
+        at_least: lowest Tanimoto similarity, 0..1, for `similar`.
+        exact: SMILES or molfile that a structure of the run is.
+        at_centre: SMARTS that the substrate holds with its atom 1 (`[C:1]`; the first atom where none is marked) at the
+            reacting centre.
+        transformation: "C-Br>>C-N": what changed at the reacting centre.
+        role: role of the structure that `substructure`, `similar` and `exact` speak of; None = any.
+        words: of note, materials, failure modes, labels; each must begin a word there, quotes hold together.
+        solvent, base: name or SMILES of a solvent, of a base.
+        reagent: name or SMILES of anything else in the flask.
+        temp_from_c, temp_to_c: bounds on the most forcing temperature [degC], both included.
+        failed: failure mode.
+        verdict, carbon_class, leaving_group: controlled words.
+        project: as written.
+        since, until: bounds on the day it was run, both included; runs without a date are left out then.
+        all_of, any_of, none_of: further criteria: all, at least one, none of which hold.
+        order, limit, page: how answers are sorted and cut into pages (from 1).
     """
 
     substructure: str | None = None

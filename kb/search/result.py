@@ -60,11 +60,12 @@ class FindResult:
     """One page of an answer.
 
     Attributes:
-        total: runs that fit, on all pages; a lower bound where `complete` is False. page: number of this
-        page, from 1. items: the runs of this page, in order. elapsed_ms: from question to answer [ms].
-        complete: False = stopped by the deadline or the user; what is listed fits, others may too. notes:
-        what the user should know, one sentence each (a misspelt word that was bent, a name that no run
-        has).
+        total: runs that fit, on all pages; a lower bound where `complete` is False.
+        page: number of this page, from 1.
+        items: the runs of this page, in order.
+        elapsed_ms: from question to answer [ms].
+        complete: False = stopped by the deadline or the user; what is listed fits, others may too.
+        notes: what the user should know, one sentence each (a misspelt word that was bent, a name that no run has).
     """
 
     total: int
