@@ -23,6 +23,7 @@ from kb.assess.evidence import with_evidence
 from kb.assess.house_rules import HouseRule, find_house_rules
 from kb.assess.liability import find_liabilities
 from kb.assess.low_yield import find_low_yield
+from kb.assess.pace import expect_half_life
 from kb.assess.precedent import compare, rank_precedents, word_precedents
 from kb.assess.published import PublishedEstimate, published_estimate
 from kb.assess.record_view import RecordView
@@ -161,7 +162,10 @@ def estimate_plan(
     words = word_disagreement(view, weights_of(similarity), expected.fates[0][0]) if expected.fates else ""
     return (
         dataclasses.replace(
-            expected, yield_pct=fit.yield_pct if fit else None, note=" ".join(filter(None, (expected.note, words)))
+            expected,
+            yield_pct=fit.yield_pct if fit else None,
+            note=" ".join(filter(None, (expected.note, words))),
+            half_life_h=expect_half_life(published.half_life_h, view, similarity),
         ),
         fit,
     )

@@ -31,7 +31,9 @@ SHARPNESS = 3.0
 LEAST_SIMILARITY = 0.45
 """Runs below it have no say."""
 PRIOR_RUNS = 0.5
-"""Weight of the published prior, in whole runs."""
+"""Weight of the published prior, in whole runs, where its main share is uncertain by USUAL_SPREAD."""
+USUAL_SPREAD = 0.15
+LEAST_PRIOR, MOST_PRIOR = 0.25, 1.0
 PRIOR_SCATTER = 0.12
 """Standard deviation of a share between like runs, before any have been seen (0..1)."""
 SCATTER_RUNS = 1.0
@@ -115,6 +117,12 @@ def loss_chance(lost: float, survived: float) -> Interval:
     return beta_interval((lost + 0.5) / total, total)
 
 
+def _weight_of_prior(surest: Interval) -> float:
+    """Return how many runs the prior is worth: PRIOR_RUNS at its usual spread, more where it is sure, within limits."""
+    spread = max((surest.high - surest.low) / 2.56, 0.02)
+    return min(max(PRIOR_RUNS * USUAL_SPREAD / spread, LEAST_PRIOR), MOST_PRIOR)
+
+
 def _shares(
     w: NDArray[np.float64], shares: NDArray[np.float64], prior: Mapping[Fate, Interval]
 ) -> tuple[tuple[tuple[Fate, Interval], ...], float]:
@@ -127,9 +135,9 @@ def _shares(
     wx = w[used]
     prior_mean = np.array([prior[f].mean if f in prior else 0.0 for f in FATES])
     surest = max(prior.values(), key=lambda interval: interval.mean, default=None)
+    prior_weight = _weight_of_prior(surest) if surest else 0.0
     # The 80 % interval of a normal distribution is 2.56 standard deviations wide.
     prior_scatter = PRIOR_SCATTER if surest is None else max((surest.high - surest.low) / 2.56, 0.02)
-    prior_weight = PRIOR_RUNS if prior else 0.0
     mean = (wx @ x + prior_weight * prior_mean) / (effective + prior_weight)
     rows: list[tuple[Fate, Interval]] = []
     main_scatter = 0.0

@@ -15,6 +15,7 @@ from rdkit import Chem, rdBase
 
 from kb.assess.published_centre import describe_centre
 from kb.assess.published_medium import medium_of
+from kb.assess.published_sites import fastest_site
 from kb.chem.facts import Reading
 from kb.errors import ChemistryError
 from kb.materials.profile import ConditionProfile
@@ -86,7 +87,8 @@ def step_facts(
     is_activated = centre.leaving_group in (LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE)
     nucleophile = reading.nucleophile.nucleophile_class if reading.nucleophile else None
     medium = medium_of(profile, nucleophile, is_activated, base_smiles)
-    return StepFacts(centre=described, leaving_group=centre.leaving_group, medium=medium)
+    step = StepFacts(centre=described, leaving_group=centre.leaving_group, medium=medium)
+    return fastest_site(mol, centre.leaving_atom, step) if reading.confidence is Confidence.INFERRED else step
 
 
 def _is_of_another_kind(reading: Reading) -> bool:

@@ -83,6 +83,9 @@ def medium_of(
         base, pkah = (None, None) if base in _CONSUMED else (base, pkah)
     if word == "alkoxide" and base == "tertiary_alkoxide" and nucleophile is None:
         word = base  # no alcohol was drawn that the base would turn into another alkoxide
+    base_molar = None
+    if base is None and "water" in profile.solvent_classes and profile.acidity == "none":
+        base, base_molar = "hydroxide", _hydroxide_of_water(profile.temperature_c)
     n = profile.swain_scott_n if word is not None and word == profile.nucleophile_class else None
     return Medium(
         nucleophile=word,
@@ -90,6 +93,7 @@ def medium_of(
         base=base,
         base_pkah=pkah,
         base_bulk=_bulk(profile, base, base_smiles),
+        base_molar=base_molar,
         nucleophile_molar=_ACID_MOLAR if _is_hydrogen_halide(profile, word) else None,
         solvent_kinds=_kinds(profile),
         solvent_y=profile.winstein_y,
@@ -100,6 +104,12 @@ def medium_of(
         activates_hydroxyl=is_activated and bool(profile.reagent_classes & ACTIVATORS),
         is_complete=not profile.has_unknown_reagent,
     )
+
+
+def _hydroxide_of_water(temperature_c: float | None) -> float:
+    """Return hydroxide in neutral water [mol/L]: 1e-7 at 25 degC, pKw 0.033 less for each kelvin (CRC Handbook, memory)."""
+    warmer_k = 0.0 if temperature_c is None else temperature_c - 25.0
+    return float(10 ** (-7.0 + 0.0165 * warmer_k))
 
 
 def bulk_of_smiles(smiles: str) -> float | None:

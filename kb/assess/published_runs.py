@@ -9,20 +9,16 @@ from __future__ import annotations
 
 from functools import lru_cache
 
-import numpy as np
-from numpy.typing import NDArray
 from rdkit import Chem, rdBase
 
 from kb.assess.published import NOT_COVERED
 from kb.assess.published_centre import describe_centre
 from kb.assess.published_medium import medium_of
 from kb.assess.record_view import RecordView
-from kb.assess.table import FATES
 from kb.chem.centre import find_leaving_group
 from kb.chem.molgraph import molgraph_of
 from kb.errors import ChemistryError
-from kb.materials.profile import ConditionProfile
-from kb.physorg.competition import mean_shares
+from kb.physorg.competition import Quick, compete_quickly
 from kb.physorg.step import Centre, StepFacts
 from kb.vocabulary import CarbonClass, Fate, LeavingGroup
 
@@ -31,44 +27,26 @@ _NOT_COVERED = frozenset(map(str, NOT_COVERED))
 
 def published_share(view: RecordView, row: int, fate: Fate) -> float:
     """Return what published rates expect of a fate in a run (0..1), NaN where they give no number."""
-    table = view.table
-    code = int(table.profile[row])
-    atom = table.number("centre_atom", row)
-    key = (
-        "published",
-        table.substrate[row],
-        atom,
-        table.word("leaving_group", row),
-        table.nucleophile_word(row),
-        table.profiles[code],
-    )
-    if key not in view.known:
-        view.known[key] = _shares(view, row) if atom is not None else None
-    shares: NDArray[np.float64] | None = view.known[key]
-    return float("nan") if shares is None else float(shares[FATES.index(fate)])
+    quick = published_run(view, row)
+    return float("nan") if quick is None else dict(quick.shares).get(fate, 0.0)
 
 
-def _shares(view: RecordView, row: int) -> NDArray[np.float64] | None:
+def published_run(view: RecordView, row: int) -> Quick | None:
+    """Return what published rates expect of a run, None where they give no number."""
     table = view.table
-    leaving = table.word("leaving_group", row)
-    carbon = table.word("carbon_class", row)
     atom = table.number("centre_atom", row)
-    if leaving is None or carbon is None or atom is None or table.word("fate", row) in _NOT_COVERED:
+    leaving, carbon = table.word("leaving_group", row), table.word("carbon_class", row)
+    if atom is None or leaving is None or carbon is None or table.word("fate", row) in _NOT_COVERED:
         return None
     centre = _centre(table.substrate[row], int(atom), leaving, carbon)
     if centre is None:
         return None
-    return shares_of(centre, LeavingGroup(leaving), view.profile(row), table.nucleophile_word(row))
-
-
-def shares_of(
-    centre: Centre, leaving: LeavingGroup, profile: ConditionProfile, nucleophile: str | None
-) -> NDArray[np.float64] | None:
-    """Return published shares per fate (8), None where there is no honest number."""
-    is_activated = leaving in (LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE)
-    medium = medium_of(profile, nucleophile, is_activated)
-    shares = mean_shares(StepFacts(centre=centre, leaving_group=leaving, medium=medium))
-    return np.array([shares.get(fate, 0.0) for fate in FATES]) if shares else None
+    key = ("medium", int(table.profile[row]), table.nucleophile_word(row), leaving)
+    if key not in view.memory:
+        is_activated = leaving in (LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE)
+        view.memory[key] = medium_of(view.profile(row), table.nucleophile_word(row), is_activated)
+    step = StepFacts(centre=centre, leaving_group=LeavingGroup(leaving), medium=view.memory[key])
+    return compete_quickly(step)
 
 
 @lru_cache(maxsize=16384)

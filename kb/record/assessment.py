@@ -34,6 +34,7 @@ class Estimate:
         effective_precedents: sum of kernel weights, in runs.
         basis: what the figure rests on.
         note: plain words: why it is wide, why there is none.
+        half_life_h: of the substrate at 1 M of reagent [h], to about a factor of ten; None = no honest number.
     """
 
     fates: tuple[tuple[Fate, Interval], ...] = ()
@@ -42,6 +43,7 @@ class Estimate:
     effective_precedents: float = 0.0
     basis: Basis = Basis.NONE
     note: str = ""
+    half_life_h: Interval | None = None
 
     def as_dict(self) -> dict[str, Any]:
         """Return the contract's JSON object."""
@@ -52,6 +54,7 @@ class Estimate:
             "effective_precedents": self.effective_precedents,
             "basis": str(self.basis),
             "note": self.note,
+            "half_life_h": self.half_life_h.as_dict() if self.half_life_h else None,
         }
 
 
