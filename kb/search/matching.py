@@ -31,6 +31,8 @@ CHUNK_S = 0.05
 """What one uninterrupted chunk should take [s]; short enough for a user to feel heard."""
 _FIRST_CHUNK = 256
 _LARGEST_CHUNK = 50_000
+_DENSE = 1.04
+"""Rows spread over no more than this times their number are compared as one range: a list costs 5 % (measured)."""
 _SINGLE_THREAD_ROWS = 24
 """Fewer rows than this are not worth waking a second thread (measured: about 0.1 ms)."""
 
@@ -125,15 +127,27 @@ class MoleculeStore:
             chunk = rows[at : at + size]
             threads = self.threads if len(chunk) >= _SINGLE_THREAD_ROWS else 1
             began = time.perf_counter()
-            with self._lock:
-                self._library.SetSearchOrder(chunk.tolist())
-                hits = self._library.GetMatches(query.mol, parameters, threads, len(chunk))
-            pieces.append(np.fromiter(hits, np.int64, len(hits)))
+            pieces.append(self._match_chunk(query.mol, chunk, parameters, threads))
             at += len(chunk)
             took_s = max(time.perf_counter() - began, 1e-6)
             size = int(min(_LARGEST_CHUNK, max(16, len(chunk) * min(8.0, CHUNK_S / took_s))))
         found = np.sort(np.concatenate(pieces)) if pieces else np.empty(0, np.int64)
         return found, at >= len(rows)
+
+    def _match_chunk(
+        self, mol: Chem.Mol, chunk: NDArray[np.int64], parameters: Chem.SubstructMatchParameters, threads: int
+    ) -> NDArray[np.int64]:
+        """Return which rows of a chunk match; rows that lie close together are handed over as a range."""
+        start, end = int(chunk[0]), int(chunk[-1]) + 1
+        with self._lock:
+            if end - start <= len(chunk) * _DENSE:
+                self._library.SetSearchOrder([])
+                hits = self._library.GetMatches(mol, start, end, parameters, threads, end - start)
+            else:
+                self._library.SetSearchOrder(chunk.tolist())
+                hits = self._library.GetMatches(mol, parameters, threads, len(chunk))
+        found = np.fromiter(hits, np.int64, len(hits))
+        return found if end - start == len(chunk) else found[np.isin(found, chunk)]
 
     def _match_slowly(
         self, query: StructureQuery, rows: NDArray[np.int64], deadline: Deadline
