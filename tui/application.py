@@ -24,6 +24,7 @@ from textual.worker import Worker, WorkerState
 
 from kb.errors import SidepathError, StoreMissing
 from kb.plain import plain, shortened
+from tui.messages import RunStored
 from tui.palette import ActionProvider
 from tui.styles import HERE
 from tui.themes import THEME_OF_SETTING, THEMES, TOKENS
@@ -184,6 +185,7 @@ class SidepathApp(App[None]):
             old.close()
         self.count_runs()
 
+    @on(RunStored)
     def count_runs(self) -> None:
         """Refresh the state of the book in the bar."""
         book = self.book
@@ -209,11 +211,9 @@ class SidepathApp(App[None]):
 
     def watch_in_words(self, in_words: bool) -> None:
         """Show every drawing in words, or drawn."""
-        from tui.widgets.structure import SchemeView
-
         for screen in self.screen_stack:
-            for view in screen.query(SchemeView):
-                view.in_words = in_words
+            for view in screen.query("SchemeView"):
+                view.in_words = in_words  # type: ignore[attr-defined]
 
     async def plan_from(self, state: dict[str, str]) -> None:
         """Go to planning with a filled form."""
@@ -241,19 +241,16 @@ class SidepathApp(App[None]):
 
     def action_books(self, error: SidepathError | None = None) -> None:
         """Offer the demo, a new book or an existing one."""
-        from tui.screens.firstrun import FirstRunScreen
-
-        if not isinstance(self.screen, FirstRunScreen):
-            self.push_screen(FirstRunScreen(error))
+        show_trouble = getattr(self.screen, "show_trouble", None)
+        if self.screen.id == "first-run" and show_trouble is not None:
+            show_trouble(error)
         else:
-            self.screen.show_trouble(error)
+            self.push_screen(_late("tui.screens.firstrun", "FirstRunScreen", error))
 
     def action_drafts(self) -> None:
         """Offer the forms that were kept."""
-        from tui.screens.drafts import DraftsScreen
-
         if self.book is not None and not self.screen.is_modal:
-            self.push_screen(DraftsScreen())
+            self.push_screen(_late("tui.screens.drafts", "DraftsScreen"))
 
 
 def run_application(book: str | None, who: str | None) -> None:
@@ -289,9 +286,9 @@ def run_application(book: str | None, who: str | None) -> None:
         raise SidepathError("The terminal interface did not end as it should.", f"See {log_file()}.")
 
 
-def _late(module: str, name: str) -> Screen[Any]:
+def _late(module: str, name: str, *arguments: Any) -> Screen[Any]:
     """Return a screen of a module that is loaded when the place is first visited, to keep the start short."""
     from importlib import import_module
 
-    screen: Screen[Any] = getattr(import_module(module), name)()
+    screen: Screen[Any] = getattr(import_module(module), name)(*arguments)
     return screen

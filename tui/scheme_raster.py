@@ -14,6 +14,9 @@ from kb.plain import shortened
 from tui.raster import SCALE_MAX, SCALE_MIN, Cell, Grid, build_picture, fit
 
 ARROW_MIN = 9
+ARROW_ROOM = 50
+"""Narrower panels give the substrate the room of the arrow once the products had to go [cells]."""
+
 _GAP = 2
 
 
@@ -52,8 +55,9 @@ def fit_scheme(
         (scheme.left, scheme.right, ""),
         ((main,), scheme.right, "other reactants not drawn"),
         ((main,), scheme.right[:1], "further products not drawn"),
-        ((main,), (), "products not drawn" if scheme.right else ""),
     ]
+    if columns >= ARROW_ROOM:
+        plans.append(((main,), (), "products not drawn" if scheme.right else ""))
     for left, right, notice in plans:
         if not left:
             continue

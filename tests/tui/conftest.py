@@ -9,7 +9,7 @@ import pytest
 from textual.widgets import Input, TextArea
 
 from tui.jobs import EditLog
-from tui.screens import entry, planning
+from tui.screens import entry, planning, runs
 
 
 @pytest.fixture(autouse=True)
@@ -18,6 +18,7 @@ def calm(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(planning, "SETTLE_S", 0.01)
     monkeypatch.setattr(entry, "KEEP_S", 0.01)
     monkeypatch.setattr(entry, "READ_S", 0.01)
+    monkeypatch.setattr(runs, "FILTER_S", 0.01)
     monkeypatch.setattr(EditLog, "MERGE_S", 0.0)
     monkeypatch.setattr(Input, "cursor_blink", False)
     monkeypatch.setattr(TextArea, "cursor_blink", False)

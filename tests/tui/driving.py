@@ -4,14 +4,14 @@ from __future__ import annotations
 
 import asyncio
 from collections.abc import AsyncIterator
-from contextlib import asynccontextmanager, suppress
+from contextlib import asynccontextmanager
 from typing import Any
 
 from textual.pilot import Pilot
-from textual.worker import WorkerFailed
 
 from tests.tui.fake_book import FakeBook, FakeOpener
 from tui.application import SidepathApp
+from tui.screens.firstrun import FirstRunScreen
 
 SIZE = (100, 30)
 
@@ -23,18 +23,27 @@ async def driven(
     """Run the application on a book; leave it when the test is done."""
     app = SidepathApp(opener or FakeOpener(book or FakeBook()), who="JM", theme=theme)
     async with app.run_test(size=size) as pilot:
+        while app.book is None and not isinstance(app.screen, FirstRunScreen):
+            await settled(pilot)
         await settled(pilot)
         yield app, pilot
 
 
-async def settled(pilot: Pilot[Any], rounds: int = 3) -> None:
-    """Wait until no worker runs, no question is open and what they said is on the screen."""
-    for _ in range(rounds):
+async def settled(pilot: Pilot[Any], rounds: int = 2) -> None:
+    """Wait until no question is open or about to be asked, no worker runs, and their answers are shown."""
+    app: Any = pilot.app
+    quiet = 0
+    for _ in range(1500):
         await pilot._wait_for_screen()
-        await asyncio.sleep(0.015)
-        with suppress(WorkerFailed):  # a planted fault; what the screen makes of it is the test's matter
-            await pilot.app.workers.wait_for_complete()
-    await pilot._wait_for_screen()
+        is_asking = getattr(app.screen, "is_asking", False)
+        is_working = any(not worker.is_finished for worker in app.workers)
+        quiet = 0 if is_asking or is_working else quiet + 1
+        if quiet >= rounds:
+            await asyncio.sleep(0.04)  # classes and layouts are applied on the screen's own timer
+            await pilot._wait_for_screen()
+            return
+        await asyncio.sleep(0.01)
+    raise AssertionError("the interface did not come to rest")
 
 
 async def pressed(pilot: Pilot[Any], *keys: str) -> None:

@@ -181,7 +181,7 @@ class FakeBook:
     def check(self, plan: Plan, *, top: int = 8) -> Assessment:
         self._maybe_fail("check")
         if self.gate is not None:
-            self.gate.wait(10)
+            self.gate.wait(60)
         if self.delay_s:
             time.sleep(self.delay_s)
         self.checked.append(plan)

@@ -24,7 +24,7 @@ PLAN = {"scheme": MESYLATE, "reagent": "NaN3=1.5", "solvent": "DMF", "temperatur
 async def opened(app, pilot) -> EntryScreen:
     """Open the form on a plan."""
     screen = EntryScreen(dict(PLAN))
-    app.push_screen(screen)
+    await app.push_screen(screen)
     await settled(pilot, 4)
     return screen
 
@@ -157,7 +157,6 @@ async def test_a_bad_scheme_is_told_and_its_products_stay() -> None:
     async with driven() as (app, pilot):
         screen = await opened(app, pilot)
         await typed(pilot, "#field-scheme", "C1CC")
-        await pilot.pause(0.3)
         await settled(pilot)
         assert screen.query_one("#reading").has_class("-bad")
         assert len(screen.query(ProductEntry)) == 4

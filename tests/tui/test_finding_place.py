@@ -50,7 +50,7 @@ async def test_the_form_refuses_nothing_tells_errors_and_empties() -> None:
         assert "Fill at least one line." in on_screen(app)
         await typed(pilot, "#find-substructure", "C(")
         await pressed(pilot, "enter")
-        assert "is no SMARTS. Check the brackets." in on_screen(app)
+        assert "is no SMARTS. Check the brackets." in str(app.screen.query_one("#find-trouble").render())
         await pressed(pilot, "ctrl+n")
         await typed(pilot, "#find-words", "nothing like it")
         await pressed(pilot, "enter")

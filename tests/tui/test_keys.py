@@ -13,7 +13,6 @@ from textual.widgets import Input
 from tests.tui.driving import driven, on_screen, pressed, settled
 from tests.tui.fake_book import MESYLATE, FakeBook
 from tests.tui.test_planning import planned
-from tui import run_actions
 from tui.application import SidepathApp
 from tui.palette import ActionProvider
 from tui.screens import (
@@ -26,6 +25,7 @@ from tui.screens import (
     finding_detail,
     firstrun,
     planning,
+    run_actions,
     run_detail,
     runs,
 )
@@ -49,7 +49,6 @@ OWNERS = [
     finding_detail.FindingScreen,
     asking.WordsScreen,
     asking.LineScreen,
-    asking.SureScreen,
     cards.HitCard,
     estimate.EstimateBars,
     step_form.LineInput,

@@ -118,7 +118,7 @@ async def test_a_slow_check_never_holds_the_typing_and_its_stale_answer_is_dropp
         app.screen.query_one("#field-solvent").value = "EtOH"
         await pilot.pause(0.1)
         app.screen.query_one("#field-solvent").focus()
-        await pressed(pilot, "end", "backspace", "backspace", "backspace", "backspace", *"DMF")
+        await pilot.press("end", "backspace", "backspace", "backspace", "backspace", *"DMF")
         assert app.screen.query_one("#field-solvent").value == "DMF"
         await pilot.pause(0.1)
         assert book.checked == []

@@ -39,11 +39,9 @@ async def test_pages_filters_and_orders() -> None:
         assert table.row_count == 100
         await pressed(pilot, "slash")
         await typed(pilot, "#runs-filter", "emulsion")
-        await pilot.pause(0.3)
         await settled(pilot)
         assert table.codes == ("R-0003",)
         await typed(pilot, "#runs-filter", "no such words")
-        await pilot.pause(0.3)
         await settled(pilot)
         assert "0 to 0 of 0" in on_screen(app)
         assert "No run is chosen." in on_screen(app)
@@ -80,7 +78,7 @@ async def test_withdrawing_asks_why_and_the_run_stays_in_the_history() -> None:
         assert app.screen.query_one(RunTable).row_count == 11
         await pressed(pilot, "x")
         assert app.screen.query_one(RunTable).row_count == 12
-        await pressed(pilot, "home")
+        await pressed(pilot, "ctrl+home")
         assert "withdrawn" in on_screen(app)
         assert app.screen.check_action("withdraw", ()) is None
 
@@ -118,7 +116,7 @@ async def test_trouble_and_a_read_only_book() -> None:
 
 async def test_a_run_that_is_gone_is_told_on_its_screen() -> None:
     async with driven() as (app, pilot):
-        app.push_screen(RunScreen("R-9999"))
+        await app.push_screen(RunScreen("R-9999"))
         await settled(pilot)
         assert "No run is called R-9999." in on_screen(app)
         assert app.screen.check_action("plan_again", ()) is None

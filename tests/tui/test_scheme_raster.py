@@ -20,7 +20,8 @@ def test_a_scheme_is_drawn_from_left_to_right() -> None:
 
 
 @pytest.mark.parametrize(
-    ("width", "notice"), [(140, ""), (52, "other reactants not drawn"), (38, "products not drawn")]
+    ("width", "notice"),
+    [(140, ""), (52, "other reactants not drawn"), (38, "only the substrate is drawn")],
 )
 def test_what_is_given_up_for_room_is_said(width: int, notice: str) -> None:
     panel = fit_scheme(build_scheme(AZIDE_SCHEME), width, 11, "NaN3", "DMF")

@@ -110,7 +110,7 @@ async def test_a_nasty_note_is_typed_and_shown_tamely_and_kept_to_the_letter() -
 
     async with driven() as (app, pilot):
         screen = EntryScreen({"scheme": "CCBr"})
-        app.push_screen(screen)
+        await app.push_screen(screen)
         await settled(pilot)
         note = screen.query_one("#field-note", TextArea)
         note.text = NASTY

@@ -1,4 +1,4 @@
-"""Small dialogs: words to read, one line to type, a yes or no."""
+"""Small dialogs: words to read, one line to type."""
 
 from __future__ import annotations
 
@@ -75,37 +75,3 @@ class LineScreen(ModalScreen[str | None]):
     def action_cancel(self) -> None:
         """Leave."""
         self.dismiss(None)
-
-
-class SureScreen(ModalScreen[bool]):
-    """A yes or no; Escape means no."""
-
-    AUTO_FOCUS = "#sure-no"
-
-    BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("escape,n", "answer(False)", "No", id="sure.no", tooltip="No"),
-        Binding("y", "answer(True)", "Yes", id="sure.yes", tooltip="Yes"),
-    ]
-
-    def __init__(self, title: str, words: str) -> None:
-        super().__init__(classes="dialog-back")
-        self._title = title
-        self._words = words
-
-    def compose(self) -> ComposeResult:
-        """Lay out the question and the buttons."""
-        with VerticalScroll(classes="dialog"):
-            yield Static(Text(safe(self._title), style="bold"))
-            yield Static(Text(safe(self._words, keep_lines=True)))
-            with Horizontal(classes="buttons"):
-                yield Button("Yes", id="sure-yes", classes="-primary")
-                yield Button("No", id="sure-no")
-
-    @on(Button.Pressed)
-    def _pressed(self, event: Button.Pressed) -> None:
-        event.stop()
-        self.dismiss(event.button.id == "sure-yes")
-
-    def action_answer(self, is_yes: bool) -> None:
-        """Answer."""
-        self.dismiss(is_yes)

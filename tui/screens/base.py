@@ -17,6 +17,7 @@ from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.message import Message
 from textual.screen import Screen
+from textual.timer import Timer
 from textual.widgets import Footer, Static
 from textual.worker import Worker, WorkerState
 
@@ -60,6 +61,7 @@ class AskingScreen(Screen[ScreenResult]):
 
     def __init__(self, **options: Any) -> None:
         super().__init__(**options)
+        self._delayed: dict[str, Timer] = {}
         self._boxes: dict[str, LatestOnly[tuple[Callable[[], Any], Callable[[Any], None], Any]]] = {}
 
     @property
@@ -90,6 +92,21 @@ class AskingScreen(Screen[ScreenResult]):
         if started := box.ask((work, done, failed or self.show_trouble)):
             self._start_job(kind, *started)
 
+    def later(self, name: str, delay_s: float, what: Callable[[], None]) -> None:
+        """Do something after a pause; asking again under the same name starts the pause anew."""
+        if name in self._delayed:
+            self._delayed[name].stop()
+        self._delayed[name] = self.set_timer(delay_s, partial(self._now, name, what))
+
+    def _now(self, name: str, what: Callable[[], None]) -> None:
+        self._delayed.pop(name, None)
+        what()
+
+    def drop_later(self, name: str) -> None:
+        """Do not do what waits under this name."""
+        if name in self._delayed:
+            self._delayed.pop(name).stop()
+
     def forget(self, kind: str) -> None:
         """Drop whatever answer of a kind is still on its way."""
         if kind in self._boxes:
@@ -97,8 +114,8 @@ class AskingScreen(Screen[ScreenResult]):
 
     @property
     def is_asking(self) -> bool:
-        """Return True while any question is open."""
-        return any(box.is_busy for box in self._boxes.values())
+        """Return True while any question is open or about to be asked."""
+        return bool(self._delayed) or any(box.is_busy for box in self._boxes.values())
 
     def _start_job(
         self, kind: str, ticket: int, question: tuple[Callable[[], Any], Callable[[Any], None], Any]

@@ -16,7 +16,6 @@ from uuid import uuid4
 from textual import on
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
-from textual.timer import Timer
 from textual.widgets import Button, Footer, Static
 
 from kb.chem.facts import Reading
@@ -84,7 +83,6 @@ F10 takes it up again.
         self._state = {"how": INTEGRALS, "method": str(Method.NMR), **outcome, **state}
         self._draft_key = draft_key or (f"amend-{amending.code}" if amending else f"run-{uuid4().hex[:8]}")
         self._log = EditLog(self._state)
-        self._delayed: dict[str, Timer] = {}
         self._drawings: dict[str, SchemeDrawing] = {}
         self._laying_out = asyncio.Lock()
         self._was_edited = bool(draft_key)
@@ -139,13 +137,8 @@ F10 takes it up again.
         self._log.note(changed, self._state)
         self.form.show_split(self._state)
         if any(self._state.get(name) != before.get(name) for name in READ_FIELDS):
-            self._later("read", READ_S, self._read_scheme)
-        self._later("keep", KEEP_S, self._keep)
-
-    def _later(self, name: str, delay_s: float, what: Callable[[], None]) -> None:
-        if name in self._delayed:
-            self._delayed[name].stop()
-        self._delayed[name] = self.set_timer(delay_s, what)
+            self.later("read", READ_S, self._read_scheme)
+        self.later("keep", KEEP_S, self._keep)
 
     def _read_scheme(self) -> None:
         book = self.book
@@ -206,8 +199,7 @@ F10 takes it up again.
         if read.run is None:
             return
         self._was_edited = False
-        if "keep" in self._delayed:
-            self._delayed["keep"].stop()
+        self.drop_later("keep")
         if self.book is not None:
             self._aside(partial(self.book.delete_draft, self._draft_key))
         self.app.notify(f"{read.run.code} is {'amended' if self._amending else 'recorded'}.", markup=False)
@@ -243,7 +235,7 @@ F10 takes it up again.
             return
         self._state = with_rows(state, rows_in(self._state))
         self._fill()
-        self._later("keep", KEEP_S, self._keep)
+        self.later("keep", KEEP_S, self._keep)
 
     def action_add_product(self) -> None:
         """Ask for the SMILES of another product."""
@@ -263,7 +255,7 @@ F10 takes it up again.
         self._drawings[text] = drawing
         self._was_edited = True
         self._lay_out_products()
-        self._later("keep", KEEP_S, self._keep)
+        self.later("keep", KEEP_S, self._keep)
 
     def copy_texts(self) -> dict[str, str]:
         """Return the run that is amended, or the scheme of the new one."""

@@ -24,8 +24,8 @@ from tui.drawings import scheme_drawing
 from tui.marks import mark_match
 from tui.ports import BookPort, FindHit, FindPage, FindQuery
 from tui.present import safe, words_of
-from tui.run_actions import RunActions
 from tui.screens.base import PlaceScreen
+from tui.screens.run_actions import RunActions
 from tui.screens.run_detail import RunScreen
 from tui.styles import HERE
 from tui.widgets.cards import HitCard, HitGrid

@@ -44,7 +44,7 @@ the book that is open, if one is.
     ]
 
     def __init__(self, error: SidepathError | None = None) -> None:
-        super().__init__()
+        super().__init__(id="first-run")
         self._error = error
         self._progress: ThreadProgress | None = None
 

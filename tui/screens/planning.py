@@ -15,7 +15,6 @@ from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Container, Vertical
 from textual.content import Content
-from textual.timer import Timer
 from textual.widgets import Static
 
 from kb.chem.facts import Reading
@@ -86,7 +85,6 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
     def __init__(self) -> None:
         super().__init__()
         self._log = EditLog({})
-        self._settling: Timer | None = None
         self._reading: Reading | None = None
         self._drawing: SchemeDrawing | None = None
         self._plan: Plan | None = None
@@ -140,9 +138,7 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
     @on(StepForm.Changed)
     def _edited(self, event: StepForm.Changed) -> None:
         self._log.note(event.field, self.form.state)
-        if self._settling is not None:
-            self._settling.stop()
-        self._settling = self.set_timer(SETTLE_S, self._read)
+        self.later("read", SETTLE_S, self._read)
 
     def _read(self) -> None:
         """Put the form to the book; without a book or a scheme there is nothing to ask."""

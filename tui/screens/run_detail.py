@@ -15,7 +15,7 @@ from tui.drawings import scheme_drawing
 from tui.marks import mark_match
 from tui.ports import BookPort, HistoryLine
 from tui.present import safe
-from tui.run_actions import RunActions
+from tui.screens.run_actions import RunActions
 from tui.styles import HERE
 from tui.widgets.panel import Panel
 from tui.widgets.run_view import RunView

@@ -10,14 +10,13 @@ from textual import on
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Horizontal
-from textual.timer import Timer
 from textual.widgets import Input, Static
 
 from kb.record.run import Run
 from kb.vocabulary import Verdict
 from tui.ports import BookPort, RunPage, RunQuery
-from tui.run_actions import RunActions
 from tui.screens.base import PlaceScreen
+from tui.screens.run_actions import RunActions
 from tui.screens.run_detail import RunFound, RunScreen, load_run
 from tui.styles import HERE
 from tui.widgets.lines import SafeInput
@@ -26,6 +25,9 @@ from tui.widgets.run_view import RunView
 from tui.widgets.tables import CodeTable, RunTable
 
 PAGE = 100
+FILTER_S = 0.2
+"""Pause in typing after which the list is narrowed [s]."""
+
 SORTS = ("date", "code", "yield")
 VERDICTS = ("", *map(str, Verdict))
 
@@ -55,7 +57,6 @@ deleted.
         super().__init__()
         self._query = RunQuery(limit=PAGE)
         self._page = RunPage(total=0)
-        self._settling: Timer | None = None
 
     def compose_place(self) -> ComposeResult:
         """Lay out the list and the run."""
@@ -106,9 +107,7 @@ deleted.
     @on(Input.Changed, "#runs-filter")
     def _filter_typed(self, event: Input.Changed) -> None:
         event.stop()
-        if self._settling is not None:
-            self._settling.stop()
-        self._settling = self.set_timer(0.2, lambda: self._load(words=event.value.strip(), offset=0))
+        self.later("filter", FILTER_S, lambda: self._load(words=event.value.strip(), offset=0))
 
     @on(Input.Submitted, "#runs-filter")
     def _filter_done(self, event: Input.Submitted) -> None:
