@@ -21,7 +21,7 @@ STRANGER = 0.95
 OFF_BOND = 0.55
 """Atoms are pushed this far off bonds that are not theirs [bond lengths]; judged by eye."""
 
-_STEPS = 120
+_STEPS = 50
 
 
 def measure_room(points: Array, ends: Array) -> float:

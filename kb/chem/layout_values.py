@@ -200,7 +200,7 @@ class Drawing:
     height: float = 0.0
     nearest: float = math.inf
     formula: str = ""
-    _by_atom: dict[int, MarkKind] = field(default_factory=dict, repr=False, compare=False)
+    _by_atom: dict[int, MarkKind] = field(init=False, default_factory=dict, repr=False, compare=False)
 
     def __post_init__(self) -> None:
         order = list(MarkKind)

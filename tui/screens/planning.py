@@ -186,8 +186,8 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
         findings = self.query_one("#findings", FindingsList)
         findings.show(assessment.findings)
         self._finding = findings.highlighted_finding
-        title = f"Known against it ({len(assessment.findings)})" if assessment.findings else "Known against it"
-        self.query_one("#findings-panel", Panel).say(title)
+        count = f" ({len(assessment.findings)})" if assessment.findings else ""
+        self.query_one("#findings-panel", Panel).say(f"Known against it{count}")
         self.query_one(Shelf).show(assessment)
         self._draw()
         self._ask_what_if()
@@ -241,8 +241,7 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
         return points
 
     def _no_what_if(self, error: SidepathError) -> None:
-        if not isinstance(error, Cancelled):
-            self.show_trouble(error)
+        self.show_trouble(None if isinstance(error, Cancelled) else error)
 
     def _show_what_if(self, points: Sequence[tuple[float, Estimate]]) -> None:
         remark = "" if points else "Give a temperature in numbers to see what others would do."
