@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from kb.search.matching import Deadline
+    from kb.search.motifs import MotifSearch
     from kb.search.part import Part
     from kb.store.store import Store
 
@@ -41,6 +42,8 @@ class Finder:
     def __init__(self, store: Store, threads: int | None = None) -> None:
         self.store = store
         self.live = LiveRecord(store, threads)
+        self._motif_search: tuple[int, MotifSearch] | None = None
+        self._substrates: tuple[int, list[str], bytes] | None = None
 
     def find(
         self, criteria: Criteria, deadline_s: float | None = None, progress: Progress | None = None
@@ -83,12 +86,24 @@ class Finder:
             QueryError: the motif cannot be searched.
         """
         roles = [role] if role is not None else [Role.SUBSTRATE, Role.REAGENT]
-        either = tuple(Criteria(substructure=smarts, role=one) for one in roles)
         with self.live.lock:
+            if not self.live.has_index:
+                return self._motifs().codes(smarts, roles)
             self.live.follow()
             answer = _Answer(self.live, None, None)
+            either = tuple(Criteria(substructure=smarts, role=one) for one in roles)
             mask = answer.runs(Criteria(any_of=either), self.live.columns.alive.copy())
             return frozenset(self.live.columns.codes[row] for row in np.flatnonzero(mask).tolist())
+
+    def _motifs(self) -> MotifSearch:
+        """Return the search for motifs at the book's present state."""
+        from kb.search.motifs import MotifSearch
+
+        version = self.store.data_version()
+        if self._motif_search is None or self._motif_search[0] != version:
+            made = MotifSearch(self.store.book, self.store.book.deriving.recipe)
+            self._motif_search = (version, made)
+        return self._motif_search[1]
 
     def tanimoto_of_runs(self, smiles: str | None, codes: Sequence[str]) -> NDArray[np.float64] | None:
         """Return the similarity of each run's substrate to a structure, in the order of the codes.
@@ -108,7 +123,11 @@ class Finder:
         mol = Chem.MolFromSmiles(smiles) if smiles else None
         if mol is None:
             return None
-        found, packed = substrate_fingerprints(self.store.book, self.store.book.deriving.recipe)
+        version = self.store.data_version()
+        if self._substrates is None or self._substrates[0] != version:
+            book = self.store.book
+            self._substrates = (version, *substrate_fingerprints(book, book.deriving.recipe))
+        _, found, packed = self._substrates
         score_of = dict(zip(found, tanimoto_to_each(pack_morgan(mol), packed).tolist(), strict=True))
         return np.array([score_of.get(code, np.nan) for code in codes], np.float64)
 

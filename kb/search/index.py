@@ -21,12 +21,11 @@ from rdkit import Chem
 from kb.chem.fingerprint import MORGAN_BITS, bits_of, pack_morgan
 from kb.chem.query import StructureQuery
 from kb.chem.screens import SCREEN_RECIPE, encode_mol
-from kb.chem.screens_ask import AllOf, Ask
-from kb.chem.screens_keys import AUGMENTED_BITS, AUGMENTED_REVISION, KEY_UNRULY
-from kb.chem.screens_query import ask_of
+from kb.chem.screens_keys import AUGMENTED_BITS, KEY_UNRULY
 from kb.errors import IndexStale
 from kb.search.matching import Deadline, Matched, MoleculeStore
-from kb.search.planes import BitPlanes, count_planes, counts_of, popcounts, rows_of, words_of
+from kb.search.planes import BitPlanes, count_planes, counts_of, popcounts, rows_of
+from kb.search.screening import Screens, is_of_this_revision
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -65,18 +64,17 @@ class StructureIndex:
 
     def __init__(self, *, reserve: int = 0, threads: int | None = None) -> None:
         self.molecules = MoleculeStore(threads)
-        self._augmented = BitPlanes(AUGMENTED_BITS, reserve)
+        self.screens = Screens(reserve)
         self._morgan = BitPlanes(MORGAN_BITS, reserve)
         self._ids = np.zeros(max(reserve, 1), np.int64)
         self._bit_counts = np.zeros(max(reserve, 1), np.uint16)
         self._is_ascending = True
         self._last_id = -1
         self._row_of: dict[int, int] = {}
-        self._rarity: NDArray[np.int64] | None = None
         self._lock = threading.RLock()
 
     def __len__(self) -> int:
-        return self._augmented.n_rows
+        return self.screens.n_rows
 
     @property
     def ids(self) -> NDArray[np.int64]:
@@ -86,7 +84,7 @@ class StructureIndex:
     @property
     def nbytes(self) -> int:
         """Return the bytes that the index holds beyond the stored molecules."""
-        return self._augmented.nbytes + self._morgan.nbytes + len(self) * 10
+        return self.screens.nbytes + self._morgan.nbytes + len(self) * 10
 
     # Filling
 
@@ -108,7 +106,7 @@ class StructureIndex:
         packed = [b"".join(part) for part in (augmented, morgan)]
         widths = (AUGMENTED_BITS, MORGAN_BITS)
         has_width = all(len(p) == n * width // 8 for p, width in zip(packed, widths, strict=True))
-        if not has_width or (_revisions(packed[0]) != AUGMENTED_REVISION).any():
+        if not has_width or not is_of_this_revision(packed[0]):
             raise IndexStale(
                 "Structures in the book were encoded by another recipe.", "Rebuild them: `sidepath migrate`."
             )
@@ -119,11 +117,10 @@ class StructureIndex:
             self._bit_counts[start : start + n] = popcounts(packed[1], MORGAN_BITS // 8)
             self.molecules.append(binaries)
             self._morgan.append(packed[1])
-            self._augmented.append(packed[0])
+            self.screens.append(packed[0])
             added = self._ids[start : start + n]
             self._is_ascending &= int(added[0]) > self._last_id and bool((np.diff(added) > 0).all())
             self._last_id = int(added[-1])
-            self._rarity = None
             if not self._is_ascending:
                 self._row_of = dict(zip(self.ids.tolist(), range(len(self)), strict=True))
 
@@ -175,16 +172,10 @@ class StructureIndex:
             only: rows to consider (n,); None = all.
         """
         with self._lock:
-            words = np.full(self._augmented.n_words, ~np.uint64(0))
-            if only is not None:
-                words &= words_of(np.pad(only, (0, len(self) - len(only))))
-            self._narrow(words, ask_of(query.mol))
-            rows = rows_of(words, len(self))
+            rows = self.screens.rows_that_may_match(query.mol, only)
             if not query.is_loose:
                 return rows, np.zeros(len(rows), bool)
-            unruly = np.zeros(len(self), bool)
-            unruly[rows_of(self._augmented.plane(KEY_UNRULY), len(self))] = True
-            return rows, unruly[rows]
+            return rows, self.screens.has_bit(KEY_UNRULY)[rows]
 
     def substructure(
         self,
@@ -247,50 +238,11 @@ class StructureIndex:
         smiles = _identity(mol, with_stereo)
         blobs = encode_mol(mol)
         with self._lock:
-            words = np.full(self._morgan.n_words, ~np.uint64(0))
-            for planes, packed in ((self._morgan, blobs.morgan), (self._augmented, blobs.augmented)):
-                for bit in bits_of(packed):
-                    words &= planes.plane(int(bit))
+            words = self._morgan.all_of(bits_of(blobs.morgan)) & self.screens.all_of(bits_of(blobs.augmented))
             rows = rows_of(words, len(self))
             rows = rows[self._bit_counts[rows] == len(bits_of(blobs.morgan))]
         same = [row for row in rows.tolist() if _identity(self.molecules.get(row), with_stereo) == smiles]
         return np.array(same, np.int64)
-
-    def _narrow(self, words: NDArray[np.uint64], ask: Ask) -> None:
-        """Clear in `words` the rows that do not have what is asked, rarest first."""
-        if isinstance(ask, int):
-            words &= self._augmented.plane(ask)
-            return
-        if isinstance(ask, AllOf):
-            for part in sorted(ask.parts, key=self._weight):
-                self._narrow(words, part)
-                if not words.any():
-                    return
-            return
-        either = np.zeros_like(words)
-        for part in ask.parts:
-            branch = words.copy()
-            self._narrow(branch, part)
-            either |= branch
-        words &= either
-
-    def _weight(self, ask: Ask) -> float:
-        """Return about how many rows satisfy a part, from a sample of each plane."""
-        if isinstance(ask, int):
-            return float(self._sampled()[ask])
-        if not ask.parts:
-            return float("inf")
-        if isinstance(ask, AllOf):
-            return min(self._weight(part) for part in ask.parts)
-        return sum(self._weight(part) for part in ask.parts)
-
-    def _sampled(self) -> NDArray[np.int64]:
-        if self._rarity is None:
-            if not len(self):
-                return np.zeros(AUGMENTED_BITS, np.int64)  # planes of an empty index have no words to count
-            sample = np.stack([self._augmented.plane(bit)[:_SAMPLE_WORDS] for bit in range(AUGMENTED_BITS)])
-            self._rarity = popcounts(sample.tobytes(), sample.shape[1] * 8).astype(np.int64)
-        return self._rarity
 
     def _make_room(self, n: int) -> None:
         if n > len(self._ids):
@@ -299,11 +251,6 @@ class StructureIndex:
             self._bit_counts = np.concatenate(
                 (self._bit_counts, np.zeros(room - len(self._bit_counts), np.uint16))
             )
-
-
-def _revisions(augmented: bytes) -> NDArray[np.uint8]:
-    """Return the revision that each screen carries."""
-    return np.frombuffer(augmented, np.uint8)[1 :: AUGMENTED_BITS // 8]
 
 
 def _identity(mol: Chem.Mol, with_stereo: bool) -> str:
@@ -316,8 +263,6 @@ def _identity(mol: Chem.Mol, with_stereo: bool) -> str:
     return str(Chem.MolToSmiles(mol))
 
 
-_SAMPLE_WORDS = 64
-"""Words of a plane that are counted to judge how rare its bit is: the first 4096 structures."""
 _GROUP = 64
 
 

@@ -76,6 +76,11 @@ class LiveRecord:
                 raise IndexStale(f"{stale} runs were read by another recipe.", "Rebuild them: `sidepath migrate`.")
             self._checked_version = self._version
 
+    @property
+    def has_index(self) -> bool:
+        """Return whether the structures have been read."""
+        return self._index is not None
+
     def index(self, progress: Progress | None = None) -> StructureIndex:
         """Return the structure index, complete for the runs in `columns`.
 

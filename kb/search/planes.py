@@ -20,6 +20,8 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 if TYPE_CHECKING:
+    from collections.abc import Iterable
+
     from numpy.typing import NDArray
 
 BLOCK_ROWS = 4096
@@ -65,6 +67,13 @@ class BitPlanes:
     def plane(self, bit: int) -> NDArray[np.uint64]:
         """Return one bit of every row (n_words,) uint64, a view."""
         return self._planes[bit, : self.n_words]
+
+    def all_of(self, bits: Iterable[int]) -> NDArray[np.uint64]:
+        """Return the rows that have all of some bits, as words (n_words,)."""
+        words = np.full(self.n_words, ~np.uint64(0))
+        for bit in bits:
+            words &= self.plane(int(bit))
+        return words
 
     def append(self, packed: bytes) -> None:
         """Add rows.

@@ -38,6 +38,10 @@ _SUBSTRATES = """SELECT run.code, structure.morgan, recipe.name FROM run_structu
     JOIN run ON run.run_key = place.run_key JOIN structure ON structure.structure_id = place.structure_id
     LEFT JOIN recipe ON recipe.recipe_id = structure.recipe_id
     WHERE place.role = :role AND run.withdrawn_why IS NULL AND structure.morgan IS NOT NULL"""
+_SCREENS = """SELECT structure_id, recipe_id, augmented FROM structure WHERE augmented IS NOT NULL
+    ORDER BY structure_id"""
+_CODES_WITH = """SELECT DISTINCT run.code FROM run_structure place JOIN run ON run.run_key = place.run_key
+    WHERE place.structure_id IN :ids AND place.role IN :roles AND run.withdrawn_why IS NULL"""
 _STRUCTURES = """SELECT structure_id, recipe_id, mol_binary, augmented, morgan FROM structure
     WHERE structure_id > :after ORDER BY structure_id LIMIT :batch"""
 
@@ -140,15 +144,34 @@ def substrate_fingerprints(book: OpenBook, recipe: str) -> tuple[list[str], byte
 
 def smiles_of(book: OpenBook, structure_ids: Sequence[int]) -> dict[int, str]:
     """Return the SMILES of some structures; atom numbers of a match count in it."""
-    found: dict[int, str] = {}
+    statement = "SELECT structure_id, smiles FROM structure WHERE structure_id IN :ids"
+    return {row[0]: row[1] for row in _by_ids(book, statement, structure_ids)}
+
+
+def molecules_of(book: OpenBook, structure_ids: Sequence[int]) -> dict[int, bytes]:
+    """Return the molecule of some structures as RDKit's binary."""
+    statement = "SELECT structure_id, mol_binary FROM structure WHERE structure_id IN :ids"
+    return {row[0]: row[1] for row in _by_ids(book, statement, structure_ids)}
+
+
+def screens_of(book: OpenBook, recipe: str) -> tuple[list[int], bytes]:
+    """Return the ids of all encoded structures, ascending, and their augmented screens, packed.
+
+    Raises:
+        IndexStale: a structure was encoded by another recipe.
+    """
     with book.reading() as connection:
-        for start in range(0, len(structure_ids), _KEYS_AT_ONCE):
-            statement = sa.text("SELECT structure_id, smiles FROM structure WHERE structure_id IN :ids").bindparams(
-                sa.bindparam("ids", expanding=True)
-            )
-            chunk = [int(i) for i in structure_ids[start : start + _KEYS_AT_ONCE]]
-            found.update((row[0], row[1]) for row in connection.execute(statement, {"ids": chunk}))
-    return found
+        rows = connection.execute(sa.text(_SCREENS)).all()
+        if recipe:
+            named = sa.select(RecipeRow.recipe_id).where(RecipeRow.name == recipe)
+            if {row[1] for row in rows} - {connection.execute(named).scalar()}:
+                raise _stale()
+    return [row[0] for row in rows], b"".join(row[2] for row in rows)
+
+
+def codes_with(book: OpenBook, structure_ids: Sequence[int], roles: Sequence[str]) -> set[str]:
+    """Return the codes of the standing runs in which one of some structures has one of some roles."""
+    return {row[0] for row in _by_ids(book, _CODES_WITH, structure_ids, roles=list(roles))}
 
 
 def word_keys(book: OpenBook, wanted: Sequence[Sequence[str]]) -> list[int]:
@@ -188,6 +211,15 @@ def vocabulary(book: OpenBook) -> list[str]:
             return [row[0] for row in connection.exec_driver_sql("SELECT term FROM temp.run_terms")]
         except sa.exc.DatabaseError as error:
             raise StoreError("The word index cannot be read.", "Run `sidepath verify`.") from error
+
+
+def _by_ids(book: OpenBook, statement: str, ids: Sequence[int], **lists: list[str]) -> Iterator[Any]:
+    """Yield the rows of a statement that names :ids, a batch of ids at a time, all of one moment."""
+    bound: list[Any] = [sa.bindparam(name, expanding=True) for name in ("ids", *lists)]
+    with book.reading() as connection:
+        for start in range(0, len(ids), _KEYS_AT_ONCE):
+            chunk = [int(i) for i in ids[start : start + _KEYS_AT_ONCE]]
+            yield from connection.execute(sa.text(statement).bindparams(*bound), {"ids": chunk, **lists})
 
 
 def _stale() -> IndexStale:

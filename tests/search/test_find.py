@@ -241,6 +241,22 @@ def test_motifs_of_the_left_side_are_found_by_code(finder: Finder) -> None:
     assert finder.runs_with_motif("c", Role.SUBSTRATE) == {"R-0005"}
 
 
+def test_motifs_are_the_same_with_and_without_the_index(tmp_path: Path) -> None:
+    motifs = ("c", "[CX4]Br", "CC(C)(C)OC(=O)N", "[N-]", "[Sn]", "*")
+    with a_searchable_book(tmp_path) as store:
+        loaded = Finder(store, threads=1)
+        loaded.find(Criteria(substructure="C"))
+        fresh = Finder(store, threads=1)
+        assert loaded.live.has_index
+        for motif in motifs:
+            assert fresh.runs_with_motif(motif) == loaded.runs_with_motif(motif), motif
+        assert not fresh.live.has_index
+        store.add(replace(a_run_of(ROWS[0]), scheme="CC[CH2:1][Sn](C)(C)C>>CC[CH2:1]I"), "ZZ")
+        store.withdraw("R-0004", "wrong bottle", "ZZ")
+        assert fresh.runs_with_motif("[Sn]") == loaded.runs_with_motif("[Sn]") == {"R-0009"}
+        assert fresh.runs_with_motif("CC(C)(C)OC(=O)N") == {"R-0008"}
+
+
 def test_the_similarity_of_substrates_comes_in_the_order_of_the_codes(finder: Finder) -> None:
     codes = ["R-0003", "R-0001", "R-9999"]
     values = finder.tanimoto_of_runs("CCC(C)Br", codes)
