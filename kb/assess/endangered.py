@@ -7,11 +7,13 @@ plan does not have says little about the plan, and a run without the group that 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
 
 from kb.assess.liability import all_rules
+from kb.assess.liability_rule import Rule
 from kb.assess.record_view import RecordView
 from kb.store.derivation import Account
 from kb.vocabulary import Severity
@@ -37,17 +39,28 @@ class Endangered:
 def find_endangered(account: Account, view: RecordView) -> Endangered:
     """Return the groups endangered by a plan's conditions that the plan or any run holds."""
     mols = [mol for smiles in account.fragments if (mol := view.mol(smiles)) is not None]
+    rules = [rule for rule in _rules() if rule.applies(account.profile) is True]
+    return _gathered(rules, [any(rule.find_motif(mol) for mol in mols) for rule in rules], view)
+
+
+def endangered_in_run(view: RecordView, row: int) -> Endangered:
+    """Return the same for a run of the book, by the structures that are indexed for it."""
+    rules = [rule for rule in _rules() if view.told(("rule", rule.rule_id), rule.applies, [row])[0] == 1]
+    return _gathered(rules, [bool(_holding(view, rule.rule_id, rule.motifs)[row]) for rule in rules], view)
+
+
+@cache
+def _rules() -> tuple[Rule, ...]:
+    return tuple(r for r in all_rules() if r.side == "bystander" and r.severity is Severity.SERIOUS)
+
+
+def _gathered(rules: list[Rule], is_mine: list[bool], view: RecordView) -> Endangered:
     mine: list[bool] = []
     runs: list[NDArray[np.bool_]] = []
-    for rule in all_rules():
-        if rule.side != "bystander" or rule.severity is not Severity.SERIOUS:
-            continue
-        if rule.applies(account.profile) is not True:
-            continue
+    for rule, holds in zip(rules, is_mine, strict=True):
         held = _holding(view, rule.rule_id, rule.motifs)
-        is_mine = any(rule.find_motif(mol) for mol in mols)
-        if is_mine or held.any():
-            mine.append(is_mine)
+        if holds or held.any():
+            mine.append(holds)
             runs.append(held)
     table = np.array(runs) if runs else np.zeros((0, len(view.table)), dtype=bool)
     return Endangered(mine=np.array(mine, dtype=bool), runs=table)

@@ -42,6 +42,9 @@ WEIGHT_THAT_COUNTS = 0.25
 """Effective precedents below which the record alone gives no number."""
 DISAGREE_FROM = 0.18
 """Scatter of the main share between like runs from which it is said (0..1); judgement."""
+NOT_MODELLED = 0.12
+"""Share by which an interval of published rates alone is widened towards the middle: starting material left, other
+reactions, decomposition, none of which they know. It holds the runs of the demo book that worked."""
 _SAMPLES = 4000
 
 
@@ -80,8 +83,11 @@ def estimate(
         fates, scatter = _shares(w, table.shares, prior or {})
         note = _note(effective, scatter, no_number)
     elif prior:
-        fates = tuple(sorted(prior.items(), key=lambda pair: -pair[1].mean))
-        note = no_number or "No run close enough in this book; published relative rates alone, so the interval is wide."
+        fates = tuple(sorted(((f, _with_room(i)) for f, i in prior.items()), key=lambda pair: -pair[1].mean))
+        note = no_number or (
+            "No run close enough in this book; published relative rates alone. They speak of what reacts: the "
+            "intervals leave room for what does not."
+        )
     basis = {
         (True, True): Basis.BOTH,
         (True, False): Basis.RECORD,
@@ -115,6 +121,13 @@ def loss_chance(lost: float, survived: float) -> Interval:
     """Return the chance of loss from counts, Jeffreys prior (Beta(1/2, 1/2)), with 80 % interval."""
     total = lost + survived + 1.0
     return beta_interval((lost + 0.5) / total, total)
+
+
+def _with_room(interval: Interval) -> Interval:
+    """Return a published interval widened by what published rates leave out; the mean stays theirs."""
+    low = max(interval.low - NOT_MODELLED * interval.mean, 0.0)
+    high = min(interval.high + NOT_MODELLED * (1.0 - interval.mean), 1.0)
+    return Interval(mean=interval.mean, low=round(low, 4), high=round(high, 4))
 
 
 def _weight_of_prior(surest: Interval) -> float:

@@ -107,7 +107,10 @@ def medium_of(
 
 
 def _hydroxide_of_water(temperature_c: float | None) -> float:
-    """Return hydroxide in neutral water [mol/L]: 1e-7 at 25 degC, pKw 0.033 less for each kelvin (CRC Handbook, memory)."""
+    """Return hydroxide in neutral water [mol/L].
+
+    Source: 1e-7 at 25 degC, pKw 0.033 less for each kelvin (CRC Handbook, memory).
+    """
     warmer_k = 0.0 if temperature_c is None else temperature_c - 25.0
     return float(10 ** (-7.0 + 0.0165 * warmer_k))
 

@@ -13,45 +13,59 @@ from rdkit import Chem, rdBase
 
 from kb.assess.published import NOT_COVERED
 from kb.assess.published_centre import describe_centre
+from kb.assess.published_closure import find_closure
 from kb.assess.published_medium import medium_of
 from kb.assess.record_view import RecordView
 from kb.chem.centre import find_leaving_group
 from kb.chem.molgraph import molgraph_of
 from kb.errors import ChemistryError
 from kb.physorg.competition import Quick, compete_quickly
-from kb.physorg.step import Centre, StepFacts
+from kb.physorg.conversion import DEFAULT_TIME_H
+from kb.physorg.step import Centre, Closure, StepFacts
 from kb.vocabulary import CarbonClass, Fate, LeavingGroup
 
 _NOT_COVERED = frozenset(map(str, NOT_COVERED))
 
 
 def published_share(view: RecordView, row: int, fate: Fate) -> float:
-    """Return what published rates expect of a fate in a run (0..1), NaN where they give no number."""
+    """Return what published rates expect of a fate after the run's time (0..1), NaN where they give no number."""
     quick = published_run(view, row)
     return float("nan") if quick is None else dict(quick.shares).get(fate, 0.0)
 
 
 def published_run(view: RecordView, row: int) -> Quick | None:
     """Return what published rates expect of a run, None where they give no number."""
+    step = step_of_run(view, row)
+    return None if step is None else compete_quickly(step, view.table.number("time_h", row) or DEFAULT_TIME_H)
+
+
+def step_of_run(view: RecordView, row: int) -> StepFacts | None:
+    """Return a run as the published models see it, None where its facts do not say which bond breaks."""
     table = view.table
     atom = table.number("centre_atom", row)
     leaving, carbon = table.word("leaving_group", row), table.word("carbon_class", row)
     if atom is None or leaving is None or carbon is None or table.word("fate", row) in _NOT_COVERED:
         return None
-    centre = _centre(table.substrate[row], int(atom), leaving, carbon)
-    if centre is None:
+    profile = view.profile(row)
+    site = _site(table.substrate[row], int(atom), leaving, carbon, profile.base_pkah)
+    if site is None:
         return None
-    key = ("medium", int(table.profile[row]), table.nucleophile_word(row), leaving)
+    centre, closure = site
+    word = table.nucleophile_word(row)
+    if closure is not None and word is not None and word not in profile.reagent_classes:
+        word = None  # nothing in the flask but the substrate is of that class
+    key = ("medium", int(table.profile[row]), word, leaving)
     if key not in view.memory:
         is_activated = leaving in (LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE)
-        view.memory[key] = medium_of(view.profile(row), table.nucleophile_word(row), is_activated)
-    step = StepFacts(centre=centre, leaving_group=LeavingGroup(leaving), medium=view.memory[key])
-    return compete_quickly(step)
+        view.memory[key] = medium_of(profile, word, is_activated)
+    return StepFacts(centre=centre, leaving_group=LeavingGroup(leaving), medium=view.memory[key], closure=closure)
 
 
 @lru_cache(maxsize=16384)
-def _centre(substrate: str, atom: int, leaving: str, carbon_class: str) -> Centre | None:
-    """Return the centre of a canonical substrate, None where the leaving atom is not found beside it."""
+def _site(
+    substrate: str, atom: int, leaving: str, carbon_class: str, base_pkah: float | None
+) -> tuple[Centre, Closure | None] | None:
+    """Return the centre of a canonical substrate and its attack from within; None without a leaving atom beside it."""
     try:
         graph = molgraph_of(substrate)
     except ChemistryError:
@@ -66,4 +80,5 @@ def _centre(substrate: str, atom: int, leaving: str, carbon_class: str) -> Centr
         mol = Chem.MolFromSmiles(substrate)
     if mol is None or mol.GetBondBetweenAtoms(atom, departs) is None:
         return None
-    return describe_centre(mol, atom, departs, CarbonClass(carbon_class))
+    centre = describe_centre(mol, atom, departs, CarbonClass(carbon_class))
+    return centre, find_closure(mol, atom, departs, base_pkah)

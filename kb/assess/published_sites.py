@@ -20,7 +20,7 @@ MOST_SITES = 4
 
 
 def fastest_site(mol: Chem.Mol, leaving: int, step: StepFacts) -> StepFacts:
-    """Return the step at whichever like halogen reacts fastest; the step itself where there is none or rates are silent.
+    """Return the step at whichever like halogen reacts fastest; the step itself where none does or rates are silent.
 
     Args:
         mol: the substrate.
