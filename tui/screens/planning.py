@@ -65,14 +65,7 @@ in the drawing, Enter tells all of it and opens the runs behind. Closest runs, o
 share the shelf. An estimate is no permission: local safety rules and qualified people decide.
 """
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding(
-            "f9",
-            "run_it",
-            "Run it",
-            key_display="F9",
-            id="plan.run",
-            tooltip="Turn the plan into a run and record what came out",
-        ),
+        Binding("f9", "run_it", "Run it", key_display="F9", id="plan.run", tooltip="Record what came out of it"),
         Binding(
             "f6", "shelf", "Shelf", key_display="F6", id="plan.shelf", tooltip="Closest runs, one change, temperature"
         ),
