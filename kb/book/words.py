@@ -12,7 +12,7 @@ from collections.abc import Callable, Iterator, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from kb.errors import ChemistryError, ImportFileError, InvalidRecord, QuantityError, StructureError
+from kb.errors import ChemistryError, ImportFileError, InvalidRecord, QuantityError, QueryError, StructureError
 from kb.logs import tame_rdkit
 from kb.plain import excerpt
 from kb.record.failure_modes import parse_failure_mode
@@ -266,16 +266,18 @@ def _fates_of_products(scheme: str) -> Callable[[str], Fate]:
 
 
 def check_motif(motif: str) -> str:
-    """Return a motif that is SMARTS.
+    """Return a motif that is SMARTS and can be searched for.
 
     Raises:
         InvalidRecord: it is none.
     """
     tame_rdkit()
-    from rdkit import Chem
+    from kb.chem.query import parse_query
 
-    if not motif.strip() or Chem.MolFromSmarts(motif) is None:
-        raise InvalidRecord(f"The motif {motif!r} is no SMARTS.", "Check brackets and ring closures.", motif)
+    try:
+        parse_query(motif)
+    except QueryError as error:
+        raise InvalidRecord(f"The motif cannot be used. {error.message}", error.hint, motif) from error
     return motif
 
 
@@ -296,9 +298,11 @@ def _by_name(word: str, error: ChemistryError) -> str:
         raise StructureError(
             f"{shown!r} is neither a structure nor a known name.", f"Did you mean {', '.join(near)}?", word
         ) from error
-    raise StructureError(error.message, f"{error.hint} Or give a name that `sidepath lookup` finds.", word) from error
+    or_name = " Or give a name that `sidepath lookup` finds." if len(word) <= _LONGEST_NAME else ""
+    raise StructureError(error.message, error.hint + or_name, word) from error
 
 
 _NEAR_ENOUGH = 80.0
 """Least likeness of a name that is offered where a structure was expected [0..100]."""
+_LONGEST_NAME = 100
 _FILES_HINT = "Give it the ending .rxn or .mol if it is; a column of schemes is for `sidepath read --batch`."

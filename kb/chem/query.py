@@ -157,6 +157,8 @@ def _read(text: str) -> Chem.Mol:
             "Search it with --transformation.",
             smarts,
         )
+    # RDKit takes a minute to parse two thousand nested parts, so they are counted before it sees them.
+    _refuse_if(smarts.count("$(") > MAX_RECURSIVE, text, f"it has more than {MAX_RECURSIVE} recursive parts")
     with rdBase.BlockLogs():
         mol = Chem.MolFromSmarts(smarts)
         if mol is None:
@@ -173,7 +175,7 @@ def _aromatised(text: str) -> Chem.Mol | None:
     if any(mark in text for mark in "*~!&;$@:") or any(letter in text for letter in "cnosp"):
         return None
     mol = Chem.MolFromSmiles(text)
-    if mol is None or not any(a.GetIsAromatic() for a in mol.GetAtoms()):
+    if mol is None or mol.GetNumAtoms() > MAX_ATOMS or not any(a.GetIsAromatic() for a in mol.GetAtoms()):
         return None
     return Chem.MolFromSmarts(Chem.MolToSmiles(mol))
 

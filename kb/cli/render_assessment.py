@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 
-from kb.cli.render import bar, counted, heading, percent, severity_word, split_words, wrapped
+from kb.cli.render import bar, counted, heading, percent, severity_word, split_words, width, wrapped
 from kb.plain import plain, shortened
 from kb.record.assessment import Advice, Assessment, Estimate, Precedent
 from kb.record.component import Component
@@ -142,7 +142,9 @@ def _estimate(estimate: Estimate) -> list[str]:
     lines = []
     for fate, interval in estimate.fates[:5]:
         span = f"({100 * interval.low:.0f} to {100 * interval.high:.0f})"
-        lines.append(f"  {fate!s:<14} {percent(interval.mean):>5} {span:<12} {bar(interval.mean)}".rstrip())
+        room = min(20, width() - 37)
+        drawn = bar(interval.mean, room) if room >= 5 else ""
+        lines.append(f"  {fate!s:<14} {percent(interval.mean):>5} {span:<12} {drawn}".rstrip())
     if estimate.yield_pct is not None:
         y = estimate.yield_pct
         lines.append(f"  {'yield':<14} {y.mean:>3.0f} % ({y.low:.0f} to {y.high:.0f})")
