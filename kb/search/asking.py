@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 from rdkit import Chem
 
 from kb.chem.query import ROOT_MAP, StructureQuery, parse_query, query_of_fragment
-from kb.chem.structure import standardise
+from kb.chem.structure import parse_molblock, parse_molecule, standardise
 from kb.errors import QueryError, StructureError
 from kb.search.part import Part
 from kb.search.rooted import CentrePart, TransformationPart
@@ -30,7 +30,7 @@ def parts_of(criteria: Criteria, live: LiveRecord, index: StructureIndex) -> lis
     role = criteria.role
     with_stereo = not criteria.ignore_stereo
     if criteria.exact is not None:
-        parts.append(ExactPart(live, index, role, _structure(criteria.exact), with_stereo))
+        parts.append(ExactPart(live, index, role, _drawings(criteria.exact), with_stereo))
     if criteria.similar is not None:
         parts.append(SimilarPart(live, index, role, _structure(criteria.similar), criteria.at_least))
     if criteria.substructure is not None:
@@ -42,6 +42,13 @@ def parts_of(criteria: Criteria, live: LiveRecord, index: StructureIndex) -> lis
         query = parse_query(criteria.at_centre, ignore_stereo=criteria.ignore_stereo)
         parts.append(CentrePart(live, index, query if query.root is not None else _rooted_at_first(query)))
     return parts
+
+
+def _drawings(text: str) -> tuple[Chem.Mol, ...]:
+    """Return a structure as it was drawn and as it is standardised; runs keep what was typed."""
+    standard = _structure(text)
+    as_drawn = parse_molblock(text) if "M  END" in text else parse_molecule(text)
+    return (as_drawn, standard)
 
 
 def _structure(text: str) -> Chem.Mol:

@@ -72,7 +72,7 @@ class Finder:
             items=items,
             elapsed_ms=(time.perf_counter() - began) * 1000,
             complete=answer.complete,
-            notes=tuple(dict.fromkeys(answer.notes)),
+            notes=tuple(dict.fromkeys((*answer.notes, *answer.why_partial()))),
         )
 
     def runs_with_motif(self, smarts: str, role: Role | None = None) -> frozenset[str]:
@@ -182,6 +182,16 @@ class _Answer:
                 left_s = self._deadline_s - (time.monotonic() - self._began)
             self._deadline = Deadline(left_s, self._progress)
         return self._deadline
+
+    def why_partial(self) -> tuple[str, ...]:
+        """Return the sentence that says why the answer is partial; () for a whole one."""
+        if self.complete:
+            return ()
+        if self.deadline.progress.cancelled():
+            return ("The search was stopped: what is listed fits, other runs may too.",)
+        if self.deadline.has_passed():
+            return ("The search stopped at its deadline: what is listed fits, other runs may too.",)
+        return ("Some structures were too tangled to compare in time: runs that hold them may fit too.",)
 
     def ordered(self, mask: NDArray[np.bool_], criteria: Criteria) -> NDArray[np.intp]:
         """Return the rows in the order asked for; ties by newest, then by code."""

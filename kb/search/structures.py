@@ -41,18 +41,24 @@ class SubstructurePart(Part):
 
 
 class ExactPart(Part):
-    """A structure of the run is the one asked for."""
+    """A structure of the run is the one asked for, as drawn or standardised."""
 
     def __init__(
-        self, live: LiveRecord, index: StructureIndex, role: Role | None, mol: Chem.Mol, with_stereo: bool
+        self,
+        live: LiveRecord,
+        index: StructureIndex,
+        role: Role | None,
+        drawings: tuple[Chem.Mol, ...],
+        with_stereo: bool,
     ) -> None:
         super().__init__(live, index, role)
-        self.mol = mol
+        self.drawings = drawings
         self.with_stereo = with_stereo
 
     def narrow(self, mask: NDArray[np.bool_], deadline: Deadline) -> NDArray[np.bool_]:
         """Return the rows of `mask` that satisfy this part."""
-        self.hits[self.index.exact(self.mol, with_stereo=self.with_stereo)] = True
+        for mol in self.drawings:
+            self.hits[self.index.exact(mol, with_stereo=self.with_stereo)] = True
         return self.runs_with(self.hits, mask, self.role)
 
     def atoms_in(self, structure: int) -> tuple[int, ...]:

@@ -46,6 +46,7 @@ def found(finder: Finder, **criteria: Any) -> list[int]:
         ({"exact": "C[C@@H](Br)CC"}, [], "exact, the other one"),
         ({"exact": "C[C@@H](Br)CC", "ignore_stereo": True}, [2, 3, 7], "exact but for stereo"),
         ({"exact": "Oc1ccccc1", "role": Role.SUBSTRATE}, [], "phenol was the nucleophile"),
+        ({"exact": "[CH3:5]CC(C)Br"}, [2, 3], "maps and order of atoms do not matter"),
         ({"at_centre": "[CH2:1][Br]"}, [1, 4], "bromide at the centre, not elsewhere"),
         ({"at_centre": "[CH2:1]Cl"}, [6], "the chloride reacted"),
         ({"at_centre": "[CX4]c"}, [5], "the first atom is the root where none is marked"),
@@ -182,6 +183,7 @@ def test_a_passed_deadline_gives_a_partial_answer_that_says_so(finder: Finder) -
     result = finder.find(Criteria(substructure="CBr"), deadline_s=0.0)
     assert not result.complete
     assert result.total == 0
+    assert "deadline" in result.notes[-1]
     negated = finder.find(Criteria(none_of=(Criteria(substructure="CBr"),)), deadline_s=0.0)
     assert not negated.complete
     assert negated.total == 0, "an undecided negation must not claim runs"
@@ -195,7 +197,9 @@ def test_a_user_who_stops_gets_what_was_found(finder: Finder) -> None:
         def cancelled(self) -> bool:
             return True
 
-    assert not finder.find(Criteria(substructure="CBr"), progress=Stopped()).complete
+    result = finder.find(Criteria(substructure="CBr"), progress=Stopped())
+    assert not result.complete
+    assert "stopped" in result.notes[-1]
 
 
 def test_changes_by_another_are_followed(tmp_path: Path) -> None:

@@ -61,16 +61,20 @@ def library(blobs: BlobFile) -> rdSubstructLibrary.SubstructLibrary:
     return rdSubstructLibrary.SubstructLibrary(molecules, patterns)
 
 
-def best_of(work: Callable[[], Any]) -> tuple[float, Any]:
-    """Return the shortest time of a few runs [s] and the last answer."""
-    best = float("inf")
+def best_of(work: Callable[[], Any]) -> tuple[float, float, Any]:
+    """Return the shortest time of a few runs by the clock and by the processor [s], and the last answer.
+
+    On a machine that others use, only the second is worth comparing; it adds up all threads.
+    """
+    best_s = best_cpu_s = float("inf")
     for _ in range(REPEATS):
-        began = time.perf_counter()
+        began, began_cpu = time.perf_counter(), time.process_time()
         answer = work()
-        best = min(best, time.perf_counter() - began)
-        if best > SLOW_S:
+        best_s = min(best_s, time.perf_counter() - began)
+        best_cpu_s = min(best_cpu_s, time.process_time() - began_cpu)
+        if best_s > SLOW_S:
             break
-    return best, answer
+    return best_s, best_cpu_s, answer
 
 
 def test_substructure_search_against_substruct_library(
@@ -80,34 +84,40 @@ def test_substructure_search_against_substruct_library(
 ) -> None:
     step = int(os.environ.get("SIDEPATH_BENCH_STEP", 4))
     ratios: dict[str, list[float]] = {}
+    cpu_ratios: dict[str, list[float]] = {}
     lines, different = [], []
     for kind, smarts in ALL[::step]:
         query = parse_query(smarts)
         parameters = match_parameters(query)
-        ours_s, ours = best_of(lambda query=query: index.substructure(query).rows.tolist())  # type: ignore[misc]
-        theirs_s, theirs = best_of(
+        ours_s, ours_cpu_s, ours = best_of(lambda query=query: index.substructure(query).rows.tolist())  # type: ignore[misc]
+        theirs_s, theirs_cpu_s, theirs = best_of(
             lambda query=query, parameters=parameters: sorted(  # type: ignore[misc]
                 library.GetMatches(query.mol, parameters, THREADS, len(index))
             )
         )
         if ours != theirs:
             different.append(smarts)
-        ratios.setdefault(kind, []).append(theirs_s / ours_s)
+        ratio, cpu_ratio = theirs_s / ours_s, theirs_cpu_s / ours_cpu_s
+        ratios.setdefault(kind, []).append(ratio)
+        cpu_ratios.setdefault(kind, []).append(cpu_ratio)
         candidates = len(index.screen(query)[0])
         lines.append(
             f"{kind:10s} {smarts[:44]:44s} {len(ours):7d} {candidates:7d} {ours_s * 1e3:9.2f} "
-            f"{theirs_s * 1e3:9.2f} {theirs_s / ours_s:8.2f}"
+            f"{theirs_s * 1e3:9.2f} {ratio:8.2f} {cpu_ratio:8.2f}"
         )
     with capsys.disabled():
         print(f"\n{len(index)} structures, {THREADS} threads, best of {REPEATS}; times in ms")
-        print(f"{'kind':10s} {'query':44s} {'hits':>7s} {'left':>7s} {'ours':>9s} {'library':>9s} {'ratio':>8s}")
+        head = ("hits", 7), ("left", 7), ("ours", 9), ("library", 9), ("ratio", 8), ("cpu", 8)
+        print(f"{'kind':10s} {'query':44s} " + " ".join(f"{word:>{width}s}" for word, width in head))
         print("\n".join(lines))
-        for kind, found in ratios.items():
-            print(f"{kind:10s} median ratio {statistics.median(found):8.2f}, lowest {min(found):6.2f}, n {len(found)}")
-        core = ratios.get("centre", []) + ratios.get("protecting", [])
-        every = [ratio for found in ratios.values() for ratio in found]
-        print(f"reaction centres and protecting groups: median {statistics.median(core):.1f}")
-        print(f"all: lowest {min(every):.2f}; {sum(r < 1 / 1.1 for r in every)} of {len(every)} below 1/1.1")
+        for clock, by_kind in (("clock", ratios), ("processor", cpu_ratios)):
+            print(f"by the {clock}:")
+            for kind, found in by_kind.items():
+                print(f"  {kind:10s} median {statistics.median(found):8.2f}, lowest {min(found):6.2f}, n {len(found)}")
+            core = by_kind.get("centre", []) + by_kind.get("protecting", [])
+            every = [ratio for found in by_kind.values() for ratio in found]
+            print(f"  reaction centres and protecting groups: median {statistics.median(core):.1f}")
+            print(f"  all: lowest {min(every):.2f}; {sum(r < 1 / 1.1 for r in every)} of {len(every)} below 1/1.1")
     assert different == []
 
 
@@ -132,8 +142,8 @@ def test_top_fifty_against_fpsim2(
     ratios, lines, different = [], [], []
     for smiles in asked:
         mol = Chem.MolFromSmiles(smiles)
-        ours_s, ours = best_of(lambda mol=mol: index.similar(mol, limit=50))  # type: ignore[misc]
-        theirs_s, theirs = best_of(
+        ours_s, _, ours = best_of(lambda mol=mol: index.similar(mol, limit=50))  # type: ignore[misc]
+        theirs_s, _, theirs = best_of(
             lambda smiles=smiles: engine.top_k(smiles, k=50, threshold=0.0, n_workers=1)  # type: ignore[misc]
         )
         mine = [round(float(s), 4) for s in ours.scores]
