@@ -89,7 +89,7 @@ def propose_line(
         if best is not None and found.quality < best.quality + LEAST_GAIN:
             break
         best, chosen = found, found.text.split(" and ")
-    return best
+    return best if best is not None and best.members >= LEAST_COVER * len(members) else None
 
 
 def _line(table: ProfileTable, tests: Sequence[str], members: NDArray[np.intp], successes: NDArray[np.intp]) -> Line:

@@ -9,31 +9,28 @@ molecule and a motif hit follow from the row itself.
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
 from kb.assess.record_view import RecordView
+from kb.audit.likeness import SubstrateLikeness
 from kb.materials.profile import ConditionProfile
 from kb.record.run import Run
 from kb.store.values import HouseRule
-
-Rest = Callable[[str | None, Sequence[str]], "NDArray[np.float64] | None"]
-"""From a substrate and the codes of n runs to whole-molecule similarities (n), or None."""
 
 
 class DatedRecord:
     """The dated runs of a book in date order; runs of one day keep the record's order."""
 
-    def __init__(self, view: RecordView, house_rules: Sequence[HouseRule] = (), rest: Rest | None = None) -> None:
+    def __init__(self, view: RecordView, house_rules: Sequence[HouseRule] = ()) -> None:
         """Put the runs in order.
 
         Args:
             view: the whole book.
             house_rules: retired ones included; each speaks from the day it was adopted until it was retired.
-            rest: whole-molecule similarity; None = left out, and counted as not recorded.
         """
         dates = view.table.date
         order = np.argsort(dates, kind="stable")
@@ -43,7 +40,7 @@ class DatedRecord:
         self.dates = dates[self.rows]
         self.table = view.table.rows(self.rows)
         self.failures = [view.failures[int(row)] for row in self.rows]
-        self._rest = rest
+        self._likeness = SubstrateLikeness(view, self.rows)
         self._rules = tuple(house_rules)
         self._motif_rows: dict[str, NDArray[np.intp]] = {}
         self._failed_in: dict[str, NDArray[np.bool_]] = {}
@@ -71,7 +68,7 @@ class DatedRecord:
 
     def rest(self, substrate: str | None, count: int) -> NDArray[np.float64] | None:
         """Return the whole-molecule similarity of the first `count` runs to a substrate."""
-        return self._rest(substrate, self.table.codes[:count]) if self._rest is not None else None
+        return self._likeness.to_first(substrate, count)
 
     def run(self, place: int) -> Run:
         """Return the whole run at a place."""

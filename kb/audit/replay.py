@@ -19,19 +19,19 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from kb.assess.assessment import assess, risk_differences
+from kb.assess.assessment import Comparison, compare_with_record, estimate_plan, find_findings
 from kb.assess.estimate import weights_of
-from kb.assess.precedent import compare
+from kb.assess.published import published_estimate
 from kb.assess.record_view import RecordView
-from kb.assess.table import one_row
 from kb.audit.failing import failed_rows, judged_rows
 from kb.audit.hindsight import DatedRecord
 from kb.errors import InvalidRecord
 from kb.progress import Progress, Silent
-from kb.record.assessment import Assessment
 from kb.record.finding import Finding
-from kb.store.derivation import account_of_plan
-from kb.vocabulary import FindingKind, Severity
+from kb.record.plan import Plan
+from kb.store.derivation import Account, account_of_plan
+from kb.store.values import HouseRule
+from kb.vocabulary import FindingKind, Role, Severity
 
 WARNS = frozenset({FindingKind.LIABILITY, FindingKind.RESEMBLANCE, FindingKind.HOUSE_RULE})
 _WORRY = {Severity.SERIOUS: 0.6, Severity.CAUTION: 0.4, Severity.NOTE: 0.15}
@@ -131,14 +131,11 @@ class Replayer:
         """Check the run at a place against what stood in the book that morning."""
         run, view = self.dated.run(place), self.dated.before(place)
         account = account_of_plan(run.plan)
-        rest = self.dated.rest(account.facts.substrate, len(view.table))
-        assessment = assess(run.plan, view, self.dated.rules_on(place), rest, 0, account)
-        similarity = np.zeros(len(view.table))
-        if account.reading.centre is not None and len(view.table):
-            _, similarity = compare(one_row(account.facts), view.table, rest, risk_differences(account, view))
-        warnings = [f for f in assessment.findings if f.kind in WARNS and f.severity is not Severity.NOTE]
+        compared = compare_with_record(account, view, self.dated.rest(account.facts.substrate, len(view.table)))
+        findings = _findings(run.plan, account, view, compared, self.dated.rules_on(place))
+        warnings = [f for f in findings if f.kind in WARNS and f.severity is not Severity.NOTE]
         own = [f for f in warnings if _rests_on_the_record(f)]
-        chance = self._chance_by_likeness(similarity, len(view.table))
+        chance = self._chance_by_likeness(compared.similarity, len(view.table))
         return Hindsight(
             run=self.dated.table.codes[place],
             date=dt.date.fromordinal(int(self.dated.dates[place])),
@@ -146,7 +143,7 @@ class Replayer:
             modes=tuple(dict.fromkeys(mode for mode, _ in self.dated.failures[place])),
             warned=bool(warnings),
             by_record=bool(own),
-            worry=worry_of(assessment, chance),
+            worry=worry_of(findings, chance),
             findings=tuple((f.rule_id, str(f.severity)) for f in warnings),
             precedents=tuple(
                 dict.fromkeys(code for f in own if f.evidence for code in f.evidence.runs[: f.evidence.lost])
@@ -159,16 +156,16 @@ class Replayer:
         known = float(judged.sum())
         base = (float(failed[judged].sum()) + 1) / (known + 3)
         weight = weights_of(similarity) * judged
-        return float((weight @ failed + _BASE_RUNS * base) / (weight.sum() + _BASE_RUNS))
+        return float((weight[failed].sum() + _BASE_RUNS * base) / (weight.sum() + _BASE_RUNS))
 
 
-def worry_of(assessment: Assessment, chance_by_likeness: float) -> float:
+def worry_of(findings: Sequence[Finding], chance_by_likeness: float) -> float:
     """Return how likely a check makes a failure (0..1): by its worst finding and by its like runs.
 
     A finding counts with the chance of loss that it states, else by its severity. The two are joined as independent
     reasons, 1 - (1 - a)(1 - b); the figure ranks plans, it is no calibrated chance.
     """
-    worst = max((_chance(f) for f in assessment.findings if f.kind in WARNS), default=0.0)
+    worst = max((_chance(f) for f in findings if f.kind in WARNS), default=0.0)
     return round(1 - (1 - worst) * (1 - chance_by_likeness), 4)
 
 
@@ -176,6 +173,16 @@ def replay(view: RecordView, dated: DatedRecord | None = None, progress: Progres
     """Replay every dated run of a view in one go, in date order."""
     dated = dated or DatedRecord(view)
     return Replayer(dated).walk(range(len(dated)), len(dated), progress)
+
+
+def _findings(
+    plan: Plan, account: Account, view: RecordView, compared: Comparison, rules: Sequence[HouseRule]
+) -> tuple[Finding, ...]:
+    """Return the findings of a check without its precedents and advice, which warn of nothing."""
+    base = next((c.smiles for c in plan.conditions.components if c.role is Role.BASE and c.smiles), None)
+    published = published_estimate(account.reading, account.facts.substrate or "", account.profile, base)
+    _, fit = estimate_plan(account, view, compared, published)
+    return find_findings(plan, account, view, compared, rules, published, fit)
 
 
 def places_left(dated: DatedRecord, kept: Sequence[Hindsight]) -> list[int]:

@@ -115,7 +115,7 @@ def replay_book(
 def _dated(book: AskedBook) -> DatedRecord:
     from kb.audit.hindsight import DatedRecord
 
-    return DatedRecord(book.view(), book.rules(), book.finder().tanimoto_of_runs)
+    return DatedRecord(book.view(), book.rules())
 
 
 def _one_by_one(replayer: Replayer, places: list[int]) -> Generator[list[Hindsight], None, None]:
