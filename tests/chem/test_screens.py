@@ -14,6 +14,7 @@ from kb.chem.query import StructureQuery, parse_query
 from kb.chem.screens import AUGMENTED_BITS, SCREEN_RECIPE, augmented_mask, encode_mol, encode_structure
 from kb.chem.screens_ask import bits_in, holds
 from kb.chem.screens_keys import KEY_ANY_CYCLE, KEY_UNRULY
+from kb.chem.screens_pool import encode_many
 from kb.chem.screens_query import ask_of
 from kb.errors import StructureError
 from tests.search.queries import ALL
@@ -170,6 +171,14 @@ def test_blobs_have_their_widths_and_a_recipe() -> None:
 def test_the_order_of_atoms_is_that_of_the_smiles() -> None:
     mol = Chem.Mol(encode_structure("BrCC(C)C").mol_binary)
     assert [a.GetSymbol() for a in mol.GetAtoms()] == ["Br", "C", "C", "C", "C"]
+
+
+@pytest.mark.parametrize("processes", [1, 2])
+def test_many_are_encoded_in_order_on_any_number_of_processes(processes: int) -> None:
+    texts = [*smiles()[:600], "C1CC", *smiles()[600:700]]
+    blobs = list(encode_many(texts, processes))
+    assert blobs[600] is None
+    assert [b for b in blobs if b is not None] == [encode_structure(s) for s in smiles()[:700]]
 
 
 def test_what_is_no_structure_is_refused() -> None:
