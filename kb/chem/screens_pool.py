@@ -1,8 +1,8 @@
 """Encoding many structures on all cores.
 
-Processes, not threads: half of the time of an encoding is spent in Python, and RDKit's parser lets go of the interpreter
-lock for nothing of it (measured: two threads are slower than one). New processes take a second to start, so few
-structures are encoded where they are.
+Processes, not threads: half of the time of an encoding is spent in Python, and RDKit's parser lets go of
+the interpreter lock for nothing of it (measured: two threads are slower than one). New processes take a
+second to start, so few structures are encoded where they are.
 """
 
 from __future__ import annotations
@@ -12,7 +12,7 @@ from collections.abc import Iterator, Sequence
 from concurrent.futures import ProcessPoolExecutor
 from multiprocessing import get_context
 
-from rdkit import RDLogger
+from rdkit import rdBase
 
 from kb.chem.screens import StructureBlobs, encode_structure
 from kb.errors import StructureError
@@ -55,4 +55,4 @@ def _encode_or_none(smiles: str) -> StructureBlobs | None:
 
 def _be_quiet() -> None:
     """Keep RDKit's complaints of a worker off the terminal; what could not be read is told by None."""
-    RDLogger.DisableLog("rdApp.*")
+    rdBase.DisableLog("rdApp.*")
