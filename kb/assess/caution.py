@@ -1,18 +1,20 @@
 """Cautions: hazards of a planned mixture, each with its consequence, its source and who decides.
 
-It owns the walk over the hazard table and the worked-out checks, and the findings that come of them. A
-caution is never suppressed, by no evidence and no setting. It repeats what the usual safety literature
-says; it is never permission, and every finding defers to local rules and qualified people.
+It owns the walk over the hazard table and the worked-out checks, the findings that come of them, and which
+liabilities need not be told beside them. A caution is never suppressed, by no evidence and no setting. It
+repeats what the usual safety literature says; it is never permission, and every finding defers to local rules
+and qualified people.
 """
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 
 from kb.assess.caution_checks import Worked, work_out
 from kb.assess.caution_mixture import Ingredient, Mixture, build_mixture
 from kb.assess.caution_table import CautionRule, load_cautions
 from kb.assess.predicate_words import NO_SOLVENT
+from kb.assess.rulefile import load_rules
 from kb.chem.facts import Reading
 from kb.materials.profile import ConditionProfile
 from kb.record.conditions import Conditions
@@ -51,6 +53,24 @@ def find_cautions(
                 best[rule.group] = finding
     worked = [_from_worked(w, table.defer) for w in work_out(mixture, reading, table)]
     return tuple(sorted([*best.values(), *worked], key=lambda f: (-f.severity.rank, f.is_uncertain)))
+
+
+def drop_told(liabilities: Sequence[Finding], cautions: Sequence[Finding]) -> tuple[Finding, ...]:
+    """Return the liabilities that no caution tells already.
+
+    A liability yields to a caution that its rule names (`also_caution`), where that caution is at least as severe and
+    as certain. It stays where the book holds losses: those stand in no caution. A caution never yields.
+    """
+    told = {c.rule_id: c for c in cautions}
+    return tuple(f for f in liabilities if not _is_told(f, told))
+
+
+def _is_told(finding: Finding, told: Mapping[str, Finding]) -> bool:
+    if finding.kind is not FindingKind.LIABILITY or (finding.evidence is not None and finding.evidence.lost):
+        return False
+    names = next((r.also_caution for r in load_rules() if r.rule_id == finding.rule_id), ())
+    found = [told[name] for name in names if name in told]
+    return any(c.severity.rank >= finding.severity.rank and c.is_uncertain <= finding.is_uncertain for c in found)
 
 
 def _weight(finding: Finding) -> tuple[int, int]:
@@ -103,6 +123,9 @@ def _conditions_hold(rule: CautionRule, mixture: Mixture) -> tuple[str | None, t
             return "; ".join(rule.when.reasons(profile)), ()
         gaps = rule.when.deciding_gaps(profile) if truth is None else ()
         gaps = tuple(gap for gap in gaps if gap != NO_SOLVENT)
+    acid = mixture.first_acid() if rule.any_acid and rule.workup_when and rule.workup_when.evaluate(profile) else None
+    if acid:
+        return f"the flask holds {acid}", ()
     words = (mixture.conditions.workup or "").lower()
     in_workup = next((w for w in rule.workup if w in words), None)
     if in_workup and (rule.workup_when is None or rule.workup_when.evaluate(profile)):

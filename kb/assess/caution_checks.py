@@ -28,10 +28,21 @@ ATM_BAR = 1.01325
 LOW_BOILING_C = 42.0
 """Boiling point at or below which a solvent is called low-boiling [degC]: a judgement."""
 
+NEAR_BOILING_K = 15.0
+"""How far below its boiling point a low-boiling solvent is said to be lost [K]: a judgement."""
+
+LARGE_MMOL = 100.0
+"""Scale from which a low-boiling solvent is told of whatever the temperature [mmol]: a judgement."""
+
+_BURNS = frozenset({"ether", "nonpolar", "ketone", "ester", "thio"})
+_CHLORINATED = frozenset({"chlorinated"})
+
 AZIDE = "[NX2]=[NX2+]=[NX1-]"
 ORGANIC_AZIDE = "[#6,#16]-[NX2]=[NX2+]=[NX1-]"
 _BOC = "[#7][CX3](=[OX1])[OX2][CX4]([CH3])([CH3])[CH3]"
 _CARBONATE = "[#6;!$([CX4]([CH3])([CH3])[CH3])][OX2][CX3](=[OX1])[OX2][CX4]([CH3])([CH3])[CH3]"
+_TERT_BUTANOL = "[OX2H][CX4]([CH3])([CH3])[CH3]"
+_TERT_BUTYL = "[#7,#8,#16,F,Cl,Br,I]-[CX4]([CH3])([CH3])[CH3]"
 _TERT_BUTYL_OXYGEN = "[OX2;!$([OX2]C(=O)[#7,#8])][CX4]([CH3])([CH3])[CH3]"
 _AZIDE_SOURCE = (
     "(N_C + N_O)/N_N: institutional azide guidance sheet; Brase et al., Angew. Chem. Int. Ed. 2005, 44, 5188 (memory)"
@@ -129,7 +140,10 @@ def _azide_class(ratio: float) -> tuple[Severity, str]:
 
 
 def _gas(mixture: Mixture, reading: Reading) -> Iterator[Worked]:
-    """Gas set free when tert-butyl groups go: wanted (fewer in the product) or likely (strong acid)."""
+    """Gas set free when tert-butyl groups go: wanted (fewer in the product) or likely (strong acid).
+
+    A group that only changes its place (tert-butanol to the chloride) gives no isobutene.
+    """
     profile = mixture.profile
     forcing = profile.acidity == "strong" or profile.lewis_acid == "strong"
     if not forcing and reading.fate is not Fate.GROUP_LOSS:
@@ -145,9 +159,14 @@ def _gas(mixture: Mixture, reading: Reading) -> Iterator[Worked]:
             carbon_dioxide += lost * co2_each
             alkene += lost
             source = source or next(((i, m[0]) for i in left if (m := _matches(i, smarts))), None)
-    if not alkene:
+    if right:
+        alkene = min(alkene, _count(left, _TERT_BUTYL) - _count(right, _TERT_BUTYL))
+    elif "hydrogen_halide" in profile.reagent_classes:
+        alkene -= _count(left, _TERT_BUTANOL)
+    alkene = max(alkene, 0)
+    if not alkene + carbon_dioxide:
         return
-    parts = ([f"{carbon_dioxide} CO2"] if carbon_dioxide else []) + [f"up to {alkene} isobutene"]
+    parts = [f"{carbon_dioxide} CO2"] * bool(carbon_dioxide) + [f"up to {alkene} isobutene"] * bool(alkene)
     text = f"Per molecule: {' and '.join(parts)} (in TFA most of the isobutene stays behind as ester or polymer)."
     if mixture.scale_mmol:
         litres = mixture.scale_mmol / 1000 * GAS_L_PER_MOL * (carbon_dioxide + alkene)
@@ -159,7 +178,8 @@ def _gas(mixture: Mixture, reading: Reading) -> Iterator[Worked]:
         title="Gas from the loss of tert-butyl groups" + (" in a closed vessel" if closed else ""),
         why=f"{text} {'A closed vessel builds pressure.' if closed else 'It has to get out; isobutene burns.'}",
         do=("open to a bubbler, never stoppered", "add the acid in portions", "no flame"),
-        source="24.5 L/mol at 25 °C: arithmetic; gases: Lundt et al., Int. J. Pept. Protein Res. 1978, 12, 258",
+        source="24.5 L/mol at 25 °C: arithmetic; "
+        "gases: Lundt et al., Int. J. Pept. Protein Res. 1978, 12, 258 (memory)",
         ingredient=source[0] if source else None,
         atoms=source[1] if source else (),
     )
@@ -193,7 +213,7 @@ def _pressure(mixture: Mixture) -> Iterator[Worked]:
             "a shield and a relief valve",
             "or a solvent that boils higher",
         ),
-        source="Clausius-Clapeyron with Trouton's rule, 88 J/(mol K)",
+        source="Clausius-Clapeyron with Trouton's rule, 88 J/(mol K) (common practice)",
     )
 
 
@@ -220,14 +240,24 @@ def _peroxides(mixture: Mixture, table: CautionTable) -> Iterator[Worked]:
 
 
 def _low_boiling(mixture: Mixture) -> Iterator[Worked]:
-    bp_c = mixture.profile.bp_c
+    """A low-boiling solvent where it is lost (near its boiling point or above) or where there is much of it."""
+    profile, bp_c = mixture.profile, mixture.profile.bp_c
     if bp_c is None or bp_c > LOW_BOILING_C:
         return
+    is_near = profile.temperature_c is not None and profile.temperature_c >= bp_c - NEAR_BOILING_K
+    if not is_near and (mixture.scale_mmol or 0.0) < LARGE_MMOL:
+        return
+    burns = bool(profile.solvent_classes & _BURNS) or not profile.solvent_classes & _CHLORINATED
     yield Worked(
         rule_id="hazard-low-boiling-solvent",
         severity=Severity.NOTE,
         title=f"A solvent that boils at {bp_c:g} °C",
-        why="It is lost on warming and its vapour gathers low; that of an ether or hydrocarbon lights from afar.",
-        do=("cool the condenser well", "check the level on long runs", "no flame or hot plate near one that burns"),
+        why="It is lost on warming, builds pressure in a closed bottle or funnel, and its vapour gathers low"
+        + (", where it lights from afar." if burns else "; it harms who breathes it."),
+        do=(
+            "cool the condenser well",
+            "check the level on long runs",
+            "no flame, no hot surface near" if burns else "hood, and vent the separating funnel often",
+        ),
         source="Prudent Practices in the Laboratory, National Research Council (memory)",
     )

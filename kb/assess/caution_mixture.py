@@ -6,12 +6,14 @@ vessel and the scale that hazard tables ask for. It judges nothing. What cannot 
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 from typing import TYPE_CHECKING
 
 from kb.assess.liability_rule import compile_motif
+from kb.materials.catalogue import Reagent, load_catalogue
 from kb.materials.profile import ConditionProfile
 from kb.record.conditions import Conditions
 
@@ -30,10 +32,22 @@ CLOSED_WORDS = (
     "crimp",
     "screw cap",
 )
-"""Words in a vessel's name that say it is closed (common practice)."""
+"""Words in a vessel's name that say it is closed (common practice); they win over OPEN_WORDS, since a tube that is
+sealed is sealed whatever else stands beside it, and a warning too many costs less than one too few."""
 
 OPEN_WORDS = ("open", "condenser", "reflux", "vented", "bubbler")
-"""Words that say it is open, and win over CLOSED_WORDS."""
+"""Words that say it is open."""
+
+WEAKEST_ACID_PKA = 9.5
+"""pKa up to which an acid counts as one that frees a toxic gas from its salt: ammonium is the weakest (a judgement)."""
+
+_NEGATED = re.compile(
+    r"\b(?:no|not|never|without|nor)\b(?:\s+(?:a|an|the|yet|any|to|be|under|in|reflux))*\s+[\w-]+(?:\s+condenser)?"
+    r"|\bun-?(?:sealed|closed|opened|vented)\b"
+)
+_NOT_THE_VESSEL = re.compile(
+    r"\b(?:atmospheric|ambient|normal|reduced) pressure|\bpressure[- ]equali[sz]\w*|\bclosed (?:fume )?hood"
+)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -84,6 +98,12 @@ class Mixture:
                 return ingredient, tuple(hit)
         return None
 
+    def first_acid(self) -> str | None:
+        """Return the name of the first catalogued acid on the left side or among the components; None = none."""
+        known = load_catalogue().reagent_by_smiles
+        entries = (known.get(i.smiles) for i in self.ingredients if not i.is_product and not i.is_solvent)
+        return next((e.name for e in entries if e is not None and _is_acid(e)), None)
+
 
 def build_mixture(
     fragments: Sequence[str], products: Sequence[str], conditions: Conditions, profile: ConditionProfile
@@ -111,13 +131,24 @@ def build_mixture(
 
 
 def is_vessel_closed(vessel: str | None) -> bool | None:
-    """Return True for "sealed tube", False for "flask with condenser", None where it is not said."""
+    """Return True for "sealed tube", False for "flask with condenser", None where it is not said.
+
+    A word that is negated ("no condenser", "not sealed") says nothing.
+
+    >>> is_vessel_closed("sealed tube, no reflux condenser"), is_vessel_closed("flask, not sealed")
+    (True, None)
+    """
     if not vessel:
         return None
-    words = vessel.lower()
-    if any(word in words for word in OPEN_WORDS):
-        return False
-    return True if any(word in words for word in CLOSED_WORDS) else None
+    words = _NEGATED.sub(" ", _NOT_THE_VESSEL.sub(" ", vessel.lower()))
+    if any(re.search(rf"\b{word}", words) for word in CLOSED_WORDS):
+        return True
+    return False if any(re.search(rf"\b{word}", words) for word in OPEN_WORDS) else None
+
+
+def _is_acid(entry: Reagent) -> bool:
+    is_strong_enough = entry.pka is None or entry.pka <= WEAKEST_ACID_PKA
+    return entry.acidity == "strong" or (entry.acidity == "weak" and is_strong_enough)
 
 
 @lru_cache(maxsize=512)

@@ -29,6 +29,7 @@ class CautionRule:
         when: condition line; None = none.
         motifs: SMARTS, each to be found somewhere in the mixture or the product.
         workup, workup_when: words in the work-up that count as an alternative to `when`, and its own condition.
+        any_acid: where `workup_when` holds, an acid in the flask counts even if it is taken up.
         needs_closed_vessel: the vessel must be said to be closed.
         min_scale_mmol: least scale [mmol].
     """
@@ -44,6 +45,7 @@ class CautionRule:
     motifs: tuple[str, ...] = ()
     workup: tuple[str, ...] = ()
     workup_when: Predicate | None = None
+    any_acid: bool = False
     needs_closed_vessel: bool = False
     min_scale_mmol: float | None = None
 
@@ -117,6 +119,7 @@ def _rule(row: Mapping[str, Any]) -> CautionRule:
             motifs=tuple(row.get("motifs", ())),
             workup=tuple(row.get("workup", ())),
             workup_when=parse_predicate(row["workup_when"]) if "workup_when" in row else None,
+            any_acid=bool(row.get("any_acid", False)),
             needs_closed_vessel=bool(row.get("closed_vessel", False)),
             min_scale_mmol=row.get("min_scale_mmol"),
         )

@@ -106,10 +106,11 @@ def find_liabilities(
         return ()
     from kb.assess.liability_fragments import read_fragments, read_named
     from kb.assess.liability_intent import read_product, stated_product
+    from kb.assess.liability_outrun import is_outrun
 
     flask = read_fragments(fragments, reading)
     if reading.nucleophile is None:
-        flask = (*flask, *read_named(profile))
+        flask = (*flask, *read_named(profile, flask))
     target = None if ignore_intention else read_product(product or stated_product(reading))
     intended = reading.fate if not ignore_intention else None
     hits: list[_Hit] = []
@@ -121,6 +122,8 @@ def find_liabilities(
             hits.append(_Hit(rule=rule, places=(), gaps=gaps, severity=severity))
             continue
         places = _places(rule, flask, reading, profile)
+        if rule.yields_to and not ignore_intention and is_outrun(rule, reading, profile, target, flask):
+            places = tuple(p for p in places if not _holds_centre(p, reading))
         if rule.side in ("bystander", "anywhere") and not ignore_intention:
             places = _not_meant(rule, places, target, reading)
         elif rule.side in ("centre", "nucleophile") and reading.confidence is Confidence.UNRESOLVED:
@@ -219,10 +222,11 @@ def _finding(
 ) -> Finding | None:
     from kb.assess.liability_fragments import as_entered, find_partners
     from kb.assess.liability_intent import same_structure
-    from kb.assess.liability_product import side_products
+    from kb.assess.liability_product import RACEMISED_PRODUCT, racemised_product, side_products
 
     head, rule = group[0], group[0].rule
     formed: list[str] = []
+    blurred: list[str | None] = []
     for hit in group:
         candidates = find_partners(hit.rule, hit.component, flask, others, profile)
         if hit.rule.partner is not None and hit.rule.partner_from == "scheme" and not candidates:
@@ -232,9 +236,12 @@ def _finding(
         if hit.places:
             first = hit.places[0]
             formed += side_products(hit.rule, first.match, first.mol, candidates)
+            if hit.rule.product_of(first.match) == RACEMISED_PRODUCT:
+                blurred.append(racemised_product(first.match, first.mol, target))
     formed = list(dict.fromkeys(formed))
     if rule.side != "bystander" and formed and all(same_structure(s, target) for s in formed):
         return None
+    formed = list(dict.fromkeys([*(s for s in blurred if s), *formed]))
     atoms = sorted({a for hit in group for p in hit.places for a in p.match.atoms})
     component = head.component
     return Finding(

@@ -62,12 +62,14 @@ def read_fragments(fragments: Sequence[str], reading: Reading) -> tuple[Fragment
     )
 
 
-def read_named(profile: ConditionProfile) -> tuple[Fragment, ...]:
+def read_named(profile: ConditionProfile, drawn: Sequence[Fragment] = ()) -> tuple[Fragment, ...]:
     """Return the nucleophile where it was named and not drawn; empty where none is known or it has no structure."""
     name = profile.nucleophile_name
     smiles = next((r.smiles for r in load_catalogue().reagents if name and r.name == name), None)
     mol = _read(smiles) if smiles else None
-    return () if mol is None else (Fragment(component=None, mol=mol, is_reactant=False, may_attack=True),)
+    if mol is None or _plain_smiles(mol) in {_plain_smiles(f.mol) for f in drawn}:
+        return ()
+    return (Fragment(component=None, mol=mol, is_reactant=False, may_attack=True),)
 
 
 def find_partners(
@@ -77,12 +79,18 @@ def find_partners(
     others: Sequence[str],
     profile: ConditionProfile,
 ) -> tuple[Chem.Mol, ...]:
-    """Return molecules that fit a rule's second reactant, drawn ones first; empty where it needs none."""
+    """Return molecules that fit a rule's second reactant, drawn ones first; empty where it needs none.
+
+    A solvent (dichloromethane beside an amine) is no second reactant of a rule whose partner has to be brought,
+    unless the scheme gives it that part. Where the condition line names the solvent, it is one.
+    """
     if rule.partner is None:
         return ()
     pattern, _ = compile_motif(rule.partner)
-    drawn = [f.mol for f in flask if f.component != component]
+    drawn = [f.mol for f in flask if f.component != component and (f.may_attack or rule.partner_from != "scheme")]
     named = [mol for smiles in (*others, *sorted(profile.solvent_alkoxy)) if (mol := _read(smiles)) is not None]
+    if rule.partner_from == "scheme":
+        named = [mol for mol in named if not _is_solvent(mol)]
     if rule.partner_from == "itself":
         drawn = [f.mol for f in flask if f.component == component]
     return tuple(mol for mol in (*drawn, *named) if mol.HasSubstructMatch(pattern))
@@ -94,6 +102,11 @@ def as_entered(flask: Sequence[Fragment], component: int | None, atoms: Sequence
     if mol is None or component is None:
         return ()
     return tuple(mol.GetAtomWithIdx(a).GetIntProp(_ENTERED) for a in atoms)
+
+
+def find_entered(mol: Chem.Mol, entered: int) -> int | None:
+    """Return the searched atom of an atom as entered, None where it is a written hydrogen that was folded in."""
+    return next((a.GetIdx() for a in mol.GetAtoms() if a.GetIntProp(_ENTERED) == entered), None)
 
 
 @lru_cache(maxsize=256)

@@ -19,6 +19,11 @@ from kb.assess.liability_structure import LARGEST_BREDT_SUM, bridging_sum
 RACEMISED = "racemised"
 """Stands for a transformation that only blurs the configuration of atom 1."""
 
+RACEMISED_PRODUCT = "racemised product"
+"""Stands for the intended product with the configuration blurred at what was atom 1."""
+
+_CENTRE = "_centre"
+
 MAX_OUTCOMES = 200
 """Most outcomes of one transformation that are looked at."""
 
@@ -38,7 +43,7 @@ def side_products(rule: Rule, match: Match, mol: Chem.Mol, partners: Sequence[Ch
         Distinct SMILES; empty where the rule states no transformation or no partner is known.
     """
     template = rule.product_of(match)
-    if template is None:
+    if template is None or template == RACEMISED_PRODUCT:
         return ()
     ready = clean(mol)
     if template == RACEMISED:
@@ -63,6 +68,34 @@ def side_products(rule: Rule, match: Match, mol: Chem.Mol, partners: Sequence[Ch
             if smiles is not None:
                 found.setdefault(smiles[0], smiles[1])
     return tuple(sorted(found, key=lambda s: (found[s], s)))
+
+
+def racemised_product(match: Match, mol: Chem.Mol, product: Chem.Mol | None) -> str | None:
+    """Return the intended product without configuration at the atom that was the centre, None where it is not found.
+
+    What is left of the substrate without its leaving group is looked for in the product, configuration aside.
+    """
+    if product is None:
+        return None
+    whole = clean(mol)
+    whole.GetAtomWithIdx(match.by_map[1]).SetIntProp(_CENTRE, 1)
+    bond = whole.GetBondBetweenAtoms(match.by_map[1], match.by_map[3])
+    cut = Chem.FragmentOnBonds(whole, [bond.GetIdx()], addDummies=False)
+    with rdBase.BlockLogs():
+        parts = Chem.GetMolFrags(cut, asMols=True, sanitizeFrags=False)
+    rest = next(p for p in parts if any(a.HasProp(_CENTRE) for a in p.GetAtoms()))
+    place = next(a.GetIdx() for a in rest.GetAtoms() if a.HasProp(_CENTRE))
+    for atom in rest.GetAtoms():
+        atom.SetNoImplicit(False)
+    for part in Chem.GetMolFrags(product, asMols=True):
+        hits = [atoms[place] for atoms in part.GetSubstructMatches(rest, useChirality=False, uniquify=False)]
+        if hits:
+            drawn = [i for i in hits if part.GetAtomWithIdx(i).GetChiralTag() != Chem.ChiralType.CHI_UNSPECIFIED]
+            blurred = Chem.Mol(part)
+            blurred.GetAtomWithIdx((drawn or hits)[0]).SetChiralTag(Chem.ChiralType.CHI_UNSPECIFIED)
+            Chem.AssignStereochemistry(blurred, cleanIt=True, force=True)
+            return Chem.MolToSmiles(blurred)
+    return None
 
 
 def clean(mol: Chem.Mol) -> Chem.Mol:
@@ -142,5 +175,12 @@ def _has_changed(atom: Chem.Atom, reactants: Sequence[Chem.Mol]) -> bool:
     source = reactants[atom.GetIntProp("react_idx") if atom.HasProp("react_idx") else 0]
     before = source.GetAtomWithIdx(atom.GetIntProp("react_atom_idx"))
     old = sorted(n.GetIdx() for n in before.GetNeighbors())
-    new = sorted(n.GetIntProp("react_atom_idx") if n.HasProp("react_atom_idx") else -1 for n in atom.GetNeighbors())
+    new = sorted(n.GetIntProp("react_atom_idx") if _from_same(atom, n) else -1 for n in atom.GetNeighbors())
     return old != new or before.GetTotalDegree() != atom.GetTotalDegree()
+
+
+def _from_same(atom: Chem.Atom, neighbour: Chem.Atom) -> bool:
+    """Return True where both atoms came out of one reactant."""
+    mine = atom.GetIntProp("react_idx") if atom.HasProp("react_idx") else 0
+    other = neighbour.GetIntProp("react_idx") if neighbour.HasProp("react_idx") else mine
+    return bool(neighbour.HasProp("react_atom_idx")) and mine == other

@@ -28,6 +28,10 @@ SIDES = ("centre", "nucleophile", "bystander", "anywhere", "mixture")
 """Where the motif must lie: at the reading's centre, at its nucleophile, elsewhere than at the centre, anywhere
 at all, or nowhere (no motif)."""
 
+WAYS = ("halide", "ring-closure")
+"""What a rule can yield to (`liability_outrun`): an alcohol and a hydrogen halide to the halide; a
+neighbouring hydroxyl or amine that closes a ring."""
+
 MAX_MATCHES = 400
 """Most matches that are looked at in one molecule."""
 
@@ -62,7 +66,8 @@ class Rule:
         severity: before evidence.
         mechanism: plain words.
         motifs: SMARTS, any of them; empty for a rule on the mixture alone.
-        products: reaction SMARTS per motif (or one for all), or `racemised`; empty = no one structure.
+        products: reaction SMARTS per motif (or one for all), or `racemised` (the substrate) or `racemised product`
+            (the stated product); empty = no one structure.
         side: one of SIDES.
         group: rules of one group on one place are told together.
         where: structural conditions on mapped atoms.
@@ -71,6 +76,8 @@ class Rule:
         partner_from: `scheme` = it must be drawn or named, else the rule is silent; `flask` = the condition
             line already says it is there; `itself` = a second molecule of the substrate.
         gives: the fate that follows; where that is what is intended, the rule has nothing to warn of.
+        yields_to: ways to react (WAYS) that outrun the rule where they are what is intended.
+        also_caution: cautions that say the same; where one of them is told as strongly, the finding is not.
         do_instead: most useful first.
         source, source_basis: where it comes from, and whether that was read or is from memory.
         note: anything a reader of the table should know.
@@ -90,6 +97,8 @@ class Rule:
     partner: str | None = None
     partner_from: str = "scheme"
     gives: Fate | None = None
+    yields_to: tuple[str, ...] = ()
+    also_caution: tuple[str, ...] = ()
     do_instead: tuple[str, ...] = ()
     source: str = ""
     source_basis: str = ""

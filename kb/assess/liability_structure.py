@@ -100,6 +100,12 @@ def _small_bridgehead(mol: Chem.Mol, atom: int, _: int, __: ConditionProfile | N
     return size is not None and size <= SMALL_BRIDGEHEAD_SUM
 
 
+def _fixed_bridgehead(mol: Chem.Mol, atom: int, other: int, profile: ConditionProfile | None) -> bool:
+    """Return True for a bridgehead that stays one when a bond of it moves to `other`, which stands outside its cage."""
+    bond = mol.GetBondBetweenAtoms(atom, other)
+    return _bridgehead(mol, atom, other, profile) and not bond.IsInRing()
+
+
 def _stereocentre(mol: Chem.Mol, atom: int, _: int, __: ConditionProfile | None) -> bool:
     return mol.GetAtomWithIdx(atom).GetChiralTag() != Chem.ChiralType.CHI_UNSPECIFIED
 
@@ -190,6 +196,7 @@ def _canonical(smiles: str) -> str:
 WORDS: dict[str, Callable[[Chem.Mol, int, int, ConditionProfile | None], bool]] = {
     "bridgehead": _bridgehead,
     "small bridgehead": _small_bridgehead,
+    "fixed bridgehead": _fixed_bridgehead,
     "stereocentre": _stereocentre,
     "trans": _trans,
     "cis": _cis,

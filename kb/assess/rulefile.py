@@ -12,7 +12,7 @@ from functools import lru_cache
 from importlib import resources
 from typing import Any
 
-from kb.assess.liability_rule import SIDES, Rule
+from kb.assess.liability_rule import SIDES, WAYS, Rule
 from kb.assess.predicate import parse_predicate
 from kb.errors import QueryError
 from kb.vocabulary import Fate, Severity
@@ -31,6 +31,8 @@ _KNOWN = {
     "when",
     "severity",
     "gives",
+    "yields_to",
+    "also_caution",
     "mechanism",
     "do_instead",
     "source",
@@ -92,6 +94,9 @@ def build_rule(entry: Mapping[str, Any], *, place: str) -> Rule:
     products = _texts(entry.get("product"))
     if len(products) > 1 and len(products) != len(motifs):
         raise refuse("products and motifs do not pair up.", "Give one product for all, or one for each.")
+    yields_to = _texts(entry.get("yields_to"))
+    if strange := [word for word in yields_to if word not in WAYS]:
+        raise refuse(f"{strange[0]} is no way to react.", f"Ways are {', '.join(WAYS)}.")
     try:
         where = _where(_texts(entry.get("where")))
         return Rule(
@@ -109,6 +114,8 @@ def build_rule(entry: Mapping[str, Any], *, place: str) -> Rule:
             partner="".join(_texts(entry.get("partner"))) or None,
             partner_from=str(entry.get("partner_from", "scheme")),
             gives=Fate(entry["gives"]) if entry.get("gives") else None,
+            yields_to=yields_to,
+            also_caution=_texts(entry.get("also_caution")),
             do_instead=_texts(entry.get("do_instead")),
             source=str(entry.get("source", "")),
             source_basis=str(entry.get("source_basis", "")),

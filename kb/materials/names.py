@@ -22,6 +22,7 @@ from kb.materials.catalogue import Material, Reagent, Solvent, load_catalogue
 from kb.materials.labels import LONGEST_NAME, Label, plain_name, read_label
 
 OFFERED_FROM = 60.0  # likeness 0..100 below which nothing is offered (judgement)
+SHORT_OFFERED_FROM = 80.0  # likewise for texts shorter than NEAR_LENGTH: AIBN is 75 % alike BAIB (judgement)
 NEAR_FROM = 86.0  # likeness from which a single offer is called near (judgement)
 NEAR_LEAD = 6.0  # by how much it must lead the next one (judgement)
 NEAR_LENGTH = 6  # shorter texts are formulas and abbreviations, where one letter is another compound [characters]
@@ -278,7 +279,8 @@ def _alike(name: str, kind: str | None) -> tuple[Offer, ...]:
     if not name or len(name) > 80:
         return ()
     spellings, owners = _spellings()
-    hits = process.extract(_loose(name), spellings, scorer=fuzz.ratio, score_cutoff=OFFERED_FROM, limit=60)
+    cutoff = OFFERED_FROM if len(plain_name(name)) >= NEAR_LENGTH else SHORT_OFFERED_FROM
+    hits = process.extract(_loose(name), spellings, scorer=fuzz.ratio, score_cutoff=cutoff, limit=60)
     offers: dict[str, Offer] = {}
     for _, score, position in hits:
         entry, matched = owners[position]
