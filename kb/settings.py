@@ -27,7 +27,7 @@ from typing import Any
 from kb.errors import SettingsError
 
 PREFIX = "SIDEPATH_"
-THEMES = ("auto", "light", "dark")
+THEMES = ("auto", "light", "dark", "high-contrast")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

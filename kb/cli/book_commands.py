@@ -203,9 +203,11 @@ def open_terminal_interface(session: Session) -> None:
     Raises:
         SidepathError: there is no terminal to draw on.
     """
+    import os
     import sys
 
-    if not (sys.stdin.isatty() and sys.stdout.isatty()):
+    is_served = "TEXTUAL_DRIVER" in os.environ  # a browser session draws through pipes
+    if not is_served and not (sys.stdin.isatty() and sys.stdout.isatty()):
         raise SidepathError("There is no terminal to draw on.", "Run `sidepath tui` in a terminal.")
     run_application: Any
     from tui.application import run_application
