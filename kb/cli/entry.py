@@ -17,7 +17,7 @@ from typing import Any
 import typer
 
 from kb.cli import exit_codes
-from kb.cli.session import STDOUT, complain, json_line
+from kb.cli.session import STDOUT, ReaderGone, complain, json_line
 from kb.errors import SidepathError
 
 # Typer carries its own copy of the library under it, or an installed one, by version; these are its bases either way.
@@ -61,11 +61,11 @@ def main(argv: Sequence[str] | None = None) -> None:
 
 def run(argv: Sequence[str]) -> int:
     """Run one command and return its exit status; never raises."""
-    from kb.cli.root import app
-
     front, rest = _parted(argv)
     as_json, is_verbose = "--json" in front, bool({"--verbose", "-v"} & set(front))
     try:
+        from kb.cli.root import app  # here, so that Ctrl-C while it loads is met below
+
         command = typer.main.get_command(app)
         result = command.main(args=front + rest, prog_name="sidepath", standalone_mode=False)
         return result if isinstance(result, int) else exit_codes.DONE
@@ -84,8 +84,8 @@ def run(argv: Sequence[str]) -> int:
         where = context.command_path if context else "sidepath"
         _complain({"code": "usage", "message": _usage_words(error), "hint": f"See `{where} --help`."}, as_json)
         return exit_codes.USAGE
-    except BrokenPipeError as error:
-        return _after_failed_output(error, exit_codes.DONE)
+    except (ReaderGone, BrokenPipeError):
+        return _after_failed_output(BrokenPipeError(), exit_codes.DONE)
     except OSError as error:
         if error.filename == STDOUT:
             return _after_failed_output(error, exit_codes.REFUSED)

@@ -134,6 +134,10 @@ class Session:
         return BarOnStderr(label, shown=not self.quiet and sys.stderr.isatty())
 
 
+class ReaderGone(Exception):
+    """Raised when whoever read our answer has seen enough (`| head`); no failure."""
+
+
 class BarOnStderr:
     """Progress as one line rewritten at most four times a second.
 
@@ -198,12 +202,13 @@ def put(text: str) -> None:
     """Print a line of a result on stdout.
 
     Raises:
+        ReaderGone: nobody reads any more.
         OSError: stdout takes no more; its file name is STDOUT, so that nobody blames the book.
     """
     try:
         typer.echo(text)
     except BrokenPipeError:
-        raise
+        raise ReaderGone from None
     except OSError as error:
         error.filename = STDOUT
         raise
