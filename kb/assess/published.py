@@ -3,54 +3,39 @@
 It owns the translation between what a scheme and a flask are called here and what the models of
 `kb.physorg` ask for; the models own the chemistry. It refuses where the reading has no centre, where the
 step is one that the tables do not cover (additions, losses of a protecting group), and wherever the model
-refuses. Shares are of what reacts.
+refuses. `fates` are shares of everything after the time of the plan (a day where it gives none); `of_what_reacts`
+leaves the starting material out, as published splits do.
 """
 
 from __future__ import annotations
 
 import contextlib
-from dataclasses import dataclass
+import dataclasses
 
 from rdkit import Chem, rdBase
 
 from kb.assess.published_centre import describe_centre
+from kb.assess.published_closure import find_closure
 from kb.assess.published_medium import medium_of
 from kb.assess.published_sites import fastest_site
+from kb.assess.published_words import PublishedEstimate, pace_words
 from kb.chem.facts import Reading
 from kb.errors import ChemistryError
 from kb.materials.profile import ConditionProfile
-from kb.physorg.competition import AlkeneShare, Channel, Competition, Share, compete
+from kb.physorg.closure import closure_refused
+from kb.physorg.competition import Share, compete
+from kb.physorg.conversion import DEFAULT_TIME_H
+from kb.physorg.possible import possible_fates
 from kb.physorg.step import StepFacts
-from kb.physorg.stereo import StereoOutcome, expect_stereo
+from kb.physorg.stereo import expect_stereo
 from kb.record.finding import Interval
 from kb.vocabulary import CarbonClass, Confidence, Fate, LeavingGroup
 
+__all__ = ["NOT_COVERED", "PublishedEstimate", "published_estimate", "step_facts"]
+
 NOT_COVERED = frozenset({Fate.ADDITION, Fate.GROUP_LOSS})
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class PublishedEstimate:
-    """What published chemistry expects of a plan.
-
-    Attributes:
-        fates: shares 0..1 with 80 % intervals, largest first; empty = no honest number.
-        channels: what made them, largest share first; each lists its terms and sources.
-        alkenes: each alkene's share of all that reacts and of the alkenes.
-        stereo: what becomes of a drawn centre; None = no centre drawn, or no number.
-        half_life_h: to about a factor of ten, at 1 M of reagent [h]; None without a number.
-        note: plain words: what it rests on, or why there is no number.
-        sources: in order of appearance.
-        step: the step as the models were asked; None where it could not be put so.
-    """
-
-    fates: tuple[tuple[Fate, Interval], ...] = ()
-    channels: tuple[Channel, ...] = ()
-    alkenes: tuple[AlkeneShare, ...] = ()
-    stereo: StereoOutcome | None = None
-    half_life_h: Interval | None = None
-    note: str = ""
-    sources: tuple[str, ...] = ()
-    step: StepFacts | None = None
+_BASES_ONLY = frozenset({"carbonate_base", "bicarbonate"})
+"""Not what attacks where the scheme says that the substrate does itself (common practice)."""
 
 
 def published_estimate(
@@ -68,7 +53,7 @@ def published_estimate(
     facts = step_facts(reading, substrate_smiles, profile, base_smiles)
     if isinstance(facts, str):
         return PublishedEstimate(note=facts)
-    return _translate(compete(facts), facts)
+    return _translate(facts, profile)
 
 
 def step_facts(
@@ -85,9 +70,20 @@ def step_facts(
         return "The structure of the substrate could not be matched with its reading. No honest number."
     described = describe_centre(mol, centre.atom, centre.leaving_atom, centre.carbon_class)
     is_activated = centre.leaving_group in (LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE)
-    nucleophile = reading.nucleophile.nucleophile_class if reading.nucleophile else None
-    medium = medium_of(profile, nucleophile, is_activated, base_smiles)
-    step = StepFacts(centre=described, leaving_group=centre.leaving_group, medium=medium)
+    attacker = reading.nucleophile
+    is_within = attacker is not None and attacker.component == centre.component
+    named = (attacker.atom, attacker.nucleophile_class) if attacker is not None and is_within else None
+    closure = None
+    # What activates an alcohol meets an amine beside it first: then only the scheme can say that a ring closes.
+    if named[0] < mol.GetNumAtoms() if named is not None else not is_activated:
+        closure = find_closure(mol, centre.atom, centre.leaving_atom, profile.base_pkah, named)
+    if closure is not None and closure.is_asked and (refused := closure_refused(closure)):
+        return refused
+    word = attacker.nucleophile_class if attacker is not None and not is_within else None
+    medium = medium_of(profile, word, is_activated, base_smiles)
+    if closure is not None and closure.is_asked and medium.nucleophile in _BASES_ONLY:
+        medium = dataclasses.replace(medium, nucleophile=None, nucleophile_n=None, nucleophile_molar=None)
+    step = StepFacts(centre=described, leaving_group=centre.leaving_group, medium=medium, closure=closure)
     return fastest_site(mol, centre.leaving_atom, step) if reading.confidence is Confidence.INFERRED else step
 
 
@@ -124,17 +120,22 @@ def _fragment(reading: Reading, substrate_smiles: str) -> Chem.Mol | None:
     return None
 
 
-def _translate(result: Competition, facts: StepFacts) -> PublishedEstimate:
+def _translate(facts: StepFacts, profile: ConditionProfile) -> PublishedEstimate:
+    result = compete(facts, profile.time_h or DEFAULT_TIME_H)
+    possible = possible_fates(facts)
     if not result.fates:
-        return PublishedEstimate(note=result.no_number, step=facts)
+        return PublishedEstimate(note=result.no_number, step=facts, possible=possible)
     half_life = result.half_life_h
+    of_what_reacts = tuple((fate, _interval(share)) for fate, share in result.fates)
     return PublishedEstimate(
-        fates=tuple((fate, _interval(share)) for fate, share in result.fates),
+        fates=tuple((fate, _interval(share)) for fate, share in result.fates_after) or of_what_reacts,
+        of_what_reacts=of_what_reacts,
+        possible=possible,
         channels=result.channels,
         alkenes=result.alkenes,
         stereo=expect_stereo(facts, result) if facts.centre.is_stereocentre else None,
         half_life_h=Interval(mean=half_life.mean, low=half_life.low, high=half_life.high) if half_life else None,
-        note=" ".join(result.notes),
+        note=" ".join((*result.notes, pace_words(result, profile))),
         sources=result.sources,
         step=facts,
     )

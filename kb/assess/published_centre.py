@@ -77,6 +77,7 @@ def _describe_neighbour(mol: Chem.Mol, centre: int, here: int, leaving: int | No
         substituents=tuple(sorted(size_word(mol, k, here) for k in others)),
         can_be_alkene=possible,
         alkenes=list_alkenes(mol, centre, here, leaving) if possible else (),
+        in_small_ring=any(len(r) < 5 and here in r and centre not in r for r in mol.GetRingInfo().AtomRings()),
     )
 
 
@@ -90,14 +91,16 @@ def _anti_hydrogens(mol: Chem.Mol, centre: int, here: int, leaving: int | None, 
         return 1.0
     full = Chem.AddHs(mol)
     proton = next(n.GetIdx() for n in full.GetAtomWithIdx(here).GetNeighbors() if n.GetAtomicNum() == 1)
-    at_centre, at_here = _face(full, centre, leaving, shared), _face(full, here, proton, shared)
+    at_centre, at_here = face_of(full, centre, leaving, shared), face_of(full, here, proton, shared)
     if at_centre is None or at_here is None:
         return 0.5
     return 1.0 if at_centre != at_here else 0.0
 
 
-def _face(full: Chem.Mol, atom: int, group: int, ring: Sequence[int]) -> int | None:
+def face_of(full: Chem.Mol, atom: int, group: int, ring: Sequence[int]) -> int | None:
     """Return +1 or -1 for the face of the ring that a group is on, None where the drawing does not say.
+
+    `full` has its hydrogens as atoms.
 
     Going round the ring one way, the order (previous, next, group, other) has the same handedness on every
     atom for groups of one face.
@@ -145,6 +148,8 @@ def _shifts(mol: Chem.Mol, centre: int, leaving: int | None) -> tuple[Shift, ...
             moved = shifted_cation(mol, centre, here, leaving, group)
             label = Chem.MolToSmiles(moved) if moved is not None else start
             if moved is None or label == start or any(s.cation.label == label for s in found):
+                continue
+            if _small_rings(moved) > _small_rings(mol):
                 continue
             after = describe_centre(moved, here, None, None, with_shifts=False)
             if after.carbon_class in _CLASSES:  # a bridgehead cation cannot flatten
@@ -225,6 +230,11 @@ def _ring_size(mol: Chem.Mol, centre: int, leaving: int | None) -> int | None:
     """Return the smallest ring through the centre, rings through the leaving atom (epoxides) left out."""
     sizes = [len(r) for r in mol.GetRingInfo().AtomRings() if centre in r and leaving not in r]
     return min(sizes, default=None)
+
+
+def _small_rings(mol: Chem.Mol) -> int:
+    """Return how many rings of three or four there are; a shift that makes one more runs uphill."""
+    return sum(len(r) < 5 for r in mol.GetRingInfo().AtomRings())
 
 
 def _in_four_ring(mol: Chem.Mol, one: int, other: int) -> bool:

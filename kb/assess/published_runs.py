@@ -81,4 +81,5 @@ def _site(
     if mol is None or mol.GetBondBetweenAtoms(atom, departs) is None:
         return None
     centre = describe_centre(mol, atom, departs, CarbonClass(carbon_class))
-    return centre, find_closure(mol, atom, departs, base_pkah)
+    is_activated = leaving in (LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE)
+    return centre, None if is_activated else find_closure(mol, atom, departs, base_pkah)

@@ -2,19 +2,21 @@
 
 It owns the partition, as log10 relative to capture by the solvent (or by the nucleophile where the solvent
 does not attack), not how fast the cation forms (`rates`). One shift is followed, not two. The products of a
-shift are called rearranged whether captured or not; alkenes that both routes give are added up by label.
+shift are called rearranged whether captured or not, but for alkenes that loss without a shift gives as well: one
+product has one fate.
 """
 
 from __future__ import annotations
 
 import math
+from collections.abc import Set
 from dataclasses import dataclass
 
 from kb.physorg.constants import R_J_MOL_K, REFERENCE_C, find_constant, get_constant
 from kb.physorg.elimination import split_geometry
 from kb.physorg.energetics import kelvin
 from kb.physorg.medium import nucleophile_n, solvent_word
-from kb.physorg.rates import HALIDES, cation_terms, solvent_captures
+from kb.physorg.rates import HALIDES, cation_terms, is_dehydrating, solvent_captures
 from kb.physorg.step import Centre, Medium, Neighbour, StepFacts
 from kb.physorg.terms import Term, find_term, term, total
 from kb.vocabulary import CarbonClass, Fate
@@ -48,6 +50,7 @@ class Branch:
 def partition(step: StepFacts) -> list[Branch]:
     """Return the ways out of the cation that the step's centre would give."""
     ways = _ways_out(step.centre, step, Fate.SUBSTITUTION, Fate.ELIMINATION)
+    direct = {a.label for n in step.centre.neighbours for a in n.alkenes}
     for shift in step.centre.shifts:
         if not shift_is_worth_it(step.centre, shift.cation):
             continue
@@ -60,13 +63,18 @@ def partition(step: StepFacts) -> list[Branch]:
             ways.append(
                 Branch(
                     name=note,
-                    fate=Fate.REARRANGED,
+                    fate=Fate.ELIMINATION if _is_direct(branch, direct) else Fate.REARRANGED,
                     terms=(move, share),
                     alkenes=branch.alkenes,
                     is_capture=branch.is_capture,
                 )
             )
     return ways
+
+
+def _is_direct(branch: Branch, direct: Set[str]) -> bool:
+    """Return whether a branch gives only alkenes that form without a shift as well."""
+    return bool(branch.alkenes) and all(label in direct for label, _, _ in branch.alkenes)
 
 
 def is_downhill(before: Centre, after: Centre) -> bool:
@@ -195,6 +203,8 @@ def _loss_medium(step: StepFacts) -> list[Term]:
     found = find_term("loss_solvent", word, f"in {word}") if word else None
     if found and not ("water" in medium.solvent_kinds and len(medium.solvent_kinds & {"alcohol", "polar-aprotic"})):
         terms.append(found)  # aqueous alcohols are the reference itself
+    if is_dehydrating(medium):
+        terms.append(term("loss_base", "activated alcohol with an amine", "the amine in the flask takes the proton"))
     if _has_halide(medium) and medium.acid == "strong":
         terms.append(term("loss_acid_heat", "halide", "the alkene adds the hydrogen halide again"))
     return terms

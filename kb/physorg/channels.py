@@ -1,8 +1,8 @@
 """The channels open to a step, each with the terms of its rate.
 
-It owns the list: SN2 by the reagent and at the far end of an allyl system, displacement by the solvent, E2 and its
-relatives towards each carbon, ionisation and each way out of the cation. It adds to each the spread that an additive
-model leaves out. Rates become shares in `competition`.
+It owns the list: SN2 by the reagent, from within the substrate (a ring closes) and at the far end of an allyl system,
+displacement by the solvent, E2 and its relatives towards each carbon, ionisation and each way out of the cation. It
+adds to each the spread that an additive model leaves out. Rates become shares in `competition`.
 """
 
 from __future__ import annotations
@@ -11,6 +11,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
 from kb.physorg.cation import Branch, is_downhill
+from kb.physorg.closure import closure_terms
 from kb.physorg.constants import REFERENCE_C, get_constant
 from kb.physorg.elimination import SiteRate, e2_sites, geometry_extra, soft_sites, split_geometry
 from kb.physorg.rates import ionisation_terms, solvent_substitution_terms, substitution_terms
@@ -49,6 +50,16 @@ def list_channels(step: StepFacts, ways: Sequence[Branch]) -> list[Draft]:
         if centre.far_end_alkyl is not None and not centre.is_symmetric_allyl:
             far = (*_far_end(step, terms),)
             drafts.append(Draft(name="SN2' at the far end", kind="sn2'", fate=Fate.TRANSPOSED, terms=far))
+    from_within = closure_terms(step)
+    if from_within and step.closure:
+        drafts.append(
+            Draft(
+                name=f"ring closure by {step.closure.nucleophile} ({step.closure.ring_size} members)",
+                kind="closure",
+                fate=Fate.SUBSTITUTION,
+                terms=(*from_within, *extra, term("model", "sn2", "spread of the model for SN2")),
+            )
+        )
     by_solvent = solvent_substitution_terms(step)
     if by_solvent:
         terms = (*by_solvent, term("model", "solvolysis", "spread of the model for solvolysis"))

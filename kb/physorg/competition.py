@@ -4,8 +4,8 @@ It owns which channels a step has and how their rates become shares with 80 % in
 themselves are in `rates`, `elimination` and `cation`. Refuses a number where published chemistry gives
 none, with the reason. Invariants: shares of all fates add up to 1 in every sample; a term that two channels
 share moves both together, so that it cancels where it should; the sampling has a fixed seed, so the same
-step always gives the same figures. Shares are of what reacts; how long that takes is told apart
-(`half_life_h`), to about a factor of ten.
+step always gives the same figures. `fates` are shares of what reacts; `fates_after` are shares of everything
+after a time, starting material among them, from the same samples. The pace is good to about a factor of ten.
 """
 
 from __future__ import annotations
@@ -19,6 +19,7 @@ from numpy.typing import NDArray
 
 from kb.physorg.cation import Branch, partition
 from kb.physorg.channels import Draft, list_channels
+from kb.physorg.conversion import DEFAULT_TIME_H, unreacted
 from kb.physorg.rates import NEEDS_ACTIVATION, closed_because
 from kb.physorg.step import StepFacts
 from kb.physorg.terms import Term, spread, total
@@ -45,7 +46,7 @@ class Channel:
 
     Attributes:
         name: "SN2 by azide", "E2 towards C3", "ionisation, then capture by the solvent"...
-        kind: "sn2", "sn2'", "solvent", "e2", "e1cb", "soft e2", "ionisation".
+        kind: "sn2", "sn2'", "closure", "solvent", "e2", "e1cb", "soft e2", "ionisation".
         fate: where its product counts.
         log10_rate: of its constant in 1/s at 1 M, central value.
         sigma: one standard deviation of it, shared terms included.
@@ -87,7 +88,9 @@ class Competition:
     """What published chemistry expects of a step.
 
     Attributes:
-        fates: shares, largest first; empty = no honest number, and `no_number` says why.
+        fates: shares of what reacts, largest first; empty = no honest number, and `no_number` says why.
+        fates_after: shares of everything after the time asked for, the unreacted among them, largest first; empty
+            without a half-life.
         channels: largest share first.
         alkenes: largest first.
         notes: what the figure rests on and what widens it.
@@ -98,6 +101,7 @@ class Competition:
     """
 
     fates: tuple[tuple[Fate, Share], ...] = ()
+    fates_after: tuple[tuple[Fate, Share], ...] = ()
     channels: tuple[Channel, ...] = ()
     alkenes: tuple[AlkeneShare, ...] = ()
     notes: tuple[str, ...] = ()
@@ -112,8 +116,8 @@ class Competition:
         return next((s for f, s in self.fates if f is fate), Share(mean=0.0, low=0.0, high=0.0))
 
 
-def compete(step: StepFacts) -> Competition:
-    """Return the split that the channels of a step give, or the reason why there is none."""
+def compete(step: StepFacts, time_h: float = DEFAULT_TIME_H) -> Competition:
+    """Return the split that the channels of a step give and what it makes of a time, or why there is none."""
     reason = closed_because(step)
     if reason:
         return Competition(no_number=reason)
@@ -141,12 +145,14 @@ def compete(step: StepFacts) -> Competition:
         key=lambda c: -c.share.mean,
     )
     whole = np.log(2) / rates.sum(axis=0) / 3600
+    half_life = _half_life(step, whole)
     return Competition(
         fates=_fates(drafts, shares),
+        fates_after=_after(drafts, shares, unreacted(rates, time_h)) if half_life else (),
         channels=tuple(channels),
         alkenes=_alkenes(drafts, shares),
         notes=_notes(step, channels),
-        half_life_h=_half_life(step, whole),
+        half_life_h=half_life,
         sources=_sources(channels),
     )
 
@@ -156,7 +162,7 @@ class Quick:
     """The means of a competition without intervals.
 
     Attributes:
-        shares: per fate, 0..1.
+        shares: per fate, 0..1, of everything after the time asked for; of what reacts where there is no half-life.
         half_life_h: as in `Competition`, central value; None likewise.
     """
 
@@ -165,7 +171,7 @@ class Quick:
 
 
 @lru_cache(maxsize=16384)
-def compete_quickly(step: StepFacts) -> Quick | None:
+def compete_quickly(step: StepFacts, time_h: float = DEFAULT_TIME_H) -> Quick | None:
     """Return mean shares and half-life alone, for comparing many steps; None = no honest number.
 
     From fewer samples than `compete` (FEW_SAMPLES), good to about two points; intervals, channels and words are left
@@ -178,11 +184,13 @@ def compete_quickly(step: StepFacts) -> Quick | None:
     if not drafts:
         return None
     (rates,) = sample_rates([(drafts, ways)], FEW_SAMPLES)
-    means = (rates / rates.sum(axis=0)).mean(axis=1)
-    shares: dict[Fate, float] = {}
+    is_paced = not _is_paced_by_promoter(step)
+    left = unreacted(rates, time_h) if is_paced else np.zeros(rates.shape[1])
+    means = (rates / rates.sum(axis=0) * (1 - left)).mean(axis=1)
+    shares: dict[Fate, float] = {Fate.UNREACTED: float(left.mean())} if is_paced else {}
     for draft, mean in zip(drafts, means, strict=True):
         shares[draft.fate] = shares.get(draft.fate, 0.0) + float(mean)
-    half_life = None if _is_paced_by_promoter(step) else float(np.log(2) / np.median(rates.sum(axis=0)) / 3600)
+    half_life = float(np.log(2) / np.median(rates.sum(axis=0)) / 3600) if is_paced else None
     return Quick(shares=tuple(shares.items()), half_life_h=half_life)
 
 
@@ -262,6 +270,14 @@ def _fates(drafts: Sequence[Draft], shares: NDArray[np.float64]) -> tuple[tuple[
     return tuple(sorted(found, key=lambda pair: -pair[1].mean))
 
 
+def _after(
+    drafts: Sequence[Draft], shares: NDArray[np.float64], left: NDArray[np.float64]
+) -> tuple[tuple[Fate, Share], ...]:
+    """Return shares of everything, given what is left in each sample."""
+    found = [*_fates(drafts, shares * (1 - left)), (Fate.UNREACTED, _share(left))]
+    return tuple(sorted(found, key=lambda pair: -pair[1].mean))
+
+
 def _alkenes(drafts: Sequence[Draft], shares: NDArray[np.float64]) -> tuple[AlkeneShare, ...]:
     sums: dict[tuple[str, str], NDArray[np.float64]] = {}
     for i, d in enumerate(drafts):
@@ -285,13 +301,15 @@ def _alkenes(drafts: Sequence[Draft], shares: NDArray[np.float64]) -> tuple[Alke
 
 def _notes(step: StepFacts, channels: Sequence[Channel]) -> tuple[str, ...]:
     medium, notes = step.medium, []
-    notes.append("Published relative rates put together as a sum; shares are of what reacts, not of what was charged.")
+    notes.append("Published relative rates put together as a sum.")
     if medium.temperature_c is None:
         notes.append("Temperature not recorded: 25 °C taken.")
     if not medium.solvent_kinds:
         notes.append("Solvent not known: solvolysis left out, base and nucleophile strength less sure.")
     if not medium.is_complete:
         notes.append("A component could not be classified; what it does is not in the figure.")
+    if step.closure is not None and step.closure.is_aligned is False:
+        notes.append("As drawn, the attacking atom cannot stand behind the leaving group: no ring closes.")
     if medium.activates_hydroxyl:
         notes.append("The group is activated in the flask; which activated species reacts is not modelled.")
     if any(t.because.startswith("published figures") for c in channels for t in c.terms):
@@ -300,8 +318,8 @@ def _notes(step: StepFacts, channels: Sequence[Channel]) -> tuple[str, ...]:
 
 
 def _sources(channels: Sequence[Channel]) -> tuple[str, ...]:
-    found = (t.source for c in channels if c.share.mean >= 0.01 for t in c.terms if t.source)
-    return tuple(dict.fromkeys(found))
+    found = (t.source for c in channels if c.share.mean >= 0.01 for t in c.terms)
+    return tuple(s for s in dict.fromkeys(found) if s and not s.startswith("reference"))
 
 
 def _nothing_reacts(step: StepFacts) -> str:

@@ -26,7 +26,7 @@ J_PER_CAL = 4.184
 REFERENCE_C = 25.0
 """Temperature of every tabulated rate [degC]."""
 
-TABLES = ("leaving_groups", "substrates", "cations", "media", "alkenes")
+TABLES = ("leaving_groups", "substrates", "cations", "closures", "media", "alkenes")
 OBTAINED = frozenset({"seen", "memory", "judged", "common practice", "definition"})
 
 _FOLDER = Path(__file__).resolve().parent.parent / "data" / "physorg"
@@ -98,6 +98,16 @@ def get_constant(quantity: str, key: str) -> Constant:
     if found is None:
         raise LookupError(f"No constant {quantity} / {key} in the published tables.")
     return found
+
+
+def leaving_scale() -> dict[str, float]:
+    """Return how readily halides and sulfonates leave in SN2, log10 relative to fluoride (fluoride = 0).
+
+    For comparing groups with one another; groups that leave only once activated or charged are not on the scale.
+    """
+    groups = ("fluoride", "chloride", "bromide", "iodide", "tosylate", "mesylate", "sulfonate", "triflate")
+    base = get_constant("sn2", "fluoride").value
+    return {group: round(get_constant("sn2", group).value - base, 3) for group in groups}
 
 
 def rows_set_from() -> frozenset[str]:

@@ -79,6 +79,11 @@ def is_acidic(medium: Medium) -> bool:
     return medium.acid == "strong" or medium.lewis_acid == "strong"
 
 
+def is_dehydrating(medium: Medium) -> bool:
+    """Return whether an alcohol is activated with a chloride to follow and an amine beside it (SOCl2 or POCl3)."""
+    return medium.activates_hydroxyl and medium.nucleophile == "chloride" and medium.base is not None
+
+
 def substitution_terms(step: StepFacts) -> list[Term] | None:
     """Return the terms of SN2 by the reagent, or None without a nucleophile of known n."""
     medium, centre = step.medium, step.centre
@@ -102,6 +107,8 @@ def substitution_terms(step: StepFacts) -> list[Term] | None:
     bulk, bulk_sigma = bulk_of(medium) if medium.base in (None, word) else (0.0, 0.0)
     if bulk:
         terms.append(_bulk_term(centre, bulk, bulk_sigma))
+    if is_dehydrating(medium) and centre.carbon_class is CarbonClass.TERTIARY:
+        terms.append(term("sn2_class", "tertiary activated", "an activated tertiary alcohol with an amine dehydrates"))
     if word == "tertiary_amine" and centre.carbon_class is CarbonClass.SECONDARY:
         terms.append(term("sn2_bulk", "secondary", "a tertiary amine cannot reach a secondary centre well"))
     terms += [t for t in (aprotic_gain(word, False, medium), concentration_term(medium.nucleophile_molar)) if t]

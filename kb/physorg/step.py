@@ -69,6 +69,7 @@ class Neighbour:
         substituents: sizes of its other groups, the centre and hydrogen left out.
         can_be_alkene: False where the double bond would break Bredt's rule or the carbon is not sp3.
         alkenes: what loss of its hydrogen gives.
+        in_small_ring: it is in a ring of three or four that the centre is not in.
     """
 
     label: str
@@ -77,6 +78,7 @@ class Neighbour:
     substituents: tuple[str, ...] = ()
     can_be_alkene: bool = True
     alkenes: tuple[Alkene, ...] = ()
+    in_small_ring: bool = False
 
     @property
     def carbons(self) -> int:
@@ -197,9 +199,31 @@ class Medium:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Closure:
+    """An attack on the centre from within the substrate.
+
+    Attributes:
+        ring_size: of the ring that forms.
+        nucleophile: reagent class that the attacking atom acts as ("alkoxide").
+        is_aligned: it can stand behind the leaving group; None = the drawing does not say.
+        is_bridging: the new ring shares more than one bond with a ring that is there.
+        ionised_log10: log10 of the part of the group that has lost its proton; 0 = all, or none to lose.
+        is_asked: the scheme says that it closes; False = it only might.
+    """
+
+    ring_size: int
+    nucleophile: str
+    is_aligned: bool | None = True
+    is_bridging: bool = False
+    ionised_log10: float = 0.0
+    is_asked: bool = False
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class StepFacts:
-    """One step: centre, leaving group, medium."""
+    """One step: centre, leaving group, medium, and the attack from within (None = none)."""
 
     centre: Centre
     leaving_group: LeavingGroup
     medium: Medium
+    closure: Closure | None = None

@@ -98,7 +98,7 @@ def test_pinacolyl_alcohol_in_phosphoric_acid_moves_a_methyl() -> None:
 
 
 def test_neopentyl_rearranges_where_it_ionises_at_all() -> None:
-    # RE04 Dostrovsky & Hughes 1946 (tert-pentyl products), RE05 (2-methylbut-2-ene from the alcohol in hot acid).
+    # RE04 Dostrovsky & Hughes 1946 (tert-pentyl products), the alcohol in hot acid: common practice.
     bromide = compete(a_step("CC(C)(C)CBr", "Br", "solvent", "aq EtOH", 125.0))
     assert bromide.fates[0][0] is Fate.REARRANGED
     alcohol = compete(a_step("CC(C)(C)CO", "OH2+", "", "H2O", 120.0, **ACID))
@@ -127,7 +127,7 @@ def test_chlorobutane_with_aluminium_chloride_moves_a_hydride() -> None:
     ],
 )
 def test_bridgehead_halides_get_a_reason_and_no_number(smiles: str, group: str, word: str) -> None:
-    # RE11: Bartlett & Knox 1939, nothing happens; RR20 to RR25.
+    # RE11: Bartlett & Knox 1939, nothing happens; RR23 to RR25.
     result = compete(a_step(smiles, group, "NaOEt", "EtOH", 80.0))
     assert not result.fates
     assert word in result.no_number
@@ -210,7 +210,7 @@ def test_cation_order() -> None:
 
 
 def test_every_fate_and_channel_adds_up_and_says_why() -> None:
-    result = answer("SE37")
+    result = answer("ZH01")
     assert sum(s.mean for _, s in result.fates) == pytest.approx(1)
     assert sum(c.share.mean for c in result.channels) == pytest.approx(1)
     assert sum(a.of_alkenes.mean for a in result.alkenes) == pytest.approx(1)

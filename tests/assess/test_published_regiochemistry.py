@@ -32,7 +32,6 @@ PARTS: dict[str, list[tuple[tuple[str, ...], float]]] = {
     "ZH23": [(("C=CCC",), 74)],
     "ZH28": [(("CC(C)[C@H]1C=C[C@H](C)CC1",), 100)],
     "ZH29": [(("CC(C)C1=CC[C@H](C)CC1",), 75), (("CC(C)[C@H]1C=C[C@H](C)CC1",), 25)],
-    "SE37": [(("CCC=C(C)C",), 80), (("C/C=C/C(C)C", "C/C=C\\C(C)C"), 11), (("CCCC(C)=C",), 9)],
     "SE38": [(("CC(C)=Cc1ccccc1",), 60), (("C=C(C)Cc1ccccc1",), 40)],
 }
 """Row to (alkenes, % among the alkenes); the figures repeat the rows, SE38 rescaled to its alkenes."""

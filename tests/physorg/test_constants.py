@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import math
+import re
 from pathlib import Path
 
 import pytest
@@ -23,6 +24,16 @@ def test_every_row_says_where_it_is_from(constant) -> None:  # type: ignore[no-u
     assert constant.obtained in OBTAINED
     assert constant.sigma >= 0
     assert math.isfinite(constant.value)
+
+
+SECOND_HAND = re.compile(r"teaching|answer page|q&a|same page|read at |\b\w+\.(com|net|de|online|ai)\b", re.IGNORECASE)
+
+
+def test_every_source_is_a_print_and_no_page_about_one() -> None:
+    said = [(n, r["source"] + " " + r["note"]) for n, r in ROWS.items()]
+    said += [(f"{c.quantity}/{c.key}", c.source) for c in load_constants().values()]
+    assert [name for name, words in said if SECOND_HAND.search(words)] == []
+    assert all(r["source"].strip() for r in ROWS.values())
 
 
 def test_rows_named_as_used_exist() -> None:
