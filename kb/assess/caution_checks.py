@@ -28,8 +28,9 @@ ATM_BAR = 1.01325
 LOW_BOILING_C = 42.0
 """Boiling point at or below which a solvent is called low-boiling [degC]: a judgement."""
 
-NEAR_BOILING_K = 15.0
-"""How far below its boiling point a low-boiling solvent is said to be lost [K]: a judgement."""
+NEAR_BOILING_K = 10.0
+"""How far below its boiling point a low-boiling solvent is said to be lost [K]: a judgement; dichloromethane at room
+temperature is not meant."""
 
 LARGE_MMOL = 100.0
 """Scale from which a low-boiling solvent is told of whatever the temperature [mmol]: a judgement."""

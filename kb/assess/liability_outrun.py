@@ -1,9 +1,10 @@
-"""Whether what is meant to happen outruns what a rule warns of: halide from alcohol and HX, rings that close.
+"""Whether what is meant to happen outruns what a rule warns of: halide from alcohol and HX, a ring, an addition.
 
-It owns the two ways (`WAYS` of `liability_rule`) that a rule's `yields_to` may name. An alkene is no worry where
+It owns the ways (`WAYS` of `liability_rule`) that a rule's `yields_to` may name. An alkene is no worry where
 a hydrogen halide is meant to give the halide: halide and alkene are in balance there and the halide is what is
 isolated. Nor is it where a hydroxyl or amine of the same molecule closes a ring of three, five or six atoms: that
-is faster than loss of HX. It weighs no conditions beyond these.
+is faster than loss of HX. Nor is it where an amine or thiol adds to the acceptor that elimination leaves, since
+that is the stated product; a drawn centre is another matter. It weighs no conditions beyond these.
 
 Source: Whitmore, Organic Chemistry, 2nd ed., 1951 (halides from alcohols and HX) and Winstein and Lucas, J. Am.
 Chem. Soc. 1939, 61, 1576 (halohydrins), both from memory.
@@ -53,6 +54,8 @@ def is_outrun(
         return False
     if "halide" in rule.yields_to and _gives_halide(fragment.mol, centre, profile, product):
         return True
+    if "conjugate-addition" in rule.yields_to and _adds_again(centre, reading):
+        return True
     return "ring-closure" in rule.yields_to and _closes_ring(fragment.mol, centre, reading, product)
 
 
@@ -66,6 +69,12 @@ def _gives_halide(mol: Chem.Mol, centre: Centre, profile: ConditionProfile, prod
         return (profile.nucleophile_class or "").startswith("hydrogen_")
     halide, _ = compile_motif(_HALIDE)
     return len(product.GetSubstructMatches(halide)) > len(mol.GetSubstructMatches(halide))
+
+
+def _adds_again(centre: Centre, reading: Reading) -> bool:
+    if reading.nucleophile is None or reading.fate is not Fate.SUBSTITUTION or centre.is_stereocentre:
+        return False
+    return any(word in reading.nucleophile.nucleophile_class for word in ("amine", "thiol"))
 
 
 def _closes_ring(mol: Chem.Mol, centre: Centre, reading: Reading, product: Chem.Mol | None) -> bool:

@@ -28,9 +28,9 @@ SIDES = ("centre", "nucleophile", "bystander", "anywhere", "mixture")
 """Where the motif must lie: at the reading's centre, at its nucleophile, elsewhere than at the centre, anywhere
 at all, or nowhere (no motif)."""
 
-WAYS = ("halide", "ring-closure")
+WAYS = ("halide", "ring-closure", "conjugate-addition")
 """What a rule can yield to (`liability_outrun`): an alcohol and a hydrogen halide to the halide; a
-neighbouring hydroxyl or amine that closes a ring."""
+neighbouring hydroxyl or amine that closes a ring; an amine or thiol that adds to what elimination leaves."""
 
 MAX_MATCHES = 400
 """Most matches that are looked at in one molecule."""

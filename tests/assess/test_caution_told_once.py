@@ -180,7 +180,7 @@ def test_every_caution_that_a_rule_names_is_in_the_table() -> None:
     ("solvent", "temperature", "scale", "is_told"),
     [
         ("DCM", "0C", None, False),
-        ("DCM", "20C", None, False),
+        ("DCM", "25C", None, False),
         ("DCM", "30C", None, True),
         ("DCM", "40C", None, True),
         ("DCM", "0C", "500 mmol", True),

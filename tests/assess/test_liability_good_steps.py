@@ -127,6 +127,20 @@ def test_loss_of_hx_is_no_worry_where_a_neighbour_closes_a_fast_ring(step: dict[
 
 
 @pytest.mark.parametrize(
+    ("scheme", "is_told"),
+    [
+        ("CCOC(=O)CCBr.C1CCNC1>>CCOC(=O)CCN1CCCC1", False),
+        ("CCOC(=O)CCBr.C1CCNC1", True),  # no product stated
+        ("CCOC(=O)C[C@H](C)Br.C1CCNC1>>CCOC(=O)C[C@@H](C)N1CCCC1", True),  # the configuration would be lost
+        ("CCOC(=O)CCBr.CC(=O)O>>CCOC(=O)CCOC(C)=O", True),
+    ],
+)
+def test_elimination_that_the_amine_undoes_is_no_worry(scheme: str, is_told: bool) -> None:
+    found = {f.rule_id for f in findings_of(a_step(scheme, bases="K2CO3", solvents="MeCN"))}
+    assert ("beta-lg-acceptor-e1cb" in found) is is_told
+
+
+@pytest.mark.parametrize(
     ("scheme", "rule", "is_told"),
     [
         ("BrC1CC2CCC1C2", "secondary-cation-hydride-shift", False),  # norbornyl
