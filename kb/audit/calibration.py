@@ -9,6 +9,7 @@ run.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Sequence
 from dataclasses import asdict, dataclass
 from itertools import pairwise
@@ -21,6 +22,7 @@ from kb.assess.left_out import LeftOut, expect_left_out
 from kb.assess.record_view import RecordView
 from kb.assess.table import FATES
 from kb.progress import Progress, Silent
+from kb.record.showing import ShowsItself
 
 MOST_RUNS = 1200
 """Runs that are measured at most."""
@@ -74,7 +76,7 @@ class ReliabilityRow:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Calibration:
+class Calibration(ShowsItself):
     """How well a book expects itself.
 
     Attributes:
@@ -107,7 +109,9 @@ class Calibration:
         """Return plain JSON values."""
         return asdict(self) | {
             "reliability": [asdict(row) for row in self.reliability],
-            "by_support": [list(row) for row in self.by_support],
+            "by_support": [  # JSON knows no infinity: an open end is null
+                [low, high if math.isfinite(high) else None, runs, error] for low, high, runs, error in self.by_support
+            ],
         }
 
     @property

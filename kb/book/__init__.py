@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     from kb.book.unrecorded import check_unrecorded
     from kb.book.whole import (
         adopt_proposal,
+        calibrate_book,
         find_recurring_failures,
         measure_book_coverage,
         replay_book,
@@ -41,6 +42,7 @@ if TYPE_CHECKING:
 
 _HOMES = {
     "adopt_proposal": "whole",
+    "calibrate_book": "whole",
     "find_recurring_failures": "whole",
     "measure_book_coverage": "whole",
     "replay_book": "whole",
@@ -81,6 +83,7 @@ __all__ = [
     "SplitAnswer",
     "adopt_proposal",
     "build_demo",
+    "calibrate_book",
     "check_scheme",
     "check_unrecorded",
     "conditions_from_words",

@@ -18,7 +18,7 @@ if TYPE_CHECKING:
     from kb.progress import Progress
     from kb.record.plan import Plan
 
-AUDITS = ("recurring", "replay", "coverage")
+AUDITS = ("recurring", "replay", "coverage", "calibration")
 
 
 def teach_notebooks() -> None:
@@ -58,7 +58,9 @@ def thing_named(book: AskedBook, name: str, progress: Progress | None = None) ->
             return whole.find_recurring_failures(book, progress=progress)
         if name == "replay":
             return whole.replay_book(book, progress=progress)
-        return whole.measure_book_coverage(book, progress=progress)
+        if name == "coverage":
+            return whole.measure_book_coverage(book, progress=progress)
+        return whole.calibrate_book(book, progress=progress)
     if name.lower().endswith((".toml", ".json")):
         return _from_file(book, Path(name))
     return book.get(name)

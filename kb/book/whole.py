@@ -22,6 +22,7 @@ from kb.progress import Progress, Silent
 from kb.record.plan import Plan
 
 if TYPE_CHECKING:
+    from kb.audit.calibration import Calibration
     from kb.audit.coverage import Coverage
     from kb.audit.hindsight import DatedRecord
     from kb.audit.recurrence_values import Circumstance, Proposal, Recurrence
@@ -110,6 +111,25 @@ def replay_book(
             if progress.cancelled():
                 break
     return report_replay(found, dated.undated, stopped=len(found) < len(wanted))
+
+
+def calibrate_book(book: AskedBook, with_substrate: bool = False, progress: Progress | None = None) -> Calibration:
+    """Measure how well the estimates of a book hold, each run expected from the others; see `kb.audit.calibration`.
+
+    Args:
+        with_substrate: leave out every run of the substrate with the run.
+    """
+    tame_rdkit()
+    import numpy as np
+
+    from kb.audit.calibration import calibrate
+    from kb.audit.likeness import SubstrateLikeness
+
+    view = book.view()
+    likeness = SubstrateLikeness(view, np.arange(len(view.table)))
+    return calibrate(
+        view, lambda substrate, codes: likeness.to_first(substrate, len(codes)), progress, with_substrate=with_substrate
+    )
 
 
 def _dated(book: AskedBook) -> DatedRecord:

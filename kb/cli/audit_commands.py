@@ -1,4 +1,4 @@
-"""`audit recurring`, `audit replay`, `audit coverage`: the record as a whole."""
+"""`audit recurring`, `audit replay`, `audit coverage`, `audit calibration`: the record as a whole."""
 
 from __future__ import annotations
 
@@ -23,10 +23,11 @@ MarkdownFlag = Annotated[File, typer.Option("--md", metavar="FILE", help="Also w
 
 def register(app: typer.Typer) -> None:
     """Add the group of commands of this file."""
-    audits = typer.Typer(rich_markup_mode=None, help="The record as a whole: failures, hindsight, gaps.")
+    audits = typer.Typer(rich_markup_mode=None, help="The record as a whole: failures, hindsight, gaps, calibration.")
     audits.command("recurring")(recurring)
     audits.command("replay")(replay)
     audits.command("coverage")(coverage)
+    audits.command("calibration")(calibration)
     app.add_typer(audits, name="audit")
 
 
@@ -106,6 +107,25 @@ def coverage(
         progress.check_stopped()
         write_pages(session, book, found, html, md)
     session.answer(found.as_dict(), render_coverage(found, verbose=session.verbose))
+
+
+def calibration(
+    html: HtmlFlag = None,
+    md: MarkdownFlag = None,
+    with_substrate: Annotated[
+        bool, typer.Option("--new-molecules", help="Leave out every run of a substrate: for molecules nobody has run.")
+    ] = False,
+) -> int:
+    """How far the estimates of this book can be trusted: each run expected from the others."""
+    from kb.book import calibrate_book
+    from kb.cli.render_audit import render_calibration
+
+    session = current_session()
+    with session.opened(read_only=True) as book, session.progress("Expecting") as progress:
+        found = calibrate_book(book, with_substrate, progress)
+        write_pages(session, book, found, html, md)
+    session.answer(found.as_dict(), render_calibration(found))
+    return exit_codes.INTERRUPTED if found.stopped else exit_codes.DONE
 
 
 def write_pages(session: Session, book: Book, thing: Any, html: Path | None, md: Path | None) -> None:

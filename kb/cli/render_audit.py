@@ -12,6 +12,7 @@ from kb.cli.render import bar, counted, heading, severity_word, table, wrapped
 from kb.vocabulary import Severity
 
 if TYPE_CHECKING:
+    from kb.audit.calibration import Calibration
     from kb.audit.coverage import Coverage
     from kb.audit.recurrence_values import Cluster, Recurrence
     from kb.audit.replay_report import ReplayReport
@@ -142,6 +143,32 @@ def render_coverage(coverage: Coverage, *, verbose: bool = False) -> str:
     ]
     header = ("carbon", "leaving", "reagent", "solvent", "runs", "best", "mean")
     return "\n".join([*lines, *table(rows, header, (10, 12, 16, 13, 4, 5, 7))])
+
+
+def render_calibration(found: Calibration) -> str:
+    """Return how well the estimates hold."""
+    lines = [line for words in found.words for line in wrapped(words)]
+    if found.reliability:
+        lines += ["", heading("Main share: expected against found")]
+        rows = [
+            (
+                f"{100 * r.low:.0f} to {100 * r.high:.0f} %",
+                str(r.runs),
+                f"{100 * r.expected:.0f} %",
+                f"{100 * r.measured:.0f} %",
+                f"{100 * r.coverage:.0f} %",
+            )
+            for r in found.reliability
+        ]
+        lines += table(rows, ("expected", "runs", "mean", "found", "inside their interval"), (12, 5, 6, 6, 22))
+    if found.by_support:
+        lines += ["", heading("Error by effective precedents")]
+        support = [
+            (f"{low:g} to {high:g}" if high < float("inf") else f"above {low:g}", str(n), f"{error:.1f}")
+            for low, high, n, error in found.by_support
+        ]
+        lines += table(support, ("precedents", "runs", "points"), (14, 5, 8))
+    return "\n".join(lines)
 
 
 def render_route(ledger: Ledger, lead: str, *, verbose: bool = False) -> str:

@@ -20,7 +20,7 @@ def report(
         str,
         typer.Argument(
             metavar="WHAT",
-            help="A run's code; recurring, replay or coverage; a route or plan file (.toml, .json).",
+            help="A run's code; recurring, replay, coverage or calibration; a route or plan file (.toml, .json).",
         ),
     ],
     html: HtmlFlag = None,

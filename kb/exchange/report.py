@@ -11,13 +11,15 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import Any
 
+from kb.audit.calibration import Calibration
 from kb.audit.coverage import Coverage
 from kb.audit.recurrence_values import Recurrence
 from kb.audit.replay_report import ReplayReport
 from kb.chem.facts import Reading
 from kb.exchange.report_assessment import assessment_page
-from kb.exchange.report_audit import coverage_page, recurrence_page, replay_page
+from kb.exchange.report_audit import coverage_page, recurrence_page
 from kb.exchange.report_blocks import Page
+from kb.exchange.report_hindsight import calibration_page, replay_page
 from kb.exchange.report_html import page_fragment, page_html
 from kb.exchange.report_markdown import page_markdown
 from kb.exchange.report_route import route_page
@@ -32,6 +34,7 @@ _PAGES: dict[type, Callable[[Any, str], Page]] = {
     Recurrence: recurrence_page,
     ReplayReport: replay_page,
     Coverage: coverage_page,
+    Calibration: calibration_page,
     Ledger: route_page,
 }
 

@@ -88,8 +88,9 @@ def curve(
     x_name: str,
     y_name: str,
     marked: tuple[float, float] | None = None,
+    diagonal: bool = False,
 ) -> Figure:
-    """Draw y over x, both 0..1 and shown in percent; `marked` is one point to be ringed."""
+    """Draw y over x, both 0..1 and shown in percent; `marked` is one point to be ringed, `diagonal` draws y = x."""
     left, right, top, base = 52, _WIDE - 16, 12, 230
     width, height = right - left, base - top
 
@@ -102,6 +103,8 @@ def curve(
         parts.append(_text(left - 6, base - height * share + 4, f"{100 * share:.0f} %", "end"))
     parts.append(_text(left + width / 2, base + 32, x_name, "middle"))
     parts.append(_text(left + 8, top + 10, y_name, "start"))
+    if diagonal:
+        parts.append(f'<path class="faint" d="M{place((0, 0))}L{place((1, 1))}"/>')
     ordered = sorted(points)
     if ordered:
         parts.append(f'<path class="line" d="M{"L".join(place(p) for p in ordered)}"/>')

@@ -24,6 +24,13 @@ yield = "60 (50 to 70)"
 """
 
 
+def test_calibration_says_how_far_to_trust_the_book(demo_path: Path) -> None:
+    said = ask("audit", "calibration", "--json", book=demo_path).json
+    assert said["asked"] > 300 and said["main_share"]["error"] < said["main_share"]["all_runs_error"]
+    text = ask("audit", "calibration", book=demo_path)
+    assert "expected from the book without it" in " ".join(text.out.split()) and widest(text.out) <= 80
+
+
 @pytest.fixture
 def route_file(tmp_path: Path) -> Path:
     path = tmp_path / "route.toml"

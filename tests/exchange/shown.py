@@ -8,7 +8,7 @@ from typing import Any
 
 from kb.book import Book, demo_plan
 from kb.book.routes import resolve_route
-from kb.book.whole import find_recurring_failures, measure_book_coverage, replay_book
+from kb.book.whole import calibrate_book, find_recurring_failures, measure_book_coverage, replay_book
 from kb.record.component import Component
 from kb.record.outcome import Failure, Outcome, ProductSeen
 from kb.record.run import Attachment, Run
@@ -42,6 +42,7 @@ def things_of(book: Book) -> dict[str, object]:
         "assessment": book.check(demo_plan()),
         "recurring": find_recurring_failures(book),
         "coverage": measure_book_coverage(book),
+        "calibration": calibrate_book(book),
         "replay": replay_book(book, since=dt.date(2025, 6, 1)),
         "route": reckon(resolve_route(book, draft_route(ROUTE))),
         "hostile": hostile_run(),

@@ -34,7 +34,7 @@ def things(book: Book) -> dict[str, object]:
     return things_of(book)
 
 
-KINDS = ("run", "assessment", "recurring", "coverage", "replay", "route", "hostile")
+KINDS = ("run", "assessment", "recurring", "coverage", "calibration", "replay", "route", "hostile")
 
 
 @pytest.mark.parametrize("kind", KINDS)
