@@ -60,6 +60,22 @@ def iter_shifts(
                 yield origin, mover
 
 
+def ring_breaks(graph: Molgraph, centre: int, leaving: int | None) -> Iterator[tuple[int, int]]:
+    """Yield (near, far) for the bonds of a cyclopropane beside a cation that open to a homoallyl cation.
+
+    Source: common textbook knowledge; cyclopropylcarbinyl, cyclobutyl and homoallyl products come together.
+    """
+    rings = [r for r in graph.mol.GetRingInfo().AtomRings() if len(r) == 3]
+    for near, code in graph.neighbours[centre].items():
+        if code != 1 or near == leaving or not graph.is_sp3_carbon(near):
+            continue
+        for ring in rings:
+            if near in ring and centre not in ring and all(graph.is_sp3_carbon(a) for a in ring):
+                for far in ring:
+                    if far != near:
+                        yield near, far
+
+
 def _in_small_ring(graph: Molgraph, atom: int) -> bool:
     return any(atom in ring and len(ring) <= 4 for ring in graph.mol.GetRingInfo().AtomRings())
 

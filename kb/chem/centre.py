@@ -84,6 +84,11 @@ class LeavingSite:
         return _RANK[self.group] >= GOOD_RANK
 
 
+def is_haloform_carbon(graph: Molgraph, centre: int) -> bool:
+    """Return whether a carbon carries three halogens or more: displacement fails there and a base makes a carbene."""
+    return sum(graph.elements[n] in HALOGENS for n in graph.neighbours[centre]) >= 3
+
+
 def find_leaving_sites(graph: Molgraph) -> tuple[LeavingSite, ...]:
     """Return every leaving group of a fragment, best first; empty when there is none."""
     known = graph.memo.get("leaving")
@@ -139,8 +144,12 @@ def find_leaving_group(graph: Molgraph, centre: int, leaving: int) -> LeavingGro
                 return LeavingGroup.DIAZONIUM if any(bonds[n] == 3 for n in others) else None
             if sum(graph.elements[n] == 8 for n in others) == 2:
                 return LeavingGroup.NITRO
-            if any(bonds[n] == 3 for n in others) or any(graph.charges[n] < 0 for n in others):
+            if any(bonds[n] == 3 for n in others):
                 return None
+            if any(graph.charges[n] < 0 for n in others):
+                # An amine oxide parts from carbon as hydroxylamine when it eliminates (Cope); ylides do not part so.
+                is_oxide = any(graph.elements[n] == 8 for n in others) and not graph.has_multiple_bond(leaving)
+                return LeavingGroup.OTHER if is_oxide and not graph.aromatic[leaving] else None
             # A protonated amine gives up its proton long before it leaves.
             return LeavingGroup.OTHER if graph.hydrogens[leaving] else LeavingGroup.AMMONIUM
         return None if charge or graph.has_multiple_bond(leaving) else LeavingGroup.OTHER
@@ -151,6 +160,20 @@ def find_leaving_group(graph: Molgraph, centre: int, leaving: int) -> LeavingGro
     if element == 15 and charge > 0:
         return LeavingGroup.OTHER
     return LeavingGroup.OTHER if element in (34, 52) else None
+
+
+def name_group(graph: Molgraph, site: LeavingSite) -> str:
+    """Return a leaving group's name for a sentence, also where the vocabulary only says `other`."""
+    if site.group is not LeavingGroup.OTHER:
+        return str(site.group)
+    element, bonds = graph.elements[site.leaving], graph.neighbours[site.leaving]
+    oxygens = sum(graph.elements[n] == 8 for n in bonds)
+    if element == 7:
+        return "hydroxylamine" if oxygens else "amine"
+    if element == 16:
+        return ("thiolate", "sulfenate", "sulfinate", "sulfite")[min(oxygens, 3)]
+    names = {8: "oxygen leaving group", 15: "phosphine", 34: "selenolate", 52: "tellurolate"}
+    return names.get(element, "hypervalent halogen")
 
 
 def _oxygen_group(graph: Molgraph, oxygen: int, others: list[int]) -> LeavingGroup | None:

@@ -16,6 +16,7 @@ from rdkit.Chem import rdFMCS
 
 from kb.chem.centre import LeavingSite, find_leaving_sites
 from kb.chem.molgraph import Molgraph
+from kb.chem.nucleophile_site import METALS
 from kb.chem.skeleton import element_code, refine
 
 TIME_LIMIT_S = 1
@@ -28,6 +29,9 @@ LARGEST_BY_BRANCH = 150
 """Heavy atoms of the largest product whose branches are compared one by one."""
 
 _LEAST_SHARED = 0.6
+
+_INSERTED = METALS - {5}
+"""Elements whose bond to carbon says that a metal went in; a boryl group may well come as a nucleophile."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,6 +52,8 @@ class Comparison:
 def compare(graphs: list[Molgraph], product: Molgraph) -> Comparison:
     """Return which leaving group was replaced, going by substrate and product alone."""
     branches = list(_iter_branches(product)) if len(product) <= LARGEST_BY_BRANCH else []
+    if any(True for _ in _iter_metal_bonds(product)):
+        return Comparison(None, None, "The stated product has a bond from carbon to a metal; no displacement makes it.")
     exact = [
         (part, site)
         for part, graph in enumerate(graphs)
@@ -70,12 +76,42 @@ def _iter_branches(product: Molgraph) -> Iterator[tuple[int, frozenset[int]]]:
                     yield carbon, frozenset(side)
 
 
+def _iter_metal_bonds(product: Molgraph) -> Iterator[tuple[int, int]]:
+    """Yield (carbon, metal) for every bond between the two."""
+    for carbon, element in enumerate(product.elements):
+        for metal in product.neighbours[carbon] if element == 6 else ():
+            if product.elements[metal] in _INSERTED:
+                yield carbon, metal
+
+
+def find_metal_insertion(graphs: list[Molgraph], product: Molgraph) -> bool:
+    """Return whether the product is a fragment with a metal where its leaving group was: Grignard and lithium reagents.
+
+    The carbon takes electrons up instead of giving a place to a pair, so this is no displacement, whatever its class.
+    """
+    branches = []
+    for carbon, metal in _iter_metal_bonds(product):
+        side = product.side_of(metal, carbon)
+        if side is not None:
+            branches.append((carbon, frozenset(side)))
+    return bool(branches) and any(
+        site.departs is not None and _is_replaced(graph, site, product, branches, least=1)
+        for graph in graphs
+        for site in find_leaving_sites(graph)
+    )
+
+
 def _is_replaced(
-    graph: Molgraph, site: LeavingSite, product: Molgraph, branches: list[tuple[int, frozenset[int]]]
+    graph: Molgraph,
+    site: LeavingSite,
+    product: Molgraph,
+    branches: list[tuple[int, frozenset[int]]],
+    *,
+    least: int = 3,
 ) -> bool:
     """Return whether the product is the substrate with another branch in place of the leaving group."""
     kept = [a for a in range(len(graph)) if a not in (site.departs or ())]
-    if len(kept) < 3 or len(kept) >= len(product):
+    if len(kept) < least or len(kept) >= len(product):
         return False
     wanted = sum(element_code(graph.elements[a]) for a in kept)
     hydrogens = sum(graph.hydrogens[a] for a in kept)

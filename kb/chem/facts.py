@@ -111,6 +111,9 @@ class Reading:
         possible: everything that was enumerated, the stated product's entry first when matched.
         reason: plain words: why this reading, or why none.
         substrate: canonical SMILES of the component that holds the principal centre; None when unresolved.
+        stereo: what became of a configuration drawn at the principal centre on both sides: `inversion`, `retention`,
+            `scrambled` (both epimers stated), `impossible` (no displacement can do it from there); empty = not drawn,
+            or nothing can be said.
     """
 
     scheme: str
@@ -122,6 +125,7 @@ class Reading:
     possible: tuple[PossibleFate, ...] = ()
     reason: str = ""
     substrate: str | None = None
+    stereo: str = ""
 
     @property
     def centre(self) -> Centre | None:
@@ -140,4 +144,5 @@ class Reading:
             "possible": [p.as_dict() for p in self.possible],
             "reason": self.reason,
             "substrate": self.substrate,
+            "stereo": self.stereo,
         }

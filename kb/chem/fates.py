@@ -8,6 +8,7 @@ atoms. The order is by kind, not by likelihood. Likelihood is for `kb.physorg` a
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Sequence
+from dataclasses import replace
 from itertools import chain, islice
 
 from kb.chem.centre import LeavingSite, find_leaving_sites
@@ -21,9 +22,9 @@ from kb.chem.fates_displacement import (
 )
 from kb.chem.fates_elimination import can_eliminate, iter_eliminations
 from kb.chem.fates_loss import iter_losses
-from kb.chem.fates_shifts import iter_shifted, iter_transposed
+from kb.chem.fates_shifts import iter_ring_openings, iter_shifted, iter_transposed
 from kb.chem.molgraph import Molgraph
-from kb.chem.nucleophile import NucleophileSite, find_nucleophile_sites
+from kb.chem.nucleophile import NucleophileSite, find_nucleophile_sites, settle_word
 from kb.chem.promoters import Promoters
 
 MOST = 24
@@ -39,7 +40,11 @@ _SOLVENT_WORDS = ("water", "alcohol", "amide", "sulfonate", "nitrile", "carboxyl
 
 
 def choose_attackers(
-    graphs: Sequence[Molgraph], reactants: int, substrate: int, leading: tuple[int, int] | None = None
+    graphs: Sequence[Molgraph],
+    reactants: int,
+    substrate: int,
+    leading: tuple[int, int] | None = None,
+    promoters: Promoters | None = None,
 ) -> list[Attacker]:
     """Return the nucleophilic atoms worth drawing, the leading one first.
 
@@ -50,6 +55,7 @@ def choose_attackers(
         reactants: how many of them are reactants; the rest are agents.
         substrate: part number of the substrate, which is no attacker here.
         leading: (part, atom) of the nucleophile that was matched; None = not known.
+        promoters: what tells an acid from its anion; None = the words of the anions.
     """
     ranked: list[tuple[int, int, int, NucleophileSite]] = []
     for part, graph in enumerate(graphs):
@@ -71,6 +77,8 @@ def choose_attackers(
         plain = standing < -20
         if plain and len(chosen) >= 2:
             break
+        if promoters is not None:
+            site = replace(site, word=settle_word(graphs[-part], site.atom, site.word, promoters))
         chosen.append(Attacker(graphs[-part], site))
     return chosen
 
@@ -111,13 +119,14 @@ def list_fates(
         sources.append(islice(iter_transposed(graph, site, attackers[:2]), 4))
         if not promoters.strong_base:
             sources.append(islice(iter_shifted(graph, site, attackers[:1]), 6))
+            sources.append(islice(iter_ring_openings(graph, site, attackers[:1]), 4))
     elif multiple_bonds(graph):
         halogens = [o for o in others if len(o) == 2 and set(o.elements) <= {17, 35, 53}]
         sources.append(islice(iter_additions(graph, attackers[:2], with_proton=promoters.is_acidic), 12))
         if halogens:
             has_water = any(o.smiles == "O" for o in others)
             sources.append(islice(iter_halogenations(graph, halogens, with_water=has_water), 4))
-    sources.append(islice(iter_losses(graph, promoters), 4))
+    sources.append(islice(iter_losses(graph, promoters, site), 4))
     return _distinct(chain.from_iterable(sources), graph.smiles)
 
 

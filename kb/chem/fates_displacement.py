@@ -12,8 +12,7 @@ from dataclasses import dataclass
 
 from rdkit import Chem
 
-from kb.chem.carbon import has_drawn_configuration
-from kb.chem.centre import LeavingSite, find_leaving_sites
+from kb.chem.centre import LeavingSite, find_leaving_sites, is_haloform_carbon, name_group
 from kb.chem.facts import PossibleFate
 from kb.chem.molgraph import Molgraph
 from kb.chem.nucleophile import NucleophileSite, find_nucleophile_sites
@@ -21,7 +20,12 @@ from kb.chem.sketch import Configuration, Sketch
 from kb.chem.transfer import find_transfer_sites
 from kb.vocabulary import CarbonClass, Fate, LeavingGroup
 
-_CLOSED = (CarbonClass.BRIDGEHEAD, CarbonClass.VINYL, CarbonClass.ARYL)
+CLOSED = (CarbonClass.BRIDGEHEAD, CarbonClass.VINYL, CarbonClass.ARYL)
+ACYL_SEEKERS = frozenset(
+    {"hydroxide", "alkoxide", "grignard", "alkyllithium", "organometallic", "organoaluminium", "acetylide"}
+)
+"""Nucleophiles that meet an open-chain ester at its carbonyl carbon, never at the carbon of its alcohol."""
+
 _RING_SIZES = (3, 5, 6, 7)
 _LEAST_INNER_RANK = 34
 
@@ -43,21 +47,22 @@ def iter_displacements(
     graph: Molgraph, site: LeavingSite, attackers: Sequence[Attacker]
 ) -> Iterator[PossibleFate]:
     """Yield the substitution products of one leaving group."""
-    if site.carbon_class in _CLOSED:
+    if site.carbon_class in CLOSED or is_haloform_carbon(graph, site.centre):
         return
     for attacker in attackers:
+        if site.group is LeavingGroup.CARBOXYLATE and site.departs and attacker.site.word in ACYL_SEEKERS:
+            continue
         drawn = draw_displacement(graph, site, attacker, usual_configuration(graph, site))
         if drawn is not None:
-            yield PossibleFate(
-                fate=Fate.SUBSTITUTION, product=drawn, note=f"displacement of {site.group} by {attacker.word}"
-            )
+            note = f"displacement of {name_group(graph, site)} by {attacker.word}"
+            yield PossibleFate(fate=Fate.SUBSTITUTION, product=drawn, note=note)
     for inner in find_nucleophile_sites(graph):
         size = ring_size(graph, site, inner)
         if inner.rank < _LEAST_INNER_RANK or inner.gone is not None or size not in _RING_SIZES:
             continue
         if inner.word == "acetylide" or not site.leaves_unaided:
             continue
-        drawn = _draw_closure(graph, site, inner)
+        drawn = draw_closure(graph, site, inner, usual_configuration(graph, site))
         if drawn is not None:
             yield PossibleFate(
                 fate=Fate.SUBSTITUTION,
@@ -74,7 +79,7 @@ def iter_double_displacements(graph: Molgraph, site: LeavingSite, attacker: Atta
         if second.centre == site.centre or not second.leaves_unaided or not second.departs:
             continue
         path = Chem.GetShortestPath(graph.mol, site.centre, second.centre)
-        if second.carbon_class in _CLOSED or len(path) + 1 not in _RING_SIZES or site.leaving in path:
+        if second.carbon_class in CLOSED or len(path) + 1 not in _RING_SIZES or site.leaving in path:
             continue
         sketch = Sketch([graph, attacker.graph])
         for end in (site, second):
@@ -174,20 +179,12 @@ def ring_size(graph: Molgraph, site: LeavingSite, inner: NucleophileSite) -> int
     return None
 
 
-def _draw_closure(graph: Molgraph, site: LeavingSite, inner: NucleophileSite) -> str | None:
+def draw_closure(
+    graph: Molgraph, site: LeavingSite, inner: NucleophileSite, wanted: Configuration
+) -> str | None:
+    """Return the SMILES of the ring that an atom of the molecule itself closes; None when it cannot be drawn."""
     sketch = Sketch([graph])
     swaps = depart(sketch, site)
     sketch.join(site.centre, inner.atom)
-    sketch.set_configuration(site.centre, swaps, usual_configuration(graph, site))
+    sketch.set_configuration(site.centre, swaps, wanted)
     return sketch.finish(site.centre)
-
-
-def describe_configuration(graph: Molgraph, site: LeavingSite, attacker: Attacker, product: str) -> str:
-    """Return how a stated product compares with the substrate at the centre; empty where nothing can be said."""
-    if not has_drawn_configuration(graph, site.centre) or site.carbon_class in _CLOSED:
-        return ""
-    if draw_displacement(graph, site, attacker, "inverted") == product:
-        return "with inversion"
-    if draw_displacement(graph, site, attacker, "retained") == product:
-        return "with retention: no single displacement does that"
-    return ""

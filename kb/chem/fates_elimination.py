@@ -10,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from kb.chem.carbon import is_bridgehead
-from kb.chem.centre import LeavingSite
+from kb.chem.centre import LeavingSite, name_group
 from kb.chem.facts import PossibleFate
 from kb.chem.fates_displacement import depart
 from kb.chem.molgraph import Molgraph
@@ -32,12 +32,20 @@ _LOST_AS = {
     LeavingGroup.TRIFLATE: "triflic acid",
     LeavingGroup.SULFONATE: "the sulfonic acid",
     LeavingGroup.CARBOXYLATE: "the carboxylic acid",
+    LeavingGroup.ALKOXIDE: "the alcohol",
+    LeavingGroup.SULFATE: "the sulfuric acid part",
+    LeavingGroup.PHOSPHATE: "the phosphoric acid part",
+    LeavingGroup.NITRO: "nitrous acid",
 }
+_LOST_OTHER = {"thiolate": "the thiol", "sulfenate": "the sulfenic acid", "sulfinate": "the sulfinic acid",
+               "sulfite": "the sulfurous acid part", "selenolate": "the selenol", "tellurolate": "the tellurol",
+               "oxygen leaving group": "the oxygen leaving group as its acid"}  # fmt: skip
 
 
 def iter_eliminations(graph: Molgraph, site: LeavingSite) -> Iterator[PossibleFate]:
     """Yield the alkenes that one leaving group can give, more substituted ones first."""
-    what = _LOST_AS.get(site.group, f"the {site.group} as acid")
+    name = name_group(graph, site)
+    what = _LOST_AS.get(site.group) or _LOST_OTHER.get(name, f"the {name}")
     found = []
     for beta in beta_carbons(graph, site.centre, site.leaving):
         sketch = Sketch([graph])

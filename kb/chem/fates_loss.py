@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+from kb.chem.centre import LeavingSite
 from kb.chem.facts import PossibleFate
 from kb.chem.labile import LabileGroup, comes_off, find_labile_groups
 from kb.chem.molgraph import Molgraph
@@ -12,9 +13,19 @@ from kb.chem.sketch import Sketch
 from kb.vocabulary import Fate
 
 
-def iter_losses(graph: Molgraph, promoters: Promoters) -> Iterator[PossibleFate]:
-    """Yield the molecule without each labile group that what is in the flask could take off."""
+def iter_losses(
+    graph: Molgraph, promoters: Promoters, besides: LeavingSite | None = None
+) -> Iterator[PossibleFate]:
+    """Yield the molecule without each labile group that what is in the flask could take off.
+
+    Args:
+        graph: the substrate.
+        promoters: what is in the flask.
+        besides: the leaving group at the principal centre, which is no protecting group; None = none.
+    """
     for group in find_labile_groups(graph):
+        if besides is not None and (group.carbon, group.leaving) == (besides.centre, besides.leaving):
+            continue
         if not comes_off(group, promoters):
             continue
         drawn = draw_loss(graph, group)

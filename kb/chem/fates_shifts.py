@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 
 from kb.chem.carbon import is_bridgehead
-from kb.chem.cations import iter_shifts
+from kb.chem.cations import iter_shifts, ring_breaks
 from kb.chem.centre import LeavingSite
 from kb.chem.facts import PossibleFate
 from kb.chem.fates_displacement import Attacker, arrive, depart
@@ -40,6 +40,23 @@ def iter_shifted(graph: Molgraph, site: LeavingSite, attackers: Sequence[Attacke
             sketch.make_double(origin, beta)
             for smiles, label in sketch.finish_alkene(origin, beta):
                 note = f"{what}, then loss of a proton" + (f", {label}" if label else "")
+                yield PossibleFate(fate=Fate.REARRANGED, product=smiles, note=note)
+
+
+def iter_ring_openings(graph: Molgraph, site: LeavingSite, attackers: Sequence[Attacker]) -> Iterator[PossibleFate]:
+    """Yield the homoallyl products that a cyclopropane beside the leaving group's carbon opens to."""
+    if site.departs is None or site.carbon_class in (CarbonClass.BRIDGEHEAD, CarbonClass.VINYL, CarbonClass.ARYL):
+        return
+    for near, far in ring_breaks(graph, site.centre, site.leaving):
+        for attacker in attackers:
+            sketch = Sketch([graph, attacker.graph])
+            depart(sketch, site)
+            sketch.cut(near, far)
+            sketch.make_double(site.centre, near)
+            sketch.clear_configuration((far,))
+            arrive(sketch, far, attacker, 1)
+            for smiles, label in sketch.finish_alkene(site.centre, near):
+                note = f"opening of the cyclopropane, then capture by {attacker.word}" + (f", {label}" if label else "")
                 yield PossibleFate(fate=Fate.REARRANGED, product=smiles, note=note)
 
 

@@ -10,8 +10,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from kb.chem.cations import cation_score, is_conjugate_end
-from kb.chem.centre import GOOD_RANK, LeavingSite, find_leaving_sites
+from kb.chem.centre import GOOD_RANK, LeavingSite, find_leaving_sites, is_haloform_carbon
 from kb.chem.fates_addition import multiple_bonds
+from kb.chem.fates_displacement import ACYL_SEEKERS
 from kb.chem.fates_elimination import beta_carbons
 from kb.chem.labile import comes_off, find_labile_groups
 from kb.chem.molgraph import Molgraph
@@ -29,7 +30,7 @@ class Guess:
 
     Attributes:
         part: the fragment; None when nothing in the scheme is known to react this way.
-        centre: its carbon.
+        centre: its carbon; None when it reacts without a bond at sp3 carbon breaking.
         leaving: the atom that would leave; None for an addition.
         site: the leaving site; None for an addition or a labile group.
         reason: a plain sentence.
@@ -67,6 +68,7 @@ def _among(graphs: Sequence[Molgraph], parts: Sequence[int], promoters: Promoter
     return (
         _alkene(graphs, parts, needs_reason=not _can_add(graphs, promoters))
         or labile
+        or _acyl(graphs, parts, promoters)
         or _poor_site(graphs, parts)
         or _alkene(graphs, parts, needs_reason=False)
     )
@@ -97,6 +99,11 @@ def _best_site(graphs: Sequence[Molgraph], parts: Sequence[int], promoters: Prom
         reason = (
             f"The {site.group} sits at a bridgehead: it can be reached neither from the back for displacement "
             "nor lost to an alkene."
+        )
+    elif is_haloform_carbon(graphs[part], site.centre):
+        reason = (
+            f"The {site.group} shares its carbon with other halogens: displacement from the back hardly happens there; "
+            "a strong base takes the proton, if there is one, and leaves a carbene."
         )
     elif site.group is LeavingGroup.HYDROXYL:
         reason = "No product was stated; the alcohol is made to leave by what is in the flask."
@@ -132,6 +139,34 @@ def _labile(graphs: Sequence[Molgraph], parts: Sequence[int], promoters: Promote
                 reason = f"No product was stated; the {group.name} is what acid takes off."
                 return Guess(part, group.carbon, group.leaving, None, reason)
     return None
+
+
+def _acyl(graphs: Sequence[Molgraph], parts: Sequence[int], promoters: Promoters) -> Guess | None:
+    """Return the ester that a nucleophile present meets at its carbonyl carbon.
+
+    A small acyl group that hydroxide or an alkoxide takes off is a protecting group lost, as it is when the alcohol is
+    stated; otherwise no carbon is named.
+    """
+    for part in parts:
+        if not _has_ester(graphs[part]):
+            continue
+        words = {s.word for p, g in enumerate(graphs) if p != part for s in find_nucleophile_sites(g) if s.rank >= 34}
+        seekers = words & ACYL_SEEKERS
+        if not seekers:
+            continue
+        if seekers <= {"hydroxide", "alkoxide"}:
+            for group in find_labile_groups(graphs[part]):
+                if group.promoter == "base" and comes_off(group, promoters) and group.carbon is not None:
+                    reason = f"No product was stated; the {group.name} group is what base takes off."
+                    return Guess(part, group.carbon, group.leaving, None, reason)
+        reason = "No product was stated; the nucleophile meets the ester at its carbonyl carbon."
+        return Guess(part, None, None, None, reason)
+    return None
+
+
+def _has_ester(graph: Molgraph) -> bool:
+    """Return whether a fragment holds an open-chain carboxylic ester of an sp3 carbon."""
+    return any(s.group is LeavingGroup.CARBOXYLATE and s.is_sp3 and s.departs for s in find_leaving_sites(graph))
 
 
 def _can_add(graphs: Sequence[Molgraph], promoters: Promoters) -> bool:

@@ -5,8 +5,7 @@ do it (that is `kb.assess`) nor draws the product (`fates_loss`). Hydrolysis of 
 listed too, named as what it is (`Fate.OTHER`): it must be recognised so as not to be taken for a
 displacement, and it often follows another step in the same flask.
 
-Names are the trade's; the classes of promoter (acid, base, fluoride, thiol...) follow common practice.
-"""
+Names are the trade's; the classes of promoter (acid, base, fluoride, thiol...) follow common practice."""
 
 from __future__ import annotations
 
@@ -171,6 +170,8 @@ def _carbon_group(graph: Molgraph, atom: int, carbon: int) -> LabileGroup | None
     if graph.elements[atom] == 8 and _is_on_carbamate(graph, atom):
         return None
     name, promoter, fate = _alkyl_group(graph, atom, carbon)
+    # A sulfonate or sulfate is a leaving group on that carbon, no protected acid.
+    fate = Fate.OTHER if any(graph.elements[n] == 16 for n in graph.neighbours[atom]) else fate
     return LabileGroup(name, fate, promoter, (loss,), carbon, atom)
 
 
@@ -293,8 +294,7 @@ def _acetal(graph: Molgraph, carbon: int) -> LabileGroup | None:
     alkyl = next(n for n in graph.neighbours[stays] if n != carbon)
     if not graph.is_sp3_carbon(alkyl):
         return None
-    lost = {goes, alkyl}
-    stack = [goes, alkyl]
+    lost, stack = {goes, alkyl}, [goes, alkyl]
     while stack:
         here = stack.pop()
         for n in graph.neighbours[here]:

@@ -14,6 +14,7 @@ from kb.chem.cations import alkene_carbons
 from kb.chem.centre import LeavingSite, find_leaving_sites
 from kb.chem.labile import LabileGroup, comes_off, find_labile_groups
 from kb.chem.nucleophile import find_nucleophile_sites
+from kb.chem.nucleophile_site import METALS
 from kb.chem.promoters import Promoters
 from kb.chem.scheme import Fragment, Scheme
 from kb.vocabulary import Fate
@@ -74,6 +75,14 @@ class _Atlas:
                 found.append(origin)
         return found
 
+    def holds_metal(self, part: int, atom: int) -> bool:
+        """Return whether an atom is bonded to a metal in the products."""
+        spot = self.product_of(part, atom)
+        if spot is None:
+            return False
+        graph = self.right[spot[0]].graph
+        return any(graph.elements[n] in METALS - {5} for n in graph.neighbours[spot[1]])
+
     def order_after(self, part: int, atom: int) -> int:
         """Return the highest bond order of an atom in the products; aromatic counts as 2, 0 when it is not there."""
         spot = self.product_of(part, atom)
@@ -122,7 +131,9 @@ def _displacement(atlas: _Atlas) -> Evidence | None:
 def _outcome(
     atlas: _Atlas, part: int, site: LeavingSite
 ) -> tuple[Fate | None, tuple[int, int, str] | None]:
-    """Return what took the place of a leaving group."""
+    """Return what took the place of a leaving group; nothing for a metal, which takes no place of a pair."""
+    if atlas.holds_metal(part, site.centre):
+        return None, None
     for spot in atlas.gained(part, site.centre):
         if spot is None:
             return Fate.SUBSTITUTION, None

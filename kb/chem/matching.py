@@ -16,22 +16,23 @@ from dataclasses import replace
 
 from kb.chem.assumptions import landing_cost
 from kb.chem.balance import Losses, Workbench
+from kb.chem.centre import name_group
 from kb.chem.labile import comes_off
 from kb.chem.match import Match
 from kb.chem.matching_halogen import find_halogenations
 from kb.chem.matching_twofold import find_double, find_pairs_lost
 from kb.chem.molgraph import Molgraph
-from kb.chem.nucleophile import NucleophileSite
+from kb.chem.nucleophile import HALIDES, NucleophileSite
 from kb.chem.openings import (
     Opening,
     fills,
     find_addition_shifts,
     find_additions,
     find_displacements,
+    find_ring_openings,
     find_shifts,
     find_transfers,
     find_transpositions,
-    group_word,
 )
 from kb.chem.skeleton import Edit, Target, skeleton_summary
 from kb.vocabulary import Fate
@@ -54,6 +55,7 @@ def find_matches(bench: Workbench, product: Molgraph) -> list[Match]:
     found += _single(bench, target, openings)
     if not _is_settled(found):
         moved = find_transpositions(bench, displacements) + find_shifts(bench, displacements)
+        moved += find_ring_openings(bench, displacements)
         found += _single(bench, target, moved + find_addition_shifts(bench))
     if not _is_settled(found):
         found += find_double(bench, target, openings)
@@ -129,16 +131,25 @@ def _single(bench: Workbench, target: Target, openings: Sequence[Opening]) -> li
 
 def _emptied(bench: Workbench, target: Target, opening: Opening) -> Iterator[Match]:
     """Yield what comes of no nucleophile: a proton lost (elimination) or a hydride taken up (reduction)."""
-    parts = (opening.part,)
+    parts, site = (opening.part,), opening.site
     elements, protons = bench.excess(parts, target, *opening.removals)
+    if site is None:
+        return
+    graph = bench.graphs[opening.part]
+    group = name_group(graph, site)
+    is_carbene = all(n == site.leaving or graph.elements[n] in HALIDES for n in graph.neighbours[site.centre])
     if (elements, protons) == (0, -2) and opening.fate is not Fate.REARRANGED:
         edit = bench.edit(parts, opening.removals, opening.joins)
         if edit and bench.gives(edit, target):
-            note = f"replacement of {group_word(opening.group)} by hydrogen"
+            note = f"replacement of {group} by hydrogen"
             yield Match(fate=Fate.OTHER, edit=edit, note=note, rank=opening.rank, cost=2)
     for losses in bench.losses_for(parts, (elements, protons)):
         edit = bench.edit(parts, opening.removals, opening.joins, losses)
         if edit and bench.gives(edit, target) and opening.centre is not None:
+            if is_carbene:
+                note = f"loss of {group} and a proton from one carbon, a carbene"
+                yield Match(fate=Fate.OTHER, edit=edit, note=note, rank=opening.rank, cost=opening.cost)
+                continue
             rearranged = opening.fate is Fate.REARRANGED
             yield Match(
                 fate=Fate.REARRANGED if rearranged else Fate.ELIMINATION,
@@ -146,7 +157,7 @@ def _emptied(bench: Workbench, target: Target, opening: Opening) -> Iterator[Mat
                 centres=((opening.part, *opening.centre),),
                 note=f"{opening.note.removesuffix(', capture')}, then of a proton"
                 if rearranged
-                else f"loss of {group_word(opening.group)} to an alkene",
+                else f"loss of {group} to an alkene",
                 rank=opening.rank,
                 cost=opening.cost + len(losses),
                 lost=tuple(g for _, g in losses),

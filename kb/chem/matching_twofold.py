@@ -10,6 +10,7 @@ from collections.abc import Iterator, Sequence
 
 from kb.chem.assumptions import landing_cost
 from kb.chem.balance import Losses, Removal, Workbench
+from kb.chem.centre import name_group
 from kb.chem.match import Match
 from kb.chem.nucleophile import NucleophileSite
 from kb.chem.openings import Opening, fills
@@ -168,12 +169,13 @@ def find_pairs_lost(bench: Workbench, target: Target, displacements: Sequence[Op
                 continue
             edit = bench.edit(parts, removals, ())
             if edit and bench.gives(edit, target):
+                names = f"{name_group(graph, first.site)} and {name_group(graph, second.site)}"
                 found.append(
                     Match(
                         fate=Fate.ELIMINATION,
                         edit=edit,
                         centres=((first.part, *_named(first)), (second.part, *_named(second))),
-                        note=f"loss of both {first.group} and {second.group}" + (", by a metal" if by_metal else ""),
+                        note=f"loss of both {names}" + (", by a metal" if by_metal else ""),
                         rank=first.rank,
                         cost=1,
                     )

@@ -13,10 +13,11 @@ from __future__ import annotations
 from kb.chem.molgraph import Molgraph
 from kb.chem.nucleophile_carbon import carbon_sites
 from kb.chem.nucleophile_site import METALS, NucleophileSite, is_acceptor, released
+from kb.chem.promoters import Promoters
 
 HALIDES = {9: "fluoride", 17: "chloride", 35: "bromide", 53: "iodide"}
 
-__all__ = ["HALIDES", "NucleophileSite", "find_nucleophile_sites", "is_acceptor"]
+__all__ = ["HALIDES", "NucleophileSite", "find_nucleophile_sites", "is_acceptor", "settle_word"]
 
 
 def find_nucleophile_sites(graph: Molgraph) -> tuple[NucleophileSite, ...]:
@@ -42,6 +43,26 @@ def find_nucleophile_sites(graph: Molgraph) -> tuple[NucleophileSite, ...]:
     return known  # type: ignore[return-value]
 
 
+_NEUTRAL = {"carboxylate": "carboxylic_acid", "phenoxide": "phenol", "thiolate": "thiol"}
+"""Word of an anion -> word of its acid, for O-H and S-H that nothing in the flask deprotonates."""
+
+
+def settle_word(graph: Molgraph, atom: int, word: str, promoters: Promoters) -> str:
+    """Return the class word of an attacking atom under what is in the flask.
+
+    Sites carry the word of the anion, since that is what attacks. It is kept where a base, a Mitsunobu pair or a diazo
+    carbon takes the proton; an acid that stays one is called so.
+    """
+    if word == "alcohol" and promoters.strong_base:
+        return "alkoxide"
+    if word not in _NEUTRAL or promoters.strong_base or promoters.mild_base or promoters.mitsunobu:
+        return word
+    is_acid = graph.charges[atom] == 0 and graph.hydrogens[atom] > 0
+    for carrier in graph.neighbours[atom] if word == "carboxylate" else ():
+        is_acid = any(graph.elements[n] == 8 and graph.hydrogens[n] for n in graph.neighbours[carrier])
+    return _NEUTRAL[word] if is_acid else word
+
+
 def _partner(graph: Molgraph, atom: int, elements: frozenset[int] | tuple[int, ...]) -> int | None:
     """Return the first neighbour of one of the elements."""
     return next((n for n in graph.neighbours[atom] if graph.elements[n] in elements), None)
@@ -51,7 +72,12 @@ def _nitrogen(graph: Molgraph, atom: int) -> list[NucleophileSite]:
     bonds, charge, hydrogens = graph.neighbours[atom], graph.charges[atom], graph.hydrogens[atom]
     if charge > 0 and not hydrogens:
         return []
+    pseudohalide = next((w for n in bonds if (w := _pseudohalide(graph, n))), None)
     metal = _partner(graph, atom, METALS | {14})
+    if metal is not None and pseudohalide is not None:
+        return [released(graph, atom, metal, pseudohalide, 60)]
+    if pseudohalide is not None and not any(code == 3 for code in bonds.values()):
+        return [NucleophileSite(atom, pseudohalide, 60 if pseudohalide == "cyanate" else 24)]
     if metal is not None:
         rest = [n for n in bonds if n != metal]
         is_azide = any(graph.elements[n] == 7 for n in rest)
@@ -67,6 +93,9 @@ def _nitrogen(graph: Molgraph, atom: int) -> list[NucleophileSite]:
         return _azide(graph, atom, middle[0]) if charge < 0 or len(bonds) == 1 else []
     if any(code == 3 for code in bonds.values()):
         carbon = next(iter(bonds))
+        pseudohalide = _pseudohalide(graph, carbon)
+        if pseudohalide is not None:
+            return [NucleophileSite(atom, pseudohalide, 24)]
         is_ion = graph.charges[carbon] < 0 or graph.hydrogens[carbon] or _partner(graph, carbon, METALS) is not None
         return [NucleophileSite(atom, "cyanide", 22) if is_ion else NucleophileSite(atom, "nitrile", 8)]
     if charge == 0 and any(code == 2 and graph.elements[n] == 8 for n, code in bonds.items()):
@@ -79,6 +108,20 @@ def _nitrogen(graph: Molgraph, atom: int) -> list[NucleophileSite]:
         return [NucleophileSite(atom, "ammonia", 68)]
     word, rank = _amine_word(graph, atom)
     return [NucleophileSite(atom, word, rank)]
+
+
+def _pseudohalide(graph: Molgraph, carbon: int) -> str | None:
+    """Return the word for the ion, acid or silyl compound of N-C-S or N-C-O; None when either end carries carbon."""
+    bonds = graph.neighbours[carbon]
+    if graph.elements[carbon] != 6 or len(bonds) != 2 or graph.hydrogens[carbon]:
+        return None
+    word = {15: "cyanate", 23: "thiocyanate"}.get(sum(graph.elements[n] for n in bonds))
+    for end in bonds:
+        if graph.elements[end] not in (7, 8, 16):
+            return None
+        if any(n != carbon and graph.elements[n] not in METALS | {1, 14} for n in graph.neighbours[end]):
+            return None
+    return word
 
 
 def _azide(graph: Molgraph, atom: int, middle: int) -> list[NucleophileSite]:
@@ -137,6 +180,8 @@ def _oxygen(graph: Molgraph, atom: int) -> list[NucleophileSite]:
         return [NucleophileSite(atom, "hydroxide", 50) if charge < 0 else NucleophileSite(atom, "water", 20)]
     (carrier, code), = bonds.items()
     element = graph.elements[carrier]
+    if element == 6 and _pseudohalide(graph, carrier):
+        return [NucleophileSite(atom, "cyanate", 21)]
     if element == 6:
         return [_oxygen_on_carbon(graph, atom, carrier, code)]
     if element == 7:
@@ -206,6 +251,8 @@ def _sulfur(graph: Molgraph, atom: int) -> list[NucleophileSite]:
         return [NucleophileSite(atom, "thiosulfate", 70)]
     if graph.elements[carrier] == 15:
         return [NucleophileSite(atom, "thiolate", 50)]
+    if _pseudohalide(graph, carrier):
+        return [NucleophileSite(atom, "thiocyanate", 72)]
     if code == 2:
         return [NucleophileSite(atom, "thiourea", 75)]
     if any(c == 3 for c in graph.neighbours[carrier].values()):

@@ -12,8 +12,8 @@ from dataclasses import dataclass, replace
 
 from kb.chem.assumptions import departure_cost
 from kb.chem.balance import Removal, Workbench
-from kb.chem.cations import alkene_carbons, cation_score, is_conjugate_end, iter_shifts
-from kb.chem.centre import LeavingSite, find_leaving_sites
+from kb.chem.cations import alkene_carbons, cation_score, is_conjugate_end, iter_shifts, ring_breaks
+from kb.chem.centre import LeavingSite, find_leaving_sites, name_group
 from kb.chem.molgraph import Molgraph
 from kb.chem.nucleophile import NucleophileSite, is_acceptor
 from kb.chem.skeleton import Cut
@@ -75,7 +75,7 @@ def find_displacements(bench: Workbench) -> list[Opening]:
                     centre=(site.centre, site.leaving),
                     group=site.group,
                     site=site,
-                    note=f"displacement of {group_word(site.group)}"
+                    note=f"displacement of {name_group(graph, site)}"
                     if site.is_sp3
                     else "substitution at a vinylic carbon",
                     rank=site.rank + _ease(graph, site),
@@ -103,11 +103,6 @@ def _carbene(bench: Workbench, part: int, site: LeavingSite) -> Opening:
         rank=site.rank,
         cost=0,
     )
-
-
-def group_word(group: LeavingGroup | None) -> str:
-    """Return a leaving group's word for a sentence."""
-    return "another group" if group is None or group is LeavingGroup.OTHER else str(group)
 
 
 def _ease(graph: Molgraph, site: LeavingSite) -> int:
@@ -163,7 +158,7 @@ def find_transpositions(bench: Workbench, displacements: list[Opening]) -> list[
                             centre=opening.centre,
                             group=opening.group,
                             site=opening.site,
-                            note=f"displacement of {opening.group} with allylic transposition",
+                            note=f"displacement of {name_group(graph, opening.site)} with allylic transposition",
                             rank=opening.rank - 10,
                             cost=opening.cost,
                         )
@@ -197,9 +192,31 @@ def find_shifts(bench: Workbench, displacements: list[Opening]) -> list[Opening]
                     centre=opening.centre,
                     group=opening.group,
                     site=site,
-                    note=f"loss of {opening.group} with a {_shift_word(mover)}, capture",
+                    note=f"loss of {name_group(graph, site)} with a {_shift_word(mover)}, capture",
                     rank=opening.rank - 20,
                     cost=opening.cost,
+                )
+            )
+    return found
+
+
+def find_ring_openings(bench: Workbench, displacements: list[Opening]) -> list[Opening]:
+    """Return openings at the far carbons of a cyclopropane beside a leaving group's carbon: homoallyl products."""
+    found = []
+    for opening in displacements:
+        if opening.fate is not Fate.SUBSTITUTION or opening.cost > 1 or opening.site is None:
+            continue
+        graph, part, site = bench.graphs[opening.part], opening.part, opening.site
+        for near, far in ring_breaks(graph, site.centre, site.leaving):
+            gone = Removal((Cut(bench.atom(part, near), bench.atom(part, far), frozenset(), 0),))
+            found.append(
+                replace(
+                    opening,
+                    atom=far,
+                    removals=(*opening.removals, gone),
+                    fate=Fate.REARRANGED,
+                    note=f"loss of {name_group(graph, site)} with opening of the cyclopropane, capture",
+                    rank=opening.rank - 20,
                 )
             )
     return found

@@ -10,9 +10,11 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import dataclass
 
+from kb.chem.carbon import is_diazo_carbon
 from kb.chem.molgraph import Molgraph
 
 _HALOGENS = (9, 17, 35, 53)
+_ALKALI = frozenset((3, 11, 19, 37, 55))
 _LEWIS_METALS = frozenset((13, 21, 22, 26, 30, 31, 40, 49, 50, 70, 71, 72, 83))
 _HYDROGENATION_METALS = frozenset((28, 44, 45, 46, 77, 78))
 _METALS = frozenset((*range(19, 32), *range(37, 51), *range(55, 84), 3, 11, 12, 13))
@@ -27,7 +29,7 @@ class Promoters:
         weak_acid: a carboxylic acid.
         lewis_acid: halides or triflates of boron, aluminium, zinc, iron, tin, titanium..., silyl triflate.
         strong_base: hydroxide, alkoxide, hydride, metal amide, organolithium.
-        mild_base: carbonate, phosphate, amine.
+        mild_base: carbonate, phosphate, amine, sodium hydride, a diazo carbon; takes the proton of phenols and acids.
         fluoride: fluoride ion or HF.
         hydrogenation: hydrogen, or a metal that carries it.
         mitsunobu: phosphine with an azodicarboxylate, or a stabilised phosphorane.
@@ -113,6 +115,9 @@ def _metal(graph: Molgraph, atom: int) -> set[str]:
         words.add("metal_catalyst")
     if element == 13 and (graph.hydrogens[atom] or graph.charges[atom] < 0):
         words.add("hydride")
+    if element in _ALKALI and (graph.hydrogens[atom] or any(graph.elements[n] == 8 for n in bonds)):
+        # Sodium hydride, or a base drawn with a bond to its metal.
+        words.add("mild_base")
     if element in (3, 12) and any(graph.elements[n] == 6 for n in bonds):
         words.add("strong_base")
     return words
@@ -138,6 +143,9 @@ def _carbon(graph: Molgraph, atom: int) -> set[str]:
     bonds = graph.neighbours[atom]
     halogens = sum(graph.elements[n] in (17, 35, 53) for n in bonds)
     words = set()
+    if is_diazo_carbon(graph, atom):
+        # It takes up the proton of an acid before it is displaced.
+        words.add("mild_base")
     if halogens and graph.has_multiple_bond(atom, 8):
         words.add("halogenating")
     if halogens >= 3:

@@ -11,22 +11,21 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from rdkit import Chem
-
 from kb.chem.balance import Workbench
 from kb.chem.centre import describe_centre, find_leaving_sites
-from kb.chem.comparison import compare
+from kb.chem.comparison import compare, find_metal_insertion
+from kb.chem.configuration import STEREO_WORDS, judge_configuration
 from kb.chem.facts import Centre, NucleophileFact, PossibleFate, Reading
 from kb.chem.fates import LARGEST, choose_attackers, list_fates
-from kb.chem.fates_displacement import Attacker, describe_configuration
+from kb.chem.fates_displacement import CLOSED, Attacker
 from kb.chem.inference import guess_centre
 from kb.chem.interchange import find_interchange
 from kb.chem.mapped import read_maps
 from kb.chem.match import Match
 from kb.chem.matching import find_matches
-from kb.chem.molgraph import Molgraph
-from kb.chem.nucleophile import find_nucleophile_sites
+from kb.chem.nucleophile import find_nucleophile_sites, settle_word
 from kb.chem.promoters import Promoters
+from kb.chem.rivals import find_rival, symmetry_classes
 from kb.chem.scheme import Fragment, Scheme, parse_scheme
 from kb.chem.structure import make_visible
 from kb.errors import StructureError
@@ -91,7 +90,7 @@ class _Reader:
             if evidence is not None:
                 matches = [m for m in matches if m.centres[:1] == evidence.centres[:1] and m.fate is evidence.fate]
             if matches:
-                rival = _find_rival(self.graphs, matches)
+                rival = find_rival(self.graphs, matches)
                 if rival and evidence is None:
                     return self._unresolved(rival)
                 return self._matched(matches[0], product, by_maps=evidence is not None)
@@ -123,6 +122,9 @@ class _Reader:
     def _compared(self, products: Sequence[Fragment]) -> Reading:
         """Return the reading when no enumerated product is the stated one."""
         for product in products:
+            if find_metal_insertion(self.graphs, product.graph):
+                note = "insertion of a metal, which bonds to the carbon"
+                return self._matched(Match(Fate.OTHER, None, note=note), product)
             change = find_interchange(self.graphs, product.graph)
             if change is not None:
                 return self._matched(Match(Fate.OTHER, None, note=change.note), product)
@@ -155,12 +157,15 @@ class _Reader:
 
     def _matched(self, match: Match, product: Fragment, *, by_maps: bool = False) -> Reading:
         """Return the reading of a match, its side products listed after the stated one."""
-        places = match.centres if by_maps else self._entered_first(match.centres)
+        places = match.centres if by_maps else self._chosen_places(match, product)
         nucleophile = self._nucleophile(match)
         note = match.note
-        configuration = self._configuration(match, product)
-        if configuration:
-            note += f", {configuration}"
+        if nucleophile is not None and match.nucleophile is not None:
+            old, new = (w.replace("_", " ") for w in (match.nucleophile[2], nucleophile.nucleophile_class))
+            note = note.replace(f"by {old}", f"by {new}")
+        stereo = self._configuration(match, places, product)
+        if stereo:
+            note += f", {STEREO_WORDS[stereo]}"
         stated = PossibleFate(fate=match.fate, product=product.smiles, note=note)
         part = places[0][0] if places else self._likely_substrate()
         leading = match.nucleophile[:2] if match.nucleophile and self.bench.is_stated(match.nucleophile[0]) else None
@@ -176,6 +181,7 @@ class _Reader:
             possible=(stated, *(f for f in others if f.product != product.smiles)),
             reason=f"The stated product is that of {note}." if note else "",
             substrate=self.left[part].smiles if places and part is not None else None,
+            stereo=stereo,
         )
 
     def _likely_substrate(self) -> int | None:
@@ -183,41 +189,54 @@ class _Reader:
         count = len(self.scheme.reactants)
         return max(range(count), key=lambda p: len(self.graphs[p])) if count else None
 
-    def _configuration(self, match: Match, product: Fragment) -> str:
-        """Return how the configuration fared, for a single displacement at a drawn stereocentre."""
-        if match.fate is not Fate.SUBSTITUTION or len(match.centres) != 1 or match.nucleophile is None:
+    def _configuration(self, match: Match, places: Sequence[Place], product: Fragment) -> str:
+        """Return the word for how the configuration fared, for a single displacement at a drawn stereocentre."""
+        if match.fate is not Fate.SUBSTITUTION or len(places) != 1 or match.nucleophile is None or match.lost:
             return ""
-        part, centre, leaving = match.centres[0]
+        part, centre, leaving = places[0]
         other, atom, _ = match.nucleophile
-        if other == part or "@" not in self.graphs[part].smiles or "@" not in product.smiles or match.lost:
+        if "@" not in self.graphs[part].smiles or "@" not in product.smiles or len(product.graph) > LARGEST:
             return ""
         known = find_leaving_sites(self.graphs[part])
         site = next((s for s in known if (s.centre, s.leaving) == (centre, leaving)), None)
         graph = self.bench.graphs[other]
         attack = next((n for n in find_nucleophile_sites(graph) if n.atom == atom), None)
-        if site is None or attack is None or len(product.graph) > LARGEST:
+        if site is None or attack is None:
             return ""
-        return describe_configuration(self.graphs[part], site, Attacker(graph, attack), product.smiles)
+        attacker = attack if other == part else Attacker(graph, attack)
+        stated = {f.smiles for f in self.scheme.products}
+        return judge_configuration(self.graphs[part], site, attacker, product.smiles, stated)
 
-    def _entered_first(self, places: Sequence[Place]) -> tuple[Place, ...]:
-        """Return the places, a lone centre moved to its equivalent that was entered first; second portions dropped."""
+    def _chosen_places(self, match: Match, product: Fragment) -> tuple[Place, ...]:
+        """Return the places of a match; of equivalent ones that which is inverted, else the first entered."""
+        twins = self._twins(match.centres)
+        if not twins:
+            return self._entered_first(match.centres)
+        inverted = [p for p in twins if self._configuration(match, (p,), product) == "inversion"]
+        return self._entered_first(match.centres) if not inverted else (inverted[0],)
+
+    def _twins(self, places: Sequence[Place]) -> list[Place]:
+        """Return a lone centre and all that symmetry makes equal to it, first entered first; none for several."""
         stated = [p for p in places if p[0] < len(self.left)]
         if len(stated) != 1:
-            return tuple(dict.fromkeys(stated))
+            return []
         part, centre, leaving = stated[0]
         graph, entered = self.graphs[part], self.left[part].entered
         ranks = symmetry_classes(graph)
-        best = (part, centre, leaving)
+        found: list[Place] = []
         for a in range(len(graph)):
-            if ranks[a] != ranks[centre] or entered[a] >= entered[best[1]]:
+            if ranks[a] != ranks[centre]:
                 continue
             if leaving is None:
-                best = (part, a, None)
+                found.append((part, a, None))
                 continue
-            twin = next((n for n in graph.neighbours[a] if ranks[n] == ranks[leaving]), None)
-            if twin is not None:
-                best = (part, a, twin)
-        return (best,)
+            found.extend((part, a, n) for n in graph.neighbours[a] if ranks[n] == ranks[leaving])
+        return sorted(found, key=lambda p: entered[p[1]])
+
+    def _entered_first(self, places: Sequence[Place]) -> tuple[Place, ...]:
+        """Return the places, a lone centre moved to its equivalent that was entered first; second portions dropped."""
+        twins = self._twins(places)
+        return (twins[0],) if twins else tuple(dict.fromkeys(p for p in places if p[0] < len(self.left)))
 
     def _centre(self, part: int, centre: int, leaving: int | None) -> Centre:
         fragment = self.left[part]
@@ -232,9 +251,8 @@ class _Reader:
         part, atom, word = match.nucleophile
         if part >= len(self.left):
             return None
-        if word == "alcohol" and self.promoters.strong_base:
-            word = "alkoxide"
         fragment = self.left[part]
+        word = settle_word(fragment.graph, atom, word, self.promoters)
         return NucleophileFact(
             component=part,
             atom=fragment.entered[atom],
@@ -250,16 +268,24 @@ class _Reader:
         site = None
         if place is not None and place[2] is not None:
             site = next((s for s in find_leaving_sites(graph) if (s.centre, s.leaving) == place[1:]), None)
-        attackers = choose_attackers(self.graphs, len(self.scheme.reactants), part, leading)
+        attackers = choose_attackers(self.graphs, len(self.scheme.reactants), part, leading, self.promoters)
         others = [g for i, g in enumerate(self.graphs) if i != part]
         return list_fates(graph, site, attackers, self.promoters, others)
 
     def without_product(self) -> Reading:
         """Return the reading of a scheme that states no product."""
         guess = guess_centre(self.graphs, len(self.scheme.reactants), self.promoters)
-        if guess.part is None or guess.centre is None:
+        if guess.part is None:
             return Reading(
                 scheme=self.scheme.text, ok=True, confidence=Confidence.UNRESOLVED, reason=guess.reason
+            )
+        if guess.centre is None:
+            return Reading(
+                scheme=self.scheme.text,
+                ok=True,
+                confidence=Confidence.INFERRED,
+                fate=Fate.OTHER,
+                reason=guess.reason,
             )
         (place,) = self._entered_first([(guess.part, guess.centre, guess.leaving)])
         possible = self._fates(guess.part, place if guess.site else None, None)
@@ -267,51 +293,18 @@ class _Reader:
         if len(self.graphs[guess.part]) > LARGEST:
             reason += f" It has more than {LARGEST} heavy atoms, so its products were not drawn."
         fates = {f.fate for f in possible}
+        # Beside a lone substrate nobody knows what attacks it, so one kind of product proves nothing. Nor does the one
+        # product that a closed centre leaves, unless a strong base is there to make it.
+        settled = len(fates) == 1 and len(self.graphs) > 1
+        if guess.site is not None and guess.site.carbon_class in CLOSED and not self.promoters.strong_base:
+            settled = False
         return Reading(
             scheme=self.scheme.text,
             ok=True,
             confidence=Confidence.INFERRED,
-            # Beside a lone substrate nobody knows what attacks it, so one kind of product proves nothing.
-            fate=next(iter(fates)) if len(fates) == 1 and len(self.graphs) > 1 else None,
+            fate=next(iter(fates)) if settled else None,
             centres=(self._centre(*place),),
             possible=possible,
             reason=reason,
             substrate=self.left[guess.part].smiles,
         )
-
-
-def symmetry_classes(graph: Molgraph) -> list[int]:
-    """Return a number per atom, equal for atoms that the molecule's symmetry exchanges."""
-    known = graph.memo.get("symmetry")
-    if known is None:
-        known = list(Chem.CanonicalRankAtoms(graph.mol, breakTies=False))
-        graph.memo["symmetry"] = known
-    return known  # type: ignore[return-value]
-
-
-def _find_rival(graphs: Sequence[Molgraph], matches: Sequence[Match]) -> str:
-    """Return why the best match cannot be told from another, or nothing when it stands alone.
-
-    Two readings rival each other when they assume as little and differ in which carbon gave up its leaving group:
-    an ether from two alcohols.
-    """
-    best = matches[0]
-    if best.fate is not Fate.SUBSTITUTION or len(best.centres) != 1:
-        return ""
-    for other in matches[1:]:
-        if other.cost != best.cost or other.fate is not Fate.SUBSTITUTION or len(other.centres) != 1:
-            continue
-        (part, centre, leaving), (part2, centre2, leaving2) = best.centres[0], other.centres[0]
-        if part2 >= len(graphs) or part >= len(graphs) or leaving is None or leaving2 is None:
-            continue
-        if (graphs[part].smiles, symmetry_classes(graphs[part])[centre]) == (
-            graphs[part2].smiles,
-            symmetry_classes(graphs[part2])[centre2],
-        ):
-            continue
-        if abs(other.rank - best.rank) < 10:
-            return (
-                "Two carbons could have given up their leaving group for the stated product, and nothing in the scheme "
-                "tells which did."
-            )
-    return ""

@@ -14,7 +14,7 @@ from dataclasses import dataclass, field
 from functools import lru_cache
 from typing import Literal
 
-from rdkit import Chem
+from rdkit import Chem, rdBase
 
 from kb.chem.molgraph import Molgraph, molgraph_of
 from kb.chem.structure import check_text, make_visible, parse_molecule
@@ -176,7 +176,8 @@ def _canonical(token: str) -> tuple[str, tuple[int, ...], tuple[int, ...]]:
             atom.SetAtomMapNum(0)
         atom.SetIntProp("entered", atom.GetIdx())
     if any(a.GetAtomicNum() == 1 for a in mol.GetAtoms()) and mol.GetNumAtoms() > 1:
-        mol = Chem.RemoveHs(mol)
+        with rdBase.BlockLogs():
+            mol = Chem.RemoveHs(mol)
     smiles = str(Chem.MolToSmiles(mol))
     order = list(mol.GetPropsAsDict(True, True)["_smilesAtomOutputOrder"])
     positions = tuple(mol.GetAtomWithIdx(i).GetIntProp("entered") for i in order)

@@ -100,7 +100,7 @@ class Sketch:
         elif here.GetNumExplicitHs() or any(n.GetAtomicNum() == 1 for n in here.GetNeighbors()):
             self.change_hydrogens(nucleophile, -1)
             self._shed_proton(here)
-        elif not self._relay_proton(nucleophile):
+        elif not self._relay_proton(nucleophile) and not self._relay_charge(nucleophile):
             here.SetFormalCharge(here.GetFormalCharge() + 1)
         self._forget_double_bonds(nucleophile)
         self.mol.AddBond(electrophile, nucleophile, Chem.BondType.SINGLE)
@@ -135,6 +135,25 @@ class Sketch:
                     return True
                 if len(path) < _LONGEST_RELAY and atom.GetFormalCharge() == 0:
                     queue.append((*path, other))
+        return False
+
+    def _relay_charge(self, start: int) -> bool:
+        """Shift one bond of X=C=Z(-) or X#C-Z(-) towards Z so that X is free to bond; False for anything else."""
+        down = {Chem.BondType.TRIPLE: Chem.BondType.DOUBLE, Chem.BondType.DOUBLE: Chem.BondType.SINGLE}
+        up = {lower: higher for higher, lower in down.items()}
+        for bond in self.mol.GetAtomWithIdx(start).GetBonds():
+            middle = bond.GetOtherAtom(self.mol.GetAtomWithIdx(start))
+            if bond.GetBondType() not in down or middle.GetDegree() != 2:
+                continue
+            for second in middle.GetBonds():
+                end = second.GetOtherAtom(middle)
+                if end.GetIdx() == start or end.GetFormalCharge() >= 0 or end.GetAtomicNum() not in (7, 8, 16):
+                    continue
+                if second.GetBondType() in up:
+                    bond.SetBondType(down[bond.GetBondType()])
+                    second.SetBondType(up[second.GetBondType()])
+                    end.SetFormalCharge(end.GetFormalCharge() + 1)
+                    return True
         return False
 
     def _flip(self, path: Sequence[int]) -> None:

@@ -10,6 +10,7 @@ import contextlib
 import dataclasses
 import json
 import re
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cache, lru_cache
 from typing import TYPE_CHECKING, Any
@@ -20,13 +21,13 @@ from kb.materials.profile import ConditionProfile
 from kb.record.conditions import Conditions
 from kb.record.derived import CENTRE_BITS, DerivedFacts
 from kb.record.run import Run
-from kb.vocabulary import Role
+from kb.vocabulary import Confidence, Fate, Role
 
 if TYPE_CHECKING:
     from kb.chem.scheme import Scheme
     from kb.record.plan import Plan
 
-RECIPE = "facts/2"
+RECIPE = "facts/3"
 """Name of what makes DerivedFacts; the screens' and RDKit's are appended where facts are stored."""
 
 SCREENS = "augmented-1-2048;pattern-2048;morgan-r2-2048"
@@ -134,7 +135,7 @@ def _account(scheme: str, conditions: Conditions, run_id: UUID) -> Account:
     parsed = None
     with contextlib.suppress(ChemistryError):
         parsed = parse_scheme(scheme)
-    reading = read_scheme(scheme if parsed is None else _with_named(parsed, conditions))
+    reading = read_scheme(scheme) if parsed is None else _read(parsed, conditions)
     reading = dataclasses.replace(reading, scheme=scheme)
     fragments: tuple[str, ...] = ()
     products: tuple[str, ...] = ()
@@ -157,14 +158,59 @@ def _account(scheme: str, conditions: Conditions, run_id: UUID) -> Account:
     )
 
 
-def _with_named(parsed: Scheme, conditions: Conditions) -> str:
+def _read(parsed: Scheme, conditions: Conditions) -> Reading:
+    """Read a scheme beside its conditions; protic solvents are offered when nothing else explains the product.
+
+    A solvent is seldom what reacts, so it is asked only where the reading is unresolved or names no nucleophile for
+    what bonded. Without a product, what a solvent could do is listed, but it settles no fate.
+    """
+    from kb.chem.reading import read_scheme
+
+    first = read_scheme(_with_named(parsed, conditions))
+    solvents = _protic_solvents(conditions)
+    is_open = first.confidence is Confidence.UNRESOLVED or (
+        first.nucleophile is None and first.fate in (Fate.SUBSTITUTION, Fate.ADDITION, Fate.REARRANGED)
+    )
+    if not solvents or not first.ok:
+        return first
+    if parsed.products:
+        if not is_open:
+            return first
+        second = read_scheme(_with_named(parsed, conditions, solvents))
+        return second if second.nucleophile is not None and second.ok else first
+    if first.possible and any(p.fate is Fate.SUBSTITUTION for p in first.possible):
+        return first
+    second = read_scheme(_with_named(parsed, conditions, solvents))
+    same = second.centres == first.centres and second.confidence is first.confidence
+    return dataclasses.replace(first, possible=second.possible) if same else first
+
+
+def _protic_solvents(conditions: Conditions) -> list[str]:
+    """Return the solvents that hold O-H (water, alcohols, carboxylic acids), as SMILES."""
+    from kb.chem.structure import parse_molecule
+    from kb.errors import StructureError
+
+    found = []
+    for solvent in conditions.solvents:
+        if not solvent.smiles or "." in solvent.smiles:
+            continue
+        with contextlib.suppress(StructureError):
+            atoms = parse_molecule(solvent.smiles).GetAtoms()
+            if any(a.GetAtomicNum() == 8 and a.GetTotalNumHs() for a in atoms):
+                found.append(solvent.smiles)
+    return found
+
+
+def _with_named(parsed: Scheme, conditions: Conditions, solvents: Sequence[str] = ()) -> str:
     """Write the scheme with the named components that it leaves out, as agents behind everything that was drawn.
 
-    People draw "substrate >> product" and name the azide; without it the reading could not know what bonds. Agents are
-    counted behind the reactants, so component numbers of what was drawn stay as they are.
+    Solvents that are offered too come last. People draw "substrate >> product" and name the azide; without it the
+    reading could not know what bonds. Agents are counted behind the reactants, so component numbers of what was drawn
+    stay as they are.
     """
     drawn = {f.smiles for f in parsed.left}
-    named = [part for c in conditions.components if c.smiles for part in c.smiles.split(".") if part not in drawn]
+    offered = [*(c.smiles for c in conditions.components if c.smiles), *solvents]
+    named = [part for smiles in offered for part in smiles.split(".") if part not in drawn]
     sides = ([f.smiles_as_entered for f in parsed.reactants], [f.smiles_as_entered for f in parsed.agents] + named)
     products = ".".join(f.smiles_as_entered for f in parsed.products)
     return f"{'.'.join(sides[0])}>{'.'.join(sides[1])}>{products}"
@@ -192,14 +238,14 @@ def _solvent_names(conditions: Conditions) -> frozenset[str]:
 @lru_cache(maxsize=4096)
 def _parts_of(smiles: str) -> frozenset[str]:
     """Return the canonical SMILES of each part of a salt without maps; lone metal cations left out."""
-    from rdkit import Chem
+    from kb.chem.structure import canonical_smiles
+    from kb.errors import StructureError
 
-    mol = Chem.MolFromSmiles(smiles)
-    if mol is None:
+    try:
+        parts = canonical_smiles(smiles)
+    except StructureError:
         return frozenset({smiles})
-    for atom in mol.GetAtoms():
-        atom.SetAtomMapNum(0)
-    return frozenset(p for p in Chem.MolToSmiles(mol).split(".") if not _LONE_CATION.fullmatch(p))
+    return frozenset(p for p in parts.split(".") if not _LONE_CATION.fullmatch(p))
 
 
 def _facts(reading: Reading, fragments: tuple[str, ...], profile: ConditionProfile, run_id: UUID) -> DerivedFacts:
@@ -249,8 +295,12 @@ def _rooted(smiles: str, atom: int | None) -> tuple[str | None, int | None, byte
     from rdkit import Chem, DataStructs
     from rdkit.Chem import rdFingerprintGenerator
 
-    mol = Chem.MolFromSmiles(smiles)
-    if mol is None:
+    from kb.chem.structure import parse_molecule
+    from kb.errors import StructureError
+
+    try:
+        mol = parse_molecule(smiles)
+    except StructureError:
         return None, None, None
     for a in mol.GetAtoms():
         a.SetAtomMapNum(0)

@@ -66,3 +66,42 @@ def test_the_reason_says_what_is_special_about_the_carbon(scheme: str, said: str
 def test_the_text_before_and_after_an_empty_arrow_is_the_same_scheme() -> None:
     first, second = read_scheme("CCBr.N"), read_scheme("CCBr.N>>")
     assert (first.centres, first.possible, first.fate) == (second.centres, second.possible, second.fate)
+
+
+@pytest.mark.parametrize(
+    ("scheme", "why"),
+    [
+        ("FC(F)(F)S(=O)(=O)OC12CCC(CC1)CC2.[N-]=[N+]=[N-]", "a triflate is no protecting group"),
+        ("BrC12CC3CC(CC(C3)C1)C2.[N-]=[N+]=[N-]", "a bridgehead bromide"),
+        ("C=CBr.[N-]=[N+]=[N-]", "azide makes no alkyne of a vinyl bromide"),
+        ("ClC(Cl)Cl.[OH-]", "chloroform is not displaced, and one carbon gives no alkene"),
+    ],
+)
+def test_a_closed_centre_settles_no_fate(scheme: str, why: str) -> None:
+    reading = read_scheme(scheme)
+    assert reading.centre is not None and reading.fate is None, why
+    assert not {str(f.fate) for f in reading.possible} & {"group-loss", "substitution"}, why
+    assert "No product was stated" not in reading.reason
+
+
+@pytest.mark.parametrize("scheme", ["C=CBr", "C/C=C/Br", "Brc1ccccc1", "C=C(C)Cl"])
+def test_a_lone_vinyl_or_aryl_halide_keeps_its_leaving_group(scheme: str) -> None:
+    reading = read_scheme(scheme)
+    assert reading.centre is not None and reading.centre.leaving_group is not None and reading.fate is None
+    assert str(reading.centre.carbon_class) in ("vinyl", "aryl")
+    assert "displacement from the back is closed" in reading.reason
+
+
+def test_alkali_takes_the_acetyl_group_off_and_displaces_nothing() -> None:
+    for ester, alcohol in (("CCOC(C)=O", "CCO"), ("CC(=O)OCCc1ccccc1", "OCCc1ccccc1")):
+        inferred, matched = (read_scheme(f"{ester}.[OH-].[Na+]{right}") for right in ("", f">>{alcohol}"))
+        assert str(inferred.fate) == str(matched.fate) == "group-loss"
+        assert inferred.centres == matched.centres
+        assert {str(f.fate) for f in inferred.possible} == {"group-loss"}
+
+
+@pytest.mark.parametrize("scheme", ["CCOC(C)=O.CC[Mg]Br", "CCOC(=O)c1ccccc1.[OH-].[Na+]"])
+def test_what_meets_an_ester_at_its_carbonyl_carbon_names_no_centre(scheme: str) -> None:
+    reading = read_scheme(scheme)
+    assert (str(reading.confidence), str(reading.fate), reading.centres) == ("inferred", "other", ())
+    assert "carbonyl carbon" in reading.reason

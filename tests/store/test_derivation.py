@@ -5,7 +5,8 @@ from __future__ import annotations
 import pytest
 
 from kb.book.plan_words import plan_from_words
-from kb.store.derivation import account_of_plan, profile_from_json, profile_to_json
+from kb.store.derivation import Account, account_of_plan, profile_from_json, profile_to_json
+from kb.vocabulary import Confidence
 
 
 def reagents(scheme: str, **words: object) -> frozenset[str]:
@@ -30,3 +31,34 @@ def test_the_flask_is_kept_as_plain_structures(
 def test_reagents_survive_the_store_s_text() -> None:
     profile = account_of_plan(plan_from_words({"scheme": "CCCBr", "reagents": ["NaN3"]})).profile
     assert profile_from_json(profile_to_json(profile)) == profile
+
+
+def account(scheme: str, **words: object) -> Account:
+    return account_of_plan(plan_from_words({"scheme": scheme, **words}))
+
+
+def test_a_protic_solvent_is_offered_where_nothing_else_explains_the_product() -> None:
+    told = account("CC1CO1>>CC(OC)CO", reagents=["H2SO4"], solvents=["MeOH"])
+    assert told.reading.confidence is Confidence.MATCHED and told.facts.fate == "substitution"
+    assert told.facts.nucleophile_class == "alcohol"
+    assert told.profile.reagents == account("CC1CO1>>CC(OC)CO", reagents=["H2SO4"]).profile.reagents
+    assert told.profile.solvents == {"methanol"}
+    assert account("CC1CO1>>CC(OC)CO", reagents=["H2SO4"], solvents=["DMF"]).facts.fate is None
+
+
+def test_a_solvent_does_not_push_a_nucleophile_aside() -> None:
+    told = account("CCCBr>>CCCN=[N+]=[N-]", reagents=["NaN3"], solvents=["MeOH"])
+    assert told.facts.nucleophile_class == "azide"
+    assert not any("alcohol" in f.note for f in told.reading.possible)
+
+
+def test_what_a_solvent_could_do_is_listed_but_settles_no_fate() -> None:
+    told = account("CC(C)(C)Br", solvents=["MeOH"])
+    assert told.reading.fate is None
+    assert "COC(C)(C)C" in {f.product for f in told.reading.possible}
+
+
+def test_reading_lone_hydrogen_ions_writes_nothing_to_the_screen(capfd: pytest.CaptureFixture[str]) -> None:
+    account("CCCBr.[H-].[Na+]>>CC=C", solvents=["THF"])
+    account("[H+].CC(C)=C.[H][H]", solvents=["MeOH"])
+    assert capfd.readouterr().err == ""
