@@ -170,8 +170,8 @@ def _carbon_group(graph: Molgraph, atom: int, carbon: int) -> LabileGroup | None
     if graph.elements[atom] == 8 and _is_on_carbamate(graph, atom):
         return None
     name, promoter, fate = _alkyl_group(graph, atom, carbon)
-    # A sulfonate or sulfate is a leaving group on that carbon, no protected acid.
-    fate = Fate.OTHER if any(graph.elements[n] == 16 for n in graph.neighbours[atom]) else fate
+    is_acid_part = graph.elements[atom] == 8 and any(graph.elements[n] == 16 for n in graph.neighbours[atom])
+    fate = Fate.OTHER if is_acid_part else fate  # a leaving group on that carbon, no protected acid
     return LabileGroup(name, fate, promoter, (loss,), carbon, atom)
 
 
