@@ -12,6 +12,8 @@ from kb.exchange.report_plots import curve, interval_bars, stacked_columns
 from kb.exchange.report_words import counted, interval_words
 
 MOST_MISSED = 40
+ENOUGH = 5
+"""Runs from which a point of a plot says something."""
 
 
 def replay_page(report: ReplayReport, source: str = "") -> Page:
@@ -147,7 +149,7 @@ def calibration_page(found: Calibration, source: str = "") -> Page:
         ),
         figures=(1, 2),
     )
-    points = [(r.expected, r.measured) for r in rows]
+    points = [(r.expected, r.measured) for r in rows if r.runs >= ENOUGH]
     plots: tuple[Block, ...] = (
         (curve("Found against expected; on the diagonal they agree", points, "expected", "found", diagonal=True), table)
         if rows

@@ -91,7 +91,7 @@ def curve(
     diagonal: bool = False,
 ) -> Figure:
     """Draw y over x, both 0..1 and shown in percent; `marked` is one point to be ringed, `diagonal` draws y = x."""
-    left, right, top, base = 52, _WIDE - 16, 12, 230
+    left, right, top, base = 52, _WIDE - 30, 12, 230
     width, height = right - left, base - top
 
     def place(point: tuple[float, float]) -> str:
