@@ -18,6 +18,7 @@ if TYPE_CHECKING:
     from kb.book.plan_words import conditions_from_words, plan_from_words
     from kb.book.routes import reckon_route, route_lead
     from kb.book.run_words import runs_from_json
+    from kb.book.settle_words import choices_from_words
     from kb.book.split_words import SplitAnswer, split_from_words
     from kb.book.unrecorded import check_unrecorded
     from kb.book.whole import (
@@ -57,6 +58,7 @@ _HOMES = {
     "open_book": "facade",
     "build_demo": "demo",
     "check_scheme": "words",
+    "choices_from_words": "settle_words",
     "check_unrecorded": "unrecorded",
     "demo_plan": "demo",
     "conditions_from_words": "plan_words",
@@ -86,6 +88,7 @@ __all__ = [
     "calibrate_book",
     "check_scheme",
     "check_unrecorded",
+    "choices_from_words",
     "conditions_from_words",
     "create_book",
     "criteria_from_words",

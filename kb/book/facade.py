@@ -28,7 +28,7 @@ if TYPE_CHECKING:
     from kb.search.criteria import Criteria
     from kb.search.finder import Finder, FindResult
     from kb.store.store import Store
-    from kb.store.values import Check, HistoryEntry, HouseRule, MergeReport, Page
+    from kb.store.values import Check, Conflict, HistoryEntry, HouseRule, MergeReport, Page
 
 
 def open_book(
@@ -170,6 +170,20 @@ class Book:
         """Withdraw a run; it stays readable but no longer speaks."""
         tame_rdkit()
         return self.store.withdraw(code, who=who, why=why)
+
+    def reinstate(self, code: str, *, who: str, why: str) -> Run:
+        """Take a withdrawal back."""
+        tame_rdkit()
+        return self.store.reinstate(code, why, who)
+
+    def conflicts(self) -> tuple[Conflict, ...]:
+        """Return what merged books say differently and nobody has settled yet, by code."""
+        return self.store.conflicts()
+
+    def settle(self, code: str, choices: Mapping[str, Any], *, who: str, why: str) -> Run:
+        """Settle a run's conflicts: disputed field to the value that shall stand; those left out stand as they do."""
+        tame_rdkit()
+        return self.store.settle(code, choices, who, why)
 
     def history(self, code: str) -> tuple[HistoryEntry, ...]:
         """Return what was done to a run, oldest first."""

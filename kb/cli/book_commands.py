@@ -104,7 +104,7 @@ def merge(other: Annotated[str, typer.Argument(help="The other book.")]) -> int:
         lines += wrapped(
             f"{conflict.code}, {conflict.field}: "
             + " or ".join(f"{excerpt(repr(c.value), 100)} ({c.who})" for c in conflict.claims)
-            + "; the first stands until somebody settles it.",
+            + "; the first stands until somebody settles it (`sidepath settle`).",
             2,
         )
     if report.stopped:

@@ -17,6 +17,7 @@ from kb.cli import (
     report_commands,
     route_commands,
     rule_commands,
+    settling_commands,
     split_command,
 )
 from kb.cli.session import Session, set_session
@@ -24,8 +25,8 @@ from kb.cli.strict import make_strict
 
 ORDER = (
     *("demo", "new", "read", "check", "record"),
-    *("runs", "show", "history", "amend", "withdraw", "find", "split", "lookup", "route", "report"),
-    *("import", "export", "merge", "backup", "restore", "verify", "migrate", "tui"),
+    *("runs", "show", "history", "amend", "withdraw", "reinstate", "find", "split", "lookup", "route", "report"),
+    *("import", "export", "merge", "conflicts", "settle", "backup", "restore", "verify", "migrate", "tui"),
 )
 """Commands in the order of a working day; others follow as they are registered."""
 
@@ -74,6 +75,7 @@ for _module in (
     record_commands,
     find_command,
     rule_commands,
+    settling_commands,
     split_command,
     route_commands,
     report_commands,

@@ -100,6 +100,21 @@ def test_two_changes_of_one_field_are_one_conflict(empty_book: Path, tmp_path: P
     assert len(answer.json["conflicts"]) == 1
     assert "60" in str(answer.json["conflicts"]) and "70" in str(answer.json["conflicts"])
     assert "settles" in ask("merge", str(other), book=empty_book).out
+    (waiting,) = ask("conflicts", "--json", book=empty_book).json
+    assert set(waiting) >= {"run", "field", "stands", "claims"} and waiting["field"].endswith("isolated_yield_pct")
+    number = [claim["value"] for claim in waiting["claims"]].index(60) + 1
+    for wrong in ("yield=9", "note=1", "isolated_yield_pct=0", "isolated_yield_pct"):
+        assert ask("settle", "1", "--keep", wrong, "--why", "x", book=empty_book).status == 1
+    settled = ask(
+        *("settle", "1", "--keep", f"isolated_yield_pct={number}", "--why", "weighed", "--as", "EF", "--json"),
+        book=empty_book,
+    )
+    assert (settled.status, settled.json["run"]) == (0, "R-0001")
+    assert ask("show", "1", "--json", book=empty_book).json["outcome"]["isolated_yield_pct"] == 60
+    assert ask("conflicts", book=empty_book).out.strip() == "Nothing waits to be settled."
+    assert ask("settle", "1", "--why", "again", book=empty_book).status == 1
+    ask("merge", str(empty_book), book=other)
+    assert ask("show", "1", "--json", book=other).json["outcome"]["isolated_yield_pct"] == 60
 
 
 def test_a_backup_restores_to_the_same_book(demo_book: Path, tmp_path: Path) -> None:

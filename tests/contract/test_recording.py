@@ -198,6 +198,10 @@ def test_a_withdrawn_run_stays_readable_but_is_listed_and_found_no_more(own_demo
     assert ask("runs", "--withdrawn", "--json", book=own_demo_book).json["total"] == total
     again = ask("withdraw", "158", "--why", "again", "--json", book=own_demo_book)
     assert (again.status, again.error["code"]) == (1, "conflict")
+    back = ask("reinstate", "158", "--why", "right bottle after all", "--as", "AB", "--json", book=own_demo_book)
+    assert (back.status, back.json["withdrawn_why"]) == (0, None)
+    assert ask("runs", "--json", book=own_demo_book).json["total"] == total
+    assert ask("reinstate", "158", "--why", "again", book=own_demo_book).status == 1
 
 
 @pytest.mark.parametrize("command", ["show", "history"])
