@@ -39,11 +39,14 @@ REFUSED = [
     ("C" * 9_990 + "(", "not valid SMILES"),
     ("C(" * 4_000, "not valid SMILES"),
     (".".join(["CCBr"] * 500), "fragments"),
+    ("C" * 10_000, "at most 2,000 are read"),
+    ("C(Br)" * 2_000, "at most 2,000 are read"),
+    ("C(" * 2_000 + "C" + ")" * 2_000 + "Br", "at most 2,000 are read"),
 ]
 READ = [
-    ("C" * 10_000, "a 10 kB chain"),
-    ("C(Br)" * 2_000, "a 10 kB polybromide"),
-    ("C(" * 2_000 + "C" + ")" * 2_000 + "Br", "deep nesting"),
+    ("C" * 1_990 + "Br", "a long chain"),
+    ("C(Br)" * 990, "a long polybromide"),
+    ("C(" * 900 + "C" + ")" * 900 + "Br", "deep nesting"),
     ("BrCC" + "C" * 396 + ".[N-]=[N+]=[N-]>>[N-]=[N+]=NCC" + "C" * 396, "400 atoms, displaced"),
     ("BrC" + "C(Br)" * 199 + ".[N-]=[N+]=[N-]>>[N-]=[N+]=NC" + "C(Br)" * 199, "400 atoms, every other a bromide"),
     ("CC(C)(C)OC(=O)N" + "C(C)C(=O)N" * 70 + "CC(=O)O>>N" + "C(C)C(=O)N" * 70 + "CC(=O)O", "a long Boc peptide"),
