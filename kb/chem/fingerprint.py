@@ -16,16 +16,14 @@ from typing import TYPE_CHECKING
 import numpy as np
 from rdkit import Chem, DataStructs
 
+from kb.chem.screens_keys import MORGAN_BITS, MORGAN_RADIUS
+
 if TYPE_CHECKING:
     from numpy.typing import NDArray
     from rdkit.Chem.rdFingerprintGenerator import FingerprintGenerator64
 
-MORGAN_RADIUS = 2
-MORGAN_BITS = 2048
 PATTERN_BITS = 2048
-
-MORGAN_RECIPE = f"morgan-r{MORGAN_RADIUS}-{MORGAN_BITS}"
-PATTERN_RECIPE = f"pattern-{PATTERN_BITS}"
+"""Width of RDKit's pattern fingerprint, which only comparisons use."""
 
 
 @cache

@@ -25,11 +25,11 @@ from dataclasses import dataclass
 import numpy as np
 from rdkit import Chem, rdBase
 
-from kb.chem.fingerprint import MORGAN_RECIPE, pack_morgan
+from kb.chem.fingerprint import pack_morgan
 from kb.chem.screens_keys import (
     AROMATIC,
     AUGMENTED_BITS,
-    AUGMENTED_RECIPE,
+    BLOBS_RECIPE,
     DOUBLE,
     KEY_ANY_CYCLE,
     KEY_UNRULY,
@@ -52,7 +52,7 @@ from kb.chem.screens_masks import (
 from kb.chem.screens_rings import HiddenRings, small_cycles
 from kb.errors import StructureError
 
-SCREEN_RECIPE = f"{AUGMENTED_RECIPE} {MORGAN_RECIPE} rdkit/{rdBase.rdkitVersion}"
+SCREEN_RECIPE = f"{BLOBS_RECIPE} rdkit/{rdBase.rdkitVersion}"
 """What made the blobs: kinds, parameters, versions. Stored with them, compared before they are searched."""
 
 ANYTHING = ((1 << AUGMENTED_BITS) - 1) & ~0xFF00 | REVISION_MASK

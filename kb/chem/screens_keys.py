@@ -16,6 +16,11 @@ AUGMENTED_REVISION = 1
 """Raised (1 to 255) whenever a structure sets other bits than before; each screen carries it in its second byte."""
 AUGMENTED_RECIPE = f"augmented-{AUGMENTED_REVISION}-{AUGMENTED_BITS}"
 """Name and parameters of these screens; RDKit, which perceives what they are made from, is named beside it."""
+MORGAN_RADIUS = 2
+MORGAN_BITS = 2048
+MORGAN_RECIPE = f"morgan-r{MORGAN_RADIUS}-{MORGAN_BITS}"
+BLOBS_RECIPE = f"{AUGMENTED_RECIPE} {MORGAN_RECIPE}"
+"""What a book stores beside a structure, for whoever names a recipe without loading RDKit."""
 
 SINGLE, DOUBLE, TRIPLE, AROMATIC, OTHER = 1, 2, 3, 4, 5
 """Bond codes in keys; OTHER is anything that a plain query bond cannot mean."""

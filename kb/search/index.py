@@ -18,10 +18,10 @@ from typing import TYPE_CHECKING, Protocol
 import numpy as np
 from rdkit import Chem
 
-from kb.chem.fingerprint import MORGAN_BITS, bits_of, pack_morgan
+from kb.chem.fingerprint import bits_of, pack_morgan
 from kb.chem.query import StructureQuery
 from kb.chem.screens import SCREEN_RECIPE, encode_mol
-from kb.chem.screens_keys import AUGMENTED_BITS, KEY_UNRULY
+from kb.chem.screens_keys import AUGMENTED_BITS, KEY_UNRULY, MORGAN_BITS
 from kb.errors import IndexStale
 from kb.search.matching import Deadline, Matched, MoleculeStore
 from kb.search.planes import BitPlanes, count_planes, counts_of, popcounts, rows_of

@@ -9,7 +9,6 @@ from hypothesis import strategies as st
 from rdkit import Chem, DataStructs
 
 from kb.chem.fingerprint import (
-    MORGAN_BITS,
     bits_of,
     morgan_generator,
     pack_morgan,
@@ -18,6 +17,7 @@ from kb.chem.fingerprint import (
     tanimoto,
     tanimoto_to_each,
 )
+from kb.chem.screens_keys import MORGAN_BITS
 
 SMILES = ("CCBr", "c1ccccc1CBr", "CC(C)(C)OC(=O)NCCO", "OS(=O)(=O)c1ccc(C)cc1", "C[C@H](Br)CC", "[Na+].[Cl-]")
 
