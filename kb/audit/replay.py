@@ -169,12 +169,6 @@ def worry_of(findings: Sequence[Finding], chance_by_likeness: float) -> float:
     return round(1 - (1 - worst) * (1 - chance_by_likeness), 4)
 
 
-def replay(view: RecordView, dated: DatedRecord | None = None, progress: Progress | None = None) -> list[Hindsight]:
-    """Replay every dated run of a view in one go, in date order."""
-    dated = dated or DatedRecord(view)
-    return Replayer(dated).walk(range(len(dated)), len(dated), progress)
-
-
 def _findings(
     plan: Plan, account: Account, view: RecordView, compared: Comparison, rules: Sequence[HouseRule]
 ) -> tuple[Finding, ...]:

@@ -38,7 +38,7 @@ import json
 import re
 import tomllib
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
@@ -85,7 +85,6 @@ class RouteDraft:
     target_mmol: float | None = None
     target_molar_mass: float | None = None
     money: str = ""
-    source: str = field(default="")
 
 
 def read_route(path: Path) -> RouteDraft:

@@ -7,6 +7,9 @@ from pathlib import Path
 
 import pytest
 
+from kb.audit.calibration import calibrate
+from kb.book import Book
+from kb.cli.render_audit import render_calibration
 from tests.asking import ask, is_plain_refusal, widest
 
 ROUTE = """
@@ -27,8 +30,11 @@ yield = "60 (50 to 70)"
 def test_calibration_says_how_far_to_trust_the_book(demo_path: Path) -> None:
     said = ask("audit", "calibration", "--json", book=demo_path).json
     assert said["asked"] > 300 and said["main_share"]["error"] < said["main_share"]["all_runs_error"]
-    text = ask("audit", "calibration", book=demo_path)
-    assert "expected from the book without it" in " ".join(text.out.split()) and widest(text.out) <= 80
+
+
+def test_calibration_as_text_fits_a_terminal(demo: Book) -> None:
+    text = render_calibration(calibrate(demo.view(), most=30))
+    assert "expected from the book without it" in " ".join(text.split()) and widest(text) <= 80
 
 
 @pytest.fixture
