@@ -1,11 +1,8 @@
-"""Packed fingerprints: the bytes that are stored, and the numbers that a similarity needs.
+"""Packed fingerprints: the bytes that are stored, and the Tanimoto coefficient between them.
 
-Owns the Morgan recipe (radius 2, 2048 bits, no chirality), the packing (bit i is bit i % 8 of byte i // 8)
-and the Tanimoto coefficient with its bounds. It refuses to compare fingerprints of different lengths. Two
-empty fingerprints have a similarity of 0: nothing in common is shown, nothing is claimed.
-
-Source of the bound: with a and b bits set, the intersection cannot exceed min(a, b), so the coefficient
-cannot exceed min(a, b) / max(a, b) (arithmetic).
+Owns the packing (bit i is bit i % 8 of byte i // 8) and the making of Morgan fingerprints (radius 2, 2048 bits, no
+chirality). It refuses to compare fingerprints of different lengths. Two empty fingerprints have a similarity of 0:
+nothing in common is shown, nothing is claimed.
 """
 
 from __future__ import annotations
@@ -22,9 +19,6 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
     from rdkit.Chem.rdFingerprintGenerator import FingerprintGenerator64
 
-PATTERN_BITS = 2048
-"""Width of RDKit's pattern fingerprint, which only comparisons use."""
-
 
 @cache
 def morgan_generator() -> FingerprintGenerator64:
@@ -37,14 +31,6 @@ def morgan_generator() -> FingerprintGenerator64:
 def pack_morgan(mol: Chem.Mol) -> bytes:
     """Return the Morgan fingerprint of a molecule, MORGAN_BITS / 8 bytes."""
     return DataStructs.BitVectToBinaryText(morgan_generator().GetFingerprint(mol))
-
-
-def pack_pattern(mol: Chem.Mol) -> bytes:
-    """Return RDKit's pattern fingerprint of a molecule or query, PATTERN_BITS / 8 bytes.
-
-    For a query only those bits are set that every match must have, lists and wildcards included.
-    """
-    return DataStructs.BitVectToBinaryText(Chem.PatternFingerprint(mol, PATTERN_BITS))
 
 
 def bits_of(packed: bytes) -> NDArray[np.intp]:
@@ -87,15 +73,3 @@ def _ones(words: NDArray[np.uint64]) -> NDArray[np.int64]:
     if hasattr(np, "bitwise_count"):
         return np.bitwise_count(words).sum(axis=1, dtype=np.int64)
     return np.unpackbits(words.view(np.uint8), axis=1).sum(axis=1, dtype=np.int64)
-
-
-def popcount_bounds(bits_set: int, at_least: float) -> tuple[int, int]:
-    """Return the fewest and the most bits that a fingerprint of that similarity can have.
-
-    Args:
-        bits_set: bits set in the query.
-        at_least: wanted similarity, above 0 and up to 1.
-    """
-    low = int(np.ceil(bits_set * at_least - 1e-9))
-    high = int(np.floor(bits_set / at_least + 1e-9))
-    return low, high

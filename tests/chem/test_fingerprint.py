@@ -1,4 +1,4 @@
-"""Packed fingerprints agree with RDKit's own objects, the reference here, and bounds hold for any bits."""
+"""Packed fingerprints agree with RDKit's own objects, the reference here, and stay within their bounds."""
 
 from __future__ import annotations
 
@@ -12,8 +12,6 @@ from kb.chem.fingerprint import (
     bits_of,
     morgan_generator,
     pack_morgan,
-    pack_pattern,
-    popcount_bounds,
     tanimoto,
     tanimoto_to_each,
 )
@@ -26,7 +24,6 @@ SMILES = ("CCBr", "c1ccccc1CBr", "CC(C)(C)OC(=O)NCCO", "OS(=O)(=O)c1ccc(C)cc1", 
 def test_packed_bits_are_the_bits_that_rdkit_sets(smiles: str) -> None:
     mol = Chem.MolFromSmiles(smiles)
     assert bits_of(pack_morgan(mol)).tolist() == list(morgan_generator().GetFingerprint(mol).GetOnBits())
-    assert bits_of(pack_pattern(mol)).tolist() == list(Chem.PatternFingerprint(mol).GetOnBits())
     assert len(pack_morgan(mol)) == MORGAN_BITS // 8
 
 
@@ -62,11 +59,5 @@ def test_tanimoto_is_symmetric_and_within_its_bounds(one: bytes, other: bytes) -
     value = tanimoto(one, other)
     assert value == tanimoto(other, one)
     assert 0.0 <= value <= 1.0
-    if value > 0:
-        low, high = popcount_bounds(len(bits_of(one)), value)
-        assert low <= len(bits_of(other)) <= high
-
-
-def test_bounds_leave_only_equal_counts_for_identity() -> None:
-    assert popcount_bounds(40, 1.0) == (40, 40)
-    assert popcount_bounds(40, 0.5) == (20, 80)
+    few, many = sorted((len(bits_of(one)), len(bits_of(other))))
+    assert value <= few / many if many else value == 0.0

@@ -26,9 +26,8 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import pytest
-from rdkit import Chem, RDLogger
+from rdkit import Chem, DataStructs, RDLogger
 
-from kb.chem.fingerprint import pack_pattern
 from kb.chem.screens import SCREEN_RECIPE, encode_mol
 
 DATA = Path(__file__).resolve().parents[1] / "data"
@@ -103,7 +102,8 @@ def _encoded(texts: list[str]) -> list[tuple[str, bytes, bytes, bytes, bytes]]:
         mol = Chem.MolFromSmiles(text)
         if mol is not None:
             blobs = encode_mol(mol)
-            rows.append((text, blobs.mol_binary, blobs.augmented, blobs.morgan, pack_pattern(mol)))
+            pattern = DataStructs.BitVectToBinaryText(Chem.PatternFingerprint(mol))
+            rows.append((text, blobs.mol_binary, blobs.augmented, blobs.morgan, pattern))
     return rows
 
 
