@@ -17,6 +17,7 @@ from numpy.typing import NDArray
 from kb.assess.advice_options import Option, leaving_group_options, list_options, words_of_rows
 from kb.assess.advice_pairs import Paired, pair_runs
 from kb.assess.published_medium import medium_of
+from kb.assess.ranking import best_rows
 from kb.assess.record_view import RecordView
 from kb.assess.table import FATES
 from kb.materials.classes import profile_of
@@ -80,7 +81,7 @@ def advise(
     if wanted is None or not is_open or account.reading.centre is None or not len(view.table):
         return ()
     like = np.flatnonzero(parts["nucleophile"] >= 0.5)
-    near = like[np.argsort(-similarity[like], kind="stable")][:NEAR]
+    near = best_rows(similarity, NEAR, like)
     options = list_options(plan, account.profile, view, near)
     if step is not None:
         options += leaving_group_options(plan, account.reading, view)
@@ -125,8 +126,7 @@ def _by_record(
             usable &= parts[name] >= ALIKE
     if option.kind != "base":
         usable &= parts["reagents"] >= ALIKE_REAGENTS
-    rows = np.flatnonzero(usable)
-    rows = rows[np.argsort(-similarity[rows], kind="stable")][:NEAR]
+    rows = best_rows(similarity, NEAR, np.flatnonzero(usable))
     words = words_of_rows(view, option.kind, rows)
     sides = [[int(r) for r, w in zip(rows, words, strict=True) if w == word] for word in (option.here, option.word)]
     paired = pair_runs(view.table, sides[0], sides[1], shares)

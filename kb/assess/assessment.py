@@ -18,7 +18,7 @@ from kb.assess.caution import find_cautions
 from kb.assess.data_findings import find_data_findings
 from kb.assess.disagreement import word_disagreement
 from kb.assess.endangered import Endangered, find_endangered
-from kb.assess.estimate import estimate, weights_of
+from kb.assess.estimate import estimate
 from kb.assess.evidence import with_evidence
 from kb.assess.house_rules import HouseRule, find_house_rules
 from kb.assess.liability import find_liabilities
@@ -26,6 +26,7 @@ from kb.assess.low_yield import find_low_yield
 from kb.assess.pace import expect_half_life
 from kb.assess.precedent import compare, rank_precedents, word_precedents
 from kb.assess.published import PublishedEstimate, published_estimate
+from kb.assess.ranking import best_rows
 from kb.assess.record_view import RecordView
 from kb.assess.resemblance import find_resemblances
 from kb.assess.stereo_findings import find_stereo_findings
@@ -112,7 +113,7 @@ class _Near:
         if len(self._view.table) <= NEAREST:
             return self._view
         keep = np.zeros(len(self._view.table), dtype=bool)
-        keep[np.argpartition(-self._compared.similarity, NEAREST)[:NEAREST]] = True
+        keep[best_rows(self._compared.similarity, NEAREST)] = True
         return self._view.only(keep)
 
     def serious_of(self, plan: Plan) -> frozenset[str]:
@@ -152,14 +153,15 @@ def estimate_plan(
 ) -> tuple[Estimate, YieldFit | None]:
     """Return what to expect, and the fit behind its yield."""
     similarity = compared.similarity
-    expected = estimate(similarity, view.table, dict(published.fates), "" if published.fates else published.note)
+    no_number = "" if published.fates else published.note
+    expected = estimate(similarity, view.table, dict(published.fates), no_number, dict(published.of_what_reacts))
     wanted = wanted_fate(account)
     share = next((interval.mean for fate, interval in expected.fates if fate is wanted), None)
     if share is None and expected.fates and wanted is not None:
         share = 0.0
     held = (compared.endangered.mine, compared.endangered.runs)
     fit = fit_yield(compared.row, view, similarity, share, held)
-    words = word_disagreement(view, weights_of(similarity), expected.fates[0][0]) if expected.fates else ""
+    words = word_disagreement(view, similarity, expected.fates[0][0]) if expected.fates else ""
     return (
         dataclasses.replace(
             expected,

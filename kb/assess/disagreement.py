@@ -6,13 +6,12 @@ whatever differs between the two runs, or was left unwritten in one of them, is 
 
 from __future__ import annotations
 
-from itertools import combinations
-
 import numpy as np
 from numpy.typing import NDArray
 
-from kb.assess.estimate import DISAGREE_FROM
+from kb.assess.estimate import DISAGREE_FROM, LEAST_SIMILARITY, weights_of
 from kb.assess.precedent import compare, differences
+from kb.assess.ranking import best_rows
 from kb.assess.record_view import RecordView
 from kb.assess.table import FATES
 from kb.record.run import Run
@@ -24,39 +23,30 @@ CLOSEST = 12
 """How many of the heaviest runs are compared."""
 
 
-def word_disagreement(view: RecordView, weight: NDArray[np.float64], fate: Fate) -> str:
+def word_disagreement(view: RecordView, similarity: NDArray[np.float64], fate: Fate) -> str:
     """Return one sentence on the two close runs that disagree most on a fate, "" where none contradict.
 
     Args:
         view: the runs (n).
-        weight: of each run's say (n), 0..1.
+        similarity: of each run to the plan (n).
         fate: on whose share they are compared.
     """
-    column = FATES.index(fate)
-    if _scatter(weight, view.table.shares[:, column]) < DISAGREE_FROM:
+    shares = view.table.shares[:, FATES.index(fate)]
+    rows = best_rows(similarity, CLOSEST, np.flatnonzero((similarity > LEAST_SIMILARITY) & ~np.isnan(shares)))
+    if len(rows) < 2:
         return ""
-    shares = view.table.shares[:, column]
-    heaviest = [
-        int(r) for r in np.argsort(-weight, kind="stable")[:CLOSEST] if weight[r] > 0 and not np.isnan(shares[r])
-    ]
-    pairs = [(a, b) for a, b in combinations(heaviest, 2) if abs(shares[a] - shares[b]) >= LEAST_GAP]
-    if not pairs:
+    weight, share = weights_of(similarity[rows]), shares[rows]
+    mean = np.average(share, weights=weight)
+    if np.sqrt(np.average((share - mean) ** 2, weights=weight)) < DISAGREE_FROM:
         return ""
-    first, second = max(
-        pairs, key=lambda p: float(np.sqrt(weight[p[0]] * weight[p[1]]) * abs(shares[p[0]] - shares[p[1]]))
-    )
-    codes = view.table.codes
-    said = ", ".join(f"{codes[row]} gave {100 * shares[row]:.0f} % {fate}" for row in (first, second))
-    return f"{said}; {_what_differs(view, first, second)}."
-
-
-def _scatter(weight: NDArray[np.float64], shares: NDArray[np.float64]) -> float:
-    """Return the weighted standard deviation of a share between the runs that speak (0..1)."""
-    heard = (weight > 0) & ~np.isnan(shares)
-    if not heard.any():
-        return 0.0
-    mean = np.average(shares[heard], weights=weight[heard])
-    return float(np.sqrt(np.average((shares[heard] - mean) ** 2, weights=weight[heard])))
+    gap = np.abs(share[:, None] - share)
+    telling = np.where(gap >= LEAST_GAP, gap * np.sqrt(weight[:, None] * weight), 0.0)
+    first, second = sorted(np.unravel_index(int(np.argmax(telling)), telling.shape))
+    if not telling[first, second]:
+        return ""
+    pair = (int(rows[first]), int(rows[second]))
+    said = ", ".join(f"{view.table.codes[row]} gave {100 * shares[row]:.0f} % {fate}" for row in pair)
+    return f"{said}; {_what_differs(view, *pair)}."
 
 
 def _what_differs(view: RecordView, first: int, second: int) -> str:

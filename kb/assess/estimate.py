@@ -20,6 +20,7 @@ from functools import lru_cache
 import numpy as np
 from numpy.typing import NDArray
 
+from kb.assess.ranking import best_rows
 from kb.assess.table import FATES, FactTable
 from kb.record.assessment import Estimate
 from kb.record.finding import Interval
@@ -40,11 +41,17 @@ SCATTER_RUNS = 1.0
 """How many runs that prior scatter is worth."""
 WEIGHT_THAT_COUNTS = 0.25
 """Effective precedents below which the record alone gives no number."""
+MOST_RUNS = 500
+"""Runs that are asked at most, the most similar ones."""
 DISAGREE_FROM = 0.18
 """Scatter of the main share between like runs from which it is said (0..1); judgement."""
 NOT_MODELLED = 0.12
 """Share by which an interval of published rates alone is widened towards the middle: starting material left, other
 reactions, decomposition, none of which they know. It holds the runs of the demo book that worked."""
+PRIOR_LEFT = 0.05
+"""What published half-lives are worth for what is left over, in whole runs: they are good to a factor of ten, and
+whoever set the recorded runs up chose conditions under which they go."""
+LEFT = FATES.index(Fate.UNREACTED)
 _SAMPLES = 4000
 
 
@@ -59,6 +66,7 @@ def estimate(
     table: FactTable,
     prior: Mapping[Fate, Interval] | None = None,
     no_number: str = "",
+    of_what_reacts: Mapping[Fate, Interval] | None = None,
 ) -> Estimate:
     """Estimate the shares of a plan; `yield_pct` is left to `yields.fit_yield`.
 
@@ -67,20 +75,21 @@ def estimate(
         table: the runs (n).
         prior: published shares per fate with 80 % intervals, means summing to 1; None = none. Where no run is close
             enough they are the answer as they stand.
+        of_what_reacts: published shares with the unreacted left out, likewise; None = `prior` is that already.
         no_number: why published chemistry forbids a number ("" = it does not); a record may still speak.
 
     Returns:
         An Estimate; `fates` is empty where neither record nor prior says anything, and `note` says why.
     """
-    weight = weights_of(similarity)
-    measured = ~np.isnan(table.shares).all(axis=1) if len(table) else np.zeros(0, dtype=bool)
-    w = weight * measured
+    rows = best_rows(similarity, MOST_RUNS, np.flatnonzero(similarity > LEAST_SIMILARITY))
+    shares = table.shares[rows]
+    w = weights_of(similarity[rows]) * ~np.isnan(shares).all(axis=1)
     effective = float(w.sum())
     from_record = effective >= WEIGHT_THAT_COUNTS
     note = no_number or "No run close enough and no published model for this centre: no number is honest here."
     fates: tuple[tuple[Fate, Interval], ...] = ()
     if from_record:
-        fates, scatter = _shares(w, table.shares, prior or {})
+        fates, scatter = _shares(w, shares, prior or {}, of_what_reacts or prior or {})
         note = _note(effective, scatter, no_number)
     elif prior:
         fates = tuple(sorted(((f, _with_room(i)) for f, i in prior.items()), key=lambda pair: -pair[1].mean))
@@ -130,46 +139,57 @@ def _with_room(interval: Interval) -> Interval:
     return Interval(mean=interval.mean, low=round(low, 4), high=round(high, 4))
 
 
-def _weight_of_prior(surest: Interval) -> float:
+def _weight_of_prior(surest: Interval | None) -> float:
     """Return how many runs the prior is worth: PRIOR_RUNS at its usual spread, more where it is sure, within limits."""
+    if surest is None:
+        return 0.0
     spread = max((surest.high - surest.low) / 2.56, 0.02)
     return min(max(PRIOR_RUNS * USUAL_SPREAD / spread, LEAST_PRIOR), MOST_PRIOR)
 
 
 def _shares(
-    w: NDArray[np.float64], shares: NDArray[np.float64], prior: Mapping[Fate, Interval]
+    w: NDArray[np.float64],
+    shares: NDArray[np.float64],
+    prior: Mapping[Fate, Interval],
+    of_what_reacts: Mapping[Fate, Interval],
 ) -> tuple[tuple[tuple[Fate, Interval], ...], float]:
-    """Return intervals per fate, largest first, and the scatter of the largest (0..1)."""
-    effective = float(w.sum())
-    used = w > 0
-    x = np.nan_to_num(shares[used])
+    """Return intervals per fate, largest first, and the scatter of the largest (0..1).
+
+    What is left over and how the rest divides are two questions. A run speaks of the second as far as it reacted, and
+    the prior as sure as it is of that: a prior that expects little to react may still be certain of the way.
+    """
+    x = np.nan_to_num(shares[w > 0])
     totals = x.sum(axis=1, keepdims=True)
     x = np.divide(x, totals, out=x, where=totals > 0)
-    wx = w[used]
+    wx = w[w > 0]
     prior_mean = np.array([prior[f].mean if f in prior else 0.0 for f in FATES])
     surest = max(prior.values(), key=lambda interval: interval.mean, default=None)
-    prior_weight = _weight_of_prior(surest) if surest else 0.0
+    prior_weight = _weight_of_prior(surest)
+    total = float(w.sum()) + prior_weight
+    mean = (wx @ x + prior_weight * prior_mean) / total
+    left = float((wx @ x[:, LEFT] + PRIOR_LEFT * prior_mean[LEFT]) / (float(w.sum()) + PRIOR_LEFT * bool(prior)))
+    divided = np.array([of_what_reacts[f].mean if f in of_what_reacts else 0.0 for f in FATES])
+    if divided.sum() > 0:
+        weight = _weight_of_prior(max(of_what_reacts.values(), key=lambda interval: interval.mean))
+        way = wx @ x + weight * divided
+        way[LEFT] = 0.0
+        mean = (1.0 - left) * way / way.sum()
+        mean[LEFT] = left
     # The 80 % interval of a normal distribution is 2.56 standard deviations wide.
     prior_scatter = PRIOR_SCATTER if surest is None else max((surest.high - surest.low) / 2.56, 0.02)
-    mean = (wx @ x + prior_weight * prior_mean) / (effective + prior_weight)
     rows: list[tuple[Fate, Interval]] = []
     main_scatter = 0.0
     for place in np.argsort(-mean, kind="stable"):
         m = float(mean[place])
         if m < 0.005:
             continue
-        squares = float(wx @ (x[:, place] - m) ** 2)
-        if prior_weight:
-            squares += prior_weight * (float(prior_mean[place]) - m) ** 2
-        variance = (squares + SCATTER_RUNS * prior_scatter**2 * 4 * m * (1 - m)) / (
-            effective + prior_weight + SCATTER_RUNS
-        )
-        variance *= 1 + 1 / (effective + prior_weight + 1)
+        squares = float(wx @ (x[:, place] - m) ** 2) + prior_weight * (float(prior_mean[place]) - m) ** 2
+        variance = (squares + SCATTER_RUNS * prior_scatter**2 * 4 * m * (1 - m)) / (total + SCATTER_RUNS)
+        variance *= 1 + 1 / (total + 1)
         variance = min(max(variance, 1e-5), 0.95 * m * (1 - m) + 1e-6)
-        concentration = max(m * (1 - m) / variance - 1, 0.05)
-        rows.append((FATES[place], beta_interval(m, concentration)))
+        rows.append((FATES[place], beta_interval(m, max(m * (1 - m) / variance - 1, 0.05))))
         if not main_scatter:
-            main_scatter = float(np.sqrt(squares / (effective + prior_weight)))
+            main_scatter = float(np.sqrt(squares / total))
     return tuple(rows), main_scatter
 
 

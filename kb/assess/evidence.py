@@ -20,6 +20,7 @@ from kb.assess.evidence_motif import FindMotif, motif_came_through
 from kb.assess.forcing import harsher_by_k, say_of
 from kb.assess.liability import get_rule
 from kb.assess.liability_rule import Rule
+from kb.assess.ranking import best_rows
 from kb.assess.record_view import RecordView
 from kb.assess.table import FATES, FactTable
 from kb.record.finding import Evidence, Finding, Interval
@@ -28,6 +29,8 @@ from kb.vocabulary import Fate, Severity
 FEARED_SHARE = 0.3
 """Share of the feared fate from which a run at the centre counts as struck; judgement."""
 MOST_WITNESSES = 48
+MOST_LOOKED_AT = 600
+"""Runs whose centre is compared with the rule's, those nearest in conditions."""
 FEWEST_TO_LOWER = 4.0
 """Survivals, weighed, below which no severity is lowered; judgement."""
 
@@ -130,10 +133,10 @@ def _nearest(rule: Rule, plan: FactTable, view: RecordView) -> list[int]:
     """Return the runs that can bear witness, those nearest in conditions first, at most MOST_WITNESSES."""
     holding = np.unique(np.concatenate([view.rows_with_motif(smarts) for smarts in rule.motifs])).astype(np.intp)
     rows = holding[view.told(("rule", rule.rule_id), rule.applies, holding) == 1]
-    away = np.abs(harsher_by_k(plan, view.table, rows))
-    rows = rows[np.argsort(away, kind="stable")]
+    nearness = -np.abs(harsher_by_k(plan, view.table, rows))
     if rule.side == "bystander":
-        return [int(row) for row in rows[:MOST_WITNESSES]]
+        return [int(row) for row in rows[best_rows(nearness, MOST_WITNESSES)]]
+    rows = rows[best_rows(nearness, MOST_LOOKED_AT)]
     found: list[int] = []
     for row in rows:
         if _is_at_centre(rule, view, int(row)):

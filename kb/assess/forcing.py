@@ -7,6 +7,8 @@ a bath 10 K cooler or a base 1.5 pKaH units weaker is not yet a different case.
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -26,16 +28,45 @@ PKAH_K = 3.0
 SAME_WITHIN_K = 5.0
 
 
+@dataclass(frozen=True, slots=True)
+class Force:
+    """What makes conditions forcing.
+
+    Attributes:
+        acidity, lewis_acid: levels, 0 = none; None = cannot tell.
+        base_pkah: of the strongest base; None = none known.
+        ionising: see `ConditionProfile`.
+        temperature_c: most forcing [degC]; None = not recorded.
+        has_unknown_reagent: so that absence proves nothing.
+    """
+
+    acidity: int | None
+    lewis_acid: int | None
+    base_pkah: float | None
+    ionising: bool | None
+    temperature_c: float | None
+    has_unknown_reagent: bool
+
+
+def force_of(profile: ConditionProfile) -> Force:
+    """Return what makes a set of conditions forcing."""
+    return Force(
+        _level(profile, "acidity"),
+        _level(profile, "lewis_acid"),
+        profile.base_pkah,
+        profile.ionising,
+        profile.temperature_c,
+        profile.has_unknown_reagent,
+    )
+
+
 def is_at_least_as_forcing(plan: ConditionProfile, failed: ConditionProfile) -> bool | None:
     """Compare a plan with conditions that failed.
 
     Returns:
         True or False; None where a temperature or the components are not recorded and nothing else decides.
     """
-    answers = [_driver(plan, failed), _temperature(plan, failed)]
-    if False in answers:
-        return False
-    return None if None in answers else True
+    return forces_as_much(force_of(plan), force_of(failed))
 
 
 def is_no_more_forcing(plan: ConditionProfile, failed: ConditionProfile) -> bool | None:
@@ -43,19 +74,32 @@ def is_no_more_forcing(plan: ConditionProfile, failed: ConditionProfile) -> bool
     return is_at_least_as_forcing(failed, plan)
 
 
+def forces_as_much(plan: Force, failed: Force) -> bool | None:
+    """Do what `is_at_least_as_forcing` does, for forces worked out before."""
+    answers = (_driver(plan, failed), _temperature(plan, failed))
+    if False in answers:
+        return False
+    return None if None in answers else True
+
+
+def forces_no_more(plan: Force, failed: Force) -> bool | None:
+    """Do what `is_no_more_forcing` does, for forces worked out before."""
+    return forces_as_much(failed, plan)
+
+
 def _level(profile: ConditionProfile, fact: str) -> int | None:
     word = getattr(profile, fact)
     return LEVELS[fact].index(word) if word is not None else None
 
 
-def _driver(plan: ConditionProfile, failed: ConditionProfile) -> bool | None:
+def _driver(plan: Force, failed: Force) -> bool | None:
     """Compare what does the forcing: the acid, the Lewis acid, the base, or failing these the medium."""
-    acid = max(_level(failed, "acidity") or 0, _level(failed, "lewis_acid") or 0)
+    acid = max(failed.acidity or 0, failed.lewis_acid or 0)
     if acid:
-        mine = [_level(plan, "acidity"), _level(plan, "lewis_acid")]
-        if max((m for m in mine if m is not None), default=0) >= acid:
+        if max(plan.acidity or 0, plan.lewis_acid or 0) >= acid:
             return True
-        return None if None in mine and plan.has_unknown_reagent else False
+        is_open = plan.acidity is None or plan.lewis_acid is None
+        return None if is_open and plan.has_unknown_reagent else False
     if failed.base_pkah is not None and failed.base_pkah >= STRONG_BASE_PKAH:
         if plan.base_pkah is None:
             return None if plan.has_unknown_reagent else False
@@ -65,7 +109,7 @@ def _driver(plan: ConditionProfile, failed: ConditionProfile) -> bool | None:
     return True
 
 
-def _temperature(plan: ConditionProfile, failed: ConditionProfile) -> bool | None:
+def _temperature(plan: Force, failed: Force) -> bool | None:
     if failed.temperature_c is None or plan.temperature_c is None:
         return None
     return plan.temperature_c >= failed.temperature_c - MARGIN_K

@@ -18,7 +18,8 @@ from kb.assess.precedent import compare
 from kb.assess.published_runs import step_of_run
 from kb.assess.record_view import RecordView
 from kb.assess.yields import YieldFit, fit_yield
-from kb.physorg.competition import compete
+from kb.physorg.competition import Share, compete
+from kb.physorg.conversion import DEFAULT_TIME_H
 from kb.record.assessment import Estimate
 from kb.record.finding import Interval
 from kb.vocabulary import Fate
@@ -60,7 +61,7 @@ def expect_left_out(
     if with_substrate:
         same = view.known.setdefault("substrates", np.array(table.substrate, dtype=object))
         similarity[same == table.substrate[row]] = 0.0
-    expected = estimate(similarity, table, _prior(view, row))
+    expected = estimate(similarity, table, *_prior(view, row))
     word = table.word("fate", row)
     share = next((i.mean for f, i in expected.fates if word is not None and f is Fate(word)), None)
     if share is None and expected.fates and word is not None:
@@ -69,8 +70,14 @@ def expect_left_out(
     return LeftOut(row=row, expected=expected, fit=fit)
 
 
-def _prior(view: RecordView, row: int) -> dict[Fate, Interval]:
+def _prior(view: RecordView, row: int) -> tuple[dict[Fate, Interval], str, dict[Fate, Interval]]:
+    """Return published shares of everything, nothing to say, and published shares of what reacts."""
     step = step_of_run(view, row)
     if step is None:
-        return {}
-    return {fate: Interval(mean=s.mean, low=s.low, high=s.high) for fate, s in compete(step).fates}
+        return {}, "", {}
+    result = compete(step, view.table.number("time_h", row) or DEFAULT_TIME_H)
+    return _intervals(result.fates_after or result.fates), "", _intervals(result.fates)
+
+
+def _intervals(shares: tuple[tuple[Fate, Share], ...]) -> dict[Fate, Interval]:
+    return {fate: Interval(mean=s.mean, low=s.low, high=s.high) for fate, s in shares}

@@ -15,6 +15,7 @@ from numpy.typing import NDArray
 
 from kb.assess.estimate import weights_of
 from kb.assess.published_runs import published_run
+from kb.assess.ranking import best_rows
 from kb.assess.record_view import RecordView
 from kb.assess.table import FATES
 from kb.record.finding import Interval
@@ -43,15 +44,16 @@ def expect_half_life(published: Interval | None, view: RecordView, similarity: N
         return None
     centre = math.log10(published.mean)
     spread = max((math.log10(published.high) - math.log10(max(published.low, 1e-30))) / (2 * _Z80), RESIDUAL_SD)
-    weight = weights_of(similarity)
+    rows = best_rows(similarity, NEAREST)
+    weight = weights_of(similarity[rows])
     off: list[float] = []
     heard: list[float] = []
-    for row in np.argsort(-weight, kind="stable")[:NEAREST].tolist():
-        measured = half_life_of(view, row) if weight[row] > 0 else None
+    for row, say in zip(rows.tolist(), weight.tolist(), strict=True):
+        measured = half_life_of(view, row) if say > 0 else None
         expected = published_run(view, row) if measured is not None else None
         if measured is not None and expected is not None and expected.half_life_h:
             off.append(math.log10(measured) - math.log10(expected.half_life_h))
-            heard.append(float(weight[row]))
+            heard.append(say)
     total = sum(heard)
     centre += sum(w * d for w, d in zip(heard, off, strict=True)) / (total + PRIOR_RUNS)
     sd = math.hypot(spread / math.sqrt(1 + total / PRIOR_RUNS), RESIDUAL_SD)

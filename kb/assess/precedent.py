@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kb.assess.kernel import combine, similarity_parts
+from kb.assess.ranking import best_rows
 from kb.assess.table import FactTable, flag_words
 from kb.record.assessment import Precedent
 from kb.vocabulary import Verdict
@@ -20,7 +21,7 @@ WORTH_SHOWING = 0.4
 
 def rank_precedents(similarity: NDArray[np.float64], top: int) -> NDArray[np.intp]:
     """Return row numbers of the `top` most similar runs worth showing, best first; ties keep the record's order."""
-    order = np.argsort(-similarity, kind="stable")[: max(top, 0)]
+    order = best_rows(similarity, top)
     return order[similarity[order] >= WORTH_SHOWING]
 
 

@@ -16,7 +16,8 @@ from numpy.typing import NDArray
 
 from kb.assess.estimate import loss_chance
 from kb.assess.evidence_motif import finder_of, motif_came_through
-from kb.assess.forcing import harsher_by_k, is_at_least_as_forcing, is_no_more_forcing
+from kb.assess.forcing import Force, force_of, forces_as_much, forces_no_more, harsher_by_k
+from kb.assess.ranking import best_rows
 from kb.assess.record_view import RecordView
 from kb.assess.resemblance_motifs import gather_motifs
 from kb.assess.table import FactTable
@@ -38,7 +39,7 @@ _NOTHING_HAPPENED = frozenset({"no-reaction", "stalled"})
 _NOT_CHEMISTRY = frozenset({"emulsion", "isolation-loss", "reagent-quality", "other"})
 UNNAMED = "failed, mode not named"
 
-Compare = Callable[[ConditionProfile, ConditionProfile], bool | None]
+Compare = Callable[[Force, Force], bool | None]
 
 
 def find_resemblances(
@@ -96,12 +97,12 @@ def _at_the_centre(
     is_alike = np.ones(len(view.table), dtype=bool)
     for name, least in LEAST_PARTS.items():
         is_alike &= parts[name] >= least
-    alike = np.flatnonzero(is_alike)
-    alike = alike[np.argsort(-similarity[alike], kind="stable")][:MOST_ALIKE]
+    alike = best_rows(similarity, MOST_ALIKE, np.flatnonzero(is_alike))
     findings = []
+    mine = force_of(profile)
     for mode, failed in _kinds_of_failure(view, alike).items():
-        compare = is_no_more_forcing if mode in _NOTHING_HAPPENED else is_at_least_as_forcing
-        answers = _compared(view, failed, lambda other, c=compare: c(profile, other))  # type: ignore[misc]
+        compare = forces_no_more if mode in _NOTHING_HAPPENED else forces_as_much
+        answers = _compared(view, failed, lambda other, c=compare: c(mine, other))  # type: ignore[misc]
         lost = [r for r, answer in answers.items() if answer is not False]
         if not lost:
             continue
@@ -127,22 +128,29 @@ def _kinds_of_failure(view: RecordView, alike: NDArray[np.intp]) -> dict[str, li
     return dict(sorted(kinds.items()))
 
 
-def _compared(
-    view: RecordView, rows: Sequence[int], compare: Callable[[ConditionProfile], bool | None]
-) -> dict[int, bool | None]:
+def _compared(view: RecordView, rows: Sequence[int], compare: Callable[[Force], bool | None]) -> dict[int, bool | None]:
     """Return what a comparison says of each row's conditions, asked once per distinct profile."""
     codes = {int(view.table.profile[row]) for row in rows}
-    told = {code: compare(view.profile_of_code(code)) for code in codes}
+    told = {code: compare(_force(view, code)) for code in codes}
     return {row: told[int(view.table.profile[row])] for row in rows}
 
 
 def _through_as_much(view: RecordView, others: Sequence[int], failed: Sequence[int], compare: Compare) -> list[int]:
     """Return the rows under conditions at least as forcing (or, by `compare`, no more so) as some failed run's."""
-    profiles = [view.profile_of_code(code) for code in {int(view.table.profile[r]) for r in failed}]
-    profiles.sort(key=lambda p: p.temperature_c or 0.0, reverse=compare is is_no_more_forcing)
-    mildest = profiles[:_MILDEST]
+    forces = [_force(view, code) for code in {int(view.table.profile[r]) for r in failed}]
+    forces.sort(key=lambda force: force.temperature_c or 0.0, reverse=compare is forces_no_more)
+    mildest = forces[:_MILDEST]
     answers = _compared(view, others, lambda other: any(compare(other, one) for one in mildest))
     return [row for row in others if answers[row]]
+
+
+def _force(view: RecordView, code: int) -> Force:
+    """Return the force of a condition profile by its code, kept."""
+    key = ("force", view.table.profiles[code])
+    if key not in view.known:
+        view.known[key] = force_of(view.profile_of_code(code))
+    force: Force = view.known[key]
+    return force
 
 
 def _spoke(view: RecordView, row: int) -> bool:
@@ -162,7 +170,8 @@ def _elsewhere(
     failed = np.zeros(len(view.table), dtype=bool)
     for mode in modes_that_lose_a_group() & set(view.modes):
         failed |= view.failed_in(mode)
-    answers = _compared(view, np.flatnonzero(failed).tolist(), lambda other: is_at_least_as_forcing(profile, other))
+    mine = force_of(profile)
+    answers = _compared(view, np.flatnonzero(failed).tolist(), lambda other: forces_as_much(mine, other))
     concerns = np.zeros(len(view.table), dtype=bool)
     concerns[[row for row, answer in answers.items() if answer is not False]] = True
     wanted = [m for p in products if (m := view.mol(p)) is not None]
@@ -192,9 +201,9 @@ def _elsewhere(
 def _motif_survived(view: RecordView, plan: FactTable, smarts: str, failed: Sequence[int]) -> list[int]:
     """Return the rows in which a motif came through conditions at least as forcing as some failed run's."""
     holding = np.setdiff1d(view.rows_with_motif(smarts), np.array(failed, dtype=np.intp))
-    away = np.abs(harsher_by_k(plan, view.table, holding))
-    nearest = holding[np.argsort(away, kind="stable")][:MOST_WITNESSES].tolist()
-    through = _through_as_much(view, nearest, failed, is_at_least_as_forcing)
+    nearness = -np.abs(harsher_by_k(plan, view.table, holding))
+    nearest = holding[best_rows(nearness, MOST_WITNESSES)].tolist()
+    through = _through_as_much(view, nearest, failed, forces_as_much)
     view.fetch(through)
     find = finder_of(smarts)
     return [row for row in through if motif_came_through(view.run(row), find, view.mol)]

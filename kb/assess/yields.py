@@ -30,6 +30,7 @@ from numpy.typing import NDArray
 from kb.assess.estimate import WEIGHT_THAT_COUNTS, beta_interval, weights_of
 from kb.assess.kernel import centre_likeness, pairwise_part
 from kb.assess.published_runs import published_share
+from kb.assess.ranking import best_rows
 from kb.assess.record_view import RecordView
 from kb.assess.table import FATES, FactTable, stack
 from kb.record.finding import Interval
@@ -90,11 +91,10 @@ def fit_yield(
         The fit, or None where no run with a yield is close enough.
     """
     table = view.table
-    usable = np.flatnonzero(~np.isnan(table.yield_pct))
-    if not len(usable) or weights_of(similarity[usable]).sum() < WEIGHT_THAT_COUNTS:
-        return None
-    rows = usable[np.argsort(-similarity[usable], kind="stable")[:NEAREST]]
+    rows = best_rows(similarity, NEAREST, np.flatnonzero(~np.isnan(table.yield_pct)))
     rows = rows[similarity[rows] > 0]
+    if weights_of(similarity[rows]).sum() < WEIGHT_THAT_COUNTS:
+        return None
     near = table.rows(rows)
     share = np.array([expected_share_of(view, int(row)) for row in rows])
     mine = np.nan if expected_share is None else expected_share
