@@ -14,8 +14,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kb.assess.advice import advise
-from kb.assess.caution import find_cautions
-from kb.assess.data_findings import find_data_findings
+from kb.assess.caution import drop_told, find_cautions
+from kb.assess.data_findings import ABOVE_BOILING, find_data_findings
 from kb.assess.disagreement import word_disagreement
 from kb.assess.endangered import Endangered, find_endangered
 from kb.assess.estimate import estimate
@@ -220,9 +220,10 @@ def find_findings(
         conditions=plan.conditions,
         products=account.products,
     )
+    told_by_pressure = any(c.rule_id == "hazard-pressure" for c in cautions)
     return sort_findings(
         [
-            *liabilities,
+            *drop_told(liabilities, cautions),
             *resemblances,
             *find_low_yield(
                 fit, view, compared.similarity, centre.component if centre else None, centre.atom if centre else None
@@ -230,7 +231,7 @@ def find_findings(
             *find_house_rules(house_rules, account, view),
             *cautions,
             *find_stereo_findings(account, published, {f.rule_id for f in liabilities}),
-            *find_data_findings(plan, account),
+            *(f for f in find_data_findings(plan, account) if f.rule_id != ABOVE_BOILING or not told_by_pressure),
         ]
     )
 

@@ -6,15 +6,21 @@ spoil the step.
 
 from __future__ import annotations
 
+from kb.assess.caution_mixture import is_vessel_closed
 from kb.record.finding import Finding
 from kb.record.outcome import Outcome
 from kb.record.plan import Plan
 from kb.store.derivation import Account
-from kb.vocabulary import FindingKind, Severity
+from kb.vocabulary import FindingKind, Role, Severity
 
 ADDS_UP_WITHIN = 0.03
 """How far a split may miss 100 % before it is said; integrals are rarely better than 3 %, common practice."""
+ABOVE_BY_K = 3.0
+BELOW_BY_K = 1.0
+WEAKEST_BASE_PKAH = 4.0
+"""From here a base takes the proton of a strong acid; common practice."""
 _PRACTICE = "common practice"
+ABOVE_BOILING = "data:above-boiling-point"
 
 
 def find_data_findings(plan: Plan, account: Account) -> tuple[Finding, ...]:
@@ -57,17 +63,8 @@ def find_data_findings(plan: Plan, account: Account) -> tuple[Finding, ...]:
                 "Rules that ask for the absence of an acid, base or metal cannot be told. Check by hand.",
             )
         )
-    findings += _temperature_findings(account)
-    if profile.acidity == "strong" and profile.base_pkah is not None and profile.base_pkah > 4:
-        findings.append(
-            _note(
-                "data:acid-and-base",
-                Severity.CAUTION,
-                "Acid and base together",
-                f"{profile.acid_name or 'A strong acid'} and {profile.base_name or 'a base'} (pKaH "
-                f"{profile.base_pkah:.1f}) will neutralise each other; say which is in excess, or record two steps.",
-            )
-        )
+    findings += _temperature_findings(plan, account)
+    findings += _acid_and_base(plan, account)
     return tuple(findings)
 
 
@@ -97,34 +94,54 @@ def find_outcome_findings(outcome: Outcome) -> tuple[Finding, ...]:
     return tuple(findings)
 
 
-def _temperature_findings(account: Account) -> list[Finding]:
+def _temperature_findings(plan: Plan, account: Account) -> list[Finding]:
     profile = account.profile
     findings = []
-    if profile.temperature_c is not None and profile.bp_c is not None and profile.temperature_c > profile.bp_c + 3:
+    is_closed = is_vessel_closed(plan.conditions.vessel)
+    hot, cold = profile.temperature_c, profile.temperature_low_c
+    if hot is not None and profile.bp_c is not None and hot > profile.bp_c + ABOVE_BY_K and is_closed is not True:
+        where = "In an open vessel" if is_closed is False else "Unless the vessel is closed"
         findings.append(
             _note(
                 "data:above-boiling-point",
                 Severity.CAUTION,
                 "Above the solvent's boiling point",
-                f"{profile.temperature_c:.0f} °C against a boiling point of {profile.bp_c:.0f} °C: only in a vessel "
-                "rated for the pressure, and by your local rules; otherwise the bath temperature is not the pot's.",
+                f"{hot:.0f} °C against a boiling point of {profile.bp_c:.0f} °C. {where} the pot stays at the boiling "
+                "point, whatever the bath says; a closed vessel must be rated for the pressure, by your local rules.",
             )
         )
-    if (
-        profile.temperature_low_c is not None
-        and profile.mp_c is not None
-        and profile.temperature_low_c < profile.mp_c - 1
-    ):
+    if cold is not None and profile.mp_c is not None and cold < profile.mp_c - BELOW_BY_K:
         findings.append(
             _note(
                 "data:below-melting-point",
                 Severity.CAUTION,
                 "Below the solvent's melting point",
-                f"{profile.temperature_low_c:.0f} °C against a melting point of {profile.mp_c:.0f} °C: the pot may "
-                "freeze; add a co-solvent.",
+                f"{cold:.0f} °C against a melting point of {profile.mp_c:.0f} °C: the pot may freeze; add a "
+                "co-solvent.",
             )
         )
     return findings
+
+
+def _acid_and_base(plan: Plan, account: Account) -> list[Finding]:
+    """Return the finding that an acid and a base were given for one flask, with what is taken to be left of them."""
+    profile = account.profile
+    given = {role: [c.name for c in plan.conditions.components if c.role is role] for role in (Role.ACID, Role.BASE)}
+    is_strong = profile.acidity == "strong" and profile.base_pkah is not None and profile.base_pkah > WEAKEST_BASE_PKAH
+    if not is_strong and not (given[Role.ACID] and given[Role.BASE]):
+        return []
+    acid = given[Role.ACID][0] if given[Role.ACID] else profile.acid_name or "a strong acid"
+    base = given[Role.BASE][0] if given[Role.BASE] else profile.base_name or "a base"
+    left = [word for word in (profile.acid_name, profile.base_name) if word] or ["neither"]
+    return [
+        _note(
+            "data:acid-and-base",
+            Severity.CAUTION,
+            "Acid and base together",
+            f"{acid} and {base} neutralise each other; taken to be left here: {' and '.join(left)}. Give equivalents "
+            "of both, or two steps.",
+        )
+    ]
 
 
 def _note(rule_id: str, severity: Severity, title: str, why: str) -> Finding:

@@ -27,7 +27,7 @@ if TYPE_CHECKING:
     from kb.chem.scheme import Scheme
     from kb.record.plan import Plan
 
-RECIPE = "facts/3"
+RECIPE = "facts/4"
 """Name of what makes DerivedFacts; the screens' and RDKit's are appended where facts are stored."""
 
 SCREENS = "augmented-1-2048;pattern-2048;morgan-r2-2048"
