@@ -2,7 +2,8 @@
 
 It owns a rule's checks before it is accepted, its trial on the whole book, and its findings. Keeping rules is the
 store's business. A rule is a motif (SMARTS, optional) and a condition line (`kb.assess.predicate`), with the
-group's words.
+group's words. Where the step is the loss of a group and the stated product lacks the motif, its loss is what is wanted
+and the rule is silent.
 """
 
 from __future__ import annotations
@@ -11,13 +12,16 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
+import numpy as np
+
 from kb.assess.predicate import parse_predicate
 from kb.assess.record_view import RecordView
+from kb.assess.table import WORDS
 from kb.errors import QueryError
 from kb.record.finding import Finding
 from kb.store.derivation import Account
 from kb.store.values import HouseRule
-from kb.vocabulary import FindingKind, Severity
+from kb.vocabulary import Fate, FindingKind, Severity, Verdict
 
 
 def check_rule(rule: HouseRule) -> None:
@@ -84,23 +88,25 @@ def find_house_rules(rules: Sequence[HouseRule], account: Account, view: RecordV
 def try_rule(rule: HouseRule, view: RecordView) -> RuleTrial:
     """Try a rule on every standing run of the book."""
     predicate = parse_predicate(rule.when)
-    rows = range(len(view.table)) if not rule.motif else map(int, view.rows_with_motif(rule.motif))
+    rows = view.rows_with_motif(rule.motif) if rule.motif else np.arange(len(view.table))
+    told = view.told(("house", rule.when), predicate.evaluate, rows)
     hits, alarms, undecided = [], [], []
-    for row in rows:
-        answer = predicate.evaluate(view.profile(row))
-        if answer is False:
+    for row, answer in zip(rows.tolist(), told.tolist(), strict=True):
+        if answer == 0:
             continue
-        code = view.table.codes[row]
-        verdict = view.table.word("verdict", row)
-        if answer is None or verdict is None:
+        code, verdict = view.table.codes[row], view.table.word("verdict", row)
+        if answer < 0 or verdict is None:
             undecided.append(code)
-        elif verdict == "failed" or (verdict == "partly" and view.failures[row]):
+        elif verdict == Verdict.FAILED or (verdict == Verdict.PARTLY and view.failures[row]):
             hits.append(code)
         else:
             alarms.append(code)
-    failures = sum(view.table.word("verdict", r) == "failed" for r in range(len(view.table)))
+    failed = WORDS["verdict"].index(Verdict.FAILED)
     return RuleTrial(
-        hits=tuple(hits), false_alarms=tuple(alarms), undecided=tuple(undecided), failures_in_book=failures
+        hits=tuple(hits),
+        false_alarms=tuple(alarms),
+        undecided=tuple(undecided),
+        failures_in_book=int((view.table.words["verdict"] == failed).sum()),
     )
 
 
@@ -108,12 +114,20 @@ def _where(rule: HouseRule, account: Account, view: RecordView) -> tuple[int | N
     if not rule.motif:
         return None, ()
     query = _query(rule.motif)
+    wanted = [mol for smiles in account.products if (mol := view.mol(smiles)) is not None]
     for component, smiles in enumerate(account.fragments):
         mol = view.mol(smiles)
-        match = mol.GetSubstructMatch(query) if mol is not None else ()
-        if match:
-            return component, tuple(match)
+        matches = mol.GetSubstructMatches(query) if mol is not None else ()
+        if not matches:
+            continue
+        is_meant = account.reading.fate is Fate.GROUP_LOSS and sum(_count(query, m) for m in wanted) < len(matches)
+        if not (wanted and is_meant):
+            return component, tuple(matches[0])
     return None
+
+
+def _count(query: Any, mol: Any) -> int:
+    return len(mol.GetSubstructMatches(query))
 
 
 def _query(smarts: str) -> Any:

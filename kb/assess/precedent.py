@@ -86,6 +86,7 @@ def differences(plan: FactTable, table: FactTable, row: int, parts: dict[str, ND
     if mine != theirs:
         say("nucleophile", _instead(theirs, mine, "no nucleophile"))
     words += _base_words(plan, table, row, parts)
+    words += _reagent_words(plan, table, row, parts)
     if plan.protic[0] >= 0 and table.protic[row] >= 0 and plan.protic[0] != table.protic[row]:
         say("solvent", "protic solvent" if table.protic[row] else "aprotic solvent")
     elif parts["solvent"][row] < 0.75 and table.protic[row] >= 0:
@@ -130,6 +131,26 @@ def _base_words(
     if bulk is not None and bulk != plan.word("base_bulk", 0):
         return [(alike, f"{bulk} base")]
     return []
+
+
+def _reagent_words(
+    plan: FactTable, table: FactTable, row: int, parts: dict[str, NDArray[np.float64]]
+) -> list[tuple[float, str]]:
+    """Name a reagent that only the run has; what the nucleophile and the base already say is left out."""
+    mine, theirs = plan.flasks.sets[int(plan.flask[0])], table.flasks.sets[int(table.flask[row])]
+    added, gone = sorted(theirs - mine), sorted(mine - theirs)
+    same_class = plan.nucleophile_word(0) == table.nucleophile_word(row)
+    if not added or not gone or not same_class:
+        return []
+    return [(float(parts["reagents"][row]), f"{_name(added[0])}, not {_name(gone[0])}")]
+
+
+def _name(reagent: str) -> str:
+    """Return what the catalogue calls a structure, else the structure itself."""
+    from kb.materials.names import by_smiles
+
+    entry = by_smiles(reagent)
+    return entry.name if entry is not None else reagent
 
 
 def _instead(theirs: str | None, mine: str | None, absent: str) -> str:
