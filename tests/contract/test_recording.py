@@ -87,6 +87,9 @@ def test_of_several_runs_all_are_kept_or_none(empty_book: Path) -> None:
     assert (answer.status, answer.error["code"]) == (1, "structure")
     assert "Run 2 of 2" in answer.error["message"]
     assert ask("runs", "--json", book=empty_book).json["total"] == 0
+    there = ask("record", "CCI>>CCO", "--as", "AB", "--json", book=empty_book).out
+    assert ask("record", "--from", "-", book=empty_book, stdin='{"scheme":"CCBr>>CCO"}\n' + there).status == 1
+    assert ask("runs", "--json", book=empty_book).json["total"] == 1
 
 
 def test_the_same_run_is_not_recorded_twice(empty_book: Path) -> None:
