@@ -37,7 +37,7 @@ def read_scheme_file(path: Path) -> str:
     Raises:
         StructureError: when it is missing, unreadable, too large, or holds no structure that we can use.
     """
-    shown = make_visible(str(path))
+    shown = make_visible(str(path), limit=300)
     try:
         if path.stat().st_size > LARGEST_FILE:
             raise StructureError(f"The file '{shown}' is too large for one scheme.", "Export one reaction.", shown)

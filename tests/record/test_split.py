@@ -34,7 +34,10 @@ def test_the_scale_of_the_integrals_does_not_matter_and_shares_add_up(rows: list
 def test_the_interval_agrees_with_a_monte_carlo_of_the_same_errors() -> None:
     values, protons = np.array([3.0, 1.0, 0.2]), np.array([3, 1, 2])
     split = split_from_signals(
-        {str(i): Signal(value=float(v), per_molecule=int(p)) for i, (v, p) in enumerate(zip(values, protons, strict=True))}
+        {
+            str(i): Signal(value=float(v), per_molecule=int(p))
+            for i, (v, p) in enumerate(zip(values, protons, strict=True))
+        }
     )
     rng = np.random.default_rng(5)
     sd = np.sqrt((0.03 * values) ** 2 + (0.005 * values.max()) ** 2)
