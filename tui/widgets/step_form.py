@@ -89,6 +89,8 @@ class LineInput(SafeInput):
 
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("enter", "leave_line", "Next line", show=False, priority=True, id="form.enter"),
+        Binding("tab", "app.focus_next", "Next line", show=False, priority=True, id="form.tab"),
+        Binding("shift+tab", "app.focus_previous", "Line before", show=False, priority=True, id="form.shift-tab"),
         Binding("down", "app.focus_next", "Next line", show=False, priority=True, id="form.next"),
         Binding("up", "app.focus_previous", "Line before", show=False, priority=True, id="form.previous"),
     ]
