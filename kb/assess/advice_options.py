@@ -23,9 +23,10 @@ from kb.record.conditions import Conditions
 from kb.record.plan import Plan
 from kb.vocabulary import LeavingGroup, Role
 
-STEP_K = 20.0
+STEP_K = 10.0
 """Temperatures are told apart by bands of this width, so that 58 and 62 degC pair up."""
-FARTHEST_K = 60.0
+NEAREST_K, FARTHEST_K = 15.0, 60.0
+"""How far a temperature on offer may be from the plan's."""
 MOST_PER_KIND = 4
 _SWAPPED: dict[LeavingGroup, str] = {
     LeavingGroup.CHLORIDE: "Cl",
@@ -108,7 +109,8 @@ def list_options(plan: Plan, profile: ConditionProfile, view: RecordView, near: 
                 rows_of.setdefault(word, []).append(int(row))
         words = sorted(rows_of, key=lambda w: -len(rows_of[w]))
         if kind == "temperature":
-            words = [w for w in words if abs(_degrees(w) - (profile.temperature_c or 0.0)) <= FARTHEST_K]
+            planned = profile.temperature_c or 0.0
+            words = [w for w in words if NEAREST_K <= abs(_degrees(w) - planned) <= FARTHEST_K]
         for word in words[:MOST_PER_KIND]:
             changed = _with_change(plan, kind, word, rows_of[word][0], view)
             if changed is not None:

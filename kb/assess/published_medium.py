@@ -81,8 +81,8 @@ def medium_of(
     if base is not None and (base in _CONSUMED or base == word) and word is not None:
         # What the base made of the nucleophile is then the strongest base left.
         base, pkah = (None, None) if base in _CONSUMED else (base, pkah)
-    if word == "alkoxide" and base == "tertiary_alkoxide" and nucleophile is None:
-        word = base  # no alcohol was drawn that the base would turn into another alkoxide
+    if word == "alkoxide" and base == "tertiary_alkoxide" and (nucleophile is None or _is_only_hindered(profile)):
+        word = base  # there is no alcohol that the base would turn into another alkoxide
     base_molar = None
     if base is None and "water" in profile.solvent_classes and profile.acidity == "none":
         base, base_molar = "hydroxide", _hydroxide_of_water(profile.temperature_c)
@@ -113,6 +113,12 @@ def _hydroxide_of_water(temperature_c: float | None) -> float:
     """
     warmer_k = 0.0 if temperature_c is None else temperature_c - 25.0
     return float(10 ** (-7.0 + 0.0165 * warmer_k))
+
+
+def _is_only_hindered(profile: ConditionProfile) -> bool:
+    """Return True where every alcohol or alkoxide known to be in the flask is as hindered as tert-butoxide."""
+    oxygens = [bulk for smiles in profile.reagents if (bulk := bulk_of_smiles(smiles)) is not None]
+    return bool(oxygens) and min(oxygens) >= get_constant("bulk", "hindered").value
 
 
 def bulk_of_smiles(smiles: str) -> float | None:

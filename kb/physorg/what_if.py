@@ -6,7 +6,7 @@ class of the centre, the strength of the base) cancels and only what differs is 
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -94,14 +94,23 @@ def _contrast(
     )
 
 
-def _that_count(drafts: Sequence[Draft], shares: NDArray[np.float64]) -> list[Draft]:
-    """Return the channels that take a share worth telling."""
-    return [d for d, share in zip(drafts, shares.mean(axis=1), strict=True) if share >= WORTH_TELLING]
+def _that_count(drafts: Sequence[Draft], shares: NDArray[np.float64]) -> dict[tuple[str, int], Draft]:
+    """Return the channels that take a share worth telling, by kind and place within the kind."""
+    found: dict[tuple[str, int], Draft] = {}
+    for draft, share in zip(drafts, shares.mean(axis=1), strict=True):
+        if share >= WORTH_TELLING:
+            found[draft.kind, sum(kind == draft.kind for kind, _ in found)] = draft
+    return found
 
 
-def _moved(before: Sequence[Draft], after: Sequence[Draft]) -> list[Term]:
-    """Return the terms of the second step that the first has not, or has with another value, largest change first."""
-    old = {t.because: t.log10 for d in before for t in d.terms}
-    new = {t.because: t for d in after for t in d.terms}
-    changes = [(abs(t.log10 - old.get(because, 0.0)), t) for because, t in new.items() if old.get(because) != t.log10]
-    return [t for size, t in sorted(changes, key=lambda pair: -pair[0]) if size > 0.01]
+def _moved(before: Mapping[tuple[str, int], Draft], after: Mapping[tuple[str, int], Draft]) -> list[Term]:
+    """Return the terms by which channels open on both sides differ, largest change first."""
+    changes: list[tuple[float, Term]] = []
+    for key in before.keys() & after.keys():
+        old = {t.because: t for t in before[key].terms}
+        new = {t.because: t for t in after[key].terms}
+        changes += [(abs(t.log10 - old[b].log10), t) for b, t in new.items() if b in old]
+        changes += [(abs(t.log10), t) for b, t in new.items() if b not in old]
+        changes += [(abs(t.log10), t) for b, t in old.items() if b not in new]
+    told = sorted(changes, key=lambda pair: (-pair[0], pair[1].because))
+    return [t for size, t in told if size > 0.01]

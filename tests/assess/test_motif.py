@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from rdkit import Chem
 
-from kb.assess.motif import generalise, lost_atoms
+from kb.assess.motif import generalise, lost_atoms, lost_atoms_of
 
 
 def mol(smiles: str) -> Chem.Mol:
@@ -47,3 +47,22 @@ def test_a_contradiction_is_marked_not_hidden() -> None:
     motif = generalise(ETHER, lost_atoms(ETHER, ALCOHOL), [ETHER])
     assert motif is not None
     assert motif.is_contradicted
+
+
+def test_of_two_like_places_the_lost_atoms_are_taken_in_one_piece() -> None:
+    both = mol("CC(C)(C)OCCCCOC(C)(C)C")
+    lost = lost_atoms(both, mol("OCCCCOC(C)(C)C"))
+    assert len(lost) == 4
+    carbon = next(a for a in lost if both.GetAtomWithIdx(a).GetDegree() == 4)
+    assert {n.GetIdx() for n in both.GetAtomWithIdx(carbon).GetNeighbors() if n.GetSymbol() == "C"} == lost - {carbon}
+
+
+def test_what_is_no_part_of_the_substrate_is_compared_by_its_common_part() -> None:
+    # A dioxolane opened to the ketone: the product has a new double bond, so it is no substructure.
+    lost = lost_atoms_of("C1CCC2(CC1)OCCO2", "O=C1CCCCC1")
+    assert len(lost) >= 3
+
+
+def test_two_things_that_share_little_say_nothing() -> None:
+    assert lost_atoms_of("CCCCCCBr", "c1ccncc1") == frozenset()
+    assert lost_atoms_of("CCCCCCBr", "not a structure") == frozenset()

@@ -1,0 +1,56 @@
+"""What becomes of a drawn centre, said once and with its source. Outcomes are textbook ones (Walden; ion pairs)."""
+
+from __future__ import annotations
+
+import pytest
+
+from kb.assess.published import published_estimate
+from kb.assess.stereo_findings import find_stereo_findings
+from kb.book.plan_words import plan_from_words
+from kb.record.finding import Finding
+from kb.store.derivation import account_of_plan
+from kb.vocabulary import FindingKind, Severity
+
+SN2 = {"reagents": "NaN3", "solvents": "DMF", "temperature": "60 °C"}
+SOLVOLYSIS = {"solvents": "water", "temperature": "25 °C"}
+
+
+def stereo(scheme: str, fired: frozenset[str] = frozenset(), **words: str) -> tuple[Finding, ...]:
+    account = account_of_plan(plan_from_words({"scheme": scheme, **words}))
+    published = published_estimate(account.reading, account.facts.substrate or "", account.profile)
+    return find_stereo_findings(account, published, fired)
+
+
+def test_displacement_from_the_back_inverts_and_that_is_a_note() -> None:
+    (finding,) = stereo("C[C@H](CCCC)OS(=O)(=O)c1ccc(C)cc1", **SN2)
+    assert finding.kind is FindingKind.LIABILITY
+    assert finding.severity is Severity.NOTE
+    assert finding.title == "The drawn centre inverts"
+    assert finding.atoms == (1,)
+    assert finding.source
+
+
+def test_an_ion_pair_that_lets_go_of_the_configuration_is_a_caution() -> None:
+    (finding,) = stereo("C[C@H](Cl)c1ccc(OC)cc1", **SOLVOLYSIS)
+    assert finding.severity is Severity.CAUTION
+    assert "inverts" not in finding.title
+    assert finding.do_instead
+
+
+@pytest.mark.parametrize(
+    ("scheme", "words", "why"),
+    [
+        ("CC(CCCC)OS(=O)(=O)c1ccc(C)cc1", SN2, "no configuration was drawn"),
+        ("CCC[C@H](C)CBr", SN2, "the drawn centre is not the one that reacts"),
+        ("C[C@H](Br)CC>>CC=CC", {"bases": "KOtBu", "solvents": "THF"}, "an alkene is wanted"),
+        ("C1CC2CCC1(Br)C2", SN2, "nothing substitutes"),
+        ("not a structure", SN2, "nothing was read"),
+    ],
+)
+def test_otherwise_nothing_is_said(scheme: str, words: dict[str, str], why: str) -> None:
+    assert stereo(scheme, **words) == (), why
+
+
+def test_what_a_rule_has_already_warned_of_is_only_added_to() -> None:
+    (finding,) = stereo("C[C@H](Cl)c1ccc(OC)cc1", frozenset({"ion-pair-racemisation"}), **SOLVOLYSIS)
+    assert finding.severity is Severity.NOTE
