@@ -12,7 +12,7 @@ from hashlib import blake2b
 from typing import TypeAlias
 
 AUGMENTED_BITS = 4096
-AUGMENTED_REVISION = 1
+AUGMENTED_REVISION = 2
 """Raised (1 to 255) whenever a structure sets other bits than before; each screen carries it in its second byte."""
 AUGMENTED_RECIPE = f"augmented-{AUGMENTED_REVISION}-{AUGMENTED_BITS}"
 """Name and parameters of these screens; RDKit, which perceives what they are made from, is named beside it."""
@@ -94,6 +94,16 @@ def key_attribute(what: str, value: int, centre: AtomType, bonds: tuple[TypedBon
         centre, bonds: as for `key_bonds`.
     """
     return key_bits((what, value, centre, bonds), 2 if len(bonds) < 2 else 1)
+
+
+def key_any_atom(what: str, value: int) -> Bits:
+    """Return the bits for any atom with one attribute: as for `key_attribute`, or "r", its smallest ring (0: any)."""
+    return key_bits(("any", what, value), 2)
+
+
+def key_any_bond(order: int, in_ring: bool | None) -> Bits:
+    """Return the bits for a bond of that order between any atoms, in a ring or not; None = either."""
+    return key_bits(("any bond", order, in_ring), 2)
 
 
 def key_reach(centre: AtomType, bonds: tuple[ReachingBond, ...]) -> Bits:

@@ -22,6 +22,8 @@ from kb.chem.screens_keys import (
     Bits,
     TypedBond,
     bond_kind,
+    key_any_atom,
+    key_any_bond,
     key_attribute,
     key_bonds,
     key_count,
@@ -93,11 +95,17 @@ class Memo:
         bits = [*key_ring_atom(core.kind, smallest)]
         if smallest != NOT_IN_RING:
             bits += key_ring_atom(core.kind, 0)
+            bits += key_any_atom("r", 0)
+        bits += key_any_atom("r", smallest)
         for (order, z, a), in_ring in zip(core.bonds, core.rings, strict=True):
             bits += key_ring_bond(bond_kind(core.kind, order, (z, a)), in_ring)
+            bits += key_any_bond(order, in_ring)
+            bits += key_any_bond(order, None)
         asked = [("H", core.hydrogens), ("X", core.connections), ("D", len(core.bonds))]
         if charge:
             asked.append(("q", charge))
+        for what, value in asked:
+            bits += key_any_atom(what, value)
         for size in range(min(MAX_NEIGHBOURS, len(core.bonds)) + 1):
             for chosen in set(combinations(core.bonds, size)):
                 bits += key_types(core.kind, tuple(sorted((z, a) for _, z, a in chosen)))

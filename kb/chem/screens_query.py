@@ -31,6 +31,8 @@ from kb.chem.screens_keys import (
     AtomType,
     TypedBond,
     bond_kind,
+    key_any_atom,
+    key_any_bond,
     key_attribute,
     key_bonds,
     key_count,
@@ -104,8 +106,20 @@ def _star(trait: Trait, around: _Around, is_ring_atom: bool, depth: int) -> Ask:
         elif trait.in_ring is False:
             parts.append(all_of(key_ring_atom(centre, NOT_IN_RING)))
         choices.append(all_of(parts))
-    asks.append(one_of(choices))
+    asks.append(one_of(choices) if choices else _any_star(trait, is_ring_atom))
     return all_of(asks)
+
+
+def _any_star(trait: Trait, is_ring_atom: bool) -> Ask:
+    """Return what an alternative asks that does not say its element."""
+    bits = [bit for what, value in _attributes(trait) if what != "q" or value for bit in key_any_atom(what, value)]
+    if trait.smallest_ring is not None:
+        bits += key_any_atom("r", trait.smallest_ring)
+    elif is_ring_atom or trait.in_ring:
+        bits += key_any_atom("r", 0)
+    elif trait.in_ring is False:
+        bits += key_any_atom("r", NOT_IN_RING)
+    return all_of(bits)
 
 
 def _inner(text: str, depth: int) -> Ask:
@@ -229,6 +243,7 @@ def _bonded(
     """Yield what a bond asks: its ring membership, what is known of both ends, and their other neighbours."""
     if bond.orders is None:
         return
+    yield one_of(all_of(key_any_bond(order, bond.in_ring)) for order in sorted(bond.orders))
     ends = [(one, two) for one in traits[atom] for two in traits[other]]
     if not all(one.types and two.types for one, two in ends) or len(ends) > MAX_CHOICES:
         return

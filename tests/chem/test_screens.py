@@ -139,7 +139,7 @@ def test_a_list_asks_for_one_of_its_members() -> None:
 
 
 def test_negations_and_wildcards_ask_for_nothing() -> None:
-    for smarts in ("*", "[!C]", "[!$(C=O)]", "[D{1-3}]"):
+    for smarts in ("*", "[!C]", "[!$(C=O)]", "[D{1-3}]", "[!R0]", "[!+]"):
         assert set(bits_in(ask_of(parse_query(smarts).mol))) == set(), smarts
 
 

@@ -53,9 +53,13 @@ class BlobFile:
             yield from connection.execute(f"SELECT {columns} FROM structure ORDER BY structure_id")
 
 
-def wanted_size(default: int) -> int:
-    """Return how many structures to run on: SIDEPATH_BENCH_SIZE, else the default."""
-    return int(os.environ.get("SIDEPATH_BENCH_SIZE", default))
+_ENVIRONMENT = {name: value for name, value in os.environ.items() if name.startswith("SIDEPATH_")}
+"""Read here, since every test starts from an environment without them."""
+
+
+def wanted(name: str, default: int) -> int:
+    """Return a number of the benchmarks: SIDEPATH_BENCH_<name>, else the default."""
+    return int(_ENVIRONMENT.get(f"SIDEPATH_BENCH_{name}", default))
 
 
 def smiles_of(n: int, cache: Path) -> list[str]:
@@ -132,7 +136,7 @@ def _drug_like(cache: Path) -> Iterator[str]:
 
 
 def _wheel(cache: Path) -> Path:
-    given = os.environ.get("SIDEPATH_MOLSETS")
+    given = _ENVIRONMENT.get("SIDEPATH_MOLSETS")
     path = Path(given) if given else cache / WHEEL
     if not path.exists():
         fetch = [sys.executable, "-m", "pip", "download", "--no-deps", "-q", "-d", str(path.parent), "molsets==0.3.1"]

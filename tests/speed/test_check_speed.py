@@ -1,9 +1,9 @@
 """How long a check takes on a book of 100,000 runs, beside a bare similarity query on the same molecules.
 
-The runs are the demo book's, taken again and again with other chain lengths, temperatures, times and shares, put
-straight into columns; whole runs are read from the demo book on disk as they are asked for. Run by name (`pytest -m
-speed -s`); it reports times and ratios and asserts none of them, since machines differ. Plans are new to the view
-each time, so that nothing but the index and the motif hits is warm.
+The runs are the demo book's, taken again and again with other chain lengths, temperatures, times and
+shares, put straight into columns; whole runs are read from the demo book on disk as they are asked for. Run
+by name (`pytest -m speed -s`); it reports times and ratios and asserts none of them, since machines differ.
+Plans are new to the view each time, so that nothing but the index and the motif hits is warm.
 """
 
 from __future__ import annotations

@@ -28,7 +28,7 @@ from kb.store.searching import iter_blobs
 from kb.store.store import Store
 from kb.vocabulary import Role, Verdict
 from tests.speed.run_set import CHEMISTRY, run_book
-from tests.speed.structure_set import blob_file, smiles_of, wanted_size
+from tests.speed.structure_set import blob_file, smiles_of, wanted
 
 pytestmark = pytest.mark.speed
 
@@ -54,7 +54,7 @@ def cache(pytestconfig: pytest.Config) -> Path:
 
 @pytest.fixture(scope="module")
 def book(cache: Path) -> Iterator[Store]:
-    path = run_book(int(os.environ.get("SIDEPATH_BENCH_RUNS", 100_000)), cache)
+    path = run_book(wanted("RUNS", 100_000), cache)
     with Store.open(path, read_only=True, **CHEMISTRY) as store:
         yield store
 
@@ -111,7 +111,7 @@ def test_importing_structures_against_bare_rdkit(cache: Path, capsys: pytest.Cap
 def test_loading_grows_with_size_and_stays_within_memory(
     size: int, cache: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    if size > wanted_size(200_000):
+    if size > wanted("SIZE", 200_000):
         pytest.skip(f"SIDEPATH_BENCH_SIZE is below {size}")
     blobs = blob_file(size, cache)
     with sqlite3.connect(blobs.path) as connection:

@@ -23,12 +23,12 @@ from rdkit.Chem import rdSubstructLibrary
 from kb.chem.query import match_parameters, parse_query
 from kb.search.index import StructureIndex
 from tests.search.queries import ALL
-from tests.speed.structure_set import BlobFile, blob_file, wanted_size
+from tests.speed.structure_set import BlobFile, blob_file, wanted
 
 pytestmark = pytest.mark.speed
 
 REPEATS = 3
-THREADS = int(os.environ.get("SIDEPATH_BENCH_THREADS", os.cpu_count() or 1))
+THREADS = wanted("THREADS", os.cpu_count() or 1)
 SLOW_S = 0.25
 """A query that takes longer than this is timed once only [s]."""
 
@@ -41,7 +41,7 @@ def cache(pytestconfig: pytest.Config) -> Path:
 
 @pytest.fixture(scope="module")
 def blobs(cache: Path) -> BlobFile:
-    return blob_file(wanted_size(200_000), cache)
+    return blob_file(wanted("SIZE", 200_000), cache)
 
 
 @pytest.fixture(scope="module")
@@ -82,7 +82,7 @@ def test_substructure_search_against_substruct_library(
     library: rdSubstructLibrary.SubstructLibrary,
     capsys: pytest.CaptureFixture[str],
 ) -> None:
-    step = int(os.environ.get("SIDEPATH_BENCH_STEP", 4))
+    step = wanted("STEP", 4)
     ratios: dict[str, list[float]] = {}
     cpu_ratios: dict[str, list[float]] = {}
     lines, different = [], []
