@@ -10,8 +10,11 @@ from pathlib import Path
 
 import pytest
 
+from kb.assess.advice import _is_worth_trying
 from kb.book import Book, open_book
 from kb.book.plan_words import conditions_from_words, plan_from_words
+from kb.physorg.competition import Share
+from kb.physorg.what_if import Contrast
 from kb.record.assessment import Advice, Assessment
 from kb.record.outcome import Outcome, ProductSeen
 from kb.record.run import Run
@@ -171,3 +174,21 @@ def test_another_base_is_asked_whether_it_still_makes_the_nucleophile(tmp_path: 
         words = {"scheme": "BrCCc1ccccc1.CCO>>CCOCCc1ccccc1", "bases": "KOtBu", "solvents": "THF"}
         advice = book.check(plan_from_words(words | {"temperature": "40 °C"})).advice
     assert not any("carbonate" in a.change for a in advice)
+
+
+@pytest.mark.parametrize(
+    ("gain", "low", "pace", "half_life_h", "is_worth", "why"),
+    [
+        (0.10, 0.02, 1.0, 1.0, True, "a gain at the same pace"),
+        (0.01, 0.00, 1.0, 1.0, False, "too small a gain"),
+        (0.10, -0.30, 1.0, 1.0, False, "as likely to do harm"),
+        (0.05, 0.02, 0.05, 1.0, False, "twenty times slower for five points"),
+        (0.30, 0.10, 0.05, 1.0, True, "twenty times slower, but still over in an hour or so, for thirty points"),
+        (0.30, 0.10, 0.05, 400.0, False, "it would stall"),
+    ],
+)
+def test_what_a_trend_must_offer(
+    gain: float, low: float, pace: float, half_life_h: float, is_worth: bool, why: str
+) -> None:
+    found = Contrast(effect=Share(mean=gain, low=low, high=gain + 0.1), pace=pace, half_life_h=half_life_h)
+    assert _is_worth_trying(found, plan_from_words({"scheme": "CCCBr"})) is is_worth, why

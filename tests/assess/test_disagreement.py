@@ -65,3 +65,8 @@ def test_a_close_pair_is_named_before_a_wider_gap_far_away() -> None:
     said = word_disagreement(runs, np.array([1.0, 1.0, 0.5]), Fate.ELIMINATION)
     assert "R-1" in said
     assert "R-2" in said
+
+
+def test_one_outlier_among_many_that_agree_is_no_contradiction() -> None:
+    runs = view(*[(0.2, {}, DRY, {})] * 11, (0.55, {}, DRY, {}))
+    assert word_disagreement(runs, np.ones(12), Fate.ELIMINATION) == ""

@@ -79,3 +79,35 @@ def test_near_runs_outweigh_the_prior_and_far_ones_do_not() -> None:
 def test_a_split_that_does_not_add_up_is_scaled() -> None:
     table = table_of((facts(), {"substitution": 0.6, "elimination": 0.3}, None, "worked"))
     assert main(estimate(np.ones(1), table))[0] == pytest.approx(2 / 3, abs=1e-3)
+
+
+def test_what_is_left_and_how_the_rest_divides_are_two_questions() -> None:
+    # A run that hardly went says what is left over, and little of the way; the prior is sure of the way.
+    table = table_of((facts(), {"unreacted": 0.9, "substitution": 0.1}, None, None))
+    sure = {
+        Fate.ELIMINATION: Interval(mean=0.95, low=0.9, high=1.0),
+        Fate.SUBSTITUTION: Interval(mean=0.05, low=0, high=0.1),
+    }
+    shares = {fate: interval.mean for fate, interval in estimate(np.ones(1), table, sure, "", sure).fates}
+    assert sum(shares.values()) == pytest.approx(1, abs=1e-3)
+    assert shares[Fate.UNREACTED] > 0.75
+    assert shares[Fate.ELIMINATION] > shares[Fate.SUBSTITUTION]
+
+
+def test_a_run_that_went_says_which_way() -> None:
+    table = table_of((facts(), {"unreacted": 0.1, "substitution": 0.9}, None, None))
+    unsure = {
+        Fate.ELIMINATION: Interval(mean=0.6, low=0.1, high=1.0),
+        Fate.SUBSTITUTION: Interval(mean=0.4, low=0, high=0.9),
+    }
+    shares = {fate: interval.mean for fate, interval in estimate(np.ones(1), table, unsure, "", unsure).fates}
+    assert shares[Fate.SUBSTITUTION] > 0.6
+
+
+def test_published_rates_alone_leave_room_for_what_they_do_not_know() -> None:
+    certain = {Fate.SUBSTITUTION: Interval(mean=1.0, low=1.0, high=1.0)}
+    result = estimate(np.zeros(0), table_of(), certain)
+    mean, low, high = main(result)
+    assert (mean, high) == (1.0, 1.0)
+    assert 0.8 < low < 0.95
+    assert "what reacts" in result.note

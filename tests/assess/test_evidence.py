@@ -67,7 +67,13 @@ def test_counts_run_codes_and_the_temperature_that_divides_them() -> None:
 
 @pytest.mark.parametrize(
     ("lost", "survived", "expected"),
-    [(8, 0, Severity.SERIOUS), (0, 9, Severity.NOTE), (0, 1, Severity.CAUTION), (3, 3, Severity.CAUTION)],
+    [
+        (8, 0, Severity.SERIOUS),
+        (0, 9, Severity.NOTE),
+        (0, 1, Severity.CAUTION),
+        (0, 3, Severity.CAUTION),
+        (3, 3, Severity.CAUTION),
+    ],
 )
 def test_clear_evidence_moves_a_caution_by_one_step(lost: int, survived: int, expected: Severity) -> None:
     evidence = Evidence(lost=lost, survived=survived, chance=loss_chance(lost, survived))

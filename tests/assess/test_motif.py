@@ -66,3 +66,9 @@ def test_what_is_no_part_of_the_substrate_is_compared_by_its_common_part() -> No
 def test_two_things_that_share_little_say_nothing() -> None:
     assert lost_atoms_of("CCCCCCBr", "c1ccncc1") == frozenset()
     assert lost_atoms_of("CCCCCCBr", "not a structure") == frozenset()
+
+
+def test_a_part_that_fits_in_the_middle_too_is_taken_at_an_end() -> None:
+    hexane = mol("CCCCCC")
+    lost = sorted(lost_atoms(hexane, mol("CCCC")))
+    assert lost[1] - lost[0] == 1

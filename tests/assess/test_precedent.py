@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from tables_by_hand import facts, table_of
 
-from kb.assess.precedent import WORTH_SHOWING, compare, differences, rank_precedents, word_precedents
+from kb.assess.precedent import compare, differences, rank_precedents, word_precedents
 from kb.assess.table import one_row
 from kb.vocabulary import Verdict
 
@@ -60,7 +60,7 @@ def test_the_least_alike_part_comes_first() -> None:
 
 
 def test_runs_too_far_away_are_not_listed_and_ties_keep_the_record_s_order() -> None:
-    similarity = np.array([0.9, WORTH_SHOWING - 0.01, 0.9, 0.95])
+    similarity = np.array([0.9, 0.3, 0.9, 0.95])
     assert rank_precedents(similarity, 9).tolist() == [3, 0, 2]
     assert rank_precedents(similarity, 1).tolist() == [3]
     assert rank_precedents(similarity, 0).tolist() == []

@@ -54,3 +54,11 @@ def test_otherwise_nothing_is_said(scheme: str, words: dict[str, str], why: str)
 def test_what_a_rule_has_already_warned_of_is_only_added_to() -> None:
     (finding,) = stereo("C[C@H](Cl)c1ccc(OC)cc1", frozenset({"ion-pair-racemisation"}), **SOLVOLYSIS)
     assert finding.severity is Severity.NOTE
+
+
+def test_inversion_that_cannot_be_relied_on_is_a_caution() -> None:
+    # An anisyl centre in methanol with a good nucleophile: mostly from the back, and nobody can be sure how much.
+    words = {"reagents": "NaN3", "solvents": "MeOH", "temperature": "60 °C"}
+    (finding,) = stereo("C[C@H](Br)c1ccc(OC)cc1", **words)
+    assert finding.title == "The drawn centre mostly inverts"
+    assert finding.severity is Severity.CAUTION

@@ -58,7 +58,10 @@ def test_each_figure_is_expected_without_its_own_run() -> None:
         for s, x in (("CBr", 1.0), ("CCBr", 0.0))
     ]
     view = view_of(table_of(*rows), [ConditionProfile()] * 2, [()] * 2, [Run(scheme="CBr")] * 2)
-    assert calibrate(view).main_share.error > 50
+    found = calibrate(view).main_share
+    assert found.error > 50
+    assert found.same_class_error == 100  # the mean of the others is the other run
+    assert found.all_runs_error == 100
 
 
 def test_leaving_out_the_substrate_takes_its_repeats_away() -> None:
