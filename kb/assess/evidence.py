@@ -31,8 +31,6 @@ FEARED_SHARE = 0.3
 MOST_WITNESSES = 48
 MOST_LOOKED_AT = 600
 """Runs whose centre is compared with the rule's, those nearest in conditions."""
-FEWEST_TO_LOWER = 4.0
-"""Survivals, weighed, below which no severity is lowered; judgement."""
 
 _MODES_OF_FATE: dict[Fate, frozenset[str]] = {
     Fate.ELIMINATION: frozenset({"elimination"}),
@@ -112,15 +110,15 @@ def word_evidence(view: RecordView, lost: list[int], survived: list[int], plan: 
 def weighed_severity(severity: Severity, evidence: Evidence) -> Severity:
     """Let the book speak: raise or lower a rule's severity by one step where its evidence is clear.
 
-    Raised where even the low end of the chance is above one half; lowered where the high end is below one third and the
-    survivals that count are at least FEWEST_TO_LOWER (a lone survivor never lowers anything). Limits are judgements.
+    Raised where even the low end of the chance is above one half; lowered where the high end is below one third, which
+    takes four survivors without a loss. Limits are judgements.
     """
     if evidence.chance is None:
         return severity
     order = list(Severity)
     if evidence.chance.low > 0.5:
         return order[min(severity.rank + 1, 2)]
-    if evidence.chance.high < 1 / 3 and evidence.survived >= FEWEST_TO_LOWER:
+    if evidence.chance.high < 1 / 3:
         return order[max(severity.rank - 1, 0)]
     return severity
 

@@ -72,6 +72,7 @@ def test_counts_run_codes_and_the_temperature_that_divides_them() -> None:
         (0, 9, Severity.NOTE),
         (0, 1, Severity.CAUTION),
         (0, 3, Severity.CAUTION),
+        (0, 4, Severity.NOTE),
         (3, 3, Severity.CAUTION),
     ],
 )
