@@ -47,7 +47,7 @@ SLOW = 0.1
 LEAST_TREND_IF_SLOW = 0.1
 OVERNIGHT_H = 16.0
 _PART_OF = {"temperature": "temperature", "solvent": "solvent", "base": "base"}
-_MATCHED = ("centre", "leaving group", "nucleophile", "promoter", "solvent", "temperature", "base")
+_MATCHED = ("centre", "leaving group", "nucleophile", "promoter", "solvent", "temperature", "base", "groups at risk")
 
 SeriousOf = Callable[[Plan], frozenset[str]]
 
@@ -117,10 +117,36 @@ def _by_record(
     similarity: NDArray[np.float64],
     wanted: Fate,
 ) -> Advice | None:
+    """Return what matched pairs say of a change: in the share wanted, or where that says nothing, in yield.
+
+    Where the loss of a group is wanted its share says nothing: another group that goes counts as the same fate.
+    """
     if option.kind not in _PART_OF:
         return None
     shares = view.table.shares[:, FATES.index(wanted)]
-    usable = ~np.isnan(shares)
+    yields = np.clip(view.table.yield_pct / 100, 0, 1)
+    measures = [(yields, "in yield")] if wanted is Fate.GROUP_LOSS else [(shares, ""), (yields, "in yield")]
+    found = ((_pairs(option, view, parts, similarity, values), words) for values, words in measures)
+    paired, measured = next(((p, words) for p, words in found if p is not None), (None, ""))
+    if paired is None or paired.effect.mean < LEAST_EFFECT:
+        return None
+    return Advice(
+        change=f"{option.word} instead of {option.here}",
+        effect=paired.effect,
+        pairs=len(paired.pairs),
+        basis=Basis.RECORD,
+        why=_pairs_in_words(paired, view, measured),
+    )
+
+
+def _pairs(
+    option: Option,
+    view: RecordView,
+    parts: dict[str, NDArray[np.float64]],
+    similarity: NDArray[np.float64],
+    values: NDArray[np.float64],
+) -> Paired | None:
+    usable = ~np.isnan(values)
     for name in _MATCHED:
         if name != _PART_OF[option.kind]:
             usable &= parts[name] >= ALIKE
@@ -129,24 +155,16 @@ def _by_record(
     rows = best_rows(similarity, NEAR, np.flatnonzero(usable))
     words = words_of_rows(view, option.kind, rows)
     sides = [[int(r) for r, w in zip(rows, words, strict=True) if w == word] for word in (option.here, option.word)]
-    paired = pair_runs(view.table, sides[0], sides[1], shares)
-    if paired is None or paired.effect.mean < LEAST_EFFECT:
-        return None
-    return Advice(
-        change=f"{option.word} instead of {option.here}",
-        effect=paired.effect,
-        pairs=len(paired.pairs),
-        basis=Basis.RECORD,
-        why=_pairs_in_words(paired, view),
-    )
+    return pair_runs(view.table, sides[0], sides[1], values)
 
 
-def _pairs_in_words(paired: Paired, view: RecordView) -> str:
+def _pairs_in_words(paired: Paired, view: RecordView, measured: str) -> str:
     codes = view.table.codes
     named = ", ".join(f"{codes[a]} and {codes[b]}" for a, b in paired.pairs[:3])
     of_one = f", in {paired.same_substrate} of them both of one substrate" if paired.same_substrate else ""
     pairs = "pair" if len(paired.pairs) == 1 else "pairs"
-    return f"{len(paired.pairs)} {pairs} of runs alike in all else that was compared{of_one}: {named}."
+    said = f"{len(paired.pairs)} {pairs} of runs alike in all else that was compared{of_one}"
+    return f"{said}{f', {measured}' if measured else ''}: {named}."
 
 
 def _by_trend(

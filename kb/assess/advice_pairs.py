@@ -72,6 +72,6 @@ def mean_effect(differences: NDArray[np.float64]) -> Interval:
     n = len(differences)
     mean = float(differences.mean()) * n / (n + PRIOR_PAIRS)
     spread = float(((differences - differences.mean()) ** 2).mean())
-    variance = (n * spread + PRIOR_PAIRS * PRIOR_SD**2) / (n + PRIOR_PAIRS) / n
+    variance = (n * spread + PRIOR_PAIRS * PRIOR_SD**2) / (n - 1 + PRIOR_PAIRS) / n
     half = _Z80 * float(np.sqrt(variance))
     return Interval(mean=round(mean, 3), low=round(max(mean - half, -1), 3), high=round(min(mean + half, 1), 3))

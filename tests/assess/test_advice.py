@@ -192,3 +192,26 @@ def test_what_a_trend_must_offer(
 ) -> None:
     found = Contrast(effect=Share(mean=gain, low=low, high=gain + 0.1), pace=pace, half_life_h=half_life_h)
     assert _is_worth_trying(found, plan_from_words({"scheme": "CCCBr"})) is is_worth, why
+
+
+def test_where_a_group_is_to_be_lost_the_yield_is_what_counts(tmp_path: Path) -> None:
+    # The carbamate goes either way, and hot acid takes the ether too: both are "loss of a group" in the split.
+    with open_book(tmp_path / "book.sidepath", create=True) as book:
+        for chain in range(2, 7):
+            tail = "C" * chain
+            for temperature, found in (("0 °C", 85.0), ("50 °C", 10.0)):
+                words = {"acids": "HCl=10", "solvents": "1,4-dioxane", "temperature": temperature}
+                run = Run(
+                    scheme=f"CC(C)(C)O{tail}NC(=O)OC(C)(C)C>>CC(C)(C)O{tail}N",
+                    conditions=conditions_from_words(words),
+                    outcome=Outcome(
+                        products=(ProductSeen(fate=Fate.GROUP_LOSS, share=0.97),), isolated_yield_pct=found
+                    ),
+                )
+                book.add(run, "T")
+        plan = {"scheme": f"CC(C)(C)O{'C' * 8}NC(=O)OC(C)(C)C>>CC(C)(C)O{'C' * 8}N", "temperature": "50 °C"}
+        advice = book.check(plan_from_words(plan | {"acids": "HCl=10", "solvents": "1,4-dioxane"})).advice
+    cold = find(advice, "about 0 °C")
+    assert cold.pairs == 5
+    assert cold.effect.mean > 0.5
+    assert "in yield" in cold.why

@@ -58,6 +58,11 @@ def test_one_lucky_pair_is_no_law() -> None:
     assert lucky.high - lucky.low > many.high - many.low > 0
 
 
+def test_a_lone_pair_is_as_unsure_as_a_single_difference() -> None:
+    effect = mean_effect(np.array([0.3]))
+    assert effect.high - effect.mean == pytest.approx(1.2816 * PRIOR_SD, abs=0.002)
+
+
 def test_the_interval_holds_the_mean_and_stays_between_minus_and_plus_one() -> None:
     for differences in ([1.0, 1.0], [-1.0], [0.5, -0.5], [0.0]):
         effect = mean_effect(np.array(differences))
@@ -69,4 +74,3 @@ def test_with_many_pairs_the_interval_is_that_of_the_mean() -> None:
     differences = np.random.default_rng(1).normal(0.1, 0.2, 400)
     effect = mean_effect(differences)
     assert effect.high - effect.mean == pytest.approx(1.2816 * differences.std() / 20, rel=0.05)
-    assert PRIOR_SD > 0
