@@ -17,6 +17,7 @@ from typing import TYPE_CHECKING, Any
 from uuid import UUID
 
 from kb.chem.facts import Reading
+from kb.chem.screens_keys import BLOBS_RECIPE
 from kb.materials.profile import ConditionProfile
 from kb.record.conditions import Conditions
 from kb.record.derived import CENTRE_BITS, DerivedFacts
@@ -29,9 +30,6 @@ if TYPE_CHECKING:
 
 RECIPE = "facts/4"
 """Name of what makes DerivedFacts; the screens' and RDKit's are appended where facts are stored."""
-
-SCREENS = "augmented-1-2048;pattern-2048;morgan-r2-2048"
-"""Name of how structures are encoded (`kb.chem.screens`); a test keeps the two in step."""
 
 MORGAN_RADIUS = 2
 """Bonds around the centre that its environment fingerprint reaches."""
@@ -79,7 +77,7 @@ def current_recipe() -> str:
     """Return the recipe's name with those of the screens and of the RDKit that carries it out; loads no RDKit."""
     from importlib.metadata import version
 
-    return f"{RECIPE} {SCREENS} rdkit/{version('rdkit')}"
+    return f"{RECIPE} {BLOBS_RECIPE} rdkit/{version('rdkit')}"
 
 
 def dissect(run: Run) -> list[tuple[str, int, str]]:
