@@ -18,7 +18,7 @@ from kb.assess.caution import drop_told, find_cautions
 from kb.assess.data_findings import ABOVE_BOILING, find_data_findings
 from kb.assess.disagreement import word_disagreement
 from kb.assess.endangered import Endangered, find_endangered
-from kb.assess.estimate import estimate
+from kb.assess.estimate import NAMED, estimate
 from kb.assess.evidence import with_evidence
 from kb.assess.house_rules import HouseRule, find_house_rules
 from kb.assess.liability import find_liabilities
@@ -166,6 +166,8 @@ def estimate_plan(
         dataclasses.replace(
             expected,
             yield_pct=fit.yield_pct if fit else None,
+            yield_runs=tuple(view.table.codes[row] for row in fit.rows[:NAMED]) if fit else (),
+            published=published.as_lines() if published.fates else (),
             note=" ".join(filter(None, (expected.note, words))),
             half_life_h=expect_half_life(published.half_life_h, view, similarity),
         ),

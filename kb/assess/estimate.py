@@ -43,6 +43,8 @@ WEIGHT_THAT_COUNTS = 0.25
 """Effective precedents below which the record alone gives no number."""
 MOST_RUNS = 500
 """Runs that are asked at most, the most similar ones."""
+NAMED = 12
+"""Runs named as carrying a figure."""
 DISAGREE_FROM = 0.18
 """Scatter of the main share between like runs from which it is said (0..1); judgement."""
 NOT_MODELLED = 0.12
@@ -109,7 +111,14 @@ def estimate(
         effective_precedents=round(effective, 2),
         basis=basis,
         note=note,
+        runs=_named(table, rows, w) if from_record else (),
     )
+
+
+def _named(table: FactTable, rows: NDArray[np.intp], w: NDArray[np.float64]) -> tuple[tuple[str, float], ...]:
+    """Return the codes and weights of the heaviest runs; `rows` come most similar first."""
+    pairs = zip(rows.tolist(), w.tolist(), strict=True)
+    return tuple((table.codes[row], round(say, 3)) for row, say in pairs if say > 0)[:NAMED]
 
 
 @lru_cache(maxsize=4096)

@@ -21,8 +21,9 @@ from kb.assess.table import FATES
 from kb.record.finding import Interval
 from kb.vocabulary import Fate
 
-LEFT_FROM, LEFT_TO = 0.02, 0.98
-"""Share of starting material between which a half-life can be read from a run."""
+LEFT_FROM, LEFT_TO = 0.2, 0.98
+"""Share of starting material between which a half-life can be read from a run. What little is left of a run that went
+was left by something else: it stood overnight, and would have stood the same had it been over in an hour."""
 NEAREST = 32
 """Runs that are asked, the most similar ones."""
 PRIOR_RUNS = 1.0
@@ -57,7 +58,8 @@ def expect_half_life(published: Interval | None, view: RecordView, similarity: N
     total = sum(heard)
     centre += sum(w * d for w, d in zip(heard, off, strict=True)) / (total + PRIOR_RUNS)
     sd = math.hypot(spread / math.sqrt(1 + total / PRIOR_RUNS), RESIDUAL_SD)
-    return Interval(mean=10**centre, low=10 ** (centre - _Z80 * sd), high=10 ** (centre + _Z80 * sd))
+    mean, low, high = (10.0 ** min(max(x, -30.0), 100.0) for x in (centre, centre - _Z80 * sd, centre + _Z80 * sd))
+    return Interval(mean=mean, low=low, high=high)
 
 
 def half_life_of(view: RecordView, row: int) -> float | None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 
 from kb.cli.render import bar, counted, heading, percent, severity_word, split_words, width, wrapped
+from kb.physorg.conversion import in_words
 from kb.plain import plain, shortened
 from kb.record.assessment import Advice, Assessment, Estimate, Precedent
 from kb.record.component import Component
@@ -41,7 +42,7 @@ def render_assessment(assessment: Assessment, *, verbose: bool = False) -> str:
     left_out = len(assessment.findings) - len(worries)
     if left_out:
         lines += [f"  and {left_out} more of lesser weight: --verbose shows all"]
-    lines += ["", heading("Expect"), *_estimate(assessment.estimate)]
+    lines += ["", heading("Expect"), *_estimate(assessment.estimate, verbose=verbose)]
     lines += ["", heading("Closest in the record"), *_precedents(assessment.precedents, verbose=verbose)]
     if assessment.advice:
         lines += ["", heading("Worth trying")]
@@ -112,7 +113,7 @@ def _finding(finding: Finding, *, verbose: bool) -> list[str]:
     lines = wrapped(finding.title, 10, first=f"  {severity_word(finding.severity)} ")
     lines += wrapped(finding.why, 10)
     if finding.evidence is not None:
-        lines += wrapped(evidence_words(finding.evidence, finding.kind), 10)
+        lines += wrapped(evidence_words(finding.evidence, finding.kind, most=None if verbose else 8), 10)
     if finding.side_product and (verbose or finding.severity is Severity.SERIOUS):
         lines += wrapped(f"Would give {finding.side_product}", 10)
     if finding.do_instead:
@@ -123,8 +124,8 @@ def _finding(finding: Finding, *, verbose: bool) -> list[str]:
     return lines
 
 
-def evidence_words(evidence: Evidence, kind: FindingKind) -> str:
-    """Return evidence in one sentence with the runs named."""
+def evidence_words(evidence: Evidence, kind: FindingKind, most: int | None = 8) -> str:
+    """Return evidence in one sentence with the runs named, `most` of them (None = all)."""
     if not evidence.lost and not evidence.survived:
         return "No run of this book bears on it."
     bad, good = ("failed", "came through") if kind is FindingKind.RESEMBLANCE else ("lost", "survived")
@@ -134,11 +135,11 @@ def evidence_words(evidence: Evidence, kind: FindingKind) -> str:
         said += f"; chance {percent(chance.mean)} ({100 * chance.low:.0f} to {100 * chance.high:.0f})"
     if evidence.note:
         said += f"; {evidence.note}"
-    runs = ", ".join(evidence.runs[:8]) + (" …" if len(evidence.runs) > 8 else "")
+    runs = ", ".join(evidence.runs[:most]) + (" …" if most is not None and len(evidence.runs) > most else "")
     return f"{said}. Runs: {runs}."
 
 
-def _estimate(estimate: Estimate) -> list[str]:
+def _estimate(estimate: Estimate, *, verbose: bool) -> list[str]:
     lines = []
     for fate, interval in estimate.fates[:5]:
         span = f"({100 * interval.low:.0f} to {100 * interval.high:.0f})"
@@ -155,6 +156,22 @@ def _estimate(estimate: Estimate) -> list[str]:
         )
     else:
         lines += wrapped(estimate.note or "No number is honest here.", 2)
+    return lines + (_grounds(estimate) if verbose else [])
+
+
+def _grounds(estimate: Estimate) -> list[str]:
+    """Return what each figure rests on: the runs with their weights, and published rates with their sources."""
+    lines: list[str] = []
+    if estimate.runs:
+        lines += wrapped("Shares rest on " + ", ".join(f"{run} ({weight:.2f})" for run, weight in estimate.runs), 2)
+    if estimate.yield_runs:
+        lines += wrapped("Yield rests on " + ", ".join(estimate.yield_runs), 2)
+    if estimate.half_life_h is not None:
+        half = estimate.half_life_h
+        low, high = in_words(half.low), in_words(half.high)
+        lines += wrapped(f"Half-life at 1 M of reagent: {in_words(half.mean)} ({low} to {high})", 2)
+    for sentence in estimate.published:
+        lines += wrapped(sentence, 2)
     return lines
 
 

@@ -35,6 +35,9 @@ class Estimate:
         basis: what the figure rests on.
         note: plain words: why it is wide, why there is none.
         half_life_h: of the substrate at 1 M of reagent [h], to about a factor of ten; None = no honest number.
+        runs: codes of the runs that carry the shares, with their weights 0..1, heaviest first.
+        yield_runs: codes of the runs that carry the yield, heaviest first.
+        published: what published rates expect, in plain sentences with their sources; empty = nothing.
     """
 
     fates: tuple[tuple[Fate, Interval], ...] = ()
@@ -44,6 +47,9 @@ class Estimate:
     basis: Basis = Basis.NONE
     note: str = ""
     half_life_h: Interval | None = None
+    runs: tuple[tuple[str, float], ...] = ()
+    yield_runs: tuple[str, ...] = ()
+    published: tuple[str, ...] = ()
 
     def as_dict(self) -> dict[str, Any]:
         """Return the contract's JSON object."""
@@ -55,6 +61,9 @@ class Estimate:
             "basis": str(self.basis),
             "note": self.note,
             "half_life_h": self.half_life_h.as_dict() if self.half_life_h else None,
+            "runs": [list(pair) for pair in self.runs],
+            "yield_runs": list(self.yield_runs),
+            "published": list(self.published),
         }
 
 

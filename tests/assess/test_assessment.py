@@ -137,3 +137,24 @@ def test_a_house_rule_is_heard(book: Book, tmp_path: Path) -> None:
     plan = plan_from_words({"scheme": "CCC(C)Br", "reagents": "KCN", "solvents": "DMF"})
     titles = [f.title for f in assess(plan, book.view(), (rule,)).findings]
     assert "No cyanide on Fridays" in titles
+
+
+def test_every_figure_of_an_estimate_can_be_traced(book: Book) -> None:
+    words = {"scheme": "CCC(C)OS(C)(=O)=O>>CCC(C)C#N", "reagents": "KCN", "solvents": "DMF", "temperature": "60 °C"}
+    estimate = book.check(plan_from_words(words)).estimate
+    assert {run for run, _ in estimate.runs} == {"R-0001", "R-0002"}
+    assert all(0 < weight <= 1 for _, weight in estimate.runs)
+    assert set(estimate.yield_runs) == {"R-0001", "R-0002"}
+    assert any(sentence.startswith("Sources:") for sentence in estimate.published)
+
+
+def test_verbose_text_names_what_each_figure_rests_on(book: Book) -> None:
+    from kb.cli.render_assessment import render_assessment
+
+    words = {"scheme": "CCC(C)OS(C)(=O)=O>>CCC(C)C#N", "reagents": "KCN", "solvents": "DMF", "temperature": "60 °C"}
+    answer = book.check(plan_from_words(words))
+    short, long = render_assessment(answer), render_assessment(answer, verbose=True)
+    assert "Shares rest on R-000" in long
+    assert "Yield rests on" in long
+    assert "Sources:" in long
+    assert "Shares rest on" not in short

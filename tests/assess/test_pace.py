@@ -48,7 +48,7 @@ def test_a_run_shows_its_half_life_by_first_order(hours: float, left: float, hal
     assert half_life_of(view((hours, left)), 0) == pytest.approx(half_life)
 
 
-@pytest.mark.parametrize("run", [(None, 0.5), (4.0, None), (4.0, 0.0), (4.0, 1.0), (0.0, 0.5)])
+@pytest.mark.parametrize("run", [(None, 0.5), (4.0, None), (4.0, 0.0), (16.0, 0.04), (4.0, 1.0), (0.0, 0.5)])
 def test_a_run_that_cannot_tell_shows_none(run: tuple[float | None, float | None]) -> None:
     assert half_life_of(view(run), 0) is None
 
