@@ -13,7 +13,7 @@ from __future__ import annotations
 import os
 import threading
 import time
-from collections.abc import Iterable
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -75,13 +75,13 @@ class MoleculeStore:
     def __len__(self) -> int:
         return len(self._library)
 
-    def append(self, binaries: Iterable[bytes]) -> None:
+    def append(self, binaries: Sequence[bytes]) -> None:
         """Add molecules, each an RDKit binary."""
         add = self._holder.AddBinary
         with self._lock:
             for binary in binaries:
                 add(binary)  # type: ignore[arg-type]
-                self.binary_bytes += len(binary)
+            self.binary_bytes += sum(map(len, binaries))
 
     def get(self, row: int) -> Chem.Mol:
         """Return one molecule, unpacked."""

@@ -28,6 +28,8 @@ BLOCK_ROWS = 4096
 BLOCK_WORDS = 64
 _GROWTH = 1.5
 """Factor by which planes grow; pages that no row has touched yet are not in memory."""
+_BLOCKS_AT_ONCE = 4
+"""Blocks turned into planes together: they stay in the processor's cache."""
 _STAGES = (
     (32, np.uint64(0x00000000FFFFFFFF)),
     (16, np.uint64(0x0000FFFF0000FFFF)),
@@ -53,6 +55,7 @@ class BitPlanes:
         blocks = -(-reserve // BLOCK_ROWS)
         self._planes = np.zeros((n_bits, blocks * BLOCK_WORDS), np.uint64)
         self._tail = np.zeros((BLOCK_ROWS, self._row_words), np.uint64)
+        self._is_open = False
 
     @property
     def n_words(self) -> int:
@@ -66,6 +69,8 @@ class BitPlanes:
 
     def plane(self, bit: int) -> NDArray[np.uint64]:
         """Return one bit of every row (n_words,) uint64, a view."""
+        if self._is_open:
+            self._close_block(self.n_rows // BLOCK_ROWS)
         return self._planes[bit, : self.n_words]
 
     def all_of(self, bits: Iterable[int]) -> NDArray[np.uint64]:
@@ -76,39 +81,41 @@ class BitPlanes:
         return words
 
     def append(self, packed: bytes) -> None:
-        """Add rows.
+        """Add rows; a block is turned into planes when it is full, or when somebody asks.
 
         Args:
             packed: fingerprints one behind the other, n_bits / 8 bytes each.
         """
         rows = np.frombuffer(packed, "<u8").reshape(-1, self._row_words)
         self._make_room(self.n_rows + len(rows))
-        at = self.n_rows % BLOCK_ROWS
-        if at:
-            head = rows[: BLOCK_ROWS - at]
-            self._tail[at : at + len(head)] = head
-            self._set_blocks(self.n_rows // BLOCK_ROWS, self._tail[None])
-            self.n_rows += len(head)
-            rows = rows[len(head) :]
-        full = len(rows) // BLOCK_ROWS
-        for start in range(0, full, 4):  # a few blocks at a time stay in the processor's cache
-            some = rows[start * BLOCK_ROWS : min(start + 4, full) * BLOCK_ROWS]
-            self._set_blocks(self.n_rows // BLOCK_ROWS, some.reshape(-1, BLOCK_ROWS, self._row_words))
-            self.n_rows += len(some)
-        rest = rows[full * BLOCK_ROWS :]
-        if len(rest):
-            self._tail[: len(rest)] = rest
-            self._tail[len(rest) :] = 0
-            self._set_blocks(self.n_rows // BLOCK_ROWS, self._tail[None])
-            self.n_rows += len(rest)
-        elif self.n_rows % BLOCK_ROWS == 0:
-            self._tail[:] = 0
+        while len(rows):
+            at = self.n_rows % BLOCK_ROWS
+            if at == 0 and len(rows) >= BLOCK_ROWS:
+                taken = min(len(rows) // BLOCK_ROWS, _BLOCKS_AT_ONCE) * BLOCK_ROWS
+                blocks = rows[:taken].reshape(-1, BLOCK_ROWS, self._row_words)
+                self._set_blocks(self.n_rows // BLOCK_ROWS, blocks)
+            else:
+                taken = min(len(rows), BLOCK_ROWS - at)
+                self._tail[at : at + taken] = rows[:taken]
+                self._is_open = True
+                if at + taken == BLOCK_ROWS:
+                    self._close_block(self.n_rows // BLOCK_ROWS)
+                    self._tail[:] = 0
+            self.n_rows += taken
+            rows = rows[taken:]
 
     def row(self, number: int) -> bytes:
         """Return the fingerprint of one row, packed as it came."""
+        if self._is_open:
+            self._close_block(self.n_rows // BLOCK_ROWS)
         word, bit = _place(number)
         bits = self._planes[:, word] >> np.uint64(bit) & np.uint64(1)
         return np.packbits(bits.astype(np.uint8), bitorder="little").tobytes()
+
+    def _close_block(self, block: int) -> None:
+        """Turn the rows at the end, which may not fill their block yet, into planes."""
+        self._set_blocks(block, self._tail[None])
+        self._is_open = False
 
     def _make_room(self, n_rows: int) -> None:
         needed = -(-n_rows // BLOCK_ROWS) * BLOCK_WORDS

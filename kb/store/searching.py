@@ -43,7 +43,7 @@ _SCREENS = """SELECT structure_id, recipe_id, augmented FROM structure WHERE aug
 _CODES_WITH = """SELECT DISTINCT run.code FROM run_structure place JOIN run ON run.run_key = place.run_key
     WHERE place.structure_id IN :ids AND place.role IN :roles AND run.withdrawn_why IS NULL"""
 _STRUCTURES = """SELECT structure_id, recipe_id, mol_binary, augmented, morgan FROM structure
-    WHERE structure_id > :after ORDER BY structure_id LIMIT :batch"""
+    WHERE structure_id > :after ORDER BY structure_id"""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -96,7 +96,7 @@ def last_structure_id(book: OpenBook) -> int:
         return connection.execute(sa.text("SELECT max(structure_id) FROM structure")).scalar() or 0
 
 
-def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 16384) -> Iterator[list[list[Any]]]:
+def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 1024) -> Iterator[list[list[Any]]]:
     """Yield structures with an id beyond `after`, ascending, in batches, all as of one moment.
 
     Args:
@@ -114,11 +114,8 @@ def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 16384) 
         if recipe:
             named = sa.select(RecipeRow.recipe_id).where(RecipeRow.name == recipe)
             good = connection.execute(named).scalar()
-        while True:
-            rows = connection.execute(sa.text(_STRUCTURES), {"after": after, "batch": batch}).all()
-            if not rows:
-                return
-            after = rows[-1][0]
+        stream = connection.execution_options(yield_per=batch).execute(sa.text(_STRUCTURES), {"after": after})
+        for rows in stream.partitions():
             usable = [row for row in rows if row[2] is not None]
             if recipe and any(row[1] != good for row in usable):
                 raise _stale()
