@@ -182,23 +182,6 @@ def outcome_from_words(
     )
 
 
-def parse_fate(text: str) -> Fate:
-    """Return the fate of a word.
-
-    Raises:
-        InvalidRecord: not a fate; the hint names the nearest or all of them.
-    """
-    word = "-".join(text.strip().lower().replace("_", "-").split())
-    try:
-        return Fate(word)
-    except ValueError:
-        from rapidfuzz import process
-
-        near = process.extractOne(word, list(map(str, Fate)), score_cutoff=60)
-        hint = f"Did you mean {near[0]}?" if near else f"Use one of: {', '.join(Fate)}."
-        raise InvalidRecord(f"{text!r} is no fate.", hint, text) from None
-
-
 def house_rule(
     title: str, motif: str | None, when: str, severity: Severity, why: str, source: str, author: str
 ) -> HouseRule:
@@ -211,19 +194,9 @@ def house_rule(
 
 
 def _split_products(split: str | None, method: Method | None) -> list[ProductSeen]:
-    from kb.quantity import parse_percent
+    from kb.exchange.cells import read_split
 
-    seen = []
-    for part in (split or "").replace(";", ",").split(","):
-        if not part.strip():
-            continue
-        word, equals, share = part.partition("=")
-        if not equals:
-            raise QuantityError(
-                f"{part.strip()!r} has no share.", "Write the split as substitution=88,elimination=10.", part
-            )
-        seen.append(ProductSeen(fate=parse_fate(word), share=parse_percent(share) / 100, method=method))
-    return seen
+    return [ProductSeen(fate=fate, share=share, method=method) for fate, share in read_split(split or "")]
 
 
 def _structure_products(products: Sequence[str], scheme: str, method: Method | None) -> list[ProductSeen]:

@@ -141,12 +141,16 @@ def read_fate(text: str) -> Fate:
     """Return the fate that a word or a customary abbreviation of it means.
 
     Raises:
-        InvalidRecord: no such fate.
+        InvalidRecord: no such fate; the hint names the nearest or all of them.
     """
     word = " ".join(text.strip().casefold().replace("_", " ").split())
     fate = _FATES.get(word) or _FATES.get(word.replace(" ", "-"))
     if fate is None:
-        raise InvalidRecord(f"{shown(text)} is no fate.", f"Use one of {', '.join(Fate)}.", text)
+        from rapidfuzz import process
+
+        near = process.extractOne(word, list(map(str, Fate)), score_cutoff=60)
+        hint = f"Did you mean {near[0]}?" if near else f"Use one of {', '.join(Fate)}."
+        raise InvalidRecord(f"{shown(text)} is no fate.", hint, text)
     return fate
 
 

@@ -88,7 +88,7 @@ def test_files_are_kept_once_and_named_by_runs(tmp_path: Path) -> None:
     with a_book(tmp_path) as store:
         store.add(a_run(), "MK")
         store.add(a_run(), "MK")
-        first = store.attachments.attach("1", "/home/mk/nmr.pdf", b"%PDF", "MK", "spectrum")
+        first = store.attachments.attach("1", "/some/folder/nmr.pdf", b"%PDF", "MK", "spectrum")
         second = store.attachments.attach("2", "C:\\data\\same.pdf", b"%PDF", "MK", "spectrum")
         assert [a.name for a in (*first.attachments, *second.attachments)] == ["nmr.pdf", "same.pdf"]
         assert first.attachments[0].sha256 == second.attachments[0].sha256
