@@ -23,13 +23,13 @@ from kb.quantity import (
     format_number,
     format_temperature,
     parse_amount,
+    parse_amount_mmol,
     parse_concentration,
     parse_duration,
     parse_equiv,
     parse_loading_mol_pct,
     parse_number,
     parse_percent,
-    parse_scale_mmol,
     parse_temperature,
 )
 
@@ -244,7 +244,7 @@ def test_an_amount_is_read_into_the_field_of_its_unit(text: str, field: str, val
         (parse_percent, "-1", "negative"),
         (parse_amount, "5", "no unit"),
         (parse_amount, "5 oz", "unit I do not know"),
-        (parse_scale_mmol, "5 mg", "no amount of substance"),
+        (parse_amount_mmol, "5 mg", "no amount of substance"),
         (parse_number, "--1", "not a number"),
     ],
 )

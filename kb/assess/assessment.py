@@ -135,11 +135,6 @@ def compare_with_record(account: Account, view: RecordView, rest: NDArray[np.flo
     return Comparison(row=row, parts=parts, similarity=similarity, endangered=endangered)
 
 
-def risk_differences(account: Account, view: RecordView) -> NDArray[np.float64]:
-    """Return, for each run, how many endangered groups stand in only one of plan and run (n)."""
-    return find_endangered(account, view).differences()
-
-
 def wanted_fate(account: Account) -> Fate | None:
     """Return the fate that a plan is after; None where it does not say."""
     wanted = account.reading.fate

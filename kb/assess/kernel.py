@@ -5,7 +5,7 @@ hopeless part (a tertiary centre against a methyl) spoil the whole, as it should
 recorded counts as `UNRECORDED`: neither alike nor different.
 
 Weights, scales and ladders are judgements; `audit calibration` measures how well they serve a book. Leaving-group
-distances rest on the published relative reactivities held in `LEAVING_SCALE`.
+distances rest on the published relative reactivities of `kb.physorg.constants.leaving_scale`.
 """
 
 from __future__ import annotations
@@ -17,7 +17,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kb.assess.table import WORDS, FactTable, flag_words
-from kb.vocabulary import CentreFlag, LeavingGroup
+from kb.materials.nucleophile import DONORS
+from kb.physorg.constants import leaving_scale
+from kb.vocabulary import CentreFlag
 
 PARTS: tuple[tuple[str, float], ...] = (
     ("centre", 0.22),
@@ -54,32 +56,6 @@ _FLAG_WEIGHT = {
     CentreFlag.SMALL_RING: 0.5,
     CentreFlag.HOMOBENZYLIC: 0.4,
 }
-
-LEAVING_SCALE: dict[LeavingGroup, float] = {
-    LeavingGroup.FLUORIDE: 0.0,
-    LeavingGroup.CHLORIDE: 2.3,
-    LeavingGroup.BROMIDE: 4.0,
-    LeavingGroup.IODIDE: 4.5,
-    LeavingGroup.TOSYLATE: 4.8,
-    LeavingGroup.MESYLATE: 4.8,
-    LeavingGroup.SULFONATE: 4.9,
-    LeavingGroup.TRIFLATE: 8.0,
-}
-"""log10 relative reactivity, fluoride = 0. Source: F 1, Cl 200, Br 10,000, I 30,000, OTs 60,000 as tabulated in
-Solomons, Organic Chemistry (teaching notes); mesylate beside tosylate and triflate some 10^3 above are common
-practice."""
-
-_NUCLEOPHILE_FAMILY: dict[str, str] = {}
-for _family, _members in {
-    "nitrogen": "azide amine primary_amine secondary_amine tertiary_amine ammonia aniline aromatic_amine imide amide "
-    "azole sulfonamide carbamate hydroxylamine hydrazine nitrite",
-    "oxygen": "alkoxide hydroxide phenoxide phenol carboxylate water alcohol oxime nitrate peroxide",
-    "sulfur": "thiolate thiol thiocarboxylate sulfide sulfinate thiourea thiocyanate sulfite thiosulfate xanthate",
-    "carbon": "cyanide enolate malonate stabilised_carbanion alkynyl organometallic cuprate grignard carbanion arene",
-    "halide": "fluoride chloride bromide iodide",
-    "phosphorus": "phosphine phosphite phosphide",
-}.items():
-    _NUCLEOPHILE_FAMILY.update(dict.fromkeys(_members.split(), _family))
 
 
 def similarity_parts(
@@ -136,7 +112,7 @@ def leaving_similarity(one: str | None, other: str | None) -> float:
         return 1.0 if one == other else UNRECORDED
     if one == other:
         return 1.0
-    scale = {str(k): v for k, v in LEAVING_SCALE.items()}
+    scale = leaving_scale()
     if one in scale and other in scale:
         return float(0.92 * np.exp(-abs(scale[one] - scale[other]) / 2.2))
     return 0.2
@@ -148,8 +124,8 @@ def nucleophile_similarity(one: str | None, other: str | None) -> float:
         return 1.0
     if one is None or other is None:
         return 0.3
-    family = _NUCLEOPHILE_FAMILY.get(one)
-    return 0.55 if family is not None and family == _NUCLEOPHILE_FAMILY.get(other) else 0.18
+    donor = DONORS.get(one)
+    return 0.55 if donor is not None and donor == DONORS.get(other) else 0.18
 
 
 def _rest(rest: NDArray[np.float64] | None, n: int) -> NDArray[np.float64]:

@@ -25,7 +25,7 @@ from kb.errors import InvalidRecord, SidepathError
 from kb.exchange import cells
 from kb.exchange.headings import AMOUNT_FIELD, IGNORED_FIELDS, ColumnMapping
 from kb.exchange.lookups import check_scheme, checked_motif, materials_in, products_seen, solvents_in
-from kb.quantity import parse_concentration, parse_duration, parse_percent, parse_scale_mmol, parse_temperature
+from kb.quantity import parse_amount_mmol, parse_concentration, parse_duration, parse_percent, parse_temperature
 from kb.record.component import Component, SolventPart
 from kb.record.conditions import Conditions
 from kb.record.failure_modes import parse_failure_mode
@@ -331,7 +331,7 @@ _READERS: dict[str, Callable[[str, str | None], Any]] = {
     "temperature": lambda text, unit: parse_temperature(_in_unit(text, unit)),
     "time": lambda text, unit: parse_duration(_in_unit(text, unit)),
     "concentration": lambda text, unit: parse_concentration(_in_unit(text, unit)),
-    "scale": lambda text, unit: parse_scale_mmol(_in_unit(text, unit)),
+    "scale": lambda text, unit: parse_amount_mmol(_in_unit(text, unit)),
     "method": lambda text, _: cells.read_method(text),
     "split": lambda text, unit: tuple(cells.read_split(text, per=_per(unit))),
     "isolated yield": _percentage("isolated yield", 200),

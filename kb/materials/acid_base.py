@@ -24,7 +24,6 @@ from dataclasses import dataclass
 
 from kb.materials.flask import Flask, Ingredient
 
-DESTROYS_ACID_FROM = 15.9  # pKaH; ethoxide and stronger (judgement)
 BASE_MARGIN = 2.0  # pKaH above the acid's pKa from which a base takes the proton (99 %)
 
 _DESTROYERS = (

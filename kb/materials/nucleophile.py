@@ -90,6 +90,30 @@ Iodide and pyridine stand low because they are usually catalysts; alkoxide and h
 the base.
 """
 
+DONORS: dict[str, str] = {
+    word: donor
+    for donor, words in {
+        "nitrogen": "azide amine primary_amine secondary_amine tertiary_amine ammonia aromatic_amine "
+        "aromatic_amine_base amidine_base guanidine_base azole azolide imide imide_anion amide carbamate sulfonamide "
+        "hydroxylamine hydrazine nitrite cyanate nitrile metal_amide",
+        "oxygen": "alkoxide tertiary_alkoxide hydroxide phenoxide phenol carboxylate carboxylic_acid carbonate_base "
+        "bicarbonate phosphate_base water alcohol oxime nitrate hydroperoxide hydrogen_peroxide superoxide aldehyde "
+        "siloxide silanol",
+        "sulfur": "thiolate thiol hydrosulfide thiocarboxylate thioether sulfinate sulfite thiosulfate thiourea "
+        "thiocyanate xanthate",
+        "selenium": "selenide",
+        "carbon": "cyanide enolate silyl_enol_ether enol_ether stabilised_carbanion active_methylene nitroalkane "
+        "acetylide alkyne alkyllithium organolithium grignard organozinc organocuprate organometallic organoaluminium "
+        "carbanion ylide phosphonate_anion alkene arene_scavenger",
+        "halogen": "fluoride chloride bromide iodide hydrogen_fluoride hydrogen_chloride hydrogen_bromide "
+        "hydrogen_iodide deoxyfluorinating_agent thionyl_chloride "
+        "phosphorus_halide tetrahalomethane silyl_iodide boron_trihalide",
+        "phosphorus": "phosphine phosphite phosphide",
+    }.items()
+    for word in words.split()
+}
+"""The atom with which a class bonds to carbon, as a rule; ambident ones by their usual end (common practice)."""
+
 
 _ANION_OF = {donor: anion for donor, _, anion in DEPROTONATED_FROM}
 

@@ -18,7 +18,6 @@ from kb.physorg.rates import SULFONATES
 from kb.physorg.step import Alkene, Centre, Neighbour, StepFacts
 from kb.physorg.terms import Term, find_term, term
 
-_FLAT = frozenset({"aryl", "vinyl", "alkynyl", "carbonyl"})
 _ALKYL = ("methyl", "n-alkyl", "sec-alkyl", "tert-alkyl")
 
 

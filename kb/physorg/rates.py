@@ -24,7 +24,6 @@ from kb.physorg.terms import Term, find_term, term
 from kb.vocabulary import CarbonClass, LeavingGroup
 
 NEEDS_ACTIVATION = frozenset({LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE})
-ACID_OPENED = frozenset({LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE, LeavingGroup.EPOXIDE, LeavingGroup.CARBOXYLATE})
 SULFONATES = frozenset(
     {
         LeavingGroup.MESYLATE,

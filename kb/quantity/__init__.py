@@ -22,9 +22,6 @@ from kb.quantity.durations import OVERNIGHT_H, WEEKEND_H, Duration, format_durat
 from kb.quantity.numbers import format_number, parse_number
 from kb.quantity.temperatures import ROOM_TEMPERATURE_C, Temperature, format_temperature, parse_temperature
 
-parse_scale_mmol = parse_amount_mmol
-"""The scale of a step is an amount of substance, and is read like one."""
-
 __all__ = [
     "OVERNIGHT_H",
     "ROOM_TEMPERATURE_C",
@@ -46,6 +43,5 @@ __all__ = [
     "parse_loading_mol_pct",
     "parse_number",
     "parse_percent",
-    "parse_scale_mmol",
     "parse_temperature",
 ]

@@ -11,9 +11,9 @@ bit count of 2 for each structure, 778 bytes in all.
 from __future__ import annotations
 
 import threading
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, Protocol
+from typing import TYPE_CHECKING
 
 import numpy as np
 from rdkit import Chem
@@ -29,19 +29,6 @@ from kb.search.screening import Screens, is_of_this_revision
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
-
-
-class Blobs(Protocol):
-    """What is kept of one structure; missing blobs mean that it could not be encoded."""
-
-    @property
-    def structure_id(self) -> int: ...
-    @property
-    def mol_binary(self) -> bytes | None: ...
-    @property
-    def augmented(self) -> bytes | None: ...
-    @property
-    def morgan(self) -> bytes | None: ...
 
 
 @dataclass(frozen=True, slots=True)
@@ -123,23 +110,6 @@ class StructureIndex:
             self._last_id = int(added[-1])
             if not self._is_ascending:
                 self._row_of = dict(zip(self.ids.tolist(), range(len(self)), strict=True))
-
-    def append_blobs(self, structures: Iterable[Blobs]) -> int:
-        """Add stored structures; return how many had no blobs and cannot be found by structure."""
-        usable = []
-        missing = 0
-        for one in structures:
-            if None in (one.mol_binary, one.augmented, one.morgan):
-                missing += 1
-            else:
-                usable.append(one)
-        self.append(
-            [s.structure_id for s in usable],
-            [s.mol_binary or b"" for s in usable],
-            [s.augmented or b"" for s in usable],
-            [s.morgan or b"" for s in usable],
-        )
-        return missing
 
     def append_smiles(self, ids: Sequence[int], smiles: Sequence[str]) -> None:
         """Encode and add structures that are in no book (tests, benchmarks)."""

@@ -8,8 +8,9 @@ from hypothesis import given
 from hypothesis import strategies as st
 from tables_by_hand import facts, table_of
 
-from kb.assess.kernel import PARTS, combine, leaving_similarity, similarity_parts
+from kb.assess.kernel import PARTS, combine, leaving_similarity, nucleophile_similarity, similarity_parts
 from kb.assess.table import one_row
+from kb.materials.nucleophile import DONORS, NUCLEOPHILE_ORDER
 from kb.vocabulary import CarbonClass, LeavingGroup
 
 CLASSES = st.sampled_from([None, *map(str, CarbonClass)])
@@ -68,7 +69,24 @@ def test_likeness_is_symmetric_and_bounded(c1, g1, t1, c2, g2, t2) -> None:  # t
 
 
 def test_leaving_groups_keep_the_published_order() -> None:
-    # F 1, Cl 200, Br 10,000, I 30,000, OTs 60,000: Solomons, Organic Chemistry (teaching notes, seen)
+    # F 1, Cl 200, Br 10,000, I 30,000, OTs 60,000: as tabulated in Solomons, Organic Chemistry (cited second-hand)
     order = ["tosylate", "iodide", "bromide", "chloride", "fluoride"]
     likenesses = [leaving_similarity("tosylate", g) for g in order]
     assert likenesses == sorted(likenesses, reverse=True)
+
+
+def test_every_class_that_may_be_meant_as_nucleophile_has_its_donor_atom() -> None:
+    assert set(NUCLEOPHILE_ORDER) <= set(DONORS)
+
+
+@pytest.mark.parametrize(
+    ("one", "other"),
+    [
+        ("hydrosulfide", "thiolate"),
+        ("active_methylene", "enolate"),
+        ("alkyllithium", "grignard"),
+        ("phenol", "phenoxide"),
+    ],
+)
+def test_classes_of_one_donor_atom_are_nearer_than_others(one: str, other: str) -> None:
+    assert 1 > nucleophile_similarity(one, other) > nucleophile_similarity(one, "phosphine")
