@@ -38,6 +38,8 @@ def build_demo(book: str | None, progress: Progress) -> tuple[Path, bool]:
     if book is not None and "://" in book and not book.startswith("sqlite:///"):
         raise StoreRefused("The demo book is a file.", "Give --book a path.", book)
     target = Path(book.removeprefix("sqlite:///")).expanduser() if book else paths.demo_book()
+    from kb.store.copying import put_in_place
+
     tame_rdkit()
     half_built = target.with_name(target.name + ".building")
     try:
@@ -47,7 +49,7 @@ def build_demo(book: str | None, progress: Progress) -> tuple[Path, bool]:
         if book is None:
             target.parent.mkdir(parents=True, exist_ok=True)
         _build(half_built, progress)
-        half_built.rename(target)
+        put_in_place(half_built, target)
     except OSError as error:
         why = error.strerror or str(error)
         raise StoreRefused(f"The demo book cannot be made at {target}: {why}.", "Give --book PATH.", target) from error

@@ -86,10 +86,13 @@ def refuse_taken(path: Path) -> None:
 def put_in_place(draft: Path, path: Path) -> None:
     """Give a finished file its name, at once, never over another; and make sure that the folder remembers it.
 
+    Logs that a deleted book left under that name are set aside first: SQLite would play them into the new file.
+
     Raises:
         StoreExists: somebody was quicker.
     """
     with translated(path):
+        _set_orphans_aside(path)
         try:
             os.link(draft, path)
         except FileExistsError as error:
@@ -98,6 +101,16 @@ def put_in_place(draft: Path, path: Path) -> None:
             refuse_taken(path)
             draft.rename(path)
         flush_folder(path.absolute().parent)
+
+
+def _set_orphans_aside(path: Path) -> None:
+    """Rename the logs of a book that is gone; nothing is deleted. Where the book is there, they are its own."""
+    if path.exists():
+        return
+    for ending in ("-wal", "-shm", "-journal"):
+        log = path.with_name(path.name + ending)
+        if log.exists():
+            log.rename(log.with_name(f"{log.name}.orphan-{uuid4().hex[:8]}"))
 
 
 def flush_folder(folder: Path) -> None:

@@ -8,6 +8,7 @@ import pytest
 
 from kb.errors import Cancelled, StoreBusy, StoreDamaged, StoreExists, StoreMissing, StoreRefused
 from kb.store import copying
+from kb.store.checking import verify
 from kb.store.engine import Address, parse_address
 from kb.store.safekeeping import backup, backups_in, replace_book, restore
 from kb.store.session import OpenBook
@@ -182,3 +183,20 @@ def test_a_damaged_book_can_be_replaced(tmp_path: Path) -> None:
     with Store.open(book) as store:
         assert store.count() == 50
     assert parse_address(book).path == book
+
+
+def test_the_log_of_a_book_that_was_deleted_is_not_played_into_its_successor(tmp_path: Path) -> None:
+    """SQLite would play it into whatever takes the name: sqlite.org, How To Corrupt An SQLite Database File."""
+    place = tmp_path / "group.sidepath"
+    with Store.create(place) as first:
+        first.add(a_run(note="of the first book"), "MK")
+        log = place.with_name(f"{place.name}-wal")
+        left = log.read_bytes()
+    place.unlink()
+    assert left
+    log.write_bytes(left)
+    with Store.create(place) as second:
+        assert second.count() == 0
+        assert all(check.ok for check in verify(second))
+    kept = [p for p in tmp_path.iterdir() if "-wal.orphan" in p.name]
+    assert [p.read_bytes() for p in kept] == [left]
