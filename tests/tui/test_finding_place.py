@@ -46,7 +46,7 @@ async def test_a_substructure_is_searched_drawn_and_opened() -> None:
 async def test_the_form_refuses_nothing_tells_errors_and_empties() -> None:
     async with driven() as (app, pilot):
         await pressed(pilot, "f4")
-        await pressed(pilot, "f5")
+        await pressed(pilot, "f9")
         assert "Fill at least one line." in on_screen(app)
         await typed(pilot, "#find-substructure", "C(")
         await pressed(pilot, "enter")
@@ -71,7 +71,7 @@ async def test_choices_are_asked_with_the_lines() -> None:
         assert screen.query_typed.verdict == "failed"
         assert screen.query_typed.failed == "group-loss"
         assert screen.query_typed.role == "any"
-        await pressed(pilot, "f5")
+        await pressed(pilot, "f9")
         await settled(pilot, 5)
         assert [card.hit.run.code for card in screen.query(HitCard)] == ["R-0004"]
         screen.query_one(HitCard).focus()

@@ -170,22 +170,22 @@ async def test_the_estimate_without_precedents_says_so() -> None:
 async def test_the_shelf_turns_to_advice_and_to_the_temperature_plot() -> None:
     async with driven() as (app, pilot):
         await planned(pilot)
-        await pressed(pilot, "f6")
+        await pressed(pilot, "f7")
         assert isinstance(app.focused, AdviceList)
         assert "60 °C instead of 80 °C" in on_screen(app)
         await pressed(pilot, "enter")
         assert "Matched pairs" in on_screen(app)
-        await pressed(pilot, "escape", "f6")
+        await pressed(pilot, "escape", "f7")
         assert app.screen.query_one(Shelf).is_temperature_in_view
         assert "bath temperature" in on_screen(app)
-        await pressed(pilot, "f6")
+        await pressed(pilot, "f7")
         assert app.screen.query_one(Shelf).index == 0
 
 
 async def test_a_plan_without_a_temperature_says_what_the_plot_needs() -> None:
     async with driven() as (app, pilot):
         await typed(pilot, "#field-scheme", MESYLATE)
-        await pressed(pilot, "f6", "f6")
+        await pressed(pilot, "f7", "f7")
         assert "Give a temperature in numbers" in on_screen(app)
 
 
@@ -194,7 +194,7 @@ async def test_trouble_with_the_temperatures_is_told() -> None:
     async with driven(book) as (app, pilot):
         await planned(pilot)
         book.broken["what_if"] = StoreBusy("The book is busy.", "Try again.")
-        await pressed(pilot, "f6", "f6")
+        await pressed(pilot, "f7", "f7")
         assert "The book is busy." in on_screen(app)
 
 
@@ -252,7 +252,7 @@ async def test_atom_numbers_come_and_go() -> None:
         await planned(pilot)
         view = app.screen.query_one("#plan-drawing", SchemeView)
         assert "S:3" not in on_screen(app)
-        await pressed(pilot, "f7")
+        await pressed(pilot, "ctrl+l")
         assert view.numbers
         assert "S:3" in on_screen(app)
 

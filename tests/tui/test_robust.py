@@ -90,7 +90,7 @@ def test_a_worker_that_dies_leaves_the_interface_running() -> None:
 def test_a_screen_that_raises_ends_in_words_with_the_terminal_restored() -> None:
     terminal = Terminal(SCREEN)
     assert terminal.read_until(lambda seen: b"12 runs" in seen)
-    os.write(terminal.fd, b"\x1b[18~")  # F7
+    os.write(terminal.fd, b"\x0c")  # Ctrl+L
     assert terminal.ended() == 1
     assert LEAVES_ALTERNATE_SCREEN in terminal.seen
     assert SHOWS_CURSOR in terminal.seen.split(LEAVES_ALTERNATE_SCREEN)[-1] + terminal.seen

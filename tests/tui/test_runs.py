@@ -57,7 +57,7 @@ async def test_the_run_under_the_cursor_is_drawn_and_opened() -> None:
         await pressed(pilot, "enter")
         assert isinstance(app.screen, RunScreen)
         assert "JM: recorded" in on_screen(app)
-        await pressed(pilot, "f7")
+        await pressed(pilot, "ctrl+l")
         assert "S:3" in on_screen(app)
         await pressed(pilot, "p")
         assert isinstance(app.screen, PlanningScreen)

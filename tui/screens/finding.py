@@ -76,7 +76,7 @@ matter. The matched atoms are marked • in the drawings. Arrow keys walk throug
 and b turn the pages.
 """
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("f5", "search", "Search", key_display="F5", id="find.search", tooltip="Search now"),
+        Binding("f9", "search", "Search", key_display="F9", id="find.search", tooltip="Search now"),
         Binding("ctrl+n", "clear", "New", id="find.new", tooltip="Empty the form"),
         Binding("slash", "form", "Form", key_display="/", show=False, id="find.form", tooltip="Back to the form"),
         Binding("n", "next_page", "Next page", id="find.next", tooltip="Next page"),

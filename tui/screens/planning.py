@@ -67,9 +67,9 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("f9", "run_it", "Run it", key_display="F9", id="plan.run", tooltip="Record what came out of it"),
         Binding(
-            "f6", "shelf", "Shelf", key_display="F6", id="plan.shelf", tooltip="Closest runs, one change, temperature"
+            "f7", "shelf", "Shelf", key_display="F7", id="plan.shelf", tooltip="Closest runs, one change, temperature"
         ),
-        Binding("f7", "numbers", "Numbers", key_display="F7", id="plan.numbers", tooltip="Atom numbers in the drawing"),
+        Binding("ctrl+l", "numbers", "Numbers", id="plan.numbers", tooltip="Atom numbers in the drawing"),
         Binding("ctrl+n", "clear", "New", id="plan.new", tooltip="Empty the form (can be undone)"),
         Binding("ctrl+z", "undo", "Undo", show=False, id="plan.undo", tooltip="Take back the last edit"),
         Binding("ctrl+y", "redo", "Redo", show=False, id="plan.redo", tooltip="Do the edit again"),

@@ -36,7 +36,7 @@ class RunScreen(RunActions[None]):
     HELP = "One run: what was done, what came out, who changed it. p takes it to planning, a amends, w withdraws."
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("escape", "back", "Back", id="run.back", tooltip="Back to where you came from"),
-        Binding("f7", "numbers", "Numbers", key_display="F7", id="run.numbers", tooltip="Atom numbers"),
+        Binding("ctrl+l", "numbers", "Numbers", id="run.numbers", tooltip="Atom numbers"),
     ]
 
     def __init__(self, code: str, matched: str = "", atoms: tuple[int, ...] = ()) -> None:

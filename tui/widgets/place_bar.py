@@ -10,6 +10,8 @@ from textual.content import Content
 from textual.reactive import reactive
 from textual.widgets import Static
 
+from kb.plain import shortened
+
 PLACES: tuple[tuple[str, str, str], ...] = (
     ("planning", "F2", "Planning"),
     ("runs", "F3", "Runs"),
@@ -43,15 +45,35 @@ class PlaceBar(Horizontal):
         else:
             self._show_status()
 
+    def on_resize(self) -> None:
+        """Fit the state of the book to what is left of the line."""
+        self._show_status()
+
     def _show_status(self) -> None:
-        words = getattr(self.app, "book_words", "")
-        self.query_one("#place-status", Static).update(("working…  " if self.is_busy else "") + words)
+        words = ("working…  " if self.is_busy else "") + getattr(self.app, "book_words", "")
+        line = self.query_one("#place-status", Static)
+        line.update(fit_status(words, line.size.width or len(words)))
 
     def _tabs(self) -> Content:
         parts: list[Content] = []
         for name, key, title in PLACES:
             here = name == self._place
-            text = f"▸{key} {title} " if here else f" {key} {title} "
+            text = f"▸{key} {title}" if here else f" {key} {title}"
             style = "bold $accent" if here else "$foreground"
             parts.append(Content.styled(text, style).stylize(f"@click=app.place('{name}')"))
         return Content("").join(parts)
+
+
+def fit_status(words: str, width: int) -> str:
+    """Return the state of the book in `width` characters.
+
+    The name of the book gives way first, since how many runs there are and who may write must be seen.
+
+    >>> fit_status("group-of-four.sidepath · 421 runs · read only", 32)
+    'group-of… · 421 runs · read only'
+    """
+    name, dot, rest = words.partition(" · ")
+    spare = len(words) - width
+    if spare <= 0 or not dot:
+        return shortened(words, width)
+    return shortened(name, max(len(name) - spare, 1)) + dot + rest if len(name) - spare >= 4 else rest[:width]

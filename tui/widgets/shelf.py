@@ -90,5 +90,5 @@ class Shelf(Vertical):
         names = [f"{title}{count}" for (_, title), count in zip(PARTS, self._counts, strict=True)]
         for position, (panel, _) in enumerate(PARTS):
             others = names[position + 1 :] + names[:position]
-            rest = "" if self.screen.has_class("-wide") else f"  (F6: {', '.join(others)})"
+            rest = "" if self.screen.has_class("-wide") else f"  (F7: {', '.join(others)})"
             self.query_one(f"#{panel}", Panel).say(f"{names[position]}{rest}")
