@@ -10,7 +10,6 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
-from itertools import combinations
 
 from kb.chem.centre import LeavingSite
 from kb.chem.labile import LabileGroup, find_labile_groups
@@ -43,6 +42,9 @@ NOTHING = Removal()
 Losses = tuple[tuple[int, LabileGroup], ...]
 """Labile groups that come off besides, each with its part."""
 
+LossTable = dict[tuple[int, int], list[Losses]]
+"""(elements, P) taken from the balance -> the losses that take just that."""
+
 
 class Workbench:
     """The fragments of the left side under pool numbering, with a portion of water at hand.
@@ -59,7 +61,8 @@ class Workbench:
         self.tries = 0
         self.pairs = 0
         self._removals: dict[object, Removal] = {}
-        self._loss_tables: dict[tuple[int, ...], dict[tuple[int, int], list[Losses]]] = {}
+        self._tables_held: dict[tuple[int, ...], LossTable] = {}
+        self._drops: dict[int, list[tuple[NucleophileSite, Removal]]] = {}
 
     @property
     def graphs(self) -> list[Molgraph]:
@@ -87,6 +90,13 @@ class Workbench:
     def nucleophiles(self, part: int) -> tuple[NucleophileSite, ...]:
         """Return the nucleophilic atoms of a part."""
         return find_nucleophile_sites(self.graphs[part])
+
+    def drops(self, part: int) -> list[tuple[NucleophileSite, Removal]]:
+        """Return the nucleophilic atoms of a part, each with the balance of what it drops first."""
+        known = self._drops.get(part)
+        if known is None:
+            known = self._drops[part] = [(n, self.of_nucleophile(part, n)) for n in self.nucleophiles(part)]
+        return known
 
     def removal(self, part: int, kept: int, gone: int, departs: frozenset[int] | None, gain: int) -> Removal:
         """Return the balance of one broken bond.
@@ -153,31 +163,50 @@ class Workbench:
 
     def losses_for(self, parts: Sequence[int], excess: tuple[int, int], *, most: int = 3) -> Iterator[Losses]:
         """Yield the sets of labile groups over the parts whose loss takes away the excess exactly, smallest first."""
-        if most == 0:
-            if excess == (0, 0):
-                yield ()
-            return
-        key = tuple(sorted(set(parts)))
-        table = self._loss_tables.get(key)
-        if table is None:
-            table = self._loss_table(key)
-            self._loss_tables[key] = table
-        for losses in table.get(excess, ()):
+        for losses in self.loss_table(parts).get(excess, ()):
             if len(losses) <= most:
                 yield losses
 
-    def _loss_table(self, parts: tuple[int, ...]) -> dict[tuple[int, int], list[Losses]]:
+    def loss_table(self, parts: Sequence[int]) -> LossTable:
+        """Return the sets of labile groups over the parts, keyed by the elements and P that they take, smallest first.
+
+        Most parts hold no labile group, so most choices of parts share a table.
+        """
+        held = self._tables_held
+        table = held.get(tuple(parts))
+        if table is None:
+            key = tuple(p for p in sorted(set(parts)) if find_labile_groups(self.graphs[p]))
+            table = held.get(key)
+            if table is None:
+                table = held[key] = self._loss_table(key)
+            held[tuple(parts)] = table
+        return table
+
+    def _loss_table(self, parts: tuple[int, ...]) -> LossTable:
         """Return combinations of labile groups of the parts, keyed by what they take from the balance."""
         groups = [(p, g) for p in parts for g in find_labile_groups(self.graphs[p])[:MAX_LABILE]]
-        table: dict[tuple[int, int], list[Losses]] = {(0, 0): [()]}
-        largest = 3 if len(groups) <= 8 else (2 if len(groups) <= 30 else 1)
-        for size in range(1, largest + 1):
-            for chosen in combinations(groups, size):
-                if size > 1 and _clash(chosen):
-                    continue
-                removals = [self.of_group(p, g) for p, g in chosen]
-                key = (sum(r.elements for r in removals), sum(r.protons for r in removals))
-                table.setdefault(key, []).append(chosen)
+        removals = [self.of_group(p, g) for p, g in groups]
+        table: LossTable = {(0, 0): [()]}
+        for group, removal in zip(groups, removals, strict=True):
+            table.setdefault((removal.elements, removal.protons), []).append((group,))
+        if len(groups) < 2 or len(groups) > 30:
+            return table
+        count = len(groups)
+        apart = _which_stand_apart(removals)
+        pairs = [(i, j) for i in range(count) for j in apart[i]]
+        for i, j in pairs:
+            one, two = removals[i], removals[j]
+            key = (one.elements + two.elements, one.protons + two.protons)
+            table.setdefault(key, []).append((groups[i], groups[j]))
+        if count > 8:
+            return table
+        for i, j in pairs:
+            one, two = removals[i], removals[j]
+            for k in apart[j]:
+                if k in apart[i]:
+                    three = removals[k]
+                    key = (one.elements + two.elements + three.elements, one.protons + two.protons + three.protons)
+                    table.setdefault(key, []).append((groups[i], groups[j], groups[k]))
         return table
 
     def edit(
@@ -206,12 +235,17 @@ class Workbench:
         return self.tries <= MAX_TRIES and self.pool.makes(edit, target)
 
 
-def _clash(chosen: Sequence[tuple[int, LabileGroup]]) -> bool:
-    """Return whether two of the groups overlap."""
-    gone: set[tuple[int, int]] = set()
-    for part, group in chosen:
-        mine = {(part, a) for loss in group.losses for a in loss.departs}
-        if gone & mine:
-            return True
-        gone |= mine
-    return any((part, loss.kept) in gone for part, group in chosen for loss in group.losses)
+def _which_stand_apart(removals: Sequence[Removal]) -> list[list[int]]:
+    """Return, for each removal, the later ones that it can be carried out with: none takes what the other needs."""
+    gone = [frozenset().union(*(c.departs for c in r.cuts)) for r in removals]
+    kept = [frozenset(c.kept for c in r.cuts) for r in removals]
+    whole = [not (g & k) for g, k in zip(gone, kept, strict=True)]
+    return [
+        [
+            j
+            for j in range(i + 1, len(removals))
+            if whole[i] and whole[j] and gone[i].isdisjoint(gone[j])
+            and kept[i].isdisjoint(gone[j]) and kept[j].isdisjoint(gone[i])
+        ]
+        for i in range(len(removals))
+    ]

@@ -168,16 +168,17 @@ def _filled(bench: Workbench, target: Target, opening: Opening, other: int) -> I
     """Yield the opening filled by each nucleophilic atom of one part."""
     within = other == opening.part
     parts = (opening.part,) if within else (opening.part, other)
-    here = bench.excess(parts, target, *opening.removals)
+    elements, protons = bench.excess(parts, target, *opening.removals)
+    protons += opening.gain
+    fitting = bench.loss_table(parts).get
     graph = bench.graphs[opening.part]
-    for nucleophile in bench.nucleophiles(other):
-        if within and not fills(nucleophile, opening, graph):
+    for nucleophile, dropped in bench.drops(other):
+        sets = fitting((elements - dropped.elements, protons - dropped.protons))
+        if sets is None or (within and not fills(nucleophile, opening, graph)):
             continue
         if opening.gain and bench.graphs[other].elements[nucleophile.atom] != 7:
             continue
-        dropped = bench.of_nucleophile(other, nucleophile)
-        excess = (here[0] - dropped.elements, here[1] - dropped.protons + opening.gain)
-        for losses in bench.losses_for(parts, excess):
+        for losses in sets:
             joins = (*opening.joins, (bench.atom(opening.part, opening.atom), bench.atom(other, nucleophile.atom)))
             edit = bench.edit(parts, (*opening.removals, dropped), joins, losses)
             if edit and bench.gives(edit, target):

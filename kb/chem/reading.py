@@ -37,12 +37,14 @@ LARGEST_SCHEME = 700
 Place = tuple[int, int, int | None]
 
 
-def read_scheme(text: str, *, ignore_maps: bool = False) -> Reading:
+def read_scheme(text: str, *, ignore_maps: bool = False, with_possible: bool = True) -> Reading:
     """Return what a scheme does.
 
     Args:
         text: reaction SMILES, or structures alone.
         ignore_maps: read as if no atom were mapped; map numbers are reported all the same.
+        with_possible: False leaves out, beside a stated product, what else could form: a third of the time, and
+            nothing of the centre, the nucleophile or the fate rests on it.
 
     Returns:
         The reading. `ok` is False, with the reason, when the text is no usable scheme.
@@ -56,7 +58,7 @@ def read_scheme(text: str, *, ignore_maps: bool = False) -> Reading:
         return Reading(
             scheme=make_visible(text, 2000), ok=False, confidence=Confidence.UNRESOLVED, reason=str(problem)
         )
-    reader = _Reader(scheme)
+    reader = _Reader(scheme, with_possible=with_possible)
     if scheme.products:
         return reader.with_product(ignore_maps=ignore_maps)
     return reader.without_product()
@@ -65,8 +67,9 @@ def read_scheme(text: str, *, ignore_maps: bool = False) -> Reading:
 class _Reader:
     """One scheme being read."""
 
-    def __init__(self, scheme: Scheme) -> None:
+    def __init__(self, scheme: Scheme, *, with_possible: bool = True) -> None:
         self.scheme = scheme
+        self.with_possible = with_possible
         self.left = scheme.left
         self.graphs = [f.graph for f in self.left]
         self.bench = Workbench(self.graphs)
@@ -143,7 +146,7 @@ class _Reader:
         """Return an honest refusal to read, with what could form from the likeliest centre."""
         guess = guess_centre(self.graphs, len(self.scheme.reactants), self.promoters)
         possible: tuple[PossibleFate, ...] = ()
-        if guess.part is not None and len(self.graphs) <= 60:
+        if self.with_possible and guess.part is not None and len(self.graphs) <= 60:
             site = guess.site
             place = None if site is None else (guess.part, site.centre, site.leaving)
             possible = self._fates(guess.part, place, None)
@@ -170,7 +173,7 @@ class _Reader:
         part = places[0][0] if places else self._likely_substrate()
         leading = match.nucleophile[:2] if match.nucleophile and self.bench.is_stated(match.nucleophile[0]) else None
         place = places[0] if places and match.fate is not Fate.GROUP_LOSS else None
-        others = self._fates(part, place, leading) if part is not None else ()
+        others = self._fates(part, place, leading) if self.with_possible and part is not None else ()
         return Reading(
             scheme=self.scheme.text,
             ok=True,

@@ -153,6 +153,7 @@ def _joined_fragments(text: str, side: Side) -> tuple[Fragment, ...] | None:
     return tuple(found)
 
 
+@lru_cache(maxsize=4096)
 def _fragment(token: str, side: Side) -> Fragment:
     smiles, entered, maps = _canonical(token)
     return Fragment(

@@ -10,7 +10,7 @@ import contextlib
 import dataclasses
 import json
 import re
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from functools import cache, lru_cache
 from typing import TYPE_CHECKING, Any
@@ -69,7 +69,7 @@ def account_of_run(run: Run) -> Account:
 
 def derive(run: Run) -> DerivedFacts:
     """Return the facts to store beside a run."""
-    return account_of_run(run).facts
+    return dataclasses.replace(_account_to_store(run.scheme, run.conditions).facts, run_id=run.run_id)
 
 
 @cache
@@ -87,7 +87,7 @@ def dissect(run: Run) -> list[tuple[str, int, str]]:
         (role, position, SMILES) of every left-side fragment (substrate or reagent, by component), of every named
         component with a structure, and of every product stated or seen. Unreadable text gives fewer rows, no error.
     """
-    account = account_of_run(run)
+    account = _account_to_store(run.scheme, run.conditions)
     centre = account.reading.centre
     rows: list[tuple[str, int, str]] = []
     for position, smiles in enumerate(account.fragments):
@@ -124,7 +124,21 @@ def profile_from_json(text: str) -> ConditionProfile:
     return ConditionProfile(**values)
 
 
-def _account(scheme: str, conditions: Conditions, run_id: UUID) -> Account:
+@lru_cache(maxsize=16)
+def _account_to_store(scheme: str, conditions: Conditions) -> Account:
+    """Return the account that facts and structures are taken from: one for both, without what else could form."""
+    return _account(scheme, conditions, _NO_RUN, with_possible=False)
+
+
+@lru_cache(maxsize=8192)
+def _read_to_store(text: str) -> Reading:
+    """Read a scheme without listing what else could form; people run one scheme under many conditions."""
+    from kb.chem.reading import read_scheme
+
+    return read_scheme(text, with_possible=False)
+
+
+def _account(scheme: str, conditions: Conditions, run_id: UUID, *, with_possible: bool = True) -> Account:
     from kb.chem.reading import read_scheme
     from kb.chem.scheme import parse_scheme
     from kb.errors import ChemistryError
@@ -133,7 +147,8 @@ def _account(scheme: str, conditions: Conditions, run_id: UUID) -> Account:
     parsed = None
     with contextlib.suppress(ChemistryError):
         parsed = parse_scheme(scheme)
-    reading = read_scheme(scheme) if parsed is None else _read(parsed, conditions)
+    read = read_scheme if with_possible else _read_to_store
+    reading = read(scheme) if parsed is None else _read(parsed, conditions, read)
     reading = dataclasses.replace(reading, scheme=scheme)
     fragments: tuple[str, ...] = ()
     products: tuple[str, ...] = ()
@@ -156,15 +171,13 @@ def _account(scheme: str, conditions: Conditions, run_id: UUID) -> Account:
     )
 
 
-def _read(parsed: Scheme, conditions: Conditions) -> Reading:
+def _read(parsed: Scheme, conditions: Conditions, read: Callable[[str], Reading]) -> Reading:
     """Read a scheme beside its conditions; protic solvents are offered when nothing else explains the product.
 
     A solvent is seldom what reacts, so it is asked only where the reading is unresolved or names no nucleophile for
     what bonded. Without a product, what a solvent could do is listed, but it settles no fate.
     """
-    from kb.chem.reading import read_scheme
-
-    first = read_scheme(_with_named(parsed, conditions))
+    first = read(_with_named(parsed, conditions))
     solvents = _protic_solvents(conditions)
     is_open = first.confidence is Confidence.UNRESOLVED or (
         first.nucleophile is None and first.fate in (Fate.SUBSTITUTION, Fate.ADDITION, Fate.REARRANGED)
@@ -174,11 +187,11 @@ def _read(parsed: Scheme, conditions: Conditions) -> Reading:
     if parsed.products:
         if not is_open:
             return first
-        second = read_scheme(_with_named(parsed, conditions, solvents))
+        second = read(_with_named(parsed, conditions, solvents))
         return second if second.nucleophile is not None and second.ok else first
     if first.possible and any(p.fate is Fate.SUBSTITUTION for p in first.possible):
         return first
-    second = read_scheme(_with_named(parsed, conditions, solvents))
+    second = read(_with_named(parsed, conditions, solvents))
     same = second.centres == first.centres and second.confidence is first.confidence
     return dataclasses.replace(first, possible=second.possible) if same else first
 
@@ -288,6 +301,7 @@ def _facts(reading: Reading, fragments: tuple[str, ...], profile: ConditionProfi
     )
 
 
+@lru_cache(maxsize=4096)
 def _rooted(smiles: str, atom: int | None) -> tuple[str | None, int | None, bytes | None]:
     """Return canonical SMILES without maps, the atom's place in it, and its environment bits."""
     from rdkit import Chem, DataStructs
