@@ -43,7 +43,7 @@ class Finder:
         self.store = store
         self.live = LiveRecord(store, threads)
         self._motif_search: tuple[int, MotifSearch] | None = None
-        self._substrates: tuple[int, list[str], bytes] | None = None
+        self._substrates: _Substrates | None = None
 
     def find(
         self, criteria: Criteria, deadline_s: float | None = None, progress: Progress | None = None
@@ -123,13 +123,44 @@ class Finder:
         mol = Chem.MolFromSmiles(smiles) if smiles else None
         if mol is None:
             return None
+        substrates = self._substrates_now()
+        scores = np.append(tanimoto_to_each(pack_morgan(mol), substrates.packed), np.nan)
+        return scores[substrates.rows_of(codes)]
+
+    def _substrates_now(self) -> _Substrates:
+        """Return the fingerprints of the substrates at the book's present state."""
         version = self.store.data_version()
-        if self._substrates is None or self._substrates[0] != version:
+        if self._substrates is None or self._substrates.version != version:
             book = self.store.book
-            self._substrates = (version, *substrate_fingerprints(book, book.deriving.recipe))
-        _, found, packed = self._substrates
-        score_of = dict(zip(found, tanimoto_to_each(pack_morgan(mol), packed).tolist(), strict=True))
-        return np.array([score_of.get(code, np.nan) for code in codes], np.float64)
+            self._substrates = _Substrates(version, *substrate_fingerprints(book, book.deriving.recipe))
+        return self._substrates
+
+
+class _Substrates:
+    """Fingerprints of the distinct substrates, and which run has which.
+
+    Args:
+        version: of the book when they were read.
+        places: (code, structure id) of runs. ids: of the fingerprints, ascending. packed: fingerprints.
+    """
+
+    def __init__(self, version: int, places: Sequence[tuple[str, int]], ids: Sequence[int], packed: bytes) -> None:
+        self.version = version
+        self.packed = packed
+        row_of = {structure_id: row for row, structure_id in enumerate(ids)}
+        self._row_of_code = {code: row_of[i] for code, i in places if i in row_of}
+        self._rows: tuple[Sequence[str], NDArray[np.intp]] | None = None
+
+    def rows_of(self, codes: Sequence[str]) -> NDArray[np.intp]:
+        """Return the fingerprint of each run, -1 where there is none; kept for the sequence last asked about.
+
+        A view asks with the same codes at every check; looking a hundred thousand of them up again would hold
+        everybody else up.
+        """
+        if self._rows is None or self._rows[0] is not codes:
+            found = self._row_of_code
+            self._rows = (codes, np.fromiter((found.get(c, -1) for c in codes), np.intp, len(codes)))
+        return self._rows[1]
 
 
 class _Answer:

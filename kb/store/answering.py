@@ -42,7 +42,7 @@ class Answers:
             return book_id_of(connection)
 
     def data_version(self) -> int:
-        """Return a number that goes up with every change by anybody; cheap to ask."""
+        """Return a number that goes up with every change by anybody, drafts left out; cheap to ask."""
         with self.book.reading() as connection:
             return int(history.read_meta(connection, CHANGES) or 0)
 

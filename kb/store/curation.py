@@ -135,7 +135,7 @@ class Acknowledgements:
 
 
 class Drafts:
-    """Entry forms as they were last left."""
+    """Entry forms as they were last left; no answer rests on them, so they do not count as changes of the book."""
 
     def __init__(self, book: OpenBook) -> None:
         self._book = book
@@ -149,7 +149,7 @@ class Drafts:
             raise InvalidRecord("The draft holds what JSON cannot.", "Keep text and numbers only.") from error
         kept = Draft(draft_id=draft_id, updated_at=self._book.clock(), content=json.loads(text))
         values = {"draft_id": draft_id, "updated_at": kept.updated_at, "content": text}
-        with self._book.writing() as connection:
+        with self._book.writing(is_change=False) as connection:
             connection.execute(sa.delete(DRAFT).where(DRAFT.c.draft_id == draft_id))
             connection.execute(sa.insert(DRAFT).values(**values))
         return kept
@@ -168,7 +168,7 @@ class Drafts:
 
     def discard(self, draft_id: str) -> None:
         """Throw a draft away; silent where there is none."""
-        with self._book.writing() as connection:
+        with self._book.writing(is_change=False) as connection:
             connection.execute(sa.delete(DRAFT).where(DRAFT.c.draft_id == draft_id))
 
 

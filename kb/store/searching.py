@@ -34,10 +34,11 @@ _COMPONENTS = "SELECT t.run_key, t.role, t.name, t.smiles FROM component t"
 _SOLVENTS = "SELECT t.run_key, t.name, t.smiles FROM solvent t"
 _FAILURES = "SELECT t.run_key, t.mode FROM failure t"
 _PLACES = "SELECT t.run_key, t.role, t.position, t.structure_id FROM run_structure t"
-_SUBSTRATES = """SELECT run.code, structure.morgan, recipe.name FROM run_structure place
-    JOIN run ON run.run_key = place.run_key JOIN structure ON structure.structure_id = place.structure_id
-    LEFT JOIN recipe ON recipe.recipe_id = structure.recipe_id
-    WHERE place.role = :role AND run.withdrawn_why IS NULL AND structure.morgan IS NOT NULL"""
+_SUBSTRATES = """SELECT run.code, place.structure_id FROM run_structure place JOIN run ON run.run_key = place.run_key
+    WHERE place.role = :role AND run.withdrawn_why IS NULL ORDER BY place.run_key"""
+_SUBSTRATE_BITS = """SELECT structure.structure_id, structure.morgan, structure.recipe_id FROM structure
+    WHERE structure.morgan IS NOT NULL AND structure.structure_id IN
+    (SELECT place.structure_id FROM run_structure place WHERE place.role = :role) ORDER BY structure.structure_id"""
 _SCREENS = """SELECT structure_id, recipe_id, augmented FROM structure WHERE augmented IS NOT NULL
     ORDER BY structure_id"""
 _CODES_WITH = """SELECT DISTINCT run.code FROM run_structure place JOIN run ON run.run_key = place.run_key
@@ -124,19 +125,28 @@ def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 1024) -
                 yield [list(ids), *(list(column) for column in blobs)]
 
 
-def substrate_fingerprints(book: OpenBook, recipe: str) -> tuple[list[str], bytes]:
-    """Return the codes of the standing runs that have a substrate, and its Morgan fingerprint for each, packed.
+def substrate_fingerprints(book: OpenBook, recipe: str) -> tuple[list[Any], list[int], bytes]:
+    """Return where substrates stand, and the Morgan fingerprint of each distinct one.
 
-    A check needs no more of the structures than this, so it is spared reading all of them.
+    A check needs no more of the structures than this, so it is spared reading all of them; and since a group runs
+    the same substrate again and again, each is read once.
+
+    Returns:
+        (code, structure_id) of the standing runs with a substrate; the ids of the encoded substrates, ascending;
+        their fingerprints in that order, one behind the other.
 
     Raises:
         IndexStale: a structure was encoded by another recipe.
     """
+    role = {"role": str(Role.SUBSTRATE)}
     with book.reading() as connection:
-        rows = connection.execute(sa.text(_SUBSTRATES), {"role": str(Role.SUBSTRATE)}).all()
-    if recipe and any(name != recipe for name in {row[2] for row in rows}):
-        raise _stale()
-    return [row[0] for row in rows], b"".join(row[1] for row in rows)
+        places = list(connection.execute(sa.text(_SUBSTRATES), role).all())
+        rows = connection.execute(sa.text(_SUBSTRATE_BITS), role).all()
+        if recipe and rows:
+            named = sa.select(RecipeRow.recipe_id).where(RecipeRow.name == recipe)
+            if {row[2] for row in rows} - {connection.execute(named).scalar()}:
+                raise _stale()
+    return places, [row[0] for row in rows], b"".join(row[1] for row in rows)
 
 
 def smiles_of(book: OpenBook, structure_ids: Sequence[int]) -> dict[int, str]:

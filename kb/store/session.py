@@ -54,8 +54,12 @@ class OpenBook:
         return engines.reading(self.engine, self.address)
 
     @contextmanager
-    def writing(self) -> Iterator[sa.Connection]:
+    def writing(self, *, is_change: bool = True) -> Iterator[sa.Connection]:
         """Hand out the write transaction; the counter of changes goes up with it.
+
+        Args:
+            is_change: False for what no answer rests on (a draft): the counter stays, and with it whatever others
+                have read of the book, which would take seconds to read again after every word that is typed.
 
         Raises:
             StoreRefused: opened for reading only.
@@ -65,8 +69,9 @@ class OpenBook:
             raise StoreRefused(f"{self.address} was opened for reading only.", "Open it for writing.")
         with engines.writing(self.engine, self.address) as connection:
             yield connection
-            counter = history.read_meta(connection, CHANGES)
-            history.write_meta(connection, CHANGES, str(int(counter or 0) + 1))
+            if is_change:
+                counter = history.read_meta(connection, CHANGES)
+                history.write_meta(connection, CHANGES, str(int(counter or 0) + 1))
 
     def foreseen(self, smiles: Iterable[str]) -> Encodings:
         """Encode, before the write lock is taken, the structures that the book does not hold yet."""

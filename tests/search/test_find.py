@@ -269,3 +269,14 @@ def test_the_similarity_of_substrates_comes_in_the_order_of_the_codes(finder: Fi
     assert 0 < values[1] < 1
     assert values[2] != values[2], "not a number for a code that is not there"
     assert finder.tanimoto_of_runs(None, codes) is None
+
+
+def test_the_similarity_of_substrates_follows_the_book(finder: Finder) -> None:
+    codes = ("R-0003", "R-0001")
+    first = finder.tanimoto_of_runs("CCC(C)Br", codes)
+    finder.store.withdraw("R-0003", "wrong bottle", "ZZ")
+    second = finder.tanimoto_of_runs("CCC(C)Br", codes)
+    assert first is not None and second is not None
+    assert first[0] == 1.0
+    assert second[0] != second[0], "a withdrawn run no longer speaks"
+    assert second[1] == first[1]

@@ -84,6 +84,16 @@ def test_a_draft_comes_back_as_it_was_left(tmp_path: Path) -> None:
             store.drafts.save("form", {"when": object()})
 
 
+def test_a_draft_does_not_count_as_a_change_of_the_book(tmp_path: Path) -> None:
+    with a_book(tmp_path) as store:
+        before = store.data_version()
+        store.drafts.save("form", {"scheme": "C"})
+        store.drafts.discard("form")
+        assert store.data_version() == before, "what others have read would be read again at every word"
+        store.acknowledgements.add("n-boc-strong-acid", "CC>>CO", "MK", "tried before")
+        assert store.data_version() > before
+
+
 def test_files_are_kept_once_and_named_by_runs(tmp_path: Path) -> None:
     with a_book(tmp_path) as store:
         store.add(a_run(), "MK")
