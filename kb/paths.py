@@ -49,6 +49,11 @@ def demo_book() -> Path:
     return platformdirs.user_cache_path(APPLICATION, appauthor=False) / "demo.sidepath"
 
 
+def replays_folder() -> Path:
+    """Return where the terminal interface keeps replays: in the cache, since they can be run again."""
+    return platformdirs.user_cache_path(APPLICATION, appauthor=False) / "replays"
+
+
 def settings_file() -> Path:
     """Return where the user's settings are."""
     return platformdirs.user_config_path(APPLICATION, appauthor=False) / "settings.toml"

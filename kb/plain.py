@@ -82,6 +82,11 @@ def shortened(text: str, width: int) -> str:
     return text if len(text) <= width else text[: max(width - 1, 0)] + "…"
 
 
+def counted(number: int, thing: str, things: str = "") -> str:
+    """Return "1 run", "2 runs", "1,200 runs"."""
+    return f"{number:,} {thing if number == 1 else things or thing + 's'}"
+
+
 def excerpt(text: str, limit: int) -> str:
     """Return text, or its beginning with a remark on how long the whole is [characters].
 

@@ -11,7 +11,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Sequence
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, replace
 from itertools import pairwise
 from typing import Any
 
@@ -76,6 +76,24 @@ class ReliabilityRow:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class MainShare:
+    """One run that was left out: the fate expected most, beside what was found.
+
+    Attributes:
+        run: its code.
+        expected, low, high: share of that fate with its interval, 0..1. found: measured, 0..1.
+        precedents: effective ones.
+    """
+
+    run: str
+    expected: float
+    low: float
+    high: float
+    found: float
+    precedents: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Calibration(ShowsItself):
     """How well a book expects itself.
 
@@ -91,6 +109,7 @@ class Calibration(ShowsItself):
         reliability: rows for a plot, by expected main share.
         by_support: error of the main share by effective precedents: (from, to, runs, error in points).
         stopped: the user ended it early; figures are of what was done.
+        main_shares: the runs behind `main_share`, `reliability` and `by_support`; not part of the JSON.
     """
 
     runs: int
@@ -104,10 +123,13 @@ class Calibration(ShowsItself):
     reliability: tuple[ReliabilityRow, ...]
     by_support: tuple[tuple[float, float, int, float], ...]
     stopped: bool = False
+    main_shares: tuple[MainShare, ...] = ()
 
     def as_dict(self) -> dict[str, Any]:
         """Return plain JSON values."""
-        return asdict(self) | {
+        values = asdict(replace(self, main_shares=()))
+        del values["main_shares"]
+        return values | {
             "reliability": [asdict(row) for row in self.reliability],
             "by_support": [  # JSON knows no infinity: an open end is null
                 [low, high if math.isfinite(high) else None, runs, error] for low, high, runs, error in self.by_support
@@ -211,6 +233,17 @@ def _gather(view: RecordView, done: Sequence[LeftOut], with_substrate: bool, sto
         reliability=_reliability(bounds, found),
         by_support=_by_support(np.array(support), np.abs(bounds[:, 0] - found)),
         stopped=stopped,
+        main_shares=tuple(
+            MainShare(
+                run=view.table.codes[row],
+                expected=round(mean, 4),
+                low=round(low, 4),
+                high=round(high, 4),
+                found=round(float(share), 4),
+                precedents=round(precedents, 2),
+            )
+            for (row, _, mean, low, high), share, precedents in zip(mains, found.tolist(), support, strict=True)
+        ),
     )
 
 

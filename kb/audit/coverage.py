@@ -44,6 +44,7 @@ class Cell:
         mean, spread: of the share and its standard deviation (0..1); None below two.
         failed: how many failed by the chemist's word.
         is_thin: THIN runs or fewer.
+        codes: of its runs, in the order of the book; not part of the JSON.
     """
 
     carbon_class: str
@@ -58,10 +59,11 @@ class Cell:
     spread: float | None
     failed: int
     is_thin: bool
+    codes: tuple[str, ...] = ()
 
     def as_dict(self) -> dict[str, Any]:
         """Return plain JSON values."""
-        return {name: getattr(self, name) for name in self.__slots__}
+        return {name: getattr(self, name) for name in self.__slots__ if name != "codes"}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -125,7 +127,7 @@ def measure_coverage(
     progress = progress or Silent()
     table = view.table
     share = wanted_share(table)
-    keys = _keys(view)
+    keys = cell_keys(view)
     rows_of: dict[tuple[str, str, str, str], list[int]] = defaultdict(list)
     for row, key in enumerate(keys):
         rows_of[key].append(row)
@@ -152,7 +154,8 @@ def wanted_share(table: FactTable) -> NDArray[np.float64]:
     return np.asarray(np.where((fate < 0) | np.isnan(measured), by_yield, np.clip(measured, 0, 1)))
 
 
-def _keys(view: RecordView) -> list[tuple[str, str, str, str]]:
+def cell_keys(view: RecordView) -> list[tuple[str, str, str, str]]:
+    """Return the cell of each run (n): carbon class, leaving group, nucleophile or base, solvent class."""
     table = view.table
     flasks = [_flask_words(view.profile_of_code(code)) for code in range(len(table.profiles))]
     carbon = [*WORDS["carbon_class"], "not read"]
@@ -202,6 +205,7 @@ def _cell(table: FactTable, key: tuple[str, str, str, str], rows: NDArray[np.int
         spread=round(float(share[told].std(ddof=1)), 3) if len(told) > 1 else None,
         failed=int((table.words["verdict"][rows] == failed).sum()),
         is_thin=len(rows) <= THIN,
+        codes=tuple(table.codes[row] for row in rows),
     )
 
 

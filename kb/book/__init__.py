@@ -9,6 +9,7 @@ from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from kb.book.beside import ask_beside
     from kb.book.demo import build_demo, demo_plan
     from kb.book.facade import Book, open_book
     from kb.book.find_words import criteria_from_words
@@ -27,6 +28,7 @@ if TYPE_CHECKING:
         find_recurring_failures,
         measure_book_coverage,
         replay_book,
+        tally_book,
     )
     from kb.book.words import (
         check_scheme,
@@ -45,7 +47,9 @@ _HOMES = {
     "calibrate_book": "whole",
     "find_recurring_failures": "whole",
     "measure_book_coverage": "whole",
+    "ask_beside": "beside",
     "replay_book": "whole",
+    "tally_book": "whole",
     "reckon_route": "routes",
     "route_lead": "routes",
     "page_of": "pages",
@@ -82,6 +86,7 @@ __all__ = [
     "Book",
     "SplitAnswer",
     "adopt_proposal",
+    "ask_beside",
     "build_demo",
     "calibrate_book",
     "check_scheme",
@@ -113,6 +118,7 @@ __all__ = [
     "save_page",
     "scheme_from_argument",
     "split_from_words",
+    "tally_book",
     "thing_named",
     "today",
 ]

@@ -28,6 +28,7 @@ if TYPE_CHECKING:
     from kb.audit.recurrence_values import Circumstance, Proposal, Recurrence
     from kb.audit.replay import Hindsight, Replayer
     from kb.audit.replay_report import ReplayReport
+    from kb.audit.tally import Tally
     from kb.book.asked import AskedBook
     from kb.store.values import HouseRule
 
@@ -113,6 +114,17 @@ def replay_book(
     return report_replay(found, dated.undated, stopped=len(found) < len(wanted))
 
 
+def tally_book(book: AskedBook, progress: Progress | None = None) -> Tally:
+    """Count the failures of a book by quarter, mode and class, with the codes behind every count."""
+    tame_rdkit()
+    from kb.audit.tally import tally_failures
+
+    tally = tally_failures(book.view())
+    if progress is not None:
+        progress.advance(1, 1, "failures counted")
+    return tally
+
+
 def calibrate_book(book: AskedBook, with_substrate: bool = False, progress: Progress | None = None) -> Calibration:
     """Measure how well the estimates of a book hold, each run expected from the others; see `kb.audit.calibration`.
 
@@ -164,7 +176,9 @@ _REPLAYER: list[Replayer] = []
 def _open_in_process(address: str) -> None:
     from kb.audit.replay import Replayer
     from kb.book import open_book
+    from kb.book.beside import end_with_parent
 
+    end_with_parent()
     tame_rdkit()
     _REPLAYER.append(Replayer(_dated(open_book(address, read_only=True))))
 

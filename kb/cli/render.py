@@ -15,6 +15,7 @@ from collections.abc import Iterable, Sequence
 import typer
 
 from kb.cli.session import use_colour
+from kb.plain import counted as counted
 from kb.plain import excerpt, plain, shortened
 from kb.vocabulary import Fate, Severity
 
@@ -61,11 +62,6 @@ def wrapped(text: str, indent: int = 0, first: str | None = None) -> list[str]:
     if first is not None and lines:
         out[0] = first + lines[0]
     return out
-
-
-def counted(number: int, thing: str, things: str | None = None) -> str:
-    """Return "1 run", "2 runs"."""
-    return f"{number:,} {thing if number == 1 else things or thing + 's'}"
 
 
 def percent(share: float) -> str:

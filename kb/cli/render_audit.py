@@ -8,7 +8,17 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from kb.cli.render import bar, counted, heading, severity_word, table, wrapped
+from kb.audit.sayings import (
+    say_cluster,
+    say_coverage,
+    say_experiment,
+    say_projects,
+    say_recurrence,
+    say_replay,
+    say_rule,
+    say_trial,
+)
+from kb.cli.render import bar, heading, severity_word, table, wrapped
 from kb.vocabulary import Severity
 
 if TYPE_CHECKING:
@@ -25,11 +35,7 @@ FEW = 8
 
 def render_recurring(found: Recurrence, *, verbose: bool = False) -> str:
     """Return the recurring failures, costliest first, numbered for `--adopt`."""
-    since = f" since {found.since}" if found.since else ""
-    lines = wrapped(
-        f"{counted(found.failures, 'failure')}{since} in {counted(found.runs, 'run')}; {found.in_clusters} of them "
-        f"recur, as {counted(len(found.clusters), 'kind')}. {found.unplaced} do not say what was hit."
-    )
+    lines = wrapped(say_recurrence(found))
     shown = found.clusters if verbose else found.clusters[:FEW]
     for number, cluster in enumerate(shown, 1):
         lines += ["", *_cluster(cluster, number, verbose=verbose)]
@@ -41,30 +47,13 @@ def render_recurring(found: Recurrence, *, verbose: bool = False) -> str:
 
 def _cluster(c: Cluster, number: int, *, verbose: bool) -> list[str]:
     lines = wrapped(c.title, 4, first=f"{number:>2}  ")
-    span = f"{c.first} to {c.last}" if c.first else "not dated"
-    lines += wrapped(f"{counted(len(c.runs), 'run')}, {span}; {len(c.came_through)} came through at the same place", 4)
-    cost = []
-    if c.lost_mmol_runs:
-        cost.append(f"{c.lost_mmol:.3g} mmol lost over the {c.lost_mmol_runs} that record a scale")
-    if c.days_runs:
-        cost.append(f"{c.days:.3g} days of reaction time")
-    if cost:
-        lines += wrapped("; ".join(cost), 4)
-    if c.repeats:
-        first, earlier = c.repeats[-1]
-        lines += wrapped(f"{len(c.repeats)} had an earlier record (the last: {first} after {earlier})", 4)
-    if c.covered_by:
-        lines += wrapped("house rules: " + ", ".join(f"{rule} warns of {n}" for rule, n in c.covered_by), 4)
+    for words in say_cluster(c):
+        lines += wrapped(words, 4)
     if c.proposal is not None:
-        rule, trial = c.proposal.rule, c.proposal.trial
-        lines += wrapped(f"proposed rule: when {rule.when}" + (f"; motif {rule.motif}" if rule.motif else ""), 4)
-        lines += wrapped(
-            f"on this book it warns of {counted(len(trial.hits), 'failure')}, with "
-            f"{counted(len(trial.false_alarms), 'false alarm')}; adopt it with --adopt {number}",
-            4,
-        )
+        lines += wrapped(say_rule(c.proposal), 4)
+        lines += wrapped(f"{say_trial(c.proposal)}; adopt it with --adopt {number}", 4)
     if verbose:
-        lines += wrapped("projects: " + (", ".join(f"{p} {n}" for p, n in c.projects) or "not recorded"), 4)
+        lines += wrapped(say_projects(c), 4)
         lines += wrapped("runs: " + ", ".join(c.runs), 4)
     return lines
 
@@ -72,12 +61,7 @@ def _cluster(c: Cluster, number: int, *, verbose: bool) -> list[str]:
 def render_replay(report: ReplayReport, *, verbose: bool = False) -> str:
     """Return what a replay came to."""
     lines = ["Stopped before the end; these are the runs that were checked.", ""] if report.stopped else []
-    lines += wrapped(
-        f"Each of {counted(len(report.runs), 'run')} was checked against what stood in the book that morning. "
-        f"{report.warned} of {counted(report.failures, 'failure')} would have been warned of "
-        f"({report.warned_by_record} by recorded losses or house rules), {report.missed} not; "
-        f"{report.false_alarms} of {counted(report.successes, 'success', 'successes')} would have been warned of too."
-    )
+    lines += wrapped(say_replay(report))
     lines += ["", heading("With 80 % intervals")]
     for name, share in (
         ("failures warned of", report.recall),
@@ -114,14 +98,12 @@ def render_replay(report: ReplayReport, *, verbose: bool = False) -> str:
 
 def render_coverage(coverage: Coverage, *, verbose: bool = False) -> str:
     """Return the cells, contradictions and experiments."""
-    lines = wrapped(
-        f"{counted(coverage.runs, 'run')} in {counted(len(coverage.cells), 'combination')}; {coverage.thin} hold two "
-        f"runs or fewer, {len(coverage.contradictions)} contradict themselves."
-    )
+    lines = wrapped(say_coverage(coverage))
     lines += ["", heading("Experiments that would teach most")]
     for number, e in enumerate(coverage.experiments, 1):
-        lines += wrapped(e.words + (f" (like {e.like})" if e.like else ""), 5, first=f"{number:>3}  ")
-        lines += wrapped(f"{e.why} Its own doubt: ±{100 * e.before:.0f} points now, ±{100 * e.after:.0f} after.", 5)
+        what, why = say_experiment(e)
+        lines += wrapped(what, 5, first=f"{number:>3}  ")
+        lines += wrapped(why, 5)
     if coverage.contradictions:
         lines += ["", heading("Like flasks that disagree")]
         for c in coverage.contradictions if verbose else coverage.contradictions[:FEW]:
@@ -192,6 +174,8 @@ def render_route(ledger: Ledger, lead: str, *, verbose: bool = False) -> str:
         lines += wrapped(f"{need.material}: {need.mmol:.3g} mmol ({need.low:.3g} to {need.high:.3g}){grams}{cost}", 2)
     if ledger.counted_pct is not None:
         lines += wrapped(f"Without the steps where yield does not matter: {ledger.counted_pct:.3g} % overall.", 2)
+    if ledger.unpriced:
+        lines += wrapped(f"No price, so not in the cost: {', '.join(ledger.unpriced)}.", 2)
     closed = _percent(ledger.closed_form_pct)
     lines += ["", *wrapped(f"In closed form {closed}; sampling error {ledger.sampling_error_pct:.2g} points.")]
     return "\n".join(lines)

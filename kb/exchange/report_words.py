@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import datetime as dt
 
+from kb.plain import counted as counted
 from kb.record.conditions import Conditions
 from kb.record.finding import Interval
 
@@ -49,11 +50,6 @@ def interval_words(interval: Interval | None, scale: float = 100.0, unit: str = 
 def made_from(book: str, runs: int, day: dt.date) -> str:
     """Return where a page came from, for its foot."""
     return f"From the record book {book} ({runs:,} runs), {day.isoformat()}."
-
-
-def counted(count: int, word: str, many: str = "") -> str:
-    """Return "1 run", "3 runs"."""
-    return f"{count:,} {word if count == 1 else many or word + 's'}"
 
 
 def _figure(value: float) -> str:

@@ -1,0 +1,169 @@
+"""A question about the whole record, asked in a process of its own, so that whoever asks stays free to do else.
+
+It owns the process and what is said over the line between the two: progress comes back, a wish to stop goes out, the
+answer or the error ends it. A thread would do the same work, but would hold the interpreter, and typing with it. The
+process reads the book for itself and writes nothing to it. It ends with whoever asked, even when that one was killed.
+
+A replay is kept in a file of the cache, so that one that was stopped goes on where it stopped; a file of another state
+of the book is thrown away.
+"""
+
+from __future__ import annotations
+
+import os
+import threading
+import time
+from hashlib import sha256
+from multiprocessing import get_context, parent_process
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from kb.errors import Cancelled, InvalidRecord, SidepathError
+from kb.progress import Progress
+
+if TYPE_CHECKING:
+    from multiprocessing.connection import Connection
+
+    from kb.book.facade import Book
+
+QUESTIONS = ("recurring", "tally", "replay", "coverage", "calibration")
+_LOOK_S = 0.1
+"""How often a wish to stop is looked for [s]."""
+_PATIENCE_S = 10.0
+"""How long a process that was asked to stop may take to end by itself [s]."""
+_WORTH_PROCESSES = 300
+"""Runs from which a replay is spread over all cores; starting a process costs as much as checking some 60 runs."""
+
+
+def ask_beside(address: str, question: str, progress: Progress, replays: Path | None = None) -> Any:
+    """Ask a question of QUESTIONS about a book, in a process of its own; return the answer.
+
+    Args:
+        address: path or URL of the book.
+        replays: folder in which a replay is kept; None = it is not kept.
+
+    Raises:
+        Cancelled: progress asked to stop, and the question has no part answer to give.
+        SidepathError: what the asked function raised; also when the process ended without an answer.
+    """
+    ours, theirs = get_context("spawn").Pipe()
+    process = get_context("spawn").Process(target=_answer, args=(address, question, replays, theirs), daemon=False)
+    process.start()
+    theirs.close()
+    try:
+        return _listen(ours, progress)
+    finally:
+        ours.close()  # which the process takes as a wish to end, should it still be there
+        process.join(_PATIENCE_S)
+        if process.is_alive():
+            process.terminate()
+            process.join()
+
+
+def _listen(line: Connection, progress: Progress) -> Any:
+    told = False
+    try:
+        while True:
+            if progress.cancelled() and not told:
+                told = True
+                line.send("stop")
+            if not line.poll(_LOOK_S):
+                continue
+            kind, value = line.recv()
+            if kind == "progress":
+                progress.advance(*value)
+            elif kind == "error":
+                raise value
+            else:
+                return value
+    except (EOFError, BrokenPipeError, ConnectionResetError):
+        raise SidepathError(
+            "The work on the record ended without an answer.", "Ask again; if it happens again, the log may tell why."
+        ) from None
+
+
+class _Line:
+    """Progress at the far end: reports go over the line, a wish to stop comes from it."""
+
+    def __init__(self, line: Connection) -> None:
+        self._line = line
+        self._last = 0.0
+        self._stop = threading.Event()
+        threading.Thread(target=self._wait, daemon=True).start()
+
+    def _wait(self) -> None:
+        try:
+            self._line.recv()
+        except (EOFError, OSError):
+            pass
+        self._stop.set()
+
+    def advance(self, done: int, total: int | None, note: str = "") -> None:
+        """Send a report when enough time went by."""
+        now = time.monotonic()
+        if now - self._last >= _LOOK_S:
+            self._last = now
+            self._line.send(("progress", (done, total, note)))
+
+    def cancelled(self) -> bool:
+        """Return True once the other end asked to stop, or is gone."""
+        return self._stop.is_set()
+
+
+def _answer(address: str, question: str, replays: Path | None, line: Connection) -> None:
+    """Answer in the new process, which never touches the terminal."""
+    quiet = os.open(os.devnull, os.O_RDWR)
+    for stream in (1, 2):
+        os.dup2(quiet, stream)
+    end_with_parent()
+    from kb.book.facade import open_book
+
+    try:
+        with open_book(address, read_only=True) as book:
+            value = _asked(book, question, _Line(line), replays)
+        line.send(("answer", value))
+    except SidepathError as error:
+        line.send(("error", error))
+    except BrokenPipeError:
+        pass
+
+
+def _asked(book: Book, question: str, progress: Progress, replays: Path | None) -> Any:
+    from kb.book import whole
+
+    if question == "recurring":
+        return whole.find_recurring_failures(book, progress=progress)
+    if question == "tally":
+        return whole.tally_book(book, progress)
+    if question == "coverage":
+        answer = whole.measure_book_coverage(book, progress=progress)
+        if progress.cancelled():
+            raise Cancelled("The audit was stopped.", "Nothing was changed.")
+        return answer
+    if question == "calibration":
+        return whole.calibrate_book(book, progress=progress)
+    if question != "replay":
+        raise ValueError(f"{question!r} is none of {QUESTIONS}")
+    processes = (os.cpu_count() or 1) if book.count() >= _WORTH_PROCESSES else 1
+    if replays is None:
+        return whole.replay_book(book, progress=progress, processes=processes)
+    replays.mkdir(parents=True, exist_ok=True)
+    keep = replays / f"replay-{sha256(book.path.encode('utf-8', 'surrogatepass')).hexdigest()[:16]}.jsonl"
+    try:
+        return whole.replay_book(book, progress=progress, processes=processes, keep=keep)
+    except InvalidRecord:
+        keep.unlink(missing_ok=True)
+        return whole.replay_book(book, progress=progress, processes=processes, keep=keep)
+
+
+def end_with_parent() -> None:
+    """End this process when the one that started it ends, killed or not."""
+    parent = parent_process()
+    if parent is None:
+        return
+
+    def wait() -> None:
+        parent.join()
+        os._exit(1)
+
+    threading.Thread(target=wait, daemon=True).start()
