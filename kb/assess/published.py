@@ -34,6 +34,10 @@ from kb.vocabulary import CarbonClass, Confidence, Fate, LeavingGroup
 __all__ = ["NOT_COVERED", "PublishedEstimate", "published_estimate", "step_facts"]
 
 NOT_COVERED = frozenset({Fate.ADDITION, Fate.GROUP_LOSS})
+_PALLADIUM = (
+    "Palladium opens another way at an allylic or propargylic carbon, by a palladium complex; the published tables "
+    "cover displacement without metal. No honest number."
+)
 _BASES_ONLY = frozenset({"carbonate_base", "bicarbonate"})
 """Not what attacks where the scheme says that the substrate does itself (common practice)."""
 
@@ -80,7 +84,12 @@ def step_facts(
     if closure is not None and closure.is_asked and (refused := closure_refused(closure)):
         return refused
     word = attacker.nucleophile_class if attacker is not None and not is_within else None
+    if "palladium" in profile.reagent_classes and {"allylic", "propargylic"} & set(described.activations):
+        return _PALLADIUM
     medium = medium_of(profile, word, is_activated, base_smiles)
+    is_aside = attacker is not None and not is_within and reading.confidence is Confidence.MATCHED
+    if closure is not None and is_aside and reading.fate is Fate.SUBSTITUTION:
+        closure = dataclasses.replace(closure, is_aside=True)
     if closure is not None and closure.is_asked and medium.nucleophile in _BASES_ONLY:
         medium = dataclasses.replace(medium, nucleophile=None, nucleophile_n=None, nucleophile_molar=None)
     step = StepFacts(centre=described, leaving_group=centre.leaving_group, medium=medium, closure=closure)

@@ -20,7 +20,7 @@ def size_word(mol: Chem.Mol, atom: int, seen_from: int) -> str:
     if group.GetAtomicNum() != 6:
         return "carbonyl" if is_acceptor(group) else "hetero"
     if group.GetIsAromatic():
-        return "aryl"
+        return "poor aryl" if _is_poor(mol, atom) else "aryl"
     for bond in group.GetBonds():
         if bond.GetBondTypeAsDouble() >= 2:
             other = bond.GetOtherAtom(group)
@@ -29,6 +29,25 @@ def size_word(mol: Chem.Mol, atom: int, seen_from: int) -> str:
             return "vinyl" if bond.GetBondTypeAsDouble() == 2 else "alkynyl"
     heavy = sum(n.GetIdx() != seen_from for n in group.GetNeighbors())
     return _SIZES[min(heavy, 3)]
+
+
+def _is_poor(mol: Chem.Mol, atom: int) -> bool:
+    """Return whether an acceptor stands ortho or para on a benzene ring seen from one of its carbons."""
+    for ring in mol.GetRingInfo().AtomRings():
+        if atom not in ring or len(ring) != 6 or not all(mol.GetAtomWithIdx(i).GetAtomicNum() == 6 for i in ring):
+            continue
+        place = ring.index(atom)
+        for step in (1, 3, 5):
+            carbon = mol.GetAtomWithIdx(ring[(place + step) % 6])
+            for group in carbon.GetNeighbors():
+                if group.GetIdx() in ring:
+                    continue
+                is_nitrile = group.GetAtomicNum() == 6 and any(
+                    b.GetBondTypeAsDouble() == 3 and b.GetOtherAtom(group).GetAtomicNum() == 7 for b in group.GetBonds()
+                )
+                if is_nitrile or (is_acceptor(group) and any(n.GetAtomicNum() == 8 for n in group.GetNeighbors())):
+                    return True
+    return False
 
 
 def is_sp3_carbon(atom: Chem.Atom) -> bool:

@@ -188,7 +188,9 @@ def _flat_word(mol: Chem.Mol, atom: Chem.Atom, centre: int) -> str:
     if kind == "carbonyl":
         triple = any(b.GetBondTypeAsDouble() == 3 for b in atom.GetBonds())
         return "alpha-nitrile" if triple else "alpha-carbonyl"
-    return {"aryl": "benzylic", "vinyl": "allylic", "alkynyl": "propargylic"}.get(kind, "alpha-carbonyl")
+    return {"aryl": "benzylic", "poor aryl": "benzylic", "vinyl": "allylic", "alkynyl": "propargylic"}.get(
+        kind, "alpha-carbonyl"
+    )
 
 
 def _far_end(mol: Chem.Mol, centre: int, leaving: int | None) -> tuple[int, int] | None:

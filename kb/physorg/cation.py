@@ -19,7 +19,7 @@ from kb.physorg.medium import nucleophile_n, solvent_word
 from kb.physorg.rates import HALIDES, cation_terms, is_dehydrating, solvent_captures
 from kb.physorg.step import Centre, Medium, Neighbour, StepFacts
 from kb.physorg.terms import Term, find_term, term, total
-from kb.vocabulary import CarbonClass, Fate
+from kb.vocabulary import CarbonClass, Fate, LeavingGroup
 
 _DOWNHILL = 2.0
 """Gain in log10 of ionisation from which a shift is downhill; judged."""
@@ -219,6 +219,8 @@ def _has_halide(medium: Medium) -> bool:
 def _shift_term(step: StepFacts, migrant: str, after: Centre) -> Term:
     before = step.centre
     words = f"1,2-shift ({_MIGRANTS[migrant]}) to {_describe(after)}"
+    if step.leaving_group is LeavingGroup.EPOXIDE and after.oxocarbenium and solvent_captures(step):
+        return term("shift", "epoxide to carbonyl", words)
     if migrant == "ring":
         return term("shift", "ring expansion", words)
     if before.carbon_class is CarbonClass.PRIMARY and not before.is_stabilised and migrant == "hydride":

@@ -17,7 +17,7 @@ from kb.physorg.elimination import SiteRate, e2_sites, geometry_extra, soft_site
 from kb.physorg.rates import ionisation_terms, solvent_substitution_terms, substitution_terms
 from kb.physorg.step import Centre, StepFacts
 from kb.physorg.terms import Term, term
-from kb.vocabulary import CarbonClass, Fate
+from kb.vocabulary import CarbonClass, Fate, LeavingGroup
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -56,7 +56,7 @@ def list_channels(step: StepFacts, ways: Sequence[Branch]) -> list[Draft]:
             Draft(
                 name=f"ring closure by {step.closure.nucleophile} ({step.closure.ring_size} members)",
                 kind="closure",
-                fate=Fate.SUBSTITUTION,
+                fate=Fate.OTHER if step.closure.is_aside else Fate.SUBSTITUTION,
                 terms=(*from_within, *extra, term("model", "sn2", "spread of the model for SN2")),
             )
         )
@@ -139,7 +139,12 @@ def _assisted(step: StepFacts, terms: Sequence[Term]) -> list[Term]:
         return list(terms)
     if centre.carbon_class is CarbonClass.PRIMARY:
         assisted = term("ionisation_neopentyl", "assisted", "the neighbouring group moves as the leaving group goes")
-        return [assisted if t.because == "primary cation" else t for t in terms]
+        extra = []
+        if any(s.migrant == "aryl" for s in centre.shifts):
+            extra.append(term("ionisation_neopentyl", "aryl", "an aryl group moves more readily than an alkyl"))
+        if step.leaving_group is LeavingGroup.HYDROXYL and step.medium.acid == "strong":
+            extra.append(term("ionisation_neopentyl", "protonated alcohol", "water leaves a protonated alcohol"))
+        return [*(assisted if t.because == "primary cation" else t for t in terms), *extra]
     if centre.carbon_class is CarbonClass.SECONDARY and any(is_downhill(centre, s.cation) for s in centre.shifts):
         return [
             *terms,

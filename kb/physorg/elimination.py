@@ -17,8 +17,10 @@ from kb.physorg.medium import aprotic_gain, base_terms, bulk_of, concentration_t
 from kb.physorg.rates import SULFONATES
 from kb.physorg.step import Alkene, Centre, Neighbour, StepFacts
 from kb.physorg.terms import Term, find_term, term
+from kb.vocabulary import CarbonClass, LeavingGroup
 
 _ALKYL = ("methyl", "n-alkyl", "sec-alkyl", "tert-alkyl")
+_ACIDIFYING = frozenset({"aryl", "poor aryl", "carbonyl", "vinyl", "alkynyl"})
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -91,10 +93,13 @@ def e2_sites(step: StepFacts) -> list[SiteRate]:
 
 
 def _merging_terms(step: StepFacts, neighbour: Neighbour, bulk: float) -> tuple[Term, ...]:
-    """Return what holds a bulky base back from a sulfonate: seen for plain alkyl, not where the proton is acidic."""
-    if step.leaving_group not in SULFONATES or not bulk or {"aryl", "carbonyl"} & set(neighbour.substituents):
+    """Return what sets sulfonates of plain alkyl apart from those with an acidic proton, on which rates were measured."""
+    if step.leaving_group not in SULFONATES or _ACIDIFYING & set(neighbour.substituents):
         return ()
-    return (term("merging", "sulfonate with bulky base", "a sulfonate with a bulky base prefers SN2", bulk),)
+    plain = term("merging", "plain sulfonate", "no charge builds up on carbon, so a sulfonate lags less")
+    if not bulk or step.centre.carbon_class is not CarbonClass.PRIMARY:
+        return (plain,)
+    return (plain, term("merging", "sulfonate with bulky base", "a sulfonate with a bulky base prefers SN2", bulk))
 
 
 def soft_sites(step: StepFacts) -> list[SiteRate]:
@@ -102,6 +107,8 @@ def soft_sites(step: StepFacts) -> list[SiteRate]:
     word, n = step.medium.nucleophile, nucleophile_n(step.medium)
     if word is None or n is None or step.medium.is_protic is None or _is_strong_base(word):
         return []
+    if step.leaving_group is LeavingGroup.EPOXIDE:
+        return []  # epoxides open; bases alone make allylic alcohols of them
     reference = get_constant("n", "alkoxide").value
     common = [
         term("sn2_reference", "ethyl bromide + ethoxide", "scale of ethyl bromide with ethoxide in ethanol"),
@@ -159,7 +166,7 @@ def geometry_extra(step: StepFacts) -> float:
 def clash_kj_mol(pair: tuple[str, str]) -> float:
     """Return the strain of two groups cis to each other [kJ/mol]; 0 for hydrogen, halogen and heteroatoms."""
     order = {"methyl": 0, "n-alkyl": 1, "sec-alkyl": 2, "tert-alkyl": 3, "aryl": 4}
-    flat = {"vinyl": "n-alkyl", "alkynyl": "methyl", "carbonyl": "sec-alkyl"}
+    flat = {"vinyl": "n-alkyl", "alkynyl": "methyl", "carbonyl": "sec-alkyl", "poor aryl": "aryl"}
     names = [flat.get(p, p) for p in pair]
     if any(p not in order for p in names):
         return 0.0

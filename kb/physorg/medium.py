@@ -121,12 +121,20 @@ def aprotic_gain(word: str, as_base: bool, medium: Medium) -> Term | None:
     """Return what an anion gains without hydrogen bonds; None in protic solvents and for neutrals."""
     if medium.is_protic is not False or word in NEUTRAL:
         return None
+    if word == "fluoride" and as_base:
+        return None  # its strength without hydrogen bonds is a row of its own
+    if word == "fluoride" and not medium.activates_hydroxyl:
+        # How bare it is counts more than the polarity of the solvent; beside an activated alcohol it is held by acid.
+        return from_constant(get_constant("aprotic", "fluoride sn2"), "fluoride without hydrogen bonds")
     if word in SOFT:
         row = get_constant("aprotic", "soft anion sn2")
     else:
         row = get_constant("aprotic", "small anion e2" if as_base else "small anion sn2")
     if "polar-aprotic" in medium.solvent_kinds:
         return from_constant(row, "dipolar aprotic solvent sets the anion free")
+    if as_base and word == "tertiary_alkoxide":
+        share = get_constant("aprotic", "tertiary alkoxide in ether")
+        return from_constant(row, "a tertiary alkoxide stays soluble and strong in ethers", share.value)
     share = get_constant("aprotic", "weakly polar")
     return from_constant(row, "aprotic solvent of low polarity: ion pairs, half set free", share.value)
 
@@ -163,7 +171,7 @@ def base_terms(medium: Medium) -> tuple[str, list[Term]] | None:
         terms.append(term("e2_base", "bulky", "bulky base takes the proton rather than the carbon", bulk))
     if word in NEUTRAL:
         terms.append(term("e2_base", "neutral amine", "neutral base"))
-    if word == "fluoride" and medium.is_protic is not True:
+    if word == "fluoride" and medium.is_protic is not True and not medium.activates_hydroxyl:
         terms.append(term("e2_base", "fluoride aprotic", "fluoride without hydrogen bonds is a strong base"))
     gain = aprotic_gain(word, True, medium)
     if gain:

@@ -94,7 +94,8 @@ def substitution_terms(step: StepFacts) -> list[Term] | None:
     gap = n[0] - reference
     terms = [
         term("sn2_reference", "ethyl bromide + ethoxide", "ethyl bromide with ethoxide in ethanol"),
-        *centre_terms(centre),
+        *centre_terms(centre, step.leaving_group),
+        *_protonation_terms(step),
         term("sn2", step.leaving_group, f"{step.leaving_group} against bromide"),
         Term(
             because=f"nucleophile {word}, n {n[0]:.3g} against ethoxide {reference:.3g}",
@@ -131,7 +132,8 @@ def solvent_substitution_terms(step: StepFacts) -> list[Term] | None:
     )
     return [
         base,
-        *(t for t in centre_terms(centre) if not t.because.startswith(("secondary", "methyl", "primary"))),
+        *(t for t in centre_terms(centre, group) if not t.because.startswith(("secondary", "methyl", "primary"))),
+        *_protonation_terms(step),
         leaving,
         Term(
             because=f"ionising power Y {y[0]:.3g} against water {water_y:.3g}",
@@ -166,11 +168,25 @@ def ionisation_terms(step: StepFacts) -> list[Term] | None:
     if medium.lewis_acid in ("strong", "mild"):
         key = f"lewis {medium.lewis_acid}"
         terms.append(term("ionisation_promoter", key, f"{medium.lewis_acid} Lewis acid"))
+    if group is LeavingGroup.EPOXIDE and medium.acid == "strong" and medium.lewis_acid not in ("strong", "mild"):
+        terms.append(term("ionisation_promoter", "protonated epoxide", "the epoxide is protonated"))
     terms.append(heat("ionisation", medium))
     return terms
 
 
-def centre_terms(centre: Centre) -> list[Term]:
+def _protonation_terms(step: StepFacts) -> list[Term]:
+    """Return what acid does to an epoxide that opens from the back; other groups have rows of their own."""
+    medium = step.medium
+    if step.leaving_group is not LeavingGroup.EPOXIDE:
+        return []
+    if is_acidic(medium):
+        return [term("epoxide_acid", "strong", "the epoxide is protonated or complexed")]
+    if medium.lewis_acid == "mild" or medium.acid == "weak":
+        return [term("epoxide_acid", "mild", "a mild acid helps the epoxide open")]
+    return []
+
+
+def centre_terms(centre: Centre, leaving_group: LeavingGroup | None = None) -> list[Term]:
     """Return what class, branching, activation and ring do to SN2, ethyl = 0."""
     key = str(centre.carbon_class)
     terms = [term("sn2_class", key, f"{key} centre")]
@@ -186,8 +202,8 @@ def centre_terms(centre: Centre) -> list[Term]:
             if count >= least:
                 terms.append(term("sn2_branch", f"secondary {count}", f"{count} group(s) on {label}"))
     if centre.ring_size is not None and centre.carbon_class is CarbonClass.SECONDARY:
-        size = min(max(centre.ring_size, 3), 8)
-        terms.append(term("sn2_ring", str(size), f"in a {centre.ring_size}-membered ring"))
+        key = "epoxide" if leaving_group is LeavingGroup.EPOXIDE else str(min(max(centre.ring_size, 3), 8))
+        terms.append(term("sn2_ring", key, f"in a {centre.ring_size}-membered ring"))
     for word in dict.fromkeys(centre.activations):
         count = centre.activations.count(word)
         each = count if word in ("alpha-halogen", "beta-heteroatom", "beta-halogen") else 1

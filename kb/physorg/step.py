@@ -17,6 +17,7 @@ SIZES = (
     "sec-alkyl",
     "tert-alkyl",
     "aryl",
+    "poor aryl",
     "vinyl",
     "alkynyl",
     "carbonyl",
@@ -209,6 +210,7 @@ class Closure:
         is_bridging: the new ring shares more than one bond with a ring that is there.
         ionised_log10: log10 of the part of the group that has lost its proton; 0 = all, or none to lose.
         is_asked: the scheme says that it closes; False = it only might.
+        is_aside: the scheme wants something else, so that the ring is a loss.
     """
 
     ring_size: int
@@ -217,6 +219,7 @@ class Closure:
     is_bridging: bool = False
     ionised_log10: float = 0.0
     is_asked: bool = False
+    is_aside: bool = False
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
