@@ -20,6 +20,7 @@ from kb.progress import Progress, Silent
 from kb.store import engine as engines
 from kb.store import facts, history, lineage, runs, words
 from kb.store.codes import marks_of, parse_code, write_code
+from kb.store.dialect import Verdict
 from kb.store.mapping import FACT_FIELDS, table
 from kb.store.rows import AttachmentBlobRow, AttachmentRow, FactsRow, RecipeRow, RunRow, StructureRow
 from kb.store.store import Store
@@ -27,8 +28,6 @@ from kb.store.values import Check, HistoryEntry
 
 SAMPLE = 200
 """Runs and structures derived anew by default; all of them would take as long as the first import."""
-
-Verdict = tuple[bool, str]
 
 
 def verify(store: Store, progress: Progress | None = None, sample: int | None = SAMPLE) -> tuple[Check, ...]:
@@ -40,12 +39,12 @@ def verify(store: Store, progress: Progress | None = None, sample: int | None = 
     """
     progress = progress or Silent()
     checks: tuple[tuple[str, Callable[[sa.Connection], Verdict]], ...] = (
-        ("file", _file),
-        ("foreign keys", _foreign_keys),
+        ("file", lambda connection: engines.dialect_of(connection).check_files(connection)),
+        ("foreign keys", lambda connection: engines.dialect_of(connection).check_keys(connection)),
         ("history", _history),
         ("record", _record),
         ("codes", _codes),
-        ("words", lambda _: _words(store)),
+        ("words", lambda connection: _words(connection, store)),
         ("facts", lambda connection: _facts(connection, store, sample)),
         ("structures", lambda connection: _structures(connection, store, sample)),
         ("attachments", _attachments),
@@ -64,20 +63,6 @@ def verify(store: Store, progress: Progress | None = None, sample: int | None = 
         found.append(Check(name=name, ok=ok, detail=detail))
         progress.advance(number + 1, len(checks), name)
     return tuple(found)
-
-
-def _file(connection: sa.Connection) -> Verdict:
-    if connection.dialect.name != "sqlite":
-        return True, "The server keeps its files."
-    said = connection.exec_driver_sql("PRAGMA integrity_check(5)").scalars().all()
-    return (True, "The file is whole.") if said == ["ok"] else (False, f"The file is damaged: {'; '.join(said)[:300]}")
-
-
-def _foreign_keys(connection: sa.Connection) -> Verdict:
-    if connection.dialect.name != "sqlite":
-        return True, "The server enforces them."
-    broken = connection.exec_driver_sql("PRAGMA foreign_key_check").all()
-    return not broken, f"{len(broken)} rows point nowhere." if broken else "Every row that points points somewhere."
 
 
 def _history(connection: sa.Connection) -> Verdict:
@@ -160,13 +145,18 @@ def _codes(connection: sa.Connection) -> Verdict:
     return True, f"{len(rows)} codes, each once."
 
 
-def _words(store: Store) -> Verdict:
-    """Let the engine compare index and record; it wants the write lock for that, though it writes nothing."""
-    if store.book.read_only:
+def _words(connection: sa.Connection, store: Store) -> Verdict:
+    """Let the engine compare index and record; SQLite wants the write lock for that, though it writes nothing."""
+    index = words.index_of(connection)
+    if not index.checks_by_writing:
+        same = index.is_consistent(connection)
+    elif store.book.read_only:
         return True, "The word index is compared only in a book that is open for writing."
-    with engines.writing(store.book.engine, store.book.address) as connection:
-        if words.is_consistent(connection):
-            return True, "The word index says what the record says."
+    else:
+        with engines.writing(store.book.engine, store.book.address) as writing:
+            same = index.is_consistent(writing)
+    if same:
+        return True, "The word index says what the record says."
     return False, "The word index does not say what the record says; `sidepath migrate` makes it anew."
 
 

@@ -5,24 +5,25 @@ there whole or not at all, and never over something else. Older books are brough
 in `migrations/`, run as a library; a test proves that both ways give the same tables. Alembic is loaded only
 then, since it is slow to start.
 
-Migrating copies a SQLite book first, runs with `foreign_keys=OFF` (with it on, rebuilding a parent table
-would delete its children without a word), checks every foreign key afterwards, and leaves the book as it was
-if anything fails.
+Migrating runs all revisions in one transaction and leaves the book as it was if anything fails. A SQLite book
+is copied first, and runs with `foreign_keys=OFF` (with it on, rebuilding a parent table would delete its
+children without a word), every foreign key being checked afterwards. A book on a server is not copied: whoever
+keeps the server backs it up (pg_dump).
 """
 
 from __future__ import annotations
 
 import contextlib
-import sqlite3
+from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 from uuid import uuid4
 
 import sqlalchemy as sa
 
 from kb.errors import SchemaBehind, SchemaTooNew, StoreDamaged, StoreError, StoreExists, StoreMissing, StoreRefused
-from kb.store import copying, words
+from kb.store import copying, on_sqlite, words
 from kb.store import engine as engines
 from kb.store.engine import Address, translated
 from kb.store.history import TIP, note_event
@@ -34,30 +35,40 @@ if TYPE_CHECKING:
     from alembic.config import Config
 
 
-def create(address: Address) -> None:
-    """Make an empty book.
+Fill = Callable[[sa.Connection], None]
+"""Puts a book's content into fresh tables, inside the transaction that makes them."""
+
+
+def create(address: Address, fill: Fill | None = None) -> None:
+    """Make a book; nothing of it is to be seen before it is whole.
+
+    Args:
+        fill: puts content in; None = an empty book.
 
     Raises:
         StoreExists: something is there already.
-        StoreMissing: the folder is not there.
-        StoreRefused: no permission, disk full, or a network file system.
+        StoreMissing: the folder, or the server's database, is not there.
+        StoreRefused: no permission, disk full, a network file system, or a database that is not in UTF-8.
     """
     if address.path is None:
-        _create_on_server(address)
+        _create_on_server(address, fill or _start_empty)
         return
     path = address.path
     copying.refuse_taken(path)
-    engines.refuse_network_file_system(path)
+    on_sqlite.refuse_network_file_system(path)
     draft = path.with_name(f".{path.name}.{uuid4().hex[:8]}.new")
     try:
         with translated(address):
             draft.touch(exist_ok=False)
             engine = engines.make_engine(Address(text=str(draft), path=draft), read_only=False, wait_s=5.0)
-            with engine.connect().execution_options(writes=True) as connection, connection.begin():
-                _lay_out(connection)
-            engine.dispose()
-            engines.set_write_ahead(engine, address)
-            engine.dispose()
+            try:
+                with engines.writing(engine, address) as connection:
+                    _lay_out(connection)
+                    (fill or _start_empty)(connection)
+                engine.dispose()
+                engines.prepare_for_writing(engine, address)
+            finally:
+                engine.dispose()
         copying.put_in_place(draft, path)
     finally:
         for leftover in (draft, draft.with_name(draft.name + "-wal"), draft.with_name(draft.name + "-shm")):
@@ -65,26 +76,47 @@ def create(address: Address) -> None:
                 leftover.unlink(missing_ok=True)
 
 
-def _create_on_server(address: Address) -> None:
+def _create_on_server(address: Address, fill: Fill) -> None:
     engine = engines.make_engine(address, read_only=False, wait_s=5.0)
-    with engines.writing(engine, address) as connection:
-        if sa.inspect(connection).has_table("alembic_version"):
-            raise StoreExists(f"{address} holds a book already.", "Choose another database.", str(address))
-        _lay_out(connection)
-    engine.dispose()
+    try:
+        with engines.writing(engine, address) as connection:
+            encoding = connection.exec_driver_sql("SHOW server_encoding").scalar_one()
+            if encoding != "UTF8":
+                raise StoreRefused(
+                    f"The database of {address} keeps text in {encoding}, which cannot hold every letter.",
+                    "Ask for one in UTF-8: `createdb --encoding UTF8 --template template0 NAME`.",
+                    str(address),
+                )
+            taken = {*Row.metadata.tables, "alembic_version", "run_words"} & set(_names_in(connection))
+            if taken:
+                what = "a book" if "alembic_version" in taken else f"tables of something else ({min(taken)})"
+                raise StoreExists(f"{address} holds {what} already.", "Choose another database.", str(address))
+            _lay_out(connection)
+            fill(connection)
+    finally:
+        engine.dispose()
+
+
+def _names_in(connection: sa.Connection) -> list[str]:
+    statement = "SELECT relname FROM pg_class WHERE relnamespace = current_schema()::regnamespace"
+    return list(connection.exec_driver_sql(statement).scalars())
 
 
 def _lay_out(connection: sa.Connection) -> None:
+    """Make the tables, without any row but the name of their form."""
     Row.metadata.create_all(connection)
     words.create(connection)
-    facts = {BOOK_ID: uuid4().hex, CREATED_AT: utc_now().isoformat(), CHANGES: "0", TIP: ""}
-    connection.execute(sa.insert(table(MetaRow)), [{"name": n, "value": v} for n, v in facts.items()])
-    note_event(connection, utc_now(), "", "made", f"An empty book of form {SCHEMA_HEAD}.")
     connection.exec_driver_sql(
         "CREATE TABLE alembic_version (version_num VARCHAR(32) NOT NULL, "
         "CONSTRAINT alembic_version_pkc PRIMARY KEY (version_num))"
     )
     connection.execute(sa.text("INSERT INTO alembic_version VALUES (:head)"), {"head": SCHEMA_HEAD})
+
+
+def _start_empty(connection: sa.Connection) -> None:
+    facts = {BOOK_ID: uuid4().hex, CREATED_AT: utc_now().isoformat(), CHANGES: "0", TIP: ""}
+    connection.execute(sa.insert(table(MetaRow)), [{"name": n, "value": v} for n, v in facts.items()])
+    note_event(connection, utc_now(), "", "made", f"An empty book of form {SCHEMA_HEAD}.")
 
 
 def open_engine(
@@ -100,7 +132,7 @@ def open_engine(
     try:
         refuse_other_shape(address, _current(engine, address))
         if not read_only:
-            engines.set_write_ahead(engine, address)
+            engines.prepare_for_writing(engine, address)
     except BaseException:
         engine.dispose()
         raise
@@ -180,6 +212,7 @@ def upgrade(address: Address, *, backup: bool = True) -> Upgraded | None:
 
     Raises:
         SchemaTooNew: made by a later program.
+        StoreRefused: on a server, the role may not change tables.
         StoreDamaged: a foreign key would point nowhere, or a revision failed; the book was left as it was.
         StoreBusy: somebody is writing to it.
     """
@@ -205,27 +238,16 @@ def run_revisions(engine: sa.Engine, address: Address, target: str = "head") -> 
     from alembic.util import CommandError
 
     config = alembic_config()
-    with translated(address), engine.connect() as connection:
-        is_sqlite = connection.dialect.name == "sqlite"
-        if is_sqlite:
-            raw = connection.connection.dbapi_connection
-            assert isinstance(raw, sqlite3.Connection)
-            raw.execute("PRAGMA foreign_keys=OFF")  # before the transaction begins, or it is ignored
-        with connection.execution_options(writes=True).begin():
-            config.attributes["connection"] = connection
-            try:
-                command.upgrade(config, target)
-            except CommandError as error:
-                raise StoreError(f"{address} cannot be migrated: {error}.", "Install the program again.") from error
-            broken: Any = connection.exec_driver_sql("PRAGMA foreign_key_check").all() if is_sqlite else []
-            if broken:
-                raise StoreDamaged(
-                    f"{address}: migrating would leave {len(broken)} rows that point nowhere.",
-                    "It was left as it was. Run `sidepath verify`.",
-                    str(address),
-                )
-        if is_sqlite:
-            connection.invalidate()  # the next one has its foreign keys on again
+    with (
+        translated(address),
+        engine.connect() as connection,
+        engines.dialect_of(engine).revising(connection),
+    ):
+        config.attributes["connection"] = connection
+        try:
+            command.upgrade(config, target)
+        except CommandError as error:
+            raise StoreError(f"{address} cannot be migrated: {error}.", "Install the program again.") from error
 
 
 def alembic_config() -> Config:

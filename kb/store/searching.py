@@ -14,17 +14,15 @@ from uuid import UUID
 
 import sqlalchemy as sa
 
-from kb.errors import IndexStale, StoreError
-from kb.store import history, runs
+from kb.errors import IndexStale
+from kb.store import history, runs, words
 from kb.store.rows import RecipeRow
 from kb.store.session import CHANGES, OpenBook
-from kb.store.words import COLUMNS
 from kb.vocabulary import Role
 
 _KEYS_AT_ONCE = 10_000
-_WORD_COLUMNS = " ".join(name for name in COLUMNS if name != "scheme")
 
-_RUN_COLUMNS = """SELECT run.run_key, run.code, run.code_number, run.run_date, run.verdict, run.project,
+_RUN_COLUMNS = """SELECT run.run_key, run.code, run.code_number, CAST(run.run_date AS TEXT), run.verdict, run.project,
     run.by_initials, run.temperature_start_c, run.temperature_end_c, facts.temperature_c, facts.carbon_class,
     facts.leaving_group, facts.fate, facts.nucleophile_class, facts.substrate, facts.centre_atom,
     run.withdrawn_why IS NULL, recipe.name
@@ -187,37 +185,15 @@ def word_keys(book: OpenBook, wanted: Sequence[Sequence[str]]) -> list[int]:
     Args:
         wanted: for each word its alternatives, one of which must begin a word of the run; an alternative of
             several words must occur together.
-
-    Raises:
-        StoreError: the engine has no word index.
     """
     with book.reading() as connection:
-        if connection.dialect.name != "sqlite":
-            raise StoreError(
-                f"Words cannot be searched on {connection.dialect.name} yet.", "Use a SQLite book."
-            )
-        query = " AND ".join(
-            "(" + " OR ".join('"' + one.replace('"', " ").replace("\x00", " ") + '"*' for one in some) + ")"
-            for some in wanted
-        )
-        found = connection.exec_driver_sql(
-            "SELECT rowid FROM run_words WHERE run_words MATCH ?", (f"{{{_WORD_COLUMNS}}} : ({query})",)
-        )
-        return [row[0] for row in found]
+        return words.keys_with(connection, wanted)
 
 
 def vocabulary(book: OpenBook) -> list[str]:
-    """Return every word of the word index, as it was folded (small letters, no accents); [] where there is none."""
+    """Return every word of the word index, as it was folded (small letters, no accents)."""
     with book.reading() as connection:
-        if connection.dialect.name != "sqlite":
-            return []
-        try:
-            connection.exec_driver_sql(
-                "CREATE VIRTUAL TABLE IF NOT EXISTS temp.run_terms USING fts5vocab('main', 'run_words', 'row')"
-            )
-            return [row[0] for row in connection.exec_driver_sql("SELECT term FROM temp.run_terms")]
-        except sa.exc.DatabaseError as error:
-            raise StoreError("The word index cannot be read.", "Run `sidepath verify`.") from error
+        return words.vocabulary(connection)
 
 
 def _by_ids(book: OpenBook, statement: str, ids: Sequence[int], **lists: list[str]) -> Iterator[Any]:

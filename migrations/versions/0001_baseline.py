@@ -34,6 +34,28 @@ WORD_VIEW = """CREATE VIEW run_text AS SELECT run.run_key AS run_key, run.note A
 WORD_INDEX = """CREATE VIRTUAL TABLE run_words USING fts5(note, materials, failures, labels, scheme, content='run_text',
     content_rowid='run_key', tokenize='unicode61 remove_diacritics 2')"""
 
+SERVER_WORD_VIEW = """CREATE VIEW run_text AS SELECT run.run_key AS run_key, run.note AS note,
+    coalesce((SELECT string_agg(name, ' ' ORDER BY position) FROM component c WHERE c.run_key = run.run_key), '')
+    || ' ' ||
+    coalesce((SELECT string_agg(name, ' ' ORDER BY position) FROM solvent s WHERE s.run_key = run.run_key), '')
+    AS materials,
+    coalesce((SELECT string_agg(mode, ' ' ORDER BY position) FROM failure f WHERE f.run_key = run.run_key), '')
+    AS failures,
+    concat_ws(' ', run.reference, run.project, run.series, run.by_initials, run.workup, run.vessel, run.atmosphere,
+    run.temperature_text, run.time_text) AS labels, run.scheme AS scheme FROM run"""
+
+SERVER_WORD_INDEX = """CREATE TABLE run_words (run_key INTEGER NOT NULL CONSTRAINT pk_run_words PRIMARY KEY
+    CONSTRAINT fk_run_words_run_key_run REFERENCES run (run_key), words TSVECTOR NOT NULL)"""
+
+WORDS_OF = {
+    "sqlite": (WORD_VIEW, WORD_INDEX),
+    "postgresql": (
+        SERVER_WORD_VIEW,
+        SERVER_WORD_INDEX,
+        "CREATE INDEX ix_run_words_words ON run_words USING gin (words)",
+    ),
+}
+"""The word index, which every engine makes in its own way."""
 
 TABLES = (
     "run_structure",
@@ -319,17 +341,15 @@ def upgrade() -> None:
         sa.PrimaryKeyConstraint("run_key", "role", "position", name="pk_run_structure"),
     )
     op.create_index("ix_run_structure_structure_id", "run_structure", ["structure_id"], unique=False)
-    if op.get_bind().dialect.name == "sqlite":
-        op.execute(WORD_VIEW)
-        op.execute(WORD_INDEX)
+    for statement in WORDS_OF[op.get_bind().dialect.name]:
+        op.execute(statement)
 
 
 def downgrade() -> None:
     """Take the tables away again; refused while a run is kept in them."""
     if op.get_bind().execute(sa.text("SELECT count(*) FROM run")).scalar():
         raise RuntimeError("the book holds runs; the baseline is not taken away from under them")
-    if op.get_bind().dialect.name == "sqlite":
-        op.execute("DROP TABLE run_words")
-        op.execute("DROP VIEW run_text")
+    op.execute("DROP TABLE run_words")
+    op.execute("DROP VIEW run_text")
     for table in TABLES:
         op.drop_table(table)

@@ -14,7 +14,7 @@ from pathlib import Path
 import pytest
 
 from kb.errors import SidepathError, StoreBusy, StoreDamaged, StoreError, StoreExists, StoreMissing, StoreRefused
-from kb.store import engine
+from kb.store import on_sqlite
 from kb.store.checking import verify
 from kb.store.runs import RunFilter
 from kb.store.store import Store
@@ -300,12 +300,12 @@ def flip_bits(tmp_path: Path, sound: bytes, places: int) -> None:
 def test_the_file_system_is_told_from_the_mount_table(tmp_path: Path, mounts: str, kind: str | None) -> None:
     table = tmp_path / "mounts"
     table.write_text(mounts.format(place=tmp_path, parent=tmp_path.parent))
-    assert engine.file_system_of(tmp_path / "book.sidepath", table) == kind
+    assert on_sqlite.file_system_of(tmp_path / "book.sidepath", table) == kind
 
 
 def test_a_network_file_system_is_refused_with_the_alternative(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     a_book(tmp_path).close()
-    monkeypatch.setattr(engine, "file_system_of", lambda path, mounts: "nfs4")
+    monkeypatch.setattr(on_sqlite, "file_system_of", lambda path, mounts: "nfs4")
     for attempt in (lambda: a_book(tmp_path, "new.sidepath"), lambda: Store.open(tmp_path / "book.sidepath")):
         with pytest.raises(StoreRefused, match="PostgreSQL"):
             attempt()
