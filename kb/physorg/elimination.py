@@ -93,7 +93,7 @@ def e2_sites(step: StepFacts) -> list[SiteRate]:
 
 
 def _merging_terms(step: StepFacts, neighbour: Neighbour, bulk: float) -> tuple[Term, ...]:
-    """Return what sets sulfonates of plain alkyl apart from those with an acidic proton, on which rates were measured."""
+    """Return what sets sulfonates of plain alkyl apart from those with an acid proton, on which rates were measured."""
     if step.leaving_group not in SULFONATES or _ACIDIFYING & set(neighbour.substituents):
         return ()
     plain = term("merging", "plain sulfonate", "no charge builds up on carbon, so a sulfonate lags less")
