@@ -25,9 +25,13 @@ EXAMPLE = """A route file in TOML (JSON with the same words will do):
     [[step]]
     name = "amine"
     yield = "82 (75 to 89)"             given, percent
-    cheap_input = true                  a poor yield does not matter here
+    cheap_input = true                  a poor yield does not matter here;
+                                        or easy_separation, volatile_by_product
+    cost_per_mmol = 0.1                 reagents and work, per mmol that goes in
 
-A branch joins by `from = ["amine", { name = "acid", equiv = 1.2 }]`, main line first."""
+A `yield` may have a `plan` beside it, which is then checked for findings only. Where anything has a price, steps are
+weighed in money; what a cheap_input step takes costs nothing unless it has a price. A branch joins by
+`from = ["amine", { name = "acid", equiv = 1.2 }]`, main line first."""
 
 
 def register(app: typer.Typer) -> None:
@@ -39,7 +43,13 @@ def route(
     file: Annotated[Path, typer.Argument(metavar="FILE", help="The route, TOML or JSON; see below.")],
     what_if: Annotated[
         Optional[list[str]],  # noqa: UP045 - read at run time
-        typer.Option("--what-if", metavar="STEP=PCT", help="Reckon with another yield in a step; repeatable."),
+        typer.Option(
+            "--what-if", metavar="STEP=PCT", help='Another yield in a step, 90 or "82 (75 to 89)"; repeatable.'
+        ),
+    ] = None,
+    target: Annotated[
+        Optional[str],  # noqa: UP045 - read at run time
+        typer.Option("--target", metavar="AMOUNT", help='Another amount wanted: "2 g" or "5 mmol".'),
     ] = None,
     html: HtmlFlag = None,
     md: MarkdownFlag = None,
@@ -50,6 +60,7 @@ def route(
 
     session = current_session()
     with session.opened(read_only=True) as book:
-        ledger = reckon_route(book, file, what_if or ())
+        with session.progress("Checking the steps") as progress:
+            ledger = reckon_route(book, file, what_if or (), target or "", progress)
         write_pages(session, book, ledger, html, md)
     session.answer(ledger.as_dict(), render_route(ledger, route_lead(ledger), verbose=session.verbose))

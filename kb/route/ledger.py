@@ -6,13 +6,13 @@ lognormal. *Monte Carlo*: each yield is a Beta with the same mean and standard d
 knows that no yield passes 100 %, so it is the one shown. The two means agree within the sampling error (tested).
 Independence is an assumption: one bad bottle used in five steps breaks it.
 
-A step whose poor yield the chemist has forgiven is no weakness, and is left out of the yield that counts. Where
-prices are given, weakness is reckoned in money instead.
+A step whose poor yield the chemist has forgiven is no weakness, and is left out of the yield that counts. What a
+better yield saves is reckoned in money where anything has a price, else in the material that counts
+(`kb.route.worth`).
 """
 
 from __future__ import annotations
 
-import dataclasses
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass
@@ -21,10 +21,10 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from kb.errors import RecordNotFound
 from kb.record.finding import Interval
 from kb.record.showing import ShowsItself
 from kb.route.sequence import Z80, Material, Route, Step, StepYield
+from kb.route.worth import cost_of, figure, unpriced, worth_of
 
 DRAWS = 20_000
 SEED = 20
@@ -37,8 +37,10 @@ class Need:
     """How much of one material goes in.
 
     Attributes:
-        mmol: at the mean yields. low, high: 80 % interval of what it takes [mmol].
+        mmol: at the mean yields. low, high: 80 % interval of what it takes, by Monte Carlo [mmol].
         grams: at the mean yields; None = molar mass not known. cost: None = no price.
+        closed_low, closed_high: the interval in closed form [mmol]; None = it goes in at more than one place.
+        grams_high: at `high`, which suffices nine times in ten [g]; None = molar mass not known.
     """
 
     material: str
@@ -47,6 +49,9 @@ class Need:
     high: float
     grams: float | None
     cost: float | None
+    closed_low: float | None = None
+    closed_high: float | None = None
+    grams_high: float | None = None
 
     def as_dict(self) -> dict[str, Any]:
         """Return plain JSON values."""
@@ -126,6 +131,7 @@ class Ledger(ShowsItself):
         cost: of all priced materials and steps, at the mean yields; None = nothing has a price.
         weakest: the improvement that would buy most; None = every step is forgiven or perfect.
         reckoned_in: "mmol", "g", or the word for money ("cost units" where none was given).
+        unpriced: materials that the cost leaves out because their price or molar mass is missing.
     """
 
     route: Route
@@ -139,6 +145,7 @@ class Ledger(ShowsItself):
     cost: float | None
     weakest: Improvement | None
     reckoned_in: str
+    unpriced: tuple[str, ...] = ()
 
     def as_dict(self) -> dict[str, Any]:
         """Return the contract's JSON object."""
@@ -157,6 +164,7 @@ class Ledger(ShowsItself):
             "cost": self.cost,
             "money": self.route.money,
             "reckoned_in": self.reckoned_in,
+            "unpriced": list(self.unpriced),
             "weakest": self.weakest.as_dict() if self.weakest else None,
         }
 
@@ -175,9 +183,11 @@ def reckon(route: Route, draws: int = DRAWS, seed: int = SEED) -> Ledger:
     inputs, materials = demand(route, means, target)
     sampled = demand(route, drawn, target)[1]
     needed = tuple(_need(route, name, materials[name], sampled[name]) for name in _main_first(route, materials))
-    value, unit = _value(route, inputs, materials)
+    value, unit = worth_of(route, inputs, materials)
     entries = tuple(_entry(route, step, means, inputs, target, (value, unit)) for step in route.steps)
-    open_steps = [e.improvement for e in entries if e.improvement is not None and not e.step.forgiven]
+    open_steps = [
+        e.improvement for e in entries if e.improvement is not None and e.improvement.saves > 0 and not e.step.forgiven
+    ]
     counted = [s.yield_pct.mean for s in route.main_line if not s.forgiven]
     return Ledger(
         route=route,
@@ -188,25 +198,11 @@ def reckon(route: Route, draws: int = DRAWS, seed: int = SEED) -> Ledger:
         counted_pct=round(100 * math.prod(counted), 4) if len(counted) < len(route.main_line) else None,
         target_mmol=target,
         needed=needed,
-        cost=_cost(route, inputs, materials),
+        cost=cost_of(route, inputs, materials),
         weakest=max(open_steps, key=lambda i: i.saves, default=None),
         reckoned_in=unit,
+        unpriced=unpriced(route),
     )
-
-
-def with_yield(route: Route, step: str, pct: float) -> Route:
-    """Return the route with one step's yield taken as exactly `pct` [%].
-
-    Raises:
-        RecordNotFound: no step has that name.
-    """
-    if step not in {s.name for s in route.steps}:
-        raise RecordNotFound(
-            f"The route has no step {step!r}.", f"Its steps: {', '.join(s.name for s in route.steps)}.", step
-        )
-    imagined = StepYield(pct=Interval(mean=pct, low=pct, high=pct), basis="given", note="what if")
-    steps = [dataclasses.replace(s, yield_pct=imagined) if s.name == step else s for s in route.steps]
-    return dataclasses.replace(route, steps=tuple(steps))
 
 
 def draw_yields(step_yield: StepYield, draws: int, seed: int) -> NDArray[np.float64]:
@@ -268,15 +264,15 @@ def _entry(
         improvement = Improvement(
             step=step.name,
             at_pct=round(100 * better, 1),
-            needed_mmol=_figure(mmol),
+            needed_mmol=figure(mmol),
             needed_g=_grams(material, mmol),
-            saves=_figure(now[0] - _value(route, *changed)[0]),
+            saves=figure(now[0] - worth_of(route, *changed)[0]),
             unit=now[1],
         )
     return Entry(
         step=step,
-        input_mmol=_figure(inputs[step.name]),
-        product_mmol=_figure(inputs[step.name] * mean),
+        input_mmol=figure(inputs[step.name]),
+        product_mmol=figure(inputs[step.name] * mean),
         so_far_pct=_pct(_so_far(route, step, means)),
         improvement=improvement,
     )
@@ -291,36 +287,35 @@ def _so_far(route: Route, step: Step, means: Mapping[str, float]) -> float:
     return total
 
 
-def _value(route: Route, inputs: Mapping[str, float], materials: Mapping[str, float]) -> tuple[float, str]:
-    """Return what a route takes, in money where anything has a price, else in grams, else in mmol of all materials."""
-    cost = _cost(route, inputs, materials)
-    if cost is not None:
-        return cost, route.money or "cost units"
-    masses = [_material(route, name).molar_mass for name in materials]
-    if all(m is not None for m in masses):
-        return sum(mmol * (m or 0) / 1000 for mmol, m in zip(materials.values(), masses, strict=True)), "g"
-    return sum(materials.values()), "mmol"
-
-
-def _cost(route: Route, inputs: Mapping[str, float], materials: Mapping[str, float]) -> float | None:
-    prices = {name: _material(route, name).price_per_mmol for name in materials}
-    parts = [mmol * price for name, mmol in materials.items() if (price := prices[name]) is not None]
-    parts += [inputs[s.name] * s.cost_per_mmol for s in route.steps if s.cost_per_mmol is not None]
-    return _figure(sum(parts)) if parts else None
-
-
 def _need(route: Route, name: str, mmol: float, sampled: NDArray[np.float64] | float) -> Need:
     material = _material(route, name)
     low, high = (float(q) for q in np.quantile(sampled, [0.1, 0.9]))
     price = material.price_per_mmol
+    closed = _closed_need(route, name, mmol)
     return Need(
         material=name,
-        mmol=_figure(mmol),
-        low=_figure(min(low, mmol)),
-        high=_figure(max(high, mmol)),
+        mmol=figure(mmol),
+        low=figure(min(low, mmol)),
+        high=figure(max(high, mmol)),
         grams=_grams(material, mmol),
-        cost=_figure(mmol * price) if price is not None else None,
+        cost=figure(mmol * price) if price is not None else None,
+        closed_low=figure(closed[0]) if closed else None,
+        closed_high=figure(closed[1]) if closed else None,
+        grams_high=_grams(material, max(high, mmol)),
     )
+
+
+def _closed_need(route: Route, name: str, mmol: float) -> tuple[float, float] | None:
+    """Return the closed-form bounds of what is needed [mmol]: a product of yields turned upside down is lognormal too.
+
+    None where the material, or what is made of it, goes in at more than one place: then it is no product.
+    """
+    line = route.line_from(name)
+    if line is None:
+        return None
+    form = closed_form(line)
+    mean = 100 * math.prod(step.yield_pct.mean for step in line)
+    return mmol * mean / form.high, mmol * mean / max(form.low, 1e-6)
 
 
 def _main_first(route: Route, materials: Mapping[str, Any]) -> list[str]:
@@ -333,7 +328,7 @@ def _material(route: Route, name: str) -> Material:
 
 
 def _grams(material: Material, mmol: float) -> float | None:
-    return _figure(mmol * material.molar_mass / 1000) if material.molar_mass is not None else None
+    return figure(mmol * material.molar_mass / 1000) if material.molar_mass is not None else None
 
 
 def _interval(drawn: NDArray[np.float64]) -> Interval:
@@ -344,7 +339,3 @@ def _interval(drawn: NDArray[np.float64]) -> Interval:
 
 def _pct(share: float) -> float:
     return float(f"{100 * share:.4g}")
-
-
-def _figure(value: float) -> float:
-    return float(f"{float(value):.5g}")

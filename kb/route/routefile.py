@@ -29,13 +29,16 @@ holds one turns `runs` and `plan` into yields (`kb.book.routes`).
     from = ["amine", { name = "anhydride", equiv = 1.2 }]      # main line first
     plan = { scheme = "NCCc1ccccc1.CC(=O)OC(C)=O>>CC(=O)NCCc1ccccc1", temperature = "rt" }   # estimated
 
-A step has exactly one of `yield`, `run` and `plan`; the words of `plan` are those of a planned step everywhere.
+A step has exactly one of `yield`, `run` and `plan`; the words of `plan` are those of a planned step everywhere. A
+`yield` may have a `plan` beside it: the yield is then the one that is given, and the plan is checked for its findings.
 """
 
 from __future__ import annotations
 
+import difflib
 import json
 import re
+import stat
 import tomllib
 from collections.abc import Mapping
 from dataclasses import dataclass
@@ -43,11 +46,14 @@ from pathlib import Path
 from typing import Any
 
 from kb.errors import ImportFileError, InvalidRecord
-from kb.quantity import parse_amount, parse_number
+from kb.quantity import parse_number
 from kb.record.finding import Interval
+from kb.route.imagined import parse_target
 from kb.route.sequence import Input, Material, molar_mass_of
 
 LARGEST_BYTES = 1_000_000
+MOST_STEPS = 200
+"""The longest published sequences have fewer than a hundred steps; a longer list is another kind of file."""
 FORGIVEN = {
     "cheap_input": "cheap input",
     "easy_separation": "easy separation",
@@ -63,7 +69,7 @@ _RANGE = re.compile(r"^\s*(?:(?P<mean>[^(]+?)\s*\()?\s*(?P<low>[^()]+?)\s*(?:to|
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class StepDraft:
-    """One step as written; exactly one of `given`, `runs` and `plan` is there."""
+    """One step as written; one of `given`, `runs` and `plan` is there, or `given` with a plan that is only checked."""
 
     name: str
     inputs: tuple[Input, ...]
@@ -95,10 +101,13 @@ def read_route(path: Path) -> RouteDraft:
         InvalidRecord, QuantityError: something in it cannot be.
     """
     try:
-        size = path.stat().st_size
+        seen = path.stat()
+        if stat.S_ISCHR(seen.st_mode) or stat.S_ISBLK(seen.st_mode):
+            raise OSError("a device has no end")
+        size = seen.st_size
         text = path.read_text(encoding="utf-8") if size <= LARGEST_BYTES else ""
-    except (OSError, UnicodeDecodeError):
-        raise ImportFileError(f"{path.name} cannot be read.", "Give a TOML or JSON file in UTF-8.", str(path)) from None
+    except (OSError, ValueError) as error:
+        raise ImportFileError(f"{path.name} {_why(error)}.", "Give a TOML or JSON file in UTF-8.", str(path)) from None
     if size > LARGEST_BYTES:
         raise ImportFileError(
             f"{path.name} holds {size:,} bytes; no route is that long.", "Is it the right file?", size
@@ -108,6 +117,17 @@ def read_route(path: Path) -> RouteDraft:
     except (ValueError, RecursionError) as error:
         raise ImportFileError(f"{path.name}: {error}.", "Write it as the example of `sidepath route --help`.") from None
     return draft_route(words, path.stem)
+
+
+def _why(error: OSError | ValueError) -> str:
+    """Return why a file cannot be read, in words that follow its name."""
+    if isinstance(error, FileNotFoundError):
+        return "is not there"
+    if isinstance(error, IsADirectoryError):
+        return "is a folder"
+    if isinstance(error, PermissionError):
+        return "may not be read by you"
+    return "is no text in UTF-8" if isinstance(error, UnicodeDecodeError) else "cannot be read"
 
 
 def draft_route(words: Any, name: str = "route") -> RouteDraft:
@@ -121,12 +141,14 @@ def draft_route(words: Any, name: str = "route") -> RouteDraft:
     listed = words.get("step")
     if not isinstance(listed, list) or not listed:
         raise InvalidRecord("The route has no steps.", "Give at least one [[step]].")
+    if len(listed) > MOST_STEPS:
+        raise InvalidRecord(f"The route has {len(listed):,} steps.", f"At most {MOST_STEPS} are reckoned.", len(listed))
     steps: list[StepDraft] = []
     for number, step in enumerate(listed, 1):
         steps.append(_step(step, number, steps[-1].name if steps else _START))
     materials = _materials(words.get("material") or {}, steps)
     product = _text(words, "product", "The route")
-    molar_mass = molar_mass_of(product) if product else None
+    molar_mass = _molar_mass(product, "The product") if product else None
     return RouteDraft(
         title=_text(words, "title", "The route") or name,
         steps=tuple(steps),
@@ -162,13 +184,15 @@ def _step(words: Any, number: int, before: str) -> StepDraft:
     _table(words, where)
     _known(words, _STEP, where)
     sources = [key for key in ("yield", "run", "plan") if words.get(key) not in (None, "", [])]
-    if len(sources) != 1:
+    if len(sources) != 1 and sources != ["yield", "plan"]:
         raise InvalidRecord(
             f"{where} has {' and '.join(sources) if sources else 'no yield'}.",
             "Give exactly one of `yield`, `run` (a recorded run) and `plan` (to be estimated).",
         )
     if "plan" in sources:
-        _table(words["plan"], f"The plan of step {number}")
+        _plan(words["plan"], f"The plan of step {number}")
+    if product := _text(words, "product", where):
+        _molar_mass(product, f"The product of step {number}")
     runs = words.get("run") or []
     runs = [runs] if isinstance(runs, str) else runs
     if not isinstance(runs, list) or not all(isinstance(code, str) for code in runs):
@@ -183,10 +207,20 @@ def _step(words: Any, number: int, before: str) -> StepDraft:
         given=parse_yield(words["yield"], f"The yield of step {number}") if "yield" in sources else None,
         runs=tuple(runs),
         plan=words["plan"] if "plan" in sources else None,
-        product=_text(words, "product", where),
+        product=product,
         cost_per_mmol=_number(words, "cost_per_mmol", where),
         forgiven=tuple(FORGIVEN[key] for key in flagged),
     )
+
+
+def _plan(words: Any, where: str) -> None:
+    """Refuse what is no text or list of texts; which words a plan has is known where plans are read."""
+    _table(words, where)
+    for key, value in words.items():
+        if not isinstance(value, str) and not (isinstance(value, list) and all(isinstance(v, str) for v in value)):
+            raise InvalidRecord(
+                f"{where}: {key} is {value!r}.", 'Write it as text, or as a list of texts: "60 C", ["DMF"].', value
+            )
 
 
 def _inputs(value: Any, where: str) -> tuple[Input, ...]:
@@ -195,7 +229,8 @@ def _inputs(value: Any, where: str) -> tuple[Input, ...]:
         if isinstance(one, str) and one.strip():
             found.append(Input(name=one))
         elif isinstance(one, Mapping) and isinstance(one.get("name"), str) and set(one) <= {"name", "equiv"}:
-            found.append(Input(name=one["name"], equiv=_number(one, "equiv", where) or 1.0))
+            equiv = _number(one, "equiv", where)
+            found.append(Input(name=one["name"], equiv=1.0 if equiv is None else equiv))
         else:
             raise InvalidRecord(f"{where}: from holds {one!r}.", 'Write "name" or { name = "...", equiv = 1.2 }.')
     return tuple(found)
@@ -213,10 +248,11 @@ def _materials(words: Any, steps: list[StepDraft]) -> tuple[Material, ...]:
         _known(table, _MATERIAL, where)
         smiles = _text(table, "smiles", where)
         mass = _number(table, "molar_mass", where)
-        if mass is None and smiles:
-            mass = molar_mass_of(smiles)
-            if mass is None:
-                raise InvalidRecord(f"{where}: {smiles[:60]!r} is no structure.", "Check the SMILES.", smiles)
+        if smiles:
+            reckoned = _molar_mass(smiles, where)
+            mass = mass if mass is not None else reckoned
+        if mass == 0:
+            raise InvalidRecord(f"{where}: molar_mass is 0.", "Give it in g/mol, or leave it out.", mass)
         if name not in used:
             raise InvalidRecord(f"{where} goes into no step.", f"Used are: {', '.join(used)}.", name)
         price = _number(table, "price_per_g", where)
@@ -224,22 +260,19 @@ def _materials(words: Any, steps: list[StepDraft]) -> tuple[Material, ...]:
     return tuple(found)
 
 
+def _molar_mass(smiles: str, where: str) -> float:
+    mass = molar_mass_of(smiles)
+    if mass is None or mass <= 0:
+        raise InvalidRecord(f"{where}: {smiles[:60]!r} is no structure.", "Check the SMILES.", smiles)
+    return mass
+
+
 def _target(value: Any, molar_mass: float | None) -> float | None:
     if value is None or value == "":
         return None
     if not isinstance(value, str):
         raise InvalidRecord(f"The target is {value!r}.", 'Write it with its unit: "2 g" or "5 mmol".', value)
-    amount = parse_amount(value)
-    if amount.amount_mmol is not None:
-        return amount.amount_mmol
-    if amount.mass_mg is None:
-        raise InvalidRecord(f"The target is {value!r}.", 'Write it with its unit: "2 g" or "5 mmol".', value)
-    if molar_mass is None:
-        raise InvalidRecord(
-            f"The target is {value!r}, but its molar mass is not known.",
-            "Give `product` as SMILES, or the target in mmol.",
-        )
-    return amount.mass_mg / molar_mass
+    return parse_target(value, molar_mass)
 
 
 def _table(value: Any, where: str) -> None:
@@ -250,7 +283,9 @@ def _table(value: Any, where: str) -> None:
 def _known(words: Mapping[str, Any], known: set[str], where: str) -> None:
     for key in words:
         if key not in known:
-            raise InvalidRecord(f"{where} has no {key!r}.", f"Known: {', '.join(sorted(known))}.", key)
+            near = difflib.get_close_matches(str(key), known, n=1)
+            meant = f"Did you mean {near[0]!r}? " if near else ""
+            raise InvalidRecord(f"{where} has no {key!r}.", f"{meant}Known: {', '.join(sorted(known))}.", key)
 
 
 def _text(words: Mapping[str, Any], key: str, where: str) -> str | None:

@@ -12,8 +12,10 @@ import math
 from dataclasses import dataclass
 from typing import Any
 
-from kb.errors import InvalidRecord
+from kb.errors import InvalidRecord, RecordNotFound
+from kb.record.assessment import Assessment
 from kb.record.finding import Interval
+from kb.record.plan import Plan
 
 Z80 = 1.2815515655446004
 """90th centile of the normal distribution: an 80 % interval is 2 x Z80 standard deviations wide."""
@@ -98,7 +100,9 @@ class Step:
         cost_per_mmol: reagents, solvent and work per mmol of main input; None = not given.
         forgiven: why a poor yield does not matter here, as flagged by the chemist ("cheap input"); empty = it does.
         product: SMILES of what it gives; None = not stated.
-        findings: (severity, title) of a planned step's check, most severe first.
+        findings: (severity, title) of the check of its scheme, most severe first, notes left out.
+        plan: scheme and conditions, as planned or as run; None = the file gives a yield and no scheme.
+        assessment: what a check of the plan said; None = not checked.
     """
 
     name: str
@@ -108,6 +112,8 @@ class Step:
     forgiven: tuple[str, ...] = ()
     product: str | None = None
     findings: tuple[tuple[str, str], ...] = ()
+    plan: Plan | None = None
+    assessment: Assessment | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -131,7 +137,8 @@ class Route:
         if not self.steps:
             raise InvalidRecord("The route has no steps.", "Give at least one [[step]].")
         known = [m.name for m in self.materials]
-        for step in self.steps:
+        names = [step.name for step in self.steps]
+        for place, step in enumerate(self.steps):
             if step.name in known:
                 raise InvalidRecord(
                     f"Two things are called {step.name!r}.", "Name each step and material once.", step.name
@@ -139,6 +146,13 @@ class Route:
             if not step.inputs:
                 raise InvalidRecord(f"Step {step.name!r} takes nothing.", "Say what it is made from.", step.name)
             for one in step.inputs:
+                if one.name in names[place:] and one.name not in known:
+                    raise InvalidRecord(
+                        f"Step {step.name!r} takes {one.name!r}, which is made only "
+                        f"{'in it' if one.name == step.name else 'after it'}.",
+                        "Write the steps in the order in which they are run; a route cannot go in a circle.",
+                        one.name,
+                    )
                 if one.name not in known:
                     raise InvalidRecord(
                         f"Step {step.name!r} takes {one.name!r}, which is no material and no earlier step.",
@@ -173,6 +187,42 @@ class Route:
         while (before := by_name.get(line[0].inputs[0].name)) is not None:
             line.insert(0, before)
         return tuple(line)
+
+    def step(self, name: str) -> Step:
+        """Return a step by name.
+
+        Raises:
+            RecordNotFound: no step has that name.
+        """
+        found = next((step for step in self.steps if step.name == name), None)
+        if found is None:
+            raise RecordNotFound(
+                f"The route has no step {name!r}.", f"Its steps: {', '.join(s.name for s in self.steps)}.", name
+            )
+        return found
+
+    def line_from(self, name: str) -> tuple[Step, ...] | None:
+        """Return the steps that a material or a step's product passes to the end.
+
+        None where it, or something made of it, is taken at more than one place.
+        """
+        line: list[Step] = []
+        while True:
+            takers = [s for s in self.steps for one in s.inputs if one.name == name]
+            if not takers:
+                return tuple(line)
+            if len(takers) > 1:
+                return None
+            line.append(takers[0])
+            name = takers[0].name
+
+    def joins(self, name: str) -> tuple[str, float] | None:
+        """Return the step that takes `name`, with the equivalents; None for the last step."""
+        for step in self.steps:
+            for one in step.inputs:
+                if one.name == name:
+                    return step.name, one.equiv
+        return None
 
 
 def molar_mass_of(smiles: str) -> float | None:

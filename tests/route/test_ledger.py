@@ -9,9 +9,10 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from kb.errors import InvalidRecord, RecordNotFound
+from kb.errors import InvalidRecord, QuantityError, RecordNotFound
 from kb.record.finding import Interval
-from kb.route.ledger import closed_form, draw_yields, reckon, with_yield
+from kb.route.imagined import with_forgiven, with_target, with_yield
+from kb.route.ledger import closed_form, draw_yields, reckon
 from kb.route.sequence import Input, Material, Route, Step, StepYield, molar_mass_of
 
 
@@ -134,6 +135,69 @@ def test_with_prices_the_route_is_reckoned_in_money() -> None:
     assert ledger.weakest.saves == pytest.approx(1000 - 6 / 0.8 * 2 * 0.5 * 100)
 
 
+def test_what_a_cheap_step_takes_costs_nothing_unless_it_has_a_price() -> None:
+    """Without prices: the grams that a better step saves leave out what only a cheap-input step takes."""
+    steps = (
+        Step(name="crude", yield_pct=a_yield(10), inputs=(Input(name="bulk"),), forgiven=("cheap input",)),
+        Step(name="join", yield_pct=a_yield(60), inputs=(Input(name="fine"), Input(name="crude"))),
+    )
+    masses = (Material(name="bulk", molar_mass=100.0), Material(name="fine", molar_mass=200.0))
+    route = Route(title="", steps=steps, materials=masses, target_mmol=6)
+    ledger = reckon(route)
+    assert [n.material for n in ledger.needed] == ["fine", "bulk"]
+    assert ledger.needed[1].grams == pytest.approx(10.0)  # 6 / 0.6 / 0.1 mmol: shown, though it does not count
+    assert ledger.reckoned_in == "g" and ledger.unpriced == ()
+    assert ledger.weakest is not None
+    assert ledger.weakest.saves == pytest.approx((6 / 0.6 - 6 / 0.8) * 0.2)
+    matters = reckon(with_forgiven(route, "crude", ()))
+    assert matters.weakest is not None and matters.weakest.step == "crude"
+    assert matters.weakest.saves == pytest.approx(10.0 - 10.0 * 0.1 / 0.8)
+
+
+def test_what_has_no_price_is_named_where_others_have_one() -> None:
+    steps = (
+        Step(name="one", yield_pct=a_yield(50), inputs=(Input(name="a"), Input(name="b"), Input(name="c"))),
+        Step(name="two", yield_pct=a_yield(50), inputs=(Input(name="one"),)),
+    )
+    priced = Material(name="a", molar_mass=100.0, price_per_g=1)
+    materials = (priced, Material(name="b", price_per_g=3), Material(name="c"))
+    ledger = reckon(Route(title="", steps=steps, materials=materials, target_mmol=1))
+    assert ledger.unpriced == ("b", "c")
+    assert ledger.cost == pytest.approx(0.4)
+
+
+@given(st.lists(st.tuples(st.floats(30, 90), st.floats(1, 10)), min_size=1, max_size=6))
+def test_the_needed_amount_agrees_in_both_ways_of_reckoning(steps: list[tuple[float, float]]) -> None:
+    route = linear(*(a_yield(m, max(m - w, 0), min(m + w, 100)) for m, w in steps), target_mmol=10)
+    need = reckon(route, draws=20_000).needed[0]
+    assert need.closed_low is not None and need.closed_high is not None
+    assert need.closed_low <= need.mmol * (1 + 1e-4) and need.closed_high >= need.mmol * (1 - 1e-4)
+    assert need.low == pytest.approx(need.closed_low, rel=0.05)  # a lognormal is no product of Betas
+    assert need.high == pytest.approx(need.closed_high, rel=0.05)
+
+
+def test_the_closed_form_of_a_branch_follows_its_own_line() -> None:
+    steps = (
+        Step(name="B", yield_pct=a_yield(50, 44, 56), inputs=(Input(name="A"),)),
+        Step(name="D", yield_pct=a_yield(40), inputs=(Input(name="C"), Input(name="A"))),
+        Step(name="E", yield_pct=a_yield(80), inputs=(Input(name="B"), Input(name="D", equiv=2.0))),
+    )
+    route = Route(title="", steps=steps, materials=(Material(name="A"), Material(name="C")), target_mmol=8.0)
+    needed = {n.material: n for n in reckon(route).needed}
+    assert needed["A"].closed_low is None  # it goes in at two places
+    assert needed["C"].closed_low == needed["C"].closed_high == pytest.approx(8 / 0.8 * 2 / 0.4)
+    assert route.joins("D") == ("E", 2.0) and route.joins("E") is None
+
+
+def test_another_amount_wanted_scales_everything() -> None:
+    route = linear(a_yield(50), target_mmol=1)
+    assert reckon(with_target(route, "10 mmol")).needed[0].mmol == pytest.approx(20)
+    assert reckon(with_target(route, "")).target_mmol == 1.0
+    for wrong in ("2 g", "10", "0 mmol", "3 mL", "lots"):
+        with pytest.raises((InvalidRecord, QuantityError)):
+            with_target(route, wrong)
+
+
 def test_cost_of_work_counts_by_input() -> None:
     steps = (Step(name="a", yield_pct=a_yield(50), inputs=(Input(name="s"),), cost_per_mmol=3.0),)
     ledger = reckon(Route(title="", steps=steps, materials=(Material(name="s"),), target_mmol=5))
@@ -147,6 +211,8 @@ def test_cost_of_work_counts_by_input() -> None:
         ((("a", "x"),), "no material and no earlier step"),
         ((("a", "start"), ("b", "start")), "2 ends: a, b"),
         ((("a", "start"), ("a", "a")), "Two things are called"),
+        ((("a", "b"), ("b", "a")), "'b', which is made only after it"),
+        ((("a", "a"),), "'a', which is made only in it"),
     ],
 )
 def test_a_route_that_cannot_be_is_refused(steps: tuple[tuple[str, str], ...], sentence: str) -> None:

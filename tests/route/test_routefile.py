@@ -2,19 +2,25 @@
 
 from __future__ import annotations
 
+import dataclasses
 import json
 import tomllib
+from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
 import pytest
 
-from kb.book import build_demo, open_book
-from kb.book.routes import reckon_route
-from kb.errors import ImportFileError, InvalidRecord, QuantityError, RecordNotFound
+from kb import paths
+from kb.book import Book, build_demo, open_book
+from kb.book.routes import open_route, recheck_step, reckon_route, resolve_route
+from kb.errors import Cancelled, ImportFileError, InvalidRecord, NameUnknown, QuantityError, RecordNotFound
 from kb.progress import Silent
+from kb.quantity import parse_temperature
 from kb.route import routefile
+from kb.route.ledger import reckon
 from kb.route.routefile import draft_route, parse_yield, read_route
+from kb.vocabulary import Fate
 
 
 def documented() -> str:
@@ -45,8 +51,6 @@ def test_the_documented_example_reads_and_reckons(tmp_path: Path) -> None:
         assert set(answer["overall_yield_pct"]) == {"mean", "low", "high"}
         json.dumps(answer)
         lost = draft_route({"step": [{"run": "R-9999"}]})
-        from kb.book.routes import resolve_route
-
         with pytest.raises(RecordNotFound):
             resolve_route(book, lost)
         with pytest.raises(InvalidRecord, match="cannot be read"):
@@ -115,11 +119,108 @@ def test_yields_that_cannot_be_are_refused(text: object) -> None:
         ({"step": [{"yield": 50}], "material": {"starting material": {"smiles": "C1CC"}}}, "no structure"),
         ({"step": [{"yield": 50, "cost_per_mmol": -1}]}, "cost_per_mmol"),
         ({"step": [{"run": [4]}]}, "run is"),
+        ({"step": [{"yeild": 50}]}, "has no 'yeild'. Did you mean 'yield'"),
+        ({"step": [{"yield": 50}], "product": "C1CC"}, "The product: 'C1CC' is no structure"),
+        ({"step": [{"yield": 50, "product": "C1CC"}]}, "product of step 1: 'C1CC' is no structure"),
+        ({"step": [{"yield": 50, "from": [{"name": "a", "equiv": -1}]}]}, "equiv is -1"),
+        ({"step": [{"plan": {"scheme": "CBr>>CC", "solvents": 3}}]}, "plan of step 1: solvents is 3"),
+        ({"step": [{"plan": {"scheme": "CBr>>CC", "temperature": 60}}]}, "temperature is 60"),
+        ({"step": [{"run": "R-0001", "plan": {"scheme": "CBr>>CC"}}]}, "run and plan"),
+        ({"step": [{"yield": 50}] * 201}, "201 steps"),
     ],
 )
 def test_files_that_do_not_fit_are_refused_with_the_place(words: Any, sentence: str) -> None:
     with pytest.raises(InvalidRecord, match=sentence):
         draft_route(words)
+
+
+def test_no_equivalents_at_all_are_refused_and_not_taken_for_one() -> None:
+    with pytest.raises(InvalidRecord, match="takes 0 equiv"):
+        resolve_route(NoBook(), draft_route({"step": [{"yield": 50, "from": [{"name": "a", "equiv": 0}]}]}))
+
+
+def test_a_file_says_why_it_cannot_be_read(tmp_path: Path) -> None:
+    (tmp_path / "folder.toml").mkdir()
+    (tmp_path / "huge.toml").write_text("# " + "x" * 1_000_001)
+    for name, why in (("nowhere.toml", "is not there"), ("folder.toml", "is a folder"), ("huge.toml", "no route is")):
+        with pytest.raises(ImportFileError, match=why):
+            read_route(tmp_path / name)
+    with pytest.raises(ImportFileError, match="cannot be read"):
+        read_route(Path("/dev/zero"))
+
+
+class NoBook:
+    """A book that nobody may ask: the shape of a route is refused before anything is looked up."""
+
+
+@pytest.fixture(scope="module")
+def demo(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Book]:
+    place, _ = build_demo(str(tmp_path_factory.mktemp("demo") / "demo.sidepath"), Silent())
+    with open_book(place, read_only=True) as book:
+        yield book
+
+
+def test_the_shipped_route_is_convergent_and_has_every_kind_of_step(demo: Book) -> None:
+    seen: list[tuple[int, int | None, str]] = []
+
+    class Watched(Silent):
+        def advance(self, done: int, total: int | None, note: str = "") -> None:
+            seen.append((done, total, note))
+
+    route = open_route(demo, paths.shipped("seed_demo") / "route.toml", Watched())
+    assert [s.yield_pct.basis for s in route.steps] == ["recorded", "estimated", "given", "estimated"]
+    assert [s.name for s in route.main_line] == ["azide", "free amine", "join"]
+    assert route.joins("bromide") == ("join", 1.2)
+    assert seen[0] == (0, 4, "azide") and seen[-1][:2] == (4, 4)
+    recorded = route.step("azide")
+    assert recorded.plan is not None and recorded.plan.scheme == demo.get("R-0006").scheme
+    assert recorded.assessment is not None and recorded.findings
+    assert "resemblance:R-0006" not in {f.rule_id for f in recorded.assessment.findings}
+    given = route.step("bromide")
+    assert given.yield_pct.pct.mean == 62 and given.assessment is not None
+    ledger = reckon(route)
+    assert ledger.reckoned_in == "EUR" and ledger.weakest is not None and ledger.weakest.step != "bromide"
+    assert len(ledger.needed) == 2 and all(n.closed_low is not None for n in ledger.needed)
+
+
+def test_a_step_is_checked_anew_with_other_conditions(demo: Book) -> None:
+    route = open_route(demo, paths.shipped("seed_demo") / "route.toml")
+    step = route.step("join")
+    assert step.plan is not None
+    warm, hot = (
+        dataclasses.replace(step.plan, conditions=dataclasses.replace(step.plan.conditions, temperature=t))
+        for t in (parse_temperature("90 C"), parse_temperature("130 C"))
+    )
+    changed = recheck_step(demo, step, warm)
+    estimate = demo.check(warm, top=8).estimate
+    assert estimate.yield_pct is not None and estimate.yield_runs
+    assert changed.yield_pct.pct.mean == pytest.approx(estimate.yield_pct.mean, abs=0.1)
+    assert changed.yield_pct.runs == estimate.yield_runs
+    assert changed.inputs == step.inputs and changed.plan is warm
+    rare = recheck_step(demo, step, hot)  # so hot that no yield is on record: a share alone is not taken for a yield
+    estimate = demo.check(hot, top=8).estimate
+    assert estimate.yield_pct is None
+    share = dict(estimate.fates)[Fate.SUBSTITUTION]
+    assert rare.yield_pct.pct.mean == pytest.approx(90 * share.mean, abs=0.1)
+    assert "from published rates" in rare.yield_pct.note and "no yield on record" in rare.yield_pct.note
+    assert rare.yield_pct.runs == tuple(code for code, _ in estimate.runs)
+
+
+def test_looking_up_can_be_stopped(demo: Book) -> None:
+    class Stopped(Silent):
+        def cancelled(self) -> bool:
+            return True
+
+    with pytest.raises(Cancelled):
+        open_route(demo, paths.shipped("seed_demo") / "route.toml", Stopped())
+
+
+def test_a_bad_condition_names_its_step(demo: Book) -> None:
+    draft = draft_route({"step": [{"name": "one", "plan": {"scheme": "CCBr>>CCN", "solvents": ["DFMX"]}}]})
+    with pytest.raises(NameUnknown, match=r"Step 'one': No solvent is called .DFMX"):
+        resolve_route(demo, draft)
+    with pytest.raises(InvalidRecord, match="has no scheme"):
+        resolve_route(demo, draft_route({"step": [{"plan": {"solvents": ["DMF"]}}]}))
 
 
 @pytest.mark.parametrize("content", [b"title = ", b"\xff\xfe\x00", b"{", b"[" * 5000])
