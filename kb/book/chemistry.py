@@ -8,6 +8,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 from kb.store.derivation import current_recipe, derive, dissect
+from kb.store.deriving_apart import cores
 
 if TYPE_CHECKING:
     from kb.store.values import Encoded
@@ -15,7 +16,7 @@ if TYPE_CHECKING:
 
 def store_options() -> dict[str, Any]:
     """Return the keyword arguments for `Store.open` and `Store.create`."""
-    return {"derive": derive, "dissect": dissect, "encode": encode, "recipe": current_recipe()}
+    return {"derive": derive, "dissect": dissect, "encode": encode, "recipe": current_recipe(), "processes": cores()}
 
 
 def encode(smiles: str) -> Encoded:

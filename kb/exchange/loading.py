@@ -1,9 +1,9 @@
 """Files into a book: batches, duplicates, rejects, progress and stopping.
 
-It owns the job of an import, not the formats (`sources`) and not the storing: it hands batches
-to a `Sink`, which keeps a batch in one transaction or not at all. An import that was stopped, killed or partly refused
-is simply run again: what is there already is counted as duplicate and left alone, also when it has been amended since.
-Memory does not grow with the file.
+It owns the job of an import, not the formats (`sources`) and not the storing: it hands a stream of runs to a `Sink`,
+which keeps them batch by batch, each in one transaction or not at all. An import that was stopped, killed or partly
+refused is simply run again: what is there already is counted as duplicate and left alone, also when it has been amended
+since. Memory does not grow with the file.
 
 Every row ends in exactly one of stored, duplicate, rejected; read is their sum. In a dry run nothing is written to the
 book and `stored` counts what would be.
@@ -13,8 +13,9 @@ from __future__ import annotations
 
 import sqlite3
 import time
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
+from itertools import islice
 from pathlib import Path
 from typing import Any, Protocol
 from uuid import UUID
@@ -28,7 +29,7 @@ from kb.progress import Progress, Silent
 from kb.record.run import Run
 
 BATCH = 1000
-"""Runs stored in one transaction."""
+"""Runs looked up at once in a dry run."""
 
 REPORT_EVERY_S = 0.25
 """Time between two reports of progress [s]."""
@@ -152,53 +153,57 @@ class _Job:
     dry_run: bool
     rejects_path: Path | None
     read: int = 0
+    kept: int = 0
     stored: int = 0
     duplicate: int = 0
     rejected: int = 0
+    stopped: bool = False
     rejections: list[Rejection] = field(default_factory=list)
     rejects: RejectsFile | None = None
     seen: _SeenBefore | None = None
     last_report_s: float = 0.0
 
     def run(self) -> LoadReport:
-        batch: list[Run] = []
-        stopped = False
+        if self.dry_run:
+            for batch in self._batches():
+                self._count(batch)
+        else:
+            report = self.sink.add_many(self._runs(), self.who, _Kept(self))
+            self.stored, self.duplicate = report.stored, report.duplicate
+        self.progress.advance(self.read, self.read, self._words())
+        return self._report()
+
+    def _runs(self) -> Iterator[Run]:
+        """Yield the runs of the source as they are asked for; count and keep what is refused."""
         for row in self.source:
             self.read += 1
             if row.run is not None:
-                batch.append(row.run)
+                yield row.run
             else:
                 self._reject(row)
-            if len(batch) >= BATCH:
-                self._store(batch)
-                batch = []
             if self._report_is_due() and self.progress.cancelled():
-                stopped = True
-                break
-        self._store(batch)
-        self.progress.advance(self.read, self.read, self._words())
-        return self._report(stopped)
+                self.stopped = True
+                return
+
+    def _batches(self) -> Iterator[list[Run]]:
+        stream = self._runs()
+        while batch := list(islice(stream, BATCH)):
+            yield batch
 
     def close(self) -> None:
         for thing in (self.rejects, self.seen):
             if thing is not None:
                 thing.close()
 
-    def _store(self, batch: list[Run]) -> None:
-        if not batch:
-            return
-        if self.dry_run:
-            if self.seen is None:
-                self.seen = _SeenBefore()
-            ids = [run.run_id for run in batch]
-            there = {run.run_id for run in self.sink.get_many(ids)}
-            fresh = self.seen.count_new([i for i in ids if i not in there])
-            self.stored += fresh
-            self.duplicate += len(batch) - fresh
-            return
-        report = self.sink.add_many(batch, self.who)
-        self.stored += report.stored
-        self.duplicate += report.duplicate
+    def _count(self, batch: list[Run]) -> None:
+        """Count what a dry run would store."""
+        if self.seen is None:
+            self.seen = _SeenBefore()
+        ids = [run.run_id for run in batch]
+        there = {run.run_id for run in self.sink.get_many(ids)}
+        fresh = self.seen.count_new([i for i in ids if i not in there])
+        self.stored += fresh
+        self.duplicate += len(batch) - fresh
 
     def _reject(self, row: Read) -> None:
         rejection = row.rejection or Rejection(row=row.row, column=None, reason="The row could not be read.")
@@ -224,19 +229,19 @@ class _Job:
 
     def _words(self) -> str:
         parts = [
-            f"{self.duplicate} there already" if self.duplicate else "",
-            f"{self.rejected} refused" if self.rejected else "",
+            f"{self.kept:,} in the book" if self.kept else "",
+            f"{self.rejected:,} refused" if self.rejected else "",
         ]
         return ", ".join(p for p in parts if p)
 
-    def _report(self, stopped: bool) -> LoadReport:
+    def _report(self) -> LoadReport:
         table = getattr(self.source, "table", None)
         return LoadReport(
             read=self.read,
             stored=self.stored,
             duplicate=self.duplicate,
             rejected=self.rejected,
-            stopped=stopped,
+            stopped=self.stopped,
             dry_run=self.dry_run,
             rejections=tuple(self.rejections),
             unknown_names=tuple(self.source.unknown_names.most_common(50)),
@@ -244,6 +249,21 @@ class _Job:
             encoding=getattr(table, "encoding", None),
             delimiter=getattr(table, "delimiter", None),
         )
+
+
+class _Kept:
+    """Hears from the book how many rows are in it; whether to stop is asked where the file is read."""
+
+    def __init__(self, job: _Job) -> None:
+        self._job = job
+
+    def advance(self, done: int, total: int | None, note: str = "") -> None:
+        """Take note of how many rows the book has dealt with."""
+        self._job.kept = done
+
+    def cancelled(self) -> bool:
+        """Return False: the stream of runs ends when the user asks to stop."""
+        return False
 
 
 class _SeenBefore:

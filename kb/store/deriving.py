@@ -40,12 +40,17 @@ class Prepared:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Deriving:
-    """The callables and their recipe; all may be missing, then nothing is derived."""
+    """The callables and their recipe; all may be missing, then nothing is derived.
+
+    Attributes:
+        processes: how many processes may derive many runs at once; 1 = all is done where it is asked for.
+    """
 
     recipe: str = ""
     derive: Derive | None = None
     dissect: Dissect | None = None
     encode: Encode | None = None
+    processes: int = 1
 
     def prepare(self, run: Run) -> Prepared:
         """Return the facts and structures of a run; unresolved where its chemistry cannot be read."""

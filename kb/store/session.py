@@ -76,11 +76,15 @@ class OpenBook:
     def foreseen(self, smiles: Iterable[str]) -> Encodings:
         """Encode, before the write lock is taken, the structures that the book does not hold yet."""
         encodings = Encodings(deriving=self.deriving)
+        self.foresee(encodings, smiles)
+        return encodings
+
+    def foresee(self, encodings: Encodings, smiles: Iterable[str]) -> None:
+        """Encode those of the structures that neither the book nor the encodings hold yet."""
         if self.deriving.encode is not None:
-            wanted = set(smiles)
+            wanted = set(smiles) - encodings.by_smiles.keys()
             with self.reading() as connection:
                 encodings.foresee(wanted - recording.known_structures(connection, wanted).keys())
-        return encodings
 
 
 def book_id_of(connection: sa.Connection) -> UUID:

@@ -12,7 +12,7 @@ later program (SchemaTooNew), one that needs migrating (SchemaBehind), and anyth
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Mapping
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import replace
 from itertools import islice
 from pathlib import Path
@@ -27,7 +27,7 @@ from kb.store import engine as engines
 from kb.store.answering import Answers
 from kb.store.curation import Acknowledgements, Attachments, Drafts, HouseRules
 from kb.store.deriving import Derive, Deriving, Dissect, Encode
-from kb.store.entering import enter
+from kb.store.entering import enter, enter_many
 from kb.store.session import Clock, OpenBook, utc_now
 from kb.store.values import AddReport
 
@@ -77,6 +77,7 @@ class Store(Answers):
         dissect: Dissect | None = None,
         encode: Encode | None = None,
         recipe: str = "",
+        processes: int = 1,
         wait_s: float = engines.WAIT_S,
         on_wait: engines.Waiting | None = None,
         clock: Clock = utc_now,
@@ -88,6 +89,7 @@ class Store(Answers):
             read_only: never change the book.
             derive, dissect, encode: what makes facts, places and blobs (see `deriving.py`); None = not made.
             recipe: name of those three; `DerivedFacts.recipe` must equal it.
+            processes: how many processes may derive at once where many runs come in; see `deriving_apart.py`.
             wait_s: how long to wait for another writer [s].
             on_wait: told while waiting, about once a second.
             clock: gives moments; tests fix it.
@@ -98,7 +100,7 @@ class Store(Answers):
         """
         where = engines.parse_address(address)
         engine = schema.open_engine(where, read_only=read_only, wait_s=wait_s, on_wait=on_wait)
-        deriving = Deriving(recipe=recipe, derive=derive, dissect=dissect, encode=encode)
+        deriving = Deriving(recipe=recipe, derive=derive, dissect=dissect, encode=encode, processes=processes)
         return cls(
             OpenBook(address=where, engine=engine, deriving=deriving, read_only=read_only, clock=clock)
         )
@@ -142,16 +144,11 @@ class Store(Answers):
         """
         progress = progress or Silent()
         stored = duplicate = 0
-        stream = iter(many)
-        while not progress.cancelled():
-            chunk = list(islice(stream, BULK))
-            if not chunk:
-                return AddReport(stored=stored, duplicate=duplicate, stopped=False)
-            kept = len(enter(self.book, chunk, who))
+        for given, kept in enter_many(self.book, _chunks(many, progress), who):
             stored += kept
-            duplicate += len(chunk) - kept
+            duplicate += given - kept
             progress.advance(stored + duplicate, None, "runs stored")
-        return AddReport(stored=stored, duplicate=duplicate, stopped=True)
+        return AddReport(stored=stored, duplicate=duplicate, stopped=progress.cancelled())
 
     # Runs changed
 
@@ -227,3 +224,10 @@ class Store(Answers):
                 "The book was opened without anything to derive facts with.", "Open it with `derive`."
             )
         return facts.rebuild(self.book.writing, self.book.deriving, progress or Silent(), batch)
+
+
+def _chunks(many: Iterable[Run], progress: Progress) -> Iterator[list[Run]]:
+    """Yield BULK runs at a time until there are no more or the user asked to stop."""
+    stream = iter(many)
+    while not progress.cancelled() and (chunk := list(islice(stream, BULK))):
+        yield chunk

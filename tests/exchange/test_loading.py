@@ -167,11 +167,18 @@ def test_progress_tells_an_estimate_of_all_rows_that_comes_true(
     assert all(total is None or total >= done for done, total in watch.told)
 
 
-def test_runs_go_to_the_sink_in_batches(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(loading, "BATCH", 40)
-    sink = KeptInMemory()
-    load_file(table(tmp_path / "a.csv", *map(good, range(100))), sink, who="AB")
-    assert sink.batches == [40, 40, 20]
+def test_runs_go_to_the_sink_as_one_stream_that_is_read_as_it_is_asked_for(tmp_path: Path) -> None:
+    read_when_kept: list[int] = []
+
+    class Watching(KeptInMemory):
+        def add_many(self, many: Any, who: str, progress: Any = None) -> Any:
+            read_when_kept.extend(job.read for _ in many)
+            return KeptInMemory()
+
+    source = loading.open_source(table(tmp_path / "a.csv", *map(good, range(20))))
+    job = loading._Job(source, Watching(), "AB", loading.Silent(), False, None)
+    job.run()
+    assert read_when_kept == list(range(1, 21))
 
 
 def test_unknown_names_are_kept_counted_and_reported(tmp_path: Path) -> None:
@@ -202,7 +209,7 @@ def test_memory_does_not_grow_with_the_file() -> None:
     class Forgetful(KeptInMemory):
         def add_many(self, many: Any, who: str, progress: Any = None) -> Any:
             report = KeptInMemory()
-            report.stored = len(list(many))
+            report.stored = sum(1 for _ in many)
             return report
 
     def peak(rows: int) -> int:
