@@ -27,6 +27,7 @@ if TYPE_CHECKING:
     from kb.exchange.loading import LoadReport
     from kb.search.criteria import Criteria
     from kb.search.finder import Finder, FindResult
+    from kb.store.moving import Moved
     from kb.store.store import Store
     from kb.store.values import Check, Conflict, HistoryEntry, HouseRule, MergeReport, Page
 
@@ -40,7 +41,8 @@ def open_book(
     """Open a record book, to be used as a context manager.
 
     Args:
-        path_or_url: SQLite file or SQLAlchemy URL; None = the default place in the user's data directory.
+        path_or_url: SQLite file, or URL such as postgresql://host/name; None = the default place in the user's data
+            directory.
         create: make a new one; refuses to overwrite.
         read_only: never write; several may read while one writes.
         wait_s: how long to wait for another writer [s]; None = the store's own patience.
@@ -303,6 +305,16 @@ class Book:
         from kb.store.safekeeping import backup
 
         return backup(self.store, target) if keep is None else backup(self.store, target, keep=keep)
+
+    def move(self, target: str, *, who: str, progress: Progress | None = None) -> Moved:
+        """Carry the whole book over to a file or a database where nothing is yet; this book is left as it is.
+
+        Raises:
+            StoreExists: something is there.
+        """
+        from kb.store.moving import move
+
+        return move(self.store, target, who=who, progress=progress)
 
     def history_as_dicts(self, code: str) -> list[dict[str, Any]]:
         """Return the history as plain values, oldest first."""

@@ -1,4 +1,4 @@
-"""Making, mending and moving books as whole files: what a front end asks before a book is open."""
+"""Making, mending and restoring whole books: what a front end asks before a book is open."""
 
 from __future__ import annotations
 
@@ -47,9 +47,21 @@ def migrate_book(book: str | None, progress: Progress) -> str:
     return f"{said} {rebuilt} runs were read again." if rebuilt else f"{said} Derived facts were up to date."
 
 
-def restore_book(source: Path, target: Path) -> Path:
-    """Make a new, verified book from a backup and return where it is; never overwrites."""
+def restore_book(source: str, target: str) -> str:
+    """Make a new, verified book from a backup and return where it is; never overwrites.
+
+    Args:
+        source: a backup, or any book.
+        target: a file that is not there yet, or the URL of a database without a book.
+    """
     from kb.store.safekeeping import restore
 
-    restore(source, target)
-    return target
+    return restore(source, target)
+
+
+def grants_file(place: str) -> Path | None:
+    """Return the file of SQL grants that whoever keeps a server runs for a new book; None for a book in a file."""
+    from kb.paths import shipped
+    from kb.store.engine import parse_address
+
+    return shipped("migrations") / "roles.sql" if parse_address(place).path is None else None

@@ -101,7 +101,8 @@ def replay_book(
     found = [one for one in kept if one.run in names]
     chosen = set(wanted)
     left = [p for p in places_left(dated, kept) if p in chosen]
-    parts = _replay_parts(book.path, left, processes) if processes > 1 else _one_by_one(Replayer(dated), left)
+    where = book.store.book.address.for_opening
+    parts = _replay_parts(where, left, processes) if processes > 1 else _one_by_one(Replayer(dated), left)
     with closing(parts):
         progress.advance(len(found), len(wanted), "runs checked")
         for part in parts:

@@ -1,4 +1,4 @@
-"""`new`, `verify`, `migrate`, `backup`, `restore`, `merge`, `import`, `export`, `tui`: the book as a whole."""
+"""`new`, `verify`, `migrate`, `backup`, `restore`, `move`, `merge`, `import`, `export`, `tui`: the book as a whole."""
 
 from __future__ import annotations
 
@@ -29,6 +29,7 @@ def register(app: typer.Typer) -> None:
     app.command("migrate")(migrate)
     app.command("backup")(backup)
     app.command("restore")(restore)
+    app.command("move")(move)
     app.command("merge")(merge)
     app.command("import")(import_file)
     app.command("export")(export_file)
@@ -37,11 +38,15 @@ def register(app: typer.Typer) -> None:
 
 def new() -> None:
     """Create an empty record book where --book says (else in your data directory); never overwrites."""
-    from kb.book import create_book
+    from kb.book.keeping import create_book, grants_file
 
     session = current_session()
     path = create_book(session.settings.book)
-    session.answer({"book": path}, "\n".join(wrapped(f"New record book at {path}")))
+    lines = wrapped(f"New record book at {path}")
+    grants = grants_file(path)
+    if grants is not None:
+        lines += wrapped(f"Only you may use it so far. Grants for readers, contributors and curators: {grants}")
+    session.answer({"book": path}, "\n".join(lines))
 
 
 def verify() -> int:
@@ -82,15 +87,31 @@ def backup(
 
 def restore(
     source: Annotated[str, typer.Argument(help="A backup.")],
-    target: Annotated[str, typer.Argument(help="The new file; never overwritten.")],
+    target: Annotated[str, typer.Argument(help="A new file, or a database without a book; never overwritten.")],
 ) -> None:
-    """Make a book from a backup, in a new file, and verify it."""
+    """Make a book from a backup, in a new place, and verify it."""
     from kb.book import restore_book
 
     session = current_session()
-    path = restore_book(Path(source), Path(target))
+    path = restore_book(source, target)
     text = f"Restored to {path} and verified. Move it where the group opens it."
-    session.answer({"book": str(path)}, "\n".join(wrapped(text)))
+    session.answer({"book": path}, "\n".join(wrapped(text)))
+
+
+def move(
+    target: Annotated[str, typer.Argument(metavar="TO", help="A new file, or the URL of a database without a book.")],
+) -> None:
+    """Carry the whole book over to a server or a file, compare row by row, and leave the old one as it is."""
+    session = current_session()
+    with session.opened(read_only=True) as book, session.progress("Moving") as progress:
+        old = book.path
+        moved = book.move(target, who=session.initials, progress=progress)
+    text = (
+        f"{counted(moved.rows['run'], 'run')} with all history, drafts, house rules and attached files are now at "
+        f"{moved.book}; everything was read back and is the same. {old} was left as it is: write in the new book only. "
+        "What is still written in the old one, `sidepath merge` takes over."
+    )
+    session.answer(moved.as_dict(), "\n".join(wrapped(text)))
 
 
 def merge(other: Annotated[str, typer.Argument(help="The other book.")]) -> int:

@@ -63,7 +63,7 @@ def merge(store: Store, other: str | Path, *, who: str, progress: Progress | Non
     progress = progress or Silent()
     with Store.open(other, read_only=True) as source:
         if _is_same_place(store.book, source.book):
-            raise RecordConflict(f"{other} is this very book.", "Name the other one.", str(other))
+            raise RecordConflict(f"{source.book.address} is this very book.", "Name the other one.")
         tally = _Tally()
         with source.book.reading() as theirs:
             files = _take_files(store.book, theirs)
@@ -80,8 +80,8 @@ def merge(store: Store, other: str | Path, *, who: str, progress: Progress | Non
                 progress.advance(done, len(ids), "runs compared")
     if tally.added or tally.updated:
         with store.book.writing() as connection:
-            said = f"With {other}: {tally.added} runs added, {tally.updated} changed, {tally.same} the same."
-            history.note_event(connection, store.book.clock(), who, "merged", said)
+            said = f"{tally.added} runs added, {tally.updated} changed, {tally.same} the same."
+            history.note_event(connection, store.book.clock(), who, "merged", f"With {source.book.address}: {said}")
     both = set(ids)
     return MergeReport(
         added=tally.added,

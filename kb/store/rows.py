@@ -74,6 +74,10 @@ def _run_key(*, primary: bool = True) -> Mapped[int]:
     return mapped_column(sa.ForeignKey("run.run_key"), primary_key=primary, autoincrement=False)
 
 
+COUNT = sa.Integer().with_variant(sa.BigInteger(), "postgresql")
+"""A number that comes from elsewhere and may be large; SQLite's integers are large anyway."""
+
+
 class MetaRow(Row):
     """Facts about the book itself: UUID, when it was made, a counter of changes, the tip of the history."""
 
@@ -127,7 +131,7 @@ class RunRow(Row):
     ee_pct: Mapped[float | None]
     dr: Mapped[str | None]
     recorded_at: Mapped[dt.datetime]
-    revision: Mapped[int]
+    revision: Mapped[int] = mapped_column(COUNT)
     withdrawn_why: Mapped[str | None]
     has_conflict: Mapped[bool]
 
@@ -213,7 +217,7 @@ class HistoryRow(Row):
     seq: Mapped[int] = mapped_column(primary_key=True)
     entry_id: Mapped[str] = mapped_column(unique=True)
     run_id: Mapped[UUID] = mapped_column(sa.ForeignKey("run.run_id"), index=True)
-    revision: Mapped[int]
+    revision: Mapped[int] = mapped_column(COUNT)
     action: Mapped[str]
     who: Mapped[str]
     at: Mapped[dt.datetime]

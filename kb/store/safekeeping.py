@@ -1,7 +1,9 @@
 """Copies of a book: backup while others write, rotation, restoring; all verified before they count.
 
-It never writes over anything, except where a restore was told to, and then the old book is kept beside it. A server
-keeps its own backups (pg_dump); for a book there this file refuses and says so. `verify` is in `checking.py`.
+It never writes over anything, except where a restore was told to, and then the old book is kept beside it. A book on a
+server is copied into a file, row by row, and can be restored to a server from there; that guards against what happens
+to the book, and does not replace the server's own backup (pg_dump), which keeps roles and grants too. `verify` is in
+`checking.py`.
 """
 
 from __future__ import annotations
@@ -12,11 +14,12 @@ from contextlib import closing
 from pathlib import Path
 from uuid import uuid4
 
-from kb.errors import StoreBusy, StoreMissing, StoreRefused
+from kb.errors import StoreBusy, StoreMissing
 from kb.progress import Progress
 from kb.store import copying, schema
 from kb.store.checking import verify
 from kb.store.engine import Address, parse_address, translated
+from kb.store.moving import copy_all
 from kb.store.session import utc_now
 from kb.store.store import Store
 
@@ -38,20 +41,37 @@ def backup(store: Store, target: str | Path, *, keep: int = KEPT, progress: Prog
     Raises:
         StoreExists: the file is there already. StoreMissing: its folder is not.
         StoreDamaged: the copy does not verify; it is thrown away and older copies are kept.
-        StoreRefused: no permission, disk full, or a server's book.
+        StoreRefused: no permission or disk full.
     """
-    path = _file_of(store.book.address)
     wanted = Path(target).expanduser()
     if not wanted.is_dir():
-        copying.copy_book(path, wanted, progress)
+        _copy(store, wanted, progress)
         return wanted
+    named = file_name_of(store.book.address)
     stamp = utc_now().strftime("%Y%m%dT%H%M%S%fZ")
-    copy = wanted / f"{path.stem}-{stamp}{path.suffix}"
-    copying.copy_book(path, copy, progress)
+    copy = wanted / f"{named.stem}-{stamp}{named.suffix}"
+    _copy(store, copy, progress)
     with translated(wanted):
-        for old in backups_in(wanted, path)[max(keep, 1) :]:
+        for old in backups_in(wanted, named)[max(keep, 1) :]:
             old.unlink()
     return copy
+
+
+def _copy(store: Store, target: Path, progress: Progress | None) -> None:
+    """Copy a file page by page, a server's book row by row; both verified."""
+    path = store.book.address.path
+    if path is not None:
+        copying.copy_book(path, target, progress)
+    else:
+        copy_all(store, target, progress)
+
+
+def file_name_of(address: Address) -> Path:
+    """Return the file of a book, or a name for one: the database's, for a book on a server."""
+    if address.path is not None:
+        return address.path
+    assert address.url is not None
+    return Path(f"{re.sub(r'[^A-Za-z0-9_-]', '-', address.url.database or 'book')}.sidepath")
 
 
 def backups_in(folder: Path, book: Path) -> list[Path]:
@@ -60,24 +80,27 @@ def backups_in(folder: Path, book: Path) -> list[Path]:
     return sorted((p for p in folder.iterdir() if named.fullmatch(p.name)), reverse=True)
 
 
-def restore(source: str | Path, target: str | Path) -> Path:
+def restore(source: str | Path, target: str | Path) -> str:
     """Make a book from a backup, verified first; return where it is.
 
     Args:
         source: a backup, or any book.
-        target: a file that is not there yet.
+        target: a file that is not there yet, or the URL of a database without a book.
 
     Raises:
         StoreExists: the target is there; `replace_book` moves it aside.
         StoreMissing, StoreDamaged, SchemaTooNew: the backup is not there, broken, or of a later program.
+        SchemaBehind: an older form is restored to a file first, migrated there, and then moved.
     """
-    source_path, target_path = Path(source).expanduser(), Path(target).expanduser()
-    where = parse_address(source_path)
-    revision = schema.current(where)
+    origin, where = parse_address(source), parse_address(target)
+    if origin.path is None or where.path is None:
+        with Store.open(source, read_only=True) as backed_up:
+            return copy_all(backed_up, target).book
+    revision = schema.current(origin)
     if revision not in schema.SCHEMA_REVISIONS:
-        schema.refuse_other_shape(where, revision)
-    copying.copy_book(source_path, target_path)
-    return target_path
+        schema.refuse_other_shape(origin, revision)
+    copying.copy_book(origin.path, where.path)
+    return str(where)
 
 
 def replace_book(source: str | Path, target: str | Path) -> Path:
@@ -121,9 +144,3 @@ def _move_aside(path: Path) -> Path:
             if log.exists():
                 log.rename(aside.with_name(aside.name + part))
     return aside
-
-
-def _file_of(address: Address) -> Path:
-    if address.path is None:
-        raise StoreRefused(f"{address} is on a server.", "Use the server's own backup (pg_dump).", str(address))
-    return address.path
