@@ -31,6 +31,7 @@ from kb.assess.record_view import RecordView
 from kb.assess.resemblance import find_resemblances
 from kb.assess.stereo_findings import find_stereo_findings
 from kb.assess.table import FactTable, one_row
+from kb.assess.wanted_product import word_wanted_product
 from kb.assess.yields import YieldFit, fit_yield
 from kb.record.assessment import Assessment, Estimate
 from kb.record.finding import Finding
@@ -163,7 +164,7 @@ def estimate_plan(
             yield_pct=fit.yield_pct if fit else None,
             yield_runs=tuple(view.table.codes[row] for row in fit.rows[:NAMED]) if fit else (),
             published=published.as_lines() if published.fates else (),
-            note=" ".join(filter(None, (expected.note, words))),
+            note=" ".join(filter(None, (expected.note, word_wanted_product(view, similarity, wanted), words))),
             half_life_h=expect_half_life(published.half_life_h, view, similarity),
         ),
         fit,
