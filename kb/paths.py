@@ -62,3 +62,8 @@ def settings_file() -> Path:
 def log_file() -> Path:
     """Return where the terminal interface writes its log."""
     return platformdirs.user_log_path(APPLICATION, appauthor=False) / "sidepath.log"
+
+
+def recent_routes_file() -> Path:
+    """Return where the route files that were opened lately are listed."""
+    return platformdirs.user_state_path(APPLICATION, appauthor=False) / "recent_routes.json"

@@ -12,7 +12,7 @@ from types import ModuleType
 from typing import TYPE_CHECKING
 
 from kb import paths
-from kb.errors import Cancelled, SchemaBehind, StoreExists, StoreRefused
+from kb.errors import Cancelled, RecordNotFound, SchemaBehind, StoreExists, StoreRefused
 from kb.logs import tame_rdkit
 from kb.progress import Progress
 from kb.record.plan import Plan
@@ -105,6 +105,20 @@ def demo_plan() -> Plan:
 
     text = (paths.shipped("seed_demo") / "planned_step.toml").read_text(encoding="utf-8")
     return plan_from_words(tomllib.loads(text))
+
+
+def demo_route(book: Book) -> Path:
+    """Return the file of the demo's route.
+
+    Raises:
+        RecordNotFound: the book is not the demo's; the codes in the file would name other runs.
+    """
+    if not _is_demo(book):
+        raise RecordNotFound(
+            "The example rests on runs of the demo book, and another book is open.",
+            "Open the demo with Ctrl+O, or a route file of your own.",
+        )
+    return paths.shipped("seed_demo") / "route.toml"
 
 
 def _builder() -> ModuleType:

@@ -24,7 +24,7 @@ if TYPE_CHECKING:
     from kb.book.asked import AskedBook
     from kb.record.assessment import Assessment
     from kb.record.plan import Plan
-    from kb.route.ledger import Ledger
+    from kb.route.entries import Ledger
     from kb.route.routefile import RouteDraft, StepDraft
 
 REPEAT_SD_PCT = 5.0

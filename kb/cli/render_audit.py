@@ -27,7 +27,7 @@ if TYPE_CHECKING:
     from kb.audit.recurrence_values import Cluster, Recurrence
     from kb.audit.replay_report import ReplayReport
     from kb.record.finding import Interval
-    from kb.route.ledger import Ledger
+    from kb.route.entries import Ledger
 
 FEW = 8
 """Clusters shown without --verbose."""

@@ -26,7 +26,7 @@ from kb.exchange.report_route import route_page
 from kb.exchange.report_run import run_page
 from kb.record.assessment import Assessment
 from kb.record.run import Run
-from kb.route.ledger import Ledger
+from kb.route.entries import Ledger
 from kb.store.derivation import account_of_run
 
 _PAGES: dict[type, Callable[[Any, str], Page]] = {

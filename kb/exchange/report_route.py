@@ -9,7 +9,7 @@ from kb.exchange.report_blocks import Block, Facts, Page, Section, Table, Warn, 
 from kb.exchange.report_drawings import fragment
 from kb.exchange.report_plots import interval_bars, stair
 from kb.exchange.report_words import interval_words
-from kb.route.ledger import Entry, Ledger, Need
+from kb.route.entries import Entry, Ledger, Need
 
 
 def route_page(ledger: Ledger, source: str = "") -> Page:
@@ -19,19 +19,20 @@ def route_page(ledger: Ledger, source: str = "") -> Page:
     line = {s.name for s in route.main_line}
     stairs = [(e.step.name, e.so_far_pct / 100) for e in ledger.entries if e.step.name in line]
     needs = Table(
-        caption="What goes in, at the mean yields and with 80 % intervals",
-        header=("Material", "Needed", "Between", "Mass", "Cost"),
+        caption="What goes in, at the mean yields and with 80 % intervals by Monte Carlo and in closed form",
+        header=("Material", "Needed", "Between", "In closed form", "Mass", "Cost"),
         rows=tuple(
             (
                 n.material,
                 f"{n.mmol:.3g} mmol",
                 f"{n.low:.3g} to {n.high:.3g} mmol",
+                _closed(n),
                 "molar mass not known" if n.grams is None else f"{n.grams:.3g} g",
                 "no price" if n.cost is None else f"{_money(n.cost)} {route.money}".strip(),
             )
             for n in ledger.needed
         ),
-        figures=(1, 2, 3, 4),
+        figures=(1, 2, 3, 4, 5),
     )
     return Page(
         title=route.title,
@@ -45,7 +46,7 @@ def route_page(ledger: Ledger, source: str = "") -> Page:
                     stair("What is left along the main line", stairs),
                 ),
             ),
-            Section(heading="Material", blocks=(needs, *_forgiven(ledger))),
+            Section(heading="Material", blocks=(needs, *_forgiven(ledger), *_unpriced(ledger))),
             Section(heading="What a better step would buy", blocks=(_improvements(ledger),)),
             Section(
                 heading="Step by step", parts=tuple(_step(number, e) for number, e in enumerate(ledger.entries, 1))
@@ -103,6 +104,18 @@ def _forgiven(ledger: Ledger) -> tuple[Block, ...]:
     said = "; ".join(f"{s.name} ({', '.join(s.forgiven)})" for s in flagged)
     counted = f" Without them the route yields {ledger.counted_pct:.3g} %." if ledger.counted_pct is not None else ""
     return (Words(text=f"A poor yield does not matter in: {said}.{counted}"),)
+
+
+def _closed(need: Need) -> str:
+    if need.closed_low is None or need.closed_high is None:
+        return "goes in at several places"
+    return f"{need.closed_low:.3g} to {need.closed_high:.3g} mmol"
+
+
+def _unpriced(ledger: Ledger) -> tuple[Block, ...]:
+    if not ledger.unpriced:
+        return ()
+    return (Words(text=f"No price, so not in the cost: {', '.join(ledger.unpriced)}."),)
 
 
 def _improvements(ledger: Ledger) -> Block:
