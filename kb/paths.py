@@ -54,6 +54,11 @@ def replays_folder() -> Path:
     return platformdirs.user_cache_path(APPLICATION, appauthor=False) / "replays"
 
 
+def kept_folder() -> Path:
+    """Return where the program keeps what it worked out between two runs (`kb/kept.py`)."""
+    return platformdirs.user_cache_path(APPLICATION, appauthor=False) / "kept"
+
+
 def settings_file() -> Path:
     """Return where the user's settings are."""
     return platformdirs.user_config_path(APPLICATION, appauthor=False) / "settings.toml"

@@ -5,15 +5,15 @@ It owns the field names of `kb/data/cautions.toml`; what they mean for a mixture
 
 from __future__ import annotations
 
-import tomllib
 from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import lru_cache
-from importlib import resources
 from typing import Any
 
+from kb import kept
 from kb.assess.predicate import Predicate, parse_predicate
 from kb.errors import QueryError
+from kb.paths import PACKAGE
 from kb.vocabulary import Severity
 
 
@@ -87,8 +87,13 @@ def load_cautions() -> CautionTable:
     Raises:
         QueryError: where a row is wrong; the message names it.
     """
-    text = (resources.files("kb") / "data" / "cautions.toml").read_text(encoding="utf-8")
-    table = tomllib.loads(text)
+    return kept.once("cautions", _read_table)
+
+
+def _read_table() -> CautionTable:
+    import tomllib
+
+    table = tomllib.loads((PACKAGE / "data" / "cautions.toml").read_text(encoding="utf-8"))
     return CautionTable(
         rules=tuple(_rule(row) for row in table["caution"]),
         azide_overrides=tuple(

@@ -48,6 +48,10 @@ class Predicate:
     def __hash__(self) -> int:
         return hash(self.text)
 
+    def __reduce__(self) -> tuple[type[Predicate], tuple[str, Node]]:
+        """Return how to make it again from its tree; the closures are compiled anew."""
+        return Predicate, (self.text, self._root)
+
     def evaluate(self, profile: ConditionProfile) -> bool | None:
         """Return True, False or None = cannot tell."""
         return self._truth(profile)

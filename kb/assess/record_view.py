@@ -11,7 +11,7 @@ import datetime as dt
 from collections.abc import Callable, Collection, Iterable, Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
-from typing import Any, Protocol
+from typing import TYPE_CHECKING, Any, Protocol
 from uuid import UUID
 
 import numpy as np
@@ -20,8 +20,10 @@ from numpy.typing import NDArray
 from kb.assess.table import FactTable, build_table, with_profiles
 from kb.materials.profile import ConditionProfile
 from kb.record.run import Run
-from kb.store.failings import Failings, failings_by_run
-from kb.store.store import Store
+
+if TYPE_CHECKING:
+    from kb.store.failings import Failings
+    from kb.store.store import Store
 
 _UNASKED, _UNKNOWN = -2, -1
 _CANNOT_TELL = {True: 1, False: 0, None: _UNKNOWN}
@@ -73,6 +75,8 @@ def build_view(store: Store, motif_search: Callable[[str], Collection[str]] | No
     Raises:
         IndexStale: facts were made by another recipe.
     """
+    from kb.store.failings import failings_by_run
+
     columns = store.derived_columns()
     failings = failings_by_run(store)
     codes = list(columns["code"])
@@ -127,7 +131,11 @@ class RecordView:
         """Return a view of the runs dated up to `date`; runs without a date are left out. None = this view."""
         if date is None:
             return self
-        return self.only((self.table.date > 0) & (self.table.date <= date.toordinal()))
+        return self.only(self.dated_until(date))
+
+    def dated_until(self, date: dt.date) -> NDArray[np.bool_]:
+        """Return which runs are dated up to `date` (n); runs without a date are not."""
+        return (self.table.date > 0) & (self.table.date <= date.toordinal())
 
     def only(self, keep: NDArray[np.bool_]) -> RecordView:
         """Return a view in which only the runs of a mask (n) speak."""

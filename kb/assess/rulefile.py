@@ -6,15 +6,15 @@ compiles no SMARTS (that waits until a rule's conditions are met) and keeps what
 
 from __future__ import annotations
 
-import tomllib
 from collections.abc import Mapping
 from functools import lru_cache
-from importlib import resources
 from typing import Any
 
+from kb import kept
 from kb.assess.liability_rule import SIDES, WAYS, Rule
 from kb.assess.predicate import parse_predicate
 from kb.errors import QueryError
+from kb.paths import PACKAGE
 from kb.vocabulary import Fate, Severity
 
 _KNOWN = {
@@ -52,9 +52,14 @@ def load_rules() -> tuple[Rule, ...]:
     Raises:
         QueryError: where a table is wrong; the message names the file and the rule.
     """
+    return kept.once("liabilities", _read_rules)
+
+
+def _read_rules() -> tuple[Rule, ...]:
+    import tomllib
+
     rules: list[Rule] = []
-    folder = resources.files("kb") / "data" / "liabilities"
-    for path in sorted(folder.iterdir(), key=lambda p: p.name):
+    for path in sorted((PACKAGE / "data" / "liabilities").iterdir(), key=lambda p: p.name):
         if path.name.endswith(".toml"):
             table = tomllib.loads(path.read_text(encoding="utf-8"))
             rules += [build_rule(entry, place=path.name) for entry in table.get("liability", [])]

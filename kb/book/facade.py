@@ -345,6 +345,10 @@ class Book:
             self._view = (version, build_view(self.store, self.finder().runs_with_motif))
         return self._view[1]
 
+    def view_at(self, version: int) -> RecordView | None:
+        """Return the columns that were read at a state of the book, None where those at hand are of another."""
+        return self._view[1] if self._view is not None and self._view[0] == version else None
+
     def finder(self) -> Finder:
         """Return the search over this book, following its changes."""
         if self._finder is None:

@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-import datetime as dt
 import shlex
 from dataclasses import replace
-from typing import TYPE_CHECKING, Annotated, Optional
+from typing import Annotated, Optional
 
 import typer
 
-from kb.cli import exit_codes
+from kb.cli.checking import answer_check, show_assessment
 from kb.cli.conditions import (
     AcidFlag,
     AddFlag,
@@ -21,16 +20,10 @@ from kb.cli.conditions import (
     TempFlag,
     TimeFlag,
     WithFlag,
-    parse_conditions,
 )
-from kb.cli.session import Session, current_session, put
-from kb.errors import StoreMissing, StructureError
+from kb.cli.session import current_session, put
 from kb.plain import plain
 from kb.vocabulary import Severity
-
-if TYPE_CHECKING:
-    from kb.record.assessment import Assessment
-    from kb.record.plan import Plan
 
 
 def register(app: typer.Typer) -> None:
@@ -65,34 +58,19 @@ def check(
     ] = None,
 ) -> int:
     """Check a planned step against the record, known liabilities and hazards."""
-    from kb.book import parse_date, scheme_from_argument
-    from kb.record.plan import Plan
-
-    session = current_session()
-    conditions = parse_conditions(reagents, bases, acids, additives, solvents, temp, time, conc, scale, atmosphere)
-    plan = Plan(scheme=scheme_from_argument(scheme), conditions=conditions)
-    top = session.settings.precedents if top is None else top
-    assessment = _assess(session, plan, top, parse_date(at_date) if at_date else None)
-    if not assessment.reading.ok:
-        raise StructureError(assessment.reading.reason, "", plan.scheme)
-    show_assessment(session, assessment)
-    if fail_on is not None and any(f.severity.rank >= fail_on.rank for f in assessment.findings):
-        return exit_codes.FAIL_ON
-    return exit_codes.DONE
-
-
-def _assess(session: Session, plan: Plan, top: int, at_date: dt.date | None) -> Assessment:
-    """Check against the book; where nobody named one and there is none yet, against published chemistry alone."""
-    try:
-        with session.opened(read_only=True) as book:
-            return book.check(plan, top=top, at_date=at_date)
-    except StoreMissing:
-        if session.settings.book is not None:
-            raise
-        from kb.book import check_unrecorded
-
-        session.say("There is no record book yet: published chemistry alone. `sidepath new` makes one.")
-        return check_unrecorded(plan)
+    words = {
+        "reagents": reagents,
+        "bases": bases,
+        "acids": acids,
+        "additives": additives,
+        "solvents": solvents,
+        "temperature": temp,
+        "time": time,
+        "concentration": conc,
+        "scale": scale,
+        "atmosphere": atmosphere,
+    }
+    return answer_check(current_session(), scheme, words, top=top, fail_on=fail_on, at_date=at_date)
 
 
 def demo() -> None:
@@ -113,13 +91,3 @@ def demo() -> None:
             f"\nChecked against {count} invented runs. Open the book in the terminal interface with\n"
             f"  sidepath --book {plain(shlex.quote(str(path)))} tui"
         )
-
-
-def show_assessment(session: Session, assessment: Assessment) -> None:
-    """Print an assessment as text or JSON."""
-    from kb.cli.render_assessment import render_assessment
-
-    if session.as_json:
-        session.print_json(assessment.as_dict())
-    else:
-        put(render_assessment(assessment, verbose=session.verbose))

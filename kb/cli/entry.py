@@ -8,21 +8,15 @@ from __future__ import annotations
 
 import gc
 import os
-import re
 import sys
 from collections.abc import Sequence
 from pathlib import Path
-from typing import Any
 
-import typer
-
+from kb import kept
 from kb.cli import exit_codes
-from kb.cli.session import STDOUT, ReaderGone, complain, json_line
+from kb.cli.quick import run_quickly
+from kb.cli.session import STDOUT, Misused, ReaderGone, complain, json_line, write_line
 from kb.errors import SidepathError
-
-# Typer carries its own copy of the library under it, or an installed one, by version; these are its bases either way.
-_UsageError: Any = typer.BadParameter.__bases__[0]
-_CommandError: Any = _UsageError.__bases__[0]
 
 _FLAGS = {"--json", "--quiet", "--verbose", "-q", "-v"}
 _WITH_VALUE = {"--book", "--as"}
@@ -31,14 +25,8 @@ _FREE_TEXT = {"--note", "--why", "--ref", "--words", "--title", "--instead", "--
 COLLECT_AFTER = 100_000
 """Objects between two garbage collections: loading RDKit and SQLAlchemy makes many that live as long as the program,
 and looking through them again and again takes a twentieth of the time of a check."""
-_PARSER_WORDS = (
-    (r"Value error, |^Invalid value: ", ""),
-    (r"Input should be a valid integer.*", "it is no whole number"),
-    (r"Input should be a valid number.*", "it is no number"),
-    (r"Input should be ", "give a number "),
-    (r" ?\(Possible options?: ([^)]*)\)", r". Did you mean \1?"),
-)
-"""What the parser under Typer says, and what we say."""
+ONE_THREAD = ("OPENBLAS_NUM_THREADS", "1")
+"""Starting threads for linear algebra, of which there is next to none here, takes half the time that NumPy loads."""
 _DISK_FULL = (28, 122)
 """ENOSPC and EDQUOT."""
 
@@ -50,6 +38,8 @@ def main(argv: Sequence[str] | None = None) -> None:
         argv: arguments without the program's name; None = sys.argv.
     """
     gc.set_threshold(COLLECT_AFTER, 50, 50)
+    kept.allow()
+    os.environ.setdefault(*ONE_THREAD)
     _settle_streams()
     code = run(sys.argv[1:] if argv is None else list(argv))
     try:
@@ -64,25 +54,22 @@ def run(argv: Sequence[str]) -> int:
     front, rest = _parted(argv)
     as_json, is_verbose = "--json" in front, bool({"--verbose", "-v"} & set(front))
     try:
-        from kb.cli.root import app  # here, so that Ctrl-C while it loads is met below
+        status = run_quickly(front, rest)
+        if status is not None:
+            return status
+        from kb.cli.parsing import run_parsed  # here, so that Ctrl-C while it loads is met below
 
-        command = typer.main.get_command(app)
-        result = command.main(args=front + rest, prog_name="sidepath", standalone_mode=False)
-        return result if isinstance(result, int) else exit_codes.DONE
+        return run_parsed(front + rest)
     except SidepathError as error:
         _complain(error.as_dict(), as_json)
         return exit_codes.exit_code_of(error)
-    except (typer.Abort, KeyboardInterrupt):
+    except KeyboardInterrupt:
         _complain({"code": "cancelled", "message": "Stopped.", "hint": ""}, as_json)
         return exit_codes.INTERRUPTED
-    except typer.Exit as leaving:
-        return leaving.exit_code
     except SystemExit as leaving:
         return leaving.code if isinstance(leaving.code, int) else exit_codes.DONE
-    except _CommandError as error:
-        context = getattr(error, "ctx", None)
-        where = context.command_path if context else "sidepath"
-        _complain({"code": "usage", "message": _usage_words(error), "hint": f"See `{where} --help`."}, as_json)
+    except Misused as error:
+        _complain({"code": "usage", "message": error.message, "hint": error.hint}, as_json)
         return exit_codes.USAGE
     except (ReaderGone, BrokenPipeError):
         return _after_failed_output(BrokenPipeError(), exit_codes.DONE)
@@ -143,17 +130,8 @@ def _settle_streams() -> None:
 def _complain(error: dict[str, str], as_json: bool) -> None:
     """Say an error: plain sentences on stderr, with --json also an object on stdout."""
     if as_json:
-        typer.echo(json_line({"error": error}))
+        write_line(sys.stdout, json_line({"error": error}))
     complain(error)
-
-
-def _usage_words(error: Any) -> str:
-    """Return what the parser says, as a sentence."""
-    said = str(error.format_message())
-    for theirs, ours in _PARSER_WORDS:
-        said = re.sub(theirs, ours, said)
-    said = said[:1].upper() + said[1:]
-    return said if said.endswith((".", "?", "!")) else f"{said}."
 
 
 def _after_failed_output(error: OSError, code: int) -> int:

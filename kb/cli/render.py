@@ -12,8 +12,6 @@ import sys
 import textwrap
 from collections.abc import Iterable, Sequence
 
-import typer
-
 from kb.cli.session import use_colour
 from kb.plain import counted as counted
 from kb.plain import excerpt, plain, shortened
@@ -22,7 +20,9 @@ from kb.vocabulary import Fate, Severity
 WIDEST, NARROWEST = 80, 40
 LONGEST_TEXT = 20_000
 """Longest text of one field that is shown [characters]; --json shows the whole."""
-_COLOUR = {Severity.SERIOUS: "red", Severity.CAUTION: "yellow", Severity.NOTE: "cyan"}
+_BOLD, _PLAIN = "\x1b[1m", "\x1b[0m"
+_COLOUR = {Severity.SERIOUS: "\x1b[31m", Severity.CAUTION: "\x1b[33m", Severity.NOTE: "\x1b[36m"}
+"""Red, yellow and cyan (ECMA-48, select graphic rendition)."""
 
 
 def width() -> int:
@@ -34,13 +34,13 @@ def width() -> int:
 
 def heading(text: str) -> str:
     """Return a section heading."""
-    return typer.style(text, bold=True) if use_colour() else text.upper()
+    return f"{_BOLD}{text}{_PLAIN}" if use_colour() else text.upper()
 
 
 def severity_word(severity: Severity) -> str:
     """Return the severity as a word of fixed width, coloured where colour may be used."""
     word = f"{str(severity).upper():<7}"
-    return typer.style(word, fg=_COLOUR[severity], bold=True) if use_colour() else word
+    return f"{_COLOUR[severity]}{_BOLD}{word}{_PLAIN}" if use_colour() else word
 
 
 def wrapped(text: str, indent: int = 0, first: str | None = None) -> list[str]:

@@ -17,9 +17,7 @@ from contextvars import ContextVar
 from dataclasses import dataclass
 from functools import cached_property
 from types import FrameType, TracebackType
-from typing import TYPE_CHECKING, Any
-
-import typer
+from typing import TYPE_CHECKING, Any, TextIO
 
 from kb.errors import Cancelled, SettingsError, SidepathError, StoreRefused
 from kb.plain import excerpt, plain, plain_json
@@ -124,7 +122,7 @@ class Session:
     def say(self, text: str) -> None:
         """Tell the user something on stderr, unless --quiet."""
         if not self.quiet:
-            typer.echo(plain(excerpt(text, LONGEST_MESSAGE), keep_lines=True), err=True)
+            write_line(sys.stderr, plain(excerpt(text, LONGEST_MESSAGE), keep_lines=True))
 
     def progress(self, label: str) -> BarOnStderr:
         """Return a progress, to be used as a context: one line on stderr, and Ctrl-C taken for a wish to stop.
@@ -136,6 +134,15 @@ class Session:
 
 class ReaderGone(Exception):
     """Raised when whoever read our answer has seen enough (`| head`); no failure."""
+
+
+class Misused(Exception):
+    """Raised when the words given are no command, or not as it wants them."""
+
+    def __init__(self, message: str, hint: str) -> None:
+        super().__init__(message, hint)
+        self.message = message
+        self.hint = hint
 
 
 class BarOnStderr:
@@ -198,6 +205,17 @@ class BarOnStderr:
         return self.stopped
 
 
+def write_line(stream: TextIO, text: str) -> None:
+    """Write a line to stdout or stderr at once; on Windows through Typer, which knows its old consoles."""
+    if sys.platform == "win32":
+        import typer
+
+        typer.echo(text, file=stream)
+        return
+    stream.write(f"{text}\n")
+    stream.flush()
+
+
 def put(text: str) -> None:
     """Print a line of a result on stdout.
 
@@ -206,7 +224,7 @@ def put(text: str) -> None:
         OSError: stdout takes no more; its file name is STDOUT, so that nobody blames the book.
     """
     try:
-        typer.echo(text)
+        write_line(sys.stdout, text)
     except BrokenPipeError:
         raise ReaderGone from None
     except OSError as error:
@@ -227,7 +245,7 @@ def json_line(data: Any) -> str:
 def complain(error: dict[str, str]) -> None:
     """Say an error in plain sentences on stderr."""
     message, hint = (excerpt(error[part], LONGEST_MESSAGE) for part in ("message", "hint"))
-    typer.echo(f"sidepath: {plain(f'{message} {hint}'.strip())}", err=True)
+    write_line(sys.stderr, f"sidepath: {plain(f'{message} {hint}'.strip())}")
 
 
 def use_colour() -> bool:

@@ -15,8 +15,7 @@ import re
 from dataclasses import dataclass
 from functools import lru_cache
 
-from rapidfuzz import fuzz, process
-
+from kb import kept
 from kb.errors import NameUnknown
 from kb.materials.catalogue import Material, Reagent, Solvent, load_catalogue
 from kb.materials.labels import LONGEST_NAME, Label, plain_name, read_label
@@ -227,24 +226,31 @@ def _bare(name: str) -> str:
 
 
 @lru_cache(maxsize=1)
-def _index() -> tuple[dict[str, list[Material]], ...]:
-    """Return name to entries at three strictnesses: as written, loose, bare; reagents first."""
-    levels: tuple[dict[str, list[Material]], ...] = ({}, {}, {})
-    for entry in load_catalogue():
+def _index() -> tuple[tuple[Material, ...], tuple[dict[str, tuple[int, ...]], ...]]:
+    """Return all entries, reagents first, and name to their numbers at three strictnesses: as written, loose, bare."""
+    entries = tuple(load_catalogue())
+    return entries, kept.once("names", lambda: _numbered(entries))
+
+
+def _numbered(entries: tuple[Material, ...]) -> tuple[dict[str, tuple[int, ...]], ...]:
+    """Return the same with entries by their number."""
+    levels: tuple[dict[str, list[int]], ...] = ({}, {}, {})
+    for number, entry in enumerate(entries):
         for name in (entry.name, *entry.synonyms):
             for level, spell in zip(levels, (plain_name, _loose, _bare), strict=True):
                 known = level.setdefault(spell(plain_name(name)), [])
-                if entry not in known:
-                    known.append(entry)
-    return levels
+                if all(entries[n] != entry for n in known):
+                    known.append(number)
+    return tuple({name: tuple(numbers) for name, numbers in level.items()} for level in levels)
 
 
 def _exact(name: str, kind: str | None) -> list[Material]:
     """Return the entry of that name, several where the name has several meanings, none where it has none."""
     if not name or len(name) > LONGEST_NAME:
         return []
-    for level, spell in zip(_index(), (plain_name, _loose, _bare), strict=True):
-        found = [e for e in level.get(spell(name), ()) if _is_kind(e, kind)]
+    entries, levels = _index()
+    for level, spell in zip(levels, (plain_name, _loose, _bare), strict=True):
+        found = [e for number in level.get(spell(name), ()) if _is_kind(e := entries[number], kind)]
         structures = {_structure(e) for e in found}
         if len(structures) == 1:
             return found[:1]
@@ -278,6 +284,8 @@ def _alike(name: str, kind: str | None) -> tuple[Offer, ...]:
     """Return the nearest entries by edit likeness of the whole name, best first, one offer per structure."""
     if not name or len(name) > 80:
         return ()
+    from rapidfuzz import fuzz, process  # loaded when a name is not known, not by those who spell well
+
     spellings, owners = _spellings()
     cutoff = OFFERED_FROM if len(plain_name(name)) >= NEAR_LENGTH else SHORT_OFFERED_FROM
     hits = process.extract(_loose(name), spellings, scorer=fuzz.ratio, score_cutoff=cutoff, limit=60)

@@ -5,12 +5,11 @@ It owns the reading and the offer of a nearest word; what a mode implies for a r
 
 from __future__ import annotations
 
-import tomllib
 from dataclasses import dataclass
 from functools import cache
-from importlib import resources
 
 from kb.errors import InvalidRecord
+from kb.paths import PACKAGE
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -25,7 +24,9 @@ class FailureMode:
 @cache
 def failure_modes() -> tuple[FailureMode, ...]:
     """Return the modes in the order of the file."""
-    text = resources.files("kb").joinpath("data", "failure_modes.toml").read_text(encoding="utf-8")
+    import tomllib
+
+    text = (PACKAGE / "data" / "failure_modes.toml").read_text(encoding="utf-8")
     return tuple(FailureMode(**entry) for entry in tomllib.loads(text)["mode"])
 
 

@@ -15,7 +15,7 @@ Computer Programming 4A, 7.1.3).
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -56,6 +56,21 @@ class BitPlanes:
         self._planes = np.zeros((n_bits, blocks * BLOCK_WORDS), np.uint64)
         self._tail = np.zeros((BLOCK_ROWS, self._row_words), np.uint64)
         self._is_open = False
+
+    def __getstate__(self) -> dict[str, Any]:
+        """Return what to keep: the planes in use, without the room to grow."""
+        if self._is_open:
+            self._close_block(self.n_rows // BLOCK_ROWS)
+        return self.__dict__ | {
+            "_planes": self._planes[:, : self.n_words].copy(),
+            "_tail": self._tail[: self.n_rows % BLOCK_ROWS].copy(),
+        }
+
+    def __setstate__(self, state: dict[str, Any]) -> None:
+        """Take up what was kept; rows may be added as before."""
+        self.__dict__.update(state)
+        self._tail = np.zeros((BLOCK_ROWS, self._row_words), np.uint64)
+        self._tail[: len(state["_tail"])] = state["_tail"]
 
     @property
     def n_words(self) -> int:

@@ -20,11 +20,11 @@ import sqlalchemy as sa
 
 from kb.errors import StoreDamaged
 from kb.store import lineage
+from kb.store.form import TIP
 from kb.store.mapping import table
 from kb.store.rows import EventRow, HistoryRow, MetaRow
 from kb.store.values import Change, Event, HistoryEntry
 
-TIP = "history_tip"
 CHUNK = 500
 
 

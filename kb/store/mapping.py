@@ -1,8 +1,7 @@
-"""Runs to table rows and back, field by field.
+"""Runs to table rows, field by field; the way back is `run_of_rows.py`.
 
 It owns the correspondence only: no SQL is sent from here. `run_key`, `code` and the flags of the store are
-given by the caller. A row that breaks a rule of the record was not written by this program, so it is reported
-as damage.
+given by the caller.
 """
 
 from __future__ import annotations
@@ -13,15 +12,10 @@ from typing import Any
 
 import sqlalchemy as sa
 
-from kb.errors import InvalidRecord, StoreDamaged
-from kb.quantity import Duration, Temperature
-from kb.record.component import Component, SolventPart
-from kb.record.conditions import Conditions
 from kb.record.derived import DerivedFacts
-from kb.record.outcome import Failure, Outcome, ProductSeen
-from kb.record.run import Attachment, Run
+from kb.record.run import Run
 from kb.store import rows
-from kb.vocabulary import Cause, Fate, Method, Role, Verdict
+from kb.store.run_of_rows import CHILD_FIELDS
 
 Values = dict[str, Any]
 
@@ -34,22 +28,6 @@ CHILDREN: tuple[type[rows.Row], ...] = (
 )
 """Tables keyed by (run_key, position), in the order in which `child_values` fills them."""
 
-COMPONENT_FIELDS = (
-    "role",
-    "name",
-    "smiles",
-    "equiv",
-    "amount_mmol",
-    "mass_mg",
-    "volume_ml",
-    "conc_molar",
-    "loading_mol_pct",
-)
-SOLVENT_FIELDS = ("name", "smiles", "parts")
-PRODUCT_FIELDS = ("fate", "smiles", "share", "share_low", "share_high", "method", "protons")
-FAILURE_FIELDS = ("mode", "motif", "cause")
-ATTACHMENT_FIELDS = ("name", "sha256", "size_bytes")
-CHILD_FIELDS = (COMPONENT_FIELDS, SOLVENT_FIELDS, PRODUCT_FIELDS, FAILURE_FIELDS, ATTACHMENT_FIELDS)
 FACT_FIELDS = tuple(f for f in DerivedFacts.__dataclass_fields__ if f not in ("run_id", "recipe"))
 
 
@@ -116,76 +94,9 @@ def child_values(run: Run, run_key: int) -> tuple[list[Values], ...]:
     )
 
 
-def run_from_rows(row: sa.RowMapping, children: Sequence[Sequence[sa.RowMapping]]) -> Run:
-    """Return the run of its row and its child rows (one sequence per table of CHILDREN, by position).
-
-    Raises:
-        StoreDamaged: the rows break a rule of the record.
-    """
-    components, solvents, products, failures, attachments = children
-    try:
-        return Run(
-            scheme=row["scheme"],
-            conditions=Conditions(
-                components=tuple(
-                    Component(**{**_pick(c, COMPONENT_FIELDS), "role": Role(c["role"])}) for c in components
-                ),
-                solvents=tuple(SolventPart(**_pick(s, SOLVENT_FIELDS)) for s in solvents),
-                temperature=None
-                if row["temperature_text"] is None
-                else Temperature(
-                    text=row["temperature_text"],
-                    start_c=row["temperature_start_c"],
-                    between_c=tuple(json.loads(row["temperature_between_c"] or "[]")),
-                    end_c=row["temperature_end_c"],
-                    is_reflux=row["is_reflux"],
-                ),
-                time=None if row["time_text"] is None else Duration(text=row["time_text"], h=row["time_h"]),
-                **_pick(row, ("conc_molar", "scale_mmol", "atmosphere", "vessel", "workup")),
-            ),
-            outcome=Outcome(
-                products=tuple(
-                    ProductSeen(
-                        **{
-                            **_pick(p, PRODUCT_FIELDS),
-                            "fate": Fate(p["fate"]),
-                            "method": Method(p["method"]) if p["method"] is not None else None,
-                        }
-                    )
-                    for p in products
-                ),
-                failures=tuple(
-                    Failure(
-                        mode=f["mode"],
-                        motif=f["motif"],
-                        cause=Cause(f["cause"]) if f["cause"] is not None else None,
-                    )
-                    for f in failures
-                ),
-                **_pick(row, ("isolated_yield_pct", "assay_yield_pct", "conversion_pct", "ee_pct", "dr")),
-            ),
-            verdict=Verdict(row["verdict"]) if row["verdict"] is not None else None,
-            by=row["by_initials"],
-            date=row["run_date"],
-            attachments=tuple(Attachment(**_pick(a, ATTACHMENT_FIELDS)) for a in attachments),
-            **_pick(row, ("note", "reference", "project", "series", "run_id", "code", "recorded_at", "revision")),
-            withdrawn_why=row["withdrawn_why"],
-        )
-    except (InvalidRecord, ValueError, TypeError) as error:
-        raise StoreDamaged(
-            f"Run {row['code']!s:.40} was damaged in the book ({str(error).rstrip('.')[:200]}).",
-            "Run `sidepath verify`; `sidepath history` still shows what was recorded.",
-            str(row["run_id"]),
-        ) from error
-
-
 def fact_values(facts: DerivedFacts, run_key: int, recipe_id: int) -> Values:
     """Return the columns of `facts`."""
     return {"run_key": run_key, "recipe_id": recipe_id, **{f: getattr(facts, f) for f in FACT_FIELDS}}
-
-
-def _pick(row: sa.RowMapping, names: Sequence[str]) -> Values:
-    return {name: row[name] for name in names}
 
 
 def _word(value: Any) -> str | None:

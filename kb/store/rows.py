@@ -29,10 +29,9 @@ from uuid import UUID
 import sqlalchemy as sa
 from sqlalchemy.orm import DeclarativeBase, Mapped, mapped_column
 
-SCHEMA_REVISIONS = ("0001",)
-"""All revisions that this program knows, oldest first."""
+from kb.store.form import SCHEMA_HEAD, SCHEMA_REVISIONS
 
-SCHEMA_HEAD = SCHEMA_REVISIONS[-1]
+__all__ = ["SCHEMA_HEAD", "SCHEMA_REVISIONS"]
 
 NAMING = {
     "ix": "ix_%(column_0_label)s",

@@ -19,8 +19,9 @@ import sqlalchemy as sa
 from kb.errors import RecordConflict, RecordNotFound
 from kb.record.run import Run
 from kb.store import codes
-from kb.store.mapping import CHILDREN, run_from_rows, table
+from kb.store.mapping import CHILDREN, table
 from kb.store.rows import ComponentRow, FactsRow, FailureRow, RunRow, SolventRow
+from kb.store.run_of_rows import run_from_rows
 
 BATCH = 500
 """Runs loaded at a time."""

@@ -19,9 +19,9 @@ from kb.record.json_fields import UNKEEPABLE
 from kb.store import engine as engines
 from kb.store import history, recording
 from kb.store.deriving import Deriving, Encodings
+from kb.store.form import BOOK_ID, CHANGES, CREATED_AT
 
-BOOK_ID, CREATED_AT, CHANGES = "book_id", "created_at", "changes"
-"""Names of meta rows: the book's UUID, when it was made, how often anybody changed it."""
+__all__ = ["BOOK_ID", "CHANGES", "CREATED_AT"]
 
 Clock = Callable[[], dt.datetime]
 
