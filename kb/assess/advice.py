@@ -3,7 +3,8 @@
 It owns the ranking and the refusals. A change is measured by pairs of runs where the record has them
 (`advice_pairs.py`), else by what published rates say (`kb.physorg.what_if`), and is labelled for what it is. Never
 advised: a change that raises a serious finding which the plan does not have, found by making the findings anew for
-the changed plan against the runs nearest to it; a change after which published rates expect the step to stall.
+the changed plan against the runs nearest to it; a change after which published rates expect the step to stall. A change
+whose interval reaches below zero may do nothing or harm: small ones are left out, others come last and say so.
 """
 
 from __future__ import annotations
@@ -35,8 +36,10 @@ ALIKE_REAGENTS = 0.45
 LEAST_EFFECT = 0.02
 """Smallest gain in the share wanted that is worth a line."""
 LEAST_TREND = 0.03
-WORST_TREND = -0.10
-"""Low end of a published trend below which it is not advised."""
+LEAST_IF_UNSURE = 0.05
+"""Smallest gain that is worth a line where the interval reaches zero."""
+WORST = -0.10
+"""Low end of an effect below which it is not advised, unless the gain expected is twice as large."""
 NEAR = 600
 """Runs with a like nucleophile whose conditions are offered."""
 TOP = 4
@@ -90,7 +93,8 @@ def advise(
     if step is not None:
         others = [option for found, option in zip(by_record, options, strict=True) if found is None]
         candidates += _by_trend(others, account, step, wanted)
-    candidates.sort(key=lambda pair: -_rank(pair[0]))
+    candidates = [pair for pair in candidates if _is_worth_a_line(pair[0])]
+    candidates.sort(key=lambda pair: (is_unsure(pair[0]), -_rank(pair[0])))
     already = frozenset(_kind(f.rule_id) for f in findings if f.severity is Severity.SERIOUS)
     advised: list[Advice] = []
     for found, option in candidates[:MOST_CHECKED]:
@@ -103,6 +107,18 @@ def advise(
 
 def _rank(advice: Advice) -> float:
     return advice.effect.low + 0.25 * advice.effect.mean + (0.05 if advice.basis is Basis.RECORD else 0.0)
+
+
+def is_unsure(advice: Advice) -> bool:
+    """Return whether the interval holds no change, or harm."""
+    return advice.effect.low <= 0
+
+
+def _is_worth_a_line(advice: Advice) -> bool:
+    effect = advice.effect
+    if not is_unsure(advice):
+        return True
+    return effect.mean >= LEAST_IF_UNSURE and effect.low >= min(WORST, -effect.mean / 2)
 
 
 def _kind(rule_id: str) -> str:
@@ -135,7 +151,8 @@ def _by_record(
         effect=paired.effect,
         pairs=len(paired.pairs),
         basis=Basis.RECORD,
-        why=_pairs_in_words(paired, view, measured),
+        why=_pairs_in_words(paired, view, measured) + _doubt(paired.effect),
+        runs=tuple((view.table.codes[a], view.table.codes[b]) for a, b in paired.pairs),
     )
 
 
@@ -181,21 +198,28 @@ def _by_trend(
 
 def _is_worth_trying(found: Contrast, changed: Plan) -> bool:
     gain = LEAST_TREND_IF_SLOW if found.pace < SLOW else LEAST_TREND
-    if found.effect.mean < gain or found.effect.low < WORST_TREND:
+    if found.effect.mean < gain or found.effect.low < WORST:
         return False
     hours = changed.conditions.time.h if changed.conditions.time is not None else None
     return found.pace >= SLOW or found.half_life_h <= max(hours or 0.0, OVERNIGHT_H) / 3
 
 
 def _advice_of(found: Contrast, option: Option) -> Advice:
-    effect = found.effect
+    # Adding zero takes the sign from a rounded -0.0.
+    mean, low, high = (round(value, 3) + 0.0 for value in (found.effect.mean, found.effect.low, found.effect.high))
+    effect = Interval(mean=mean, low=low, high=high)
     return Advice(
         change=f"{option.word} instead of {option.here}",
-        effect=Interval(mean=round(effect.mean, 3), low=round(effect.low, 3), high=round(effect.high, 3)),
+        effect=effect,
         pairs=0,
         basis=Basis.PUBLISHED,
-        why=_trend_in_words(found),
+        why=_trend_in_words(found) + _doubt(effect),
     )
+
+
+def _doubt(effect: Interval) -> str:
+    """Return words where an effect may be none, or harm; "" where the whole interval is a gain."""
+    return " The interval reaches zero or below, so it may not help." if effect.low <= 0 else ""
 
 
 def _changed_step(option: Option, account: Account, step: StepFacts) -> StepFacts:

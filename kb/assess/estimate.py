@@ -43,8 +43,8 @@ WEIGHT_THAT_COUNTS = 0.25
 """Effective precedents below which the record alone gives no number."""
 MOST_RUNS = 500
 """Runs that are asked at most, the most similar ones."""
-NAMED = 12
-"""Runs named as carrying a figure."""
+NAMED = 60
+"""Runs named as carrying a figure, the heaviest ones."""
 DISAGREE_FROM = 0.18
 """Scatter of the main share between like runs from which it is said (0..1); judgement."""
 NOT_MODELLED = 0.12

@@ -30,7 +30,6 @@ CLOSEST = 12
 """How many of the heaviest runs are asked."""
 WORTH_TELLING = 0.05
 """Share of another product of the same fate from which the two are told apart; judgement."""
-NAMED = 6
 
 
 def word_wanted_product(view: RecordView, similarity: NDArray[np.float64], fate: Fate | None) -> str:
@@ -60,7 +59,7 @@ def word_wanted_product(view: RecordView, similarity: NDArray[np.float64], fate:
     variance = min(max(spread / (float(weight.sum()) + SCATTER_RUNS), 1e-5), 0.95 * room)
     interval = beta_interval(inside, max(room / variance - 1, 0.05))
     codes = [view.table.codes[row] for row, _ in found]
-    named = ", ".join(codes[:NAMED]) + (" …" if len(codes) > NAMED else "")
+    named = ", ".join(codes)
     rest = "the rest of it had lost another group as well" if fate is Fate.GROUP_LOSS else "the rest is another product"
     return (
         f"Not all of the {fate} is the product drawn: that alone {100 * interval.mean:.0f} % "

@@ -47,7 +47,7 @@ def render_assessment(assessment: Assessment, *, verbose: bool = False) -> str:
     if assessment.advice:
         lines += ["", heading("Worth trying")]
         for advice in assessment.advice:
-            lines += _advice(advice)
+            lines += _advice(advice, verbose=verbose)
     lines += ["", *wrapped(NO_PERMISSION)]
     return "\n".join(lines)
 
@@ -163,7 +163,9 @@ def _grounds(estimate: Estimate) -> list[str]:
     """Return what each figure rests on: the runs with their weights, and published rates with their sources."""
     lines: list[str] = []
     if estimate.runs:
-        lines += wrapped("Shares rest on " + ", ".join(f"{run} ({weight:.2f})" for run, weight in estimate.runs), 2)
+        said = "Shares rest on " + ", ".join(f"{run} ({weight:.2f})" for run, weight in estimate.runs)
+        lighter = estimate.effective_precedents - sum(weight for _, weight in estimate.runs)
+        lines += wrapped(said + (f", and lighter runs worth {lighter:.2f} together" if lighter >= 0.05 else ""), 2)
     if estimate.yield_runs:
         lines += wrapped("Yield rests on " + ", ".join(estimate.yield_runs), 2)
     if estimate.half_life_h is not None:
@@ -190,8 +192,11 @@ def _precedents(precedents: tuple[Precedent, ...], *, verbose: bool) -> list[str
     return lines
 
 
-def _advice(advice: Advice) -> list[str]:
+def _advice(advice: Advice, *, verbose: bool) -> list[str]:
     effect = advice.effect
     points = f"{100 * effect.mean:+.0f} points ({100 * effect.low:.0f} to {100 * effect.high:.0f})"
     basis = counted(advice.pairs, "pair") if advice.basis is Basis.RECORD else "published trend"
-    return wrapped(f"{advice.change}: {points}, {basis}", 4, first="  - ") + wrapped(advice.why, 4)
+    lines = wrapped(f"{advice.change}: {points}, {basis}", 4, first="  - ") + wrapped(advice.why, 4)
+    if verbose and advice.runs:
+        lines += wrapped("All pairs: " + ", ".join(f"{a} and {b}" for a, b in advice.runs), 4)
+    return lines

@@ -1,5 +1,7 @@
 """One change to a step: what published rates say it does to the share of a fate, and to the pace.
 
+Where a nucleophile was brought, what the solvent takes is not what was wanted, though it is substitution too.
+
 It owns the comparison of a step with others. All are sampled together, so that uncertainty which they share (the
 class of the centre, the strength of the base) cancels and only what differs is left in the interval.
 """
@@ -58,7 +60,7 @@ def contrasts(before: StepFacts, after: Sequence[StepFacts], fate: Fate) -> list
         if side is None or of_side is None or first is None:
             found.append(None)
         else:
-            found.append(_contrast(start[0], first, side[0], of_side, fate))
+            found.append(_contrast(start[0], first, side[0], of_side, fate, before.medium.nucleophile is not None))
     return found
 
 
@@ -77,10 +79,13 @@ def _contrast(
     new_drafts: Sequence[Draft],
     new_rates: NDArray[np.float64],
     fate: Fate,
+    has_nucleophile: bool,
 ) -> Contrast:
     whole, new_whole = rates.sum(axis=0), new_rates.sum(axis=0)
-    share = rates[[i for i, d in enumerate(drafts) if d.fate is fate]].sum(axis=0) / whole
-    new_share = new_rates[[i for i, d in enumerate(new_drafts) if d.fate is fate]].sum(axis=0) / new_whole
+    share = rates[[i for i, d in enumerate(drafts) if _is_wanted(d, fate, has_nucleophile)]].sum(axis=0) / whole
+    new_share = (
+        new_rates[[i for i, d in enumerate(new_drafts) if _is_wanted(d, fate, has_nucleophile)]].sum(axis=0) / new_whole
+    )
     change = new_share - share
     mean = float(change.mean())
     low, high = np.quantile(change, [(1 - LEVEL) / 2, (1 + LEVEL) / 2])
@@ -92,6 +97,12 @@ def _contrast(
         because=tuple(dict.fromkeys(t.because for t in moved)),
         sources=tuple(dict.fromkeys(t.source for t in moved if t.source)),
     )
+
+
+def _is_wanted(draft: Draft, fate: Fate, has_nucleophile: bool) -> bool:
+    """Return whether a channel gives what is wanted; the solvent's product is not, where a nucleophile was brought."""
+    by_solvent = draft.kind == "solvent" or (draft.is_capture and "capture by the solvent" in draft.name)
+    return draft.fate is fate and not (has_nucleophile and fate is Fate.SUBSTITUTION and by_solvent)
 
 
 def _that_count(drafts: Sequence[Draft], shares: NDArray[np.float64]) -> dict[tuple[str, int], Draft]:

@@ -112,6 +112,7 @@ class Advice:
         pairs: matched pairs behind it; 0 for a published trend.
         basis: record or published.
         why: plain words, with the source of a published trend.
+        runs: codes of every pair, (where the plan stands, after the change), best matched first; empty for a trend.
     """
 
     change: str
@@ -119,6 +120,7 @@ class Advice:
     pairs: int
     basis: Basis
     why: str
+    runs: tuple[tuple[str, str], ...] = ()
 
     def as_dict(self) -> dict[str, Any]:
         """Return the contract's JSON object."""
@@ -128,6 +130,7 @@ class Advice:
             "pairs": self.pairs,
             "basis": str(self.basis),
             "why": self.why,
+            "runs": [list(pair) for pair in self.runs],
         }
 
 

@@ -77,3 +77,21 @@ def test_where_either_side_has_no_number_there_is_no_contrast() -> None:
     bridgehead = dataclasses.replace(step(), centre=Centre(carbon_class=CarbonClass.BRIDGEHEAD))
     assert contrasts(bridgehead, [step()], Fate.SUBSTITUTION) == [None]
     assert contrasts(step(), [bridgehead], Fate.SUBSTITUTION) == [None]
+
+
+def test_what_the_solvent_takes_is_no_gain_where_a_nucleophile_was_brought() -> None:
+    # Common practice: water for an aprotic solvent hydrolyses a tertiary chloride rather than giving its azide.
+    tertiary = Centre(label="CC(C)(C)Cl", carbon_class=CarbonClass.TERTIARY, neighbours=(METHYL, METHYL, METHYL))
+    dry = StepFacts(
+        centre=tertiary,
+        leaving_group=LeavingGroup.CHLORIDE,
+        medium=Medium(nucleophile="azide", solvent_kinds=DIPOLAR, temperature_c=25.0),
+    )
+    wet = dataclasses.replace(
+        dry, medium=dataclasses.replace(dry.medium, solvent_kinds=frozenset({"protic", "water"}))
+    )
+    before, after = (compete(s).share_of(Fate.SUBSTITUTION) for s in (dry, wet))
+    found = contrasts(dry, [wet], Fate.SUBSTITUTION)[0]
+    assert before is not None and after is not None and found is not None
+    assert after.mean - before.mean > 0.3
+    assert found.effect.mean < after.mean - before.mean - 0.2
