@@ -19,6 +19,7 @@ from kb.audit.sayings import (
     say_trial,
 )
 from kb.cli.render import bar, heading, severity_word, table, wrapped
+from kb.route.worth import figure_words
 from kb.vocabulary import Severity
 
 if TYPE_CHECKING:
@@ -159,19 +160,21 @@ def render_route(ledger: Ledger, lead: str, *, verbose: bool = False) -> str:
     for number, e in enumerate(ledger.entries, 1):
         y = e.step.yield_pct
         lines += wrapped(f"{e.step.name}: {_percent(y.pct)} ({y.basis}: {y.note})", 5, first=f"{number:>3}  ")
-        lines += wrapped(f"{e.input_mmol:.3g} mmol in, {e.product_mmol:.3g} mmol out; {e.so_far_pct:.3g} % so far", 5)
+        flow = f"{figure_words(e.input_mmol)} mmol in, {figure_words(e.product_mmol)} mmol out"
+        lines += wrapped(f"{flow}; {e.so_far_pct:.3g} % so far", 5)
         if e.step.forgiven:
             lines += wrapped(f"a poor yield does not matter: {', '.join(e.step.forgiven)}", 5)
         if e.improvement is not None and (verbose or not e.step.forgiven):
             i = e.improvement
-            lines += wrapped(f"at {i.at_pct:.3g} % the route would save {i.saves:.3g} {i.unit}", 5)
+            lines += wrapped(f"at {i.at_pct:.3g} % the route would save {figure_words(i.saves)} {i.unit}", 5)
         for severity, title in e.step.findings if verbose else e.step.findings[:2]:
             lines += wrapped(title, 13, first=f"     {severity_word(Severity(severity))} ")
     lines += ["", heading("Material, at the mean yields and between")]
     for need in ledger.needed:
-        grams = f", {need.grams:.3g} g" if need.grams is not None else ""
-        cost = f", {need.cost:,.3g} {ledger.route.money}".rstrip() if need.cost is not None else ""
-        lines += wrapped(f"{need.material}: {need.mmol:.3g} mmol ({need.low:.3g} to {need.high:.3g}){grams}{cost}", 2)
+        grams = f", {figure_words(need.grams)} g" if need.grams is not None else ""
+        cost = f", {figure_words(need.cost)} {ledger.route.money}".rstrip() if need.cost is not None else ""
+        between = f"{figure_words(need.low)} to {figure_words(need.high)}"
+        lines += wrapped(f"{need.material}: {figure_words(need.mmol)} mmol ({between}){grams}{cost}", 2)
     if ledger.counted_pct is not None:
         lines += wrapped(f"Without the steps where yield does not matter: {ledger.counted_pct:.3g} % overall.", 2)
     if ledger.unpriced:

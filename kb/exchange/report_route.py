@@ -10,6 +10,7 @@ from kb.exchange.report_drawings import fragment
 from kb.exchange.report_plots import interval_bars, stair
 from kb.exchange.report_words import interval_words
 from kb.route.entries import Entry, Ledger, Need
+from kb.route.worth import figure_words
 
 
 def route_page(ledger: Ledger, source: str = "") -> Page:
@@ -24,10 +25,10 @@ def route_page(ledger: Ledger, source: str = "") -> Page:
         rows=tuple(
             (
                 n.material,
-                f"{n.mmol:.3g} mmol",
-                f"{n.low:.3g} to {n.high:.3g} mmol",
+                f"{figure_words(n.mmol)} mmol",
+                f"{figure_words(n.low)} to {figure_words(n.high)} mmol",
                 _closed(n),
-                "molar mass not known" if n.grams is None else f"{n.grams:.3g} g",
+                "molar mass not known" if n.grams is None else f"{figure_words(n.grams)} g",
                 "no price" if n.cost is None else f"{_money(n.cost)} {route.money}".strip(),
             )
             for n in ledger.needed
@@ -74,7 +75,7 @@ def route_lead(ledger: Ledger) -> str:
     said += f"{first.material}."
     if ledger.weakest is not None:
         w = ledger.weakest
-        then = f"{w.needed_g:.3g} g" if w.needed_g is not None else f"{w.needed_mmol:.3g} mmol"
+        then = f"{figure_words(w.needed_g)} g" if w.needed_g is not None else f"{figure_words(w.needed_mmol)} mmol"
         saving = f", saving {_money(w.saves)} {w.unit}" if w.unit not in ("g", "mmol") else ""
         said += f" Step “{w.step}” costs most; at {w.at_pct:.3g} % there you would need {then}{saving}."
     if ledger.cost is not None:
@@ -85,16 +86,17 @@ def route_lead(ledger: Ledger) -> str:
 def _target(ledger: Ledger) -> str:
     mass = ledger.route.target_molar_mass
     if mass is not None:
-        return f"{ledger.target_mmol * mass / 1000:.3g} g ({ledger.target_mmol:.3g} mmol)"
-    return f"{ledger.target_mmol:.3g} mmol"
+        return f"{figure_words(ledger.target_mmol * mass / 1000)} g ({figure_words(ledger.target_mmol)} mmol)"
+    return f"{figure_words(ledger.target_mmol)} mmol"
 
 
 def _money(value: float) -> str:
-    return f"{value:,.0f}" if value >= 1000 else f"{value:.3g}"
+    return figure_words(value)
 
 
 def _amount(need: Need) -> str:
-    return f"{need.grams:.3g} g ({need.mmol:.3g} mmol)" if need.grams is not None else f"{need.mmol:.3g} mmol"
+    mmol = f"{figure_words(need.mmol)} mmol"
+    return mmol if need.grams is None else f"{figure_words(need.grams)} g ({mmol})"
 
 
 def _forgiven(ledger: Ledger) -> tuple[Block, ...]:
@@ -109,7 +111,7 @@ def _forgiven(ledger: Ledger) -> tuple[Block, ...]:
 def _closed(need: Need) -> str:
     if need.closed_low is None or need.closed_high is None:
         return "goes in at several places"
-    return f"{need.closed_low:.3g} to {need.closed_high:.3g} mmol"
+    return f"{figure_words(need.closed_low)} to {figure_words(need.closed_high)} mmol"
 
 
 def _unpriced(ledger: Ledger) -> tuple[Block, ...]:
@@ -125,8 +127,8 @@ def _improvements(ledger: Ledger) -> Block:
         if better is None:
             rows.append((e.step.name, f"{e.step.yield_pct.pct.mean:.3g} %", "as good as it gets", "", ""))
             continue
-        needed = f"{better.needed_mmol:.3g} mmol" + (
-            f" ({better.needed_g:.3g} g)" if better.needed_g is not None else ""
+        needed = f"{figure_words(better.needed_mmol)} mmol" + (
+            f" ({figure_words(better.needed_g)} g)" if better.needed_g is not None else ""
         )
         forgiven = " (forgiven)" if e.step.forgiven else ""
         rows.append(
@@ -135,7 +137,7 @@ def _improvements(ledger: Ledger) -> Block:
                 f"{e.step.yield_pct.pct.mean:.3g} %",
                 f"{better.at_pct:.3g} %",
                 needed,
-                f"{better.saves:.3g} {better.unit}",
+                f"{figure_words(better.saves)} {better.unit}",
             )
         )
     return Table(
@@ -155,7 +157,7 @@ def _step(number: int, e: Entry) -> Section:
                 ("Yield", interval_words(step.yield_pct.pct, 1.0)),
                 ("Rests on", f"{step.yield_pct.basis}: {step.yield_pct.note}"),
                 ("Runs", ", ".join(step.yield_pct.runs) or "none"),
-                ("In and out", f"{e.input_mmol:.3g} mmol to {e.product_mmol:.3g} mmol"),
+                ("In and out", f"{figure_words(e.input_mmol)} mmol to {figure_words(e.product_mmol)} mmol"),
                 ("Left so far", f"{e.so_far_pct:.3g} %"),
             )
         )

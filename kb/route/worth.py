@@ -7,6 +7,7 @@ Where nothing else would be left, all materials count. Prices are per mmol, amou
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 
 from kb.route.sequence import Material, Route
@@ -65,3 +66,16 @@ def is_cheap(route: Route, material: Material) -> bool:
 def figure(value: float) -> float:
     """Return a number with five significant figures, so that JSON and pages do not pretend to more."""
     return float(f"{float(value):.5g}")
+
+
+def figure_words(value: float, digits: int = 3) -> str:
+    """Return a number with `digits` significant figures, without an exponent, thousands parted.
+
+    >>> figure_words(7148.2), figure_words(0.16271), figure_words(16.9), figure_words(1e-9)
+    ('7,150', '0.163', '16.9', '0.000000001')
+    """
+    if value == 0:
+        return "0"
+    places = digits - 1 - math.floor(math.log10(abs(value)))
+    text = f"{round(value, places):,.{min(max(places, 0), 12)}f}"
+    return text.rstrip("0").rstrip(".") if "." in text else text
