@@ -1,8 +1,9 @@
 """The desk: the real record book behind `tui.ports`, the only file that meets `kb.book`.
 
-One Book serves one thread at a time, so the desk keeps one per lane (checking, looking, writing) with a
+One Book serves one thread at a time, so the desk keeps one per lane (checking, finding, looking, writing) with a
 lock each: a draft is saved while a search runs, and a check never waits for a page of runs. All of
-`kb.book` is imported on first use, from a worker thread, so that the first paint waits for nothing.
+`kb.book` is imported on first use, from a worker thread, so that the first paint waits for nothing. Long work
+reports to the job that it is done for (`tui.jobs.current_progress`).
 """
 
 from __future__ import annotations
@@ -24,6 +25,7 @@ from kb.record.failure_modes import failure_modes
 from kb.record.plan import Plan
 from kb.record.run import Run
 from kb.vocabulary import Role
+from tui.jobs import current_progress
 from tui.plan_state import PLAN_DRAFT, state_of_plan
 from tui.ports import (
     BookPort,
@@ -38,6 +40,7 @@ from tui.ports import (
 )
 
 if TYPE_CHECKING:
+    from kb.assess.record_view import RecordView
     from kb.book import Book
 
 ROLE_KEYS = {Role.REAGENT: "reagents", Role.BASE: "bases", Role.ACID: "acids", Role.ADDITIVE: "additives"}
@@ -76,7 +79,8 @@ class Desk:
 
             return open_book(place, read_only=read_only)
 
-        self._checking, self._looking, self._writing = Lane(opening), Lane(opening), Lane(opening)
+        self._checking, self._finding = Lane(opening), Lane(opening)
+        self._looking, self._writing = Lane(opening), Lane(opening)
         with self._looking.book() as book:
             self._place = book.path
             self._read_only = book.is_read_only
@@ -142,12 +146,12 @@ class Desk:
 
     def check(self, plan: Plan, *, top: int = 8) -> Assessment:
         """Return everything known about a plan."""
-        with self._checking.book() as book:
+        with self._checking.book() as book, _view_of(book).heeding(current_progress()):
             return book.check(plan, top=top)
 
     def what_if(self, plan: Plan, temperatures_c: Sequence[float]) -> Sequence[tuple[float, Estimate]]:
         """Return the estimate at other temperatures [degC]."""
-        with self._checking.book() as book:
+        with self._checking.book() as book, _view_of(book).heeding(current_progress()):
             return book.what_if(plan, temperatures_c)
 
     # looking
@@ -181,13 +185,13 @@ class Desk:
             page=query.offset // query.limit + 1,
         )
         order = type(criteria.order)(orders[query.sort][query.is_ascending])
-        with self._look() as book:
+        with self._finding.book() as book:
             if query.words and not query.offset:
                 try:
                     return RunPage(total=1, runs=(book.get(query.words),))
                 except RecordNotFound:
                     pass
-            found = book.find(replace(criteria, order=order))
+            found = book.finder().find(replace(criteria, order=order), progress=current_progress())
             return RunPage(total=found.total, runs=tuple(book.get(item.run) for item in found.items))
 
     def find(self, query: FindQuery) -> FindPage:
@@ -201,8 +205,8 @@ class Desk:
 
             words["at_least"] = parse_number(at_least, "similarity", "Write a number such as 0.6.")
         criteria = criteria_from_words(**words)
-        with self._look() as book:
-            found = book.find(criteria)
+        with self._finding.book() as book:
+            found = book.finder().find(criteria, progress=current_progress())
             hits = tuple(
                 FindHit(
                     run=book.get(item.run),
@@ -276,8 +280,16 @@ class Desk:
 
     def close(self) -> None:
         """Let go of the book in every lane."""
-        for lane in (self._checking, self._looking, self._writing):
+        for lane in (self._checking, self._finding, self._looking, self._writing):
             lane.close()
+
+
+def _view_of(book: Book) -> RecordView:
+    """Return what judgement reads of a book; reading it anew takes seconds in a large one, so that is told."""
+    current_progress().advance(0, None, "reading the runs")
+    view = book.view()
+    current_progress().advance(0, None, "")
+    return view
 
 
 def load_chemistry() -> None:
@@ -301,27 +313,29 @@ class DeskOpener:
 
     def open(self, place: str | None) -> BookPort:
         """Open a book; one that cannot be written is opened for reading."""
-        load_chemistry()
+        from tui.far_desk import FarDesk
+
         try:
-            return Desk(place)
+            return FarDesk(place)
         except StoreRefused:
-            return Desk(place, read_only=True)
+            return FarDesk(place, read_only=True)
 
     def create(self, place: str | None) -> BookPort:
         """Make a new book and open it."""
         from kb.book import create_book
+        from tui.far_desk import FarDesk
 
-        load_chemistry()
         default = self.default_place()
-        return Desk(create_book(None if place is None or place == default else str(Path(place).expanduser())))
+        return FarDesk(create_book(None if place is None or place == default else str(Path(place).expanduser())))
 
     def demo(self, progress: Progress) -> BookPort:
         """Build the demo book where it is not there yet, open it, and lay its planned step in the form."""
         from kb.book import build_demo, demo_plan
+        from tui.far_desk import FarDesk
 
         load_chemistry()
         place, _ = build_demo(None, progress)
-        desk = Desk(str(place))
+        desk = FarDesk(str(place))
         if desk.load_draft(PLAN_DRAFT) is None:
             desk.save_draft(PLAN_DRAFT, state_of_plan(demo_plan()))
         return desk

@@ -2,15 +2,20 @@
 
 Pure bookkeeping and one thread-safe progress; the workers themselves are methods of the screens. A thread
 cannot be stopped, only asked, so the newest question waits for the running one and the ones between are
-never asked.
+never asked. Whoever works for a screen finds the progress of its job with `current_progress`, however many calls
+lie between: the port's methods need not hand it down.
 """
 
 from __future__ import annotations
 
 import threading
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from contextvars import ContextVar
 from typing import Generic, TypeVar
+
+from kb.progress import Progress, Silent
 
 Question = TypeVar("Question")
 
@@ -37,6 +42,10 @@ class LatestOnly(Generic[Question]):
         waiting, self._waiting = self._waiting, None
         self._is_running = waiting is not None
         return waiting
+
+    def drop_waiting(self) -> None:
+        """Drop the waiting question; the running one may still answer."""
+        self._waiting = None
 
     def is_current(self, ticket: int) -> bool:
         """Tell whether an answer still matters."""
@@ -76,6 +85,24 @@ class ThreadProgress:
     def cancelled(self) -> bool:
         """Return True once somebody asked to stop."""
         return self._stop.is_set()
+
+
+_progress: ContextVar[Progress] = ContextVar("progress", default=Silent())  # noqa: B039 - it holds nothing
+
+
+def current_progress() -> Progress:
+    """Return the progress of the job that the calling thread works for; a silent one outside of jobs."""
+    return _progress.get()
+
+
+@contextmanager
+def working_for(progress: Progress) -> Iterator[None]:
+    """Let everything that is called inside report to, and be stopped by, this progress."""
+    token = _progress.set(progress)
+    try:
+        yield
+    finally:
+        _progress.reset(token)
 
 
 class EditLog:

@@ -8,7 +8,8 @@ depends on which runs may speak is kept in `memory`, per view. One view serves o
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Callable, Collection, Iterable, Sequence
+from collections.abc import Callable, Collection, Iterable, Iterator, Sequence
+from contextlib import contextmanager
 from dataclasses import dataclass, field
 from functools import cached_property
 from typing import TYPE_CHECKING, Any, Protocol
@@ -18,6 +19,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kb.assess.table import FactTable, build_table, with_profiles
+from kb.errors import Cancelled
 from kb.materials.profile import ConditionProfile
 from kb.record.run import Run
 
@@ -63,6 +65,7 @@ class _Kept:
     mols: dict[str, Any] = field(default_factory=dict)
     truth: dict[object, NDArray[np.int8]] = field(default_factory=dict)
     known: dict[object, Any] = field(default_factory=dict)
+    progress: Progress = field(default_factory=Silent)
 
 
 def build_view(store: Store, motif_search: Callable[[str], Collection[str]] | None = None) -> RecordView:
@@ -127,6 +130,23 @@ class RecordView:
         """Return a place to keep what follows from rows themselves, shared with every view cut from this one."""
         return self._kept.known
 
+    @contextmanager
+    def heeding(self, progress: Progress) -> Iterator[None]:
+        """Let whoever reads this view, or one cut from it, be stopped: a reading then raises `Cancelled`.
+
+        Every judgement reads, again and again; so the rules of judgement need not know that they can be stopped, and
+        what was worked out so far is kept.
+        """
+        before, self._kept.progress = self._kept.progress, progress
+        try:
+            yield
+        finally:
+            self._kept.progress = before
+
+    def _heed(self) -> None:
+        if self._kept.progress.cancelled():
+            raise Cancelled("The check was stopped.", "Check again to go on.")
+
     def until(self, date: dt.date | None) -> RecordView:
         """Return a view of the runs dated up to `date`; runs without a date are left out. None = this view."""
         if date is None:
@@ -171,6 +191,7 @@ class RecordView:
             predicate: the line.
             rows: row numbers.
         """
+        self._heed()
         if name not in self._kept.truth:
             self._kept.truth[name] = np.full(len(self.table.profiles), _UNASKED, dtype=np.int8)
         answers = self._kept.truth[name]
@@ -188,6 +209,7 @@ class RecordView:
 
     def fetch(self, rows: Iterable[int]) -> None:
         """Read the whole runs of some rows in one go, so that `run` need not ask for each."""
+        self._heed()
         wanted = [c for c in (self.table.codes[row] for row in rows) if c not in self._kept.runs]
         many = getattr(self._kept.source, "many", None)
         if many is not None and len(wanted) > 1:
@@ -203,6 +225,7 @@ class RecordView:
 
     def rows_with_motif(self, smarts: str) -> NDArray[np.intp]:
         """Return the rows whose substrate (or another organic partner, with an index) holds the motif, ascending."""
+        self._heed()
         if smarts not in self._motif_rows:
             if self._motif_search is not None:
                 self._motif_rows[smarts] = self._motif_search(smarts)

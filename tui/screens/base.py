@@ -22,7 +22,7 @@ from textual.widgets import Footer, Static
 from textual.worker import Worker, WorkerState
 
 from kb.errors import SidepathError
-from tui.jobs import LatestOnly
+from tui.jobs import LatestOnly, ThreadProgress, working_for
 from tui.ports import BookPort
 from tui.present import safe
 from tui.widgets.place_bar import PlaceBar
@@ -48,6 +48,19 @@ class Answered(Message):
         self.take = take
 
 
+class Progressed(Message):
+    """A job got on; only the newest of these matters."""
+
+    def __init__(self, kind: str, words: str) -> None:
+        super().__init__()
+        self.kind = kind
+        self.words = words
+
+    def can_replace(self, message: Message) -> bool:
+        """Let a newer report take the place of one that was not shown yet."""
+        return isinstance(message, Progressed) and message.kind == self.kind
+
+
 class AskingScreen(Screen[ScreenResult]):
     """A screen that puts questions to the book."""
 
@@ -63,6 +76,7 @@ class AskingScreen(Screen[ScreenResult]):
         super().__init__(**options)
         self._delayed: dict[str, Timer] = {}
         self._boxes: dict[str, LatestOnly[tuple[Callable[[], Any], Callable[[Any], None], Any]]] = {}
+        self._in_work: dict[str, ThreadProgress] = {}
 
     @property
     def book(self) -> BookPort | None:
@@ -87,10 +101,15 @@ class AskingScreen(Screen[ScreenResult]):
         done: Callable[[Value], None],
         failed: Callable[[SidepathError], None] | None = None,
     ) -> None:
-        """Run `work` in a thread and hand its value to `done`, unless a newer question came meanwhile."""
+        """Run `work` in a thread and hand its value to `done`, unless a newer question came meanwhile.
+
+        A job whose answer nobody waits for any more is told to stop, so that the newer one need not wait for it.
+        """
         box = self._boxes.setdefault(kind, LatestOnly())
         if started := box.ask((work, done, failed or self.show_trouble)):
             self._start_job(kind, *started)
+        elif kind in self._in_work:
+            self._in_work[kind].cancel()
 
     def later(self, name: str, delay_s: float, what: Callable[[], None]) -> None:
         """Do something after a pause; asking again under the same name starts the pause anew."""
@@ -111,6 +130,8 @@ class AskingScreen(Screen[ScreenResult]):
         """Drop whatever answer of a kind is still on its way."""
         if kind in self._boxes:
             self._boxes[kind].forget()
+        if kind in self._in_work:
+            self._in_work[kind].cancel()
 
     @property
     def is_asking(self) -> bool:
@@ -120,16 +141,40 @@ class AskingScreen(Screen[ScreenResult]):
     def _start_job(
         self, kind: str, ticket: int, question: tuple[Callable[[], Any], Callable[[Any], None], Any]
     ) -> None:
+        progress = ThreadProgress(partial(self._report, kind))
+        self._in_work[kind] = progress
         self.run_worker(
-            partial(self._work, kind, ticket, question), name=kind, group=kind, thread=True, exit_on_error=False
+            partial(self._work, kind, ticket, question, progress),
+            name=kind,
+            group=kind,
+            thread=True,
+            exit_on_error=False,
         )
         self._show_busy()
 
-    def _work(self, kind: str, ticket: int, question: tuple[Callable[[], Any], Callable[[Any], None], Any]) -> None:
+    def _report(self, kind: str, done: int, total: int | None, note: str) -> None:
+        """In the thread: pass on how far a job is."""
+        self.post_message(Progressed(kind, progress_words(done, total, note)))
+
+    @on(Progressed)
+    def _job_got_on(self, event: Progressed) -> None:
+        event.stop()
+        if event.kind in self._in_work:
+            for bar in self.query(PlaceBar):
+                bar.progress = event.words
+
+    def _work(
+        self,
+        kind: str,
+        ticket: int,
+        question: tuple[Callable[[], Any], Callable[[Any], None], Any],
+        progress: ThreadProgress,
+    ) -> None:
         """In the thread: answer, or say why not. Anything unforeseen is left to the worker's own state."""
         work, done, failed = question
         try:
-            value = work()
+            with working_for(progress):
+                value = work()
         except SidepathError as error:
             self.post_message(Answered(kind, ticket, partial(failed, error)))
         except SystemExit as error:  # would end the event loop, and with it the interface
@@ -147,6 +192,7 @@ class AskingScreen(Screen[ScreenResult]):
             event.take()
 
     def _next_job(self, kind: str) -> None:
+        self._in_work.pop(kind, None)
         if waiting := self._boxes[kind].finish():
             self._start_job(kind, *waiting)
         self._show_busy()
@@ -163,6 +209,8 @@ class AskingScreen(Screen[ScreenResult]):
     def _show_busy(self) -> None:
         for bar in self.query(PlaceBar):
             bar.is_busy = self.is_asking
+            if not self._in_work:
+                bar.progress = ""
 
     def show_trouble(self, error: SidepathError | None) -> None:
         """Show what went wrong at the foot of the screen; None takes it away."""
@@ -170,6 +218,19 @@ class AskingScreen(Screen[ScreenResult]):
             line.set_class(error is not None, "-shown")
             if error is not None:
                 line.update(f"✗ {safe(error)}")
+
+    def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
+        """Offer to stop only while something runs."""
+        if action == "stop":
+            return bool(self._in_work)
+        return True
+
+    def action_stop(self) -> None:
+        """Ask whatever runs to stop, and drop what waits behind it."""
+        for box in self._boxes.values():
+            box.drop_waiting()
+        for progress in self._in_work.values():
+            progress.cancel()
 
     def copy_texts(self) -> dict[str, str]:
         """Return what can be copied, by kind ("SMILES", "Markdown", "JSON")."""
@@ -200,10 +261,31 @@ class AskingScreen(Screen[ScreenResult]):
         self.app.copy_text(kind, texts[kind])
 
 
+def progress_words(done: int, total: int | None, note: str) -> str:
+    """Return how far a job is.
+
+    >>> progress_words(4500, 100000, "runs read")
+    '4,500 of 100,000 runs read'
+    """
+    count = f"{done:,}" + (f" of {total:,}" if total else "") if done or total else ""
+    return " ".join(filter(None, (count, note)))
+
+
 class PlaceScreen(AskingScreen[None]):
     """One of the places of the navigation."""
 
     PLACE: ClassVar[str] = ""
+    BINDINGS: ClassVar[list[BindingType]] = [
+        Binding(
+            "escape",
+            "stop",
+            "Stop",
+            show=False,
+            key_display="Esc",
+            id="stop",
+            tooltip="Stop the search or check that is running",
+        ),
+    ]
 
     def compose(self) -> ComposeResult:
         """Lay out the bar, the place itself, the trouble line and the keys."""
