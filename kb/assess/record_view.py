@@ -21,6 +21,7 @@ from numpy.typing import NDArray
 from kb.assess.table import FactTable, build_table, with_profiles
 from kb.errors import Cancelled
 from kb.materials.profile import ConditionProfile
+from kb.progress import Progress, Silent
 from kb.record.run import Run
 
 if TYPE_CHECKING:
