@@ -36,8 +36,8 @@ ALIKE_REAGENTS = 0.45
 LEAST_EFFECT = 0.02
 """Smallest gain in the share wanted that is worth a line."""
 LEAST_TREND = 0.03
-LEAST_IF_UNSURE = 0.05
-"""Smallest gain that is worth a line where the interval reaches zero."""
+LEAST_IF_UNSURE, LEAST_OF_ONE_PAIR = 0.03, 0.05
+"""Smallest gain that is worth a line where the interval reaches zero; where a single pair says so."""
 WORST = -0.10
 """Low end of an effect below which it is not advised, unless the gain expected is twice as large."""
 NEAR = 600
@@ -118,7 +118,8 @@ def _is_worth_a_line(advice: Advice) -> bool:
     effect = advice.effect
     if not is_unsure(advice):
         return True
-    return effect.mean >= LEAST_IF_UNSURE and effect.low >= min(WORST, -effect.mean / 2)
+    least = LEAST_OF_ONE_PAIR if advice.pairs == 1 else LEAST_IF_UNSURE
+    return effect.mean >= least and effect.low >= min(WORST, -effect.mean / 2)
 
 
 def _kind(rule_id: str) -> str:
