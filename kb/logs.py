@@ -13,7 +13,6 @@ import sys
 from collections.abc import Iterator
 from contextlib import contextmanager
 from functools import cache
-from logging.handlers import RotatingFileHandler
 from pathlib import Path
 
 FORM = "%(asctime)s %(levelname)s %(name)s: %(message)s"
@@ -45,6 +44,8 @@ def log_to_stderr(level: int = logging.INFO) -> Iterator[None]:
 @contextmanager
 def log_to_file(path: Path, level: int = logging.INFO) -> Iterator[None]:
     """Send log lines to a file while the context lasts; for the terminal interface. Two files of 1 MB are kept."""
+    from logging.handlers import RotatingFileHandler  # brings sockets along, which the command line has no use for
+
     path.parent.mkdir(parents=True, exist_ok=True)
     with _handling(RotatingFileHandler(path, maxBytes=LARGEST_FILE_BYTES, backupCount=1, encoding="utf-8"), level):
         yield

@@ -13,6 +13,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from kb.assess.distinct import distinct
 from kb.assess.record_view import RecordView
 from kb.assess.table import code_of
 from kb.chem.facts import Reading
@@ -86,7 +87,7 @@ def words_of_rows(view: RecordView, kind: str, rows: NDArray[np.intp]) -> list[s
     """Return the word of each of some rows, worked out once per distinct profile."""
     word = word_of(kind)
     codes = view.table.profile[rows]
-    by_code = {int(code): word(view.profile_of_code(int(code))) for code in np.unique(codes)}
+    by_code = {int(code): word(view.profile_of_code(int(code))) for code in distinct(codes)}
     return [by_code[int(code)] for code in codes]
 
 
@@ -123,7 +124,7 @@ def leaving_group_options(plan: Plan, reading: Reading, view: RecordView) -> lis
     centre = reading.centre
     if centre is None or centre.leaving_group not in _SWAPPED:
         return []
-    used = set(np.unique(view.table.words["leaving_group"]).tolist())
+    used = set(distinct(view.table.words["leaving_group"]).tolist())
     options = []
     for group in _SWAPPED:
         if group is centre.leaving_group or code_of("leaving_group", group) not in used:

@@ -15,6 +15,7 @@ from collections.abc import Iterable, Sequence
 import numpy as np
 from numpy.typing import NDArray
 
+from kb.assess.distinct import distinct
 from kb.assess.estimate import loss_chance
 from kb.assess.evidence_motif import FindMotif, motif_came_through
 from kb.assess.forcing import harsher_by_k, say_of
@@ -129,7 +130,7 @@ def _chance(lost: float, survived: float) -> Interval:
 
 def _nearest(rule: Rule, plan: FactTable, view: RecordView) -> list[int]:
     """Return the runs that can bear witness, those nearest in conditions first, at most MOST_WITNESSES."""
-    holding = np.unique(np.concatenate([view.rows_with_motif(smarts) for smarts in rule.motifs])).astype(np.intp)
+    holding = distinct(np.concatenate([view.rows_with_motif(smarts) for smarts in rule.motifs])).astype(np.intp)
     rows = holding[view.told(("rule", rule.rule_id), rule.applies, holding) == 1]
     nearness = -np.abs(harsher_by_k(plan, view.table, rows))
     if rule.side == "bystander":

@@ -16,6 +16,7 @@ from functools import lru_cache
 import numpy as np
 from numpy.typing import NDArray
 
+from kb.assess.distinct import distinct, distinct_with_places
 from kb.assess.table import WORDS, FactTable, flag_words
 from kb.materials.nucleophile import DONORS
 from kb.physorg.constants import leaving_scale
@@ -138,7 +139,7 @@ def _rest(rest: NDArray[np.float64] | None, n: int) -> NDArray[np.float64]:
 
 
 def _reagents(some: FactTable, others: FactTable) -> NDArray[np.float64]:
-    codes, place = np.unique(some.flask, return_inverse=True)
+    codes, place = distinct_with_places(some.flask)
     if not len(others) or not len(codes):
         return np.zeros((len(some), len(others)))
     rows = np.stack([others.flasks.likeness_to(some.flasks.sets[int(code)]) for code in codes])
@@ -147,7 +148,7 @@ def _reagents(some: FactTable, others: FactTable) -> NDArray[np.float64]:
 
 def _centre(some: FactTable, others: FactTable) -> NDArray[np.float64]:
     carbon = _CLASS_TABLE[some.words["carbon_class"]][:, others.words["carbon_class"]]
-    mine, theirs = np.unique(some.flags), np.flatnonzero(np.bincount(others.flags, minlength=1))
+    mine, theirs = distinct(some.flags), np.flatnonzero(np.bincount(others.flags, minlength=1))
     lookup = np.zeros((int(mine.max(initial=0)) + 1, int(theirs.max(initial=0)) + 1))
     for one in mine:
         for other in theirs:
@@ -172,7 +173,7 @@ def _leaving(some: FactTable, others: FactTable) -> NDArray[np.float64]:
 
 def _nucleophile(some: FactTable, others: FactTable) -> NDArray[np.float64]:
     mine, theirs = (*some.nucleophile_words, None), (*others.nucleophile_words, None)
-    codes, place = np.unique(some.nucleophile, return_inverse=True)
+    codes, place = distinct_with_places(some.nucleophile)
     rows = np.array([[nucleophile_similarity(mine[code], word) for word in theirs] for code in codes])
     return rows.reshape(len(codes), len(theirs))[place][:, others.nucleophile]
 

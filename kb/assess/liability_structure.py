@@ -13,7 +13,6 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
 from rdkit import Chem
-from rdkit.Chem import rdMolDescriptors
 
 from kb.errors import QueryError
 from kb.materials.profile import ConditionProfile
@@ -77,6 +76,8 @@ def bridging_sum(mol: Chem.Mol, atom: int) -> int | None:
 
     Two rings that share a bond only are fused, and the atoms they share are no bridgeheads.
     """
+    from rdkit.Chem import rdMolDescriptors  # loaded where a rule asks
+
     heads: list[int] = []
     rdMolDescriptors.CalcNumBridgeheadAtoms(mol, heads)  # type: ignore[arg-type]
     if atom not in heads:

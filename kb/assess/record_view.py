@@ -18,6 +18,7 @@ from uuid import UUID
 import numpy as np
 from numpy.typing import NDArray
 
+from kb.assess.distinct import distinct
 from kb.assess.table import FactTable, build_table, with_profiles
 from kb.errors import Cancelled
 from kb.materials.profile import ConditionProfile
@@ -197,7 +198,7 @@ class RecordView:
             self._kept.truth[name] = np.full(len(self.table.profiles), _UNASKED, dtype=np.int8)
         answers = self._kept.truth[name]
         codes = self.table.profile[np.asarray(rows, dtype=np.intp)]
-        for code in np.unique(codes[answers[codes] == _UNASKED]):
+        for code in distinct(codes[answers[codes] == _UNASKED]):
             answers[code] = _CANNOT_TELL[predicate(self.profile_of_code(int(code)))]
         return answers[codes]
 

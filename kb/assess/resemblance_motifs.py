@@ -13,6 +13,7 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
+from kb.assess.distinct import distinct
 from kb.assess.evidence_motif import finder_of
 from kb.assess.forcing import is_at_least_as_forcing
 from kb.assess.motif import generalise, lost_atoms_of, surrounding, write_motif
@@ -101,5 +102,5 @@ def _is_held(view: RecordView, row: int, smarts: str) -> bool:
     other_fate = table.words["fate"][rows] != WORDS["fate"].index("group-loss")
     through = rows[worked & other_fate & ~view.has_failure[rows]]
     failed = view.profile(row)
-    codes = np.unique(table.profile[through])
+    codes = distinct(table.profile[through])
     return any(is_at_least_as_forcing(view.profile_of_code(int(code)), failed) for code in codes)

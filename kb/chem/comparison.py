@@ -12,7 +12,6 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 from rdkit import Chem
-from rdkit.Chem import rdFMCS
 
 from kb.chem.centre import LeavingSite, find_leaving_sites
 from kb.chem.molgraph import Molgraph
@@ -152,6 +151,8 @@ def _by_common_part(graphs: list[Molgraph], product: Molgraph) -> Comparison:
     if not candidates or len(product) > LARGEST or len(product) < 5:
         return Comparison(None, None, f"{nothing}.")
     part, graph = max(candidates, key=lambda c: len(c[1]))
+    from rdkit.Chem import rdFMCS  # slow to load, seldom needed
+
     found = rdFMCS.FindMCS(
         [graph.mol, product.mol],
         timeout=TIME_LIMIT_S,

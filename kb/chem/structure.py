@@ -23,11 +23,14 @@ import hashlib
 import re
 from dataclasses import dataclass, field
 from functools import lru_cache
+from typing import TYPE_CHECKING
 
 from rdkit import Chem, rdBase
-from rdkit.Chem.MolStandardize import rdMolStandardize
 
 from kb.errors import StructureError
+
+if TYPE_CHECKING:
+    from rdkit.Chem.MolStandardize.rdMolStandardize import Normalizer
 
 MAX_TEXT_LENGTH = 20_000
 """Longest text that is read at all; far past any real scheme, and short enough to stay quick."""
@@ -267,7 +270,9 @@ def identity_key(text: str) -> str:
 
 
 @lru_cache(maxsize=1)
-def _normaliser() -> rdMolStandardize.Normalizer:
+def _normaliser() -> Normalizer:
+    from rdkit.Chem.MolStandardize import rdMolStandardize  # loaded by those who standardise
+
     return rdMolStandardize.Normalizer()
 
 
@@ -304,6 +309,8 @@ def _salts_as_ions(mol: Chem.Mol) -> Chem.Mol:
 
 def _flat_smiles(mol: Chem.Mol) -> str:
     """Return the SMILES behind `flat_key`: organic parts, uncharged, no stereo, no isotopes."""
+    from rdkit.Chem.MolStandardize import rdMolStandardize
+
     parts = set()
     pieces = Chem.GetMolFrags(mol, asMols=True, sanitizeFrags=False)
     organic = [p for p in pieces if any(a.GetAtomicNum() == 6 for a in p.GetAtoms())] or list(pieces)

@@ -9,6 +9,7 @@ refusals. A test compares these options with those that the parser knows.
 from __future__ import annotations
 
 import re
+import sys
 from collections.abc import Callable, Sequence
 from typing import Any
 
@@ -57,6 +58,11 @@ def run_quickly(front: Sequence[str], rest: Sequence[str]) -> int | None:
         return answer_check(session, **asked)
     except KeyboardInterrupt:
         raise Cancelled("Stopped.", "What was finished before is kept.") from None
+
+
+def has_answered() -> bool:
+    """Return whether a check was answered in this process without loading the store, which may have more to close."""
+    return "kb.cli.checking" in sys.modules and "sqlalchemy" not in sys.modules
 
 
 def _global_options(front: Sequence[str]) -> dict[str, Any] | None:

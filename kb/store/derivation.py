@@ -10,6 +10,7 @@ import contextlib
 import dataclasses
 import json
 import re
+import sys
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from functools import cache, lru_cache
@@ -34,6 +35,7 @@ RECIPE = "facts/4"
 MORGAN_RADIUS = 2
 """Bonds around the centre that its environment fingerprint reaches."""
 
+_PROFILE_FIELDS = frozenset(field.name for field in dataclasses.fields(ConditionProfile))
 _NO_RUN = UUID(int=0)
 _LONE_CATION = re.compile(r"\[[A-Z][a-z]?\+\d?\]")
 
@@ -75,9 +77,21 @@ def derive(run: Run) -> DerivedFacts:
 @cache
 def current_recipe() -> str:
     """Return the recipe's name with those of the screens and of the RDKit that carries it out; loads no RDKit."""
+    return f"{RECIPE} {BLOBS_RECIPE} rdkit/{_rdkit_version()}"
+
+
+def _rdkit_version() -> str:
+    """Return the version as the package states it: "2026.9.1".
+
+    Where RDKit is loaded already it is taken from there ("2026.09.1"), quicker than from the package's data.
+    """
+    loaded = sys.modules.get("rdkit.rdBase")
+    numbers = str(getattr(loaded, "rdkitVersion", "")).split(".")
+    if all(number.isdecimal() for number in numbers):
+        return ".".join(str(int(number)) for number in numbers)
     from importlib.metadata import version
 
-    return f"{RECIPE} {BLOBS_RECIPE} rdkit/{version('rdkit')}"
+    return version("rdkit")
 
 
 def dissect(run: Run) -> list[tuple[str, int, str]]:
@@ -118,9 +132,9 @@ def profile_to_json(profile: ConditionProfile) -> str:
 
 def profile_from_json(text: str) -> ConditionProfile:
     """Read back what `profile_to_json` wrote; unknown keys of a later program are ignored."""
-    known = {f.name for f in dataclasses.fields(ConditionProfile)}
     given: dict[str, Any] = json.loads(text)
-    values: dict[str, Any] = {k: frozenset(v) if isinstance(v, list) else v for k, v in given.items() if k in known}
+    known = {k: v for k, v in given.items() if k in _PROFILE_FIELDS}
+    values: dict[str, Any] = {k: frozenset(v) if isinstance(v, list) else v for k, v in known.items()}
     return ConditionProfile(**values)
 
 

@@ -165,7 +165,7 @@ def test_the_short_way_loads_neither_sqlalchemy_nor_the_parser(book: Path) -> No
         "import sys\n"
         "from kb.cli import entry\n"
         "try:\n"
-        "    entry.main()\n"
+        "    entry.main(sys.argv[1:])\n"
         "finally:\n"
         "    print(sorted({'sqlalchemy', 'typer', 'pydantic', 'rapidfuzz'} & set(sys.modules)), file=sys.stderr)\n"
     )

@@ -6,6 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 from rdkit import Chem
+from rdkit.Chem import rdDepictor
 
 from kb.chem.structure import (
     canonical_smiles,
@@ -118,7 +119,7 @@ def test_any_text_gives_a_structure_or_a_structure_error(text: str) -> None:
 
 def test_a_molfile_is_read_with_its_wedges_and_without_its_coordinates() -> None:
     mol = Chem.MolFromSmiles("C[C@H](Br)CC")
-    Chem.rdDepictor.Compute2DCoords(mol)
+    rdDepictor.Compute2DCoords(mol)
     for block in (Chem.MolToMolBlock(mol), Chem.MolToV3KMolBlock(mol)):
         assert standardise(block).identity_key == identity_key("C[C@H](Br)CC")
 
