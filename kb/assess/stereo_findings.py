@@ -1,8 +1,10 @@
 """What becomes of a drawn stereocentre at the reacting carbon, as a finding.
 
-It owns the words and severities; the outcome itself is `kb.physorg.stereo`. Inversion is what a chemist expects of a
-displacement and is a note; a centre that is likely to lose its configuration through a cation or an ion pair is a
-caution. Where a liability rule has already said that the centre racemises, only a note is added.
+It owns the words and severities; the outcome itself is `kb.physorg.stereo`, and how the product was drawn is read in
+`kb.chem`. Inversion is what a chemist expects of a displacement and is a note; a centre that is likely to lose its
+configuration through a cation or an ion pair is a caution. Where a liability rule has already said that the centre
+racemises, only a note is added. A product that is drawn as no displacement gives it is serious, unless a neighbouring
+group that takes part, or a chlorosulfite, could give retention.
 """
 
 from __future__ import annotations
@@ -27,6 +29,16 @@ _TITLES = {
     "unsettled": "Configuration at the drawn centre cannot be told",
 }
 _KEPT = frozenset({"inversion", "mostly inversion"})
+_DRAWN = {
+    "retention": (
+        "The product is drawn with retention",
+        "A displacement comes from the back and turns the centre over: the product as drawn is not what it gives.",
+    ),
+    "impossible": (
+        "As drawn, the two groups cannot meet",
+        "The attacking atom and the leaving group stand on one face of the ring, so that nothing can come from behind.",
+    ),
+}
 
 
 def find_stereo_findings(
@@ -39,6 +51,45 @@ def find_stereo_findings(
         published: what published chemistry expects of it.
         rules_fired: ids of the liabilities that fired.
     """
+    return (*_as_drawn(account, published, rules_fired), *_as_expected(account, published, rules_fired))
+
+
+def _as_drawn(account: Account, published: PublishedEstimate, rules_fired: Collection[str]) -> tuple[Finding, ...]:
+    """Return what is wrong with the configuration of the product as it was drawn."""
+    word, centre = account.reading.stereo, account.reading.centre
+    if word not in ("retention", "impossible") or centre is None:
+        return ()
+    has_other_way = any(i.startswith("ngp-") or i == "thionyl-chloride-stereochemistry" for i in rules_fired)
+    if word == "impossible":
+        severity = Severity.SERIOUS
+    elif has_other_way:
+        severity = Severity.NOTE
+    else:
+        inverts = published.stereo is not None and published.stereo.word in _KEPT
+        severity = Severity.SERIOUS if inverts else Severity.CAUTION
+    title, why = _DRAWN[word]
+    return (
+        Finding(
+            rule_id=f"stereo:drawn-{word}",
+            kind=FindingKind.LIABILITY,
+            severity=severity,
+            title=title,
+            why=why + (" Here a neighbouring group or the reagent may turn it twice." if has_other_way else ""),
+            component=centre.component,
+            atoms=(centre.atom,),
+            do_instead=(
+                "look at the drawing: the product of one displacement is the other isomer",
+                "for retention invert twice, for instance by way of another halide or a Mitsunobu reaction",
+            )
+            if word == "retention"
+            else ("start from the trans isomer, or invert one of the two centres first",),
+            source="inversion in displacement: E. D. Hughes, C. K. Ingold and co-workers (common practice)",
+        ),
+    )
+
+
+def _as_expected(account: Account, published: PublishedEstimate, rules_fired: Collection[str]) -> tuple[Finding, ...]:
+    """Return what published chemistry expects of the configuration."""
     stereo, centre = published.stereo, account.reading.centre
     if stereo is None or centre is None or account.reading.fate not in (None, Fate.SUBSTITUTION):
         return ()

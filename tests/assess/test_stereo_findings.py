@@ -62,3 +62,34 @@ def test_inversion_that_cannot_be_relied_on_is_a_caution() -> None:
     (finding,) = stereo("C[C@H](Br)c1ccc(OC)cc1", **words)
     assert finding.title == "The drawn centre mostly inverts"
     assert finding.severity is Severity.CAUTION
+
+
+AZIDE = {"solvents": "DMF", "temperature": "60 °C"}
+
+
+def test_a_product_drawn_with_retention_is_not_what_a_displacement_gives() -> None:
+    drawn, expected = stereo("C[C@@H](OS(C)(=O)=O)CC.[N-]=[N+]=[N-]>>C[C@@H](N=[N+]=[N-])CC", **AZIDE)
+    assert drawn.rule_id == "stereo:drawn-retention"
+    assert drawn.severity is Severity.SERIOUS
+    assert drawn.source and drawn.atoms == (1,)
+    assert expected.title == "The drawn centre inverts"
+
+
+def test_a_product_drawn_with_inversion_is_what_it_gives() -> None:
+    (only,) = stereo("C[C@@H](OS(C)(=O)=O)CC.[N-]=[N+]=[N-]>>C[C@H](N=[N+]=[N-])CC", **AZIDE)
+    assert only.severity is Severity.NOTE
+
+
+@pytest.mark.parametrize("rule", ["ngp-beta-acyloxy", "thionyl-chloride-stereochemistry"])
+def test_retention_is_only_noted_where_something_may_turn_the_centre_twice(rule: str) -> None:
+    scheme = "C[C@@H](OS(C)(=O)=O)CC.[N-]=[N+]=[N-]>>C[C@@H](N=[N+]=[N-])CC"
+    drawn = next(f for f in stereo(scheme, frozenset({rule}), **AZIDE) if f.rule_id == "stereo:drawn-retention")
+    assert drawn.severity is Severity.NOTE
+    assert "turn it twice" in drawn.why
+
+
+def test_a_cis_halohydrin_drawn_to_close_is_serious() -> None:
+    scheme = "O[C@@H]1CCCC[C@@H]1Br>>C1CC[C@@H]2O[C@@H]2C1"
+    found = stereo(scheme, bases="NaOH", solvents="water", temperature="25 °C")
+    drawn = next(f for f in found if f.rule_id == "stereo:drawn-impossible")
+    assert drawn.severity is Severity.SERIOUS
