@@ -13,6 +13,7 @@ On the wire: a header (what, number, length) and a pickle. Both ends are this pr
 
 from __future__ import annotations
 
+import contextlib
 import logging
 import os
 import pickle
@@ -22,6 +23,7 @@ import subprocess
 import sys
 import threading
 import time
+from pathlib import Path
 from typing import IO, Any
 
 from kb.errors import Cancelled, SidepathError
@@ -82,7 +84,7 @@ class _Process:
     def __init__(self, place: str | None) -> None:
         if not sys.executable:
             raise NoBackRoom("no interpreter to start")
-        paths = [path or os.getcwd() for path in sys.path]
+        paths = [path or str(Path.cwd()) for path in sys.path]
         environment = {**os.environ, "PYTHONPATH": os.pathsep.join(paths), "PYTHONSAFEPATH": "1"}
         try:
             self._process = subprocess.Popen(
@@ -147,10 +149,8 @@ class _Process:
         self.is_alive = False
         for box in [*self._waiting.values()]:
             box.put((GONE, b""))
-        try:
+        with contextlib.suppress(OSError):
             self._out.close()
-        except OSError:
-            pass
         threading.Thread(target=self._bury, name="back room ends", daemon=True).start()
 
     def _bury(self) -> None:

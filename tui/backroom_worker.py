@@ -105,7 +105,7 @@ class Room:
                 self._answer(VALUE, job, value)
             except SidepathError as error:
                 self._answer(ERROR, job, error)
-            except BaseException:  # whatever it is, the lane must live and the screens must hear of it
+            except BaseException:  # noqa: BLE001 - whatever it is, the lane must live and the screens must hear of it
                 self._answer(FAULT, job, traceback.format_exc())
             self._jobs.pop(job.number, None)
 
@@ -121,7 +121,7 @@ class Room:
     def _answer(self, what: int, job: _Job, value: Any) -> None:
         try:
             body = packed(value)
-        except Exception as error:
+        except Exception as error:  # noqa: BLE001 - pickling calls whatever the value brings along
             what, body = FAULT, packed(f"{job.method} gave what cannot be sent: {error!r}")
         self.tell(what, job.number, body)
 
