@@ -1,7 +1,7 @@
 """Resemblance: where a plan looks like a recorded failure, and how often that kind of run failed.
 
 It owns two likenesses. Failures *at the centre* (an alkene instead of the ether, a shift, nothing at all) resemble a
-plan with the same kind of centre, leaving group and nucleophile. Failures *elsewhere* (a group lost or attacked)
+plan with the same aim and the same kind of centre, leaving group and nucleophile. Failures *elsewhere* (a group lost or attacked)
 resemble a plan that holds the failure's motif (`resemblance_motifs.py`). Both only under conditions at least as
 forcing, or, for runs in which nothing happened, no more forcing. Failures of one kind are told once, with the runs
 that came through beside them. A run whose chemist said that it failed but named no mode counts as a mode of its own.
@@ -70,7 +70,7 @@ def find_resemblances(
     """
     if not len(view.table):
         return ()
-    found = _at_the_centre(view, parts, similarity, profile, centre)
+    found = _at_the_centre(view, plan, parts, similarity, profile, centre)
     found += _elsewhere(view, plan, similarity, profile, fragments, skip_motifs, products)
     return tuple(sorted(found, key=lambda f: (-f.severity.rank, -_mean(f))))
 
@@ -87,6 +87,7 @@ def _severity(chance: float, lost: int) -> Severity:
 
 def _at_the_centre(
     view: RecordView,
+    plan: FactTable,
     parts: dict[str, NDArray[np.float64]],
     similarity: NDArray[np.float64],
     profile: ConditionProfile,
@@ -94,7 +95,7 @@ def _at_the_centre(
 ) -> list[Finding]:
     if centre is None:
         return []
-    is_alike = np.ones(len(view.table), dtype=bool)
+    is_alike = _wanted_the_same(view.table, plan)
     for name, least in LEAST_PARTS.items():
         is_alike &= parts[name] >= least
     alike = best_rows(similarity, MOST_ALIKE, np.flatnonzero(is_alike))
@@ -114,6 +115,17 @@ def _at_the_centre(
         if finding is not None:
             findings.append(finding)
     return findings
+
+
+def _wanted_the_same(table: FactTable, plan: FactTable) -> NDArray[np.bool_]:
+    """Return a mask of the runs that were after what the plan is after; what is not read counts as the same.
+
+    An alkene is the failure of an ether synthesis and the aim of an elimination: runs with another aim neither warn
+    of this one nor speak for it.
+    """
+    wanted = int(plan.words["fate"][0])
+    fate = table.words["fate"]
+    return np.ones(len(table), dtype=bool) if wanted < 0 else (fate == wanted) | (fate < 0)
 
 
 def _kinds_of_failure(view: RecordView, alike: NDArray[np.intp]) -> dict[str, list[int]]:

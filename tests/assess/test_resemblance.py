@@ -90,6 +90,20 @@ def test_failures_at_the_centre_are_told_once_with_those_that_came_through() -> 
     assert finding.evidence.runs == ("R-2", "R-1", "R-3")  # losses first, most alike first
 
 
+def test_what_was_a_failure_for_another_aim_is_none_for_this_plan() -> None:
+    record = Record().add(base(60), ("elimination", None)).add(base(70), ("elimination", None)).add(base(65))
+    assert resemblances(record.view, base(80), fate="substitution")
+    assert not resemblances(record.view, base(80), fate="elimination")
+
+
+def test_runs_with_another_aim_do_not_speak_for_the_plan() -> None:
+    record = Record().add(base(60), ("no-reaction", None)).add(base(70), ("no-reaction", None))
+    record.add(base(60), fate="elimination")
+    (finding,) = resemblances(record.view, base(40), fate="substitution")
+    assert finding.evidence is not None
+    assert set(finding.evidence.runs) == {"R-1", "R-2"}
+
+
 @pytest.mark.parametrize(
     ("mode", "failed_at", "planned_at", "is_told", "why"),
     [
