@@ -60,6 +60,8 @@ class SidepathApp(App[None]):
         "planning": lambda: _late("tui.screens.planning", "PlanningScreen"),
         "runs": lambda: _late("tui.screens.runs", "RunsScreen"),
         "finding": lambda: _late("tui.screens.finding", "FindingPlace"),
+        "failures": lambda: _late("tui.screens.failures", "FailuresPlace"),
+        "route": lambda: _late("tui.screens.route", "RoutePlace"),
     }
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding(
@@ -83,6 +85,24 @@ class SidepathApp(App[None]):
             id="place.finding",
             tooltip="Search the record",
         ),
+        Binding(
+            "f5",
+            "place('failures')",
+            "Failures",
+            show=False,
+            key_display="F5",
+            id="place.failures",
+            tooltip="What keeps going wrong, hindsight, coverage, trust",
+        ),
+        Binding(
+            "f6",
+            "place('route')",
+            "Route",
+            show=False,
+            key_display="F6",
+            id="place.route",
+            tooltip="A sequence of steps: what it yields, what it needs, where it is weak",
+        ),
         Binding("ctrl+t", "next_theme", "Theme", show=False, id="theme", tooltip="Dark, light or high contrast"),
         Binding("ctrl+g", "words", "Words", show=False, id="words", tooltip="Words instead of drawings, and back"),
         Binding(
@@ -101,6 +121,8 @@ class SidepathApp(App[None]):
     book: reactive[BookPort | None] = reactive(None, init=False)
     book_words: reactive[str] = reactive("opening the book…")
     in_words: reactive[bool] = reactive(False)
+    changes: int = 0
+    """How often the record was changed from here; whoever shows a sum over it compares."""
 
     def __init__(self, opener: Opener, place: str | None = None, who: str = "", theme: str = "") -> None:
         super().__init__()
@@ -188,6 +210,7 @@ class SidepathApp(App[None]):
     @on(RunStored)
     def count_runs(self) -> None:
         """Refresh the state of the book in the bar."""
+        self.changes += 1
         book = self.book
         if book is not None:
             self.run_worker(

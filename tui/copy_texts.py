@@ -67,6 +67,12 @@ def run_texts(run: Run) -> dict[str, str]:
     return {"SMILES": run.scheme, "Markdown": "\n".join(lines), "JSON": _json(run_to_dict(run))}
 
 
+def audit_texts(audit: Any, markdown: str, smiles: str = "") -> dict[str, str]:
+    """Return an audit as Markdown and JSON, and the structure it is about as SMILES where there is one."""
+    texts = {"SMILES": smiles} if smiles else {}
+    return texts | {"Markdown": markdown, "JSON": _json(audit.as_dict())}
+
+
 def _json(data: Any) -> str:
     return json.dumps(data, ensure_ascii=False, indent=2, default=str)
 

@@ -25,6 +25,8 @@ from kb.record.failure_modes import failure_modes
 from kb.record.plan import Plan
 from kb.record.run import Run
 from kb.vocabulary import Role
+from tui.desk_route import RouteRecord
+from tui.desk_whole import WholeRecord
 from tui.jobs import current_progress
 from tui.plan_state import PLAN_DRAFT, state_of_plan
 from tui.ports import (
@@ -70,7 +72,7 @@ class Lane:
                 self._book = None
 
 
-class Desk:
+class Desk(WholeRecord, RouteRecord):
     """A record book as the screens see it; keeps to `BookPort`."""
 
     def __init__(self, place: str | None, read_only: bool = False) -> None:
@@ -84,6 +86,7 @@ class Desk:
         with self._looking.book() as book:
             self._place = book.path
             self._read_only = book.is_read_only
+        super().__init__(self._place, self._looking.book, self._writing.book)
 
     @property
     def place(self) -> str:
@@ -94,6 +97,9 @@ class Desk:
     def is_read_only(self) -> bool:
         """Return True when nothing can be written."""
         return self._read_only
+
+    def _lend_for_routes(self) -> AbstractContextManager[Book]:
+        return self._checking.book()
 
     def _look(self) -> AbstractContextManager[Book]:
         return self._looking.book()

@@ -68,11 +68,13 @@ def mark_scheme(scheme: SchemeDrawing, reading: Reading | None, finding: Finding
     return replace(scheme, left=tuple(pieces[:cut]), agents=tuple(pieces[cut:]))
 
 
-def mark_match(scheme: SchemeDrawing, smiles: str, atoms: tuple[int, ...]) -> SchemeDrawing:
+def mark_match(
+    scheme: SchemeDrawing, smiles: str, atoms: tuple[int, ...], kind: MarkKind = MarkKind.MATCH
+) -> SchemeDrawing:
     """Return the scheme with the atoms of a match marked, in the fragment that is written as `smiles`."""
     if not atoms:
         return scheme
-    mark = Mark(kind=MarkKind.MATCH, atoms=atoms)
+    mark = Mark(kind=kind, atoms=atoms)
 
     def marked(pieces: tuple[Piece, ...]) -> tuple[Piece, ...]:
         return tuple(

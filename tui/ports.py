@@ -11,7 +11,7 @@ from __future__ import annotations
 import datetime as dt
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from typing import Any, Protocol
+from typing import TYPE_CHECKING, Any, Protocol
 
 from kb.chem.facts import Reading
 from kb.progress import Progress
@@ -20,6 +20,15 @@ from kb.record.component import Component, SolventPart
 from kb.record.plan import Plan
 from kb.record.run import Run
 from kb.vocabulary import Role
+
+if TYPE_CHECKING:
+    from kb.audit.calibration import Calibration
+    from kb.audit.coverage import Coverage
+    from kb.audit.recurrence_values import Proposal, Recurrence
+    from kb.audit.replay_report import ReplayReport
+    from kb.audit.tally import Tally
+    from kb.route.sequence import Route
+    from tui.route_state import Imagined
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -229,6 +238,58 @@ class BookPort(Protocol):
 
     def delete_draft(self, key: str) -> None:
         """Forget a kept form; one that is not there is no error."""
+        ...
+
+    def recurring(self, progress: Progress) -> Recurrence:
+        """Return what keeps going wrong; `Cancelled` when progress asked to stop."""
+        ...
+
+    def tally(self, progress: Progress) -> Tally:
+        """Return the failures counted by quarter, mode and class; `Cancelled` when progress asked to stop."""
+        ...
+
+    def replay(self, progress: Progress) -> ReplayReport:
+        """Return each run checked against the record of its morning; a part of them when progress asked to stop."""
+        ...
+
+    def coverage(self, progress: Progress) -> Coverage:
+        """Return what the record covers; `Cancelled` when progress asked to stop."""
+        ...
+
+    def calibration(self, progress: Progress) -> Calibration:
+        """Return how well estimates hold; of what was done when progress asked to stop."""
+        ...
+
+    def adopt(self, proposal: Proposal, title: str, why: str, who: str) -> str:
+        """Adopt a proposed house rule under a title and a reason; return its id."""
+        ...
+
+    def markdown(self, audit: object) -> str:
+        """Return an audit as Markdown to hand round."""
+        ...
+
+    def open_route(self, path: str) -> Route:
+        """Return the route of a file with its yields looked up; `Cancelled` when the job's progress asked to stop."""
+        ...
+
+    def imagine_route(self, route: Route, edits: Mapping[str, str]) -> Imagined:
+        """Return a route reckoned with what was typed over it; names of edits are those of `tui.route_state`."""
+        ...
+
+    def route_example(self) -> str:
+        """Return the file of the shipped route, which only the demo book can answer."""
+        ...
+
+    def recent_routes(self) -> Sequence[str]:
+        """Return the route files that were opened lately, newest first."""
+        ...
+
+    def remember_route(self, path: str) -> None:
+        """Put a route file at the head of that list."""
+        ...
+
+    def save_page(self, thing: object, path: str) -> str:
+        """Write a page, HTML or Markdown by its ending, to a new file; return where it is."""
         ...
 
     def close(self) -> None:

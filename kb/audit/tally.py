@@ -10,6 +10,7 @@ from __future__ import annotations
 import datetime as dt
 from collections.abc import Iterable
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -45,6 +46,10 @@ class Tallied:
         judged = len(self.failed) + len(self.fine)
         return len(self.failed) / judged if judged else None
 
+    def as_dict(self) -> dict[str, Any]:
+        """Return plain JSON values."""
+        return {"word": self.word, "runs": self.runs, "failed": list(self.failed), "fine": list(self.fine)}
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Tally:
@@ -60,13 +65,19 @@ class Tally:
     failed: int
     ways: tuple[tuple[str, tuple[Tallied, ...]], ...]
 
+    def as_dict(self) -> dict[str, Any]:
+        """Return plain JSON values."""
+        ways = {way: [t.as_dict() for t in words] for way, words in self.ways}
+        return {"runs": self.runs, "failed": self.failed, "by": ways}
+
 
 def tally_failures(view: RecordView) -> Tally:
     """Count the failures of a book."""
     failed, judged = failed_rows(view), judged_rows(view)
     fine = judged & ~failed
     codes = view.table.codes
-    ways = [(BY_QUARTER, _gathered(codes, _quarters(view), failed, fine, in_order=True)), (BY_MODE, _modes(view, failed))]
+    quarters = _gathered(codes, _quarters(view), failed, fine, in_order=True)
+    ways = [(BY_QUARTER, quarters), (BY_MODE, _modes(view, failed))]
     keys = cell_keys(view)
     for place, way in enumerate(BY_CLASS):
         ways.append((way, _gathered(codes, [key[place] for key in keys], failed, fine)))
@@ -114,7 +125,11 @@ def _gathered(
     if in_order:
         return tuple(sorted(found, key=lambda t: t.word))
     found.sort(key=lambda t: (-len(t.failed), -t.runs, t.word))
-    return tuple(found) if len(found) <= MOST_WORDS else (*found[: MOST_WORDS - 1], _others(found[MOST_WORDS - 1 :]))
+    return (
+        tuple(found)
+        if len(found) <= MOST_WORDS
+        else (*found[: MOST_WORDS - 1], _others(found[MOST_WORDS - 1 :]))
+    )
 
 
 def _others(rest: list[Tallied]) -> Tallied:

@@ -15,7 +15,7 @@ if TYPE_CHECKING:
     from kb.book.find_words import criteria_from_words
     from kb.book.keeping import create_book, migrate_book, restore_book
     from kb.book.materials_words import lookup_material
-    from kb.book.pages import page_of, plan_from_file, save_page, thing_named
+    from kb.book.pages import markdown_of, page_of, plan_from_file, save_page, thing_named
     from kb.book.plan_words import conditions_from_words, plan_from_words
     from kb.book.routes import reckon_route, route_lead
     from kb.book.run_words import runs_from_json
@@ -52,6 +52,7 @@ _HOMES = {
     "tally_book": "whole",
     "reckon_route": "routes",
     "route_lead": "routes",
+    "markdown_of": "pages",
     "page_of": "pages",
     "plan_from_file": "pages",
     "save_page": "pages",
@@ -100,6 +101,7 @@ __all__ = [
     "house_rule",
     "iter_scheme_column",
     "lookup_material",
+    "markdown_of",
     "measure_book_coverage",
     "migrate_book",
     "open_book",

@@ -3,6 +3,7 @@
 It owns the process and what is said over the line between the two: progress comes back, a wish to stop goes out, the
 answer or the error ends it. A thread would do the same work, but would hold the interpreter, and typing with it. The
 process reads the book for itself and writes nothing to it. It ends with whoever asked, even when that one was killed.
+It is started by hand, since `multiprocessing` wants a real standard error, which a terminal interface does not have.
 
 A replay is kept in a file of the cache, so that one that was stopped goes on where it stopped; a file of another state
 of the book is thrown away.
@@ -11,10 +12,13 @@ of the book is thrown away.
 from __future__ import annotations
 
 import os
+import subprocess
+import sys
 import threading
 import time
 from hashlib import sha256
-from multiprocessing import get_context, parent_process
+from multiprocessing import parent_process
+from multiprocessing.connection import Connection
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -22,8 +26,6 @@ from kb.errors import Cancelled, InvalidRecord, SidepathError
 from kb.progress import Progress
 
 if TYPE_CHECKING:
-    from multiprocessing.connection import Connection
-
     from kb.book.facade import Book
 
 QUESTIONS = ("recurring", "tally", "replay", "coverage", "calibration")
@@ -46,86 +48,97 @@ def ask_beside(address: str, question: str, progress: Progress, replays: Path | 
         Cancelled: progress asked to stop, and the question has no part answer to give.
         SidepathError: what the asked function raised; also when the process ended without an answer.
     """
-    ours, theirs = get_context("spawn").Pipe()
-    process = get_context("spawn").Process(target=_answer, args=(address, question, replays, theirs), daemon=False)
-    process.start()
-    theirs.close()
+    start = f"import sys; sys.path[:] = {sys.path!r}; from kb.book.beside import answer; answer()"
+    process = subprocess.Popen(
+        [sys.executable, "-c", start],
+        stdin=subprocess.PIPE,
+        stdout=subprocess.PIPE,
+        stderr=subprocess.DEVNULL,
+    )
+    assert process.stdin is not None and process.stdout is not None  # both were asked for
+    out = Connection(os.dup(process.stdin.fileno()), readable=False)
+    back = Connection(os.dup(process.stdout.fileno()), writable=False)
+    process.stdin.close()
+    process.stdout.close()
     try:
-        return _listen(ours, progress)
-    finally:
-        ours.close()  # which the process takes as a wish to end, should it still be there
-        process.join(_PATIENCE_S)
-        if process.is_alive():
-            process.terminate()
-            process.join()
-
-
-def _listen(line: Connection, progress: Progress) -> Any:
-    told = False
-    try:
-        while True:
-            if progress.cancelled() and not told:
-                told = True
-                line.send("stop")
-            if not line.poll(_LOOK_S):
-                continue
-            kind, value = line.recv()
-            if kind == "progress":
-                progress.advance(*value)
-            elif kind == "error":
-                raise value
-            else:
-                return value
+        out.send((address, question, replays))
+        return _listen(out, back, progress)
     except (EOFError, BrokenPipeError, ConnectionResetError):
         raise SidepathError(
             "The work on the record ended without an answer.", "Ask again; if it happens again, the log may tell why."
         ) from None
+    finally:
+        out.close()  # which ends the process, should it still be there
+        back.close()
+        try:
+            process.wait(_PATIENCE_S)
+        except subprocess.TimeoutExpired:
+            process.kill()
+            process.wait()
+
+
+def _listen(out: Connection, back: Connection, progress: Progress) -> Any:
+    told = False
+    while True:
+        if progress.cancelled() and not told:
+            told = True
+            out.send("stop")
+        if not back.poll(_LOOK_S):
+            continue
+        kind, value = back.recv()
+        if kind == "progress":
+            progress.advance(*value)
+        elif kind == "error":
+            raise value
+        else:
+            return value
 
 
 class _Line:
-    """Progress at the far end: reports go over the line, a wish to stop comes from it."""
+    """Progress at the far end: reports go back over one line, a wish to stop comes over the other."""
 
-    def __init__(self, line: Connection) -> None:
-        self._line = line
+    def __init__(self, wishes: Connection, back: Connection) -> None:
+        self._wishes = wishes
+        self._back = back
         self._last = 0.0
         self._stop = threading.Event()
         threading.Thread(target=self._wait, daemon=True).start()
 
     def _wait(self) -> None:
         try:
-            self._line.recv()
+            self._wishes.recv()
+            self._stop.set()
+            self._wishes.recv()
         except (EOFError, OSError):
-            pass
-        self._stop.set()
+            os._exit(0)  # whoever asked is gone
 
     def advance(self, done: int, total: int | None, note: str = "") -> None:
         """Send a report when enough time went by."""
         now = time.monotonic()
         if now - self._last >= _LOOK_S:
             self._last = now
-            self._line.send(("progress", (done, total, note)))
+            self._back.send(("progress", (done, total, note)))
 
     def cancelled(self) -> bool:
-        """Return True once the other end asked to stop, or is gone."""
+        """Return True once the other end asked to stop."""
         return self._stop.is_set()
 
 
-def _answer(address: str, question: str, replays: Path | None, line: Connection) -> None:
-    """Answer in the new process, which never touches the terminal."""
+def answer() -> None:
+    """Answer one question in the new process, which never touches the terminal."""
+    wishes, back = Connection(os.dup(0), writable=False), Connection(os.dup(1), readable=False)
     quiet = os.open(os.devnull, os.O_RDWR)
-    for stream in (1, 2):
+    for stream in (0, 1, 2):
         os.dup2(quiet, stream)
-    end_with_parent()
+    address, question, replays = wishes.recv()
     from kb.book.facade import open_book
 
     try:
         with open_book(address, read_only=True) as book:
-            value = _asked(book, question, _Line(line), replays)
-        line.send(("answer", value))
+            value = _asked(book, question, _Line(wishes, back), replays)
+        back.send(("answer", value))
     except SidepathError as error:
-        line.send(("error", error))
-    except BrokenPipeError:
-        pass
+        back.send(("error", error))
 
 
 def _asked(book: Book, question: str, progress: Progress, replays: Path | None) -> Any:
@@ -157,7 +170,7 @@ def _asked(book: Book, question: str, progress: Progress, replays: Path | None) 
 
 
 def end_with_parent() -> None:
-    """End this process when the one that started it ends, killed or not."""
+    """End this process of a pool when the one that started it ends, killed or not."""
     parent = parent_process()
     if parent is None:
         return

@@ -45,6 +45,13 @@ def save_page(book: AskedBook, thing: object, path: Path) -> None:
     write_page(page_of(book, thing), path)
 
 
+def markdown_of(book: AskedBook, thing: object) -> str:
+    """Return the page of a thing as Markdown."""
+    from kb.exchange.report_markdown import page_markdown
+
+    return page_markdown(page_of(book, thing))
+
+
 def thing_named(book: AskedBook, name: str, progress: Progress | None = None) -> object:
     """Return what a word names: an audit, a route or plan file (.toml, .json), or a run by its code.
 

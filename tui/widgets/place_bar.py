@@ -16,6 +16,8 @@ PLACES: tuple[tuple[str, str, str], ...] = (
     ("planning", "F2", "Planning"),
     ("runs", "F3", "Runs"),
     ("finding", "F4", "Finding"),
+    ("failures", "F5", "Failures"),
+    ("route", "F6", "Route"),
 )
 """Name, key and title of each place in the order of the bar."""
 
@@ -24,6 +26,7 @@ class PlaceBar(Horizontal):
     """Where one is, and where one can go."""
 
     is_busy: reactive[bool] = reactive(False)
+    progress: reactive[str] = reactive("")
 
     def __init__(self, place: str, **options: Any) -> None:
         super().__init__(**options)
@@ -45,13 +48,19 @@ class PlaceBar(Horizontal):
         else:
             self._show_status()
 
+    def watch_progress(self) -> None:
+        """Say how far the work is."""
+        self._show_status()
+
     def on_resize(self) -> None:
         """Fit the state of the book to what is left of the line."""
         self._show_status()
 
     def _show_status(self) -> None:
-        words = ("working…  " if self.is_busy else "") + getattr(self.app, "book_words", "")
         line = self.query_one("#place-status", Static)
+        words = getattr(self.app, "book_words", "")
+        if self.is_busy:
+            words = f"{self.progress}, Esc stops" if self.progress else f"working…  {words}"
         line.update(fit_status(words, line.size.width or len(words)))
 
     def _tabs(self) -> Content:

@@ -7,6 +7,7 @@ alternative stands instead.
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import Any, ClassVar
 
 from rich.segment import Segment
@@ -46,9 +47,12 @@ class SchemeView(Widget):
     in_words: reactive[bool] = reactive(False)
     placeholder: reactive[str] = reactive("")
 
-    def __init__(self, *, with_legend: bool = False, **options: Any) -> None:
+    def __init__(
+        self, *, with_legend: bool = False, legend_words: Mapping[MarkKind, str] | None = None, **options: Any
+    ) -> None:
         super().__init__(**options)
         self._with_legend = with_legend
+        self._legend_words = {**MARK_WORDS, **(legend_words or {})}
         self._strips: list[Strip] = []
         self._made_for: object = None
 
@@ -126,7 +130,7 @@ class SchemeView(Widget):
         segments: list[Segment] = []
         used = 0
         for kind in self.mark_kinds:
-            words = f"{MARK_GLYPHS[kind]} {MARK_WORDS[kind]}  "
+            words = f"{MARK_GLYPHS[kind]} {self._legend_words[kind]}  "
             if used + len(words) > width:
                 break
             used += len(words)
