@@ -8,11 +8,12 @@ and the rule is silent.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from kb.assess.predicate import parse_predicate
 from kb.assess.record_view import RecordView
@@ -22,6 +23,8 @@ from kb.record.finding import Finding
 from kb.store.derivation import Account
 from kb.store.values import HouseRule
 from kb.vocabulary import Fate, FindingKind, Severity, Verdict
+
+Told = Callable[[str, NDArray[np.intp]], NDArray[np.int8]]
 
 
 def check_rule(rule: HouseRule) -> None:
@@ -85,28 +88,33 @@ def find_house_rules(rules: Sequence[HouseRule], account: Account, view: RecordV
     return tuple(findings)
 
 
-def try_rule(rule: HouseRule, view: RecordView) -> RuleTrial:
-    """Try a rule on every standing run of the book."""
-    predicate = parse_predicate(rule.when)
-    rows = view.rows_with_motif(rule.motif) if rule.motif else np.arange(len(view.table))
-    told = view.told(("house", rule.when), predicate.evaluate, rows)
-    hits, alarms, undecided = [], [], []
-    for row, answer in zip(rows.tolist(), told.tolist(), strict=True):
-        if answer == 0:
-            continue
-        code, verdict = view.table.codes[row], view.table.word("verdict", row)
-        if answer < 0 or verdict is None:
-            undecided.append(code)
-        elif verdict == Verdict.FAILED or (verdict == Verdict.PARTLY and view.failures[row]):
-            hits.append(code)
-        else:
-            alarms.append(code)
-    failed = WORDS["verdict"].index(Verdict.FAILED)
+def try_rule(rule: HouseRule, view: RecordView, told: Told | None = None) -> RuleTrial:
+    """Try a rule on every standing run of the book.
+
+    Args:
+        told: what a condition line says of some rows (see `RecordView.told`), where many lines are asked; None = ask
+            the view.
+    """
+    rows = np.asarray(view.rows_with_motif(rule.motif) if rule.motif else np.arange(len(view.table)), dtype=np.intp)
+    if told is not None:
+        answer = told(rule.when, rows)
+    else:
+        answer = view.told(("house", rule.when), parse_predicate(rule.when).evaluate, rows)
+    verdict, words = view.table.words["verdict"], WORDS["verdict"]
+    failed, partly = (words.index(word) for word in (Verdict.FAILED, Verdict.PARTLY))
+    said = verdict[rows]
+    is_open = (answer < 0) | ((answer > 0) & (said < 0))
+    is_hit = (answer > 0) & ((said == failed) | ((said == partly) & view.has_failure[rows]))
+    is_alarm = (answer > 0) & ~is_open & ~is_hit
+
+    def codes(which: NDArray[np.bool_]) -> tuple[str, ...]:
+        return tuple(view.table.codes[row] for row in rows[which].tolist())
+
     return RuleTrial(
-        hits=tuple(hits),
-        false_alarms=tuple(alarms),
-        undecided=tuple(undecided),
-        failures_in_book=int((view.table.words["verdict"] == failed).sum()),
+        hits=codes(is_hit),
+        false_alarms=codes(is_alarm),
+        undecided=codes(is_open),
+        failures_in_book=int((verdict == failed).sum()),
     )
 
 

@@ -3,8 +3,7 @@
 It owns the search: candidate tests are read off the failures themselves, in the language of `kb.assess.predicate`,
 and joined by `and`, best first, as long as the line gets better. It judges a line by the F1 of members warned of
 against successes warned of; it adopts nothing. A test that only names what was *not* there is never proposed: absence
-explains nothing. Distinct condition profiles are evaluated once, so the cost follows the variety of a book, not its
-length.
+explains nothing.
 """
 
 from __future__ import annotations
@@ -13,14 +12,14 @@ import math
 from collections import Counter
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from kb.assess.predicate import parse_predicate
 from kb.assess.predicate_words import words_of
-from kb.assess.record_view import RecordView
-from kb.materials.profile import LEVELS, ConditionProfile
+from kb.audit.profile_table import ProfileTable
+from kb.materials.profile import LEVELS
 
 MOST_TESTS = 3
 LEAST_COVER = 0.6
@@ -34,22 +33,6 @@ _WORD_HANDICAP = 0.02
 """What a test must be better by than a plain acid, base or nucleophile: a medium explains less than what reacts, a long
 time least, and each further word of a list fits by luck more easily. Judgement."""
 _SPECTATORS = frozenset({"aryl_halide", "alkyl_halide", "nitrile", "alkene", "alkyne", "crown_ether", "polyol"})
-
-
-class ProfileTable:
-    """The distinct condition profiles of a view, and where each row's stands; answers kept by test."""
-
-    def __init__(self, view: RecordView) -> None:
-        self.of_row: NDArray[np.intp] = np.asarray(view.table.profile, dtype=np.intp)
-        self.profiles = [view.profile_of_code(code) for code in range(len(view.table.profiles))]
-        self._answers: dict[str, NDArray[np.bool_]] = {}
-
-    def holds(self, line: str, rows: NDArray[np.intp]) -> NDArray[np.bool_]:
-        """Return in which rows a line holds for certain (len(rows))."""
-        if line not in self._answers:
-            predicate = parse_predicate(line)
-            self._answers[line] = np.array([predicate.evaluate(p) is True for p in self.profiles], dtype=bool)
-        return np.asarray(self._answers[line][self.of_row[rows]])
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -79,7 +62,7 @@ def propose_line(
     """
     chosen = [first] if first else []
     best = _line(table, chosen, members, successes) if chosen else None
-    candidates = _candidates([table.profiles[i] for i in table.of_row[members]], nothing_happened)
+    candidates = _candidates(table, members, nothing_happened)
     while len(chosen) < MOST_TESTS:
         tried = [_line(table, [*chosen, test], members, successes) for test in candidates if test not in chosen]
         tried = [line for line in tried if line.members >= LEAST_COVER * len(members)]
@@ -107,27 +90,31 @@ def _handicap(test: str) -> float:
     return _HANDICAP.get(test.split()[0], 0.0) + _WORD_HANDICAP * test.count(",")
 
 
-def _candidates(profiles: Sequence[ConditionProfile], nothing_happened: bool) -> list[str]:
+def _candidates(table: ProfileTable, members: NDArray[np.intp], nothing_happened: bool) -> list[str]:
     """Return tests worth trying, plainest first."""
+    enough = _SHARED * len(members)
+
+    def of(fact: str) -> list[Any]:
+        return table.values(fact, members)
+
     tests: list[str] = []
     for fact in ("acidity", "lewis_acid", "hydride"):
         order = LEVELS[fact]
-        met = [order.index(w) for p in profiles if (w := getattr(p, fact)) in order]
-        tests += [
-            f"{fact} >= {order[level]}" for level in (2, 1) if sum(m >= level for m in met) >= _SHARED * len(profiles)
-        ]
-    tests += _numbers("base_pkah", [p.base_pkah for p in profiles], 0.5)
+        met = [order.index(word) for word in of(fact) if word in order]
+        tests += [f"{fact} >= {order[level]}" for level in (2, 1) if sum(m >= level for m in met) >= enough]
+    tests += _numbers("base_pkah", of("base_pkah"), 0.5)
     tests += [
         fact
         for fact in ("water", "alcohol", "ionising", "organometallic", "prolonged")
-        if sum(getattr(p, fact) is True for p in profiles) >= _SHARED * len(profiles)
+        if sum(value is True for value in of(fact)) >= enough
     ]
-    tests += _sets("solvent", [p.solvent_classes for p in profiles])
-    tests += _sets("nucleophile_class", [frozenset({p.nucleophile_class or ""}) for p in profiles])
-    tests += _sets("reagent", [p.reagent_classes - _SPECTATORS for p in profiles])
-    tests += [f"base_bulk == {word}" for word in ("hindered", "unhindered") if _common(profiles, "base_bulk", word)]
-    tests += [f"halophile == {word}" for word in ("silver", "mercury") if _common(profiles, "halophile", word)]
-    temperatures = [p.temperature_c for p in profiles]
+    tests += _sets("solvent", of("solvent_classes"))
+    tests += _sets("nucleophile_class", [frozenset({word or ""}) for word in of("nucleophile_class")])
+    tests += _sets("reagent", [held - _SPECTATORS for held in of("reagent_classes")])
+    for fact, words in (("base_bulk", ("hindered", "unhindered")), ("halophile", ("silver", "mercury"))):
+        met_words = Counter(of(fact))
+        tests += [f"{fact} == {word}" for word in words if met_words[word] >= enough]
+    temperatures = of("temperature_c")
     if nothing_happened:
         known = [t for t in temperatures if t is not None]
         return [*tests, *([f"temperature_c <= {_up(max(known), 5):g}"] if known else [])]
@@ -146,7 +133,7 @@ def _numbers(fact: str, values: Iterable[float | None], step: float) -> list[str
 def _sets(fact: str, classes: Sequence[frozenset[str]]) -> list[str]:
     known = words_of(fact)
     met = Counter(word.replace("-", "_") for held in classes for word in held)
-    usual = [w for w, n in met.most_common() if w in known]
+    usual = sorted((w for w in met if w in known), key=lambda w: (-met[w], w))  # equals by name: one book, one answer
     tests = [f"{fact} in ({w})" for w in usual if met[w] >= _SHARED * len(classes)]
     for size in (2, 3):  # two or three classes that cover the members between them
         group: list[str] = []
@@ -163,10 +150,6 @@ def _sets(fact: str, classes: Sequence[frozenset[str]]) -> list[str]:
         if len(group) == size and test not in tests:
             tests.append(test)
     return tests
-
-
-def _common(profiles: Sequence[ConditionProfile], fact: str, word: str) -> bool:
-    return sum(getattr(p, fact) == word for p in profiles) >= _SHARED * len(profiles)
 
 
 def _down(value: float, step: float) -> float:

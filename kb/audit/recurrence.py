@@ -17,16 +17,18 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from kb.assess.forcing import is_at_least_as_forcing, is_no_more_forcing
+from kb.assess.forcing import Force, force_of, forces_as_much, forces_no_more
 from kb.assess.house_rules import try_rule
 from kb.assess.predicate import parse_predicate
 from kb.assess.record_view import RecordView
-from kb.audit.condition_line import Line, ProfileTable, propose_line
+from kb.audit.condition_line import Line, propose_line
 from kb.audit.failing import failed_rows, judged_rows, meaning_of
 from kb.audit.places import Aspect, Place
+from kb.audit.profile_table import ProfileTable
 from kb.audit.recurrence_values import Circumstance, Cluster, Proposal, Recurrence
 from kb.audit.siting import Sited, site_failures
 from kb.errors import Cancelled
+from kb.materials.profile import ConditionProfile
 from kb.progress import Progress, Silent
 from kb.store.values import HouseRule
 from kb.vocabulary import Severity
@@ -36,6 +38,8 @@ RECURS = 2
 STRONG_BASE_PKAH = 12.0
 """From here a base is strong enough to be told apart from an acid; judgement."""
 _NOTHING_HAPPENED = frozenset({"no-reaction", "stalled"})
+_FORCING = ("acidity", "lewis_acid", "base_pkah", "ionising", "temperature_c", "has_unknown_reagent")
+"""What `kb.assess.forcing` compares."""
 
 
 def find_recurring(
@@ -117,10 +121,10 @@ def _grouped(view: RecordView, sited: Sequence[Sited]) -> list[_Group]:
 
 
 def _driver(view: RecordView, row: int) -> str:
-    profile = view.profile(row)
-    if profile.acidity == "strong" or profile.lewis_acid == "strong":
+    table = view.table
+    if "strong" in (table.word("acidity", row), table.word("lewis_acid", row)):
         return "acid"
-    return "base" if profile.base_pkah is not None and profile.base_pkah >= STRONG_BASE_PKAH else ""
+    return "base" if table.numbers["base_pkah"][row] >= STRONG_BASE_PKAH else ""
 
 
 class _Finder:
@@ -141,7 +145,7 @@ class _Finder:
         self.profiles = ProfileTable(view)
         self.fine = judged_rows(view) & ~failed_rows(view)
         self._warned: dict[str, set[str]] = {}
-        self._order: dict[tuple[int, int, bool], bool | None] = {}
+        self._order: dict[tuple[int, int, bool], bool] = {}
 
     def cluster(self, group: _Group, since: dt.date | None) -> Cluster:
         """Describe one group of failures."""
@@ -218,13 +222,13 @@ class _Finder:
             author="audit",
             source="recurring failures: " + ", ".join(codes[:12]) + (" ..." if len(codes) > 12 else ""),
         )
-        return Proposal(rule=rule, trial=try_rule(rule, self.view))
+        return Proposal(rule=rule, trial=try_rule(rule, self.view, self.profiles.told))
 
     def _covered(self, rows: Sequence[int]) -> tuple[tuple[str, int], ...]:
         found = []
         for rule in self.rules:
             if rule.rule_id not in self._warned:
-                self._warned[rule.rule_id] = set(try_rule(rule, self.view).hits)
+                self._warned[rule.rule_id] = set(try_rule(rule, self.view, self.profiles.told).hits)
             count = sum(self.table.codes[r] in self._warned[rule.rule_id] for r in rows)
             if count:
                 found.append((rule.rule_id, count))
@@ -247,25 +251,31 @@ class _Finder:
 
     def _repeats(self, group: _Group, rows: Sequence[int], shown: set[int]) -> list[tuple[str, str]]:
         """Return (run, earlier run) for members that an earlier day's member under no harsher conditions preceded."""
-        dated = [r for r in rows if self.table.date[r] > 0]
         if group.place.aspect is Aspect.HAND:
             return []
-        found, earlier = [], []  # type: ignore[var-annotated]
-        for row in dated:
-            before = (r for r in earlier if self.table.date[r] < self.table.date[row])
-            warning = next((r for r in before if self._is_as_forcing(row, r, group.mode)), None)
-            if warning is not None and row in shown:
-                found.append((self.table.codes[row], self.table.codes[warning]))
-            earlier.append(row)
+        date, codes = self.table.date, self.table.codes
+        dated = [r for r in rows if date[r] > 0]
+        forces = self.profiles.alike(_FORCING, np.array(dated, dtype=np.intp))
+        mild = group.mode in _NOTHING_HAPPENED
+        found: list[tuple[str, str]] = []
+        first_of: dict[int, tuple[int, ConditionProfile]] = {}  # the first member of each force, earliest first
+        for row, (force, profile) in zip(dated, forces, strict=True):
+            if row in shown:
+                for other, (earlier, theirs) in first_of.items():
+                    if date[earlier] < date[row] and self._is_as_forcing((force, other, mild), profile, theirs):
+                        found.append((codes[row], codes[earlier]))
+                        break
+            first_of.setdefault(force, (row, profile))
         return found
 
-    def _is_as_forcing(self, row: int, earlier: int, mode: str) -> bool:
-        mild = mode in _NOTHING_HAPPENED
-        key = (int(self.profiles.of_row[row]), int(self.profiles.of_row[earlier]), mild)
+    def _is_as_forcing(
+        self, key: tuple[int, int, bool], profile: ConditionProfile, earlier: ConditionProfile
+    ) -> bool:
+        """Return whether conditions are as forcing as earlier ones; key: their numbers, and whether milder counts."""
         if key not in self._order:
-            compare: Callable[..., bool | None] = is_no_more_forcing if mild else is_at_least_as_forcing
-            self._order[key] = compare(self.profiles.profiles[key[0]], self.profiles.profiles[key[1]])
-        return self._order[key] is True
+            compare: Callable[[Force, Force], bool | None] = forces_no_more if key[2] else forces_as_much
+            self._order[key] = compare(force_of(profile), force_of(earlier)) is True
+        return self._order[key]
 
     def _example(self, row: int, place: Place) -> tuple[str, tuple[int, ...]]:
         from rdkit import Chem

@@ -190,11 +190,11 @@ def _check_in_process(places: list[int]) -> list[Hindsight]:
 
 def _circumstances(book: AskedBook) -> dict[str, Circumstance]:
     from kb.audit.recurrence_values import Circumstance
+    from kb.store.circumstances import circumstances_of_failed
 
     return {
-        run.code: Circumstance(project=run.project, scale_mmol=run.conditions.scale_mmol)
-        for run in book.store.iter_runs()
-        if run.code is not None
+        code: Circumstance(project=project, scale_mmol=scale)
+        for code, (project, scale) in circumstances_of_failed(book.store).items()
     }
 
 

@@ -1,7 +1,8 @@
 """Which runs hold a motif, without loading the index: for a check, which asks for a few motifs and ends.
 
 Reading all molecules and fingerprints of a large book takes longer than a check may. Here only the screens are read,
-once for each state of the book, and then the molecules that a motif's screen leaves.
+once for each state of the book, and then the molecules that a motif's screen leaves; these are kept, since an audit
+asks for many motifs and most of them leave the same molecules.
 """
 
 from __future__ import annotations
@@ -10,14 +11,17 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 import numpy as np
-from rdkit import Chem
 
-from kb.chem.query import find_match, parse_query
+from kb.chem.query import parse_query
+from kb.chem.screens_keys import KEY_UNRULY
 from kb.errors import IndexStale
+from kb.search.matching import MoleculeStore
 from kb.search.screening import Screens, is_of_this_revision
 from kb.store.searching import codes_with, molecules_of, screens_of
 
 if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
     from kb.store.session import OpenBook
     from kb.vocabulary import Role
 
@@ -43,6 +47,8 @@ class MotifSearch:
         self._ids = np.array(ids, np.int64)
         self._screens = Screens(len(ids))
         self._screens.append(packed)
+        self._molecules = MoleculeStore()
+        self._held = np.full(len(ids), -1, np.int64)
 
     def codes(self, smarts: str, roles: Sequence[Role]) -> frozenset[str]:
         """Return the codes of the standing runs in which a structure of some role holds a motif.
@@ -51,10 +57,20 @@ class MotifSearch:
             QueryError: the motif cannot be searched.
         """
         query = parse_query(smarts)
-        possible = self._ids[self._screens.rows_that_may_match(query.mol)].tolist()
-        hits = [
-            structure_id
-            for structure_id, binary in molecules_of(self._book, possible).items()
-            if find_match(query, Chem.Mol(binary)) is not None  # type: ignore[call-overload]
-        ]
-        return frozenset(codes_with(self._book, hits, [str(role) for role in roles]))
+        possible = self._screens.rows_that_may_match(query.mol)
+        held = self._hold(possible)
+        possible, held = possible[held >= 0], held[held >= 0]
+        unruly = self._screens.has_bit(KEY_UNRULY)[possible]
+        order = np.argsort(held)  # the store wants its rows ascending
+        matched = self._molecules.match(query, held[order], unruly=unruly[order])
+        hits = possible[np.isin(held, matched.rows)]
+        return frozenset(codes_with(self._book, self._ids[hits].tolist(), [str(role) for role in roles]))
+
+    def _hold(self, rows: NDArray[np.int64]) -> NDArray[np.int64]:
+        """Return where the molecules of some rows are held, after reading those that are not yet; -1 = gone since."""
+        new = rows[self._held[rows] < 0]
+        read = molecules_of(self._book, self._ids[new].tolist())
+        new = new[np.isin(self._ids[new], list(read))]
+        self._held[new] = np.arange(len(new)) + len(self._molecules)
+        self._molecules.append([read[structure_id] for structure_id in self._ids[new].tolist()])
+        return self._held[rows]

@@ -55,3 +55,16 @@ def test_likeness_is_symmetric_and_bounded_and_does_not_hang_on_company(sets: li
     assert ((together >= 0) & (together <= 1 + 1e-9)).all()
     alone = [float(Flasks([other]).likeness_to(sets[0])[0]) for other in sets]
     assert np.allclose(together[0], alone)
+
+
+def test_likeness_of_single_reagents_is_that_of_rdkit() -> None:
+    """Reference: RDKit's TanimotoSimilarity of Morgan counts, radius 2."""
+    from rdkit import Chem, DataStructs
+    from rdkit.Chem import rdFingerprintGenerator
+
+    print_of = rdFingerprintGenerator.GetMorganGenerator(radius=2).GetCountFingerprint
+    names = ["CCO", "CC(C)(C)[O-]", "C1CCNCC1", "OC(=O)c1ccccc1", "[C-]#N", "CCN(CC)CC"]
+    for mine in ("CCCO", "CC(C)(C)[O-]", "Nc1ccccc1", "CCN(CC)C(C)C"):
+        own = print_of(Chem.MolFromSmiles(mine))
+        expected = [DataStructs.TanimotoSimilarity(own, print_of(Chem.MolFromSmiles(name))) for name in names]
+        assert Flasks([frozenset({name}) for name in names]).likeness_to([mine]).tolist() == pytest.approx(expected)
