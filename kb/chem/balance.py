@@ -62,6 +62,7 @@ class Workbench:
         self.pairs = 0
         self._removals: dict[object, Removal] = {}
         self._tables_held: dict[tuple[int, ...], LossTable] = {}
+        self._sums: dict[tuple[int, int], tuple[tuple[int, int], set[tuple[int, int]], LossTable]] = {}
         self._drops: dict[int, list[tuple[NucleophileSite, Removal]]] = {}
 
     @property
@@ -97,6 +98,32 @@ class Workbench:
         if known is None:
             known = self._drops[part] = [(n, self.of_nucleophile(part, n)) for n in self.nucleophiles(part)]
         return known
+
+    def attackers_within(
+        self, part: int, target: Target, removals: Sequence[Removal], gain: int
+    ) -> Iterator[int]:
+        """Yield the parts one of whose nucleophilic atoms balances an opening in `part`, elements and P alone asked.
+
+        Most do not, and what an opening takes away is the same for all of them.
+        """
+        elements, protons = -target.tally.elements, gain - target.tally.protons
+        for removal in removals:
+            elements -= removal.elements
+            protons -= removal.protons
+        for other in self.attackers:
+            held = self._sums.get((part, other))
+            if held is None:
+                parts = (part,) if other == part else (part, other)
+                tallies = [self.pool.tallies[p] for p in parts]
+                dropped = {(d.elements, d.protons) for _, d in self.drops(other)}
+                sums = (sum(t.elements for t in tallies), sum(t.protons for t in tallies))
+                held = self._sums[part, other] = (sums, dropped, self.loss_table(parts))
+            (all_elements, all_protons), dropped, table = held
+            e, p = elements + all_elements, protons + all_protons
+            for gone_elements, gone_protons in dropped:
+                if (e - gone_elements, p - gone_protons) in table:
+                    yield other
+                    break
 
     def removal(self, part: int, kept: int, gone: int, departs: frozenset[int] | None, gain: int) -> Removal:
         """Return the balance of one broken bond.

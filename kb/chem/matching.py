@@ -34,7 +34,7 @@ from kb.chem.openings import (
     find_transfers,
     find_transpositions,
 )
-from kb.chem.skeleton import Edit, Target, skeleton_summary
+from kb.chem.skeleton import Edit, Target, target_of
 from kb.vocabulary import Fate
 
 PLAIN_COST = 2
@@ -47,7 +47,7 @@ def find_matches(bench: Workbench, product: Molgraph) -> list[Match]:
         bench: the left side.
         product: one stated product.
     """
-    target = skeleton_summary(product).target
+    target = target_of(product)
     displacements = find_displacements(bench)
     additions, transfers = find_additions(bench), find_transfers(bench)
     openings = displacements + additions + transfers
@@ -124,7 +124,7 @@ def _single(bench: Workbench, target: Target, openings: Sequence[Opening]) -> li
             found.extend(_emptied(bench, target, opening))
         if opening.fate is Fate.OTHER and opening.site is not None:
             continue
-        for other in bench.attackers:
+        for other in bench.attackers_within(opening.part, target, opening.removals, opening.gain):
             found.extend(_filled(bench, target, opening, other))
     return found
 

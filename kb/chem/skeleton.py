@@ -127,8 +127,8 @@ class Pool:
         self.part_of.extend([part] * len(graph))
         self._first.extend(summary.first)
         self._second.extend(summary.second)
-        self.tallies.append(summary.target.tally)
-        self.nears.append(summary.target.near)
+        self.tallies.append(summary.tally)
+        self.nears.append(summary.near)
         return part
 
     def second_portion(self, part: int) -> int:
@@ -160,7 +160,7 @@ class Pool:
         """
         gone = {a for cut in edit.cuts for a in cut.departs}
         colours = self._colours(edit, self._overlay(edit), gone)
-        there = skeleton_summary(product).colours
+        there = refined(product)
         return [[p for p, c in enumerate(there) if c == colours.get(a)] for a in atoms]
 
     def _colours(self, edit: Edit, changed: dict[int, tuple[int, ...]], gone: set[int]) -> dict[int, int]:
@@ -220,8 +220,8 @@ class Summary:
     protons: tuple[int, ...]
     first: tuple[int, ...]
     second: tuple[int, ...]
-    colours: tuple[int, ...]
-    target: Target
+    tally: Tally
+    near: int
 
 
 def skeleton_summary(graph: Molgraph) -> Summary:
@@ -234,17 +234,26 @@ def skeleton_summary(graph: Molgraph) -> Summary:
         second = tuple(
             0 if elements[a] == 1 else hash((f, sum([first[n] for n in neighbours[a]]))) for a, f in enumerate(first)
         )
-        heavy = [a for a, z in enumerate(elements) if z != 1]
-        colours = refine({a: elements[a] for a in heavy}, {a: tuple(neighbours[a]) for a in heavy})
-        target = Target(
-            tally=Tally(sum([_CODES[z] for z in elements]), sum(protons)),
-            near=sum(second),
-            whole=_digest(colours),
-            size=len(heavy),
-        )
-        everywhere = tuple(colours.get(a, 0) for a in range(len(elements)))
-        known = Summary(protons, first, second, everywhere, target)
+        tally = Tally(sum([_CODES[z] for z in elements]), sum(protons))
+        known = Summary(protons, first, second, tally, sum(second))
         graph.memo["skeleton"] = known
+    return known  # type: ignore[return-value]
+
+
+def target_of(graph: Molgraph) -> Target:
+    """Return a graph as what an edit shall give."""
+    summary = skeleton_summary(graph)
+    heavy = {a: c for a, c in enumerate(refined(graph)) if graph.elements[a] != 1}
+    return Target(tally=summary.tally, near=summary.near, whole=_digest(heavy), size=len(heavy))
+
+
+def refined(graph: Molgraph) -> tuple[int, ...]:
+    """Return the refined colour of every atom of a graph, 0 for hydrogen, worked out once."""
+    known = graph.memo.get("colours")
+    if known is None:
+        heavy = {a: z for a, z in enumerate(graph.elements) if z != 1}
+        colours = refine(heavy, {a: tuple(graph.neighbours[a]) for a in heavy})
+        known = graph.memo["colours"] = tuple(colours.get(a, 0) for a in range(len(graph)))
     return known  # type: ignore[return-value]
 
 

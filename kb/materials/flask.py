@@ -190,10 +190,10 @@ def _named(facts: Reagent, component: Component) -> Ingredient:
 def _add_fragments(got: _Gathering, fragments: Iterable[str]) -> None:
     """Add the fragments of a scheme, those already recorded left out, each once."""
     catalogue = load_catalogue()
-    known = catalogue.ions.keys() | catalogue.reagent_by_smiles.keys() | catalogue.solvent_by_smiles.keys()
+    known = (catalogue.ions, catalogue.reagent_by_smiles, catalogue.solvent_by_smiles)
     canonical: list[str] = []
     for text in fragments:
-        smiles = text if text in known else canonical_smiles(text)
+        smiles = text if any(text in names for names in known) else canonical_smiles(text)
         if smiles is None:
             got.has_unknown = True
         else:

@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 from rdkit import Chem
 
 from kb.chem.molgraph import Molgraph, molgraph_of
-from kb.chem.skeleton import Cut, Edit, Pool, skeleton_summary
+from kb.chem.skeleton import Cut, Edit, Pool, target_of
 from kb.chem.structure import canonical_smiles
 
 MOLECULES = [
@@ -39,7 +39,7 @@ def test_two_skeletons_have_one_hash_exactly_when_rdkit_writes_one_text() -> Non
     for first in MOLECULES:
         for second in MOLECULES:
             same = bare_text(first) == bare_text(second)
-            hashes = [skeleton_summary(molgraph_of(canonical_smiles(s))).target.whole for s in (first, second)]
+            hashes = [target_of(molgraph_of(canonical_smiles(s))).whole for s in (first, second)]
             assert (hashes[0] == hashes[1]) == same, (first, second)
 
 
@@ -51,13 +51,13 @@ def test_tautomers_salts_and_resonance_forms_share_skeleton_and_balance() -> Non
         ("CC(=O)O", "CC(=O)[O-]"),
         ("CN=[N+]=[N-]", "C[N-][N+]#N"),
     ]:
-        a, b = (skeleton_summary(molgraph_of(canonical_smiles(s))).target for s in (first, second))
+        a, b = (target_of(molgraph_of(canonical_smiles(s))) for s in (first, second))
         assert (a.whole, a.tally) == (b.whole, b.tally)
 
 
 def test_a_redox_pair_differs_in_balance_by_two() -> None:
     for reduced, oxidised in [("CC(C)O", "CC(C)=O"), ("CC", "C=C"), ("CCO", "CC=O")]:
-        a, b = (skeleton_summary(molgraph_of(canonical_smiles(s))).target for s in (reduced, oxidised))
+        a, b = (target_of(molgraph_of(canonical_smiles(s))) for s in (reduced, oxidised))
         assert a.tally.protons - b.tally.protons == 2
         assert a.whole == b.whole
 
@@ -70,7 +70,7 @@ def test_a_displacement_balances_and_the_wrong_regioisomer_does_not() -> None:
     cut = Cut(carbon, bromine, frozenset({bromine}), -1)
     edit = Edit((0, 1), (cut,), ((carbon, pool.starts[1]),))
     for smiles, expected in [("CC(N=[N+]=[N-])CC", True), ("CCCCN=[N+]=[N-]", False)]:
-        target = skeleton_summary(molgraph_of(canonical_smiles(smiles))).target
+        target = target_of(molgraph_of(canonical_smiles(smiles)))
         assert pool.makes(edit, target) is expected
 
 
@@ -80,4 +80,4 @@ def test_the_hash_does_not_depend_on_the_numbering(smiles: str, shuffler: random
     order = list(range(mol.GetNumAtoms()))
     shuffler.shuffle(order)
     other = Chem.RenumberAtoms(mol, order)
-    assert skeleton_summary(Molgraph("", other)).target == skeleton_summary(Molgraph("", mol)).target
+    assert target_of(Molgraph("", other)) == target_of(Molgraph("", mol))
