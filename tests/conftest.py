@@ -7,6 +7,10 @@ from pathlib import Path
 import pytest
 from hypothesis import HealthCheck, settings
 
+from tests.engines import books, schemas, server
+
+__all__ = ["books", "schemas", "server"]
+
 settings.register_profile(
     "suite",
     deadline=None,

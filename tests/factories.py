@@ -2,6 +2,7 @@
 
     a_run(note="oiled out")          one run, plausible, with the fields given changed
     a_book(tmp_path)                 a new empty store in a file under tmp_path, without chemistry
+    a_book(books)                    the same on either engine (see `tests/engines.py`)
     a_book(tmp_path, **CHEMISTRY)    the same with stand-ins for derive, dissect and encode (no RDKit needed)
     runs()                           hypothesis strategy: any run that a book can keep
     ticking_clock()                  moments one minute apart, from a fixed one
@@ -29,6 +30,7 @@ from kb.record.outcome import Failure, Outcome, ProductSeen
 from kb.record.run import Attachment, Run
 from kb.store.store import Store
 from kb.vocabulary import Cause, Fate, Method, Role, Verdict
+from tests.engines import Books, Files
 
 START = dt.datetime(2024, 5, 17, 9, 30, tzinfo=dt.UTC)
 
@@ -123,9 +125,10 @@ CHEMISTRY: dict[str, Any] = {
 }
 
 
-def a_book(tmp_path: Path, name: str = "book.sidepath", **options: Any) -> Store:
+def a_book(place: Path | Books, name: str = "book.sidepath", **options: Any) -> Store:
     """Return a new empty store; close it, or use it as a context manager."""
-    return Store.create(tmp_path / name, **{"clock": ticking_clock(), **options})
+    place = Files(place) if isinstance(place, Path) else place
+    return place.make(name, **{"clock": ticking_clock(), **options})
 
 
 texts = st.text(st.characters(blacklist_categories=("Cs",), blacklist_characters="\x00"), max_size=30)

@@ -1,8 +1,8 @@
 """A whole book carried over to another place: from a file to a server, from a server to a file, or between two files.
 
 Every table goes along as it is: runs, history with its hashes, derived facts, drafts, attached files. The book keeps
-its identity, so that the old place and the new one can still be merged. It is read as of one moment while others use it,
-and the old book is left as it was. At the new place the book is there whole or not at all: it is written in the
+its identity, so that the old place and the new one can still be merged. It is read as of one moment while others use
+it, and the old book is left as it was. At the new place the book is there whole or not at all: it is written in the
 transaction, or the file, that makes it, read back, and compared row by row before it counts. It refuses a place where
 something is already.
 """

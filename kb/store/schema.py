@@ -104,7 +104,7 @@ def _names_in(connection: sa.Connection) -> list[str]:
 
 def _lay_out(connection: sa.Connection) -> None:
     """Make the tables, without any row but the name of their form."""
-    Row.metadata.create_all(connection)
+    Row.metadata.create_all(connection, checkfirst=False)
     words.create(connection)
     connection.exec_driver_sql(
         "CREATE TABLE alembic_version (version_num VARCHAR(32) NOT NULL, "

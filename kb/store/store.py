@@ -22,7 +22,7 @@ from uuid import UUID
 from kb.errors import RecordConflict, StoreError
 from kb.progress import Progress, Silent
 from kb.record.run import Run
-from kb.store import amending, facts, lineage, schema
+from kb.store import amending, facts, lineage, schema, words
 from kb.store import engine as engines
 from kb.store.answering import Answers
 from kb.store.curation import Acknowledgements, Attachments, Drafts, HouseRules
@@ -218,11 +218,13 @@ class Store(Answers):
     # What was derived
 
     def rebuild(self, progress: Progress | None = None, batch: int = 200) -> int:
-        """Make anew what another recipe made; return how many runs were read again."""
+        """Make anew what another recipe made, and a word index that lags; return how many runs were read again."""
         if self.book.deriving.derive is None:
             raise StoreError(
                 "The book was opened without anything to derive facts with.", "Open it with `derive`."
             )
+        with self.book.writing() as connection:
+            words.mend(connection)
         return facts.rebuild(self.book.writing, self.book.deriving, progress or Silent(), batch)
 
 

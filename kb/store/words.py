@@ -68,6 +68,12 @@ def rebuild(connection: sa.Connection) -> None:
     index_of(connection).rebuild(connection)
 
 
+def mend(connection: sa.Connection) -> None:
+    """Make the index anew where it does not say what the record says."""
+    if not index_of(connection).is_consistent(connection):
+        rebuild(connection)
+
+
 def index_of(connection: sa.Connection) -> WordIndex:
     """Return the word index of the engine that a connection leads to."""
     return dialect_of(connection).words

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import datetime as dt
 from dataclasses import replace
-from pathlib import Path
 
 import pytest
 
@@ -12,11 +11,12 @@ from kb.errors import InvalidRecord, RecordConflict, RecordNotFound
 from kb.quantity import Temperature
 from kb.store.runs import RunFilter
 from kb.store.values import Change
+from tests.engines import Books
 from tests.factories import START, a_book, a_run
 
 
-def test_an_amendment_keeps_old_value_who_when_and_why(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_an_amendment_keeps_old_value_who_when_and_why(books: Books) -> None:
+    with a_book(books) as store:
         first = store.add(a_run(note="yield read off the wrong flask"), "MK")
         amended = store.amend(
             "R-0001", {"note": "", "outcome.isolated_yield_pct": 18.0}, who="TB", why="read the balance again"
@@ -36,8 +36,8 @@ def test_an_amendment_keeps_old_value_who_when_and_why(tmp_path: Path) -> None:
         assert added.after["note"] == "yield read off the wrong flask"
 
 
-def test_whole_parts_can_be_replaced(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_whole_parts_can_be_replaced(books: Books) -> None:
+    with a_book(books) as store:
         store.add(a_run(), "MK")
         warm = Temperature(text="40 °C", start_c=40.0, end_c=40.0)
         run = store.amend("1", {"conditions.temperature": warm, "date": None}, "MK", "looked it up")
@@ -48,8 +48,8 @@ def test_whole_parts_can_be_replaced(tmp_path: Path) -> None:
         assert [c.field for c in store.history("1")[-1].changed] == ["conditions.solvents", "project"]
 
 
-def test_who_saw_an_older_revision_is_refused(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_who_saw_an_older_revision_is_refused(books: Books) -> None:
+    with a_book(books) as store:
         seen = store.add(a_run(), "MK")
         store.amend("1", {"note": "first"}, "TB", "typo", expected_revision=1)
         with pytest.raises(RecordConflict, match="revision 1"):
@@ -60,8 +60,8 @@ def test_who_saw_an_older_revision_is_refused(tmp_path: Path) -> None:
         assert len(store.history("1")) == 2
 
 
-def test_a_withdrawn_run_is_left_out_but_stays(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_a_withdrawn_run_is_left_out_but_stays(books: Books) -> None:
+    with a_book(books) as store:
         store.add(a_run(), "MK")
         store.add(a_run(), "MK")
         gone = store.withdraw("1", "wrong bottle", "MK")
@@ -99,9 +99,9 @@ def test_a_withdrawn_run_is_left_out_but_stays(tmp_path: Path) -> None:
     ],
 )
 def test_what_cannot_be_amended_is_refused_and_leaves_no_trace(
-    tmp_path: Path, changes: dict[str, object], who: str, why: str
+    books: Books, changes: dict[str, object], who: str, why: str
 ) -> None:
-    with a_book(tmp_path) as store:
+    with a_book(books) as store:
         before = store.add(a_run(), "MK")
         with pytest.raises(InvalidRecord):
             store.amend("1", changes, who, why)
@@ -109,13 +109,13 @@ def test_what_cannot_be_amended_is_refused_and_leaves_no_trace(
         assert store.tip() == 1
 
 
-def test_an_unknown_run_cannot_be_amended(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store, pytest.raises(RecordNotFound):
+def test_an_unknown_run_cannot_be_amended(books: Books) -> None:
+    with a_book(books) as store, pytest.raises(RecordNotFound):
         store.amend("1", {"note": "x"}, "MK", "typo")
 
 
-def test_what_changed_since_a_point_is_told(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_what_changed_since_a_point_is_told(books: Books) -> None:
+    with a_book(books) as store:
         one, two = store.add(a_run(), "MK"), store.add(a_run(), "MK")
         tip, changed = store.changed_since(0)
         assert (tip, set(changed)) == (2, {one.run_id, two.run_id})
@@ -124,16 +124,16 @@ def test_what_changed_since_a_point_is_told(tmp_path: Path) -> None:
         assert store.changed_since(3) == (3, ())
 
 
-def test_a_change_made_meanwhile_is_built_upon(tmp_path: Path) -> None:
+def test_a_change_made_meanwhile_is_built_upon(books: Books) -> None:
     """Somebody amends another field between the reading and the writing of an amendment: both stand."""
-    with a_book(tmp_path) as store:
+    with a_book(books) as store:
         store.add(a_run(), "MK")
         derive_calls = []
 
         def meddle(run: object) -> None:
             derive_calls.append(run)
             if len(derive_calls) == 1:
-                with store.open(tmp_path / "book.sidepath") as other:
+                with store.open(books / "book.sidepath") as other:
                     other.amend("1", {"project": "meddled"}, "TB", "meanwhile")
 
         import kb.store.amending as amending

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from pathlib import Path
 
 import pytest
 
@@ -11,6 +10,7 @@ from kb.errors import InvalidRecord, RecordConflict, RecordNotFound
 from kb.store.curation import LARGEST_ATTACHMENT_BYTES, safe_file_name
 from kb.store.values import HouseRule
 from kb.vocabulary import Severity
+from tests.engines import Books
 from tests.factories import START, a_book, a_run
 
 RULE = HouseRule(
@@ -24,8 +24,8 @@ RULE = HouseRule(
 )
 
 
-def test_a_rule_gets_an_id_that_every_book_would_give_it(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store, a_book(tmp_path, "other.sidepath") as other:
+def test_a_rule_gets_an_id_that_every_book_would_give_it(books: Books) -> None:
+    with a_book(books) as store, a_book(books, "other.sidepath") as other:
         kept = store.house_rules.add(RULE)
         assert kept == replace(RULE, rule_id=kept.rule_id, created_at=START)
         assert kept.rule_id.startswith("no-warm-hcl-beside-a-tert-butyl-ether-")
@@ -36,8 +36,8 @@ def test_a_rule_gets_an_id_that_every_book_would_give_it(tmp_path: Path) -> None
             store.house_rules.add(RULE)
 
 
-def test_a_retired_rule_stays_with_the_reason(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_a_retired_rule_stays_with_the_reason(books: Books) -> None:
+    with a_book(books) as store:
         kept = store.house_rules.add(RULE)
         retired = store.house_rules.retire(kept.rule_id, "TB", "three counterexamples")
         assert retired.is_retired and retired.retired_why == "three counterexamples"
@@ -53,13 +53,13 @@ def test_a_retired_rule_stays_with_the_reason(tmp_path: Path) -> None:
 @pytest.mark.parametrize(
     "changes", [{"title": " "}, {"why": ""}, {"author": ""}, {"when": "a\x00b"}, {"motif": "\ud800"}]
 )
-def test_a_rule_without_title_reason_or_author_is_refused(tmp_path: Path, changes: dict[str, str]) -> None:
-    with a_book(tmp_path) as store, pytest.raises(InvalidRecord):
+def test_a_rule_without_title_reason_or_author_is_refused(books: Books, changes: dict[str, str]) -> None:
+    with a_book(books) as store, pytest.raises(InvalidRecord):
         store.house_rules.add(replace(RULE, **changes))  # type: ignore[arg-type]
 
 
-def test_an_acknowledgement_says_who_and_why(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_an_acknowledgement_says_who_and_why(books: Books) -> None:
+    with a_book(books) as store:
         made = store.acknowledgements.add("n-boc-strong-acid", "CC>>CO", "MK", "0 °C, ten minutes")
         store.acknowledgements.add("n-boc-strong-acid", "other", "MK", "cold")
         assert store.acknowledgements.list("CC>>CO") == (made,)
@@ -68,8 +68,8 @@ def test_an_acknowledgement_says_who_and_why(tmp_path: Path) -> None:
             store.acknowledgements.add("n-boc-strong-acid", "CC>>CO", "MK", "  ")
 
 
-def test_a_draft_comes_back_as_it_was_left(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_a_draft_comes_back_as_it_was_left(books: Books) -> None:
+    with a_book(books) as store:
         left = {"scheme": "CCBr>>", "integrals": [1.0, None, "2,5"], "note": "half a \x00 \ud800 paste"}
         store.drafts.save("form", {"scheme": "C"})
         store.drafts.save("form", left)
@@ -84,8 +84,8 @@ def test_a_draft_comes_back_as_it_was_left(tmp_path: Path) -> None:
             store.drafts.save("form", {"when": object()})
 
 
-def test_a_draft_does_not_count_as_a_change_of_the_book(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_a_draft_does_not_count_as_a_change_of_the_book(books: Books) -> None:
+    with a_book(books) as store:
         before = store.data_version()
         store.drafts.save("form", {"scheme": "C"})
         store.drafts.discard("form")
@@ -94,8 +94,8 @@ def test_a_draft_does_not_count_as_a_change_of_the_book(tmp_path: Path) -> None:
         assert store.data_version() > before
 
 
-def test_files_are_kept_once_and_named_by_runs(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_files_are_kept_once_and_named_by_runs(books: Books) -> None:
+    with a_book(books) as store:
         store.add(a_run(), "MK")
         store.add(a_run(), "MK")
         first = store.attachments.attach("1", "/some/folder/nmr.pdf", b"%PDF", "MK", "spectrum")
@@ -111,8 +111,8 @@ def test_files_are_kept_once_and_named_by_runs(tmp_path: Path) -> None:
             store.attachments.get("0" * 64)
 
 
-def test_a_file_too_large_is_refused(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store, pytest.raises(InvalidRecord, match="51 MB"):
+def test_a_file_too_large_is_refused(books: Books) -> None:
+    with a_book(books) as store, pytest.raises(InvalidRecord, match="51 MB"):
         store.attachments.put("raw.zip", b"\x00" * (LARGEST_ATTACHMENT_BYTES + 2**20))
 
 

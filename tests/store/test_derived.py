@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Iterable
-from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -17,11 +16,12 @@ from kb.record.run import Run
 from kb.store.checking import verify
 from kb.store.store import Store
 from kb.vocabulary import Fate
+from tests.engines import Books
 from tests.factories import CHEMISTRY, a_book, a_run, stand_in_derive, stand_in_encode
 
 
-def test_columns_hold_every_standing_run_with_its_facts(tmp_path: Path) -> None:
-    with a_book(tmp_path, **CHEMISTRY) as store:
+def test_columns_hold_every_standing_run_with_its_facts(books: Books) -> None:
+    with a_book(books, **CHEMISTRY) as store:
         kept = [store.add(a_run(scheme=f"C{'C' * n}Br>>C{'C' * n}O"), "MK") for n in range(4)]
         store.withdraw("2", "wrong flask", "MK")
         columns = store.derived_columns()
@@ -41,8 +41,8 @@ def test_columns_hold_every_standing_run_with_its_facts(tmp_path: Path) -> None:
         assert {len(column) for column in columns.values()} == {3}
 
 
-def test_shares_are_summed_by_fate_and_missing_ones_are_not_zero(tmp_path: Path) -> None:
-    with a_book(tmp_path, **CHEMISTRY) as store:
+def test_shares_are_summed_by_fate_and_missing_ones_are_not_zero(books: Books) -> None:
+    with a_book(books, **CHEMISTRY) as store:
         products = (
             ProductSeen(fate=Fate.ELIMINATION, share=0.25),
             ProductSeen(fate=Fate.ELIMINATION, share=0.25),
@@ -62,16 +62,16 @@ def test_shares_are_summed_by_fate_and_missing_ones_are_not_zero(tmp_path: Path)
         assert np.isnan(shares[1, place(Fate.OTHER)]) and np.isnan(shares[1, place(Fate.SUBSTITUTION)])
 
 
-def test_an_empty_book_gives_empty_columns(tmp_path: Path) -> None:
-    with a_book(tmp_path, **CHEMISTRY) as store:
+def test_an_empty_book_gives_empty_columns(books: Books) -> None:
+    with a_book(books, **CHEMISTRY) as store:
         columns = store.derived_columns()
         assert {len(column) for column in columns.values()} == {0}
         assert columns["centre_bits"].shape == (0, 4) and columns["shares"].shape == (0, len(Fate))
         assert list(store.structures()) == [] and len(store.places()["run_key"]) == 0
 
 
-def test_structures_are_kept_once_with_what_the_index_wants(tmp_path: Path) -> None:
-    with a_book(tmp_path, **CHEMISTRY) as store:
+def test_structures_are_kept_once_with_what_the_index_wants(books: Books) -> None:
+    with a_book(books, **CHEMISTRY) as store:
         store.add(a_run(scheme="CCBr.O>>CCO"), "MK")
         store.add(a_run(scheme="CCBr>>CCO"), "MK")
         (batch,) = store.structures()
@@ -97,8 +97,8 @@ def test_structures_are_kept_once_with_what_the_index_wants(tmp_path: Path) -> N
         assert [[s.smiles for s in more] for more in store.structures(after=last)] == [["CCI"]]
 
 
-def test_batches_follow_one_another(tmp_path: Path) -> None:
-    with a_book(tmp_path, **CHEMISTRY) as store:
+def test_batches_follow_one_another(books: Books) -> None:
+    with a_book(books, **CHEMISTRY) as store:
         store.add_many([a_run(scheme=f"C{'C' * n}Br") for n in range(7)], "MK")
         ids = [[s.structure_id for s in batch] for batch in store.structures(batch=3)]
         assert [len(batch) for batch in ids] == [3, 3, 1]
@@ -106,8 +106,8 @@ def test_batches_follow_one_another(tmp_path: Path) -> None:
         assert every == sorted(every)
 
 
-def test_an_amendment_derives_anew(tmp_path: Path) -> None:
-    with a_book(tmp_path, **CHEMISTRY) as store:
+def test_an_amendment_derives_anew(books: Books) -> None:
+    with a_book(books, **CHEMISTRY) as store:
         run = store.add(a_run(scheme="CCBr>>CCO"), "MK")
         store.amend("1", {"scheme": "CCCBr>>CCCO"}, "MK", "one carbon more")
         assert list(store.derived_columns()["substrate"]) == ["CCCBr"]
@@ -115,24 +115,24 @@ def test_an_amendment_derives_anew(tmp_path: Path) -> None:
         assert len(store.places()["role"]) == 2
 
 
-def test_only_missing_structures_are_encoded_and_before_the_lock(tmp_path: Path) -> None:
+def test_only_missing_structures_are_encoded_and_before_the_lock(books: Books) -> None:
     encoded: list[str] = []
-    with a_book(tmp_path) as watched:
+    with a_book(books) as watched:
 
         def encode(smiles: str) -> Any:
             encoded.append(smiles)
-            with Store.open(tmp_path / "book.sidepath", wait_s=0.0) as other, other.book.writing():
+            with Store.open(books / "book.sidepath", wait_s=0.0) as other, other.book.writing():
                 pass  # nobody holds the lock while chemistry is done
             return stand_in_encode(smiles)
 
         watched.close()
-        with Store.open(tmp_path / "book.sidepath", **{**CHEMISTRY, "encode": encode}) as store:
+        with Store.open(books / "book.sidepath", **{**CHEMISTRY, "encode": encode}) as store:
             store.add(a_run(scheme="CCBr>>CCO"), "MK")
             store.add(a_run(scheme="CCI>>CCO"), "MK")
     assert sorted(encoded) == ["CCBr", "CCI", "CCO"]
 
 
-def test_another_recipe_is_noticed_and_rebuilt(tmp_path: Path) -> None:
+def test_another_recipe_is_noticed_and_rebuilt(books: Books) -> None:
     def derive(run: Run) -> DerivedFacts:
         digest = hashlib.sha256(run.scheme.encode()).digest()
         return DerivedFacts(run_id=run.run_id, recipe="stand-in/2", confidence="inferred", centre_bits=digest)
@@ -141,11 +141,11 @@ def test_another_recipe_is_noticed_and_rebuilt(tmp_path: Path) -> None:
         return [("substrate", 0, run.scheme.lower())]
 
     later = {**CHEMISTRY, "derive": derive, "dissect": dissect, "recipe": "stand-in/2"}
-    with a_book(tmp_path, **CHEMISTRY) as store:
+    with a_book(books, **CHEMISTRY) as store:
         for n in range(5):
             store.add(a_run(scheme=f"{'C' * n}CBr"), "MK")
         runs = list(store.iter_runs())
-    with Store.open(tmp_path / "book.sidepath", **later) as store:
+    with Store.open(books / "book.sidepath", **later) as store:
         assert store.stale_count() == 5
         with pytest.raises(IndexStale):
             store.derived_columns()
@@ -161,8 +161,8 @@ def test_another_recipe_is_noticed_and_rebuilt(tmp_path: Path) -> None:
         assert store.rebuild() == 0
 
 
-def test_no_structure_id_is_ever_given_twice(tmp_path: Path) -> None:
-    with a_book(tmp_path, **CHEMISTRY) as store:
+def test_no_structure_id_is_ever_given_twice(books: Books) -> None:
+    with a_book(books, **CHEMISTRY) as store:
         store.add(a_run(scheme="CCBr"), "MK")
         store.amend("1", {"scheme": "CCI"}, "MK", "typo")
         (before,) = store.structures()
@@ -174,37 +174,37 @@ def test_no_structure_id_is_ever_given_twice(tmp_path: Path) -> None:
         assert all(old.get(s.structure_id, s.smiles) == s.smiles for s in after)
 
 
-def test_runs_added_without_chemistry_are_stale_not_wrong(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_runs_added_without_chemistry_are_stale_not_wrong(books: Books) -> None:
+    with a_book(books) as store:
         store.add(a_run(), "MK")
         with pytest.raises(StoreError):
             store.rebuild()
-    with Store.open(tmp_path / "book.sidepath", **CHEMISTRY) as store:
+    with Store.open(books / "book.sidepath", **CHEMISTRY) as store:
         with pytest.raises(IndexStale):
             store.derived_columns()
         assert store.rebuild() == 1
         assert len(store.derived_columns()["code"]) == 1
 
 
-def test_a_run_whose_chemistry_cannot_be_read_is_kept_as_unresolved(tmp_path: Path) -> None:
+def test_a_run_whose_chemistry_cannot_be_read_is_kept_as_unresolved(books: Books) -> None:
     def refuse(_: object) -> Any:
         raise StructureError("no structure")
 
     broken = {"derive": refuse, "dissect": refuse, "encode": refuse, "recipe": "stand-in/1"}
-    with a_book(tmp_path, **broken) as store:
+    with a_book(books, **broken) as store:
         run = store.add(a_run(scheme="what was in the flask"), "MK")
         assert store.get("1") == run
         assert list(store.derived_columns()["confidence"]) == ["unresolved"]
         assert len(store.places()["role"]) == 0
 
 
-def test_a_structure_that_cannot_be_encoded_has_no_blobs(tmp_path: Path) -> None:
+def test_a_structure_that_cannot_be_encoded_has_no_blobs(books: Books) -> None:
     def encode(smiles: str) -> Any:
         if smiles == "CCO":
             raise StructureError("no structure")
         return stand_in_encode(smiles)
 
-    with a_book(tmp_path, **{**CHEMISTRY, "encode": encode}) as store:
+    with a_book(books, **{**CHEMISTRY, "encode": encode}) as store:
         store.add(a_run(scheme="CCBr>>CCO"), "MK")
         blobs = {s.smiles: s.morgan for batch in store.structures() for s in batch}
         assert blobs["CCO"] is None and blobs["CCBr"] is not None

@@ -4,10 +4,8 @@ from __future__ import annotations
 
 import datetime as dt
 import itertools
-import sqlite3
-from contextlib import ExitStack, closing
+from contextlib import ExitStack
 from dataclasses import replace
-from pathlib import Path
 from typing import Any
 
 import pytest
@@ -17,30 +15,31 @@ from hypothesis import strategies as st
 
 from kb.errors import InvalidRecord, RecordConflict, StoreDamaged, StoreMissing
 from kb.store.checking import verify
-from kb.store.copying import copy_book
 from kb.store.merging import merge
+from kb.store.moving import copy_all
 from kb.store.runs import RunFilter
 from kb.store.store import Store
 from kb.store.values import HouseRule
 from kb.vocabulary import Severity
+from tests.engines import Books, Files
 from tests.factories import CHEMISTRY, START, a_book, a_run, ticking_clock
 
 ALL = RunFilter(with_withdrawn=True)
 
 
-def path_of(store: Store) -> Path:
-    assert store.book.address.path is not None
-    return store.book.address.path
+def address_of(store: Store) -> str:
+    return store.book.address.for_opening
 
 
-def two_copies(tmp_path: Path, runs: int = 3) -> tuple[Store, Store]:
-    """Return the group's book and a copy on a laptop, whose clock is five minutes late."""
-    group = a_book(tmp_path, "group.sidepath", **CHEMISTRY)
+def two_copies(books: Books, runs: int = 3) -> tuple[Store, Store]:
+    """Return the group's book, on either engine, and a copy in a laptop's file, whose clock goes an hour late."""
+    group = a_book(books, "group.sidepath", **CHEMISTRY)
     for n in range(runs):
         group.add(a_run(note=f"run {n}"), "MK")
-    copy_book(path_of(group), tmp_path / "laptop.sidepath")
+    laptop = books.folder / "laptop.sidepath"
+    copy_all(group, laptop)
     late = ticking_clock(START + dt.timedelta(hours=1))
-    return group, Store.open(tmp_path / "laptop.sidepath", **CHEMISTRY, clock=late)
+    return group, Store.open(laptop, **CHEMISTRY, clock=late)
 
 
 def content(store: Store) -> tuple[Any, ...]:
@@ -55,12 +54,12 @@ def assert_sound(*stores: Store) -> None:
         assert [c for c in verify(store, sample=None) if not c.ok] == []
 
 
-def test_runs_of_both_are_in_the_merged_book_once(tmp_path: Path) -> None:
-    group, laptop = two_copies(tmp_path)
+def test_runs_of_both_are_in_the_merged_book_once(books: Books) -> None:
+    group, laptop = two_copies(books)
     with group, laptop:
         away = laptop.add(a_run(note="away"), "TB")
         laptop.amend("1", {"note": "run 0, weighed again"}, "TB", "balance")
-        report = merge(group, path_of(laptop), who="MK")
+        report = merge(group, address_of(laptop), who="MK")
         assert (report.added, report.updated, report.same) == (1, 1, 2)
         assert report.conflicts == () and report.renamed == ()
         assert group.get(away.run_id) == away
@@ -68,7 +67,7 @@ def test_runs_of_both_are_in_the_merged_book_once(tmp_path: Path) -> None:
         made, merged = group.events()
         assert (made.action, merged.action, merged.who) == ("made", "merged", "MK")
         assert "1 runs added, 1 changed" in merged.detail
-        again = merge(group, path_of(laptop), who="MK")
+        again = merge(group, address_of(laptop), who="MK")
         assert len(group.events()) == 2
         assert (again.added, again.updated, again.same) == (0, 0, 4)
         assert [hit.code for hit in group.words("weighed")] == ["R-0001"]
@@ -76,84 +75,84 @@ def test_runs_of_both_are_in_the_merged_book_once(tmp_path: Path) -> None:
         assert_sound(group, laptop)
 
 
-def test_a_merge_with_nothing_new_changes_nothing(tmp_path: Path) -> None:
-    group, laptop = two_copies(tmp_path)
+def test_a_merge_with_nothing_new_changes_nothing(books: Books) -> None:
+    group, laptop = two_copies(books)
     with group, laptop:
         version = group.data_version()
-        merge(group, path_of(laptop), who="MK")
+        merge(group, address_of(laptop), who="MK")
         assert group.data_version() == version
 
 
-def test_different_fields_changed_on_both_sides_both_stand(tmp_path: Path) -> None:
-    group, laptop = two_copies(tmp_path)
+def test_different_fields_changed_on_both_sides_both_stand(books: Books) -> None:
+    group, laptop = two_copies(books)
     with group, laptop:
         group.amend("1", {"outcome.isolated_yield_pct": 80.0}, "MK", "dried")
         laptop.amend("1", {"project": "thiols"}, "TB", "belongs there")
-        assert merge(group, path_of(laptop), who="MK").conflicts == ()
+        assert merge(group, address_of(laptop), who="MK").conflicts == ()
         run = group.get("1")
         assert (run.outcome.isolated_yield_pct, run.project, run.revision) == (80.0, "thiols", 3)
 
 
-def test_the_same_field_changed_on_both_sides_is_a_conflict_until_it_is_settled(tmp_path: Path) -> None:
-    group, laptop = two_copies(tmp_path)
+def test_the_same_field_changed_on_both_sides_is_a_conflict_until_it_is_settled(books: Books) -> None:
+    group, laptop = two_copies(books)
     with group, laptop:
         group.amend("1", {"outcome.isolated_yield_pct": 80.0}, "MK", "dried")
         laptop.amend("1", {"outcome.isolated_yield_pct": 64.0}, "TB", "weighed again")
-        (conflict,) = merge(group, path_of(laptop), who="MK").conflicts
+        (conflict,) = merge(group, address_of(laptop), who="MK").conflicts
         assert (conflict.code, conflict.field) == ("R-0001", "outcome.isolated_yield_pct")
         assert [(c.value, c.who) for c in conflict.claims] == [(64.0, "TB"), (80.0, "MK")]
         assert group.get("1").outcome.isolated_yield_pct == 64.0  # the later change stands
-        assert merge(laptop, path_of(group), who="TB").conflicts == (conflict,)
+        assert merge(laptop, address_of(group), who="TB").conflicts == (conflict,)
         group.amend("1", {"note": "other field"}, "MK", "typo")
         assert group.conflicts() == (conflict,)
         settled = group.settle("1", {"outcome.isolated_yield_pct": 80.0}, "AB", "the wet weight was read first")
         assert settled.outcome.isolated_yield_pct == 80.0
         assert group.conflicts() == ()
-        assert merge(laptop, path_of(group), who="TB").conflicts == ()
+        assert merge(laptop, address_of(group), who="TB").conflicts == ()
         assert laptop.get("1") == group.get("1")
         assert len(group.history("1")) == 5
         assert_sound(group, laptop)
 
 
-def test_a_conflict_can_be_settled_as_it_stands(tmp_path: Path) -> None:
-    group, laptop = two_copies(tmp_path)
+def test_a_conflict_can_be_settled_as_it_stands(books: Books) -> None:
+    group, laptop = two_copies(books)
     with group, laptop:
         group.amend("1", {"note": "a"}, "MK", "x")
         laptop.amend("1", {"note": "b"}, "TB", "x")
-        merge(group, path_of(laptop), who="MK")
+        merge(group, address_of(laptop), who="MK")
         assert group.settle("1", {}, "AB", "the later one is right").note == "b"
         assert group.conflicts() == ()
         with pytest.raises(InvalidRecord):
             group.settle("1", {}, "AB", "again")
 
 
-def test_the_same_change_on_both_sides_is_no_conflict(tmp_path: Path) -> None:
-    group, laptop = two_copies(tmp_path)
+def test_the_same_change_on_both_sides_is_no_conflict(books: Books) -> None:
+    group, laptop = two_copies(books)
     with group, laptop:
         group.amend("1", {"note": "the same"}, "MK", "x")
         laptop.amend("1", {"note": "the same"}, "TB", "y")
-        assert merge(group, path_of(laptop), who="MK").conflicts == ()
+        assert merge(group, address_of(laptop), who="MK").conflicts == ()
         assert group.get("1").note == "the same"
 
 
-def test_a_withdrawal_meets_an_amendment(tmp_path: Path) -> None:
-    group, laptop = two_copies(tmp_path)
+def test_a_withdrawal_meets_an_amendment(books: Books) -> None:
+    group, laptop = two_copies(books)
     with group, laptop:
         group.withdraw("1", "wrong flask", "MK")
         laptop.amend("1", {"note": "b"}, "TB", "x")
-        merge(group, path_of(laptop), who="MK")
+        merge(group, address_of(laptop), who="MK")
         run = group.get("1")
         assert (run.withdrawn_why, run.note) == ("wrong flask", "b")
         assert group.count() == 2
 
 
-def test_runs_that_got_the_same_number_are_told_apart_for_good(tmp_path: Path) -> None:
-    group, laptop = two_copies(tmp_path)
+def test_runs_that_got_the_same_number_are_told_apart_for_good(books: Books) -> None:
+    group, laptop = two_copies(books)
     with group, laptop:
         here, there = group.add(a_run(note="here"), "MK"), laptop.add(a_run(note="there"), "TB")
         assert here.code == there.code == "R-0004"
-        report = merge(group, path_of(laptop), who="MK")
-        merge(laptop, path_of(group), who="TB")
+        report = merge(group, address_of(laptop), who="MK")
+        merge(laptop, address_of(group), who="TB")
         codes = {group.get(here.run_id).code, group.get(there.run_id).code}
         assert len(codes) == 2 and all(code is not None and len(code) >= 8 for code in codes)
         assert {new for _, new in report.renamed} == codes
@@ -167,22 +166,22 @@ def test_runs_that_got_the_same_number_are_told_apart_for_good(tmp_path: Path) -
         assert_sound(group, laptop)
 
 
-def test_books_that_never_met_can_be_merged(tmp_path: Path) -> None:
+def test_books_that_never_met_can_be_merged(books: Books) -> None:
     shared = a_run(note="imported into both")
-    with a_book(tmp_path, "a.sidepath") as a, a_book(tmp_path, "b.sidepath") as b:
+    with a_book(books, "a.sidepath") as a, a_book(books, "b.sidepath") as b:
         a.add(shared, "MK")
         b.add(a_run(), "TB")
         b.add(shared, "TB")
-        merge(a, path_of(b), who="MK")
-        merge(b, path_of(a), who="MK")
+        merge(a, address_of(b), who="MK")
+        merge(b, address_of(a), who="MK")
         assert content(a) == content(b)
         assert a.count() == 2 and a.conflicts() == ()
         assert len(a.history(shared.run_id)) == 2
         assert_sound(a, b)
 
 
-def test_rules_acknowledgements_and_files_come_along_and_drafts_do_not(tmp_path: Path) -> None:
-    group, laptop = two_copies(tmp_path)
+def test_rules_acknowledgements_and_files_come_along_and_drafts_do_not(books: Books) -> None:
+    group, laptop = two_copies(books)
     rule = HouseRule(
         title="No warm acid",
         motif="C(C)(C)(C)O",
@@ -199,54 +198,53 @@ def test_rules_acknowledgements_and_files_come_along_and_drafts_do_not(tmp_path:
         laptop.acknowledgements.add("n-boc-strong-acid", str(laptop.get("1").run_id), "TB", "cold and short")
         laptop.attachments.attach("1", "nmr.pdf", b"%PDF-1", "TB", "spectrum")
         laptop.drafts.save("form", {"scheme": "C"})
-        report = merge(group, path_of(laptop), who="MK")
+        report = merge(group, address_of(laptop), who="MK")
         assert (report.house_rules, report.acknowledgements, report.attachments) == (1, 1, 1)
         assert group.attachments.get(group.get("1").attachments[0].sha256) == b"%PDF-1"
         assert [r.rule_id for r in group.house_rules.list()] == [kept.rule_id]
         assert group.house_rules.get(twice.rule_id).retired_why == "too broad"
         assert group.drafts.list() == ()
-        merge(laptop, path_of(group), who="MK")
+        merge(laptop, address_of(group), who="MK")
         assert content(group) == content(laptop)
-        assert merge(group, path_of(laptop), who="MK").house_rules == 0
+        assert merge(group, address_of(laptop), who="MK").house_rules == 0
 
 
-def test_an_edited_history_is_not_taken_in(tmp_path: Path) -> None:
-    group, laptop = two_copies(tmp_path)
+def test_an_edited_history_is_not_taken_in(books: Books) -> None:
+    group, laptop = two_copies(books)
     with group, laptop:
         laptop.add(a_run(), "TB")
         laptop.close()
-        with closing(sqlite3.connect(path_of(laptop))) as raw, raw:
-            raw.execute("UPDATE history SET who = 'XX' WHERE seq = 4")
+        assert Files(books.folder).execute("laptop.sidepath", "UPDATE history SET who = 'XX' WHERE seq = 4") == 1
         before = content(group)
         with pytest.raises(StoreDamaged, match="edited"):
-            merge(group, path_of(laptop), who="MK")
+            merge(group, address_of(laptop), who="MK")
         assert content(group) == before
 
 
-def test_a_book_is_not_merged_with_itself_nor_with_none(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_a_book_is_not_merged_with_itself_nor_with_none(books: Books) -> None:
+    with a_book(books) as store:
         with pytest.raises(RecordConflict):
-            merge(store, path_of(store), who="MK")
+            merge(store, address_of(store), who="MK")
         with pytest.raises(StoreMissing):
-            merge(store, tmp_path / "nowhere.sidepath", who="MK")
+            merge(store, books / "nowhere.sidepath", who="MK")
         with pytest.raises(InvalidRecord):
-            merge(store, tmp_path / "nowhere.sidepath", who="")
+            merge(store, books / "nowhere.sidepath", who="")
 
 
-books = st.integers(0, 2)
+which = st.integers(0, 2)
 deeds = st.one_of(
-    st.tuples(st.just("add"), books, st.text("abc", max_size=3)),
+    st.tuples(st.just("add"), which, st.text("abc", max_size=3)),
     st.tuples(
         st.just("amend"),
-        books,
+        which,
         st.integers(0, 9),
         st.sampled_from(["note", "project", "series"]),
         st.sampled_from("pqr"),
     ),
-    st.tuples(st.just("withdraw"), books, st.integers(0, 9)),
-    st.tuples(st.just("reinstate"), books, st.integers(0, 9)),
-    st.tuples(st.just("settle"), books, st.integers(0, 9)),
-    st.tuples(st.just("merge"), books, books),
+    st.tuples(st.just("withdraw"), which, st.integers(0, 9)),
+    st.tuples(st.just("reinstate"), which, st.integers(0, 9)),
+    st.tuples(st.just("settle"), which, st.integers(0, 9)),
+    st.tuples(st.just("merge"), which, which),
 )
 
 
@@ -263,10 +261,10 @@ def test_any_edits_on_three_books_merged_in_any_order_come_to_the_same(
     doings: list[tuple[Any, ...]],
     steps: list[int],
     order: list[tuple[int, int]],
-    tmp_path_factory: pytest.TempPathFactory,
+    books: Books,
 ) -> None:
     """Clocks differ, stand still or run backwards; two books start as copies, the third on its own."""
-    come_to_the_same(doings, steps, order, tmp_path_factory.mktemp("merge"))
+    come_to_the_same(doings, steps, order, books.mktemp("merge"))
 
 
 @pytest.mark.soak
@@ -276,19 +274,23 @@ def test_very_many_edits_come_to_the_same(
     doings: list[tuple[Any, ...]],
     steps: list[int],
     order: list[tuple[int, int]],
-    tmp_path_factory: pytest.TempPathFactory,
+    books: Books,
 ) -> None:
-    come_to_the_same(doings, steps, order, tmp_path_factory.mktemp("merge"))
+    come_to_the_same(doings, steps, order, books.mktemp("merge"))
 
 
 def come_to_the_same(
-    doings: list[tuple[Any, ...]], steps: list[int], order: list[tuple[int, int]], folder: Path
+    doings: list[tuple[Any, ...]], steps: list[int], order: list[tuple[int, int]], books: Books
 ) -> None:
-    """Do things to three books, merge them pair by pair until all have met, and compare."""
+    """Do things to three books, merge them pair by pair until all have met, and compare.
+
+    The first is on either engine, the others are files.
+    """
+    folder = books.folder
     with ExitStack() as open_books:
-        first = open_books.enter_context(a_book(folder, "0.sidepath", clock=ticking_clock(START, steps[0])))
+        first = open_books.enter_context(a_book(books, "0.sidepath", clock=ticking_clock(START, steps[0])))
         first.add(a_run(note="base"), "MK")
-        copy_book(folder / "0.sidepath", folder / "1.sidepath")
+        copy_all(first, folder / "1.sidepath")
         second = open_books.enter_context(Store.open(folder / "1.sidepath", clock=ticking_clock(START, steps[1])))
         third = open_books.enter_context(a_book(folder, "2.sidepath", clock=ticking_clock(START, steps[2])))
         stores = [first, second, third]
@@ -297,11 +299,11 @@ def come_to_the_same(
             _do(stores, doing)
             ever |= content_ids(stores[doing[1]])
         for into, source in [*order, *order]:  # twice round, so that everything has reached everybody
-            merge(stores[into], path_of(stores[source]), who="MK")
+            merge(stores[into], address_of(stores[source]), who="MK")
         assert content(first) == content(second) == content(third)
         assert content_ids(first) >= ever
         for into, source in order:
-            report = merge(stores[into], path_of(stores[source]), who="MK")
+            report = merge(stores[into], address_of(stores[source]), who="MK")
             assert (report.added, report.updated, report.renamed) == (0, 0, ())
         assert_sound(*stores)
 
@@ -318,7 +320,7 @@ def _do(stores: list[Store], doing: tuple[Any, ...]) -> None:
         return
     if kind == "merge":
         if rest[0] != number:
-            merge(store, path_of(stores[rest[0]]), who="MK")
+            merge(store, address_of(stores[rest[0]]), who="MK")
         return
     runs = list(store.iter_runs(ALL))
     if not runs:

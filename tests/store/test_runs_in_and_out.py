@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import datetime as dt
 from dataclasses import replace
-from pathlib import Path
 from uuid import uuid4
 
 import pytest
@@ -17,23 +16,24 @@ from kb.record.run import Run
 from kb.store.runs import Material, RunFilter, Sort
 from kb.store.store import Store
 from kb.vocabulary import Verdict
+from tests.engines import Books
 from tests.factories import CHEMISTRY, START, a_book, a_run, runs
 
 
-def test_a_run_comes_back_equal_with_code_and_moment(tmp_path: Path) -> None:
+def test_a_run_comes_back_equal_with_code_and_moment(books: Books) -> None:
     run = a_run()
-    with a_book(tmp_path) as store:
+    with a_book(books) as store:
         stored = store.add(run, "MK")
     assert stored == replace(run, code="R-0001", recorded_at=START)
-    with Store.open(tmp_path / "book.sidepath") as store:
+    with Store.open(books / "book.sidepath") as store:
         assert store.get("R-0001") == stored
         assert store.get(run.run_id) == stored
 
 
 @given(run=runs())
 @hypothesis_settings(max_examples=25)
-def test_any_run_is_kept_to_the_letter(run: Run, tmp_path_factory: pytest.TempPathFactory) -> None:
-    with a_book(tmp_path_factory.mktemp("book")) as store:
+def test_any_run_is_kept_to_the_letter(run: Run, books: Books) -> None:
+    with a_book(books.mktemp("book")) as store:
         stored = store.add(run, "MK")
         assert store.get(run.run_id) == stored
         assert list(store.iter_runs(RunFilter(with_withdrawn=True))) == [stored]
@@ -43,16 +43,16 @@ def test_any_run_is_kept_to_the_letter(run: Run, tmp_path_factory: pytest.TempPa
 
 
 @pytest.mark.parametrize("said", ["R-0002", "r-0002", "R2", "r 2", "2", "0002", " R-2 ", "R-00002"])
-def test_a_code_is_understood_as_people_say_it(tmp_path: Path, said: str) -> None:
-    with a_book(tmp_path) as store:
+def test_a_code_is_understood_as_people_say_it(books: Books, said: str) -> None:
+    with a_book(books) as store:
         for _ in range(3):
             store.add(a_run(), "MK")
         assert store.get(said).code == "R-0002"
 
 
 @pytest.mark.parametrize("said", ["", "R-", "aspirin", "R-9", "R-0001x", "٢", "1; DROP TABLE run", "R-" + "9" * 40])
-def test_an_unknown_code_is_refused(tmp_path: Path, said: str) -> None:
-    with a_book(tmp_path) as store:
+def test_an_unknown_code_is_refused(books: Books, said: str) -> None:
+    with a_book(books) as store:
         store.add(a_run(), "MK")
         with pytest.raises(RecordNotFound):
             store.get(said)
@@ -60,9 +60,9 @@ def test_an_unknown_code_is_refused(tmp_path: Path, said: str) -> None:
             store.get(uuid4())
 
 
-def test_the_same_run_twice_is_a_conflict_and_changes_nothing(tmp_path: Path) -> None:
+def test_the_same_run_twice_is_a_conflict_and_changes_nothing(books: Books) -> None:
     run = a_run()
-    with a_book(tmp_path) as store:
+    with a_book(books) as store:
         stored = store.add(run, "MK")
         with pytest.raises(RecordConflict):
             store.add(replace(run, note="other"), "MK")
@@ -70,15 +70,15 @@ def test_the_same_run_twice_is_a_conflict_and_changes_nothing(tmp_path: Path) ->
         assert len(store.history("1")) == 1
 
 
-def test_a_code_brought_along_is_kept_while_nobody_has_it(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_a_code_brought_along_is_kept_while_nobody_has_it(books: Books) -> None:
+    with a_book(books) as store:
         assert store.add(a_run(code="r-41"), "MK").code == "R-0041"
         assert store.add(a_run(code="R-0041"), "MK").code == "R-0042"
         assert store.add(a_run(code="no code"), "MK").code == "R-0043"
 
 
-def test_nobody_and_nul_characters_are_refused(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_nobody_and_nul_characters_are_refused(books: Books) -> None:
+    with a_book(books) as store:
         with pytest.raises(InvalidRecord):
             store.add(a_run(), "  ")
         with pytest.raises(InvalidRecord):
@@ -89,9 +89,9 @@ def test_nobody_and_nul_characters_are_refused(tmp_path: Path) -> None:
         assert store.tip() == 0
 
 
-def test_many_runs_are_stored_once_however_often_they_come(tmp_path: Path) -> None:
+def test_many_runs_are_stored_once_however_often_they_come(books: Books) -> None:
     many = [a_run(note=str(n)) for n in range(2500)]
-    with a_book(tmp_path) as store:
+    with a_book(books) as store:
         report = store.add_many(iter([*many, many[0]]), "MK")
         assert (report.stored, report.duplicate, report.stopped) == (2500, 1, False)
         again = store.add_many(many, "MK")
@@ -113,17 +113,17 @@ class StopAfter:
         return self.done > 0
 
 
-def test_a_stopped_job_keeps_what_it_stored_and_goes_on_later(tmp_path: Path) -> None:
+def test_a_stopped_job_keeps_what_it_stored_and_goes_on_later(books: Books) -> None:
     many = [a_run() for _ in range(1500)]
-    with a_book(tmp_path) as store:
+    with a_book(books) as store:
         report = store.add_many(many, "MK", StopAfter())
         assert (report.stored, report.stopped) == (1000, True)
         report = store.add_many(many, "MK")
         assert (report.stored, report.duplicate, report.stopped) == (500, 1000, False)
 
 
-def test_pages_are_sorted_and_say_how_many_there_are(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_pages_are_sorted_and_say_how_many_there_are(books: Books) -> None:
+    with a_book(books) as store:
         for n in range(25):
             day = dt.date(2024, 1, 1 + (n * 7) % 25) if n else None
             store.add(a_run(date=day, outcome=Outcome(isolated_yield_pct=float(n * 3))), "MK")
@@ -138,8 +138,8 @@ def test_pages_are_sorted_and_say_how_many_there_are(tmp_path: Path) -> None:
         assert by_yield == [0.0, 3.0, 6.0, 9.0, 12.0]
 
 
-def test_filters_hold_together(tmp_path: Path) -> None:
-    with a_book(tmp_path, **CHEMISTRY) as store:
+def test_filters_hold_together(books: Books) -> None:
+    with a_book(books, **CHEMISTRY) as store:
         azide = store.add(a_run(), "MK")
         failed = store.add(
             a_run(
@@ -177,26 +177,26 @@ def test_filters_hold_together(tmp_path: Path) -> None:
         assert found(by="mk") == both
 
 
-def test_many_at_once_come_in_the_order_asked(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_many_at_once_come_in_the_order_asked(books: Books) -> None:
+    with a_book(books) as store:
         kept = [store.add(a_run(), "MK") for _ in range(3)]
         asked = [kept[2].run_id, uuid4(), kept[0].run_id]
         assert store.get_many(asked) == (kept[2], kept[0])
 
 
-def test_a_book_opened_for_reading_refuses_to_write(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_a_book_opened_for_reading_refuses_to_write(books: Books) -> None:
+    with a_book(books) as store:
         store.add(a_run(), "MK")
-    with Store.open(tmp_path / "book.sidepath", read_only=True) as store:
+    with Store.open(books / "book.sidepath", read_only=True) as store:
         assert store.count() == 1
         with pytest.raises(StoreRefused):
             store.add(a_run(), "MK")
 
 
-def test_every_change_moves_the_version(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store, Store.open(tmp_path / "book.sidepath") as other:
+def test_every_change_moves_the_version(books: Books) -> None:
+    with a_book(books) as store, Store.open(books / "book.sidepath") as other:
         before = other.data_version()
         store.add(a_run(), "MK")
         between = other.data_version()
-        store.drafts.save("form", {"scheme": "CCBr"})
+        store.amend("1", {"note": "again"}, "MK", "typo")
         assert before < between < other.data_version()

@@ -2,10 +2,6 @@
 
 from __future__ import annotations
 
-import sqlite3
-from contextlib import closing
-from pathlib import Path
-
 import pytest
 from hypothesis import given
 from hypothesis import settings as hypothesis_settings
@@ -15,13 +11,14 @@ from kb.errors import QueryError
 from kb.record.outcome import Failure, Outcome
 from kb.store.checking import verify
 from kb.store.store import Store
-from tests.factories import a_book, a_run
+from tests.engines import Books
+from tests.factories import CHEMISTRY, a_book, a_run
 
 
 @pytest.fixture
-def store(tmp_path: Path) -> Store:
+def store(books: Books) -> Store:
     """Give a book of three runs."""
-    book = a_book(tmp_path)
+    book = a_book(books)
     book.add(a_run(note="bad emulsion at work-up, emulsion again with brine"), "MK")
     book.add(a_run(note="clean", outcome=Outcome(failures=(Failure(mode="group-loss"),))), "MK")
     book.add(a_run(note="Überschuß: emulsions"), "MK")
@@ -69,17 +66,11 @@ def test_no_word_is_refused(store: Store, words: str) -> None:
 
 @given(words=st.text(max_size=40))
 @hypothesis_settings(max_examples=80)
-def test_no_text_is_an_operator_or_an_error(words: str, tmp_path_factory: pytest.TempPathFactory) -> None:
-    folder = tmp_path_factory.getbasetemp() / "operators"
-    if not (folder / "book.sidepath").exists():
-        folder.mkdir()
-        with a_book(folder) as book:
-            book.add(a_run(), "MK")
-    with Store.open(folder / "book.sidepath") as book:
-        try:
-            assert len(book.words(words)) <= 1
-        except QueryError:
-            assert not any(c.isalnum() for c in words)
+def test_no_text_is_an_operator_or_an_error(words: str, store: Store) -> None:
+    try:
+        assert len(store.words(words)) <= 3
+    except QueryError:
+        assert not any(c.isalnum() for c in words)
 
 
 @pytest.mark.parametrize(
@@ -108,10 +99,21 @@ def test_the_index_follows_amendments_and_withdrawals(store: Store) -> None:
     assert [c for c in verify(store) if not c.ok] == []
 
 
-def test_an_index_that_lags_is_noticed_and_mended(store: Store, tmp_path: Path) -> None:
-    with closing(sqlite3.connect(tmp_path / "book.sidepath")) as raw, raw:
-        raw.execute("UPDATE run SET note = 'silently changed' WHERE code = 'R-0002'")
+def test_an_index_that_lags_is_noticed(store: Store, books: Books) -> None:
+    books.execute("book.sidepath", "UPDATE run SET note = 'silently changed' WHERE code = 'R-0002'")
     assert {c.name for c in verify(store) if not c.ok} == {"record", "words"}
-    with closing(sqlite3.connect(tmp_path / "book.sidepath")) as raw, raw:
-        raw.execute("UPDATE run SET note = 'clean' WHERE code = 'R-0002'")
+    books.execute("book.sidepath", "UPDATE run SET note = 'clean' WHERE code = 'R-0002'")
     assert [c for c in verify(store) if not c.ok] == []
+
+
+EMPTIED = {"sqlite": "INSERT INTO run_words(run_words) VALUES ('delete-all')", "postgresql": "DELETE FROM run_words"}
+
+
+def test_an_index_that_was_lost_is_made_anew_with_what_is_derived(books: Books) -> None:
+    with a_book(books, **CHEMISTRY) as store:
+        store.add(a_run(note="bad emulsion"), "MK")
+        books.execute("book.sidepath", EMPTIED[books.engine])
+        assert codes(store, "emulsion") == []
+        store.rebuild()
+        assert codes(store, "emulsion") == ["R-0001"]
+        assert [c for c in verify(store) if not c.ok] == []
