@@ -140,7 +140,7 @@ def estimate_rest(estimate: Estimate) -> str:
     if estimate.yield_pct:
         low, high = estimate.yield_pct.low, estimate.yield_pct.high
         text = f"yield {estimate.yield_pct.mean:.0f} % ({low:.0f} to {high:.0f}); {text}"
-    return f"{text}. {safe(estimate.note)}".strip()
+    return " ".join(filter(None, (f"{text}.", safe(estimate.alkenes_in_words()), safe(estimate.note))))
 
 
 def evidence_words(evidence: Evidence | None) -> str:

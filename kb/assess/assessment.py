@@ -164,6 +164,7 @@ def estimate_plan(
             yield_pct=fit.yield_pct if fit else None,
             yield_runs=tuple(view.table.codes[row] for row in fit.rows[:NAMED]) if fit else (),
             published=published.as_lines() if published.fates else (),
+            alkenes=published.among_alkenes() if published.fates else (),
             note=" ".join(filter(None, (expected.note, word_wanted_product(view, similarity, wanted), words))),
             half_life_h=expect_half_life(published.half_life_h, view, similarity),
         ),

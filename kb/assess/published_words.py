@@ -51,6 +51,13 @@ class PublishedEstimate:
     sources: tuple[str, ...] = ()
     step: StepFacts | None = None
 
+    def among_alkenes(self) -> tuple[tuple[str, Interval], ...]:
+        """Return each alkene worth telling with its share of the alkenes, largest first."""
+        shares = [(a.label, a.of_alkenes) for a in self.alkenes if a.of_alkenes.mean >= _WORTH_TELLING]
+        return tuple(
+            (name, Interval(mean=round(s.mean, 4), low=round(s.low, 4), high=round(s.high, 4))) for name, s in shares
+        )
+
     def as_lines(self) -> tuple[str, ...]:
         """Return plain sentences for a person, LINES at most; the note alone where there is no number."""
         if not self.fates:

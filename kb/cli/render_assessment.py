@@ -154,6 +154,8 @@ def _estimate(estimate: Estimate, *, verbose: bool) -> list[str]:
             f"Intervals hold {100 * estimate.level:.0f} %; basis: {_BASIS[estimate.basis]}. {estimate.note}",
             2,
         )
+        told = estimate.alkenes_in_words()
+        lines += wrapped(told, 2) if told else []
     else:
         lines += wrapped(estimate.note or "No number is honest here.", 2)
     return lines + (_grounds(estimate) if verbose else [])

@@ -123,7 +123,8 @@ def _estimate(assessment: Assessment) -> tuple[Block, ...]:
             f"{estimate.note}"
         )
     )
-    return tuple(blocks)
+    told = estimate.alkenes_in_words()
+    return tuple([*blocks, Words(text=told)] if told else blocks)
 
 
 def _precedents(assessment: Assessment) -> tuple[Block, ...]:

@@ -23,6 +23,10 @@ def plan_as_dict(plan: Plan) -> dict[str, Any]:
     return {key: form[key] for key in ("scheme", "project", "conditions")}
 
 
+WORTH_DIVIDING = 0.05
+"""Share of elimination from which the alkenes are told apart in words."""
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Estimate:
     """What to expect.
@@ -38,6 +42,7 @@ class Estimate:
         runs: codes of the runs that carry the shares, with their weights 0..1, heaviest first.
         yield_runs: codes of the runs that carry the yield, heaviest first.
         published: what published rates expect, in plain sentences with their sources; empty = nothing.
+        alkenes: SMILES of each alkene that published rates expect, and its share of the alkenes, largest first.
     """
 
     fates: tuple[tuple[Fate, Interval], ...] = ()
@@ -50,6 +55,15 @@ class Estimate:
     runs: tuple[tuple[str, float], ...] = ()
     yield_runs: tuple[str, ...] = ()
     published: tuple[str, ...] = ()
+    alkenes: tuple[tuple[str, Interval], ...] = ()
+
+    def alkenes_in_words(self, most: int = 4) -> str:
+        """Return which alkenes to expect in one sentence; empty where hardly any or only one forms."""
+        formed = next((share.mean for fate, share in self.fates if fate is Fate.ELIMINATION), 0.0)
+        if formed < WORTH_DIVIDING or len(self.alkenes) < 2:
+            return ""
+        told = (f"{name} {100 * i.mean:.0f} % ({100 * i.low:.0f} to {100 * i.high:.0f})" for name, i in self.alkenes)
+        return f"Of the alkenes, by published rates: {', '.join([*told][:most])}."
 
     def as_dict(self) -> dict[str, Any]:
         """Return the contract's JSON object."""
@@ -64,6 +78,7 @@ class Estimate:
             "runs": [list(pair) for pair in self.runs],
             "yield_runs": list(self.yield_runs),
             "published": list(self.published),
+            "alkenes": {name: share.as_dict() for name, share in self.alkenes},
         }
 
 

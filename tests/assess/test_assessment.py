@@ -52,6 +52,25 @@ def test_an_empty_book_lets_published_rates_speak_and_says_so(empty: Book) -> No
     assert sum(interval.mean for _, interval in estimate.fates) == pytest.approx(1, abs=0.01)
 
 
+@pytest.mark.parametrize(
+    ("base", "solvent", "most"), [("NaOEt", "ethanol", "C/C=C/C"), ("KOtBu", "tert-butanol", "C=CCC")]
+)
+def test_the_alkenes_are_told_apart(empty: Book, base: str, solvent: str, most: str) -> None:
+    # 2-Bromobutane: 19 % 1-butene with ethoxide, 53 % with tert-butoxide: H. C. Brown, I. Moritani, Y. Okamoto,
+    # J. Am. Chem. Soc. 1956, 78, 2193 (memory).
+    words = {"scheme": "CCC(C)Br>>CC=CC", "reagents": base, "solvents": solvent, "temperature": "70 °C"}
+    estimate = empty.check(plan_from_words(words)).estimate
+    assert estimate.alkenes[0][0] == most
+    assert sum(share.mean for _, share in estimate.alkenes) == pytest.approx(1, abs=0.02)
+    assert estimate.alkenes_in_words().startswith(f"Of the alkenes, by published rates: {most} ")
+
+
+def test_where_one_alkene_or_hardly_any_forms_nothing_is_told_apart(empty: Book) -> None:
+    for scheme, reagents in (("CCCBr>>CCCN=[N+]=[N-]", "NaN3"), ("CC(C)Br>>CC=C", "NaOEt")):
+        plan = plan_from_words({"scheme": scheme, "reagents": reagents, "solvents": "ethanol", "temperature": "60 °C"})
+        assert empty.check(plan).estimate.alkenes_in_words() == ""
+
+
 @pytest.mark.parametrize("scheme", ["FC(F)(F)S(=O)(=O)OC12CCC(CC1)CC2", "O=S(=O)(OC12CC3CC(CC(C3)C1)C2)C(F)(F)F"])
 def test_a_bridgehead_gets_the_published_reason_and_no_number(empty: Book, scheme: str) -> None:
     # P. D. Bartlett & L. H. Knox, J. Am. Chem. Soc. 1939, 61, 3184: no displacement from the back at a bridgehead.
