@@ -2,8 +2,9 @@
 
 It owns the ranking and the refusals. A change is measured by pairs of runs where the record has them
 (`advice_pairs.py`), else by what published rates say (`kb.physorg.what_if`), and is labelled for what it is. Never
-advised: a change that raises a serious finding which the plan does not have, found by making the findings anew for
-the changed plan against the runs nearest to it; a change after which published rates expect the step to stall. A change
+advised: a change that raises a serious finding which the plan does not have, or heats a solvent above its boiling
+point, found by making the findings anew for the changed plan against the runs nearest to it; a protic solvent for a
+reagent that it destroys; a change after which published rates expect the step to stall. A change
 whose interval reaches below zero may do nothing or harm: small ones are left out, others come last and say so.
 """
 
@@ -17,7 +18,8 @@ from numpy.typing import NDArray
 
 from kb.assess.advice_options import Option, leaving_group_options, list_options, words_of_rows
 from kb.assess.advice_pairs import Paired, pair_runs
-from kb.assess.published_medium import medium_of
+from kb.assess.data_findings import ABOVE_BOILING
+from kb.assess.published_medium import ACTIVATORS, medium_of
 from kb.assess.ranking import best_rows
 from kb.assess.record_view import RecordView
 from kb.assess.table import FATES
@@ -49,6 +51,12 @@ SLOW = 0.1
 """Pace after a change below which the gain must be LEAST_TREND_IF_SLOW and the half-life still short."""
 LEAST_TREND_IF_SLOW = 0.1
 OVERNIGHT_H = 16.0
+EATEN = ACTIVATORS | {
+    "metal_hydride", "aluminium_hydride", "borane", "organolithium", "alkyllithium", "grignard", "organometallic",
+    "metal_amide", "acyl_halide", "chloroformate", "isocyanate", "silyl_chloride",
+}  # fmt: skip
+"""Reagent classes that water and alcohols destroy (common practice)."""
+UNDER_PRESSURE = "hazard-pressure"
 _PART_OF = {"temperature": "temperature", "solvent": "solvent", "base": "base"}
 _MATCHED = ("centre", "leaving group", "nucleophile", "promoter", "solvent", "temperature", "base", "groups at risk")
 
@@ -86,6 +94,7 @@ def advise(
     like = np.flatnonzero(parts["nucleophile"] >= 0.5)
     near = best_rows(similarity, NEAR, like)
     options = list_options(plan, account.profile, view, near)
+    options = [o for o in options if not _is_destroyed(o, account)]
     if step is not None:
         options += leaving_group_options(plan, account.reading, view)
     by_record = [_by_record(option, view, parts, similarity, wanted) for option in options]
@@ -95,7 +104,7 @@ def advise(
         candidates += _by_trend(others, account, step, wanted)
     candidates = [pair for pair in candidates if _is_worth_a_line(pair[0])]
     candidates.sort(key=lambda pair: (is_unsure(pair[0]), -_rank(pair[0])))
-    already = frozenset(_kind(f.rule_id) for f in findings if f.severity is Severity.SERIOUS)
+    already = frozenset(_kind(f.rule_id) for f in findings if is_barred(f))
     advised: list[Advice] = []
     for found, option in candidates[:MOST_CHECKED]:
         if {_kind(rule_id) for rule_id in serious_of(option.plan)} <= already:
@@ -103,6 +112,18 @@ def advise(
             if len(advised) == TOP:
                 break
     return tuple(advised)
+
+
+def is_barred(finding: Finding) -> bool:
+    """Return whether no advice may raise a finding: what is serious, and heat above the boiling point."""
+    return finding.severity is Severity.SERIOUS or finding.rule_id in (ABOVE_BOILING, UNDER_PRESSURE)
+
+
+def _is_destroyed(option: Option, account: Account) -> bool:
+    """Return whether a solvent on offer would eat the reagent, as water and alcohols do hydrides and activators."""
+    if option.kind != "solvent" or not account.profile.reagent_classes & EATEN:
+        return False
+    return "protic" in profile_of(option.plan.conditions).solvent_classes
 
 
 def _rank(advice: Advice) -> float:

@@ -13,7 +13,7 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
-from kb.assess.advice import advise
+from kb.assess.advice import advise, is_barred
 from kb.assess.caution import drop_told, find_cautions
 from kb.assess.data_findings import ABOVE_BOILING, find_data_findings
 from kb.assess.disagreement import word_disagreement
@@ -37,7 +37,7 @@ from kb.record.assessment import Assessment, Estimate
 from kb.record.finding import Finding
 from kb.record.plan import Plan
 from kb.store.derivation import Account, account_of_plan
-from kb.vocabulary import Fate, FindingKind, Role, Severity
+from kb.vocabulary import Fate, FindingKind, Role
 
 NEAREST = 1500
 """Runs against which the findings of a changed plan are made anew."""
@@ -118,12 +118,12 @@ class _Near:
         return self._view.only(keep)
 
     def serious_of(self, plan: Plan) -> frozenset[str]:
-        """Return the ids of the serious findings of a plan."""
+        """Return the ids of the findings of a plan that no advice may raise."""
         account = account_of_plan(plan)
         compared = compare_with_record(account, self.view)
         nothing_published = PublishedEstimate()  # it makes no serious finding
         findings = find_findings(plan, account, self.view, compared, self._house_rules, nothing_published, None)
-        return frozenset(f.rule_id for f in findings if f.severity is Severity.SERIOUS)
+        return frozenset(f.rule_id for f in findings if is_barred(f))
 
 
 def compare_with_record(account: Account, view: RecordView, rest: NDArray[np.float64] | None = None) -> Comparison:

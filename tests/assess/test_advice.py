@@ -215,3 +215,28 @@ def test_where_a_group_is_to_be_lost_the_yield_is_what_counts(tmp_path: Path) ->
     assert cold.pairs == 5
     assert cold.effect.mean > 0.5
     assert "in yield" in cold.why
+
+
+def test_no_protic_solvent_is_offered_to_a_reagent_that_it_destroys(tmp_path: Path) -> None:
+    # Water on thionyl chloride: common practice. The record holds chlorides made in water with hydrogen chloride.
+    words = {"acids": "HCl", "solvents": "water", "temperature": "0 °C"}
+    seen = (ProductSeen(fate=Fate.SUBSTITUTION, share=0.95), ProductSeen(fate=Fate.ELIMINATION, share=0.05))
+    with open_book(tmp_path / "book.sidepath", create=True) as new:
+        for tail in ("C", "CC", "CCC"):
+            scheme = f"CC(C)(O)C{tail}>>CC(C)(Cl)C{tail}"
+            outcome = Outcome(products=seen)
+            new.add(Run(scheme=scheme, conditions=conditions_from_words(words), outcome=outcome), "T")
+        plan = {"scheme": "CC(C)(O)CC>>CC(C)(Cl)CC", "reagents": "SOCl2", "bases": "pyridine"}
+        found = new.check(plan_from_words(plan | {"solvents": "DCM", "temperature": "0 °C"}))
+    assert not any(a.change.startswith("water") for a in found.advice)
+
+
+def test_no_solvent_is_offered_that_boils_below_the_bath(tmp_path: Path) -> None:
+    with open_book(tmp_path / "book.sidepath", create=True) as new:
+        for chain in range(1, 5):
+            new.add(run(chain, 0.60, temperature="110 °C"), "T")
+            new.add(run(chain, 0.95, temperature="110 °C", solvents="acetone", vessel="sealed tube"), "T")
+            new.add(run(chain, 0.90, temperature="110 °C", solvents="DMSO"), "T")
+        advice = check(new, temperature="110 °C").advice
+    assert any(a.change.startswith("dimethyl sulfoxide") for a in advice)
+    assert not any(a.change.startswith("acetone") for a in advice)
