@@ -135,10 +135,12 @@ class Book:
 
         return replay_book(self, since, progress)
 
-    def find(self, criteria: Criteria, deadline_s: float | None = None) -> FindResult:
-        """Find runs; with a deadline [s] the answer may be partial and says so."""
+    def find(
+        self, criteria: Criteria, deadline_s: float | None = None, progress: Progress | None = None
+    ) -> FindResult:
+        """Find runs; with a deadline [s], or where progress is cancelled, the answer may be partial and says so."""
         tame_rdkit()
-        return self.finder().find(criteria, deadline_s=deadline_s)
+        return self.finder().find(criteria, deadline_s=deadline_s, progress=progress)
 
     def add(self, run: Run, who: str) -> Run:
         """Record a run and return it with its code; it is on disk when this returns."""

@@ -153,3 +153,72 @@ def test_lookup_of_nothing_like_a_name_is_refused() -> None:
     answer = ask("lookup", "zzzzzzz", "--json")
     assert answer.status == 1 and is_plain_refusal(answer)
     assert answer.json["match"] is None and answer.json["error"]["code"] == "name-unknown"
+
+
+def codes(*words: str, book: Path) -> set[str]:
+    return {item["run"] for item in ask("find", "--limit", "1000", "--json", *words, book=book).json["items"]}
+
+
+def test_and_or_and_not_combine_as_sets_do(demo_book: Path) -> None:
+    dmf, dmso, bromide = (
+        codes(*words, book=demo_book)
+        for words in (("--solvent", "DMF"), ("--solvent", "DMSO"), ("--leaving-group", "bromide"))
+    )
+    assert dmf and dmso and bromide & dmf
+    either = codes("--any-of", "solvent=DMF", "--any-of", "solvent=DMSO", book=demo_book)
+    assert either == dmf | dmso
+    assert codes("--any-of", "solvent=DMF and leaving-group=bromide", book=demo_book) == dmf & bromide
+    assert codes("--solvent", "DMF", "--none-of", "leaving-group=bromide", book=demo_book) == dmf - bromide
+
+
+def test_a_rooted_search_asks_at_the_centre_and_not_elsewhere(demo_book: Path) -> None:
+    anywhere = codes("--substructure", "[CX4]OS(C)(=O)=O", "--role", "substrate", book=demo_book)
+    rooted = codes("--at-centre", "[CX4:1]OS(C)(=O)=O", book=demo_book)
+    assert rooted and rooted <= anywhere
+    for code in sorted(rooted)[:5]:
+        reading = ask("read", ask("show", code, "--json", book=demo_book).json["scheme"], "--json").json
+        assert reading["centres"][0]["leaving_group"] == "mesylate"
+    assert not codes("--at-centre", "[c:1]", "--leaving-group", "mesylate", book=demo_book)
+
+
+def test_pages_in_each_order_hold_every_run_once(demo_book: Path) -> None:
+    everything = codes(book=demo_book)
+    for order in ("best", "newest", "oldest", "code"):
+        met: list[str] = []
+        for page in range(1, 8):
+            said = ask("find", "--order", order, "--limit", "70", "--page", str(page), "--json", book=demo_book).json
+            met += [item["run"] for item in said["items"]]
+        assert len(met) == len(set(met)) and set(met) == everything
+        if order == "code":
+            assert met == sorted(met, key=lambda code: int(code[2:]))
+
+
+def test_a_deadline_that_cannot_be_meant_is_refused(demo_book: Path) -> None:
+    assert ask("find", "--substructure", "C", "--deadline", "0", book=demo_book).status == 2
+
+
+@pytest.mark.parametrize(
+    "smarts",
+    [
+        "*~*~*~*~*~*",
+        "[$(*~[$(*~[$(C~[N,O])])])]",
+        "C" * 200,
+        "~".join("*" * 30),
+        "*1~*~*~*~*~*~1",
+        "[!#1]" * 12,
+        "[$(*~*~*~*)]~[$(*~*~*~*)]",
+    ],
+)
+def test_open_queries_are_answered_within_the_deadline_or_say_that_they_were_not(demo_book: Path, smarts: str) -> None:
+    said = ask("find", "--substructure", smarts, "--deadline", "20", "--json", book=demo_book)
+    assert said.status == 0
+    assert said.json["complete"] or "deadline" in " ".join(said.json["notes"])
+
+
+@pytest.mark.parametrize(
+    ("smarts", "word"), [("C" * 260, "250"), ("[$(" * 7 + "C" + ")]" * 7, "deep"), ("C(" * 50, "SMARTS")]
+)
+def test_queries_beyond_bounds_are_refused_in_words(demo_book: Path, smarts: str, word: str) -> None:
+    said = ask("find", "--substructure", smarts, "--json", book=demo_book)
+    assert said.status == 1 and said.error["code"] == "query"
+    assert word in said.error["message"] + said.error["hint"]
