@@ -133,7 +133,7 @@ def tally_cells(t: Tallied) -> tuple[str, ...]:
     """Return a row: word, failures, runs, share that failed."""
     share = t.share if t.fine or len(t.failed) < t.runs else None
     return (
-        words_of(t.word),
+        tally_word(t),
         str(len(t.failed)),
         str(t.runs),
         "" if share is None else f"{100 * share:.0f} %",
@@ -206,12 +206,8 @@ def hindsight_behind(
 
 
 def _warned_by(run: Hindsight) -> str:
-    parts = [words_of(mode) for mode in run.modes[:1]]
-    if run.precedents:
-        parts.append(f"after {run.precedents[0]}")
-    elif run.findings:
-        parts.append(run.findings[0][0])
-    return "; ".join(parts)
+    parts = [f"after {run.precedents[0]}"] if run.precedents else [rule for rule, _ in run.findings[:1]]
+    return "; ".join([*parts, *(words_of(mode) for mode in run.modes[:1])])
 
 
 def replay_notes(report: ReplayReport) -> str:

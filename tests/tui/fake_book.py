@@ -2,6 +2,7 @@
 
 Its answers are invented and stand for nothing but themselves; the real book is tested elsewhere. It keeps to
 `tui.ports.BookPort`, so that a screen that works here asks nothing that the real book cannot answer.
+What it answers stands in `fake_runs.py`, `fake_answers.py` and `fake_audits.py`.
 """
 
 from __future__ import annotations
@@ -13,78 +14,29 @@ from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from typing import Any
 
-from kb.chem.facts import Centre, NucleophileFact, PossibleFate, Reading
-from kb.chem.layout import build_scheme
+from kb.chem.facts import Reading
 from kb.errors import NameUnknown, QueryError, RecordNotFound, SidepathError, StoreBusy, StoreMissing
 from kb.progress import Progress
-from kb.quantity import parse_temperature
-from kb.record.assessment import Advice, Assessment, Estimate, Precedent
+from kb.record.assessment import Assessment, Estimate
 from kb.record.component import Component, SolventPart
-from kb.record.conditions import Conditions
-from kb.record.finding import Evidence, Finding, Interval
-from kb.record.outcome import Outcome, ProductSeen
+from kb.record.finding import Interval
 from kb.record.plan import Plan
 from kb.record.run import Run
-from kb.vocabulary import (
-    Basis,
-    CarbonClass,
-    CentreFlag,
-    Confidence,
-    Fate,
-    FindingKind,
-    LeavingGroup,
-    Method,
-    Role,
-    Severity,
-    Verdict,
-)
+from kb.vocabulary import Fate, Role
+from tests.tui.fake_answers import a_reading, an_assessment
+from tests.tui.fake_audits import FakeAudits
+from tests.tui.fake_routes import RouteAnswers
+from tests.tui.fake_runs import AZIDE_SCHEME, MESYLATE, NAMES, NASTY, a_run
 from tui.ports import BookPort, DraftLine, FindHit, FindPage, FindQuery, HistoryLine, Offer, RunPage, RunQuery
 
-MESYLATE = "C[C@H](OS(C)(=O)=O)[C@H]1CCCO1"
-AZIDE_SCHEME = MESYLATE + ".[N-]=[N+]=[N-].[Na+]>>C[C@@H](N=[N+]=[N-])[C@H]1CCCO1"
-NASTY = "[red]not red[/red] \x1b[31mno escape\x1b[0m \u202egnp.exe \u2066x\u2069 🧪 \x07 " + "long " * 2000
-
-NAMES = {
-    "NaN3": ("[Na+].[N-]=[N+]=[N-]", "reagent"),
-    "NaI": ("[Na+].[I-]", "reagent"),
-    "K2CO3": ("[K+].[K+].[O-]C([O-])=O", "reagent"),
-    "DMF": ("CN(C)C=O", "solvent"),
-    "DMSO": ("CS(C)=O", "solvent"),
-    "THF": ("C1CCOC1", "solvent"),
-    "water": ("O", "solvent"),
-    "EtOH": ("CCO", "solvent"),
-}
+__all__ = ["AZIDE_SCHEME", "MESYLATE", "NASTY", "FakeBook", "FakeOpener", "a_run"]
 
 
-def a_run(number: int = 1, **changes: Any) -> Run:
-    """Return an invented run."""
-    run = Run(
-        scheme=AZIDE_SCHEME,
-        conditions=Conditions(
-            components=(Component(role=Role.REAGENT, name="NaN3", equiv=1.5),),
-            solvents=(SolventPart(name="DMF"),),
-            temperature=parse_temperature(f"{50 + number} C"),
-        ),
-        outcome=Outcome(
-            products=(
-                ProductSeen(fate=Fate.SUBSTITUTION, share=0.9, method=Method.NMR),
-                ProductSeen(fate=Fate.ELIMINATION, share=0.1, method=Method.NMR),
-            ),
-            isolated_yield_pct=70.0 + number % 20,
-        ),
-        verdict=Verdict.WORKED,
-        note=f"invented note {number}",
-        by="JM",
-        date=dt.date(2026, 1, 1) + dt.timedelta(days=number),
-        code=f"R-{number:04d}",
-    )
-    return replace(run, **changes)
-
-
-class FakeBook:
+class FakeBook(FakeAudits, RouteAnswers):
     """Runs in a dictionary; `delay_s` slows every check, `broken` makes the named calls fail."""
 
     def __init__(self, runs: int = 12, read_only: bool = False, delay_s: float = 0.0) -> None:
+        super().__init__()
         self.runs: dict[str, Run] = {f"R-{n:04d}": a_run(n) for n in range(1, runs + 1)}
         self.drafts: dict[str, dict[str, Any]] = {}
         self.changes: dict[str, list[HistoryLine]] = {}
@@ -119,42 +71,7 @@ class FakeBook:
 
     def read_scheme(self, text: str) -> Reading:
         self._maybe_fail("read_scheme")
-        if build_scheme(text).left[0].drawing is None:
-            return Reading(scheme=text, ok=False, confidence=Confidence.UNRESOLVED, reason=f"{text!r} is no SMILES.")
-        if not text.startswith(MESYLATE):
-            centre = Centre(
-                component=0,
-                atom=min(2, len(text) - 1),
-                carbon_class=CarbonClass.SECONDARY,
-                leaving_group=LeavingGroup.BROMIDE,
-                leaving_atom=None,
-                beta_hydrogens=5,
-            )
-            return Reading(scheme=text, ok=True, confidence=Confidence.INFERRED, centres=(centre,), substrate=text)
-        return Reading(
-            scheme=text,
-            ok=True,
-            confidence=Confidence.INFERRED,
-            centres=(
-                Centre(
-                    component=0,
-                    atom=1,
-                    carbon_class=CarbonClass.SECONDARY,
-                    leaving_group=LeavingGroup.MESYLATE,
-                    leaving_atom=2,
-                    flags=(CentreFlag.ALPHA_HETEROATOM,),
-                    beta_hydrogens=4,
-                    is_stereocentre=True,
-                ),
-            ),
-            nucleophile=NucleophileFact(component=1, atom=0, nucleophile_class="azide"),
-            possible=(
-                PossibleFate(fate=Fate.SUBSTITUTION, product="C[C@@H](N=[N+]=[N-])[C@H]1CCCO1", note="azide, inverted"),
-                PossibleFate(fate=Fate.ELIMINATION, product="C=C[C@H]1CCCO1", note="loss of MsOH towards CH3"),
-                PossibleFate(fate=Fate.ELIMINATION, product="CC=C1CCCO1", note="loss of MsOH towards the ring"),
-            ),
-            substrate=MESYLATE,
-        )
+        return a_reading(text)
 
     def resolve_component(self, text: str, role: Role) -> Component:
         name, _, equiv = text.partition("=")
@@ -168,7 +85,9 @@ class FakeBook:
         name, _, parts = text.partition(":")
         if name.strip() not in NAMES:
             raise NameUnknown(f"No solvent is called {name.strip()!r}.", "Did you mean DMF?", name)
-        return SolventPart(name=name.strip(), smiles=NAMES[name.strip()][0], parts=float(parts) if parts else None)
+        return SolventPart(
+            name=name.strip(), smiles=NAMES[name.strip()][0], parts=float(parts) if parts else None
+        )
 
     def lookup(self, text: str, kind: str) -> Sequence[Offer]:
         self._maybe_fail("lookup")
@@ -185,77 +104,7 @@ class FakeBook:
         if self.delay_s:
             time.sleep(self.delay_s)
         self.checked.append(plan)
-        solvents = {s.name for s in plan.conditions.solvents}
-        findings = []
-        if "EtOH" in solvents:
-            findings.append(
-                Finding(
-                    rule_id="invented-solvolysis",
-                    kind=FindingKind.LIABILITY,
-                    severity=Severity.SERIOUS,
-                    title="the solvent competes as nucleophile",
-                    why="Ethanol captures the carbon faster than azide at this dilution (invented).",
-                    component=0,
-                    atoms=(1, 7, 8),
-                    evidence=Evidence(
-                        lost=2,
-                        survived=1,
-                        runs=tuple(list(self.runs)[:3]),
-                        chance=Interval(mean=0.7, low=0.4, high=0.9),
-                        note="the survivor was below 10 °C",
-                    ),
-                    side_product="CCO[C@@H](C)[C@H]1CCCO1",
-                    do_instead=("a polar aprotic solvent such as DMF",),
-                    source="invented for the tests",
-                )
-            )
-        if any(c.name == "NaN3" for c in plan.conditions.components):
-            findings.append(
-                Finding(
-                    rule_id="invented-azide",
-                    kind=FindingKind.CAUTION,
-                    severity=Severity.NOTE,
-                    title="azide: keep chlorinated solvents out of the work-up",
-                    why="Geminal diazides are explosive. Local safety rules and qualified people decide.",
-                    source="invented for the tests",
-                )
-            )
-        mean = 0.45 if "EtOH" in solvents else 0.84
-        return Assessment(
-            plan=plan,
-            reading=self.read_scheme(plan.scheme),
-            findings=tuple(findings),
-            estimate=Estimate(
-                fates=(
-                    (Fate.SUBSTITUTION, Interval(mean=mean, low=mean - 0.14, high=min(1.0, mean + 0.08))),
-                    (Fate.ELIMINATION, Interval(mean=1 - mean - 0.04, low=0.02, high=1 - mean + 0.1)),
-                    (Fate.UNREACTED, Interval(mean=0.04, low=0.0, high=0.12)),
-                ),
-                yield_pct=Interval(mean=71, low=58, high=82),
-                effective_precedents=3.4,
-                basis=Basis.BOTH,
-            ),
-            precedents=tuple(
-                Precedent(
-                    run=code,
-                    similarity=0.95 - 0.07 * i,
-                    differs=("bromide, not mesylate", "60 °C"),
-                    split=((Fate.SUBSTITUTION, 0.9), (Fate.ELIMINATION, 0.1)),
-                    yield_pct=74,
-                    verdict=Verdict.WORKED,
-                )
-                for i, code in enumerate(list(self.runs)[:5])
-            ),
-            advice=(
-                Advice(
-                    change="60 °C instead of 80 °C",
-                    effect=Interval(mean=0.06, low=0.02, high=0.11),
-                    pairs=5,
-                    basis=Basis.RECORD,
-                    why="Matched pairs R-0001 and R-0002, and three more (invented).",
-                ),
-            ),
-        )
+        return an_assessment(plan, list(self.runs))
 
     def what_if(self, plan: Plan, temperatures_c: Sequence[float]) -> Sequence[tuple[float, Estimate]]:
         self._maybe_fail("what_if")
@@ -264,7 +113,10 @@ class FakeBook:
                 t,
                 Estimate(
                     fates=(
-                        (Fate.SUBSTITUTION, Interval(mean=0.95 - t / 400, low=0.8 - t / 400, high=1 - t / 400)),
+                        (
+                            Fate.SUBSTITUTION,
+                            Interval(mean=0.95 - t / 400, low=0.8 - t / 400, high=1 - t / 400),
+                        ),
                         (Fate.ELIMINATION, Interval(mean=0.05 + t / 400, low=t / 400, high=0.2 + t / 400)),
                     )
                 ),
@@ -292,7 +144,9 @@ class FakeBook:
         self._maybe_fail("find")
         if query.substructure == "C(":
             raise QueryError("'C(' is no SMARTS.", "Check the brackets.", query.substructure)
-        runs = [r for r in self.runs.values() if not query.words or query.words.casefold() in r.note.casefold()]
+        runs = [
+            r for r in self.runs.values() if not query.words or query.words.casefold() in r.note.casefold()
+        ]
         if query.verdict:
             runs = [r for r in runs if r.verdict == query.verdict]
         start = (query.page - 1) * query.limit
@@ -378,7 +232,9 @@ class FakeOpener:
         if place == "busy.sidepath":
             raise StoreBusy("The book busy.sidepath is held by another writer.", "Try again in a moment.")
         if self.book is None:
-            raise StoreMissing(f"There is no book at {place or self.default_place()}.", "Make one, or open another.")
+            raise StoreMissing(
+                f"There is no book at {place or self.default_place()}.", "Make one, or open another."
+            )
         return self.book
 
     def create(self, place: str | None) -> BookPort:

@@ -22,7 +22,7 @@ from tui.widgets.figures import Column, FigureTable
 from tui.widgets.panel import Panel
 from tui.widgets.run_view import RunView
 
-COLUMNS = (Column("Run", 8), Column("", 14, grows=1))
+COLUMNS = (Column("Run", 7), Column("", 14, grows=1))
 
 
 class RunsBehindScreen(RunActions[None]):
