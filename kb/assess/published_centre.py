@@ -174,6 +174,8 @@ def _activations(mol: Chem.Mol, centre: int, leaving: int | None, others: Sequen
         elif number == 6 and not is_sp3_carbon(atom):
             words.append(_flat_word(mol, atom, centre))
         elif number == 6:
+            if any(len(r) == 3 and index in r and centre not in r for r in mol.GetRingInfo().AtomRings()):
+                words.append("cyclopropyl")
             for n in atom.GetNeighbors():
                 if n.GetIdx() not in (centre, leaving):
                     if n.GetAtomicNum() in HALOGENS:

@@ -88,11 +88,20 @@ def _as_drawn(account: Account, published: PublishedEstimate, rules_fired: Colle
     )
 
 
+def _title(word: str, account: Account) -> str:
+    """Return the title; where other centres are drawn, epimers form and nothing racemises."""
+    centre = account.reading.centre
+    has_others = centre is not None and account.fragments[centre.component].replace("@@", "@").count("@") > 1
+    return "The drawn centre gives both epimers" if word == "racemisation" and has_others else _TITLES[word]
+
+
 def _as_expected(account: Account, published: PublishedEstimate, rules_fired: Collection[str]) -> tuple[Finding, ...]:
     """Return what published chemistry expects of the configuration."""
     stereo, centre = published.stereo, account.reading.centre
     if stereo is None or centre is None or account.reading.fate not in (None, Fate.SUBSTITUTION):
         return ()
+    if any(i.startswith("ngp-") for i in rules_fired):
+        return ()  # a neighbouring group that takes part decides the face, and its own finding says so
     substituted = dict(published.fates).get(Fate.SUBSTITUTION)
     if substituted is None or substituted.mean < LEAST_SUBSTITUTION:
         return ()
@@ -104,7 +113,7 @@ def _as_expected(account: Account, published: PublishedEstimate, rules_fired: Co
             rule_id=f"stereo:{stereo.word.replace(' ', '-')}",
             kind=FindingKind.LIABILITY,
             severity=Severity.NOTE if is_kept or is_told else Severity.CAUTION,
-            title=_TITLES[stereo.word],
+            title=_title(stereo.word, account),
             why=(
                 f"{stereo.why} Net inversion of the substituted product, from 1 (all inverted) over 0 (racemic) to -1 "
                 f"(all retained): {net.mean:.2f} ({net.low:.2f} to {net.high:.2f})."

@@ -108,6 +108,15 @@ def _ways_out(centre: Centre, step: StepFacts, captured: Fate, lost: Fate) -> li
         ways.append(external if captured is Fate.SUBSTITUTION else _renamed(external, captured))
     if centre.far_end_alkyl is not None and not centre.is_symmetric_allyl and captured is Fate.SUBSTITUTION and ways:
         ways.append(_transposed(centre))
+    if "cyclopropyl" in centre.activations and captured is Fate.SUBSTITUTION and ways:
+        ways.append(
+            Branch(
+                name="the cyclopropane opens or grows, then capture",
+                fate=Fate.REARRANGED,
+                terms=(term("shift", "cyclopropylmethyl", "cyclopropylmethyl, cyclobutyl and allylcarbinyl mix"),),
+                is_capture=True,
+            )
+        )
     ways += [_loss(centre, n, step, lost) for n in centre.neighbours if n.hydrogens and n.can_be_alkene]
     return ways
 

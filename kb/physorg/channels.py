@@ -123,6 +123,8 @@ def _can_ionise(step: StepFacts) -> bool:
     centre = step.centre
     if centre.carbon_class in (CarbonClass.SECONDARY, CarbonClass.TERTIARY) or centre.is_stabilised:
         return True
+    if "cyclopropyl" in centre.activations:
+        return True
     return centre.carbon_class is CarbonClass.PRIMARY and (
         _is_neopentyl(centre) or (step.medium.lewis_acid == "strong" and bool(centre.shifts))
     )

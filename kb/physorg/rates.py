@@ -221,7 +221,7 @@ def cation_terms(centre: Centre) -> list[Term]:
     else:
         key = str(centre.carbon_class)
         terms = [term("ionisation_class", key, f"{key} cation")]
-        for word in ("benzylic", "allylic"):
+        for word in ("benzylic", "allylic", "cyclopropyl"):
             if word in centre.activations:
                 terms.append(term("ionisation_activation", f"{_three(centre)} {word}", f"{word} cation"))
         if centre.aryl_count > 1:

@@ -30,6 +30,7 @@ ACTIVATIONS = (
     "benzylic",
     "allylic",
     "propargylic",
+    "cyclopropyl",
     "alpha-carbonyl",
     "alpha-nitrile",
     "alpha-oxygen",

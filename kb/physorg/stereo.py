@@ -66,7 +66,7 @@ def expect_stereo(step: StepFacts, result: Competition) -> StereoOutcome | None:
         net_inversion=net,
         why=(
             f"{100 * (1 - free):.0f} % of the substitution comes from the back and inverts; "
-            f"{100 * free:.0f} % goes through a {key} cation or ion pair."
+            f"{100 * free:.0f} % goes through a {_cation_word(step.centre)} cation or ion pair."
         ),
         sources=tuple(sources),
     )
@@ -75,6 +75,15 @@ def expect_stereo(step: StepFacts, result: Competition) -> StereoOutcome | None:
 def _key(centre: Centre) -> str:
     kind = "tertiary" if centre.carbon_class is CarbonClass.TERTIARY else "secondary"
     return f"{kind} benzylic" if centre.is_stabilised else kind
+
+
+def _cation_word(centre: Centre) -> str:
+    """Return what the cation is called; donor-stabilised and allylic ones share the figures of benzylic ones."""
+    if centre.oxocarbenium:
+        return f"{centre.oxocarbenium.removeprefix('alpha-')}-stabilised"
+    if "allylic" in centre.activations and "benzylic" not in centre.activations:
+        return _key(centre).replace("benzylic", "allylic")
+    return _key(centre)
 
 
 def _is_free(channel: Channel) -> bool:

@@ -93,3 +93,14 @@ def test_a_cis_halohydrin_drawn_to_close_is_serious() -> None:
     found = stereo(scheme, bases="NaOH", solvents="water", temperature="25 °C")
     drawn = next(f for f in found if f.rule_id == "stereo:drawn-impossible")
     assert drawn.severity is Severity.SERIOUS
+
+
+def test_beside_other_drawn_centres_epimers_form_and_nothing_racemises() -> None:
+    (lone,) = stereo("C[C@H](Cl)c1ccccc1", **SOLVOLYSIS)
+    (with_others,) = stereo("C[C@H](Cl)c1ccc([C@H](C)CC)cc1", **SOLVOLYSIS)
+    assert lone.title == "The drawn centre racemises"
+    assert with_others.title == "The drawn centre gives both epimers"
+
+
+def test_a_neighbouring_group_that_takes_part_has_the_word() -> None:
+    assert stereo("C[C@H](Cl)c1ccccc1", frozenset({"ngp-beta-acyloxy"}), **SOLVOLYSIS) == ()
