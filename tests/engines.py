@@ -12,6 +12,7 @@ they fail.
 from __future__ import annotations
 
 import os
+import re
 import sqlite3
 from collections.abc import Iterator
 from contextlib import ExitStack, closing
@@ -23,12 +24,15 @@ from uuid import uuid4
 import pytest
 
 from kb.store.history import TIP
-from kb.store.rows import Row
+from kb.store.rows import SCHEMA_HEAD, Row
 from kb.store.session import BOOK_ID, CHANGES, CREATED_AT
 from kb.store.store import Store
 from tests.postgres_server import DATABASE, OWNER, NoServer, running_server
 
 ENGINES = ("sqlite", "postgresql")
+
+
+Contents = dict[str, list[tuple[object, ...]]]
 
 
 class Books(Protocol):
@@ -49,6 +53,12 @@ class Books(Protocol):
 
     def execute(self, name: str, statement: str) -> int:
         """Run SQL on a book behind the program's back; return the number of rows that it touched."""
+
+    def contents(self, name: str) -> Contents:
+        """Return all rows of all plain tables of a book, in no particular order of meaning."""
+
+    def shape(self, name: str) -> dict[str, list[str]]:
+        """Return what the engine says of each part of a book's shape."""
 
 
 class Files:
@@ -77,6 +87,25 @@ class Files:
         """Run SQL on a book."""
         with closing(sqlite3.connect(self.folder / name)) as raw, raw:
             return raw.execute(statement).rowcount
+
+    def contents(self, name: str) -> Contents:
+        """Return all rows of all plain tables of a book."""
+        with closing(sqlite3.connect(self.folder / name)) as raw:
+            tables = [
+                row[0]
+                for row in raw.execute("SELECT name FROM sqlite_master WHERE type = 'table'")
+                if not row[0].startswith(("run_words", "sqlite_", "alembic"))
+            ]
+            return {t: sorted(raw.execute(f"SELECT * FROM {t}"), key=repr) for t in tables}
+
+    def shape(self, name: str) -> dict[str, list[str]]:
+        """Return the parts of the DDL by name, white space and the order of constraints apart."""
+        with closing(sqlite3.connect(self.folder / name)) as raw:
+            rows = raw.execute("SELECT name, sql FROM sqlite_master WHERE sql IS NOT NULL").fetchall()
+        return {
+            name: sorted(part.rstrip(" )") for part in re.sub(r"\s*([(),])\s*|\s+", r" \1", sql).split(" ,"))
+            for name, sql in rows
+        }
 
 
 class Server:
@@ -123,7 +152,10 @@ class Server:
             self.spare.append(schema)
 
     def _is_book(self, schema: str) -> bool:
-        return self.admin.execute("SELECT to_regclass(%s)", (f"{schema}.alembic_version",)).fetchone()[0] is not None
+        if self.admin.execute("SELECT to_regclass(%s)", (f"{schema}.alembic_version",)).fetchone()[0] is None:
+            return False
+        forms = self.admin.execute(f"SELECT version_num FROM {schema}.alembic_version").fetchall()
+        return bool(forms == [(SCHEMA_HEAD,)])
 
     def fill_spare(self, schema: str) -> None:
         """Write the first rows of a new book into an emptied one."""
@@ -183,8 +215,32 @@ class Schemas:
         """Run SQL on a book."""
         if statement.startswith(("ALTER", "CREATE", "DROP", "UPDATE alembic")):
             self._reshaped.add(self.schema_of(name))
+        return int(self._ask(name, statement).rowcount)
+
+    def contents(self, name: str) -> Contents:
+        """Return all rows of all plain tables of a book."""
+        found = self._ask(name, "SELECT tablename FROM pg_tables WHERE schemaname = current_schema()").fetchall()
+        tables = [row[0] for row in found if not row[0].startswith(("run_words", "alembic"))]
+        return {t: sorted(self._ask(name, f"SELECT * FROM {t}").fetchall(), key=repr) for t in tables}
+
+    def shape(self, name: str) -> dict[str, list[str]]:
+        """Return columns, constraints, indices and views by table, as the catalogue writes them."""
+        asked = """SELECT relname, 'column ' || attname || ' ' || format_type(atttypid, atttypmod) || attnotnull::text
+              FROM pg_attribute JOIN pg_class ON pg_class.oid = attrelid
+              WHERE relnamespace = current_schema()::regnamespace AND attnum > 0 AND relkind IN ('r', 'v')
+            UNION ALL SELECT conrelid::regclass::text, conname || ' ' || pg_get_constraintdef(oid)
+              FROM pg_constraint WHERE connamespace = current_schema()::regnamespace
+            UNION ALL SELECT tablename, regexp_replace(indexdef, ' ON \\S+', '')
+              FROM pg_indexes WHERE schemaname = current_schema()
+            UNION ALL SELECT viewname, definition FROM pg_views WHERE schemaname = current_schema()"""
+        parts: dict[str, list[str]] = {}
+        for table, said in self._ask(name, asked).fetchall():
+            parts.setdefault(table, []).append(said)
+        return {table: sorted(said) for table, said in parts.items()}
+
+    def _ask(self, name: str, statement: str) -> Any:
         self.server.admin.execute(f"SET search_path TO {self.schema_of(name)}")
-        return int(self.server.admin.execute(statement).rowcount)
+        return self.server.admin.execute(statement)
 
 
 @pytest.fixture(scope="session")

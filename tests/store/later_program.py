@@ -27,7 +27,8 @@ depends_on = None
 def upgrade() -> None:
     op.execute("DROP TABLE run_words")
     op.execute("DROP VIEW run_text")
-    with op.batch_alter_table("run", recreate="always") as batch:
+    recreate = "always" if op.get_bind().dialect.name == "sqlite" else "never"
+    with op.batch_alter_table("run", recreate=recreate) as batch:
         batch.add_column(sa.Column("colour", sa.Text(), nullable=True))
     {extra}
 """

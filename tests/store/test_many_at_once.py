@@ -23,6 +23,7 @@ from kb.store.checking import verify
 from kb.store.copying import copy_book
 from kb.store.safekeeping import backups_in
 from kb.store.store import Store
+from tests.engines import Books, Schemas
 from tests.factories import CHEMISTRY, a_book
 from tests.store.workers import numbered_run
 
@@ -42,14 +43,14 @@ def start(*arguments: object, program: str = "tests.store.workers") -> subproces
     )
 
 
-def assert_sound(book: Path) -> None:
+def assert_sound(book: Path | str) -> None:
     with Store.open(book, **CHEMISTRY) as store:
         assert [c for c in verify(store) if not c.ok] == []
 
 
-def write_and_read(folder: Path, writers: int, runs: int, readers: int) -> None:
-    book = folder / "book.sidepath"
-    a_book(folder, **CHEMISTRY).close()
+def write_and_read(books: Books, writers: int, runs: int, readers: int) -> None:
+    book = books / "book.sidepath"
+    a_book(books, **CHEMISTRY).close()
     processes = [start("record", book, f"W{w}", runs) for w in range(writers)]
     processes += [start("read", book, 3) for _ in range(readers)]
     said = [process.communicate(timeout=1500) for process in processes]
@@ -65,13 +66,37 @@ def write_and_read(folder: Path, writers: int, runs: int, readers: int) -> None:
     assert_sound(book)
 
 
-def test_four_processes_write_while_two_read(tmp_path: Path) -> None:
-    write_and_read(tmp_path, writers=4, runs=25, readers=2)
+def test_four_processes_write_while_two_read(books: Books) -> None:
+    write_and_read(books, writers=4, runs=25, readers=2)
 
 
 @pytest.mark.soak
-def test_sixteen_processes_write_200_runs_each_while_eight_read(tmp_path: Path) -> None:
-    write_and_read(tmp_path, writers=16, runs=200, readers=8)
+def test_sixteen_processes_write_200_runs_each_while_eight_read(books: Books) -> None:
+    write_and_read(books, writers=16, runs=200, readers=8)
+
+
+def test_killed_writers_leave_a_server_with_all_that_was_acknowledged(schemas: Schemas) -> None:
+    """Killed four times while it records or imports; the server undoes what was half done, and the next one goes on."""
+    a_book(schemas, **CHEMISTRY).close()
+    book, moments, landed = schemas / "book.sidepath", random.Random(5), 0
+    kept: set[UUID] = set()
+    for attempt in itertools.count():
+        deed = (("record", book, "W", 60 + attempt), ("take_in", book, "bulk", BULK_RUNS))[attempt % 2]
+        process = start(*deed)
+        first = process.stdout.readline() if deed[0] == "record" and process.stdout else ""
+        time.sleep(moments.uniform(0.05, 0.4))
+        landed += process.poll() is None
+        process.kill()
+        out, err = process.communicate(timeout=60)
+        assert "Traceback" not in err, err
+        said = first + out[: out.rfind("\n") + 1]
+        kept |= {UUID(line.split()[1]) for line in said.splitlines() if line.startswith("kept ")}
+        if landed >= 4:
+            break
+        assert attempt < 40
+    with Store.open(book, **CHEMISTRY) as store:
+        assert kept and kept <= {run.run_id for run in store.iter_runs()}
+    assert_sound(book)
 
 
 class Killer:

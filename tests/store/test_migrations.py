@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import gzip
 import re
-import sqlite3
 from collections.abc import Iterator
-from contextlib import closing
 from pathlib import Path
+from typing import Any
+from uuid import UUID
 
 import pytest
 import sqlalchemy as sa
@@ -26,6 +27,7 @@ from kb.store.engine import parse_address
 from kb.store.rows import SCHEMA_REVISIONS
 from kb.store.runs import RunFilter
 from kb.store.store import Store
+from tests.engines import Books
 from tests.factories import CHEMISTRY, a_book, a_run
 from tests.store.later_program import LATER, write_later_revisions
 
@@ -36,11 +38,17 @@ alembic = create_alembic_fixture(Config(config_options={"script_location": str(M
 
 
 @pytest.fixture
-def alembic_engine(tmp_path: Path) -> Iterator[sa.Engine]:
-    """Give pytest-alembic a file of its own."""
-    engine = sa.create_engine(f"sqlite:///{tmp_path / 'alembic.sqlite'}")
+def alembic_engine(books: Books) -> Iterator[sa.Engine]:
+    """Give pytest-alembic a fresh place on each engine in turn."""
+    engine = bare_engine(books, "alembic")
     yield engine
     engine.dispose()
+
+
+def bare_engine(books: Books, name: str) -> sa.Engine:
+    """Return an engine, without our listeners, for a place where nothing is yet."""
+    address = parse_address(books / name)
+    return sa.create_engine(address.url or f"sqlite:///{address.path}")
 
 
 def test_there_is_one_newest_revision(alembic: MigrationContext) -> None:
@@ -75,24 +83,14 @@ def test_no_revision_imports_the_program() -> None:
         assert "import kb" not in revision.read_text() and "from kb" not in revision.read_text()
 
 
-def shape_of(path: Path) -> dict[str, list[str]]:
-    """Return the parts of the DDL of a file by name, white space and the order of constraints apart."""
-    with closing(sqlite3.connect(path)) as connection:
-        rows = connection.execute("SELECT name, sql FROM sqlite_master WHERE sql IS NOT NULL").fetchall()
-    return {
-        name: sorted(part.rstrip(" )") for part in re.sub(r"\s*([(),])\s*|\s+", r" \1", sql).split(" ,"))
-        for name, sql in rows
-    }
-
-
-def test_a_new_book_and_a_migrated_one_have_the_same_tables(tmp_path: Path) -> None:
-    a_book(tmp_path, "new.sidepath").close()
-    migrated = tmp_path / "migrated.sidepath"
-    migrated.touch()
-    engine = sa.create_engine(f"sqlite:///{migrated}")
-    schema.run_revisions(engine, parse_address(migrated))
+def test_a_new_book_and_a_migrated_one_have_the_same_tables(books: Books) -> None:
+    Store.create(books / "new.sidepath").close()
+    engine = bare_engine(books, "migrated.sidepath")
+    engine.connect().close()  # makes the file
+    schema.run_revisions(engine, parse_address(books / "migrated.sidepath"))
     engine.dispose()
-    assert shape_of(tmp_path / "new.sidepath") == shape_of(migrated)
+    assert len(books.shape("new.sidepath")) > 18
+    assert books.shape("new.sidepath") == books.shape("migrated.sidepath")
 
 
 @pytest.fixture
@@ -105,9 +103,9 @@ def later_program(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     return copied
 
 
-def a_full_book(path: Path) -> list[Run]:
+def a_full_book(place: Path | Books) -> list[Run]:
     """Make a book with children, history and facts in every table; return its runs."""
-    with a_book(path.parent, path.name, **CHEMISTRY) as store:
+    with a_book(place, **CHEMISTRY) as store:
         for n in range(5):
             store.add(a_run(note=f"run {n}"), "MK")
         store.amend("1", {"note": "looked at again"}, "MK", "typing error")
@@ -116,30 +114,19 @@ def a_full_book(path: Path) -> list[Run]:
         return list(store.iter_runs(RunFilter(with_withdrawn=True)))
 
 
-def contents_of(path: Path) -> dict[str, list[tuple[object, ...]]]:
-    """Return all rows of all plain tables of a file."""
-    with closing(sqlite3.connect(path)) as connection:
-        tables = [
-            row[0]
-            for row in connection.execute("SELECT name FROM sqlite_master WHERE type = 'table'")
-            if not row[0].startswith(("run_words", "sqlite_", "alembic"))
-        ]
-        return {t: sorted(connection.execute(f"SELECT * FROM {t}"), key=repr) for t in tables}
-
-
 @pytest.mark.usefixtures("later_program")
-def test_migrating_keeps_parents_and_children(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    book = tmp_path / "book.sidepath"
+def test_migrating_keeps_parents_and_children(books: Books, monkeypatch: pytest.MonkeyPatch) -> None:
+    book = books / "book.sidepath"
     with monkeypatch.context() as earlier:
         earlier.setattr(schema, "SCHEMA_HEAD", "0001")
-        a_full_book(book)
-    before = contents_of(book)
+        a_full_book(books)
+    before = books.contents("book.sidepath")
     assert all(before[t] for t in ("run", "component", "solvent", "product_seen", "history", "facts", "run_structure"))
     with pytest.raises(SchemaBehind, match="0001"):
         Store.open(book)
     done = schema.upgrade(parse_address(book))
     assert done is not None and (done.before, done.after) == ("0001", "0002")
-    after = contents_of(book)
+    after = books.contents("book.sidepath")
     assert [row[3] for row in after["event"]] == ["made", "migrated"]
     assert after.pop("event")[:1] == before.pop("event")
     assert [row[:-1] for row in after.pop("run")] == before.pop("run")
@@ -152,7 +139,7 @@ def test_migrating_copies_the_book_first(tmp_path: Path, monkeypatch: pytest.Mon
     book = tmp_path / "book.sidepath"
     with monkeypatch.context() as earlier:
         earlier.setattr(schema, "SCHEMA_HEAD", "0001")
-        runs = a_full_book(book)
+        runs = a_full_book(tmp_path)
     done = schema.upgrade(parse_address(book))
     assert done is not None and done.copy is not None
     with monkeypatch.context() as earlier:
@@ -165,42 +152,46 @@ def test_migrating_copies_the_book_first(tmp_path: Path, monkeypatch: pytest.Mon
     "harm", ['op.execute("DELETE FROM run WHERE run_key = 1")', 'op.execute("SELECT colour FROM nowhere")']
 )
 def test_a_migration_that_fails_leaves_the_book_as_it_was(
-    tmp_path: Path, later_program: Path, harm: str, monkeypatch: pytest.MonkeyPatch
+    books: Books, later_program: Path, harm: str, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    book = tmp_path / "book.sidepath"
+    book = books / "book.sidepath"
     with monkeypatch.context() as earlier:
         earlier.setattr(schema, "SCHEMA_HEAD", "0001")
-        runs = a_full_book(book)
+        runs = a_full_book(books)
     (later_program / "versions" / "0002_later.py").write_text(LATER.format(extra=harm))
-    before = contents_of(book)
+    before = books.contents("book.sidepath"), books.shape("book.sidepath")
     with pytest.raises((StoreDamaged, StoreError)):
         schema.upgrade(parse_address(book))
-    assert contents_of(book) == before
+    assert (books.contents("book.sidepath"), books.shape("book.sidepath")) == before
     with monkeypatch.context() as earlier:
         earlier.setattr(schema, "SCHEMA_HEAD", "0001")
         with Store.open(book) as store:
             assert list(store.iter_runs(RunFilter(with_withdrawn=True))) == runs
 
 
-def test_a_book_of_a_later_program_is_refused_and_left_alone(tmp_path: Path) -> None:
-    book = tmp_path / "book.sidepath"
-    a_book(tmp_path).close()
-    with closing(sqlite3.connect(book)) as connection, connection:
-        connection.execute("UPDATE alembic_version SET version_num = '0999'")
-    before = book.read_bytes()
+def test_a_book_of_a_later_program_is_refused_and_left_alone(books: Books) -> None:
+    a_book(books).close()
+    books.execute("book.sidepath", "UPDATE alembic_version SET version_num = '0999'")
+    before = books.contents("book.sidepath")
     for attempt in (Store.open, lambda p: schema.upgrade(parse_address(p)), lambda p: Store.open(p, read_only=True)):
         with pytest.raises(SchemaTooNew, match="later version"):
-            attempt(book)
-    assert book.read_bytes() == before
+            attempt(books / "book.sidepath")
+    assert books.contents("book.sidepath") == before
 
 
 @pytest.mark.parametrize("revision", SCHEMA_REVISIONS)
-def test_a_stored_book_of_every_released_form_comes_up_to_date(revision: str, tmp_path: Path) -> None:
+def test_a_stored_book_of_every_released_form_comes_up_to_date(revision: str, books: Books) -> None:
     """The books were written by the program of that form; see tests/data/schema/README.md."""
-    book = tmp_path / "book.sidepath"
-    book.write_bytes(gzip.decompress((BOOKS / f"{revision}.sidepath.gz").read_bytes()))
+    stored = books.folder / f"{revision}.sidepath"
+    stored.write_bytes(gzip.decompress((BOOKS / f"{revision}.sidepath.gz").read_bytes()))
+    if books.engine == "sqlite":
+        stored.rename(books.folder / "book.sidepath")
+    else:
+        pour_into_form(stored, revision, books)
+    book = books / "book.sidepath"
     schema.upgrade(parse_address(book))
     with Store.open(book, **CHEMISTRY) as store:
+        store.rebuild()
         found = {run.code: run for run in store.iter_runs(RunFilter(with_withdrawn=True))}
         assert len(found) == 5
         assert found["R-0001"].note == "looked at again"
@@ -209,10 +200,41 @@ def test_a_stored_book_of_every_released_form_comes_up_to_date(revision: str, tm
         assert [c for c in verify(store, sample=None) if not c.ok] == []
 
 
+def pour_into_form(stored: Path, revision: str, books: Books) -> None:
+    """Make a server's book of a form by the revisions up to it, and fill it with the rows of a stored file."""
+    engine, file = bare_engine(books, "book.sidepath"), sa.create_engine(f"sqlite:///{stored}")
+    schema.run_revisions(engine, parse_address(books / "book.sidepath"), revision)
+    theirs = sa.MetaData()
+    theirs.reflect(engine)
+    with file.connect() as read, engine.begin() as write:
+        for table in theirs.sorted_tables:
+            if table.name in ("alembic_version", "run_words"):
+                continue
+            rows = read.exec_driver_sql(f"SELECT * FROM {table.name}").mappings().all()
+            values = [{c.name: as_stored(row[c.name], c.type) for c in table.c} for row in rows]
+            if values:
+                write.execute(sa.insert(table), values)
+    engine.dispose()
+    file.dispose()
+
+
+def as_stored(value: Any, kind: sa.types.TypeEngine[Any]) -> Any:
+    """Return what SQLite keeps of a UUID, a moment, a day or a truth value, as a server keeps it."""
+    if value is None:
+        return None
+    if isinstance(kind, sa.Uuid):
+        return UUID(value)
+    if isinstance(kind, sa.DateTime):
+        return dt.datetime.fromisoformat(value).replace(tzinfo=dt.UTC)
+    if isinstance(kind, sa.Date):
+        return dt.date.fromisoformat(value)
+    return bool(value) if isinstance(kind, sa.Boolean) else value
+
+
 def keep_a_book_of_this_form(folder: Path) -> Path:
     """Write a book of the newest form into tests/data/schema, once; return where."""
     target = BOOKS / f"{schema.SCHEMA_HEAD}.sidepath.gz"
-    a_full_book(folder / "book.sidepath")
+    a_full_book(folder)
     copy_book(folder / "book.sidepath", folder / "copy.sidepath")
     with target.open("xb") as file:
         file.write(gzip.compress((folder / "copy.sidepath").read_bytes(), mtime=0))
