@@ -125,12 +125,12 @@ def step_remarks(row: Row, entry: Entry, file_yield: Interval | None, is_weakest
         parts.append(("◀ weakest", "weak"))
     if mark := findings_mark(row.step):
         parts.append((mark, row.step.findings[0][0]))
+    if row.step.forgiven:
+        parts.append((f"may be poor: {row.step.forgiven[0]}", ""))
     if file_yield is not None:
         parts.append((f"≠ {file_yield.mean:.3g} % in the file", "changed"))
     else:
         parts.append((basis_words(row.step), ""))
-    if row.step.forgiven:
-        parts.append((f"may be poor: {row.step.forgiven[0]}", ""))
     if row.joins is not None:
         parts.append((f"into {safe(row.joins, 14)}", ""))
     parts.append((f"{figure_words(entry.input_mmol)} → {figure_words(entry.product_mmol)} mmol", ""))

@@ -82,6 +82,7 @@ opened lately. Escape stops, or goes back.
             text = Text(safe(Path(place).name, 30), style="bold", no_wrap=True, overflow="ellipsis")
             text.append(f"  {safe(Path(place).parent)}", style="not bold dim")
             listing.add_option(Option(text))
+        listing.highlighted = 0  # so that Enter means something
 
     @on(Input.Submitted, "#route-path")
     def _typed(self, event: Input.Submitted) -> None:
