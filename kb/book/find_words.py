@@ -28,8 +28,9 @@ def criteria_from_words(**words: Any) -> Criteria:
     """Build criteria; None and "" mean not asked.
 
     Args:
-        words: fields of Criteria; `any_of` and `none_of` as lists of "field=value and field=value"; `role` as "substrate", "product", "reagent" or "any"; `temp_from`, `temp_to` with
-            units; `since`, `until` as ISO days; `failed` as a failure mode.
+        words: fields of Criteria; `any_of` and `none_of` as lists of "field=value and field=value"; `role` as
+            "substrate", "product", "reagent" or "any"; `temp_from`, `temp_to` with units; `since`, `until` as ISO
+            days; `failed` as a failure mode.
 
     Raises:
         QueryError: an unknown role or field. QuantityError, InvalidRecord: a value that cannot be read.

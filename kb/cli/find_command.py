@@ -31,7 +31,7 @@ def find(
     exact: Annotated[Word, typer.Option("--exact", metavar="SMILES", help="The very structure.")] = None,
     at_centre: Annotated[
         Word,
-        typer.Option("--at-centre", metavar="SMARTS", help="What the substrate holds, [C:1] being the reacting carbon."),
+        typer.Option("--at-centre", metavar="SMARTS", help="What the substrate holds, [C:1] the reacting carbon."),
     ] = None,
     transformation: Annotated[
         Word, typer.Option("--transformation", metavar="SMARTS>>SMARTS", help="What becomes of what.")

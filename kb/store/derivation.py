@@ -29,7 +29,7 @@ if TYPE_CHECKING:
     from kb.chem.scheme import Scheme
     from kb.record.plan import Plan
 
-RECIPE = "facts/4"
+RECIPE = "facts/5"
 """Name of what makes DerivedFacts; the screens' and RDKit's are appended where facts are stored."""
 
 MORGAN_RADIUS = 2
@@ -99,7 +99,8 @@ def dissect(run: Run) -> list[tuple[str, int, str]]:
 
     Returns:
         (role, position, SMILES) of every left-side fragment (substrate or reagent, by component), of every named
-        component with a structure, and of every product stated or seen. Unreadable text gives fewer rows, no error.
+        component with a structure, and of every product stated or seen; canonical, without atom maps, so that one
+        structure is one however it was drawn. Unreadable text gives fewer rows, no error.
     """
     account = _account_to_store(run.scheme, run.conditions)
     centre = account.reading.centre
@@ -108,15 +109,27 @@ def dissect(run: Run) -> list[tuple[str, int, str]]:
         is_substrate = centre is not None and centre.component == position
         if centre is None and position == 0:
             is_substrate = True
-        rows.append((Role.SUBSTRATE if is_substrate else Role.REAGENT, position, smiles))
+        rows.append((Role.SUBSTRATE if is_substrate else Role.REAGENT, position, _plain_structure(smiles)))
     rows += [
-        (Role.REAGENT, position, component.smiles)
+        (Role.REAGENT, position, _plain_structure(component.smiles))
         for position, component in enumerate(run.conditions.components, start=len(account.fragments))
         if component.smiles
     ]
-    seen = list(account.products) + [p.smiles for p in run.outcome.products if p.smiles]
+    seen = map(_plain_structure, (*account.products, *(p.smiles for p in run.outcome.products if p.smiles)))
     rows += [(Role.PRODUCT, position, smiles) for position, smiles in enumerate(dict.fromkeys(seen))]
     return rows
+
+
+@lru_cache(maxsize=8192)
+def _plain_structure(smiles: str) -> str:
+    """Return the canonical SMILES without maps; text that cannot be read stays as it is."""
+    from kb.chem.structure import canonical_smiles
+    from kb.errors import StructureError
+
+    try:
+        return canonical_smiles(smiles)
+    except StructureError:
+        return smiles
 
 
 def profile_to_json(profile: ConditionProfile) -> str:

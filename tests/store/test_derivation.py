@@ -5,8 +5,10 @@ from __future__ import annotations
 import pytest
 
 from kb.book.plan_words import plan_from_words
-from kb.store.derivation import Account, account_of_plan, profile_from_json, profile_to_json
-from kb.vocabulary import Confidence
+from kb.record.outcome import Outcome, ProductSeen
+from kb.record.run import Run
+from kb.store.derivation import Account, account_of_plan, dissect, profile_from_json, profile_to_json
+from kb.vocabulary import Confidence, Fate
 
 
 def reagents(scheme: str, **words: object) -> frozenset[str]:
@@ -62,3 +64,18 @@ def test_reading_lone_hydrogen_ions_writes_nothing_to_the_screen(capfd: pytest.C
     account("CCCBr.[H-].[Na+]>>CC=C", solvents=["THF"])
     account("[H+].CC(C)=C.[H][H]", solvents=["MeOH"])
     assert capfd.readouterr().err == ""
+
+
+def test_a_structure_is_stored_once_however_it_was_drawn() -> None:
+    conditions = plan_from_words({"scheme": "CCBr", "reagents": ["NaN3"]}).conditions
+    schemes = ("CCC(Br)C.C[O-]>>CCC(C)OC", "[CH3:4][CH:1]([Br:2])CC.[O-:5]C>>[CH3:4][CH:1](CC)[O:5]C")
+    places = [set(dissect(Run(scheme=scheme, conditions=conditions))) for scheme in schemes]
+    assert places[0] == places[1]
+    assert ("substrate", 0, "CCC(C)Br") in places[0]
+    assert all(":" not in smiles for _, _, smiles in places[0])
+
+
+def test_products_stated_and_seen_are_one_where_they_are_the_same() -> None:
+    outcome = Outcome(products=(ProductSeen(fate=Fate.SUBSTITUTION, smiles="COC(C)CC"),))
+    run = Run(scheme="CCC(C)Br.C[O-]>>CCC(C)OC", outcome=outcome)
+    assert [smiles for role, _, smiles in dissect(run) if role == "product"] == ["CCC(C)OC"]
