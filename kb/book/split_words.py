@@ -30,6 +30,7 @@ class SplitAnswer:
         shares: molar share per label, 0..1 with 80 % intervals, in the order given.
         assay_yield_pct: against the standard; None = no standard.
         assay_of: label of the product whose yield that is.
+        recovered_pct: everything that was integrated, against the substrate charged; None = no standard.
         compared: the two labels whose barriers are compared; None = fewer than two products seen.
         delta_delta_g_kj_mol: RT ln(first/second of `compared`) [kJ/mol], positive where the first is favoured.
         temperature_c: at which [degC].
@@ -40,6 +41,7 @@ class SplitAnswer:
     shares: tuple[tuple[str, Interval], ...]
     assay_yield_pct: Interval | None = None
     assay_of: str | None = None
+    recovered_pct: Interval | None = None
     compared: tuple[str, str] | None = None
     delta_delta_g_kj_mol: Interval | None = None
     temperature_c: float = ROOM_TEMPERATURE_C
@@ -54,6 +56,7 @@ class SplitAnswer:
             "assay_yield_pct": assay.mean if assay else None,
             "assay_yield_interval_pct": assay.as_dict() if assay else None,
             "assay_of": self.assay_of,
+            "recovered_pct": self.recovered_pct.as_dict() if self.recovered_pct else None,
             "delta_delta_g_kj_mol": ddg.mean if ddg else None,
             "delta_delta_g_interval_kj_mol": ddg.as_dict() if ddg else None,
             "compared": list(self.compared) if self.compared else None,
@@ -104,13 +107,14 @@ def split_from_words(
             raise QuantityError(f"{label!r} is given twice.", "Add its integrals up, or use two labels.", text)
         signals[label] = _signal(value, label, areas=areas or is_uncounted)
     split = split_from_signals(signals, relative)
-    assay, assay_of = _assay(signals, standard, standard_mmol, scale, of, relative, areas=areas)
+    assay, assay_of, recovered = _assay(signals, standard, standard_mmol, scale, of, relative, areas=areas)
     at_c, is_assumed = _temperature(temperature)
     compared = _compared(split.shares)
     return SplitAnswer(
         shares=split.shares,
         assay_yield_pct=assay,
         assay_of=assay_of,
+        recovered_pct=recovered,
         compared=compared,
         delta_delta_g_kj_mol=_barriers(signals, compared, relative, at_c),
         temperature_c=at_c,
@@ -151,21 +155,26 @@ def _assay(
     relative: float,
     *,
     areas: bool,
-) -> tuple[Interval | None, str | None]:
+) -> tuple[Interval | None, str | None, Interval | None]:
     given = {"--standard": standard, "--standard-mmol": standard_mmol, "--scale": scale}
     missing = [flag for flag, value in given.items() if value is None]
     if len(missing) == len(given) and of is None:
-        return None, None
+        return None, None, None
     if standard is None or standard_mmol is None or scale is None:
         raise QuantityError(f"An assay yield also needs {' and '.join(missing)}.", "Give all of them, or none.", None)
     label = next(iter(signals)) if of is None else of.strip()
     if label not in signals:
         raise QuantityError(f"There is no signal {label!r}.", f"Use one of: {', '.join(signals)}.", label)
     weighed, charged = _mmol(standard_mmol), _mmol(scale)
-    return (
-        assay_yield(signals[label], _signal(standard, "standard", areas=areas), weighed, charged, relative),
-        label,
-    )
+    reference = _signal(standard, "standard", areas=areas)
+    each = {name: assay_yield(signal, reference, weighed, charged, relative) for name, signal in signals.items()}
+    return each[label], label, _recovered(list(each.values()))
+
+
+def _recovered(parts: Sequence[Interval]) -> Interval:
+    """Return the sum of assay yields [%]; their common error, that of the standard, is taken as the whole of it."""
+    mean, low, high = (round(sum(getattr(p, name) for p in parts), 2) for name in ("mean", "low", "high"))
+    return Interval(mean=mean, low=low, high=high)
 
 
 def _mmol(text: str) -> float:
