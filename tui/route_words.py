@@ -81,7 +81,7 @@ def yield_words(pct: Interval) -> str:
 def step_cells(row: Row, width: int) -> str:
     """Return the first line of a step in `width` cells: flow, number, name, bar, yield; bars stand under each other."""
     pct = row.step.yield_pct.pct
-    room = width - 13
+    room = width - 15
     names = max(min(room - 8, 26), 12)
     name = safe(f"{row.number} {safe(row.step.name)}", max(names - len(row.first), 4))
     bar = bar_cells(_share(pct), max(room - names - 1, 3))
