@@ -17,6 +17,7 @@ from textual.binding import Binding, BindingType
 from textual.containers import Horizontal
 from textual.content import Content
 from textual.widgets import ContentSwitcher, Static
+from textual.worker import Worker, WorkerState
 
 from kb.chem.layout import MarkKind, SchemeDrawing
 from kb.errors import Cancelled, SidepathError
@@ -25,7 +26,7 @@ from tui.drawings import scheme_drawing
 from tui.failure_words import tally_markdown
 from tui.jobs import ThreadProgress
 from tui.marks import mark_match
-from tui.messages import JobProgressed, RunStored
+from tui.messages import JobProgressed
 from tui.plan_state import state_of_run
 from tui.ports import BookPort
 from tui.present import safe
@@ -219,6 +220,14 @@ it would have warned of in the whole book, and its false alarms.
         self._show_state()
         self.refresh_bindings()
 
+    @on(Worker.StateChanged)
+    def _failed_unforeseen(self, event: Worker.StateChanged) -> None:
+        """Let a question be asked again whose worker broke; the trouble line says so."""
+        if event.state in (WorkerState.ERROR, WorkerState.CANCELLED) and event.worker.group in self._asked:
+            del self._asked[event.worker.group]
+            self._show_state()
+            self.refresh_bindings()
+
     def _show_state(self, event: JobProgressed | None = None) -> None:
         """Show how far the part in view is, or that it is out of date."""
         line = self.query_one("#failures-state", Static)
@@ -311,8 +320,8 @@ it would have warned of in the whole book, and its false alarms.
 
     def _adopted(self, title: str, rule_id: str) -> None:
         self.app.notify(f"Rule {safe(rule_id)} adopted: {safe(title)}. It warns from now on.", markup=False)
-        self.app.post_message(RunStored(""))
-        self.call_later(self._ask_if_short)
+        self.app.count_runs()
+        self._ask_if_short()
 
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Show keys where they work, grey them where they do not now."""

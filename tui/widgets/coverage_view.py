@@ -78,6 +78,7 @@ class CoverageView(AuditView):
             line = Text(f"{number}. {safe(what)}", style="bold")
             line.append(f"\n{safe(why)}", style="not bold")
             experiments.add_option(Option(line))
+        experiments.highlighted = 0 if coverage.experiments else None
         if not coverage.experiments:
             experiments.add_option(
                 Option("Nothing to propose: no recent step has a record to compare.", disabled=True)
