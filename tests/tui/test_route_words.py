@@ -78,7 +78,7 @@ def test_every_step_is_listed_once_however_often_it_is_taken() -> None:
     assert sorted(row.step.name for row in sequence_rows(route)) == ["a", "b", "c"]
 
 
-@pytest.mark.parametrize("width", [30, 36, 47, 80])
+@pytest.mark.parametrize("width", [32, 36, 47, 80])
 def test_bars_stand_under_each_other_and_lines_fit(width: int) -> None:
     route = a_route(
         a_step("a rather long name of a step", "x", pct=0.5),

@@ -26,7 +26,7 @@ class RouteSequence(OptionList):
     """All steps, main line at the edge."""
 
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("enter", "select", "Runs behind", id="route.behind", tooltip="Open the runs behind a step's yield"),
+        Binding("enter,r", "select", "Runs behind", id="route.behind", tooltip="Open the runs behind a step's yield"),
     ]
 
     class Looked(Message):
@@ -89,7 +89,7 @@ class RouteSequence(OptionList):
     def _prompt(self, row: Row) -> Text:
         ledger = self._ledger
         assert ledger is not None  # there are rows only where there is a ledger
-        width = max(self._width, 30)
+        width = max(self._width, 32)
         entry = next(e for e in ledger.entries if e.step.name == row.step.name)
         is_weakest = ledger.weakest is not None and ledger.weakest.step == row.step.name
         before = self._file_yields.get(row.step.name)
