@@ -87,6 +87,10 @@ class AskingScreen(Screen[ScreenResult]):
         """Hear of the book when it is open."""
         self.watch(self.app, "book", self._book_changed)
 
+    def on_unmount(self) -> None:
+        """Stop what still runs: nobody will see the answer, and leaving would wait for it."""
+        self._stop_all()
+
     def _book_changed(self, book: BookPort | None) -> None:
         if book is not None:
             self.book_arrived(book)
@@ -192,7 +196,8 @@ class AskingScreen(Screen[ScreenResult]):
             event.take()
 
     def _next_job(self, kind: str) -> None:
-        self._in_work.pop(kind, None)
+        if (progress := self._in_work.pop(kind, None)) is not None:
+            progress.cancel()  # it has ended, or nobody will hear of it: then its thread is told to end
         if waiting := self._boxes[kind].finish():
             self._start_job(kind, *waiting)
         self._show_busy()
@@ -227,6 +232,9 @@ class AskingScreen(Screen[ScreenResult]):
 
     def action_stop(self) -> None:
         """Ask whatever runs to stop, and drop what waits behind it."""
+        self._stop_all()
+
+    def _stop_all(self) -> None:
         for box in self._boxes.values():
             box.drop_waiting()
         for progress in self._in_work.values():

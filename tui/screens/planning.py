@@ -57,7 +57,7 @@ class PlanningScreen(PlaceScreen):
 Planning. Type the substrate or the whole scheme (SMILES, reaction SMILES, or a name), then the conditions;
 several entries of a line are parted by semicolons, equivalents follow "=", parts of a solvent ":" (THF:4;
 water:1). Names are completed from the catalogue: Enter or → takes the completion. The answer follows while
-you type.
+you type; Esc stops a check that takes long, Ctrl+R checks again.
 
 What to expect shows the split between the fates with 80 % intervals. Known against it lists liabilities,
 resemblance to recorded failures, house rules and cautions, most severe first; the highlighted one is marked
@@ -71,6 +71,7 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
         ),
         Binding("ctrl+l", "numbers", "Numbers", id="plan.numbers", tooltip="Atom numbers in the drawing"),
         Binding("ctrl+n", "clear", "New", id="plan.new", tooltip="Empty the form (can be undone)"),
+        Binding("ctrl+r", "check_again", "Check again", show=False, id="plan.again", tooltip="Check the step once more"),
         Binding("ctrl+z", "undo", "Undo", show=False, id="plan.undo", tooltip="Take back the last edit"),
         Binding("ctrl+y", "redo", "Redo", show=False, id="plan.redo", tooltip="Do the edit again"),
     ]
@@ -157,6 +158,10 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
 
     def _show_bad(self, error: SidepathError) -> None:
         """Show a scheme that nobody can read in its place; trouble with the book at the foot."""
+        if isinstance(error, Cancelled):
+            self.show_trouble(None)
+            self._show_nothing("Stopped. Change a line, or press Ctrl+R, to check again.")
+            return
         if not isinstance(error, ChemistryError):
             self.show_trouble(error)
             self._show_nothing("No answer; the foot of the screen says why.")
@@ -287,7 +292,7 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
         """Grey out what makes no sense now."""
         if action == "run_it":
             return None if self.book is None or self.book.is_read_only else True
-        return True
+        return super().check_action(action, parameters)
 
     def action_run_it(self) -> None:
         """Open the entry form with this plan."""
@@ -298,6 +303,10 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
             self.app.notify("Type a scheme first.", markup=False)
             return
         self.app.push_screen(EntryScreen(state))
+
+    def action_check_again(self) -> None:
+        """Put the form to the book once more, after a stop or when others have recorded runs."""
+        self._read()
 
     def action_shelf(self) -> None:
         """Turn the shelf."""

@@ -49,7 +49,7 @@ class RunActions(AskingScreen[ScreenResult]):
             return None
         if action in CHANGING and (self.book is None or self.book.is_read_only or (run and run.is_withdrawn)):
             return None
-        return True
+        return super().check_action(action, parameters)
 
     async def action_plan_again(self) -> None:
         """Take the run to planning."""
