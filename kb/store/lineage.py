@@ -36,6 +36,9 @@ ADD, AMEND, WITHDRAW, REINSTATE, SETTLE = "add", "amend", "withdraw", "reinstate
 NOT_CONTENT = ("sidepath_run", "run_id", "revision")
 """Keys of the portable form that are not what the chemist recorded."""
 
+EMPTY = {"note": ""}
+"""What a field says that was left empty, where that is neither None nor a list; elsewhere an empty text was given."""
+
 NEVER_DISPUTED = ("code", "recorded_at")
 """Fields that the store gave: the least value stands, nobody is asked."""
 
@@ -56,7 +59,7 @@ def content_of(run: Run) -> Content:
     flat: Content = {}
     for key, value in run_to_dict(run).items():
         inner = {f"{key}.{k}": v for k, v in value.items()} if isinstance(value, dict) else {key: value}
-        flat.update((k, v) for k, v in inner.items() if v not in (None, [], "") and k not in NOT_CONTENT)
+        flat.update((k, v) for k, v in inner.items() if v not in (None, [], EMPTY.get(k)) and k not in NOT_CONTENT)
     run_of(flat, run_id=run.run_id, revision=run.revision)
     return json.loads(canonical(flat))
 

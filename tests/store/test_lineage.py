@@ -126,3 +126,12 @@ def test_content_is_flat_sparse_and_comes_back() -> None:
     assert "series" not in content and "note" not in content
     assert content["outcome.isolated_yield_pct"] == 81.0
     assert lineage.run_of(content, run_id=run.run_id, revision=1) == run
+
+
+@pytest.mark.parametrize("field", ["by", "reference", "project", "series", "withdrawn_why"])
+def test_an_empty_text_that_was_given_is_content_and_an_empty_note_is_not(field: str) -> None:
+    """A run that came with an empty text must read the same from its history as from its row."""
+    run = a_run(note="", **{field: ""})
+    content = lineage.content_of(run)
+    assert "note" not in content
+    assert lineage.run_of(content, run_id=run.run_id, revision=run.revision) == run
