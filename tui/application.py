@@ -154,6 +154,11 @@ class SidepathApp(App[None]):
                 asyncio.get_running_loop().add_signal_handler(number, self.exit)
         self.call_after_refresh(self._begin)
 
+    def on_unmount(self) -> None:
+        """Let go of the book when the program is left."""
+        if self.book is not None:
+            self.book.close()
+
     async def _begin(self) -> None:
         """Load the planning place and open the book."""
         self.open_book(lambda: self._opener.open(self._place))
