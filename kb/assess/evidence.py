@@ -49,6 +49,13 @@ _MODES_OF_GROUP: dict[str, frozenset[str]] = {
     "epoxide": frozenset({"wrong-regioisomer"}),
 }
 """Failure modes that say that a rule without a fate of its own has struck."""
+_MODES_WHEREVER: dict[str, frozenset[str]] = {
+    "epimerisation": frozenset({"epimerisation", "racemisation"}),
+    "amine-alkylation": frozenset({"over-reaction"}),
+}
+"""Likewise for rules whose motif may lie anywhere, or on the nucleophile, and stays in the product."""
+_NEEDS_MEASURE = frozenset({"epimerisation"})
+"""Groups in which a run that worked shows nothing unless ee or dr was measured."""
 
 
 def with_evidence(finding: Finding, plan: FactTable, view: RecordView) -> Finding:
@@ -60,17 +67,33 @@ def with_evidence(finding: Finding, plan: FactTable, view: RecordView) -> Findin
         view: the runs.
     """
     rule = get_rule(finding.rule_id)
-    if not len(view.table) or rule.side not in ("bystander", "centre"):
+    way = _way_of(rule, plan, view) if len(view.table) else ""
+    if not way:
         return finding
-    if rule.side == "bystander":
-        struck, spared = count_evidence(view, _nearest(rule, plan, view), rule.find_motif)
-    elif rule.gives is not None or rule.group in _MODES_OF_GROUP:
-        struck, spared = _count_at_centre(rule, view, _nearest(rule, plan, view))
+    rows = _nearest(rule, plan, view, at_centre=way == "centre")
+    if way == "bystander":
+        struck, spared = count_evidence(view, rows, rule.find_motif)
     else:
-        return finding
+        struck, spared = _count_by_fate(rule, view, rows)
     evidence = word_evidence(view, struck, spared, plan)
     severity = finding.severity if finding.is_uncertain else weighed_severity(finding.severity, evidence)
     return dataclasses.replace(finding, evidence=evidence, severity=severity)
+
+
+def _way_of(rule: Rule, plan: FactTable, view: RecordView) -> str:
+    """Return how runs bear witness: by the motif ("bystander"), the fate ("centre") or a failure ("modes"); "" = not.
+
+    A rule whose motif may lie anywhere is asked where it lies in the plan.
+    """
+    if rule.side == "bystander":
+        return "bystander"
+    if rule.group in _MODES_WHEREVER:
+        return "modes"
+    if rule.side not in ("centre", "anywhere"):
+        return ""
+    if rule.side == "anywhere" and not _lies_at_centre(rule, plan, 0, view):
+        return "bystander"
+    return "centre" if rule.gives is not None or rule.group in _MODES_OF_GROUP else ""
 
 
 def count_evidence(view: RecordView, rows: Iterable[int], find: FindMotif) -> tuple[list[int], list[int]]:
@@ -128,29 +151,29 @@ def _chance(lost: float, survived: float) -> Interval:
     return loss_chance(lost, survived)
 
 
-def _nearest(rule: Rule, plan: FactTable, view: RecordView) -> list[int]:
+def _nearest(rule: Rule, plan: FactTable, view: RecordView, *, at_centre: bool) -> list[int]:
     """Return the runs that can bear witness, those nearest in conditions first, at most MOST_WITNESSES."""
     holding = distinct(np.concatenate([view.rows_with_motif(smarts) for smarts in rule.motifs])).astype(np.intp)
     rows = holding[view.told(("rule", rule.rule_id), rule.applies, holding) == 1]
     nearness = -np.abs(harsher_by_k(plan, view.table, rows))
-    if rule.side == "bystander":
+    if not at_centre:
         return [int(row) for row in rows[best_rows(nearness, MOST_WITNESSES)]]
     rows = rows[best_rows(nearness, MOST_LOOKED_AT)]
     found: list[int] = []
     for row in rows:
-        if _is_at_centre(rule, view, int(row)):
+        if _lies_at_centre(rule, view.table, int(row), view):
             found.append(int(row))
             if len(found) >= MOST_WITNESSES:
                 break
     return found
 
 
-def _is_at_centre(rule: Rule, view: RecordView, row: int) -> bool:
-    """Return True where the rule's motif sits on the centre that was read in a run."""
-    atom = view.table.number("centre_atom", row)
+def _lies_at_centre(rule: Rule, table: FactTable, row: int, view: RecordView) -> bool:
+    """Return True where the rule's motif sits on the centre that was read in a run, or in the plan."""
+    atom = table.number("centre_atom", row)
     if atom is None:
         return False
-    substrate = view.table.substrate[row]
+    substrate = table.substrate[row]
     key = ("at centre", rule.rule_id, substrate, atom)
     if key not in view.known:
         mol = view.mol(substrate)
@@ -159,11 +182,13 @@ def _is_at_centre(rule: Rule, view: RecordView, row: int) -> bool:
     return bool(view.known[key])
 
 
-def _count_at_centre(rule: Rule, view: RecordView, rows: Sequence[int]) -> tuple[list[int], list[int]]:
+def _count_by_fate(rule: Rule, view: RecordView, rows: Sequence[int]) -> tuple[list[int], list[int]]:
     """Split rows by whether the feared fate took FEARED_SHARE or a failure names it; silent rows are left out."""
-    modes = _MODES_OF_GROUP.get(rule.group, frozenset())
+    modes = _MODES_OF_GROUP.get(rule.group, frozenset()) | _MODES_WHEREVER.get(rule.group, frozenset())
     if rule.gives is not None:
         modes = modes | _MODES_OF_FATE.get(rule.gives, frozenset())
+    if rule.group in _NEEDS_MEASURE:
+        view.fetch(rows)
     struck: list[int] = []
     spared: list[int] = []
     for row in rows:
@@ -172,6 +197,10 @@ def _count_at_centre(rule: Rule, view: RecordView, rows: Sequence[int]) -> tuple
         share = _share(shares, rule.gives) if is_measured else 0.0
         if share >= FEARED_SHARE or any(mode in modes for mode, _ in view.failures[row]):
             struck.append(row)
+        elif rule.group in _NEEDS_MEASURE:
+            outcome = view.run(row).outcome
+            if outcome.ee_pct is not None or outcome.dr is not None:
+                spared.append(row)
         elif is_measured or view.table.word("verdict", row) == "worked":
             spared.append(row)
     return struck, spared

@@ -13,7 +13,7 @@ import pytest
 from kb.book import Book, open_book
 from kb.book.plan_words import conditions_from_words, plan_from_words
 from kb.record.finding import Finding
-from kb.record.outcome import Outcome, ProductSeen
+from kb.record.outcome import Failure, Outcome, ProductSeen
 from kb.record.run import Run
 from kb.vocabulary import Fate, Severity, Verdict
 
@@ -132,3 +132,61 @@ def test_a_liability_at_the_centre_hears_the_splits_of_like_runs(tmp_path_factor
     assert (bad.evidence.lost, bad.evidence.survived) == (6, 0)
     assert (good.evidence.lost, good.evidence.survived) == (0, 8)
     assert (bad.severity, good.severity) == (Severity.SERIOUS, Severity.NOTE)  # a caution by rule
+
+
+@pytest.fixture(scope="module")
+def other_book(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Book]:
+    """Yield a book of invented runs whose liabilities lie anywhere in the molecule, or on the nucleophile."""
+    with open_book(tmp_path_factory.mktemp("anywhere") / "book.sidepath", create=True) as new:
+        for chain in range(1, 6):
+            tail = "C" * chain
+            lost = (ProductSeen(fate=Fate.ELIMINATION, share=0.9), ProductSeen(fate=Fate.SUBSTITUTION, share=0.1))
+            new.add(
+                Run(
+                    scheme=f"BrC(C)CC(=O)O{tail}.[N-]=[N+]=[N-]>>[N-]=[N+]=NC(C)CC(=O)O{tail}",
+                    conditions=conditions_from_words(
+                        {"reagents": "NaN3", "bases": "K2CO3", "solvents": "DMF", "temperature": "60 °C"}
+                    ),
+                    outcome=Outcome(products=lost),
+                    verdict=Verdict.FAILED,
+                ),
+                "T",
+            )
+            twice = (ProductSeen(fate=Fate.SUBSTITUTION, share=0.4), ProductSeen(fate=Fate.OTHER, share=0.6))
+            new.add(
+                Run(
+                    scheme=f"{tail}CBr.NCc1ccccc1>>{tail}CNCc1ccccc1",
+                    conditions=conditions_from_words(
+                        {"reagents": "benzylamine", "bases": "K2CO3", "solvents": "MeCN", "temperature": "60 °C"}
+                    ),
+                    outcome=Outcome(products=twice, failures=(Failure(mode="over-reaction"),)),
+                    verdict=Verdict.FAILED,
+                ),
+                "T",
+            )
+        yield new
+
+
+@pytest.mark.parametrize(
+    ("rule_id", "words"),
+    [
+        (
+            "beta-lg-acceptor-e1cb",
+            {"scheme": "BrC(CC)CC(=O)OCC.[N-]=[N+]=[N-]>>[N-]=[N+]=NC(CC)CC(=O)OCC", "reagents": "NaN3",
+             "bases": "K2CO3", "solvents": "DMF", "temperature": "60 °C"},
+        ),
+        (
+            "primary-amine-overalkylation",
+            {"scheme": "CCCCCCCCBr.NCc1ccccc1>>CCCCCCCCNCc1ccccc1", "reagents": "benzylamine", "bases": "K2CO3",
+             "solvents": "MeCN", "temperature": "60 °C"},
+        ),
+    ],
+)  # fmt: skip
+def test_a_liability_that_may_lie_anywhere_hears_the_runs_too(
+    other_book: Book, rule_id: str, words: dict[str, str]
+) -> None:
+    finding = next(f for f in other_book.check(plan_from_words(words)).findings if f.rule_id == rule_id)
+    assert finding.evidence is not None
+    assert (finding.evidence.lost, finding.evidence.survived) == (5, 0)
+    assert finding.evidence.chance is not None and finding.evidence.chance.mean > 0.8
+    assert finding.severity is Severity.SERIOUS
