@@ -18,6 +18,7 @@ from numpy.typing import NDArray
 
 from kb.assess.record_view import RecordView
 from kb.assess.table import WORDS, FactTable
+from kb.audit.profile_table import ProfileTable
 from kb.audit.teaching import Experiment, teach_most
 from kb.materials.profile import ConditionProfile
 from kb.progress import Progress, Silent
@@ -30,6 +31,8 @@ DISAGREES = 0.35
 """Difference of share (0..1) from which two like flasks contradict each other."""
 _BAND_K = 10.0
 _BAND_PKAH = 2.0
+_FLASK = ("base_pkah", "base_bulk", "acidity", "lewis_acid", "has_unknown_reagent", "solvent_classes")
+"""What `_flask_words` reads."""
 _COARSE = ("protic", "polar-aprotic", "weakly-polar", "nonpolar")
 
 
@@ -157,17 +160,19 @@ def wanted_share(table: FactTable) -> NDArray[np.float64]:
 def cell_keys(view: RecordView) -> list[tuple[str, str, str, str]]:
     """Return the cell of each run (n): carbon class, leaving group, nucleophile or base, solvent class."""
     table = view.table
-    flasks = [_flask_words(view.profile_of_code(code)) for code in range(len(table.profiles))]
+    alike = ProfileTable(view).alike(_FLASK, np.arange(len(table)))
+    words = {number: _flask_words(profile) for number, profile in dict(alike).items()}
+    flasks = [words[number] for number, _ in alike]
     carbon = [*WORDS["carbon_class"], "not read"]
     leaving = [*WORDS["leaving_group"], "none"]
     nucleophiles = [*table.nucleophile_words, ""]
     return [
-        (carbon[c], leaving[g], nucleophiles[n].replace("_", " ") or flasks[p][0], flasks[p][1])
-        for c, g, n, p in zip(
+        (carbon[c], leaving[g], nucleophiles[n].replace("_", " ") or flask[0], flask[1])
+        for c, g, n, flask in zip(
             table.words["carbon_class"].tolist(),
             table.words["leaving_group"].tolist(),
             table.nucleophile.tolist(),
-            table.profile.tolist(),
+            flasks,
             strict=True,
         )
     ]

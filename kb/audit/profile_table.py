@@ -39,6 +39,10 @@ class ProfileTable:
 
     def told(self, line: str, rows: NDArray[np.intp]) -> NDArray[np.int8]:
         """Return what a line says of some rows: 1 true, 0 false, -1 cannot tell (len(rows))."""
+        parts = _chain(line)
+        if len(parts) > 1:  # each test by itself: facts taken together have many more combinations
+            answers = np.stack([self.told(part, rows) for part in parts])
+            return np.where((answers == 0).any(axis=0), 0, answers.min(axis=0)).astype(np.int8)
         predicate = parse_predicate(line)
         group, profiles = self._grouped({field_of(test.name) or test.name for test in predicate.tests()})
         if line not in self._answers:
@@ -94,6 +98,13 @@ class ProfileTable:
             for fact, known in places.items()
         }
         return {fact: (codes[fact], decoded[fact]) for fact in facts}
+
+
+def _chain(line: str) -> list[str]:
+    """Return the tests of a line that only joins tests by `and`; any other line as it is."""
+    parts = line.split(" and ")
+    is_plain = " or " not in line and line.count("(") == line.count(" in (")
+    return [part.strip() for part in parts] if is_plain else [line]
 
 
 def _default(of: Any) -> Any:

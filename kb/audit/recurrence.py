@@ -20,6 +20,7 @@ from numpy.typing import NDArray
 from kb.assess.forcing import Force, force_of, forces_as_much, forces_no_more
 from kb.assess.house_rules import try_rule
 from kb.assess.predicate import parse_predicate
+from kb.assess.predicate_words import words_of
 from kb.assess.record_view import RecordView
 from kb.audit.condition_line import Line, propose_line
 from kb.audit.failing import failed_rows, judged_rows, meaning_of
@@ -48,6 +49,7 @@ def find_recurring(
     house_rules: Sequence[HouseRule] = (),
     since: dt.date | None = None,
     progress: Progress | None = None,
+    prepare_motifs: Callable[[Sequence[str], Progress], None] | None = None,
 ) -> Recurrence:
     """Find the recurring failures of a book.
 
@@ -56,6 +58,7 @@ def find_recurring(
         circumstances: project and scale by code; missing ones count as not recorded.
         house_rules: retired ones are passed over.
         since: count failures from this day on; earlier ones still serve as the earlier record.
+        prepare_motifs: told which motifs will be asked of the view, to look for them all at once.
 
     Raises:
         Cancelled: the user stopped it.
@@ -67,6 +70,8 @@ def find_recurring(
     sited = site_failures(view, rows)
     finder = _Finder(view, circumstances or {}, [r for r in house_rules if not r.is_retired], counted)
     groups = [group for group in _grouped(view, sited) if sum(counted[r] or not since for r in group.rows) >= RECURS]
+    if prepare_motifs is not None:
+        prepare_motifs([g.place.smarts for g in groups if g.place.smarts], progress)
     clusters = []
     for number, group in enumerate(groups):
         if progress.cancelled():
@@ -193,20 +198,24 @@ class _Finder:
             words = np.array([*self.table.nucleophile_words, ""], dtype=object)
             return np.flatnonzero(words[self.table.nucleophile] == place.key[1])
         if place.aspect is Aspect.MEDIUM:
-            return np.flatnonzero(self.profiles.holds(self._first(place), np.arange(len(self.table))))
+            first = self._first(place)
+            rows = np.arange(len(self.table))
+            return np.flatnonzero(self.profiles.holds(first, rows)) if first else rows[:0]
         return np.asarray(self.view.rows_with_motif(place.smarts), dtype=np.intp)
 
     def _line(self, group: _Group, members: NDArray[np.intp], successes: NDArray[np.intp]) -> Line | None:
-        if group.place.aspect is Aspect.HAND:
-            return None
         first = self._first(group.place)
+        if group.place.aspect is Aspect.HAND or (not first and not group.place.smarts):
+            return None  # nothing to hang a rule on
         return propose_line(self.profiles, members, successes, first, group.mode in _NOTHING_HAPPENED)
 
     def _first(self, place: Place) -> str:
         """Return the test that a place itself is told by, where it lies in the flask; "" = in the substrate."""
-        if place.aspect is Aspect.PARTNER:
-            return f"nucleophile_class == {place.key[1]}"
-        return f"solvent in ({place.key[1].replace('-', '_')})" if place.aspect is Aspect.MEDIUM else ""
+        fact = {Aspect.PARTNER: "nucleophile_class", Aspect.MEDIUM: "solvent"}.get(place.aspect)
+        word = place.key[-1].replace("-", "_")
+        if fact is None or word not in words_of(fact):  # a class that conditions have no word for
+            return ""
+        return f"{fact} == {word}" if place.aspect is Aspect.PARTNER else f"{fact} in ({word})"
 
     def _proposal(self, group: _Group, line: Line, rows: Sequence[int]) -> Proposal:
         codes = [self.table.codes[r] for r in rows]

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections import Counter
 from dataclasses import dataclass
+from functools import cache, lru_cache
 from typing import Any
 
 from kb.assess.motif import lost_atoms
@@ -40,12 +41,38 @@ class Sited:
 
 def site_failures(view: RecordView, rows: list[int]) -> list[Sited]:
     """Find the place of every failure of some rows, in their order."""
+    view.fetch(row for row in rows if any(_needs_products(*failure) for failure in view.failures[row]))
+    substrate = view.table.substrate
+    found = {  # substrate by substrate, so that each is read once and let go of
+        (row, number): _place(view, row, mode, motif)
+        for row in sorted(rows, key=lambda row: substrate[row])
+        for number, (mode, motif) in enumerate(view.failures[row])
+    }
     sited = [
-        Sited(row=row, mode=mode, place=_place(view, row, mode, motif))
+        Sited(row=row, mode=mode, place=found[row, number])
         for row in rows
-        for mode, motif in view.failures[row]
+        for number, (mode, _) in enumerate(view.failures[row])
     ]
     return _with_the_usual_place(view, sited)
+
+
+def _needs_products(mode: str, motif: str | None) -> bool:
+    return motif is None and aspect_of(mode) is Aspect.GROUP
+
+
+@lru_cache(maxsize=256)
+def _mol(smiles: str) -> Any:
+    """Return the molecule of a SMILES, None where it cannot be read; few are kept, since a record has too many."""
+    from rdkit import Chem
+
+    return Chem.MolFromSmiles(smiles) if smiles else None
+
+
+@cache
+def _query(smarts: str) -> Any:
+    from rdkit import Chem
+
+    return Chem.MolFromSmarts(smarts)
 
 
 def _place(view: RecordView, row: int, mode: str, motif: str | None) -> Place | None:
@@ -74,10 +101,8 @@ def _medium(view: RecordView, row: int) -> Place | None:
 
 
 def _matched(view: RecordView, row: int, motif: str | None) -> tuple[Any, frozenset[int]]:
-    from rdkit import Chem
-
-    mol = view.mol(view.table.substrate[row])
-    query = Chem.MolFromSmarts(motif) if motif else None
+    mol = _mol(view.table.substrate[row])
+    query = _query(motif) if motif else None
     if mol is None or query is None:
         return mol, frozenset()
     return mol, frozenset(mol.GetSubstructMatch(query))
@@ -107,10 +132,10 @@ def _group_from_products(view: RecordView, row: int, mode: str) -> Place | None:
     run = view.run(row)
     fates = {Fate.GROUP_LOSS, Fate.OTHER}
     wanted = [s for s in run.scheme.split(">")[-1].split(".") if s] if run.scheme.count(">") == 2 else []
-    before = [m for s in wanted or [view.table.substrate[row]] if (m := view.mol(s)) is not None]
+    before = [m for s in wanted or [view.table.substrate[row]] if (m := _mol(s)) is not None]
     canonical = {_key(m) for m in before}
     for product in run.outcome.products:
-        found = view.mol(product.smiles) if product.smiles and product.fate in fates else None
+        found = _mol(product.smiles) if product.smiles and product.fate in fates else None
         if found is None or _key(found) in canonical:
             continue
         for mol in before:
@@ -134,12 +159,16 @@ def _with_the_usual_place(view: RecordView, sited: list[Sited]) -> list[Sited]:
     for one in sited:
         if one.place is not None and one.place.key[0] == "group":
             usual.setdefault(one.mode, Counter())[one.place.key[1]] += 1
+    offered: dict[str, frozenset[str]] = {}
     filled = []
     for one in sited:
         if one.place is None and aspect_of(one.mode) is Aspect.GROUP and one.mode in usual:
-            mol = view.mol(view.table.substrate[one.row])
-            offered = {w for w, _ in groups_in(mol)} & set(usual[one.mode]) if mol is not None else set()
-            if len(offered) == 1:
-                one = Sited(row=one.row, mode=one.mode, place=group_place(offered.pop()))
+            smiles = view.table.substrate[one.row]
+            if smiles not in offered:
+                mol = _mol(smiles)
+                offered[smiles] = frozenset(word for word, _ in groups_in(mol)) if mol is not None else frozenset()
+            candidates = offered[smiles] & set(usual[one.mode])
+            if len(candidates) == 1:
+                one = Sited(row=one.row, mode=one.mode, place=group_place(*candidates))
         filled.append(one)
     return filled

@@ -50,7 +50,8 @@ def find_recurring_failures(
     tame_rdkit()
     from kb.audit.recurrence import find_recurring
 
-    return find_recurring(book.view(), _circumstances(book), book.rules(), since, progress)
+    prepare = book.finder().prepare_motifs
+    return find_recurring(book.view(), _circumstances(book), book.rules(), since, progress, prepare)
 
 
 def adopt_proposal(book: AskedBook, proposal: Proposal, *, who: str) -> HouseRule:

@@ -41,6 +41,8 @@ _SCREENS = """SELECT structure_id, recipe_id, augmented FROM structure WHERE aug
     ORDER BY structure_id"""
 _CODES_WITH = """SELECT DISTINCT run.code FROM run_structure place JOIN run ON run.run_key = place.run_key
     WHERE place.structure_id IN :ids AND place.role IN :roles AND run.withdrawn_why IS NULL"""
+_CODES_OF_PLACES = """SELECT place.structure_id, run.code FROM run_structure place
+    JOIN run ON run.run_key = place.run_key WHERE place.role IN :roles AND run.withdrawn_why IS NULL"""
 _STRUCTURES = """SELECT structure_id, recipe_id, mol_binary, augmented, morgan FROM structure
     WHERE structure_id > :after ORDER BY structure_id"""
 
@@ -177,6 +179,13 @@ def screens_of(book: OpenBook, recipe: str) -> tuple[list[int], bytes]:
 def codes_with(book: OpenBook, structure_ids: Sequence[int], roles: Sequence[str]) -> set[str]:
     """Return the codes of the standing runs in which one of some structures has one of some roles."""
     return {row[0] for row in _by_ids(book, _CODES_WITH, structure_ids, roles=list(roles))}
+
+
+def codes_of_places(book: OpenBook, roles: Sequence[str]) -> list[tuple[int, str]]:
+    """Return (structure_id, code) wherever a structure has one of some roles in a standing run."""
+    statement = sa.text(_CODES_OF_PLACES).bindparams(sa.bindparam("roles", expanding=True))
+    with book.reading() as connection:
+        return [(row[0], row[1]) for row in connection.execute(statement, {"roles": list(roles)})]
 
 
 def word_keys(book: OpenBook, wanted: Sequence[Sequence[str]]) -> list[int]:
