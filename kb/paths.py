@@ -64,6 +64,11 @@ def settings_file() -> Path:
     return platformdirs.user_config_path(APPLICATION, appauthor=False) / "settings.toml"
 
 
+def mappings_folder() -> Path:
+    """Return where mappings of headings to fields are saved by name: beside the settings."""
+    return settings_file().parent / "mappings"
+
+
 def log_file() -> Path:
     """Return where the terminal interface writes its log."""
     return platformdirs.user_log_path(APPLICATION, appauthor=False) / "sidepath.log"

@@ -279,6 +279,7 @@ class Book:
         dry_run: bool = False,
         rejects: Path | None = None,
         mapping: Mapping[str, Any] | None = None,
+        sheet: str | None = None,
         progress: Progress | None = None,
     ) -> LoadReport:
         """Take runs in from a file; run again, nothing is doubled. See `kb.exchange.loading.load_file`."""
@@ -286,7 +287,14 @@ class Book:
         from kb.exchange.loading import load_file
 
         return load_file(
-            path, self.store, who=who, progress=progress, dry_run=dry_run, rejects=rejects, mapping=mapping
+            path,
+            self.store,
+            who=who,
+            progress=progress,
+            dry_run=dry_run,
+            rejects=rejects,
+            mapping=mapping,
+            sheet=sheet,
         )
 
     def export_file(self, path: Path, progress: Progress | None = None) -> int:

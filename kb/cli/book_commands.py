@@ -1,24 +1,18 @@
-"""`new`, `verify`, `migrate`, `backup`, `restore`, `move`, `merge`, `import`, `export`, `tui`: the book as a whole."""
+"""`new`, `verify`, `migrate`, `backup`, `restore`, `move`, `merge`, `tui`: the book as a whole."""
 
 from __future__ import annotations
 
-import json
 from pathlib import Path
-from typing import TYPE_CHECKING, Annotated, Any, Optional
+from typing import Annotated, Any, Optional
 
 import typer
 
 from kb.cli import exit_codes
 from kb.cli.render import counted, wrapped
 from kb.cli.session import Session, current_session
-from kb.errors import ImportFileError, SidepathError
+from kb.errors import SidepathError
 from kb.plain import excerpt
 
-if TYPE_CHECKING:
-    from kb.exchange.loading import LoadReport
-
-FEW = 10
-"""Rejections and unknown names that are listed; --json has more."""
 Word = Optional[str]  # noqa: UP045 - typer reads the annotations at run time
 
 
@@ -31,8 +25,6 @@ def register(app: typer.Typer) -> None:
     app.command("restore")(restore)
     app.command("move")(move)
     app.command("merge")(merge)
-    app.command("import")(import_file)
-    app.command("export")(export_file)
     app.command("tui")(tui)
 
 
@@ -132,76 +124,6 @@ def merge(other: Annotated[str, typer.Argument(help="The other book.")]) -> int:
         lines.append("Stopped; merge again to go on. Nothing is doubled.")
     session.answer(report.as_dict(), "\n".join(lines))
     return exit_codes.INTERRUPTED if report.stopped else exit_codes.DONE
-
-
-def import_file(
-    file: Annotated[str, typer.Argument(help="CSV, XLSX, JSON Lines, RDfile, RXN or SDF.")],
-    dry_run: Annotated[bool, typer.Option("--dry-run", help="Say what would be stored; store nothing.")] = False,
-    rejects: Annotated[Word, typer.Option("--rejects", metavar="FILE", help="Rows that could not be read.")] = None,
-    mapping: Annotated[Word, typer.Option("--mapping", metavar="FILE.json", help="Headings to fields.")] = None,
-) -> int:
-    """Take runs in from a file; run again, nothing is doubled."""
-    session = current_session()
-    if rejects is not None and Path(rejects).exists() and Path(file).exists() and Path(rejects).samefile(file):
-        raise ImportFileError(f"{rejects} is the file that is read.", "Name another one for the rejects.", rejects)
-    fields = _mapping(mapping) if mapping is not None else None
-    with session.opened() as book, session.progress("Importing") as progress:
-        report = book.import_file(
-            Path(file),
-            who=session.initials,
-            dry_run=dry_run,
-            rejects=Path(rejects) if rejects else None,
-            mapping=fields,
-            progress=progress,
-        )
-    session.answer(report.as_dict(), _import_text(report, rejects, dry_run=dry_run))
-    if report.stopped:
-        return exit_codes.INTERRUPTED
-    return exit_codes.REFUSED if report.rejected else exit_codes.DONE
-
-
-def export_file(
-    file: Annotated[str, typer.Argument(help="File to write; its ending tells the format.")],
-) -> None:
-    """Write every run of the book to a file."""
-    session = current_session()
-    with session.opened(read_only=True) as book, session.progress("Exporting") as progress:
-        count = book.export_file(Path(file), progress)
-    text = f"{counted(count, 'run')} written to {file}"
-    session.answer({"file": file, "runs": count}, "\n".join(wrapped(text)))
-
-
-def _mapping(path: str) -> Any:
-    """Read a saved mapping of headings to fields."""
-    try:
-        return json.loads(Path(path).read_text(encoding="utf-8"))
-    except (ValueError, RecursionError) as error:
-        raise ImportFileError(
-            f"{path} is no JSON: {type(error).__name__}.", 'Write it like {"columns": {"T [K]": "temperature"}}.', path
-        ) from error
-
-
-def _import_text(report: LoadReport, rejects: str | None, *, dry_run: bool) -> str:
-    """Return what an import did, with the first rejections."""
-    lines = wrapped(
-        f"{counted(report.read, 'row')} read: {report.stored:,} {'would be stored' if dry_run else 'stored'}, "
-        f"{report.duplicate:,} already there, {report.rejected:,} rejected."
-    )
-    for rejection in report.rejections[:FEW]:
-        lines += wrapped(f"row {rejection.row}, {rejection.column or 'whole row'}: {rejection.reason}", 2)
-    if report.rejected > FEW:
-        lines.append(f"  and {report.rejected - FEW:,} more")
-    if report.unknown_names:
-        names = ", ".join(f"{name} ({count})" for name, count in report.unknown_names[:FEW])
-        more = f" and {len(report.unknown_names) - FEW} more" if len(report.unknown_names) > FEW else ""
-        lines += wrapped(f"Not in the catalogue, kept as written: {names}{more}.")
-    if report.rejected and rejects:
-        lines += wrapped(f"The rejected rows are in {rejects}: mend them there and import that file.")
-    elif report.rejected:
-        lines += wrapped("With --rejects FILE they are kept in a file to mend and import.")
-    if report.stopped:
-        lines.append("Stopped; import the file again to go on. Nothing is doubled.")
-    return "\n".join(lines)
 
 
 def tui(

@@ -11,6 +11,7 @@ from kb.cli import (
     audit_commands,
     book_commands,
     check_command,
+    file_commands,
     find_command,
     look_commands,
     record_commands,
@@ -26,7 +27,8 @@ from kb.cli.strict import make_strict
 ORDER = (
     *("demo", "new", "read", "check", "record"),
     *("runs", "show", "history", "amend", "withdraw", "reinstate", "find", "split", "lookup", "route", "report"),
-    *("import", "export", "merge", "conflicts", "settle", "backup", "restore", "verify", "migrate", "tui"),
+    *("import", "export", "template", "mappings", "merge", "conflicts", "settle"),
+    *("backup", "restore", "verify", "migrate", "tui"),
 )
 """Commands in the order of a working day; others follow as they are registered."""
 
@@ -70,6 +72,7 @@ def root(
 
 for _module in (
     book_commands,
+    file_commands,
     look_commands,
     check_command,
     record_commands,

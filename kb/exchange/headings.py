@@ -169,6 +169,9 @@ def match_headings(headings: Sequence[str], saved: Mapping[str, Any] | None = No
         ImportFileError: the saved mapping names a field that does not exist, or no column tells the reaction.
     """
     chosen = _saved_columns(saved)
+    date_order = (saved or {}).get("date_order")
+    if date_order not in (None, "dmy", "mdy"):
+        raise ImportFileError(f"The order of dates {str(date_order)[:40]!r} is none.", "Use dmy or mdy.", date_order)
     uses = [_match(position, heading, chosen) for position, heading in enumerate(headings)]
     best: dict[str, int] = {}
     rank = {"chosen": 0, "exact": 1, "synonym": 2, "resembles": 3}
@@ -183,7 +186,7 @@ def match_headings(headings: Sequence[str], saved: Mapping[str, Any] | None = No
         else u
         for u in uses
     )
-    mapping = ColumnMapping(columns=final, date_order=(saved or {}).get("date_order"))
+    mapping = ColumnMapping(columns=final, date_order=date_order)
     if not mapping.fields & {"scheme", "substrate"}:
         raise ImportFileError(
             "No column tells the reaction.",
