@@ -21,6 +21,9 @@ from tui.screens import (
     copying,
     drafts,
     entry,
+    failures,
+    failures_adopt,
+    failures_runs,
     finding,
     finding_detail,
     firstrun,
@@ -41,6 +44,9 @@ OWNERS = [
     runs.RunsScreen,
     run_actions.RunActions,
     finding.FindingPlace,
+    failures.FailuresPlace,
+    failures_runs.RunsBehindScreen,
+    failures_adopt.AdoptScreen,
     entry.EntryScreen,
     firstrun.FirstRunScreen,
     drafts.DraftsScreen,
@@ -81,6 +87,7 @@ async def test_help_names_the_place_and_its_keys_and_the_marks() -> None:
             ("f2", "The answer follows while you type"),
             ("f3", "narrow the list"),
             ("f4", "Enter searches"),
+            ("f5", "The record as a whole, in five parts"),
         ):
             await pressed(pilot, place)
             await pressed(pilot, "f1")
@@ -97,7 +104,19 @@ async def test_the_palette_offers_every_action_of_the_place_and_runs_it() -> Non
         await planned(pilot)
         provider = ActionProvider(app.screen)
         titles = {title for title, _, _ in provider._actions()}
-        assert titles >= {"Help", "Copy", "Run it", "Shelf", "Numbers", "New", "Undo", "Redo", "Runs", "Finding"}
+        assert titles >= {
+            "Help",
+            "Copy",
+            "Run it",
+            "Shelf",
+            "Numbers",
+            "New",
+            "Undo",
+            "Redo",
+            "Runs",
+            "Finding",
+            "Failures",
+        }
         assert titles >= {"Theme", "Words", "Drafts", "Books", "Quit", "Planning"}
         await pressed(pilot, "ctrl+p")
         assert isinstance(app.screen, CommandPalette)

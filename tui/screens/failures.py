@@ -87,7 +87,7 @@ it would have warned of in the whole book, and its false alarms.
         Binding(
             "f9",
             "look",
-            "Look again",
+            "Look",
             key_display="F9",
             id="failures.look",
             tooltip="Ask the record, or ask it again",

@@ -74,7 +74,7 @@ class HindsightView(AuditView):
         with Horizontal():
             with Panel("By threshold", id="hindsight-counts"):
                 yield FigureTable(WAYS[0][1], id="hindsight-table")
-            with Panel("Failures warned of, % ↑   successes warned of, % →", id="hindsight-drawn"):
+            with Panel("Warned of, %: failures ↑ successes →", id="hindsight-drawn"):
                 yield FigurePlot(id="hindsight-plot")
                 yield Static(
                     "● in use   ◆ the row looked at", classes="quiet", id="hindsight-legend", markup=False

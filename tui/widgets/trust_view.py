@@ -56,8 +56,9 @@ class TrustView(AuditView):
                 yield FigureTable(EXPECTED, id="trust-table")
                 with VerticalScroll(id="trust-said"):
                     yield Static("", id="trust-words", markup=False)
-            with Panel("Found, % ↑  expected, % →   · run  • of this row  ● mean", id="trust-drawn"):
+            with Panel("Found ↑ against expected →, %", id="trust-drawn"):
                 yield FigurePlot(id="trust-plot")
+                yield Static("· a run  • of this row  ● mean", classes="quiet", id="trust-legend", markup=False)
 
     def show_figures(self) -> None:
         """Show the words, one table and the plot."""
