@@ -159,11 +159,8 @@ class RunColumns:
         return sum(stands and made_by != recipe for stands, made_by in zip(self.alive, self.recipes, strict=True))
 
     def rows_of_keys(self, run_keys: Iterable[int]) -> NDArray[np.bool_]:
-        """Return a mask of the rows of these runs, as they stand now."""
-        mask = np.zeros(len(self), bool)
-        found = [self._row_of[key] for key in run_keys if key in self._row_of]
-        mask[found] = True
-        return mask
+        """Return a mask of the rows of these runs; among them rows that were replaced since, which are not `alive`."""
+        return np.isin(self.run_key, np.fromiter(run_keys, np.int64))
 
     def with_solvent(self, names: Sequence[str], smiles: str | None) -> NDArray[np.bool_]:
         """Return which runs hold a solvent by any of these names or by this canonical SMILES."""
