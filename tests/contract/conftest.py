@@ -9,6 +9,7 @@ import pytest
 
 from kb.book import build_demo
 from kb.progress import Silent
+from tests.engines import Books
 
 
 @pytest.fixture(scope="session")
@@ -26,10 +27,10 @@ def own_demo_book(demo_book: Path, tmp_path: Path) -> Path:
 
 
 @pytest.fixture
-def empty_book(tmp_path: Path) -> Path:
-    """Return a new book without runs."""
+def empty_book(books: Books) -> Path | str:
+    """Return a new book without runs, on each engine in turn."""
     from tests.asking import ask
 
-    place = tmp_path / "empty.sidepath"
+    place = books / "empty.sidepath"
     assert ask("new", book=place).status == 0
     return place

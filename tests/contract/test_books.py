@@ -8,6 +8,7 @@ from pathlib import Path
 import pytest
 
 from tests.asking import ask, is_plain_refusal, widest
+from tests.engines import Books, Schemas
 
 
 def test_new_makes_a_book_and_never_overwrites(tmp_path: Path) -> None:
@@ -29,7 +30,7 @@ def test_new_without_a_place_makes_the_users_own_book() -> None:
 
 
 @pytest.mark.parametrize("ending", ["csv", "xlsx", "jsonl", "rdf", "sdf"])
-def test_what_is_exported_comes_back_once(demo_book: Path, empty_book: Path, tmp_path: Path, ending: str) -> None:
+def test_what_is_exported_comes_back_once(demo_book: Path, empty_book: Path | str, tmp_path: Path, ending: str) -> None:
     if ending == "jsonl":
         source, total = demo_book, ask("runs", "--limit", "1", "--json", book=demo_book).json["total"]
     else:
@@ -54,7 +55,7 @@ def test_what_is_exported_comes_back_once(demo_book: Path, empty_book: Path, tmp
             assert ask("show", code, "--json", book=empty_book).json == ask("show", code, "--json", book=source).json
 
 
-def test_rejected_rows_are_kept_to_mend_and_the_status_says_so(empty_book: Path, tmp_path: Path) -> None:
+def test_rejected_rows_are_kept_to_mend_and_the_status_says_so(empty_book: Path | str, tmp_path: Path) -> None:
     table, rejects = tmp_path / "runs.csv", tmp_path / "rejects.csv"
     table.write_text("scheme,temp\nCCBr>>CCO,rt\nC1CC>>CC,rt\nCCBr>>CCI,-400C\n")
     answer = ask("import", str(table), "--rejects", str(rejects), "--json", book=empty_book)
@@ -66,7 +67,7 @@ def test_rejected_rows_are_kept_to_mend_and_the_status_says_so(empty_book: Path,
     assert "2 rejected" in text and "--rejects" in text and widest(text) <= 80
 
 
-def test_the_rejects_never_overwrite_the_file_that_is_read(empty_book: Path, tmp_path: Path) -> None:
+def test_the_rejects_never_overwrite_the_file_that_is_read(empty_book: Path | str, tmp_path: Path) -> None:
     table = tmp_path / "runs.csv"
     table.write_text("scheme\nC1CC>>CC\nCCBr>>CCO\n")
     before = table.read_bytes()
@@ -74,7 +75,7 @@ def test_the_rejects_never_overwrite_the_file_that_is_read(empty_book: Path, tmp
     assert table.read_bytes() == before
 
 
-def test_a_merge_doubles_nothing_either_way_round(empty_book: Path, tmp_path: Path) -> None:
+def test_a_merge_doubles_nothing_either_way_round(empty_book: Path | str, tmp_path: Path) -> None:
     other = tmp_path / "other.sidepath"
     ask("new", book=other)
     ask("record", "CCBr>>CCO", "--as", "AB", book=empty_book)
@@ -89,7 +90,7 @@ def test_a_merge_doubles_nothing_either_way_round(empty_book: Path, tmp_path: Pa
     assert ask("merge", str(other), book=other).status == 1
 
 
-def test_two_changes_of_one_field_are_one_conflict(empty_book: Path, tmp_path: Path) -> None:
+def test_two_changes_of_one_field_are_one_conflict(empty_book: Path | str, tmp_path: Path) -> None:
     other = tmp_path / "other.sidepath"
     ask("record", "CCBr>>CCO", "--as", "AB", book=empty_book)
     ask("new", book=other)
@@ -128,7 +129,7 @@ def test_a_backup_restores_to_the_same_book(demo_book: Path, tmp_path: Path) -> 
 
 
 def test_a_folder_takes_dated_backups_and_keeps_as_many_as_the_settings_say(
-    empty_book: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+    empty_book: Path | str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     folder = tmp_path / "backups"
     folder.mkdir()
@@ -198,7 +199,7 @@ def test_what_is_no_book_is_not_taken_for_one(tmp_path: Path, words: tuple[str, 
     assert ask(*words, book="nonsense://x").status == 4
 
 
-def test_a_file_that_cannot_be_read_as_a_whole_is_refused(empty_book: Path, tmp_path: Path) -> None:
+def test_a_file_that_cannot_be_read_as_a_whole_is_refused(empty_book: Path | str, tmp_path: Path) -> None:
     for name, content in (
         ("none.csv", None),
         ("empty.csv", b""),
@@ -217,3 +218,26 @@ def test_a_file_that_cannot_be_read_as_a_whole_is_refused(empty_book: Path, tmp_
     mapping.write_text("{nope")
     assert ask("import", str(tmp_path / "heads.csv"), "--mapping", str(mapping), book=empty_book).status == 1
     assert ask("export", str(tmp_path / "no" / "x.csv"), book=empty_book).status == 1
+
+
+def test_a_book_moves_to_another_place_whole_and_never_over_something(demo_book: Path, books: Books) -> None:
+    few = ask("runs", "--limit", "12", "--json", book=demo_book).json["items"]
+    old, new = books.folder / "old.sidepath", books / "new.sidepath"
+    ask("new", book=old)
+    ask("record", "--from", "-", book=old, stdin=json.dumps(few))
+    moved = ask("move", str(new), "--as", "MK", "--json", book=old)
+    assert (moved.status, moved.json["runs"], moved.json["book"]) == (0, 12, str(new))
+    assert ask("export", str(books.folder / "old.jsonl"), book=old).status == 0
+    assert ask("export", str(books.folder / "new.jsonl"), book=new).status == 0
+    assert (books.folder / "old.jsonl").read_bytes() == (books.folder / "new.jsonl").read_bytes()
+    assert ask("verify", "--json", book=new).json["ok"] is True
+    back = ask("move", str(books.folder / "back.sidepath"), "--as", "MK", book=new)
+    assert back.status == 0 and widest(back.out) <= 80 and "is the same" in back.out
+    again = ask("move", str(new), "--as", "MK", "--json", book=old)
+    assert (again.status, again.error["code"]) == (4, "book-exists") and is_plain_refusal(again)
+
+
+def test_a_new_book_on_a_server_says_where_its_grants_are(schemas: Schemas) -> None:
+    made = ask("new", book=schemas / "new")
+    grants = "".join(made.out.split()).rpartition("curators:")[2]
+    assert made.status == 0 and Path(grants).name == "roles.sql"

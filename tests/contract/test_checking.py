@@ -9,6 +9,7 @@ import pytest
 from kb import paths
 from kb.vocabulary import Fate, FindingKind, Severity
 from tests.asking import ask, is_plain_refusal, widest
+from tests.engines import Books
 
 AZIDE = "CCC(C)Br.[Na+].[N-]=[N+]=[N-]>>CCC(C)N=[N+]=[N-]"
 CONDITIONS = ("--with", "NaN3=1.5", "--solvent", "DMF", "--temp", "80C", "--time", "4 h", "--conc", "0.2 M")
@@ -101,7 +102,7 @@ def test_a_book_that_was_named_must_be_there(tmp_path: Path, monkeypatch: pytest
     assert not missing.exists()
 
 
-def test_an_empty_book_answers_like_no_book(empty_book: Path) -> None:
+def test_an_empty_book_answers_like_no_book(empty_book: Path | str) -> None:
     for scheme in (AZIDE, ACID, "CCBr"):
         answer = ask("check", scheme, "--acid", "TFA", "--temp", "rt", "--json", book=empty_book)
         assert answer.status == 0 and answer.json["precedents"] == []
@@ -139,8 +140,10 @@ def test_demo_builds_keeps_and_checks(demo_book: Path, tmp_path: Path) -> None:
     assert set(ask("demo", "--json", book=demo_book).json) >= {"plan", "findings"}
 
 
-def test_demo_leaves_a_book_of_ones_own_alone(empty_book: Path) -> None:
-    before = empty_book.read_bytes()
-    answer = ask("demo", book=empty_book)
+def test_demo_leaves_a_book_of_ones_own_alone(books: Books) -> None:
+    place = books / "own.sidepath"
+    assert ask("new", book=place).status == 0
+    before = books.contents("own.sidepath")
+    answer = ask("demo", book=place)
     assert answer.status == 4 and is_plain_refusal(answer)
-    assert empty_book.read_bytes() == before
+    assert books.contents("own.sidepath") == before

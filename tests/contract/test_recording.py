@@ -21,7 +21,7 @@ EVERY_FLAG = (
 )
 
 
-def test_every_flag_lands_in_the_run(empty_book: Path) -> None:
+def test_every_flag_lands_in_the_run(empty_book: Path | str) -> None:
     run = ask("record", AZIDE, *EVERY_FLAG, "--json", book=empty_book).json
     assert run["code"] == "R-0001" and run["scheme"] == AZIDE
     assert (run["verdict"], run["note"], run["by"], run["date"]) == ("partly", "smelled of alkene", "AB", "2025-03-04")
@@ -50,7 +50,7 @@ def test_every_flag_lands_in_the_run(empty_book: Path) -> None:
     assert outcome["failures"] == [{"mode": "elimination", "motif": "[CX4]Br", "cause": "suspected"}]
 
 
-def test_a_run_shown_and_recorded_elsewhere_is_the_same_run(empty_book: Path, tmp_path: Path) -> None:
+def test_a_run_shown_and_recorded_elsewhere_is_the_same_run(empty_book: Path | str, tmp_path: Path) -> None:
     ask("record", AZIDE, *EVERY_FLAG, book=empty_book)
     shown = ask("show", "R-0001", "--json", book=empty_book)
     other = tmp_path / "other.sidepath"
@@ -59,7 +59,7 @@ def test_a_run_shown_and_recorded_elsewhere_is_the_same_run(empty_book: Path, tm
     assert ask("show", "R-0001", "--json", book=other).json == shown.json
 
 
-def test_every_run_of_the_demo_makes_that_round_trip(demo_book: Path, empty_book: Path) -> None:
+def test_every_run_of_the_demo_makes_that_round_trip(demo_book: Path, empty_book: Path | str) -> None:
     page = ask("runs", "--limit", "25", "--json", book=demo_book).json["items"]
     lines = "".join(json.dumps(run) + "\n" for run in page)
     assert ask("record", "--from", "-", book=empty_book, stdin=lines).status == 0
@@ -68,7 +68,7 @@ def test_every_run_of_the_demo_makes_that_round_trip(demo_book: Path, empty_book
 
 
 @pytest.mark.parametrize("form", ["object", "list", "lines"])
-def test_record_from_takes_one_run_a_list_or_lines(empty_book: Path, tmp_path: Path, form: str) -> None:
+def test_record_from_takes_one_run_a_list_or_lines(empty_book: Path | str, tmp_path: Path, form: str) -> None:
     runs = [{"scheme": "CCBr>>CCO"}, {"scheme": "CCI>>CCO", "note": "two"}]
     lines = "\n".join(map(json.dumps, runs))
     text = {"object": json.dumps(runs[0], indent=1), "list": json.dumps(runs), "lines": lines}
@@ -81,7 +81,7 @@ def test_record_from_takes_one_run_a_list_or_lines(empty_book: Path, tmp_path: P
     assert ask("runs", "--json", book=empty_book).json["total"] == len(stored) == (1 if form == "object" else 2)
 
 
-def test_of_several_runs_all_are_kept_or_none(empty_book: Path) -> None:
+def test_of_several_runs_all_are_kept_or_none(empty_book: Path | str) -> None:
     lines = '{"scheme":"CCBr>>CCO"}\n{"scheme":"C1CC>>CCO"}\n'
     answer = ask("record", "--from", "-", "--json", book=empty_book, stdin=lines)
     assert (answer.status, answer.error["code"]) == (1, "structure")
@@ -92,7 +92,7 @@ def test_of_several_runs_all_are_kept_or_none(empty_book: Path) -> None:
     assert ask("runs", "--json", book=empty_book).json["total"] == 1
 
 
-def test_the_same_run_is_not_recorded_twice(empty_book: Path) -> None:
+def test_the_same_run_is_not_recorded_twice(empty_book: Path | str) -> None:
     ask("record", AZIDE, "--as", "AB", book=empty_book)
     shown = ask("show", "1", "--json", book=empty_book).out
     answer = ask("record", "--from", "-", "--json", book=empty_book, stdin=shown)
@@ -100,7 +100,7 @@ def test_the_same_run_is_not_recorded_twice(empty_book: Path) -> None:
     assert ask("runs", "--json", book=empty_book).json["total"] == 1
 
 
-def test_what_does_not_add_up_is_said_and_kept(empty_book: Path) -> None:
+def test_what_does_not_add_up_is_said_and_kept(empty_book: Path | str) -> None:
     answer = ask("record", AZIDE, "--split", "substitution=88,elimination=30", "--yield", "104", book=empty_book)
     assert answer.status == 0
     assert "CAUTION: The split does not add up" in answer.err and "Yield over 100 %" in answer.err
@@ -109,7 +109,7 @@ def test_what_does_not_add_up_is_said_and_kept(empty_book: Path) -> None:
     assert "not understood" in ask("record", "CCCC>>CCCO", "--yield", "3", book=empty_book).err
 
 
-def test_nothing_given_is_dropped_without_a_word(empty_book: Path) -> None:
+def test_nothing_given_is_dropped_without_a_word(empty_book: Path | str) -> None:
     for words in (
         ("--motif", "[CX4]"),
         ("--cause", "confirmed"),
