@@ -13,7 +13,7 @@ from kb.record.finding import Interval
 from kb.route.entries import Entry, Ledger, Need
 from kb.route.sequence import Route, Step
 from kb.route.worth import figure_words
-from kb.vocabulary import Severity
+from kb.vocabulary import Basis, Severity
 from tui.present import SEVERITY_MARKS, bar_cells, safe
 
 SEQUENCE_HINT = "Open a route file with o, or look at the demo's with e."
@@ -99,7 +99,10 @@ def basis_words(step: Step) -> str:
         return f"record: {', '.join(safe(run) for run in known.runs[:2])}{more}"
     if known.basis == "estimated":
         runs = len(known.runs)
-        return f"estimate: {runs} run{'' if runs == 1 else 's'}" if runs else "estimate: published"
+        is_published = step.assessment is not None and step.assessment.estimate.basis is Basis.PUBLISHED
+        if not runs:
+            return "estimate: published rates" if is_published else "estimate"
+        return f"estimate: {runs} run{'' if runs == 1 else 's'}"
     return "typed in the file" if known.basis == "given" else "not known"
 
 

@@ -28,6 +28,9 @@ from tui.screens import (
     finding_detail,
     firstrun,
     planning,
+    route,
+    route_files,
+    route_runs,
     run_actions,
     run_detail,
     runs,
@@ -35,12 +38,16 @@ from tui.screens import (
 from tui.screens.copying import CopyScreen
 from tui.screens.help import HelpScreen
 from tui.themes import THEMES
-from tui.widgets import cards, estimate, step_form, tick_list
+from tui.widgets import cards, estimate, route_sequence, step_form, tick_list
 
 OWNERS = [
     SidepathApp,
     base.AskingScreen,
     planning.PlanningScreen,
+    route.RoutePlace,
+    route_files.RouteFilesScreen,
+    route_runs.RunsBehindScreen,
+    route_sequence.RouteSequence,
     runs.RunsScreen,
     run_actions.RunActions,
     finding.FindingPlace,
@@ -87,6 +94,7 @@ async def test_help_names_the_place_and_its_keys_and_the_marks() -> None:
             ("f2", "The answer follows while you type"),
             ("f3", "narrow the list"),
             ("f4", "Enter searches"),
+            ("f6", "the sum follows while you type"),
             ("f5", "The record as a whole, in five parts"),
         ):
             await pressed(pilot, place)

@@ -76,7 +76,7 @@ async def test_steps_say_where_their_yields_come_from(tmp_path: Path) -> None:
     async with driven(size=(160, 50)) as (app, pilot):
         await opened(pilot, a_route_file(tmp_path))
         text = words(app)
-        for told in ("record: R-0001, R-0002", "estimate:", "typed in the file", "!! serious, 1"):
+        for told in ("record: R-0001, R-0002", "estimate;", "typed in the file", "!! serious, 1"):
             assert told in text
         assert "2 recorded runs" in text  # the first step is chosen
         await pressed(pilot, "down")

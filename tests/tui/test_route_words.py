@@ -102,7 +102,7 @@ def test_a_step_says_what_is_weak_found_changed_and_where_its_yield_comes_from(t
     for name, row in rows.items():
         said[name] = "; ".join(t for t, _ in step_remarks(row, entries[name], None, name == "swap"))
     assert said["azide"].startswith("record: R-0001, R-0002; ")
-    assert said["swap"].startswith("◀ weakest; !! serious, 1; estimate: ")
+    assert said["swap"].startswith("◀ weakest; !! serious, 1; estimate; ")
     assert said["side"].startswith("may be poor: cheap input; typed in the file; into join; ")
     changed = step_remarks(rows["join"], entries["join"], Interval(mean=61, low=61, high=61), False)
     assert changed[0] == ("≠ 61 % in the file", "changed")

@@ -95,6 +95,7 @@ class RouteSequence(OptionList):
         before = self._file_yields.get(row.step.name)
         changed = before if before is not None and before != row.step.yield_pct.pct else None
         text = Text(step_cells(row, width), no_wrap=True, overflow="ellipsis")
+        text.highlight_regex(r"[█▒·┃]{3,}", self.app.theme_variables.get("primary", ""))
         text.append(f"\n{row.second.ljust(len(row.first) + 2)}")
         for number, (words, kind) in enumerate(step_remarks(row, entry, changed, is_weakest)):
             if number:
