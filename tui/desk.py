@@ -136,13 +136,18 @@ class Desk(WholeRecord, RouteRecord):
         return conditions_from_words({"solvents": [text]}).solvents[0]
 
     def lookup(self, text: str, kind: str) -> Sequence[Offer]:
-        """Return catalogue names near the text; none when the text is a name already."""
-        from kb.book import lookup_material
+        """Return catalogue names that begin with the text, then those near it; none when it is a name already."""
+        from kb.book import complete_material, lookup_material
 
         found = lookup_material(text, kind)
         if found["match"] is not None:
             return ()
-        return tuple(Offer(name=offer["name"]) for offer in found["offers"])
+        begun = [
+            Offer(name=one["name"], note="" if one["name"] == one["entry"] else f"for {one['entry']}")
+            for one in complete_material(text, kind)
+        ]
+        names = {offer.name for offer in begun}
+        return (*begun, *(Offer(name=o["name"]) for o in found["offers"] if o["name"] not in names))
 
     def failure_modes(self) -> Sequence[tuple[str, str]]:
         """Return the controlled words for failures with their meanings."""

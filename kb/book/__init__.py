@@ -14,7 +14,7 @@ if TYPE_CHECKING:
     from kb.book.facade import Book, open_book
     from kb.book.find_words import criteria_from_words
     from kb.book.keeping import create_book, migrate_book, restore_book
-    from kb.book.materials_words import lookup_material
+    from kb.book.materials_words import complete_material, lookup_material
     from kb.book.pages import markdown_of, page_of, plan_from_file, save_page, thing_named
     from kb.book.plan_words import conditions_from_words, plan_from_words
     from kb.book.routes import reckon_route, route_lead
@@ -68,6 +68,7 @@ _HOMES = {
     "conditions_from_words": "plan_words",
     "create_book": "keeping",
     "criteria_from_words": "find_words",
+    "complete_material": "materials_words",
     "lookup_material": "materials_words",
     "migrate_book": "keeping",
     "restore_book": "keeping",
@@ -93,6 +94,7 @@ __all__ = [
     "check_scheme",
     "check_unrecorded",
     "choices_from_words",
+    "complete_material",
     "conditions_from_words",
     "create_book",
     "criteria_from_words",

@@ -38,6 +38,31 @@ def lookup_material(text: str, kind: str | None = None) -> dict[str, Any]:
     return {"query": text, "match": match, "also": also, "offers": offers}
 
 
+def complete_material(text: str, kind: str | None = None, limit: int = 8) -> list[dict[str, str]]:
+    """Return names that begin with what was typed so far, shown names before synonyms, short ones first.
+
+    Args:
+        text: the beginning of a name, in any case.
+        kind: "solvent" or "reagent"; None = both.
+        limit: how many at most.
+
+    Returns:
+        `name` (as it would be written on) and `entry` (the name shown for it) of each, one per entry.
+    """
+    from kb.materials.catalogue import load_catalogue
+
+    start = text.strip().casefold()
+    found: list[tuple[bool, int, str, str]] = []
+    for entry in load_catalogue() if start else ():
+        if kind is not None and kind != _kind(entry):
+            continue
+        begin = [name for name in (entry.name, *entry.synonyms) if name.casefold().startswith(start)]
+        if begin:
+            best = entry.name if entry.name in begin else min(begin, key=len)
+            found.append((best != entry.name, len(best), best, entry.name))
+    return [{"name": name, "entry": shown} for _, _, name, shown in sorted(found)[:limit]]
+
+
 def _found(text: str, kind: str | None) -> tuple[Any, list[dict[str, Any]]]:
     """Return the entry that a text means, or None, and the near names."""
     from kb.materials.names import by_smiles, find_material

@@ -155,7 +155,7 @@ def type_slowly(terminal: Terminal, keys: int) -> list[tuple[float, float]]:
             if at >= TAIL:
                 shown.append((began, ended - began))
             # somewhat longer than the pause after which the form is read, so that each key starts a check
-            end = time.monotonic() + chance.uniform(0.16, 0.5)
+            end = time.monotonic() + chance.uniform(0.155, 0.25)
             while time.monotonic() < end:
                 terminal.read(end)
     return shown

@@ -76,6 +76,8 @@ def test_names_are_resolved_and_offered(desk: Desk) -> None:
         desk.resolve_solvent("quicksilver water of life")
     assert desk.lookup("sodium azid", "reagent")[0].name == "sodium azide"
     assert desk.lookup("DMF", "solvent") == ()
+    assert desk.lookup("K2C", "reagent")[0].name == "K2CO3"
+    assert all(offer.name.casefold().startswith("tetrahyd") for offer in desk.lookup("tetrahyd", "solvent")[:2])
 
 
 def test_changes_are_told_in_words(desk: Desk) -> None:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from textual.widgets import Select
+from textual.widgets import Input, Select
 
 from kb.record.outcome import Failure
 from kb.vocabulary import Verdict
@@ -92,3 +92,15 @@ async def test_a_failure_is_found_in_words_for_screen_readers() -> None:
         await settled(pilot, 5)
         assert "Structure" in on_screen(app)
         assert "matched •" in " ".join(on_screen(app).split())
+
+
+async def test_solvent_and_base_are_completed_from_the_catalogue() -> None:
+    async with driven() as (app, pilot):
+        await pressed(pilot, "f4")
+        for line, typed_so_far, whole in (("#find-solvent", "DM", "DMF"), ("#find-base", "K2C", "K2CO3")):
+            field = app.screen.query_one(line, Input)
+            field.focus()
+            await pressed(pilot, *typed_so_far)
+            await settled(pilot, 5)
+            await pressed(pilot, "right")
+            assert field.value == whole

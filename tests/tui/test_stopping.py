@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import asyncio
 import threading
 
 from kb.errors import Cancelled
@@ -10,8 +11,8 @@ from kb.record.plan import Plan
 from tests.tui.driving import driven, on_screen, pressed, settled
 from tests.tui.fake_book import FakeBook, a_run
 from tui.jobs import current_progress
-from tui.widgets.estimate import EstimateBars
 from tui.ports import FindHit, FindPage, FindQuery, RunPage, RunQuery
+from tui.widgets.estimate import EstimateBars
 
 
 class SlowBook(FakeBook):
@@ -55,7 +56,7 @@ async def until_shown(app: object, words: str) -> None:
     for _ in range(2000):
         if words in on_screen(app):  # type: ignore[arg-type]
             return
-        await __import__("asyncio").sleep(0.005)
+        await asyncio.sleep(0.005)
     raise AssertionError(f"{words!r} was never shown")
 
 

@@ -145,7 +145,7 @@ class AskingScreen(Screen[ScreenResult]):
     def _start_job(
         self, kind: str, ticket: int, question: tuple[Callable[[], Any], Callable[[Any], None], Any]
     ) -> None:
-        progress = ThreadProgress(partial(self._report, kind))
+        progress = ThreadProgress(partial(self._pass_on, kind))
         self._in_work[kind] = progress
         self.run_worker(
             partial(self._work, kind, ticket, question, progress),
@@ -156,7 +156,7 @@ class AskingScreen(Screen[ScreenResult]):
         )
         self._show_busy()
 
-    def _report(self, kind: str, done: int, total: int | None, note: str) -> None:
+    def _pass_on(self, kind: str, done: int, total: int | None, note: str) -> None:
         """In the thread: pass on how far a job is."""
         self.post_message(Progressed(kind, progress_words(done, total, note)))
 

@@ -31,6 +31,7 @@ from tui.styles import HERE
 from tui.widgets.cards import HitCard, HitGrid
 from tui.widgets.lines import SafeInput
 from tui.widgets.panel import Panel
+from tui.widgets.step_form import CatalogueSuggester
 
 LINES: tuple[tuple[str, str, str], ...] = (
     ("substructure", "Holds", "SMARTS or SMILES, such as OC(=O)NC(C)(C)C"),
@@ -72,7 +73,8 @@ class FindingPlace(RunActions[None], PlaceScreen):
     HELP = """
 Finding. Fill what you know, Enter searches; everything that is filled must hold. Holds takes a substructure
 as SMARTS or SMILES, Like a whole structure, Change a transformation with atom maps on the atoms that
-matter. The matched atoms are marked • in the drawings. Arrow keys walk through the hits, Enter opens one, n
+matter; solvent and base are completed from the catalogue, → takes the completion. Esc stops a search that
+takes long. The matched atoms are marked • in the drawings. Arrow keys walk through the hits, Enter opens one, n
 and b turn the pages.
 """
     BINDINGS: ClassVar[list[BindingType]] = [
@@ -87,6 +89,8 @@ and b turn the pages.
         super().__init__()
         self._query = FindQuery()
         self._page = FindPage(total=0)
+        kinds = {"solvent": "solvent", "base": "reagent"}
+        self._suggesters = {name: CatalogueSuggester(kind, lambda *_: None) for name, kind in kinds.items()}
 
     def compose_place(self) -> ComposeResult:
         """Lay out the form and the hits."""
@@ -99,7 +103,12 @@ and b turn the pages.
                             title, example = words[name]
                             classes = "form-word second" if position else "form-word"
                             yield Static(title, classes=classes, markup=False)
-                            yield SafeInput(placeholder=example, id=f"find-{name}", classes="line")
+                            yield SafeInput(
+                                placeholder=example,
+                                id=f"find-{name}",
+                                classes="line",
+                                suggester=self._suggesters.get(name),
+                            )
                 for name, title, options in CHOICES:
                     pairs = [(words_of(option), option) for option in options]
                     yield Select(pairs, prompt=title, compact=True, id=f"find-{name}", classes="find-choice")
@@ -114,7 +123,9 @@ and b turn the pages.
         self.query_one("#find-substructure").focus()
 
     def book_arrived(self, book: BookPort) -> None:
-        """Offer the book's words for failures."""
+        """Offer the book's words for failures, and names out of the catalogue."""
+        for suggester in self._suggesters.values():
+            suggester.book = book
         self.ask("modes", book.failure_modes, self._take_modes)
 
     def _take_modes(self, modes: object) -> None:
