@@ -44,7 +44,7 @@ def assessment_texts(assessment: Assessment) -> dict[str, str]:
         estimate_rest(assessment.estimate),
         "",
         "### Findings",
-        *(f"- {_cell(finding_line(f))}. {_cell(evidence_words(f.evidence))}" for f in assessment.findings),
+        *(f"- {_cell(finding_line(f))}. {_cell(evidence_words(f.evidence, f.kind))}" for f in assessment.findings),
         "",
         "### Closest runs",
         "| run | likeness | split, % | what differs | yield | verdict |",

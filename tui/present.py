@@ -16,7 +16,8 @@ from kb.record.assessment import Advice, Estimate, Precedent
 from kb.record.conditions import Conditions
 from kb.record.finding import Evidence, Finding, Interval
 from kb.record.run import Run
-from kb.vocabulary import Basis, Confidence, Fate, Severity
+from kb.record.sayings import BASIS_WORDS, NO_RUNS, say_counts
+from kb.vocabulary import Basis, Confidence, Fate, FindingKind, Severity
 
 SEVERITY_MARKS: dict[Severity, str] = {Severity.SERIOUS: "!!", Severity.CAUTION: "! ", Severity.NOTE: "· "}
 """Told by shape as well as by colour and by the word."""
@@ -31,14 +32,6 @@ FATE_WORDS: dict[Fate, str] = {
     Fate.UNREACTED: "unreacted",
     Fate.OTHER: "other",
 }
-
-BASIS_WORDS: dict[Basis, str] = {
-    Basis.RECORD: "own record",
-    Basis.PUBLISHED: "published trends",
-    Basis.BOTH: "own record and published trends",
-    Basis.NONE: "nothing to rest on",
-}
-
 
 FATE_SHORT: dict[Fate, str] = {
     Fate.SUBSTITUTION: "subst",
@@ -143,18 +136,9 @@ def estimate_rest(estimate: Estimate) -> str:
     return " ".join(filter(None, (f"{text}.", safe(estimate.alkenes_in_words()), safe(estimate.note))))
 
 
-def evidence_words(evidence: Evidence | None) -> str:
+def evidence_words(evidence: Evidence | None, kind: FindingKind = FindingKind.LIABILITY) -> str:
     """Return what the book knows of a motif, in one line; "" without evidence."""
-    if evidence is None:
-        return ""
-    if evidence.lost + evidence.survived == 0:
-        return "no own runs"
-    text = f"lost in {evidence.lost}, survived in {evidence.survived}"
-    if evidence.chance:
-        text += f"; chance of loss {percent(evidence.chance.mean)} ({interval_words(evidence.chance)})"
-    if evidence.note:
-        text += f"; {safe(evidence.note)}"
-    return text
+    return "" if evidence is None else safe(say_counts(evidence, kind) or NO_RUNS)
 
 
 def finding_line(finding: Finding) -> str:

@@ -22,7 +22,7 @@ from kb.assess.left_out import LeftOut, expect_left_out
 from kb.assess.record_view import RecordView
 from kb.assess.table import FATES
 from kb.progress import Progress, Silent
-from kb.record.showing import ShowsItself
+from kb.showing import ShowsItself
 
 MOST_RUNS = 1200
 """Runs that are measured at most."""

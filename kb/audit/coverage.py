@@ -23,7 +23,7 @@ from kb.audit.teaching import Experiment, teach_most
 from kb.materials.profile import ConditionProfile
 from kb.progress import Progress, Silent
 from kb.record.plan import Plan
-from kb.record.showing import ShowsItself
+from kb.showing import ShowsItself
 
 THIN = 2
 """At most so many runs make a cell thin."""

@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from kb.assess.house_rules import RuleTrial
-from kb.record.showing import ShowsItself
+from kb.showing import ShowsItself
 from kb.store.values import HouseRule
 
 

@@ -17,7 +17,7 @@ import numpy as np
 from kb.audit.replay import Hindsight
 from kb.audit.wilson import counted_share
 from kb.record.finding import Interval
-from kb.record.showing import ShowsItself
+from kb.showing import ShowsItself
 
 CURVE_POINTS = 50
 """Most thresholds that the curve lists."""

@@ -10,7 +10,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from kb.errors import ImportFileError, InvalidRecord
-from kb.record.showing import show_with
+from kb.showing import show_with
 
 if TYPE_CHECKING:
     from kb.book.asked import AskedBook
@@ -22,12 +22,12 @@ AUDITS = ("recurring", "replay", "coverage", "calibration")
 
 
 def teach_notebooks() -> None:
-    """Let runs, assessments, audits and routes show themselves in a notebook; loads nothing until one is shown."""
+    """Let runs, readings, assessments, audits and routes show themselves in a notebook; loads nothing until one is shown."""
     show_with(_notebook_html)
 
 
 def page_of(book: AskedBook, thing: object) -> Page:
-    """Lay out a run, an assessment, an audit or a route of a book."""
+    """Lay out a run, a reading, an assessment, an audit or a route of a book."""
     from kb.book.words import today
     from kb.exchange.report import build_page
     from kb.exchange.report_words import made_from
@@ -53,12 +53,13 @@ def markdown_of(book: AskedBook, thing: object) -> str:
 
 
 def thing_named(book: AskedBook, name: str, progress: Progress | None = None) -> object:
-    """Return what a word names: an audit, a route or plan file (.toml, .json), or a run by its code.
+    """Return what a word names: an audit, a reaction SMILES, a route or plan file (.toml, .json), or a run by its code.
 
     Raises:
         RecordNotFound: no run has that code.
     """
     from kb.book import whole
+    from kb.book.words import read_scheme
 
     if name in AUDITS:
         if name == "recurring":
@@ -68,6 +69,8 @@ def thing_named(book: AskedBook, name: str, progress: Progress | None = None) ->
         if name == "coverage":
             return whole.measure_book_coverage(book, progress=progress)
         return whole.calibrate_book(book, progress=progress)
+    if ">" in name:
+        return read_scheme(name)
     if name.lower().endswith((".toml", ".json")):
         return _from_file(book, Path(name))
     return book.get(name)

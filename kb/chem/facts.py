@@ -11,6 +11,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any
 
+from kb.showing import ShowsItself
 from kb.vocabulary import CarbonClass, CentreFlag, Confidence, Fate, LeavingGroup
 
 
@@ -97,7 +98,7 @@ class PossibleFate:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Reading:
+class Reading(ShowsItself):
     """What a scheme does.
 
     Attributes:

@@ -11,19 +11,13 @@ from kb.record.assessment import Advice, Assessment, Estimate, Precedent
 from kb.record.component import Component
 from kb.record.conditions import Conditions
 from kb.record.finding import Evidence, Finding
+from kb.record.sayings import BASIS_WORDS, NO_RUNS, say_counts
 from kb.vocabulary import Basis, FindingKind, Severity
 
 NO_PERMISSION = (
     "An estimate is not permission. Hazards are for your local rules and the people "
     "responsible for safety where you work to judge."
 )
-_BASIS = {
-    Basis.RECORD: "this book",
-    Basis.PUBLISHED: "published rates, no run of this book",
-    Basis.BOTH: "this book and published rates",
-    Basis.NONE: "nothing",
-}
-
 
 def render_assessment(assessment: Assessment, *, verbose: bool = False) -> str:
     """Return the whole assessment as text of at most 80 columns.
@@ -126,17 +120,11 @@ def _finding(finding: Finding, *, verbose: bool) -> list[str]:
 
 def evidence_words(evidence: Evidence, kind: FindingKind, most: int | None = 8) -> str:
     """Return evidence in one sentence with the runs named, `most` of them (None = all)."""
-    if not evidence.lost and not evidence.survived:
-        return "No run of this book bears on it."
-    bad, good = ("failed", "came through") if kind is FindingKind.RESEMBLANCE else ("lost", "survived")
-    said = f"In this book: {bad} in {evidence.lost}, {good} in {evidence.survived}"
-    if evidence.chance is not None:
-        chance = evidence.chance
-        said += f"; chance {percent(chance.mean)} ({100 * chance.low:.0f} to {100 * chance.high:.0f})"
-    if evidence.note:
-        said += f"; {evidence.note}"
+    counts = say_counts(evidence, kind)
+    if not counts:
+        return NO_RUNS
     runs = ", ".join(evidence.runs[:most]) + (" …" if most is not None and len(evidence.runs) > most else "")
-    return f"{said}. Runs: {runs}."
+    return f"In this book: {counts}. Runs: {runs}."
 
 
 def _estimate(estimate: Estimate, *, verbose: bool) -> list[str]:
@@ -151,7 +139,7 @@ def _estimate(estimate: Estimate, *, verbose: bool) -> list[str]:
         lines.append(f"  {'yield':<14} {y.mean:>3.0f} % ({y.low:.0f} to {y.high:.0f})")
     if estimate.fates:
         lines += wrapped(
-            f"Intervals hold {100 * estimate.level:.0f} %; basis: {_BASIS[estimate.basis]}. {estimate.note}",
+            f"Intervals hold {100 * estimate.level:.0f} %; basis: {BASIS_WORDS[estimate.basis]}. {estimate.note}",
             2,
         )
         told = estimate.alkenes_in_words()

@@ -20,7 +20,8 @@ def report(
         str,
         typer.Argument(
             metavar="WHAT",
-            help="A run's code; recurring, replay, coverage or calibration; a route or plan file (.toml, .json).",
+            help="A run's code; recurring, replay, coverage or calibration; a reaction SMILES; a route or plan file "
+            "(.toml, .json).",
         ),
     ],
     html: HtmlFlag = None,

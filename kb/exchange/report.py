@@ -22,6 +22,7 @@ from kb.exchange.report_blocks import Page
 from kb.exchange.report_hindsight import calibration_page, replay_page
 from kb.exchange.report_html import page_fragment, page_html
 from kb.exchange.report_markdown import page_markdown
+from kb.exchange.report_reading import reading_page
 from kb.exchange.report_route import route_page
 from kb.exchange.report_run import run_page
 from kb.record.assessment import Assessment
@@ -36,11 +37,12 @@ _PAGES: dict[type, Callable[[Any, str], Page]] = {
     Coverage: coverage_page,
     Calibration: calibration_page,
     Ledger: route_page,
+    Reading: reading_page,
 }
 
 
 def build_page(thing: object, source: str = "") -> Page:
-    """Lay out a run, an assessment, an audit or a route.
+    """Lay out a run, a reading, an assessment, an audit or a route.
 
     Args:
         source: where it came from, for the foot of the page.

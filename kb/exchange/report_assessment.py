@@ -13,14 +13,8 @@ from kb.exchange.report_plots import interval_bars
 from kb.exchange.report_words import conditions_words, counted, interval_words
 from kb.record.assessment import Advice, Assessment
 from kb.record.finding import Finding
-from kb.vocabulary import Basis, Severity
-
-_BASIS = {
-    Basis.RECORD: "this book",
-    Basis.PUBLISHED: "published rates, no run of this book",
-    Basis.BOTH: "this book and published rates",
-    Basis.NONE: "nothing",
-}
+from kb.record.sayings import BASIS_WORDS, NO_RUNS, say_counts
+from kb.vocabulary import Severity
 
 
 def assessment_page(assessment: Assessment, source: str = "") -> Page:
@@ -94,12 +88,10 @@ def _warn(finding: Finding, fragments: tuple[str, ...]) -> Warn:
         figure = fragment(fragments[finding.component], finding.atoms, f"Motif of: {finding.title}")
         blocks += [figure] if figure is not None else []
     if finding.evidence is not None:
-        evidence = finding.evidence
-        chance = f": chance of loss {interval_words(evidence.chance)}" if evidence.chance else ""
-        note = f" ({evidence.note})" if evidence.note else ""
-        blocks.append(Words(text=f"In this book {evidence.lost} lost, {evidence.survived} came through{chance}{note}."))
-        if evidence.runs:
-            blocks.append(Words(text="Runs: " + ", ".join(evidence.runs[:24]), tone="quiet"))
+        counts = say_counts(finding.evidence, finding.kind)
+        blocks.append(Words(text=f"In this book: {counts}." if counts else NO_RUNS))
+        if finding.evidence.runs:
+            blocks.append(Words(text="Runs: " + ", ".join(finding.evidence.runs[:24]), tone="quiet"))
     if finding.side_product:
         blocks.append(Words(text=f"Would give {finding.side_product}", tone="quiet"))
     if finding.do_instead:
@@ -119,7 +111,7 @@ def _estimate(assessment: Assessment) -> tuple[Block, ...]:
         blocks.append(Words(text=f"Yield {interval_words(estimate.yield_pct, 1.0)}."))
     blocks.append(
         Words(
-            text=f"Rests on {_BASIS[estimate.basis]}; {estimate.effective_precedents:.1f} effective precedents. "
+            text=f"Rests on {BASIS_WORDS[estimate.basis]}; {estimate.effective_precedents:.1f} effective precedents. "
             f"{estimate.note}"
         )
     )

@@ -13,7 +13,7 @@ from kb.record.finding import Finding, Interval
 from kb.record.plan import Plan
 from kb.record.portable import run_to_dict
 from kb.record.run import Run
-from kb.record.showing import ShowsItself
+from kb.showing import ShowsItself
 from kb.vocabulary import Basis, Fate, Verdict
 
 

@@ -13,7 +13,7 @@ from kb.errors import InvalidRecord
 from kb.record.conditions import Conditions
 from kb.record.outcome import Outcome
 from kb.record.plan import Plan
-from kb.record.showing import ShowsItself
+from kb.showing import ShowsItself
 from kb.vocabulary import Verdict
 
 

@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from kb.record.finding import Interval
-from kb.record.showing import ShowsItself
+from kb.showing import ShowsItself
 from kb.route.sequence import Route, Step
 
 

@@ -6,7 +6,7 @@ import dataclasses
 import datetime as dt
 from typing import Any
 
-from kb.book import Book, demo_plan
+from kb.book import Book, demo_plan, read_scheme
 from kb.book.routes import resolve_route
 from kb.book.whole import calibrate_book, find_recurring_failures, measure_book_coverage, replay_book
 from kb.record.component import Component
@@ -39,6 +39,7 @@ def things_of(book: Book) -> dict[str, object]:
     """Return one of each kind of thing that has a page, from a demo book."""
     return {
         "run": book.get("R-0040"),
+        "reading": read_scheme(demo_plan().scheme),
         "assessment": book.check(demo_plan()),
         "recurring": find_recurring_failures(book),
         "coverage": measure_book_coverage(book),

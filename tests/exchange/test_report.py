@@ -19,7 +19,7 @@ from kb.exchange.report import build_page
 from kb.exchange.report_html import page_html, style_sheet
 from kb.exchange.report_markdown import page_markdown
 from kb.progress import Silent
-from kb.record.showing import ShowsItself, show_with
+from kb.showing import ShowsItself, show_with
 
 
 @pytest.fixture(scope="module")
@@ -34,7 +34,7 @@ def things(book: Book) -> dict[str, object]:
     return things_of(book)
 
 
-KINDS = ("run", "assessment", "recurring", "coverage", "calibration", "replay", "route", "hostile")
+KINDS = ("run", "reading", "assessment", "recurring", "coverage", "calibration", "replay", "route", "hostile")
 
 
 @pytest.mark.parametrize("kind", KINDS)

@@ -91,7 +91,7 @@ class FindingScreen(ModalScreen[None]):
     def _remarks(self) -> list[Text]:
         finding = self._finding
         lines: list[Text] = []
-        if evidence := evidence_words(finding.evidence):
+        if evidence := evidence_words(finding.evidence, finding.kind):
             lines.append(_line("Own record", evidence))
         for number, words in enumerate(finding.do_instead):
             lines.append(_line("Do instead" if number == 0 else "", safe(words)))

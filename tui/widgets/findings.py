@@ -69,7 +69,7 @@ class FindingsList(OptionList):
         style = self.app.theme_variables.get(f"severity-{severity}", "")
         text = Text(overflow="ellipsis")
         text.append(finding_line(finding), style=style)
-        if evidence := evidence_words(finding.evidence):
+        if evidence := evidence_words(finding.evidence, finding.kind):
             text.append(f"\n{evidence}")
         return text
 

@@ -1,7 +1,7 @@
 """How a value shows itself in a notebook, without knowing how pages are made.
 
-A notebook asks a value for `_repr_html_`. Pages are made far above the floors where runs, assessments, audits and
-routes live, so the values only ask whoever has taught this module; `kb.book` does when a book is opened. Until then
+A notebook asks a value for `_repr_html_`. Pages are made far above the floors where runs, readings, assessments, audits
+and routes live, so the values only ask whoever has taught this module; `kb.book` does when a book is opened. Until then
 they answer None, and the notebook falls back to plain text. This keeps imports pointing down: nothing here imports
 anything.
 """
