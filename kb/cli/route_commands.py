@@ -25,8 +25,8 @@ EXAMPLE = """A route file in TOML (JSON with the same words will do):
     [[step]]
     name = "amine"
     yield = "82 (75 to 89)"             given, percent
-    cheap_input = true                  a poor yield does not matter here;
-                                        or easy_separation, volatile_by_product
+    cheap_input = true                  a poor yield does not matter here; or
+                                        easy_separation, volatile_by_product
     cost_per_mmol = 0.1                 reagents and work, per mmol that goes in
 
 A `yield` may have a `plan` beside it, which is then checked for findings only. Where anything has a price, steps are
