@@ -27,7 +27,7 @@ EXAMPLE = """A route file in TOML (JSON with the same words will do):
     yield = "82 (75 to 89)"             given, percent
     cheap_input = true                  a poor yield does not matter here; or
                                         easy_separation, volatile_by_product
-    cost_per_mmol = 0.1                 reagents and work, per mmol that goes in
+    cost_per_mmol = 0.1                 reagents and work, per mmol put in
 
 A `yield` may have a `plan` beside it, which is then checked for findings only. Where anything has a price, steps are
 weighed in money; what a cheap_input step takes costs nothing unless it has a price. A branch joins by

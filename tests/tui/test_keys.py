@@ -94,7 +94,7 @@ async def test_help_names_the_place_and_its_keys_and_the_marks() -> None:
             ("f2", "The answer follows while you type"),
             ("f3", "narrow the list"),
             ("f4", "Enter searches"),
-            ("f6", "the sum follows while you type"),
+            ("f6", "Route. Opens a route file"),
             ("f5", "The record as a whole, in five parts"),
         ):
             await pressed(pilot, place)
