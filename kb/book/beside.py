@@ -33,6 +33,8 @@ _LOOK_S = 0.1
 """How often a wish to stop is looked for [s]."""
 _PATIENCE_S = 10.0
 """How long a process that was asked to stop may take to end by itself [s]."""
+_NICE = 10
+"""How far the work stands back behind whoever types; on Windows it does not."""
 _WORTH_PROCESSES = 300
 """Runs from which a replay is spread over all cores; starting a process costs as much as checking some 60 runs."""
 
@@ -126,6 +128,8 @@ class _Line:
 
 def answer() -> None:
     """Answer one question in the new process, which never touches the terminal."""
+    if hasattr(os, "nice"):
+        os.nice(_NICE)
     wishes, back = Connection(os.dup(0), writable=False), Connection(os.dup(1), readable=False)
     quiet = os.open(os.devnull, os.O_RDWR)
     for stream in (0, 1, 2):
