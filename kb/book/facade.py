@@ -107,13 +107,30 @@ class Book:
             at_date: leave later and undated runs out; None = all runs.
         """
         tame_rdkit()
+        from kb.assess.acknowledged import note_acknowledged, plan_key
         from kb.assess.assessment import assess
         from kb.store.derivation import account_of_plan
 
         account = account_of_plan(plan)
         view = self.view().until(at_date)
         rest = self.finder().tanimoto_of_runs(account.facts.substrate, view.table.codes)
-        return assess(plan, view, self.store.house_rules.list(), rest, top, account)
+        found = assess(plan, view, self.store.house_rules.list(), rest, top, account)
+        return note_acknowledged(found, self.store.acknowledgements.list(plan_key(plan)))
+
+    def acknowledge(self, plan: Plan, finding_id: str, *, who: str, why: str) -> None:
+        """Keep who saw a finding of a plan and goes on, and why; the finding is told as before.
+
+        Raises:
+            RecordNotFound: the plan has no finding of that id.
+        """
+        from kb.assess.acknowledged import plan_key
+        from kb.errors import RecordNotFound
+
+        known = [f.rule_id for f in self.check(plan, top=0).findings]
+        if finding_id not in known:
+            hint = f"It has: {', '.join(dict.fromkeys(known))}." if known else "It has none."
+            raise RecordNotFound(f"This plan has no finding {finding_id[:60]!r}.", hint, finding_id)
+        self.store.acknowledgements.add(finding_id, plan_key(plan), who, why)
 
     def what_if(self, plan: Plan, temperatures_c: Sequence[float]) -> tuple[tuple[float, Estimate], ...]:
         """Return the estimate at each of some temperatures [degC], all else as planned."""

@@ -44,6 +44,7 @@ def check_shortly(
             if kept_view is None:
                 return None
             tame_rdkit()
+            from kb.assess.acknowledged import note_acknowledged, plan_key
             from kb.assess.assessment import assess
             from kb.store.derivation import account_of_plan
 
@@ -53,7 +54,8 @@ def check_shortly(
             if at_date is not None:
                 stands = view.dated_until(at_date)
                 view, rest = view.only(stands), None if rest is None else rest[stands]
-            return assess(plan, view, look.house_rules(), rest, top, account)
+            found = assess(plan, view, look.house_rules(), rest, top, account)
+            return note_acknowledged(found, look.acknowledgements(plan_key(plan)))
     except (GlanceFailed, SidepathError, OSError):
         return None  # the store will say what is the matter, if it is
 

@@ -56,6 +56,14 @@ def check(
         Optional[str],  # noqa: UP045
         typer.Option("--at-date", metavar="YYYY-MM-DD", help="Leave later runs out."),
     ] = None,
+    acknowledge: Annotated[
+        Optional[str],  # noqa: UP045
+        typer.Option("--acknowledge", metavar="ID", help="Finding that is seen and taken on; it stays."),
+    ] = None,
+    because: Annotated[
+        Optional[str],  # noqa: UP045
+        typer.Option("--because", metavar="REASON", help="Why, for --acknowledge; kept with your initials."),
+    ] = None,
 ) -> int:
     """Check a planned step against the record, known liabilities and hazards."""
     words = {
@@ -70,7 +78,16 @@ def check(
         "scale": scale,
         "atmosphere": atmosphere,
     }
-    return answer_check(current_session(), scheme, words, top=top, fail_on=fail_on, at_date=at_date)
+    return answer_check(
+        current_session(),
+        scheme,
+        words,
+        top=top,
+        fail_on=fail_on,
+        at_date=at_date,
+        acknowledge=acknowledge,
+        because=because,
+    )
 
 
 def demo() -> None:

@@ -10,11 +10,12 @@ from typing import TYPE_CHECKING, Any
 
 from kb.cli import exit_codes
 from kb.cli.session import Session, put
-from kb.errors import StoreMissing, StructureError
+from kb.errors import InvalidRecord, StoreMissing, StructureError
 from kb.vocabulary import Severity
 
 if TYPE_CHECKING:
     from kb.record.assessment import Assessment
+    from kb.record.plan import Plan
 
 
 def answer_check(
@@ -25,6 +26,8 @@ def answer_check(
     top: int | None = None,
     fail_on: Severity | None = None,
     at_date: str | None = None,
+    acknowledge: str | None = None,
+    because: str | None = None,
 ) -> int:
     """Check a planned step, print the assessment and return the exit status.
 
@@ -35,6 +38,7 @@ def answer_check(
         top: how many precedents; None = by the settings.
         fail_on: FAIL_ON is returned when a finding is at least this severe.
         at_date: leave later runs out.
+        acknowledge, because: id of a finding that is seen and taken on, and the reason; both or neither.
     """
     from kb.book import conditions_from_words, parse_date, scheme_from_argument
     from kb.record.plan import Plan
@@ -45,6 +49,8 @@ def answer_check(
     from kb.book.short_check import check_shortly, keep_for_next_time
 
     settings = session.settings
+    if acknowledge is not None or because is not None:
+        _acknowledge(session, plan, acknowledge, because)
     assessment = check_shortly(settings.book, plan, top=top, at_date=day, wait_s=settings.wait_s)
     if assessment is not None:
         return _tell(session, assessment, fail_on)
@@ -71,6 +77,19 @@ def show_assessment(session: Session, assessment: Assessment) -> None:
         session.print_json(assessment.as_dict())
     else:
         put(render_assessment(assessment, verbose=session.verbose))
+
+
+def _acknowledge(session: Session, plan: Plan, finding_id: str | None, because: str | None) -> None:
+    """Keep that a finding was seen and is taken on, with the name and the reason."""
+    if not finding_id or not because:
+        raise InvalidRecord(
+            "An acknowledgement needs the finding and the reason.",
+            "Give --acknowledge ID and --because REASON.",
+            finding_id,
+        )
+    with session.opened() as book:
+        book.acknowledge(plan, finding_id, who=session.initials, why=because)
+    session.say(f"Acknowledged {finding_id}. It is told as before, with your name and reason behind it.")
 
 
 def _tell(session: Session, assessment: Assessment, fail_on: Severity | None) -> int:

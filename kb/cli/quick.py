@@ -122,5 +122,7 @@ OWN: dict[str, tuple[str, Callable[[str], Any]]] = {
     "--top": ("top", _count),
     "--fail-on": ("fail_on", _severity),
     "--at-date": ("at_date", _as_it_is),
+    "--acknowledge": ("acknowledge", _as_it_is),
+    "--because": ("because", _as_it_is),
 }
 """Options of `check` itself: the argument of `answer_check`, and how a value is read; None = leave it to the parser."""

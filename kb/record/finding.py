@@ -70,6 +70,7 @@ class Finding:
         is_uncertain: the conditions left the rule open ("cannot tell: temperature not given").
         side_products: every structure that could form, `side_product` first; no ranking is meant beyond that.
         also: ids of other rules that fired on the same place and are told in this finding.
+        acknowledged: who saw it for this very plan and went on, when and why; said in `why` too.
     """
 
     rule_id: str
@@ -86,6 +87,7 @@ class Finding:
     is_uncertain: bool = False
     side_products: tuple[str, ...] = ()
     also: tuple[str, ...] = ()
+    acknowledged: tuple[str, ...] = ()
 
     def as_dict(self) -> dict[str, Any]:
         """Return the contract's JSON object."""
@@ -104,4 +106,5 @@ class Finding:
             "is_uncertain": self.is_uncertain,
             "side_products": list(self.side_products),
             "also": list(self.also),
+            "acknowledged": list(self.acknowledged),
         }

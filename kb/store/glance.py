@@ -21,7 +21,7 @@ from uuid import UUID
 from kb.record.run import Run
 from kb.store.form import BOOK_ID, CHANGES, SCHEMA_HEAD, TIP
 from kb.store.run_of_rows import CHILD_TABLES, run_from_rows
-from kb.store.values import HouseRule
+from kb.store.values import Acknowledgement, HouseRule
 from kb.vocabulary import Role, Severity
 
 _HEADER = b"SQLite format 3\x00"
@@ -83,6 +83,17 @@ class Glance:
             "SELECT * FROM house_rule WHERE retired_at IS NULL ORDER BY created_at, rule_id"
         )
         return tuple(_rule_of(dict(row)) for row in rows)
+
+    def acknowledgements(self, about: str) -> tuple[Acknowledgement, ...]:
+        """Return who acknowledged which finding of a plan, oldest first."""
+        rows = self._connection.execute("SELECT * FROM acknowledgement WHERE about = ? ORDER BY at", (about,))
+        found = []
+        for row in rows:
+            at = _moment(row["at"])
+            if at is not None:
+                values = dict(row) | {"at": at, "acknowledgement_id": UUID(row["acknowledgement_id"])}
+                found.append(Acknowledgement(**values))
+        return tuple(found)
 
     def runs(self, run_keys: Sequence[int]) -> list[Run]:
         """Return the runs of these keys, in that order; keys that are not there are left out."""

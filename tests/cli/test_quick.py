@@ -21,7 +21,7 @@ def asked(monkeypatch: pytest.MonkeyPatch) -> list[tuple[Any, ...]]:
     calls: list[tuple[Any, ...]] = []
 
     def answer(session: Session, scheme: str, words: dict[str, Any], **rest: Any) -> int:
-        given = {"top": None, "fail_on": None, "at_date": None} | rest
+        given = dict.fromkeys(("top", "fail_on", "at_date", "acknowledge", "because")) | rest
         calls.append((session, scheme, {name: value for name, value in words.items() if value}, given))
         return 0
 

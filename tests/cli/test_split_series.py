@@ -1,8 +1,8 @@
 """`split --series` and the mass balance: what heat does to a split, and what became of the material.
 
-Source of the series: K. A. Cooper, E. D. Hughes, C. K. Ingold, B. J. MacNulty, J. Chem. Soc. 1948, 2038 (rows SE19 and SE20
-of tests/data/check_values.csv, from memory there): tert-butyl chloride in 80 % ethanol, 16.8 % isobutene at 25 °C and
-36.3 % at 65.3 °C. The rest is arithmetic.
+Source of the series: K. A. Cooper, E. D. Hughes, C. K. Ingold, B. J. MacNulty, J. Chem. Soc. 1948, 2038 (rows SE19 and
+SE20 of tests/data/check_values.csv, from memory there): tert-butyl chloride in 80 % ethanol, 16.8 % isobutene at 25 °C
+and 36.3 % at 65.3 °C. The rest is arithmetic.
 """
 
 from __future__ import annotations
