@@ -40,7 +40,7 @@ def migrate_book(book: str | None, progress: Progress) -> str:
     done = upgrade(parse_address(address))
     said = "The schema was up to date."
     if done is not None:
-        kept = f" The book as it was: {done.copy}." if done.copy else ""
+        kept = f" The book as it was: {done.copy}." if done.copy else " On a server no copy is made; pg_dump does."
         said = f"The schema went from {done.before} to {done.after}.{kept}"
     with open_book(address) as opened:
         rebuilt = opened.store.rebuild(progress)

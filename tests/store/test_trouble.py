@@ -18,6 +18,7 @@ from kb.store import on_sqlite
 from kb.store.checking import verify
 from kb.store.runs import RunFilter
 from kb.store.store import Store
+from tests.engines import Books
 from tests.factories import CHEMISTRY, a_book, a_run
 
 ROOT = Path(__file__).resolve().parents[2]
@@ -88,11 +89,11 @@ def test_a_url_and_a_path_name_the_same_book(tmp_path: Path) -> None:
         assert store.count() == 1
 
 
-def test_a_book_held_by_another_writer_is_busy_after_a_while(tmp_path: Path) -> None:
+def test_a_book_held_by_another_writer_is_busy_after_a_while(books: Books) -> None:
     told: list[float] = []
     with (
-        a_book(tmp_path) as store,
-        Store.open(tmp_path / "book.sidepath", wait_s=1.5, on_wait=told.append) as other,
+        a_book(books) as store,
+        Store.open(books / "book.sidepath", wait_s=1.5, on_wait=told.append) as other,
         store.book.writing(),
     ):
         with pytest.raises(StoreBusy, match="somebody else"):
@@ -101,8 +102,8 @@ def test_a_book_held_by_another_writer_is_busy_after_a_while(tmp_path: Path) -> 
     assert told and told[0] >= 1.0
 
 
-def test_a_failed_write_leaves_nothing_and_the_store_usable(tmp_path: Path) -> None:
-    with a_book(tmp_path) as store:
+def test_a_failed_write_leaves_nothing_and_the_store_usable(books: Books) -> None:
+    with a_book(books) as store:
         store.add(a_run(), "MK")
         with pytest.raises(StoreError), store.book.writing() as connection:
             connection.exec_driver_sql("DELETE FROM history")
