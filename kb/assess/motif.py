@@ -70,13 +70,16 @@ def _by_common_part(substrate: Any, found: Any, every: frozenset[int]) -> frozen
     from rdkit import Chem
     from rdkit.Chem import rdFMCS
 
-    common = rdFMCS.FindMCS(
-        [substrate, found],
-        timeout=MCS_SECONDS,
-        ringMatchesRingOnly=True,
-        completeRingsOnly=True,
-        bondCompare=rdFMCS.BondCompare.CompareOrder,
-    )
+    from kb.chem.uninterrupted import uninterrupted
+
+    with uninterrupted():
+        common = rdFMCS.FindMCS(
+            [substrate, found],
+            timeout=MCS_SECONDS,
+            ringMatchesRingOnly=True,
+            completeRingsOnly=True,
+            bondCompare=rdFMCS.BondCompare.CompareOrder,
+        )
     if common.numAtoms * 2 < min(substrate.GetNumAtoms(), found.GetNumAtoms()):
         return frozenset()
     return every - frozenset(substrate.GetSubstructMatch(Chem.MolFromSmarts(common.smartsString)))

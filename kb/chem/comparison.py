@@ -17,6 +17,7 @@ from kb.chem.centre import LeavingSite, find_leaving_sites
 from kb.chem.molgraph import Molgraph
 from kb.chem.nucleophile_site import METALS
 from kb.chem.skeleton import element_code, refine
+from kb.chem.uninterrupted import uninterrupted
 
 TIME_LIMIT_S = 1
 """Time allowed for one common substructure [s]."""
@@ -153,14 +154,15 @@ def _by_common_part(graphs: list[Molgraph], product: Molgraph) -> Comparison:
     part, graph = max(candidates, key=lambda c: len(c[1]))
     from rdkit.Chem import rdFMCS  # slow to load, seldom needed
 
-    found = rdFMCS.FindMCS(
-        [graph.mol, product.mol],
-        timeout=TIME_LIMIT_S,
-        atomCompare=rdFMCS.AtomCompare.CompareElements,
-        bondCompare=rdFMCS.BondCompare.CompareOrder,
-        ringMatchesRingOnly=True,
-        completeRingsOnly=True,
-    )
+    with uninterrupted():
+        found = rdFMCS.FindMCS(
+            [graph.mol, product.mol],
+            timeout=TIME_LIMIT_S,
+            atomCompare=rdFMCS.AtomCompare.CompareElements,
+            bondCompare=rdFMCS.BondCompare.CompareOrder,
+            ringMatchesRingOnly=True,
+            completeRingsOnly=True,
+        )
     if found.canceled:
         return Comparison(None, None, f"{nothing}, and comparing the structures took too long.")
     if found.numAtoms < _LEAST_SHARED * len(graph):

@@ -22,6 +22,7 @@ from rdkit import Chem
 from rdkit.Chem import rdSubstructLibrary
 
 from kb.chem.query import StructureQuery, find_match, match_parameters
+from kb.chem.uninterrupted import uninterrupted
 from kb.progress import Progress, Silent
 
 if TYPE_CHECKING:
@@ -127,7 +128,10 @@ class MoleculeStore:
             chunk = rows[at : at + size]
             threads = self.threads if len(chunk) >= _SINGLE_THREAD_ROWS else 1
             began = time.perf_counter()
-            pieces.append(self._match_chunk(query.mol, chunk, parameters, threads))
+            hits = self._match_chunk(query.mol, chunk, parameters, threads)
+            if hits is None:
+                continue  # whoever listens for Ctrl-C has heard it; who goes on all the same gets the whole answer
+            pieces.append(hits)
             at += len(chunk)
             took_s = max(time.perf_counter() - began, 1e-6)
             size = int(min(_LARGEST_CHUNK, max(16, len(chunk) * min(8.0, CHUNK_S / took_s))))
@@ -136,16 +140,21 @@ class MoleculeStore:
 
     def _match_chunk(
         self, mol: Chem.Mol, chunk: NDArray[np.int64], parameters: Chem.SubstructMatchParameters, threads: int
-    ) -> NDArray[np.int64]:
-        """Return which rows of a chunk match; rows that lie close together are handed over as a range."""
+    ) -> NDArray[np.int64] | None:
+        """Return which rows of a chunk match, or None where RDKit was interrupted.
+
+        Rows that lie close together are handed over as a range.
+        """
         start, end = int(chunk[0]), int(chunk[-1]) + 1
-        with self._lock:
+        with self._lock, uninterrupted() as call:
             if end - start <= len(chunk) * _DENSE:
                 self._library.SetSearchOrder([])
                 hits = self._library.GetMatches(mol, start, end, parameters, threads, end - start)
             else:
                 self._library.SetSearchOrder(chunk.tolist())
                 hits = self._library.GetMatches(mol, parameters, threads, len(chunk))
+        if call.was_interrupted:
+            return None
         found = np.fromiter(hits, np.int64, len(hits))
         return found if end - start == len(chunk) else found[np.isin(found, chunk)]
 

@@ -88,7 +88,7 @@ def test_a_full_find_against_the_bare_structure_query(book: Store, capsys: pytes
             f"{smarts:32s} {total:6d} {bare_s * 1e3:9.2f} {alone_s * 1e3:9.2f} {full_s * 1e3:9.2f} {ratios[-1]:7.2f}"
         )
     with capsys.disabled():
-        print(f"\n{book.count()} runs, {len(index)} structures; first answer after {load_s:.1f} s; processor times [ms]")
+        print(f"\n{book.count()} runs, {len(index)} structures; first after {load_s:.1f} s; processor times [ms]")
         print(f"{'query':32s} {'runs':>6s} {'bare':>9s} {'find':>9s} {'full':>9s} {'full/bare':>7s}")
         print("\n".join(lines))
         print(f"full find over bare structure query: median {statistics.median(ratios):.2f}, most {max(ratios):.2f}")
