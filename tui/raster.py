@@ -302,7 +302,7 @@ def _cut(drawing: Drawing, picture: Picture, width: int, height: int) -> Grid:
     lines = tuple(tuple(picture.cells.get((x0 + c, y0 + r)) for c in range(width)) for r in range(height))
     notices: list[str] = []
     if columns > width or rows > height:
-        notices.append(f"cut to fit; whole at {columns} × {rows}")
+        notices.append(f"cut to fit {columns}×{rows}")
     if picture.clashes:
         notices.append("some parts overlap")
     return Grid(rows=lines, notice="; ".join(notices), picture=picture)

@@ -10,7 +10,7 @@ from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, VerticalScroll
 from textual.screen import ModalScreen
-from textual.widgets import Button, Input, Static
+from textual.widgets import Button, Footer, Input, Static
 
 from tui.present import safe
 from tui.widgets.lines import SafeInput
@@ -20,7 +20,7 @@ class WordsScreen(ModalScreen[None]):
     """Words under a title."""
 
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("escape,enter,q", "dismiss", "Close", id="words.close", tooltip="Close"),
+        Binding("escape,enter,q", "dismiss", "Close", key_display="Esc", id="words.close", tooltip="Close"),
     ]
 
     def __init__(self, title: str, words: str) -> None:
@@ -33,6 +33,7 @@ class WordsScreen(ModalScreen[None]):
         with VerticalScroll(classes="dialog"):
             yield Static(Text(safe(self._title), style="bold"))
             yield Static(Text(safe(self._words, keep_lines=True)))
+        yield Footer(show_command_palette=False)
 
 
 class LineScreen(ModalScreen[str | None]):

@@ -10,7 +10,7 @@ from textual import on
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.screen import ModalScreen
-from textual.widgets import OptionList
+from textual.widgets import Footer, OptionList
 from textual.widgets.option_list import Option
 
 from tui.present import safe
@@ -25,7 +25,7 @@ class CopyScreen(ModalScreen[None]):
 
     app: SidepathApp
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("escape", "dismiss", "Close", id="copying.close", tooltip="Copy nothing"),
+        Binding("escape", "dismiss", "Close", key_display="Esc", id="copying.close", tooltip="Copy nothing"),
     ]
 
     def __init__(self, texts: Mapping[str, str]) -> None:
@@ -40,6 +40,7 @@ class CopyScreen(ModalScreen[None]):
             line.append(safe(text, 56), style="dim")
             options.append(Option(line, id=kind))
         yield Panel("Copy as", OptionList(*options, compact=True, markup=False), classes="dialog", id="copy-panel")
+        yield Footer(show_command_palette=False)
 
     @on(OptionList.OptionSelected)
     def _copy(self, event: OptionList.OptionSelected) -> None:

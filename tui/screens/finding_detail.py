@@ -14,7 +14,7 @@ from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical, VerticalScroll
 from textual.screen import ModalScreen
-from textual.widgets import OptionList, Static
+from textual.widgets import Footer, OptionList, Static
 from textual.widgets.option_list import Option
 
 from kb.chem.facts import Reading
@@ -33,9 +33,13 @@ class FindingScreen(ModalScreen[None]):
     AUTO_FOCUS = "#finding-runs, #finding-body"
 
     CSS_PATH = HERE / "runs.tcss"
-    HELP = "One finding in full. Enter on a run opens it; Escape goes back."
+    HELP = """
+One finding in full: why it fires, the motif in the drawing, what would form, and the runs of this book in which the
+group was lost or survived. Enter on a run opens it; Escape goes back to the plan.
+"""
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("escape", "dismiss", "Back", id="finding.back", tooltip="Back to the plan"),
+        Binding("escape", "dismiss", "Back", key_display="Esc", id="finding.back", tooltip="Back to the plan"),
+        Binding("f1", "help", "Help", key_display="F1", id="finding.help", tooltip="What this shows, and its keys"),
     ]
 
     def __init__(self, finding: Finding, drawing: SchemeDrawing | None, reading: Reading | None) -> None:
@@ -64,6 +68,14 @@ class FindingScreen(ModalScreen[None]):
             if runs:
                 options = [Option(self._run_line(i, code), id=f"run-{i}") for i, code in enumerate(runs)]
                 yield OptionList(*options, compact=True, markup=False, id="finding-runs")
+
+        yield Footer(show_command_palette=False)
+
+    def action_help(self) -> None:
+        """Show the help of this screen."""
+        from tui.screens.help import HelpScreen
+
+        self.app.push_screen(HelpScreen(self))
 
     def on_mount(self) -> None:
         """Draw the motif, and lay the side product out in a worker."""

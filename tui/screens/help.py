@@ -9,7 +9,7 @@ from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import VerticalScroll
 from textual.screen import ModalScreen, Screen
-from textual.widgets import Static
+from textual.widgets import Footer, Static
 
 MARKS_HELP = (
     "In drawings ◆ is the reacting carbon, ○ the leaving group, ▲ the motif of the finding that is highlighted, "
@@ -22,7 +22,7 @@ class HelpScreen(ModalScreen[None]):
     """The help of one screen."""
 
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("escape,f1,q", "dismiss", "Close", id="help.close", tooltip="Close the help"),
+        Binding("escape,f1,q", "dismiss", "Close", key_display="Esc", id="help.close", tooltip="Close the help"),
     ]
 
     def __init__(self, screen: Screen[Any]) -> None:
@@ -40,6 +40,7 @@ class HelpScreen(ModalScreen[None]):
         with VerticalScroll(classes="dialog") as dialog:
             dialog.border_title = "Help"
             yield Static(text)
+        yield Footer(show_command_palette=False)
 
 
 def help_keys(screen: Screen[Any]) -> list[tuple[str, str]]:

@@ -24,6 +24,9 @@ from tui.scheme_raster import Panel, fit_scheme
 
 Rows = tuple[tuple[Cell | None, ...], ...]
 
+SHORT_WORDS = {MarkKind.CENTRE: "carbon", MarkKind.LEAVING: "leaves", MarkKind.MOTIF: "motif"}
+"""What marks mean, for panels too narrow for the whole words."""
+
 
 class SchemeView(Widget):
     """One scheme or structure."""
@@ -127,15 +130,22 @@ class SchemeView(Widget):
         return strips
 
     def _legend(self, width: int) -> list[Segment]:
+        """Say what the marks mean, in short words where the long ones do not all fit."""
+        long = [f"{MARK_GLYPHS[kind]} {self._legend_words[kind]}" for kind in self.mark_kinds]
+        fits = len("  ".join(long)) <= width
+        short = [f"{MARK_GLYPHS[kind]} {self._short_word(kind)}" for kind in self.mark_kinds]
         segments: list[Segment] = []
         used = 0
-        for kind in self.mark_kinds:
-            words = f"{MARK_GLYPHS[kind]} {self._legend_words[kind]}  "
+        for kind, words in zip(self.mark_kinds, long if fits else short, strict=True):
             if used + len(words) > width:
                 break
-            used += len(words)
-            segments.append(Segment(words, self._ink(str(kind))))
+            used += len(words) + 2
+            segments += [Segment(words, self._ink(str(kind))), Segment("  ", self.rich_style)]
         return segments
+
+    def _short_word(self, kind: MarkKind) -> str:
+        words = self._legend_words[kind]
+        return SHORT_WORDS.get(kind, words) if words == MARK_WORDS[kind] else words
 
     def _strip(self, row: tuple[Cell | None, ...]) -> Strip:
         segments: list[Segment] = []
