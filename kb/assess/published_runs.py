@@ -34,9 +34,14 @@ def published_share(view: RecordView, row: int, fate: Fate) -> float:
 
 
 def published_run(view: RecordView, row: int) -> Quick | None:
-    """Return what published rates expect of a run, None where they give no number."""
-    step = step_of_run(view, row)
-    return None if step is None else compete_quickly(step, view.table.number("time_h", row) or DEFAULT_TIME_H)
+    """Return what published rates expect of a run, None where they give no number; reckoned once for each run."""
+    key = ("published", view.table.codes[row])
+    if key not in view.known:
+        step = step_of_run(view, row)
+        time_h = view.table.number("time_h", row) or DEFAULT_TIME_H
+        view.known[key] = None if step is None else compete_quickly(step, time_h)
+    found: Quick | None = view.known[key]
+    return found
 
 
 def step_of_run(view: RecordView, row: int) -> StepFacts | None:
@@ -54,11 +59,11 @@ def step_of_run(view: RecordView, row: int) -> StepFacts | None:
     word = table.nucleophile_word(row)
     if closure is not None and word is not None and word not in profile.reagent_classes:
         word = None  # nothing in the flask but the substrate is of that class
-    key = ("medium", int(table.profile[row]), word, leaving)
-    if key not in view.memory:
+    key = ("medium", table.profiles[table.profile[row]], word, leaving)
+    if key not in view.known:
         is_activated = leaving in (LeavingGroup.HYDROXYL, LeavingGroup.ALKOXIDE)
-        view.memory[key] = medium_of(profile, word, is_activated)
-    return StepFacts(centre=centre, leaving_group=LeavingGroup(leaving), medium=view.memory[key], closure=closure)
+        view.known[key] = medium_of(profile, word, is_activated)
+    return StepFacts(centre=centre, leaving_group=LeavingGroup(leaving), medium=view.known[key], closure=closure)
 
 
 @lru_cache(maxsize=16384)

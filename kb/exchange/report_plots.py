@@ -27,7 +27,7 @@ def interval_bars(title: str, rows: Sequence[tuple[str, Interval]], scale: float
     Args:
         rows: label and interval; means are 0..1 with scale 100, percent with scale 1.
     """
-    span = _WIDE - _LABEL - 110
+    span = _WIDE - _LABEL - 130
     height = _ROW * len(rows) + 30
     parts = [_axis_x(_LABEL, span, height - 22)]
     said = []
