@@ -17,7 +17,6 @@ import sys
 import threading
 import time
 from hashlib import sha256
-from multiprocessing import parent_process
 from multiprocessing.connection import Connection
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -171,16 +170,3 @@ def _asked(book: Book, question: str, progress: Progress, replays: Path | None) 
     except InvalidRecord:
         keep.unlink(missing_ok=True)
         return whole.replay_book(book, progress=progress, processes=processes, keep=keep)
-
-
-def end_with_parent() -> None:
-    """End this process of a pool when the one that started it ends, killed or not."""
-    parent = parent_process()
-    if parent is None:
-        return
-
-    def wait() -> None:
-        parent.join()
-        os._exit(1)
-
-    threading.Thread(target=wait, daemon=True).start()

@@ -178,7 +178,7 @@ _REPLAYER: list[Replayer] = []
 def _open_in_process(address: str) -> None:
     from kb.audit.replay import Replayer
     from kb.book import open_book
-    from kb.book.beside import end_with_parent
+    from kb.book.lifeline import end_with_parent
 
     end_with_parent()
     tame_rdkit()
