@@ -44,7 +44,7 @@ def migrate_book(book: str | None, progress: Progress) -> str:
         said = f"The schema went from {done.before} to {done.after}.{kept}"
     with open_book(address) as opened:
         rebuilt = opened.store.rebuild(progress)
-    return f"{said} {rebuilt} runs were read again." if rebuilt else f"{said} Derived facts were up to date."
+    return f"{said} Runs read again: {rebuilt}." if rebuilt else f"{said} Derived facts were up to date."
 
 
 def restore_book(source: str, target: str) -> str:

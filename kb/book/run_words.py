@@ -1,8 +1,8 @@
 """Whole runs from JSON text: one object, a list, or JSON Lines, each as `show --json` prints it.
 
-It owns what a person may hand in by `record --from`: the portable form (`kb.record.portable`) and, since this is entry
-and not safekeeping, also that the scheme can be read, the temperature can be, and failure modes and motifs are such.
-All runs are read before any is given back, so that a bad one stops the lot before anything is stored.
+It owns what a person may hand in by `record --from`: the portable form (`kb.record.portable`) under the rules of entry
+(`kb.exchange.entry_rules`), which a JSON Lines import keeps to as well. All runs are read before any is given back, so
+that a bad one stops the lot before anything is stored.
 """
 
 from __future__ import annotations
@@ -10,16 +10,16 @@ from __future__ import annotations
 import json
 from typing import Any
 
-from kb.book.words import check_motif, check_run_date, check_scheme
+from kb.book.words import today
 from kb.errors import ImportFileError, InvalidRecord, SidepathError
-from kb.record.failure_modes import parse_failure_mode
+from kb.exchange.entry_rules import check_entry
+from kb.logs import tame_rdkit
 from kb.record.portable import run_from_dict
 from kb.record.run import Run
 
 LARGEST_FILE = 50_000_000
 """Longest text that is read [characters]; whole tables are for `sidepath import`."""
 _HINT = "Give runs as `sidepath show CODE --json` prints them."
-_ABSOLUTE_ZERO_C = -273.15
 
 
 def runs_from_json(text: str, place: str) -> list[Run]:
@@ -35,6 +35,7 @@ def runs_from_json(text: str, place: str) -> list[Run]:
     if len(text) > LARGEST_FILE:
         raise ImportFileError(f"{place} is longer than 50 MB.", "Use `sidepath import` for many runs.", place)
     entries = _entries(text, place)
+    tame_rdkit()
     if not entries:
         raise InvalidRecord(f"{place} holds no run.", _HINT, place)
     if len(entries) == 1:
@@ -103,24 +104,4 @@ def _where(error: json.JSONDecodeError) -> str:
 
 
 def _run(entry: Any) -> Run:
-    run = run_from_dict(entry)
-    check_scheme(run.scheme)
-    if run.date is not None:
-        check_run_date(run.date)
-    temperature = run.conditions.temperature
-    if temperature is not None:
-        for value in (temperature.start_c, temperature.end_c, *temperature.between_c):
-            if value is not None and value < _ABSOLUTE_ZERO_C:
-                raise InvalidRecord(
-                    f"The temperature {value:g} °C is below absolute zero.", "Check the sign and the unit.", value
-                )
-    for failure in run.outcome.failures:
-        if parse_failure_mode(failure.mode) != failure.mode:
-            raise InvalidRecord(
-                f"Failure mode {failure.mode!r} is not spelt as on the list.",
-                f"Write {parse_failure_mode(failure.mode)}.",
-                failure.mode,
-            )
-        if failure.motif is not None:
-            check_motif(failure.motif)
-    return run
+    return check_entry(run_from_dict(entry), today())

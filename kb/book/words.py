@@ -12,7 +12,7 @@ from collections.abc import Callable, Iterator, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from kb.errors import ChemistryError, ImportFileError, InvalidRecord, QuantityError, QueryError, StructureError
+from kb.errors import ChemistryError, ImportFileError, InvalidRecord, QuantityError, StructureError
 from kb.logs import tame_rdkit
 from kb.plain import excerpt
 from kb.record.failure_modes import parse_failure_mode
@@ -26,8 +26,6 @@ if TYPE_CHECKING:
 _FILE_ENDINGS = (".rxn", ".mol", ".sdf", ".rd", ".rdf")
 LONGEST_CELL = 1_000_000
 """Longest cell that a batch reads [characters]; a scheme is never this long."""
-EARLIEST_RUN = dt.date(1900, 1, 1)
-"""Runs dated before this are taken for slips of the keyboard."""
 MOST_YIELD_PCT = 200.0
 """Highest yield that is kept [%]; above 100 it is remarked on (wet product happens)."""
 
@@ -59,11 +57,10 @@ def parse_run_date(text: str) -> dt.date:
 
 
 def check_run_date(day: dt.date) -> dt.date:
-    """Return the day, refused before 1900 and after tomorrow (it may be tomorrow already where the run was made)."""
-    if not EARLIEST_RUN <= day <= today() + dt.timedelta(days=1):
-        when = "in the future" if day > today() else "before 1900"
-        raise InvalidRecord(f"{day.isoformat()} lies {when}.", "Check the year.", day)
-    return day
+    """Return the day; see `kb.exchange.entry_rules.check_run_date`."""
+    from kb.exchange import entry_rules
+
+    return entry_rules.check_run_date(day, today())
 
 
 def read_scheme(text: str, *, ignore_maps: bool = False) -> Reading:
@@ -245,13 +242,9 @@ def check_motif(motif: str) -> str:
         InvalidRecord: it is none.
     """
     tame_rdkit()
-    from kb.chem.query import parse_query
+    from kb.exchange import entry_rules
 
-    try:
-        parse_query(motif)
-    except QueryError as error:
-        raise InvalidRecord(f"The motif cannot be used. {error.message}", error.hint, motif) from error
-    return motif
+    return entry_rules.check_motif(motif)
 
 
 def _by_name(word: str, error: ChemistryError) -> str:

@@ -96,7 +96,7 @@ def parse_scheme(text: str) -> Scheme:
     parts = _ARROW.split(stripped)
     if len(parts) not in (1, 3):
         raise StructureError(
-            f"'{make_visible(stripped)}' has {len(parts) - 1} arrows; a scheme is reactants>agents>products.",
+            f"'{make_visible(stripped)}' has {_arrows(len(parts) - 1)}; a scheme is reactants>agents>products.",
             "Write two '>' signs, with nothing between them when no agent is named.",
             make_visible(stripped),
         )
@@ -117,6 +117,11 @@ def parse_scheme(text: str) -> Scheme:
         agents=_fragments(sides[1], "agent"),
         products=_fragments(sides[2], "product"),
     )
+
+
+def _arrows(count: int) -> str:
+    """Return the number of arrows in words: one is half of what a scheme has."""
+    return "one of its two arrows only" if count == 1 else f"{count} arrows"
 
 
 def _fragments(text: str, side: Side) -> tuple[Fragment, ...]:

@@ -191,7 +191,7 @@ def _store(session: Session, runs: Sequence[Run]) -> None:
         except SidepathError as error:
             if not stored:
                 raise
-            message = f"{error.message} {len(stored)} of {len(runs)} runs were kept, up to {stored[-1].code}."
+            message = f"{error.message} Kept: {len(stored)} of {len(runs)}, up to {stored[-1].code}."
             raise type(error)(message, error.hint, error.value) from error
         for given, run in zip(runs, stored, strict=True):
             _remark(session, book, run, given.code)

@@ -125,13 +125,13 @@ def check_scheme(text: str) -> None:
     from kb.chem.scheme import parse_scheme
 
     sides = text.split(">")
-    if len(sides) == 3 and sides[0] and all(_is_structure(f) for side in sides for f in side.split(".") if side):
+    if len(sides) == 3 and sides[0] and all(is_structure(f) for side in sides for f in side.split(".") if side):
         return
     parse_scheme(text)
 
 
 @lru_cache(maxsize=4096)
-def _is_structure(fragment: str) -> bool:
+def is_structure(fragment: str) -> bool:
     """Return whether the text is a structure by itself; far quicker than reading the whole scheme."""
     from kb.chem.structure import parse_molecule
 

@@ -23,6 +23,7 @@ from uuid import UUID, uuid5
 
 from kb.errors import InvalidRecord, SidepathError
 from kb.exchange import cells
+from kb.exchange.entry_rules import check_run_date
 from kb.exchange.headings import AMOUNT_FIELD, IGNORED_FIELDS, ColumnMapping
 from kb.exchange.lookups import check_scheme, checked_motif, materials_in, products_seen, solvents_in
 from kb.quantity import parse_amount_mmol, parse_concentration, parse_duration, parse_percent, parse_temperature
@@ -266,7 +267,7 @@ class _Row:
             self.remarks.append(f"[{heading}: {bare}]")
             return None
         if name == "date":
-            return self._at(heading, lambda t: cells.read_date(t, self.date_order), bare)
+            return self._at(heading, lambda t: check_run_date(cells.read_date(t, self.date_order)), bare)
         return self._at(heading, lambda t: _parsed(name, t, unit), bare)
 
     def _at(self, heading: str, read: Any, text: str) -> Any:

@@ -13,6 +13,7 @@ from pathlib import Path
 from typing import Any
 
 from kb.errors import ImportFileError, SidepathError
+from kb.exchange.entry_rules import check_entry
 from kb.exchange.headings import ColumnMapping, match_headings
 from kb.exchange.jsonlines import JsonLines
 from kb.exchange.rows import Rejection, RowReader, RowRefused
@@ -119,6 +120,11 @@ class LineSource:
 
     def __iter__(self) -> Iterator[Read]:
         for number, found, text in self._lines:
+            if isinstance(found, Run):
+                try:
+                    check_entry(found)
+                except SidepathError as error:
+                    found = error
             if isinstance(found, Run):
                 yield Read(row=number, run=found, raw=text)
             else:

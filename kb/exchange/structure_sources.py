@@ -10,12 +10,14 @@ from __future__ import annotations
 from collections import Counter
 from collections.abc import Iterator, Mapping
 from functools import lru_cache
+from itertools import islice
 from pathlib import Path
 from typing import Any
 
 from kb.errors import ChemistryError, ImportFileError, SidepathError
 from kb.exchange.ctfile import CtFile, Record
 from kb.exchange.headings import MAX_FIELDS_SHOWN, ColumnMapping, ColumnUse, match_headings
+from kb.exchange.lookups import is_structure
 from kb.exchange.rows import Rejection, RowReader, RowRefused
 from kb.exchange.source import Read
 from kb.exchange.text_in import LineTooLong, TextLines
@@ -33,6 +35,10 @@ class StructureSource:
         self._mapping_of = lru_cache(maxsize=256)(self._match)
         if kind in ("rdf", "rxn"):
             _check_head(path, kind)
+        if not _holds_something(path, kind):
+            raise ImportFileError(
+                f"{path.name} holds no {_WHAT[kind]}.", "Is it the right file, and was it exported whole?", path.name
+            )
 
     def __iter__(self) -> Iterator[Read]:
         for record in self._file:
@@ -113,6 +119,23 @@ class _SmilesList:
     @property
     def done_share(self) -> float:
         return self._lines.done_bytes / max(self._lines.size_bytes, 1)
+
+
+_WHAT = {"rdf": "reaction", "rxn": "reaction", "sdf": "molecule", "smi": "reaction SMILES"}
+LOOKED_AT = 200
+"""Records of a file that are looked at before it is refused for holding none."""
+
+
+def _holds_something(path: Path, kind: str) -> bool:
+    """Return whether one of the first records has the look of what the ending promises; a bad one may be mended."""
+    if kind == "smi":
+        first = islice(_SmilesList(path), LOOKED_AT)
+        return any("<" not in r.block and (r.block.count(">") >= 2 or is_structure(r.block)) for r in first)
+    marks = ("M  END", "V2000", "V3000") if kind == "sdf" else ("$MOL", "V2000", "V3000", "M  V30")
+    return any(
+        any(mark in (r.block or r.raw) for mark in marks) or (r.raw.count("\n") > 3 and bool(r.trouble))
+        for r in islice(CtFile(path, kind), LOOKED_AT)
+    )
 
 
 def _check_head(path: Path, kind: str) -> None:

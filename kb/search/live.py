@@ -73,7 +73,7 @@ class LiveRecord:
         if self._checked_version != self._version:
             stale = self.columns.count_stale(deriving.recipe)
             if stale:
-                raise IndexStale(f"{stale} runs were read by another recipe.", "Rebuild them: `sidepath migrate`.")
+                raise IndexStale(f"Runs read by another recipe: {stale}.", "Rebuild them: `sidepath migrate`.")
             self._checked_version = self._version
 
     @property

@@ -164,10 +164,10 @@ def _facts(connection: sa.Connection, store: Store, sample: int | None) -> Verdi
     deriving = store.book.deriving
     stored = connection.execute(sa.select(sa.func.count()).select_from(table(FactsRow))).scalar_one()
     if deriving.derive is None:
-        return True, f"{stored} runs have facts; nothing was at hand to derive them anew."
+        return True, f"Runs with facts: {stored}; nothing was at hand to derive them anew."
     stale = len(facts.stale_keys(connection, deriving.recipe))
     if stale:
-        return False, f"{stale} runs were read by another recipe; `sidepath migrate` reads them again."
+        return False, f"Runs read by another recipe: {stale}; `sidepath migrate` reads them again."
     keys = connection.execute(sa.select(FactsRow.run_key).order_by(FactsRow.run_key)).scalars().all()
     looked_at = _spread(keys, sample)
     for start in range(0, len(looked_at), runs.BATCH):

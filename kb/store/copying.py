@@ -9,7 +9,9 @@ from __future__ import annotations
 
 import contextlib
 import os
+import re
 import sqlite3
+import time
 from collections.abc import Iterator
 from contextlib import closing, contextmanager
 from functools import partial
@@ -23,6 +25,9 @@ from kb.store.engine import translated
 PAGES_PER_STEP = 2000
 """Pages copied between two reports; 8 MB with SQLite's usual page of 4096 bytes."""
 
+ABANDONED_S = 86_400.0
+"""Time after which nobody is writing a draft any more [s]: a day; the largest copy takes minutes."""
+
 
 def copy_book(source: Path, target: Path, progress: Progress | None = None) -> None:
     """Copy a book of any revision to a file that is not there yet, verified, in one piece.
@@ -31,6 +36,7 @@ def copy_book(source: Path, target: Path, progress: Progress | None = None) -> N
         StoreExists, StoreMissing, StoreDamaged, StoreRefused: as for `backup`.
     """
     refuse_taken(target)
+    sweep_drafts(target)
     with translated(source), closing(connect(source, "ro")) as read:
         read.execute("BEGIN")  # one moment for the whole copy, or writers would make it start over and over
         read.execute("SELECT count(*) FROM sqlite_master").fetchone()
@@ -132,6 +138,19 @@ def _draft_beside(target: Path) -> Iterator[Path]:
         for part in ("", "-wal", "-shm", "-journal"):
             with contextlib.suppress(OSError):
                 draft.with_name(draft.name + part).unlink(missing_ok=True)
+
+
+def sweep_drafts(target: Path) -> None:
+    """Take away half-written copies that a killed program left in a folder, once they are a day old.
+
+    Until then somebody may still be writing them. Only names of the form that this program gives to drafts of books are
+    looked at: hidden, the ending of the target, eight hex digits, and what it was to be.
+    """
+    draft = re.compile(rf"\..+{re.escape(target.suffix)}\.[0-9a-f]{{8}}\.(copy|new|restored)(-wal|-shm|-journal)?")
+    with contextlib.suppress(OSError):
+        for path in target.absolute().parent.iterdir():
+            if draft.fullmatch(path.name) and path.is_file() and time.time() - path.stat().st_mtime > ABANDONED_S:
+                path.unlink(missing_ok=True)
 
 
 def connect(path: Path, mode: str) -> sqlite3.Connection:

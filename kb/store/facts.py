@@ -71,7 +71,7 @@ def derived_columns(connection: sa.Connection, recipe: str) -> dict[str, np.ndar
 
     stale = len(stale_keys(connection, recipe))
     if stale:
-        raise IndexStale(f"{stale} runs were read by another recipe.", "Rebuild them: `sidepath migrate`.", recipe)
+        raise IndexStale(f"Runs read by another recipe: {stale}.", "Rebuild them: `sidepath migrate`.", recipe)
     of_run = (RunRow.run_key, RunRow.run_id, RunRow.code, RunRow.run_date, RunRow.verdict, RunRow.isolated_yield_pct, RunRow.assay_yield_pct)  # fmt: skip  # noqa: E501
     of_facts = [FACTS.c[name] for name in (*FLOATS, *WORDS, "centre_bits", "is_stereocentre", "protic")]
     statement = (

@@ -129,7 +129,7 @@ def carried_runs(draw: st.DrawFn) -> Run:
         verdict=draw(st.none() | st.sampled_from(Verdict)),
         note=draw(notes),
         by=draw(st.none() | phrases),
-        date=draw(st.none() | st.dates(dt.date(1990, 1, 1), dt.date(2090, 1, 1))),
+        date=draw(st.none() | st.dates(dt.date(1990, 1, 1), dt.date(2024, 1, 1))),
         reference=draw(st.none() | phrases),
         project=draw(st.none() | phrases),
         series=draw(st.none() | phrases),

@@ -163,3 +163,23 @@ def test_control_characters_in_cells_reach_the_note_or_are_refused_but_never_sto
     report = load_file(path, sink, who="AB")
     assert (report.stored, report.rejected) == (2, 1)
     assert [r.note for r in sink.runs.values()] == ["\x1b[31mred\x07", "fine"]
+
+
+JUNK = ("Dear all, the pump oil was changed today.\n" * 3, "a,b,c\n1,2,3\n", "{}\n", "<html><body>no</body></html>\n")
+
+
+@pytest.mark.parametrize("text", JUNK)
+@pytest.mark.parametrize("name", ["a.rdf", "a.rxn", "a.sdf", "a.smi"])
+def test_a_file_that_holds_nothing_of_its_kind_is_refused_and_not_read_as_empty(
+    name: str, text: str, tmp_path: Path
+) -> None:
+    path = tmp_path / name
+    path.write_text(text)
+    assert isinstance(read(path), ImportFileError), name
+
+
+@pytest.mark.parametrize("head", ["$RDFILE 1\n", "$RDFILE 1\n$DATM 01/01/00 00:00\nwords\n" * 2])
+def test_an_rdfile_without_a_record_is_refused(head: str, tmp_path: Path) -> None:
+    path = tmp_path / "a.rdf"
+    path.write_text(head)
+    assert isinstance(read(path), ImportFileError)

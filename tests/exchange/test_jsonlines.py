@@ -5,16 +5,20 @@ from __future__ import annotations
 import datetime as dt
 import json
 import re
+from pathlib import Path
 from typing import Any
 from uuid import UUID
 
 import pytest
 from hypothesis import given
 
-from kb.errors import InvalidRecord
+from kb.book import runs_from_json
+from kb.errors import InvalidRecord, SidepathError
 from kb.exchange.json_schema import PUBLISHED, run_schema, schema_text
 from kb.exchange.jsonlines import rejected_line, run_from_line, run_to_line
+from kb.exchange.loading import load_file
 from kb.record.run import Run
+from tests.exchange.carried import KeptInMemory
 from tests.factories import a_run, runs
 
 
@@ -134,3 +138,24 @@ def fits(text: str, kind: str) -> bool:
     except ValueError:
         return False
     return True
+
+
+@pytest.mark.parametrize(
+    "changes",
+    [
+        {"scheme": "not a scheme"},
+        {"date": "2999-01-01"},
+        {"date": "1820-01-01"},
+        {"outcome": {"failures": [{"mode": "exploded"}]}},
+        {"outcome": {"failures": [{"mode": "elimination", "motif": "C(("}]}},
+        {"conditions": {"temperature": {"text": "-400 C", "start_c": -400.0, "end_c": -400.0}}},
+    ],
+)
+def test_an_import_keeps_to_the_rules_of_record_from(changes: dict[str, Any], tmp_path: Path) -> None:
+    text = json.dumps({"scheme": "CCBr>>C=C", **changes})
+    (tmp_path / "a.jsonl").write_text(text + "\n", encoding="utf-8")
+    report = load_file(tmp_path / "a.jsonl", KeptInMemory(), who="AB")
+    assert (report.stored, report.rejected) == (0, 1)
+    with pytest.raises(SidepathError) as refusal:
+        runs_from_json(text, "a.json")
+    assert report.rejections[0].reason == str(refusal.value)

@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 
 from kb.errors import ImportFileError
 from kb.exchange.exporting import export_file
+from kb.exchange.jsonlines import JsonLines
 from kb.exchange.loading import load_file
 from kb.record.run import Run
 from tests.exchange.carried import KeptInMemory, carried_runs
@@ -28,7 +29,14 @@ def test_json_lines_give_back_every_run_whole(many: list[Run], tmp_path: Path) -
     path = tmp_path / "all.jsonl"
     assert export_file(iter(many), path) == len(many)
     if many:
-        assert read_back(path) == many
+        assert [run for _, run, _ in JsonLines(path)] == many
+
+
+@given(many=st.lists(carried_runs(), min_size=1, max_size=3, unique_by=lambda run: run.run_id))
+def test_json_lines_of_runs_as_people_enter_them_are_imported_whole(many: list[Run], tmp_path: Path) -> None:
+    path = tmp_path / "all.jsonl"
+    export_file(iter(many), path)
+    assert read_back(path) == many
 
 
 @pytest.mark.parametrize("ending", [".csv", ".tsv", ".xlsx", ".rdf", ".sdf"])

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from pathlib import Path
 
 import pytest
@@ -191,3 +192,23 @@ def test_the_log_of_a_book_that_was_deleted_is_not_played_into_its_successor(tmp
         assert all(check.ok for check in verify(second))
     kept = [p for p in tmp_path.iterdir() if "-wal.orphan" in p.name]
     assert [p.read_bytes() for p in kept] == [left]
+
+
+def test_half_written_copies_of_a_killed_program_go_with_the_next_copy_and_nothing_else_does(tmp_path: Path) -> None:
+    old = [f".book.sidepath.0123abcd.{kind}" for kind in ("copy", "copy-wal", "new", "new-journal", "restored")]
+    kept = [
+        ".book.sidepath.89abcdef.copy",  # somebody is writing it now
+        ".book.sidepath.copy",
+        "book.sidepath.0123abcd.copy",
+        ".notes.txt.0123abcd.copy",
+        ".book.sidepath.0123ABCD.copy",
+    ]
+    with a_book(tmp_path) as store:
+        for name in (*old, *kept):
+            (tmp_path / name).write_bytes(b"half")
+            if name != kept[0]:
+                os.utime(tmp_path / name, (1_000_000_000, 1_000_000_000))
+        backup(store, tmp_path / "copy.sidepath")
+    names = {path.name for path in tmp_path.iterdir()}
+    assert not names & set(old)
+    assert set(kept) <= names

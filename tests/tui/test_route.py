@@ -344,10 +344,10 @@ async def test_what_a_file_says_shows_as_text_and_acts_on_nothing(tmp_path: Path
         for _ in range(2):
             shown = on_screen(app)
             assert "[red]x[/red]" in shown
-            assert not any(ord(c) < 32 and c != "\n" or c in "\x1b\u202e\x9b" for c in shown)
+            assert not any((ord(c) < 32 and c != "\n") or c in "\x1b\u202e\x9b" for c in shown)
             await pressed(pilot, "down")
         for copied in screen.copy_texts().values():
-            assert "\x1b" not in copied and "\u202e" not in copied or copied.startswith("{")
+            assert ("\x1b" not in copied and "\u202e" not in copied) or copied.startswith("{")
 
 
 async def test_looking_up_is_told_and_can_be_stopped(tmp_path: Path) -> None:
