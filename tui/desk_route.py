@@ -20,8 +20,7 @@ from tui.jobs import current_progress
 if TYPE_CHECKING:
     from kb.book import Book
     from kb.route.sequence import Route, Step
-    from tui.ports import BookPort
-    from tui.route_state import Imagined
+    from tui.ports import BookPort, Imagined
 
     Lending = Callable[[], AbstractContextManager[Book]]
 

@@ -22,11 +22,10 @@ from kb.vocabulary import Role
 from tui.backroom import BackRoom, NoBackRoom
 from tui.desk import Desk, load_chemistry
 from tui.drawings import draw_elsewhere, draw_here
-from tui.ports import FindPage, FindQuery, Offer, RunPage, RunQuery
+from tui.ports import FindPage, FindQuery, Imagined, Offer, RunPage, RunQuery
 
 if TYPE_CHECKING:
     from kb.route.sequence import Route
-    from tui.route_state import Imagined
 
 log = logging.getLogger(__name__)
 

@@ -10,7 +10,7 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any, Protocol
 
 from kb.chem.facts import Reading
@@ -27,8 +27,9 @@ if TYPE_CHECKING:
     from kb.audit.recurrence_values import Proposal, Recurrence
     from kb.audit.replay_report import ReplayReport
     from kb.audit.tally import Tally
+    from kb.errors import SidepathError
+    from kb.route.entries import Ledger
     from kb.route.sequence import Route
-    from tui.route_state import Imagined
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -141,6 +142,14 @@ class DraftLine:
     key: str
     title: str
     saved_at: dt.datetime | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Imagined:
+    """A route reckoned with what was typed over it; `errors` are of edits that could not be applied, by their names."""
+
+    ledger: Ledger
+    errors: Mapping[str, SidepathError] = field(default_factory=dict)
 
 
 class BookPort(Protocol):

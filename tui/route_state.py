@@ -8,16 +8,15 @@ is never touched. One bad line spoils nothing else: it comes back as an error un
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field, replace
+from dataclasses import replace
 
 from kb.errors import SidepathError
 from kb.record.plan import Plan
-from kb.route.entries import Ledger
 from kb.route.imagined import with_forgiven, with_step, with_target, with_yield
 from kb.route.routefile import FORGIVEN, parse_yield
 from kb.route.sequence import Route, Step
 from tui.condition_text import read_conditions, write_conditions
-from tui.ports import BookPort
+from tui.ports import BookPort, Imagined
 
 TARGET = "|wanted"
 """Name of the edit of the amount wanted; those of steps are made by `edit_name`."""
@@ -27,18 +26,6 @@ MATTERS = "matters"
 """Word of the edit that says why a poor yield does not matter."""
 REASONS: tuple[str, ...] = ("", *FORGIVEN.values())
 """What MATTERS can hold: "" = a poor yield matters."""
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Imagined:
-    """A route reckoned with edits.
-
-    Attributes:
-        errors: what could not be applied, by the name of the edit.
-    """
-
-    ledger: Ledger
-    errors: Mapping[str, SidepathError] = field(default_factory=dict)
 
 
 def edit_name(step: str, field_name: str) -> str:

@@ -15,7 +15,8 @@ from kb.errors import RecordNotFound
 from kb.record.plan import Plan
 from kb.route.sequence import Route, Step
 from tui.jobs import current_progress
-from tui.route_state import Imagined, imagine
+from tui.ports import Imagined
+from tui.route_state import imagine
 
 MESYLATE = "C[C@H](OS(C)(=O)=O)[C@H]1CCCO1"
 ROUTE = f"""

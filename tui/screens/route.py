@@ -26,9 +26,9 @@ from tui.drawings import scheme_drawing
 from tui.jobs import EditLog
 from tui.marks import mark_scheme
 from tui.plan_state import state_of_plan
-from tui.ports import BookPort
+from tui.ports import BookPort, Imagined
 from tui.present import arrow_words, reading_words, safe
-from tui.route_state import CONDITIONS, MATTERS, TARGET, Imagined, edit_name, lines_of, next_reason
+from tui.route_state import CONDITIONS, MATTERS, TARGET, edit_name, lines_of, next_reason
 from tui.route_words import rests_words, route_texts
 from tui.screens.base import PlaceScreen
 from tui.styles import HERE
