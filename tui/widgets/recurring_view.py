@@ -23,9 +23,9 @@ if TYPE_CHECKING:
     from kb.audit.recurrence_values import Cluster, Recurrence
 
 COLUMNS = (
-    Column("Went wrong", 12),
-    Column("Where", 24, grows=3),
-    Column("Under", 16, grows=2, from_width=96),
+    Column("Went wrong", 12, grows=1),
+    Column("Where", 24, grows=2),
+    Column("Under", 16, grows=3, from_width=96),
     Column("Runs", 4, is_figure=True),
     Column("Earlier", 7, is_figure=True),
     Column("Lost", 5, is_figure=True),
