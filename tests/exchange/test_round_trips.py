@@ -39,6 +39,27 @@ def test_json_lines_of_runs_as_people_enter_them_are_imported_whole(many: list[R
     assert read_back(path) == many
 
 
+@pytest.mark.soak
+@settings(max_examples=5_000)
+@given(run=runs())
+def test_5000_random_runs_through_json_lines_come_back_equal(run: Run, tmp_path: Path) -> None:
+    path = tmp_path / "one.jsonl"
+    export_file(iter([run]), path)
+    assert [found for _, found, _ in JsonLines(path)] == [run]
+
+
+@pytest.mark.soak
+@pytest.mark.parametrize("ending", [".jsonl", ".csv", ".tsv", ".xlsx", ".rdf", ".sdf"])
+@settings(max_examples=1_000)
+@given(many=st.lists(carried_runs(), min_size=5, max_size=5, unique_by=lambda run: run.run_id))
+def test_5000_random_runs_come_back_equal_in_what_the_format_carries(
+    many: list[Run], ending: str, tmp_path: Path
+) -> None:
+    path = tmp_path / f"all{ending}"
+    export_file(iter(many), path)
+    assert read_back(path) == many
+
+
 @pytest.mark.parametrize("ending", [".csv", ".tsv", ".xlsx", ".rdf", ".sdf"])
 @settings(max_examples=30)
 @given(many=st.lists(carried_runs(), min_size=1, max_size=3, unique_by=lambda run: run.run_id))
