@@ -8,6 +8,7 @@ from contextlib import asynccontextmanager
 from typing import Any
 
 from textual.pilot import Pilot
+from textual.widgets import Static
 
 from tests.tui.fake_book import FakeBook, FakeOpener
 from tui.application import SidepathApp
@@ -65,3 +66,13 @@ def on_screen(app: SidepathApp) -> str:
     """Return everything that the screen shows, as text."""
     strips = app.screen._compositor.render_strips()
     return "\n".join("".join(segment.text for segment in strip) for strip in strips)
+
+
+def words(app: SidepathApp) -> str:
+    """Return what is on the screen, its spaces made one."""
+    return " ".join(on_screen(app).split())
+
+
+def said(app: SidepathApp, selector: str) -> str:
+    """Return the words of one line of the screen."""
+    return " ".join(str(app.screen.query_one(selector, Static).render()).split())
