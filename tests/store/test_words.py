@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import random
+from pathlib import Path
+
 import pytest
 from hypothesis import given
 from hypothesis import settings as hypothesis_settings
@@ -11,7 +14,7 @@ from kb.errors import QueryError
 from kb.record.outcome import Failure, Outcome
 from kb.store.checking import verify
 from kb.store.store import Store
-from tests.engines import Books
+from tests.engines import Books, Schemas
 from tests.factories import CHEMISTRY, a_book, a_run
 
 
@@ -117,3 +120,41 @@ def test_an_index_that_was_lost_is_made_anew_with_what_is_derived(books: Books) 
         store.rebuild()
         assert codes(store, "emulsion") == ["R-0001"]
         assert [c for c in verify(store) if not c.ok] == []
+
+
+PARTS = ["emulsion", "Über", "schuß", "group-loss", "K2CO3", "naïve", "4-Å", "e", "ØX", "ærlig", "50 °C", "THF/H2O"]
+PARTS += ["β-H", "İo"]
+GLUE = [" ", "-", "/", ", ", "; ", "_", "'", ""]
+sentences = st.lists(st.sampled_from(PARTS) | st.sampled_from(GLUE), min_size=1, max_size=7).map("".join)
+
+
+@pytest.fixture(scope="module")
+def notes() -> list[str]:
+    """Give notes that are put together from the parts of the questions, the same ones each time."""
+    drawn = random.Random(3)
+    return ["".join(drawn.choice(PARTS) + drawn.choice(GLUE) for _ in range(drawn.randint(1, 6))) for _ in range(80)]
+
+
+@given(asked=sentences, is_phrase=st.booleans())
+@hypothesis_settings(max_examples=150)
+def test_both_engines_find_the_same_runs(
+    asked: str, is_phrase: bool, notes: list[str], tmp_path: Path, schemas: Schemas
+) -> None:
+    kept = BOOKS_OF_NOTES.get(tmp_path)
+    if kept is None:
+        kept = a_book(tmp_path), a_book(schemas)
+        for store in kept:
+            store.add_many([a_run(note=note) for note in notes], "MK")
+        BOOKS_OF_NOTES[tmp_path] = kept
+    text = f'"{asked}"' if is_phrase else asked
+    found = []
+    for store in kept:
+        try:
+            found.append({hit.code for hit in store.words(text)})
+        except QueryError:
+            found.append(None)
+    assert found[0] == found[1]
+
+
+BOOKS_OF_NOTES: dict[Path, tuple[Store, Store]] = {}
+"""The two books of the test above, filled once for all its examples."""
