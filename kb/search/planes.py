@@ -30,6 +30,8 @@ _GROWTH = 1.5
 """Factor by which planes grow; pages that no row has touched yet are not in memory."""
 _BLOCKS_AT_ONCE = 4
 """Blocks turned into planes together: they stay in the processor's cache."""
+_WORDS_IN_CACHE = 2**16
+"""Words transposed together, half a MB: all stages find them in the cache, which takes half the time (measured)."""
 _STAGES = (
     (32, np.uint64(0x00000000FFFFFFFF)),
     (16, np.uint64(0x0000FFFF0000FFFF)),
@@ -159,6 +161,11 @@ def transpose_bits(x: NDArray[np.uint64]) -> None:
         x: (any, 64, width) uint64, contiguous; one matrix per position of the first and last axis.
     """
     outer, _, width = x.shape
+    at_once = max(1, _WORDS_IN_CACHE // (64 * width))
+    if outer > at_once:
+        for start in range(0, outer, at_once):
+            transpose_bits(x[start : start + at_once])
+        return
     for distance, mask in _STAGES:
         halves = x.reshape(outer, 64 // (2 * distance), 2, distance, width)
         low, high = halves[:, :, 0], halves[:, :, 1]

@@ -44,7 +44,7 @@ _CODES_WITH = """SELECT DISTINCT run.code FROM run_structure place JOIN run ON r
 _CODES_OF_PLACES = """SELECT place.structure_id, run.code FROM run_structure place
     JOIN run ON run.run_key = place.run_key WHERE place.role IN :roles AND run.withdrawn_why IS NULL"""
 _STRUCTURES = """SELECT structure_id, recipe_id, mol_binary, augmented, morgan FROM structure
-    WHERE structure_id > :after ORDER BY structure_id"""
+    WHERE structure_id > :after AND mol_binary IS NOT NULL ORDER BY structure_id"""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -97,11 +97,12 @@ def last_structure_id(book: OpenBook) -> int:
         return connection.execute(sa.text("SELECT max(structure_id) FROM structure")).scalar() or 0
 
 
-def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 1024) -> Iterator[list[list[Any]]]:
+def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 256) -> Iterator[list[Sequence[Any]]]:
     """Yield structures with an id beyond `after`, ascending, in batches, all as of one moment.
 
     Args:
         recipe: what must have encoded them; "" = whatever did.
+        batch: structures at a time; so few stay in the processor's cache between being read and taken in.
 
     Yields:
         four columns: structure_id, mol_binary, augmented, morgan; structures without blobs are
@@ -116,13 +117,11 @@ def iter_blobs(book: OpenBook, recipe: str, after: int = 0, batch: int = 1024) -
             named = sa.select(RecipeRow.recipe_id).where(RecipeRow.name == recipe)
             good = connection.execute(named).scalar()
         stream = connection.execution_options(yield_per=batch).execute(sa.text(_STRUCTURES), {"after": after})
-        for rows in stream.partitions():
-            usable = [row for row in rows if row[2] is not None]
-            if recipe and any(row[1] != good for row in usable):
+        for rows in stream.partitions(batch):
+            ids, recipes, *blobs = zip(*rows, strict=True)
+            if recipe and set(recipes) != {good}:
                 raise _stale()
-            if usable:
-                ids, _, *blobs = zip(*usable, strict=True)
-                yield [list(ids), *(list(column) for column in blobs)]
+            yield [ids, *blobs]
 
 
 def substrate_fingerprints(book: OpenBook, recipe: str) -> tuple[list[Any], list[int], bytes]:
