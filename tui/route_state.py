@@ -16,6 +16,7 @@ from kb.route.imagined import with_forgiven, with_step, with_target, with_yield
 from kb.route.routefile import FORGIVEN, parse_yield
 from kb.route.sequence import Route, Step
 from tui.condition_text import read_conditions, write_conditions
+from tui.jobs import EditLog
 from tui.ports import BookPort, Imagined
 
 TARGET = "|wanted"
@@ -45,6 +46,54 @@ def next_reason(step: Step) -> str:
     """Return the reason that follows the one a step has, so that one key walks through all of them."""
     held = step.forgiven[0] if step.forgiven else ""
     return REASONS[(REASONS.index(held) + 1) % len(REASONS)] if held in REASONS else ""
+
+
+def wanted_in_file(route: Route | None) -> str:
+    """Return the amount wanted as the file would say it; "" where it says none."""
+    if route is None or route.target_mmol is None:
+        return ""
+    if route.target_molar_mass is not None:
+        return f"{route.target_mmol * route.target_molar_mass / 1000:.4g} g"
+    return f"{route.target_mmol:.4g} mmol"
+
+
+class Edits:
+    """What was typed over a route, with undo; only what differs from the file is an edit."""
+
+    def __init__(self) -> None:
+        self.texts: dict[str, str] = {}
+        self._log = EditLog({})
+
+    def note(self, name: str, text: str, in_file: str) -> None:
+        """Note what a line holds now; where it says what the file says it is no edit any more."""
+        self.texts = {key: value for key, value in self.texts.items() if key != name}
+        if text.strip() != in_file.strip():
+            self.texts[name] = text
+        self._log.note(name, self.texts)
+
+    def of_step(self, step: str) -> dict[str, str]:
+        """Return the edits of a step by field."""
+        fields = ("yield", *CONDITIONS, MATTERS)
+        return {f: self.texts[edit_name(step, f)] for f in fields if edit_name(step, f) in self.texts}
+
+    def forget_step(self, step: str) -> None:
+        """Take a step back to what the file says."""
+        own = {edit_name(step, field) for field in self.of_step(step)}
+        self.texts = {name: text for name, text in self.texts.items() if name not in own}
+        self._log.note("*", self.texts)
+
+    def undo(self) -> bool:
+        """Take the last edit back; False where there is none."""
+        return self._take(self._log.undo())
+
+    def redo(self) -> bool:
+        """Do the edit again; False where there is none."""
+        return self._take(self._log.redo())
+
+    def _take(self, texts: dict[str, str] | None) -> bool:
+        if texts is not None:
+            self.texts = texts
+        return texts is not None
 
 
 def imagine(

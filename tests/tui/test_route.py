@@ -151,7 +151,7 @@ async def test_another_amount_wanted_scales_what_goes_in(tmp_path: Path) -> None
         assert screen.query_one(RouteLines).line("wanted").has_class("-bad")
         assert ledger_of(screen).needed[0].mmol == pytest.approx(before, rel=1e-3)
         await typed(pilot, "#field-wanted", "0.4607 g")
-        assert "✗" not in words(app) and screen._edits == {}
+        assert "✗" not in words(app) and screen._edits.texts == {}
 
 
 @pytest.mark.parametrize(

@@ -23,12 +23,11 @@ from kb.record.finding import Finding
 from kb.route.entries import Ledger
 from kb.route.sequence import Route, Step
 from tui.drawings import scheme_drawing
-from tui.jobs import EditLog
 from tui.marks import mark_scheme
 from tui.plan_state import state_of_plan
 from tui.ports import BookPort, Imagined
 from tui.present import arrow_words, reading_words, safe
-from tui.route_state import CONDITIONS, MATTERS, TARGET, edit_name, lines_of, next_reason
+from tui.route_state import MATTERS, TARGET, Edits, edit_name, lines_of, next_reason, wanted_in_file
 from tui.route_words import rests_words, route_texts
 from tui.screens.base import PlaceScreen
 from tui.styles import HERE
@@ -88,8 +87,7 @@ permission: local safety rules and qualified people decide.
         self._base: Ledger | None = None
         self._ledger: Ledger | None = None
         self._errors: dict[str, SidepathError] = {}
-        self._edits: dict[str, str] = {}
-        self._log = EditLog({})
+        self._edits = Edits()
         self._step: Step | None = None
         self._drawing: SchemeDrawing | None = None
         self._finding: Finding | None = None
@@ -134,7 +132,7 @@ permission: local safety rules and qualified people decide.
             return
         path, self._route = opened
         if path != self._path:
-            self._path, self._edits, self._log = path, {}, EditLog({})
+            self._path, self._edits = path, Edits()
         self._base = self._ledger = None
         self.show_trouble(None)
         self.query_one("#route-steps-panel", Panel).say(f"Sequence: {safe(self._route.title, 40)}")
@@ -151,27 +149,23 @@ permission: local safety rules and qualified people decide.
     def _edited(self, event: RouteLines.Changed) -> None:
         step = self._step
         if event.field == WANTED:
-            self._edit(TARGET, event.text, self._wanted_in_file())
+            self._edit(TARGET, event.text, wanted_in_file(self._route))
         elif step is not None and self._route is not None:
             own = lines_of(self._route.step(step.name))[event.field]
             self._edit(edit_name(step.name, event.field), event.text, own)
 
     def _edit(self, name: str, text: str, in_file: str) -> None:
-        """Note a line that differs from the file; one that does not is no edit."""
-        self._edits = {key: value for key, value in self._edits.items() if key != name}
-        if text.strip() != in_file.strip():
-            self._edits[name] = text
-        self._log.note(name, self._edits)
+        self._edits.note(name, text, in_file)
         self.later("reckon", SETTLE_S, self._reckon)
 
     def _reckon(self) -> None:
         if self.book is not None and self._route is not None:
-            self.ask("reckon", partial(self.book.imagine_route, self._route, dict(self._edits)), self._show)
+            self.ask("reckon", partial(self.book.imagine_route, self._route, dict(self._edits.texts)), self._show)
 
     def _show(self, found: Imagined) -> None:
         self._ledger, self._errors = found.ledger, dict(found.errors)
         self.show_trouble(None)
-        changed = f", {len(self._edits)} changed" if self._edits else ""
+        changed = f", {len(self._edits.texts)} changed" if self._edits.texts else ""
         self.query_one("#route-sum-panel", Panel).say(f"Overall, {len(found.ledger.entries)} steps{changed}")
         self.query_one("#route").remove_class("-empty")
         self.query_one(RouteSequence).show(found.ledger, self._base)
@@ -194,26 +188,17 @@ permission: local safety rules and qualified people decide.
             self.query_one("#route-lines-panel", Panel).say("What if")
             return
         own = lines_of(self._route.step(step.name))
-        typed = {f: self._edits[edit_name(step.name, f)] for f in own if edit_name(step.name, f) in self._edits}
-        changed = {*typed, *({WANTED} if TARGET in self._edits else ())}
-        texts = {**own, **typed, WANTED: self._edits.get(TARGET, self._wanted_in_file())}
+        typed = {f: text for f, text in self._edits.of_step(step.name).items() if f in own}
+        if TARGET in self._edits.texts:
+            typed[WANTED] = self._edits.texts[TARGET]
         pct = step.yield_pct.pct
         hints = {"yield": f"{pct.mean:.0f} ({pct.low:.0f}–{pct.high:.0f})"}
-        lines.fill(texts, hints, changed, step.plan is None)
+        lines.fill({**own, WANTED: wanted_in_file(self._route), **typed}, hints, set(typed), step.plan is None)
         errors = {f: self._errors[edit_name(step.name, f)] for f in own if edit_name(step.name, f) in self._errors}
         if TARGET in self._errors:
             errors[WANTED] = self._errors[TARGET]
         lines.show_errors(errors)
         self.query_one("#route-lines-panel", Panel).say(f"What if: {safe(step.name, 30)}")
-
-    def _wanted_in_file(self) -> str:
-        """Return the amount wanted as the file would say it."""
-        route = self._route
-        if route is None or route.target_mmol is None:
-            return ""
-        if route.target_molar_mass is not None:
-            return f"{route.target_mmol * route.target_molar_mass / 1000:.4g} g"
-        return f"{route.target_mmol:.4g} mmol"
 
     # the chosen step
 
@@ -336,12 +321,9 @@ permission: local safety rules and qualified people decide.
 
     def action_as_in_file(self) -> None:
         """Forget the edits of the step; Ctrl+Z brings them back."""
-        if self._step is None:
-            return
-        own = {edit_name(self._step.name, f) for f in ("yield", MATTERS, *CONDITIONS)}
-        self._edits = {name: text for name, text in self._edits.items() if name not in own}
-        self._log.note("*", self._edits)
-        self._reckon()
+        if self._step is not None:
+            self._edits.forget_step(self._step.name)
+            self._reckon()
 
     async def action_plan_it(self) -> None:
         """Take the step to planning."""
@@ -376,15 +358,14 @@ permission: local safety rules and qualified people decide.
 
     def action_undo(self) -> None:
         """Take back the last edit."""
-        self._restore(self._log.undo(), "Nothing to undo.")
+        self._restored(self._edits.undo(), "Nothing to undo.")
 
     def action_redo(self) -> None:
         """Do the edit again."""
-        self._restore(self._log.redo(), "Nothing to redo.")
+        self._restored(self._edits.redo(), "Nothing to redo.")
 
-    def _restore(self, edits: dict[str, str] | None, otherwise: str) -> None:
-        if edits is None:
+    def _restored(self, is_done: bool, otherwise: str) -> None:
+        if is_done:
+            self._reckon()
+        else:
             self.app.notify(otherwise, markup=False, timeout=2)
-            return
-        self._edits = edits
-        self._reckon()
