@@ -58,6 +58,9 @@ def timed(cls, name):
         log.write(f"start {time.monotonic()}\\n")
         try:
             return plain(*args, **kwargs)
+        except Exception as error:
+            log.write(f"{type(error).__name__} 0\\n")
+            raise
         finally:
             log.write(f"end {time.monotonic()}\\n")
     setattr(cls, name, call)
@@ -137,7 +140,11 @@ def chain(number: int, chance: random.Random) -> str:
             return letters
 
 
-def type_slowly(terminal: Terminal, keys: int) -> list[tuple[float, float]]:
+PACE_S = (0.155, 0.25)
+"""Between keys [s]; somewhat longer than the pause after which the form is read, so that each key starts a check."""
+
+
+def type_slowly(terminal: Terminal, keys: int, pace_s: tuple[float, float] = PACE_S) -> list[tuple[float, float]]:
     """Type chains into the line in focus, a key at a time; return (moment of the key, seconds until it showed)."""
     chance = random.Random(7)
     shown: list[tuple[float, float]] = []
@@ -154,8 +161,7 @@ def type_slowly(terminal: Terminal, keys: int) -> list[tuple[float, float]]:
             assert ended is not None, f"{tail} never showed"
             if at >= TAIL:
                 shown.append((began, ended - began))
-            # somewhat longer than the pause after which the form is read, so that each key starts a check
-            end = time.monotonic() + chance.uniform(0.155, 0.25)
+            end = time.monotonic() + chance.uniform(*pace_s)
             while time.monotonic() < end:
                 terminal.read(end)
     return shown
@@ -195,6 +201,7 @@ def test_keys_show_while_a_check_runs(tmp_path: Path, pytestconfig: pytest.Confi
     shown = type_slowly(whole, keys)
     whole.close()
     moments = [line.split() for line in checks.read_text().splitlines()]
+    assert {what for what, _ in moments} <= {"start", "end", "Cancelled"}, "checks failed: is the book of this recipe?"
     starts = [float(t) for what, t in moments if what == "start"]
     ends = [float(t) for what, t in moments if what == "end"]
     spans = list(zip(starts, ends, strict=False))
@@ -205,3 +212,29 @@ def test_keys_show_while_a_check_runs(tmp_path: Path, pytestconfig: pytest.Confi
     median_ms = 1000 * statistics.median(b - a for a, b in spans) if spans else float("nan")
     print(f"  {len(spans)} checks, median {median_ms:.0f} ms; load {os.getloadavg()[0]:.1f}")
     assert len(spans) > keys / 20
+
+
+@pytest.mark.speed
+def test_keys_show_while_the_book_is_opened_and_while_runs_are_searched(
+    tmp_path: Path, pytestconfig: pytest.Config
+) -> None:
+    assert pytestconfig.cache is not None
+    place = BOOK or str(demo_book_of(wanted("RUNS", 100_000), pytestconfig.cache.mkdir("sidepath-bench")))
+    keys = wanted("KEYS", 300) // 3
+    print(f"\nload {os.getloadavg()[0]:.1f}")
+    whole = Terminal(sys.executable, "-c", WHOLE, place, str(tmp_path / "checks"), folder=tmp_path)
+    assert whole.wait_for("Scheme", 60)
+    told("the planning place, while the book is opened", [s for _, s in type_slowly(whole, keys, (0.06, 0.2))])
+    whole.write("\x1bOR")  # F3
+    whole.rest(2.0, 30)
+    whole.write("/")
+    whole.rest(0.5, 5)
+    told("the runs place, while the list is narrowed", [s for _, s in type_slowly(whole, keys, (0.21, 0.3))])
+    whole.write("\x1bOS")  # F4
+    whole.rest(2.0, 30)
+    found: list[tuple[float, float]] = []
+    while len(found) < keys:
+        whole.write("\x15CCO\r")  # a search that every chain of the record answers to; the line keeps the focus
+        found += type_slowly(whole, 21, (0.06, 0.2))
+    told("the finding place, typing right behind a search", [s for _, s in found])
+    whole.close()

@@ -71,7 +71,7 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
         ),
         Binding("ctrl+l", "numbers", "Numbers", id="plan.numbers", tooltip="Atom numbers in the drawing"),
         Binding("ctrl+n", "clear", "New", id="plan.new", tooltip="Empty the form (can be undone)"),
-        Binding("ctrl+r", "check_again", "Check again", show=False, id="plan.again", tooltip="Check the step once more"),
+        Binding("ctrl+r", "check_again", "Check again", show=False, id="plan.again", tooltip="Check the step again"),
         Binding("ctrl+z", "undo", "Undo", show=False, id="plan.undo", tooltip="Take back the last edit"),
         Binding("ctrl+y", "redo", "Redo", show=False, id="plan.redo", tooltip="Do the edit again"),
     ]
