@@ -153,7 +153,9 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
         self._reading, self._drawing = found
         words = self.query_one("#reading", Static)
         words.set_class(not self._reading.ok, "-bad")
-        words.update(Content(("" if self._reading.ok else "✗ ") + reading_words(self._reading)))
+        told = ("" if self._reading.ok else "✗ ") + reading_words(self._reading)
+        if str(words.content) != told:  # saves laying the screen out anew
+            words.update(Content(told))
         self._draw()
 
     def _show_bad(self, error: SidepathError) -> None:

@@ -61,7 +61,8 @@ class PlaceBar(Horizontal):
         words = getattr(self.app, "book_words", "")
         if self.is_busy:
             words = f"{self.progress}, Esc stops" if self.progress else f"working…  {words}"
-        line.update(fit_status(words, line.size.width or len(words)))
+        # its place is fixed: laying the whole screen out anew, twice for each check, would be felt in typing
+        line.update(fit_status(words, line.size.width or len(words)), layout=False)
 
     def _tabs(self) -> Content:
         parts: list[Content] = []
