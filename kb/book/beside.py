@@ -36,6 +36,8 @@ _NICE = 10
 """How far the work stands back behind whoever types; on Windows it does not."""
 _WORTH_PROCESSES = 300
 """Runs from which a replay is spread over all cores; starting a process costs as much as checking some 60 runs."""
+_RECEIVING = threading.Lock()
+"""One answer is unpacked at a time: the first loads NumPy, which two threads at once cannot."""
 
 
 def ask_beside(address: str, question: str, progress: Progress, replays: Path | None = None) -> Any:
@@ -86,7 +88,8 @@ def _listen(out: Connection, back: Connection, progress: Progress) -> Any:
             out.send("stop")
         if not back.poll(_LOOK_S):
             continue
-        kind, value = back.recv()
+        with _RECEIVING:
+            kind, value = back.recv()
         if kind == "progress":
             progress.advance(*value)
         elif kind == "error":
