@@ -68,7 +68,7 @@ def ask_beside(address: str, question: str, progress: Progress, replays: Path | 
         return _listen(out, back, progress)
     except (EOFError, BrokenPipeError, ConnectionResetError):
         raise SidepathError(
-            "The work on the record ended without an answer.", "Ask again; if it happens again, the log may tell why."
+            "The work on the record ended without an answer.", "Ask again; `sidepath --verbose audit` may tell why."
         ) from None
     finally:
         out.close()  # which ends the process, should it still be there
