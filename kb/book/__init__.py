@@ -27,6 +27,7 @@ if TYPE_CHECKING:
         calibrate_book,
         find_recurring_failures,
         measure_book_coverage,
+        processes_for,
         replay_book,
         tally_book,
     )
@@ -49,6 +50,7 @@ _HOMES = {
     "measure_book_coverage": "whole",
     "ask_beside": "beside",
     "replay_book": "whole",
+    "processes_for": "whole",
     "tally_book": "whole",
     "reckon_route": "routes",
     "route_lead": "routes",
@@ -115,6 +117,7 @@ __all__ = [
     "plan_from_words",
     "read_scheme",
     "reckon_route",
+    "processes_for",
     "replay_book",
     "restore_book",
     "route_lead",

@@ -34,8 +34,6 @@ _PATIENCE_S = 10.0
 """How long a process that was asked to stop may take to end by itself [s]."""
 _NICE = 10
 """How far the work stands back behind whoever types; on Windows it does not."""
-_WORTH_PROCESSES = 300
-"""Runs from which a replay is spread over all cores; starting a process costs as much as checking some 60 runs."""
 _RECEIVING = threading.Lock()
 """One answer is unpacked at a time: the first loads NumPy, which two threads at once cannot."""
 
@@ -163,7 +161,7 @@ def _asked(book: Book, question: str, progress: Progress, replays: Path | None) 
         return whole.calibrate_book(book, progress=progress)
     if question != "replay":
         raise ValueError(f"{question!r} is none of {QUESTIONS}")
-    processes = (os.cpu_count() or 1) if book.count() >= _WORTH_PROCESSES else 1
+    processes = whole.processes_for(book)
     if replays is None:
         return whole.replay_book(book, progress=progress, processes=processes)
     replays.mkdir(parents=True, exist_ok=True)

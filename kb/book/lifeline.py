@@ -1,4 +1,7 @@
-"""A process of a pool ends with the one that started it, so that a killed interface leaves nothing running."""
+"""Processes that work for another: they end with the one that started them, and keep to one core each.
+
+A killed interface leaves nothing running.
+"""
 
 from __future__ import annotations
 
@@ -18,3 +21,12 @@ def end_with_parent() -> None:
         os._exit(1)
 
     threading.Thread(target=wait, daemon=True).start()
+
+
+def keep_to_one_core() -> None:
+    """Keep linear algebra to one thread in this process; to be called before NumPy is loaded.
+
+    The matrices of a check are small: threads of their own wait for each other and for the other processes, which takes
+    a quarter of a replay (measured).
+    """
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")

@@ -22,7 +22,7 @@ AUDITS = ("recurring", "replay", "coverage", "calibration")
 
 
 def teach_notebooks() -> None:
-    """Let runs, readings, assessments, audits and routes show themselves in a notebook; loads nothing until one is shown."""
+    """Let what has a page show itself in a notebook too; loads nothing until one is shown."""
     show_with(_notebook_html)
 
 

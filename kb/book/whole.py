@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import datetime as dt
 import json
+import os
 from collections.abc import Generator, Sequence
 from contextlib import closing
 from dataclasses import replace
@@ -34,6 +35,8 @@ if TYPE_CHECKING:
 
 _PART = 100
 """Runs handed to a process at a time."""
+_WORTH_PROCESSES = 300
+"""Runs from which a replay is spread over all cores; starting a process costs as much as checking some 60 runs."""
 
 
 def find_recurring_failures(
@@ -116,6 +119,14 @@ def replay_book(
     return report_replay(found, dated.undated, stopped=len(found) < len(wanted))
 
 
+def processes_for(book: AskedBook) -> int:
+    """Return how many processes a replay of a book is worth: one for each core, one alone for few runs.
+
+    Only a program whose main module may be imported again should ask for several.
+    """
+    return (os.cpu_count() or 1) if book.count() >= _WORTH_PROCESSES else 1
+
+
 def tally_book(book: AskedBook, progress: Progress | None = None) -> Tally:
     """Count the failures of a book by quarter, mode and class, with the codes behind every count."""
     tame_rdkit()
@@ -176,11 +187,13 @@ _REPLAYER: list[Replayer] = []
 
 
 def _open_in_process(address: str) -> None:
-    from kb.audit.replay import Replayer
-    from kb.book import open_book
-    from kb.book.lifeline import end_with_parent
+    from kb.book.lifeline import end_with_parent, keep_to_one_core
 
     end_with_parent()
+    keep_to_one_core()
+    from kb.audit.replay import Replayer
+    from kb.book import open_book
+
     tame_rdkit()
     _REPLAYER.append(Replayer(_dated(open_book(address, read_only=True))))
 

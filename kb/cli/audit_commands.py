@@ -68,20 +68,23 @@ def replay(
     since: SinceFlag = None,
     html: HtmlFlag = None,
     md: MarkdownFlag = None,
-    processes: Annotated[int, typer.Option("--processes", min=1, max=64, help="How many work side by side.")] = 1,
+    processes: Annotated[
+        Optional[int],  # noqa: UP045
+        typer.Option("--processes", min=1, max=64, help="How many work side by side. Default: one for each core."),
+    ] = None,
     keep: Annotated[
         File,
         typer.Option("--keep", metavar="FILE", help="Keep results as they come; a stopped replay goes on from it."),
     ] = None,
 ) -> int:
     """Check each run against what stood in the book that morning: would the record have told us?"""
-    from kb.book import parse_date, replay_book
+    from kb.book import parse_date, processes_for, replay_book
     from kb.cli.render_audit import render_replay
 
     session = current_session()
     day = parse_date(since) if since else None
     with session.opened(read_only=True) as book, session.progress("Replaying") as progress:
-        report = replay_book(book, day, progress, processes, keep)
+        report = replay_book(book, day, progress, processes or processes_for(book), keep)
         write_pages(session, book, report, html, md)
     session.answer(report.as_dict(), render_replay(report, verbose=session.verbose))
     return exit_codes.INTERRUPTED if report.stopped else exit_codes.DONE
