@@ -3,6 +3,9 @@
 from __future__ import annotations
 
 import random
+import sqlite3
+import unicodedata
+from contextlib import closing
 from pathlib import Path
 
 import pytest
@@ -14,6 +17,7 @@ from kb.errors import QueryError
 from kb.record.outcome import Failure, Outcome
 from kb.store.checking import verify
 from kb.store.store import Store
+from kb.store.words_postgres import words_of
 from tests.engines import Books, Schemas
 from tests.factories import CHEMISTRY, a_book, a_run
 
@@ -158,3 +162,22 @@ def test_both_engines_find_the_same_runs(
 
 BOOKS_OF_NOTES: dict[Path, tuple[Store, Store]] = {}
 """The two books of the test above, filled once for all its examples."""
+
+
+YOUNGER = "ͿԨԪԬԮ"
+"""Capitals that came to Unicode after SQLite's tables were made; SQLite leaves them as they are."""
+
+
+def test_letters_are_folded_on_a_server_as_sqlite_folds_them() -> None:
+    letters = [chr(n) for n in (*range(0x21, 0x530), *range(0x1E00, 0x1F00), *range(0x3041, 0x3100))]
+    letters = [c for c in letters if unicodedata.category(c)[0] in "LN" and c not in YOUNGER]
+    letters += [chr(n) for n in range(0x300, 0x332)]
+    with closing(sqlite3.connect(":memory:")) as raw:
+        raw.execute("CREATE VIRTUAL TABLE t USING fts5(x, tokenize='unicode61 remove_diacritics 2')")
+        raw.execute("CREATE VIRTUAL TABLE v USING fts5vocab(t, 'instance')")
+        raw.executemany("INSERT INTO t (rowid, x) VALUES (?, ?)", [(n, f"q{c}z") for n, c in enumerate(letters)])
+        theirs: dict[int, list[str]] = {}
+        for term, number in raw.execute("SELECT term, doc FROM v ORDER BY doc, offset"):
+            theirs.setdefault(number, []).append(term)
+    assert len(letters) > 1500
+    assert {c: words_of(f"q{c}z") for c in letters} == {c: theirs[n] for n, c in enumerate(letters)}
