@@ -45,10 +45,14 @@ async def test_from_the_costliest_failure_to_a_rule_in_force(demo_path: Path, tm
         assert app.screen.shown_run is not None and app.screen.shown_run.code == cluster.runs[0]
         await pressed(pilot, "escape", "a")
         assert isinstance(app.screen, AdoptScreen)
+        told = cluster.title
         await pilot.press("enter")
         await _answered(app, pilot)
         assert view.cluster is not None and view.cluster.name == cluster.name
         assert view.cluster.covered_by and view.cluster.covered_by[0][1] == len(cluster.proposal.trial.hits)
+        app.screen.action_copy_as("Markdown")
+        await _answered(app, pilot)
+        assert "What keeps going wrong" in app.clipboard and told in app.clipboard
         await pilot.press("2")
         await _answered(app, pilot)
         assert f"{view.audit.failures} failures in" in on_screen(app)
