@@ -170,6 +170,9 @@ class _Job:
         else:
             report = self.sink.add_many(self._runs(), self.who, _Kept(self))
             self.stored, self.duplicate = report.stored, report.duplicate
+            if self.stopped or getattr(report, "stopped", False):
+                self.stopped = True  # rows that were read ahead and let go are read again next time
+                self.read = self.stored + self.duplicate + self.rejected
         self.progress.advance(self.read, self.read, self._words())
         return self._report()
 
@@ -252,7 +255,7 @@ class _Job:
 
 
 class _Kept:
-    """Hears from the book how many rows are in it; whether to stop is asked where the file is read."""
+    """Hears from the book how many rows are in it, and tells it when to stop."""
 
     def __init__(self, job: _Job) -> None:
         self._job = job
@@ -262,8 +265,8 @@ class _Kept:
         self._job.kept = done
 
     def cancelled(self) -> bool:
-        """Return False: the stream of runs ends when the user asks to stop."""
-        return False
+        """Return True once the user asked to stop; rows that were refused until then are counted."""
+        return self._job.stopped or self._job.progress.cancelled()
 
 
 class _SeenBefore:

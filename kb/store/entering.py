@@ -12,8 +12,8 @@ from __future__ import annotations
 
 import datetime as dt
 from collections import deque
-from collections.abc import Iterable, Iterator, Sequence
-from concurrent.futures import Future
+from collections.abc import Callable, Iterable, Iterator, Sequence
+from concurrent.futures import Future, wait
 from dataclasses import dataclass, replace
 from uuid import UUID
 
@@ -30,6 +30,9 @@ from kb.store.session import OpenBook, book_id_of, need
 
 AHEAD = 2
 """Batches whose chemistry is worked out while the one before them is written."""
+
+PATIENCE_S = 0.25
+"""Time between two looks whether to stop [s]."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -62,8 +65,17 @@ def enter(book: OpenBook, chunk: Sequence[Run], who: str) -> list[Run]:
     return _write(book, batch, prepared, Encodings(deriving=book.deriving), who)
 
 
-def enter_many(book: OpenBook, chunks: Iterable[Sequence[Run]], who: str) -> Iterator[tuple[int, int]]:
+def enter_many(
+    book: OpenBook, chunks: Iterable[Sequence[Run]], who: str, stopped: Callable[[], bool] = lambda: False
+) -> Iterator[tuple[int, int]]:
     """Write chunk by chunk, a transaction each; yield (runs given, runs stored) once each is on disk.
+
+    Args:
+        book: where to.
+        chunks: asked for as they are needed, AHEAD of what is written.
+        who: initials.
+        stopped: asked while other processes are waited for; what is not written yet is then let go, so that nobody who
+            pressed a key waits for work that the next import does just as well.
 
     Raises:
         InvalidRecord: as `enter`; the chunks before it stay.
@@ -93,6 +105,8 @@ def enter_many(book: OpenBook, chunks: Iterable[Sequence[Run]], who: str) -> Ite
                 refusal, chunk = error, None
             if waiting and (len(waiting) > AHEAD or chunk is None):
                 batch, pieces = waiting.popleft()
+                if not _are_done(pieces, stopped):
+                    return
                 yield batch.given, len(_write(book, batch, *_gathered(book, batch, pieces), who))
     if refusal is not None:
         raise refusal
@@ -112,10 +126,18 @@ def _sifted(book: OpenBook, chunk: Sequence[Run], who: str) -> Batch:
     return Batch(given=len(chunk), fresh=fresh, contents=contents, now=now)
 
 
+def _are_done(pieces: Sequence[Future[Piece]], stopped: Callable[[], bool]) -> bool:
+    """Wait for pieces; return False where somebody asked to stop before all were done."""
+    while wait(pieces, timeout=PATIENCE_S).not_done:
+        if stopped():
+            return False
+    return True
+
+
 def _gathered(
     book: OpenBook, batch: Batch, pieces: Iterable[Future[Piece]]
 ) -> tuple[dict[UUID, Prepared], Encodings]:
-    """Wait for the pieces of a batch; return what they hold together."""
+    """Return what the pieces of a batch hold together."""
     found = [piece.result() for piece in pieces]
     prepared = dict(zip(batch.fresh, (p for piece in found for p in piece.prepared), strict=True))
     encodings = Encodings(deriving=book.deriving)

@@ -144,7 +144,7 @@ class Store(Answers):
         """
         progress = progress or Silent()
         stored = duplicate = 0
-        for given, kept in enter_many(self.book, _chunks(many, progress), who):
+        for given, kept in enter_many(self.book, _chunks(many, progress), who, progress.cancelled):
             stored += kept
             duplicate += given - kept
             progress.advance(stored + duplicate, None, "runs stored")

@@ -6,6 +6,7 @@ import dataclasses
 import os
 import signal
 import subprocess
+import sys
 import time
 from collections.abc import Iterator
 from pathlib import Path
@@ -169,3 +170,36 @@ def test_the_clock_gives_one_moment_to_a_batch(tmp_path: Path) -> None:
         store.add_many(many(300), "MK")
         moments = {run.recorded_at for run in store.iter_runs()}
     assert len(moments) == 3
+
+
+def test_who_stops_does_not_wait_for_what_is_under_way(tmp_path: Path) -> None:
+    class StopAtFirst:
+        done = 0
+
+        def advance(self, done: int, total: int | None, note: str = "") -> None:
+            self.done = done
+
+        def cancelled(self) -> bool:
+            return self.done > 0 and self.asked()
+
+        def asked(self) -> bool:
+            return len(read) > 2 * BULK  # the second batch is being derived by then
+
+    read: list[int] = []
+
+    def runs() -> Iterator[Run]:
+        for n, run in enumerate(many(1_000)):
+            read.append(n)
+            yield run
+
+    with a_book(tmp_path, **{**APART, "derive": slow_derive}) as store:
+        report = store.add_many(runs(), "MK", StopAtFirst())
+        assert report.stopped and report.stored == store.count() == BULK
+        assert all(check.ok for check in checking.verify(store))
+
+
+def slow_derive(run: Run) -> Any:
+    """Derive in a process of its own as if that took long; here, at once."""
+    if sys.argv[0] == "-c":  # as such a process is started
+        time.sleep(0.2)
+    return CHEMISTRY["derive"](run)
