@@ -118,20 +118,27 @@ def test_loading_grows_with_size_and_stays_within_memory(
         statement = "SELECT structure_id, mol_binary, augmented, morgan FROM structure ORDER BY structure_id"
         sum(1 for _ in connection.execute(statement))  # from the disk
         read_s, read_cpu_s = _both(lambda: sum(1 for _ in connection.execute(statement)))
-        before = _resident_bytes()
-        index = StructureIndex(reserve=size)
+
+        loaded: list[StructureIndex] = []
 
         def load() -> None:
+            loaded.append(StructureIndex(reserve=size))
             rows = connection.execute(statement)
             while chunk := rows.fetchmany(256):
-                index.append(*zip(*chunk, strict=True))
+                loaded[0].append(*zip(*chunk, strict=True))
 
+        # twice: memory that a virtual machine hands out for the first time costs more than all the rest
+        first_s, first_cpu_s = _both(load)
+        loaded.clear()
+        before = _resident_bytes()
         load_s, load_cpu_s = _both(load)
+    index = loaded[0]
     beyond = (_resident_bytes() - before - index.molecules.binary_bytes) / len(index)
     with capsys.disabled():
         print(
-            f"\n{len(index)} structures: blobs read in {read_s:.2f} s, loaded in {load_s:.2f} s (ratio "
-            f"{load_s / read_s:.2f}, by the processor {load_cpu_s / read_cpu_s:.2f}); {beyond:.0f} bytes each beyond the "
+            f"\n{len(index)} structures: blobs read in {read_s:.2f} s, loaded in {first_s:.2f}, then {load_s:.2f} s "
+            f"(ratios {first_s / read_s:.2f}, {load_s / read_s:.2f}; by the processor {first_cpu_s / read_cpu_s:.2f}, "
+            f"{load_cpu_s / read_cpu_s:.2f}); {beyond:.0f} bytes each beyond the "
             f"molecules' {index.molecules.binary_bytes / len(index):.0f}"
         )
     if size >= 100_000:
@@ -148,8 +155,8 @@ def test_a_book_loads_its_structures(book: Store, capsys: pytest.CaptureFixture[
     load_s, load_cpu_s = _both(lambda: finder.live.index())
     with capsys.disabled():
         print(
-            f"\nbook: blobs read in {read_s:.2f} s, index loaded in {load_s:.2f} s (ratio {load_s / read_s:.2f}, by the "
-            f"processor {load_cpu_s / read_cpu_s:.2f})"
+            f"\nbook: blobs read in {read_s:.2f} s, index loaded in {load_s:.2f} s "
+            f"(ratio {load_s / read_s:.2f}, by the processor {load_cpu_s / read_cpu_s:.2f})"
         )
 
 
