@@ -93,6 +93,7 @@ def teach_most(
     for place in range(len(steps)):
         if progress.cancelled():
             raise Cancelled("The audit was stopped.", "Nothing was changed.")
+        progress.advance(place, len(steps), "steps weighed")
         step = steps.rows(np.array([place]))
         weight = weights_of(compare(step, table)[1]) * told if len(table) else np.zeros(0)
         alike[place] = weights_of(compare(step, steps)[1])
