@@ -16,7 +16,7 @@ from textual import on
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Vertical
-from textual.widgets import Input, OptionList, Static
+from textual.widgets import Footer, Input, OptionList, Static
 from textual.widgets.option_list import Option
 
 from kb.errors import Cancelled, SidepathError
@@ -40,7 +40,7 @@ A route file is TOML or JSON; `sidepath route --help` shows one. Type its path a
 opened lately. Escape stops, or goes back.
 """
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("escape", "back", "Back", id="route-files.back", tooltip="Stop looking up, or go back"),
+        Binding("escape", "back", "Back", key_display="Esc", id="route-files.back", tooltip="Stop, or go back"),
     ]
 
     def __init__(self, last: str = "", at_once: str = "") -> None:
@@ -64,6 +64,7 @@ opened lately. Escape stops, or goes back.
             yield Static("", id="place-trouble", classes="trouble", markup=False)
             yield OptionList(compact=True, markup=False, id="route-recent")
             yield Static("Enter opens, Tab goes to the list, Escape goes back.", classes="quiet", markup=False)
+        yield Footer(show_command_palette=False)
 
     def book_arrived(self, book: BookPort) -> None:
         """Fetch the recent ones, and begin at once where a file is named already."""

@@ -15,7 +15,7 @@ from textual import on
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Vertical
-from textual.widgets import Static
+from textual.widgets import Footer, Static
 
 from kb.errors import RecordNotFound
 from kb.record.run import Run
@@ -52,9 +52,12 @@ class RunsBehindScreen(AskingScreen[None]):
     """The runs behind one yield."""
 
     CSS_PATH = HERE / "route.tcss"
-    HELP = "The runs behind one yield, heaviest first. Enter opens one; Escape goes back."
+    HELP = """
+The runs behind one yield, those that carry most of it first. Where a yield was typed no runs stand behind it, and the
+ones closest to the step's plan are listed instead. Enter opens a run; Escape goes back to the route.
+"""
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("escape", "back", "Back", id="route-runs.back", tooltip="Back to the route"),
+        Binding("escape", "back", "Back", key_display="Esc", id="route-runs.back", tooltip="Back to the route"),
     ]
 
     def __init__(self, step: Step, codes: tuple[str, ...], closest: bool) -> None:
@@ -79,6 +82,7 @@ class RunsBehindScreen(AskingScreen[None]):
             yield Static(Text(words), classes="quiet")
             yield RunTable(id="route-runs-table")
             yield Static("", id="place-trouble", classes="trouble", markup=False)
+        yield Footer(show_command_palette=False)
 
     def book_arrived(self, book: BookPort) -> None:
         """Fetch the runs."""

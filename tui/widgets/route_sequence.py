@@ -11,7 +11,7 @@ from typing import Any, ClassVar
 from rich.text import Text
 from textual import on
 from textual.binding import Binding, BindingType
-from textual.events import Resize
+from textual.events import Click, Resize
 from textual.message import Message
 from textual.widgets import OptionList
 from textual.widgets.option_list import Option
@@ -119,6 +119,13 @@ class RouteSequence(OptionList):
         super().notify_style_update()
         if getattr(self, "_rows", ()) and self.is_mounted:
             self._fill()
+
+    async def _on_click(self, event: Click) -> None:
+        """Choose a step by one click; a click on the chosen one opens the runs behind it."""
+        clicked = event.style.meta.get("option")
+        if clicked is not None and clicked != self.highlighted:
+            event.prevent_default()
+            self.highlighted = clicked
 
     @on(OptionList.OptionHighlighted)
     def _looked(self, event: OptionList.OptionHighlighted) -> None:
