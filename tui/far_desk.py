@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING, Any
 
 from kb.chem.facts import Reading
 from kb.chem.layout import SchemeDrawing
+from kb.progress import Silent
 from kb.record.assessment import Assessment, Estimate
 from kb.record.component import Component, SolventPart
 from kb.record.plan import Plan
@@ -22,6 +23,7 @@ from kb.vocabulary import Role
 from tui.backroom import BackRoom, NoBackRoom
 from tui.desk import Desk, load_chemistry
 from tui.drawings import draw_elsewhere, draw_here
+from tui.jobs import working_for
 from tui.ports import FindPage, FindQuery, Imagined, Offer, RunPage, RunQuery
 
 if TYPE_CHECKING:
@@ -82,7 +84,8 @@ class FarDesk(Desk):
     def _drawn(self, text: str) -> SchemeDrawing:
         if self._room is not None:
             try:
-                drawing: SchemeDrawing = self._room.ask(READING, "scheme_drawing", text)
+                with working_for(Silent()):  # what a stopped search found is drawn all the same
+                    drawing: SchemeDrawing = self._room.ask(READING, "scheme_drawing", text)
                 return drawing
             except NoBackRoom:
                 self._work_here()

@@ -108,6 +108,15 @@ def test_a_job_that_was_stopped_before_it_began_is_not_begun(desk: FarDesk) -> N
         desk.check(Plan(scheme=MESYLATE))
 
 
+def test_what_a_stopped_job_found_is_drawn_all_the_same(place: str) -> None:
+    desk = FarDesk(place)
+    progress = ThreadProgress(lambda *_: None)
+    progress.cancel()
+    with working_for(progress):
+        assert scheme_drawing("CCCCCCBr").left[0].drawing is not None
+    desk.close()
+
+
 class StoppedLater:
     """Progress that is stopped as soon as the question is on its way; notes what it was told."""
 
@@ -235,7 +244,7 @@ def test_a_room_that_always_dies_is_given_up(place: str, monkeypatch: pytest.Mon
 def test_the_screens_process_loads_no_chemistry(place: str, tmp_path: Path) -> None:
     script = (
         "import sys\n"
-        "from tui.desk import DeskOpener\nfrom tui.plan_state import read_plan\n"
+        "from tui.opening import DeskOpener\nfrom tui.plan_state import read_plan\n"
         "from tui.drawings import scheme_drawing\n"
         "from tui.ports import FindQuery, RunQuery\n"
         f"desk = DeskOpener().open({place!r})\n"

@@ -6,6 +6,7 @@ import inspect
 import subprocess
 import sys
 import threading
+from collections.abc import Iterator
 from dataclasses import replace
 from pathlib import Path
 
@@ -14,20 +15,22 @@ import pytest
 from kb.errors import NameUnknown, QueryError, SidepathError, StoreMissing
 from kb.vocabulary import Role, Verdict
 from tests.tui.fake_book import FakeBook, a_run
-from tui.desk import Desk, DeskOpener
+from tui.desk import Desk
+from tui.opening import DeskOpener
 from tui.ports import BookPort, FindQuery, RunQuery
 from tui.serving import serve_on_loopback, serving_command
 
 
 @pytest.fixture
-def desk(tmp_path: Path) -> Desk:
+def desk(tmp_path: Path) -> Iterator[Desk]:
     place = tmp_path / "group.sidepath"
     made = DeskOpener().create(str(place))
     for number in range(1, 8):
         verdict = Verdict.FAILED if number == 3 else Verdict.WORKED
         made.add(replace(a_run(number), code=None, verdict=verdict, note=f"emulsion {number}"), "JM")
     assert isinstance(made, Desk)
-    return made
+    yield made
+    made.close()
 
 
 @pytest.mark.parametrize("keeper", [Desk, FakeBook])
