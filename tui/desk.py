@@ -1,4 +1,4 @@
-"""The desk: the real record book behind `tui.ports`, the only file that meets `kb.book`.
+"""The desk: the real record book behind `tui.ports`, which alone, with `opening`, meets `kb.book`.
 
 One Book serves one thread at a time, so the desk keeps one per lane (checking, finding, looking, writing) with a
 lock each: a draft is saved while a search runs, and a check never waits for a page of runs. All of
@@ -12,13 +12,11 @@ import threading
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import AbstractContextManager, contextmanager
 from dataclasses import replace
-from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from kb.chem.facts import Reading
-from kb.errors import RecordNotFound, StoreRefused
+from kb.errors import RecordNotFound
 from kb.plain import plain
-from kb.progress import Progress
 from kb.record.assessment import Assessment, Estimate
 from kb.record.component import Component, SolventPart
 from kb.record.failure_modes import failure_modes
@@ -28,9 +26,7 @@ from kb.vocabulary import Role
 from tui.desk_route import RouteRecord
 from tui.desk_whole import WholeRecord
 from tui.jobs import current_progress
-from tui.plan_state import PLAN_DRAFT, state_of_plan
 from tui.ports import (
-    BookPort,
     DraftLine,
     FindHit,
     FindPage,
@@ -317,45 +313,6 @@ def load_chemistry() -> None:
     scheme_drawing("C")
     read_scheme("CBr")
     lookup_material("DMF", "solvent")
-
-
-class DeskOpener:
-    """Opens real books; keeps to `tui.application.Opener`."""
-
-    def open(self, place: str | None) -> BookPort:
-        """Open a book; one that cannot be written is opened for reading."""
-        from tui.far_desk import FarDesk
-
-        try:
-            return FarDesk(place)
-        except StoreRefused:
-            return FarDesk(place, read_only=True)
-
-    def create(self, place: str | None) -> BookPort:
-        """Make a new book and open it."""
-        from kb.book import create_book
-        from tui.far_desk import FarDesk
-
-        default = self.default_place()
-        return FarDesk(create_book(None if place is None or place == default else str(Path(place).expanduser())))
-
-    def demo(self, progress: Progress) -> BookPort:
-        """Build the demo book where it is not there yet, open it, and lay its planned step in the form."""
-        from kb.book import build_demo, demo_plan
-        from tui.far_desk import FarDesk
-
-        load_chemistry()
-        place, _ = build_demo(None, progress)
-        desk = FarDesk(str(place))
-        if desk.load_draft(PLAN_DRAFT) is None:
-            desk.save_draft(PLAN_DRAFT, state_of_plan(demo_plan()))
-        return desk
-
-    def default_place(self) -> str:
-        """Return where the default book is or would be."""
-        from kb.paths import default_book
-
-        return str(default_book())
 
 
 def _change_words(action: str, changed: Sequence[Any]) -> str:

@@ -307,7 +307,7 @@ class BookPort(Protocol):
 
 
 class Opener(Protocol):
-    """How books are opened; the real one is `tui.desk.DeskOpener`."""
+    """How books are opened; the real one is `tui.opening.DeskOpener`."""
 
     def open(self, place: str | None) -> BookPort:
         """Open the book at a place (None = the default one)."""

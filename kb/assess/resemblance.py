@@ -1,10 +1,11 @@
 """Resemblance: where a plan looks like a recorded failure, and how often that kind of run failed.
 
 It owns two likenesses. Failures *at the centre* (an alkene instead of the ether, a shift, nothing at all) resemble a
-plan with the same aim and the same kind of centre, leaving group and nucleophile. Failures *elsewhere* (a group lost or attacked)
-resemble a plan that holds the failure's motif (`resemblance_motifs.py`). Both only under conditions at least as
-forcing, or, for runs in which nothing happened, no more forcing. Failures of one kind are told once, with the runs
-that came through beside them. A run whose chemist said that it failed but named no mode counts as a mode of its own.
+plan with the same aim and the same kind of centre, leaving group and nucleophile. Failures *elsewhere* (a group lost
+or attacked) resemble a plan that holds the failure's motif (`resemblance_motifs.py`). Both only under conditions at
+least as forcing, or, for runs in which nothing happened, no more forcing. Failures of one kind are told once, with
+the runs that came through beside them. A run whose chemist said that it failed but named no mode counts as a mode of
+its own.
 """
 
 from __future__ import annotations

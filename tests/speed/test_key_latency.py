@@ -50,7 +50,7 @@ Bare().run()
 WHOLE = """
 import sys, time
 sys.setswitchinterval(0.002)
-from tui import application, desk, far_desk
+from tui import application, far_desk, opening
 log = open(sys.argv[2], "a", buffering=1)
 def timed(cls, name):
     plain = getattr(cls, name)
@@ -65,7 +65,7 @@ def timed(cls, name):
             log.write(f"end {time.monotonic()}\\n")
     setattr(cls, name, call)
 timed(far_desk.FarDesk, "check")
-application.SidepathApp(desk.DeskOpener(), place=sys.argv[1], who="JM").run()
+application.SidepathApp(opening.DeskOpener(), place=sys.argv[1], who="JM").run()
 """
 
 

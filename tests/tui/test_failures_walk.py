@@ -11,7 +11,7 @@ from kb.book import build_demo, open_book
 from kb.progress import Silent
 from tests.tui.driving import on_screen, pressed, settled
 from tui.application import SidepathApp
-from tui.desk import DeskOpener
+from tui.opening import DeskOpener
 from tui.screens.failures_adopt import AdoptScreen
 from tui.screens.failures_runs import RunsBehindScreen
 from tui.widgets.recurring_view import RecurringView

@@ -62,7 +62,10 @@ def test_uncertain_findings_say_so() -> None:
     [
         (None, ""),
         (Evidence(lost=0, survived=0), "No run of this book"),
-        (Evidence(lost=5, survived=2, chance=Interval(mean=0.7, low=0.5, high=0.9)), "70\N{NO-BREAK SPACE}% (50 to 90)"),
+        (
+            Evidence(lost=5, survived=2, chance=Interval(mean=0.7, low=0.5, high=0.9)),
+            "70\N{NO-BREAK SPACE}% (50 to 90)",
+        ),
     ],
 )
 def test_evidence_is_told_in_a_line(evidence: Evidence | None, words: str) -> None:

@@ -13,7 +13,8 @@ from kb.errors import InvalidRecord, RecordNotFound
 from kb.progress import Silent
 from tests.tui.driving import on_screen, pressed, settled, typed
 from tui.application import SidepathApp
-from tui.desk import Desk, DeskOpener
+from tui.desk import Desk
+from tui.opening import DeskOpener
 from tui.route_state import edit_name
 from tui.screens.planning import PlanningScreen
 from tui.screens.route import RoutePlace

@@ -52,7 +52,7 @@ async def test_the_same_on_a_real_book(tmp_path: Path) -> None:
 
     In acid a tert-butyl ether is lost.
     """
-    from tui.desk import DeskOpener
+    from tui.opening import DeskOpener
 
     opener = DeskOpener()
     opener.create(str(tmp_path / "group.sidepath")).close()
