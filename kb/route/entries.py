@@ -10,8 +10,8 @@ from dataclasses import dataclass
 from typing import Any
 
 from kb.record.finding import Interval
-from kb.showing import ShowsItself
 from kb.route.sequence import Route, Step
+from kb.showing import ShowsItself
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
