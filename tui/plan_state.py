@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from kb.errors import SidepathError
+from kb.record.assessment import Assessment
 from kb.record.plan import Plan
 from kb.record.run import Run
 from tui.condition_text import ConditionTexts, read_conditions, write_conditions
@@ -31,6 +32,14 @@ def read_plan(state: Mapping[str, str], book: BookPort) -> PlanRead:
     conditions, errors = read_conditions(ConditionTexts.from_dict(dict(state)), book)
     project = state.get("project", "").strip() or None
     return PlanRead(plan=Plan(scheme=state["scheme"].strip(), conditions=conditions, project=project), errors=errors)
+
+
+def check_state(state: Mapping[str, str], book: BookPort) -> tuple[PlanRead, Assessment | None]:
+    """Read a form and check its plan; None where the scheme cannot be read. Slow: call it from a worker."""
+    read = read_plan({**state, "scheme": book.scheme_text(state["scheme"].strip())}, book)
+    if not book.read_scheme(read.plan.scheme).ok:
+        return read, None
+    return read, book.check(read.plan)
 
 
 def state_of_plan(plan: Plan) -> dict[str, str]:

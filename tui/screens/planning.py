@@ -27,7 +27,7 @@ from tui.copy_texts import assessment_texts
 from tui.drawings import scheme_drawing
 from tui.jobs import EditLog
 from tui.marks import mark_scheme
-from tui.plan_state import PLAN_DRAFT, PlanRead, read_plan, what_if_temperatures
+from tui.plan_state import PLAN_DRAFT, PlanRead, check_state, what_if_temperatures
 from tui.ports import BookPort
 from tui.present import advice_line, arrow_words, reading_words, safe
 from tui.screens.base import PlaceScreen
@@ -147,7 +147,7 @@ share the shelf. An estimate is no permission: local safety rules and qualified 
             self._show_nothing("Type a scheme and the conditions.")
             return
         self.ask("read", partial(_read_scheme, state["scheme"].strip(), book), self._show_reading, self._show_bad)
-        self.ask("check", partial(_check, state, book), self._show_check, self._show_bad)
+        self.ask("check", partial(check_state, state, book), self._show_check, self._show_bad)
 
     def _show_reading(self, found: tuple[Reading, SchemeDrawing]) -> None:
         self._reading, self._drawing = found
@@ -344,12 +344,3 @@ def _read_scheme(text: str, book: BookPort) -> tuple[Reading, SchemeDrawing]:
     """In the thread: read a scheme and lay it out."""
     scheme = book.scheme_text(text)
     return book.read_scheme(scheme), scheme_drawing(scheme)
-
-
-def _check(state: dict[str, str], book: BookPort) -> tuple[PlanRead, Assessment | None]:
-    """In the thread: read the form and check the plan; None where the scheme cannot be read."""
-    state = {**state, "scheme": book.scheme_text(state["scheme"].strip())}
-    read = read_plan(state, book)
-    if not book.read_scheme(read.plan.scheme).ok:
-        return read, None
-    return read, book.check(read.plan)
