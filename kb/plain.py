@@ -82,6 +82,16 @@ def shortened(text: str, width: int) -> str:
     return text if len(text) <= width else text[: max(width - 1, 0)] + "…"
 
 
+def quoted(value: object, most: int = 60) -> str:
+    """Return a value as Python writes it in ASCII, cut to `most` characters: for naming what somebody gave.
+
+    >>> quoted("caf\u00e9")
+    "'caf\\\\xe9'"
+    """
+    text = ascii(value)
+    return text if len(text) <= most else text[: most - 3] + "..."
+
+
 def counted(number: int, thing: str, things: str = "") -> str:
     """Return "1 run", "2 runs", "1,200 runs"."""
     return f"{number:,} {thing if number == 1 else things or thing + 's'}"

@@ -18,6 +18,7 @@ import re
 from dataclasses import dataclass
 
 from kb.errors import InvalidRecord, QuantityError
+from kb.plain import quoted
 from kb.quantity import parse_number, parse_percent
 from kb.vocabulary import Cause, Fate, Method, Verdict
 
@@ -89,7 +90,7 @@ def read_split(text: str, *, per: float = 100.0) -> list[tuple[Fate, float | Non
         )
         if not found:
             raise InvalidRecord(
-                f"{shown(item)} is no share of a split.", "Write it like: substitution 88; elimination 10.", item
+                f"{quoted(item)} is no share of a split.", "Write it like: substitution 88; elimination 10.", item
             )
         word, number = (found[1], found[2]) if not found[1][0].isdigit() else (found[2], found[1])
         fate = read_fate(word)
@@ -104,7 +105,7 @@ def read_share(text: str, *, per: float = 100.0) -> float:
     if per == 1:
         value = parse_number(text.strip(), "share", "Write a fraction between 0 and 1.")
         if not 0 <= value <= 1:
-            raise QuantityError(f"The share {shown(text)} is not between 0 and 1.", "Write a fraction.", text)
+            raise QuantityError(f"The share {quoted(text)} is not between 0 and 1.", "Write a fraction.", text)
         return value
     return round(parse_percent(text, what="share") / 100, 12)
 
@@ -124,7 +125,7 @@ def read_products(text: str, *, per: float = 100.0) -> list[ProductText]:
             continue
         match = re.fullmatch(r"\s*(\S+?)(?:(?:\s*=\s*|\s+)(-?\d[\d.,]*\s*%?))?\s*(?:\(([^()]+)\))?\s*", item)
         if not match:
-            raise InvalidRecord(f"{shown(item)} is no product.", "Write it like: C=CCCC 12 (elimination).", item)
+            raise InvalidRecord(f"{quoted(item)} is no product.", "Write it like: C=CCCC 12 (elimination).", item)
         found.append(
             ProductText(
                 smiles=match[1],
@@ -150,7 +151,7 @@ def read_fate(text: str) -> Fate:
 
         near = process.extractOne(word, list(map(str, Fate)), score_cutoff=60)
         hint = f"Did you mean {near[0]}?" if near else f"Use one of {', '.join(Fate)}."
-        raise InvalidRecord(f"{shown(text)} is no fate.", hint, text)
+        raise InvalidRecord(f"{quoted(text)} is no fate.", hint, text)
     return fate
 
 
@@ -162,7 +163,7 @@ def read_verdict(text: str) -> Verdict:
     """
     found = _VERDICTS.get(text.strip().casefold())
     if found is None:
-        raise InvalidRecord(f"{shown(text)} is no verdict.", f"Use one of {', '.join(Verdict)}.", text)
+        raise InvalidRecord(f"{quoted(text)} is no verdict.", f"Use one of {', '.join(Verdict)}.", text)
     return found
 
 
@@ -174,7 +175,7 @@ def read_method(text: str) -> Method:
     """
     found = _METHODS.get(" ".join(text.strip().casefold().split()))
     if found is None:
-        raise InvalidRecord(f"{shown(text)} is no method.", f"Use one of {', '.join(Method)}.", text)
+        raise InvalidRecord(f"{quoted(text)} is no method.", f"Use one of {', '.join(Method)}.", text)
     return found
 
 
@@ -187,7 +188,7 @@ def read_cause(text: str) -> Cause:
     try:
         return Cause(text.strip().casefold())
     except ValueError as error:
-        raise InvalidRecord(f"{shown(text)} is no cause.", f"Use one of {', '.join(Cause)}.", text) from error
+        raise InvalidRecord(f"{quoted(text)} is no cause.", f"Use one of {', '.join(Cause)}.", text) from error
 
 
 def read_date(text: str, order: str | None = None) -> dt.date:
@@ -210,7 +211,7 @@ def read_date(text: str, order: str | None = None) -> dt.date:
         if len(found[1]) == 4:
             return dt.date(a, b, c)
         if len(found[4]) != 4:
-            raise QuantityError(f"The date {shown(text)} has a year of two digits.", hint, text)
+            raise QuantityError(f"The date {quoted(text)} has a year of two digits.", hint, text)
         if sep == "." or order == "dmy" or (a > 12 and order is None):
             return dt.date(c, b, a)
         if order == "mdy" or (b > 12 and order is None):
@@ -220,9 +221,9 @@ def read_date(text: str, order: str | None = None) -> dt.date:
     except ValueError as error:
         if isinstance(error, QuantityError):
             raise
-        raise QuantityError(f"{shown(text)} is no date.", hint, text) from error
+        raise QuantityError(f"{quoted(text)} is no date.", hint, text) from error
     raise QuantityError(
-        f"The date {shown(text)} can be read in two ways.",
+        f"The date {quoted(text)} can be read in two ways.",
         "Write it like 2024-05-17, or say which comes first, the day or the month.",
         text,
     )
@@ -235,9 +236,3 @@ def _written_date(plain: str) -> dt.date:
         except ValueError:
             continue
     raise ValueError(plain)
-
-
-def shown(text: object) -> str:
-    """Return the text fit for a message: plain characters, not long."""
-    plain = ascii(str(text))
-    return plain if len(plain) <= 60 else plain[:57] + "..."

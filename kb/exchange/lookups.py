@@ -13,8 +13,9 @@ from functools import lru_cache
 from typing import Any
 
 from kb.errors import ChemistryError, InvalidRecord, NameUnknown, QuantityError
-from kb.exchange.cells import ProductText, shown
+from kb.exchange.cells import ProductText
 from kb.exchange.material_cells import read_materials, read_solvents
+from kb.plain import quoted
 from kb.record.component import Component, SolventPart
 from kb.record.outcome import ProductSeen
 from kb.vocabulary import Fate, Method, Role
@@ -58,7 +59,7 @@ def checked_structure(smiles: str) -> str:
 
     canonical = canonical_smiles(smiles)
     if canonical is None:
-        raise InvalidRecord(f"{shown(smiles)} is no structure.", "Give a SMILES.", smiles)
+        raise InvalidRecord(f"{quoted(smiles)} is no structure.", "Give a SMILES.", smiles)
     return canonical
 
 

@@ -13,7 +13,8 @@ import re
 from dataclasses import dataclass, field
 
 from kb.errors import InvalidRecord, QuantityError
-from kb.exchange.cells import MAX_ITEMS, shown
+from kb.exchange.cells import MAX_ITEMS
+from kb.plain import quoted
 from kb.quantity import parse_amount, parse_concentration, parse_equiv, parse_loading_mol_pct, parse_number
 
 _NUMBER = r"\d+(?:[.,]\d+)?"
@@ -119,7 +120,7 @@ def _material(item: str) -> MaterialText:
         rest = rest[leading.end() :]
     name, smiles = _named(rest)
     if not name or re.fullmatch(_AMOUNT, name, re.I):
-        raise InvalidRecord(f"{shown(item)} is an amount of nothing.", "Put the name before the amount.", item)
+        raise InvalidRecord(f"{quoted(item)} is an amount of nothing.", "Put the name before the amount.", item)
     return MaterialText(name=name, smiles=smiles, amounts=amounts)
 
 
@@ -148,12 +149,12 @@ def _amount(text: str) -> tuple[str, float]:
         value = getattr(amount, name)
         if value is not None:
             return name, value
-    raise QuantityError(f"{shown(text)} is no amount.", "Write it like 5 mmol, 250 mg or 3 mL.", text)
+    raise QuantityError(f"{quoted(text)} is no amount.", "Write it like 5 mmol, 250 mg or 3 mL.", text)
 
 
 def _put(amounts: dict[str, float], name: str, value: float, item: str) -> None:
     if name in amounts:
-        raise QuantityError(f"{shown(item)} gives the same kind of amount twice.", "Give it once.", item)
+        raise QuantityError(f"{quoted(item)} gives the same kind of amount twice.", "Give it once.", item)
     amounts[name] = value
 
 
@@ -175,7 +176,7 @@ def _mixture(text: str) -> list[tuple[str, str | None, float | None]]:
     names = [n.strip() for n in re.split(r"\s*[:/]\s*|\s+[-–]\s+|\s+and\s+", names_text) if n.strip()]
     if ratio and len(numbers) != len(names):
         raise InvalidRecord(
-            f"{shown(text)} names {len(names)} solvents and {len(numbers)} parts.",
+            f"{quoted(text)} names {len(names)} solvents and {len(numbers)} parts.",
             "Write it like EtOH:water 3:1.",
             text,
         )

@@ -13,6 +13,7 @@ from enum import StrEnum
 from typing import Any, TypeVar
 
 from kb.errors import InvalidRecord
+from kb.plain import quoted
 
 UNKEEPABLE = re.compile("[\x00\ud800-\udfff]")
 """Characters that no UTF-8 file (surrogates) or no PostgreSQL text (NUL) can hold."""
@@ -29,7 +30,7 @@ class JsonFields:
 
     def __init__(self, data: object, place: str) -> None:
         if not isinstance(data, Mapping):
-            raise InvalidRecord(f"{place} is {shown(data)}, not an object.", "Write it as {...}.", data)
+            raise InvalidRecord(f"{place} is {quoted(data)}, not an object.", "Write it as {...}.", data)
         self.data = data
         self.place = place
         self.asked: set[str] = set()
@@ -39,7 +40,7 @@ class JsonFields:
         return self.data.get(key)
 
     def refuse(self, key: str, value: object, wanted: str) -> InvalidRecord:
-        return InvalidRecord(f"{self.place}.{key} is {shown(value)}.", f"Give {wanted}.", value)
+        return InvalidRecord(f"{self.place}.{key} is {quoted(value)}.", f"Give {wanted}.", value)
 
     def text(self, key: str) -> str | None:
         value = self._take(key)
@@ -142,12 +143,7 @@ class JsonFields:
         for key in self.data:
             if key not in self.asked:
                 raise InvalidRecord(
-                    f"{self.place} has a key {shown(key)} that this program does not know.",
+                    f"{self.place} has a key {quoted(key)} that this program does not know.",
                     f"Known keys: {', '.join(sorted(self.asked))}.",
                     key,
                 )
-
-
-def shown(value: object) -> str:
-    text = ascii(value)
-    return text if len(text) <= 60 else text[:57] + "..."
