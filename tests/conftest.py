@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import gc
+import os
 from pathlib import Path
 
 import pytest
@@ -19,12 +21,19 @@ settings.register_profile(
 )
 settings.load_profile("suite")
 
+# A terminal test makes and drops whole screens; looking through all that RDKit and Textual have loaded each time took
+# a third of the suite's time.
+gc.set_threshold(100_000, 20, 50)
+
+
+def pytest_xdist_auto_num_workers() -> int:
+    """Return one worker more than there are cores: terminal tests wait for the screen a third of their time."""
+    return (os.cpu_count() or 1) + 1
+
 
 @pytest.fixture(autouse=True)
 def own_home(tmp_path_factory: pytest.TempPathFactory, monkeypatch: pytest.MonkeyPatch) -> Path:
     """Give the test an empty home and drop every SIDEPATH_ variable."""
-    import os
-
     home = tmp_path_factory.mktemp("home")
     for name in [name for name in os.environ if name.startswith("SIDEPATH_")]:
         monkeypatch.delenv(name)

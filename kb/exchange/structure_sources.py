@@ -131,7 +131,7 @@ def _holds_something(path: Path, kind: str) -> bool:
     if kind == "smi":
         first = islice(_SmilesList(path), LOOKED_AT)
         return any("<" not in r.block and (r.block.count(">") >= 2 or is_structure(r.block)) for r in first)
-    marks = ("M  END", "V2000", "V3000") if kind == "sdf" else ("$MOL", "V2000", "V3000", "M  V30")
+    marks = ("M  END", "V2000", "V3000") if kind == "sdf" else ("$RXN", "$MOL", "V2000", "V3000", "M  V30")
     return any(
         any(mark in (r.block or r.raw) for mark in marks) or (r.raw.count("\n") > 3 and bool(r.trouble))
         for r in islice(CtFile(path, kind), LOOKED_AT)

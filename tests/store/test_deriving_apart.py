@@ -201,5 +201,5 @@ def test_who_stops_does_not_wait_for_what_is_under_way(tmp_path: Path) -> None:
 def slow_derive(run: Run) -> Any:
     """Derive in a process of its own as if that took long; here, at once."""
     if sys.argv[0] == "-c":  # as such a process is started
-        time.sleep(0.2)
+        time.sleep(0.02)
     return CHEMISTRY["derive"](run)

@@ -31,7 +31,9 @@ class RunView(VerticalScroll):
         yield Static("", classes="run-words")
         yield Static("", classes="run-history quiet")
 
-    def show(self, run: Run | None, drawing: SchemeDrawing | None, history: Sequence[HistoryLine] = ()) -> None:
+    def show(
+        self, run: Run | None, drawing: SchemeDrawing | None, history: Sequence[HistoryLine] = ()
+    ) -> None:
         """Show a run; None clears."""
         is_same = run is not None and self.run is not None and run.code == self.run.code
         self.run = run
