@@ -17,6 +17,7 @@ settings.register_profile(
     "suite",
     deadline=None,
     max_examples=50,
+    derandomize=True,  # the same examples everywhere; new ones are looked for by name (-m soak)
     suppress_health_check=[HealthCheck.too_slow, HealthCheck.function_scoped_fixture],
 )
 settings.load_profile("suite")
