@@ -40,7 +40,8 @@ second."""
 
 CONNECT_WAIT_S = 10
 SLICE_MS = 1000
-"""How long a writer waits in the server's queue before it says so and goes on waiting [ms]."""
+"""How long a writer waits in the server's queue before it says so [ms]. It then queues anew, each time for twice as
+long: with many writers whoever left the queue every second would never come to its head."""
 
 _LOCK = f"SELECT pg_advisory_xact_lock({LOCK_CLASS}, hashtext(current_schema()))"
 _TRY_LOCK = f"SELECT pg_try_advisory_xact_lock({LOCK_CLASS}, hashtext(current_schema()))"
@@ -130,7 +131,7 @@ def _take_turn(connection: sa.Connection, address: Address, wait_s: float, on_wa
     import psycopg
 
     raw: Any = connection.connection.dbapi_connection
-    began = time.monotonic()
+    began, slice_ms = time.monotonic(), SLICE_MS
     try:
         if raw.execute(_TRY_LOCK).fetchone()[0]:
             return
@@ -138,11 +139,12 @@ def _take_turn(connection: sa.Connection, address: Address, wait_s: float, on_wa
             left_ms = int((wait_s - (time.monotonic() - began)) * 1000)
             if left_ms <= 0:
                 raise StoreBusy(f"{address} is being written by somebody else for too long.", "Try again in a minute.")
-            raw.execute(f"SET LOCAL lock_timeout TO {min(SLICE_MS, left_ms)}")
+            raw.execute(f"SET LOCAL lock_timeout TO {min(slice_ms, left_ms)}")
             try:
                 raw.execute(_LOCK)
             except psycopg.errors.LockNotAvailable:
                 raw.rollback()
+                slice_ms *= 2
                 waited = time.monotonic() - began
                 log.info("waiting for another writer for %.0f s", waited)
                 if on_wait is not None:

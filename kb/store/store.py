@@ -91,7 +91,7 @@ class Store(Answers):
             recipe: name of those three; `DerivedFacts.recipe` must equal it.
             processes: how many processes may derive at once where many runs come in; see `deriving_apart.py`.
             wait_s: how long to wait for another writer [s].
-            on_wait: told while waiting, about once a second.
+            on_wait: told while waiting, from the first second on.
             clock: gives moments; tests fix it.
 
         Raises:
