@@ -111,13 +111,7 @@ class RouteLines(Vertical):
 
     def _show_offers(self, field: str, lead: str, names: tuple[str, ...]) -> None:
         """Show names that resemble what is typed; → takes the first."""
-        line = self.line(field)
-        line.offered = lead + names[0] if names else ""
-        words = self.query_one("#route-offers", Static)
-        words.display = bool(names) and line.has_focus
-        if names:
-            others = f"; or {', '.join(names[1:])}" if len(names) > 1 else ""
-            words.update(f"→ takes {safe(names[0])}{safe(others)}")
+        self.line(field).offer(lead, names, self.query_one("#route-offers", Static))
 
     def on_descendant_blur(self) -> None:
         """Offers belong to the line in focus."""

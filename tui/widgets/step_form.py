@@ -106,6 +106,14 @@ class LineInput(SafeInput):
         self.field = field
         self.offered = ""
 
+    def offer(self, lead: str, names: tuple[str, ...], words: Static) -> None:
+        """Offer names that resemble what is typed, told in `words`; none takes the offer back."""
+        self.offered = lead + names[0] if names else ""
+        words.display = bool(names) and self.has_focus
+        if names:
+            others = f"; or {', '.join(names[1:])}" if len(names) > 1 else ""
+            words.update(f"→ takes {safe(names[0])}{safe(others)}")
+
     def action_cursor_right(self, select: bool = False) -> None:
         """At the end of the line take the completion, else the name that is offered; elsewhere move."""
         if self.offered and not self._suggestion and self.cursor_position >= len(self.value):
@@ -209,13 +217,7 @@ class StepForm(Vertical):
 
     def _show_offers(self, field: str, lead: str, names: tuple[str, ...]) -> None:
         """Show names that resemble what is typed; → takes the first."""
-        line = self.line(field)
-        line.offered = lead + names[0] if names else ""
-        words = self.query_one("#form-offers", Static)
-        words.display = bool(names) and line.has_focus
-        if names:
-            others = f"; or {', '.join(names[1:])}" if len(names) > 1 else ""
-            words.update(f"→ takes {safe(names[0])}{safe(others)}")
+        self.line(field).offer(lead, names, self.query_one("#form-offers", Static))
 
     def on_descendant_blur(self) -> None:
         """Offers belong to the line in focus."""
